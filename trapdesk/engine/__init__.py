@@ -1,0 +1,33 @@
+"""The engine: pure functions on SI floats and arrays, numpy only, nothing re-exported here.
+
+The files, each one subject:
+
+====================  ==================================================================================
+``special``           Bessel, elliptic and sine/cosine integrals
+``conductors``        resistivity, gauges, skin effect, AC resistance, insulation
+``coils``             solenoid and toroid: inductance, self-capacitance, loss
+``cables``            coaxial and parallel line: constants, loss, transformation; the coaxial trap
+``capacitors``        single, stub and combinations: loss, drift, voltage
+``resonator``         the one parallel resonator: trap, tuner element, trial and fit alike
+``wire``              thin-wire integral equation: a wire with ports to its port matrix and currents
+``ground``            the half-space: Sommerfeld kernels, reflection coefficients, field in the air
+``networks``          ladders of series and shunt branches: cascade, loss, stress; closed-form matches
+``roots``             bracketed roots, Newton in a few unknowns, a status per element
+====================  ==================================================================================
+
+The symbols that formulas use; signatures spell the names out. Time runs as exp(+jwt):
+
+========  ================================================  ==================
+symbol    meaning                                           unit
+========  ================================================  ==================
+``f``     frequency                                         [Hz]
+``w``     angular frequency, 2 pi f                         [rad/s]
+``L``     inductance                                        [H]
+``C``     capacitance                                       [F]
+``R``     resistance; ``R_D`` is the dynamic resistance     [ohm]
+``Q``     quality factor                                    [1]
+``Z``     impedance, R + jX                                 [ohm]
+``k0``    wave number of free space, w / c                  [rad/m]
+``eta0``  wave impedance of free space, 376.730             [ohm]
+========  ================================================  ==================
+"""
