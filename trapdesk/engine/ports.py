@@ -1,0 +1,148 @@
+"""The wire seen from its ports: matrices over frequency, traps as terminations, interpolation."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+
+@dataclass(frozen=True)
+class Ports:
+    """Open-circuit port matrices of a wire, each (f, p, p): feed point first, then the trap of each side.
+
+    All currents count along the wire in the same sense. With rms port currents j, `j^H loss j` is what the wire's
+    resistance takes and `j^H sky j` what goes to the sky [ohm]; both are None when they were not asked for.
+    """
+
+    frequency: np.ndarray
+    impedance: np.ndarray
+    loss: np.ndarray | None = None
+    sky: np.ndarray | None = None
+
+    def _paired(self, other: Ports, rule) -> Ports:  # noqa: ANN001 - a local combination of two arrays
+        pairs = ((self.impedance, other.impedance), (self.loss, other.loss), (self.sky, other.sky))
+        return Ports(self.frequency, *(None if a is None else rule(a, b) for a, b in pairs))
+
+    def extrapolated(self, coarse: Ports) -> Ports:
+        """Return the limit of the mesh, from this mesh and one of elements twice as long."""
+        return self._paired(coarse, lambda fine, rough: fine + (fine - rough) / 3)
+
+    def at(self, frequency: np.ndarray) -> Ports:
+        """Interpolate to other frequencies (n,) by the polynomial through the solved ones."""
+        weights = polynomial_weights(self.frequency, np.atleast_1d(np.asarray(frequency, float)))
+        parts = (self.impedance, self.loss, self.sky)
+        return Ports(
+            np.atleast_1d(frequency), *(None if a is None else np.tensordot(weights, a, 1) for a in parts)
+        )
+
+
+def polynomial_weights(nodes: np.ndarray, position: np.ndarray) -> np.ndarray:
+    """Return the weights (positions, nodes) of the polynomial through values at nodes.
+
+    Parameters
+    ----------
+    nodes : array (n,)
+        Where values are known, all different. [any unit]
+    position : array (m,)
+        Where they are wanted. [the same unit]
+
+    Returns
+    -------
+    array (m, n)
+        Weights, each row of sum 1. [1]
+
+    Raises
+    ------
+    ValueError
+        If two nodes coincide.
+
+    Source
+    ------
+    Definition: Lagrange's form of the interpolating polynomial.
+    """
+    spread = nodes[:, None] - nodes
+    np.fill_diagonal(spread, 1.0)
+    if np.any(spread == 0):
+        raise ValueError("nodes: must all be different")
+    n = nodes.size
+    gaps = np.broadcast_to(position[:, None, None] - nodes, (position.size, n, n)).copy()
+    gaps[:, np.arange(n), np.arange(n)] = 1.0
+    return np.prod(gaps / spread, axis=2)
+
+
+def chebyshev_nodes(low: float, high: float, count: int) -> np.ndarray:
+    """Return frequencies at which to solve so that the polynomial through them serves from low to high.
+
+    Parameters
+    ----------
+    low, high : float
+        Ends of the range. [Hz], 0 < low < high
+    count : int
+        Number of nodes. [1], >= 1
+
+    Returns
+    -------
+    array (count,)
+        Ascending. [Hz]
+
+    Raises
+    ------
+    ValueError
+        If the range is empty or the count below 1.
+
+    Source
+    ------
+    Definition: zeros of the Chebyshev polynomial of the first kind.
+    """
+    if not (0 < low < high and count >= 1):
+        raise ValueError("low, high: must be 0 < low < high, and count >= 1")
+    x = np.cos(np.pi * (np.arange(count)[::-1] + 0.5) / count)
+    return (low + high) / 2 + (high - low) / 2 * x
+
+
+@dataclass(frozen=True)
+class Terminated:
+    """A wire with its traps in place: feed impedance and the currents of all ports per ampere into the feed."""
+
+    impedance: np.ndarray
+    currents: np.ndarray
+
+
+def terminate(impedance: np.ndarray, *traps: np.ndarray) -> Terminated:
+    """Close the trap ports with their traps; everything broadcasts over trials and frequencies.
+
+    Parameters
+    ----------
+    impedance : complex array (..., p, p)
+        Open-circuit port matrix, feed point first. [ohm]
+    traps : complex array (...)
+        Impedance of the trap in each side: none, one for both sides, or two. [ohm]
+
+    Returns
+    -------
+    Terminated
+        Feed impedance (...) and port currents (..., p) for one ampere into the feed. [ohm], [1]
+
+    Raises
+    ------
+    ValueError
+        If the matrix has no trap ports for the traps given.
+
+    Source
+    ------
+    Derived here: `V = Z I` with `V = -Z_trap I` at the traps.
+    """
+    z11 = impedance[..., 0, 0]
+    if impedance.shape[-1] == 1:
+        if traps:
+            raise ValueError("traps: the matrix has no trap ports; limit: 0 traps")
+        return Terminated(z11, np.ones((*z11.shape, 1), complex))
+    if not 1 <= len(traps) <= 2:
+        raise ValueError("traps: must be one for both sides, or two")
+    first, second = traps[0], traps[-1]
+    a, d, b = impedance[..., 1, 1] + first, impedance[..., 2, 2] + second, impedance[..., 1, 2]
+    p, q = impedance[..., 0, 1], impedance[..., 0, 2]
+    determinant = a * d - b * b
+    i2, i3 = (b * q - d * p) / determinant, (b * p - a * q) / determinant
+    return Terminated(z11 + p * i2 + q * i3, np.stack([np.ones_like(i2), i2, i3], axis=-1))
