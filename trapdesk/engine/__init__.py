@@ -3,6 +3,7 @@
 The files, each one subject:
 
 ====================  ==================================================================================
+``limits``            the check of arguments: a value outside its limits is named, never clamped
 ``special``           Bessel, elliptic and sine/cosine integrals
 ``conductors``        resistivity, gauges, skin effect, AC resistance, insulation
 ``coils``             solenoid and toroid: inductance, self-capacitance, loss
@@ -10,6 +11,7 @@ The files, each one subject:
 ``capacitors``        single, stub and combinations: loss, drift, voltage
 ``resonator``         the one parallel resonator: trap, tuner element, trial and fit alike
 ``wire``              thin-wire integral equation: a wire with ports to its port matrix and currents
+``ports``             that wire over frequency: port matrices, traps as terminations, interpolation
 ``ground``            the half-space: Sommerfeld kernels, reflection coefficients, field in the air
 ``networks``          ladders of series and shunt branches: cascade, loss, stress; closed-form matches
 ``roots``             bracketed roots, Newton in a few unknowns, a status per element

@@ -1,0 +1,22 @@
+"""What all tests share: one thread for the linear algebra, and the table of the benches at the end."""
+
+import os
+
+# Read by the linear algebra library when numpy is first imported, so set before anything below.
+for _name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
+    os.environ[_name] = "1"
+
+from tests.bench import yardstick  # noqa: E402 - numpy comes in here and must find the threads set
+
+
+def pytest_terminal_summary(terminalreporter):
+    lines = yardstick.table(yardstick.RECORDS)
+    if lines:
+        unit = 1e3 * yardstick.yardstick()
+        terminalreporter.section("bench")
+        for line in lines:
+            terminalreporter.write_line(line)
+        size, systems = yardstick.SIZE, yardstick.SYSTEMS
+        terminalreporter.write_line(
+            f"1 = {systems} complex solves of {size} x {size} on one thread, {unit:.3g} ms here"
+        )
