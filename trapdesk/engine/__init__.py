@@ -14,6 +14,7 @@ The files, each one subject:
 ``ports``             that wire over frequency: port matrices, traps as terminations, interpolation
 ``ground``            the half-space: Sommerfeld kernels, reflection coefficients, field in the air
 ``networks``          ladders of series and shunt branches: cascade, loss, stress; closed-form matches
+``stress``            what each part of the resonator carries: currents, volts, watts, reactive power
 ``roots``             bracketed roots, Newton in a few unknowns, a status per element
 ====================  ==================================================================================
 
