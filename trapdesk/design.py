@@ -1,0 +1,346 @@
+"""What a person sets: an Antenna at a Site with a Station, frozen, in SI units.
+
+Every field is declared once, with what it measures, its limits, default, label and help; the form, the
+file, the command line, the sheet and the tests all follow from the declarations.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass, is_dataclass, replace
+from enum import StrEnum
+from typing import Any
+
+from .engine.conductors import MATERIALS
+from .engine.ground import SOILS, GroundKind
+from .fields import SOLVE, Value, choice, declared, part, quantity, text
+from .parts import Trap
+
+
+class Shape(StrEnum):
+    """How the wire hangs."""
+
+    FLAT = "flat"
+    VEE = "vee"
+
+
+class JudgedAt(StrEnum):
+    """Where the SWR limit is held."""
+
+    FEED = "feed"
+    TRANSMITTER = "transmitter"
+
+
+@dataclass(frozen=True)
+class Mode:
+    """How hard a transmitter works at its stated power: mean share of it while sending, and what that is."""
+
+    mean: float
+    help: str
+
+
+MODES: dict[str, Mode] = {
+    "carrier": Mode(1.0, "full carrier without a pause: tuning up, FM, most data modes"),
+    "CW": Mode(0.5, "keyed carrier; half the time on, common practice, no source"),
+    "SSB": Mode(0.2, "speech without processing; common practice, no source"),
+    "SSB processed": Mode(0.5, "speech with strong processing; common practice, no source"),
+}
+
+_BAND_LIMITS = {"low": 1.5e6, "high": 60e6}
+
+
+@dataclass(frozen=True, kw_only=True)
+class Band:
+    """A band: its edges, the wanted part that is judged, and the aim in it."""
+
+    name: str = text("band", "What the band is called, for example 40 m.")
+    low: float = quantity("frequency", "band from", "Lower band edge; national rules decide.", **_BAND_LIMITS)
+    high: float = quantity("frequency", "band to", "Upper band edge; national rules decide.", **_BAND_LIMITS)
+    wanted_low: float | None = quantity(
+        "frequency",
+        "wanted from",
+        "Start of the part of the band that is wanted and judged; the band edge unless set.",
+        default=None,
+        optional=True,
+        **_BAND_LIMITS,
+    )
+    wanted_high: float | None = quantity(
+        "frequency",
+        "wanted to",
+        "End of the part of the band that is wanted and judged; the band edge unless set.",
+        default=None,
+        optional=True,
+        **_BAND_LIMITS,
+    )
+    aim: float | None = quantity(
+        "frequency",
+        "aim",
+        "Where resonance at the feed point is wanted; the middle of the wanted part unless set.",
+        default=None,
+        optional=True,
+        **_BAND_LIMITS,
+    )
+
+    @property
+    def wanted(self) -> tuple[float, float]:
+        """The edges of the wanted part, in Hz."""
+        return (self.wanted_low or self.low, self.wanted_high or self.high)
+
+    @property
+    def target(self) -> float:
+        """The aim in Hz, set or by default."""
+        return self.aim or sum(self.wanted) / 2
+
+
+@dataclass(frozen=True, kw_only=True)
+class Bands:
+    """The bands of the design; `upper` may be absent."""
+
+    lower: Band = part("lower band", "The band on which the whole wire works.")
+    upper: Band | None = part("upper band", "The trap's own band.", default=None, optional=True)
+
+    def items(self) -> Iterator[tuple[str, Band]]:
+        """Return role and band, upper first, of the bands there are."""
+        for role in ("upper", "lower"):
+            if (band := getattr(self, role)) is not None:
+                yield role, band
+
+
+@dataclass(frozen=True, kw_only=True)
+class AntennaWire:
+    """The wire off the reel."""
+
+    diameter: float = quantity(
+        "length",
+        "wire diameter",
+        "Diameter of the conductor without its coating; a gauge such as AWG 14 will do. For strands the"
+        " circle around them.",
+        default=0.002,
+        low=1e-4,
+        high=0.02,
+        alias="gauge",
+        example="AWG 14",
+    )
+    material: str = choice(MATERIALS, "material", "Metal of the wire.", default="copper")
+    conductivity: float | None = quantity(
+        "conductivity",
+        "conductivity",
+        "Conductivity of the wire, when it is none of the listed metals.",
+        default=None,
+        optional=True,
+        low=1e4,
+        high=1e9,
+        example="58 MS/m",
+    )
+    coating: float = quantity(
+        "length",
+        "coating",
+        "Thickness of the insulation on the wire, 0 for bare wire. A coating lowers both bands.",
+        default=0.0,
+        low=0.0,
+        high=0.01,
+        example="0.6 mm",
+    )
+    coating_permittivity: float = quantity(
+        "ratio",
+        "coating permittivity",
+        "Relative permittivity of the insulation: polyethylene 2.3, PVC 3 to 4 (it varies much).",
+        default=2.3,
+        low=1.0,
+        high=12.0,
+    )
+    stretch: float = quantity(
+        "ratio",
+        "stretch",
+        "How much longer the wire gets once it is pulled. Soft stranded copper creeps 0.5 to 2 % in its first"
+        " days (common practice, no source): pull it first, then mark it, and leave this 0.",
+        default=0.0,
+        low=0.0,
+        high=0.05,
+        example="1 %",
+    )
+
+
+@dataclass(frozen=True, kw_only=True)
+class Lengths:
+    """Wire lengths of one side, as the engine computes with them, and what fastening takes."""
+
+    inner: Value = quantity(
+        "length",
+        "inner wire",
+        "Feed point to trap centre, to the wire's end where there is no trap. Solved: meets the upper aim.",
+        default=SOLVE,
+        solvable=True,
+        low=0.3,
+        high=200.0,
+    )
+    end: Value | None = quantity(
+        "length",
+        "end wire",
+        "Trap centre to the wire's end. Solved: meets the lower aim. Absent without a trap.",
+        default=None,
+        solvable=True,
+        optional=True,
+        low=0.2,
+        high=200.0,
+    )
+    knot: float = quantity(
+        "length",
+        "knot",
+        "Wire that each fastening at feed point and trap takes. 10 to 15 cm: common practice, no source.",
+        default=0.12,
+        low=0.0,
+        high=2.0,
+    )
+    loop: float = quantity(
+        "length",
+        "loop",
+        "Wire through the end insulator and laid back. 10 to 15 cm: common practice, no source.",
+        default=0.15,
+        low=0.0,
+        high=2.0,
+    )
+    reserve: float = quantity(
+        "length",
+        "reserve",
+        "Extra to leave on each wire when cutting, so that it can still be let out.",
+        default=0.20,
+        low=0.0,
+        high=5.0,
+    )
+
+
+@dataclass(frozen=True, kw_only=True)
+class Antenna:
+    """What is carried: wire, lengths, traps."""
+
+    wire: AntennaWire = part("wire", "The wire of both sides.", default=AntennaWire())
+    lengths: Lengths = part("lengths", "Wire lengths of one side.", default=Lengths())
+    trap: Trap | None = part("trap", "The trap in each side.", default=None, optional=True)
+
+
+UNKNOWN = "unknown"
+
+
+@dataclass(frozen=True, kw_only=True)
+class Site:
+    """Where it hangs."""
+
+    shape: Shape = choice(
+        Shape, "shape", "flat: a level wire; vee: ends lower than the feed point.", default=Shape.FLAT
+    )
+    height: float = quantity(
+        "length", "height", "Height of the feed point above ground.", default=10.0, low=0.5, high=300.0
+    )
+    end_height: float | None = quantity(
+        "length",
+        "height of ends",
+        "Height of the wire's ends of a vee; this or the included angle.",
+        default=None,
+        optional=True,
+        low=0.5,
+        high=300.0,
+    )
+    included_angle: float | None = quantity(
+        "angle",
+        "included angle",
+        "Angle between both sides of a vee; this or the height of the ends.",
+        default=None,
+        optional=True,
+        low=math.radians(30),
+        high=math.pi,
+        example="120 deg",
+    )
+    ground: GroundKind = choice(
+        GroundKind,
+        "ground",
+        "soil: real earth; mirror: an ideal conductor; space: far from any ground.",
+        default=GroundKind.SOIL,
+    )
+    soil: str | None = choice(
+        (UNKNOWN, *SOILS),
+        "soil",
+        "Class of soil; unknown takes an average and shows what not knowing is worth.",
+        default=None,
+        optional=True,
+    )
+    conductivity: float | None = quantity(
+        "conductivity",
+        "soil conductivity",
+        "Conductivity of the soil, together with its permittivity instead of a class.",
+        default=None,
+        optional=True,
+        low=0.0,
+        high=10.0,
+        example="5 mS/m",
+    )
+    permittivity: float | None = quantity(
+        "ratio",
+        "soil permittivity",
+        "Relative permittivity of the soil, together with its conductivity instead of a class.",
+        default=None,
+        optional=True,
+        low=1.0,
+        high=100.0,
+        example="13",
+    )
+
+    @property
+    def soil_is_unknown(self) -> bool:
+        """Whether the ground is real earth that nobody has named."""
+        named = self.soil not in (None, UNKNOWN) or self.conductivity is not None
+        return self.ground is GroundKind.SOIL and not named
+
+
+@dataclass(frozen=True, kw_only=True)
+class Station:
+    """What feeds it and what is asked of it."""
+
+    reference: float = quantity(
+        "resistance",
+        "SWR reference",
+        "Resistance the SWR is counted against.",
+        default=50.0,
+        low=1.0,
+        high=2000.0,
+    )
+    swr_limit: float = quantity(
+        "ratio", "SWR limit", "Highest SWR that counts as usable.", default=2.0, above=1.0, high=20.0
+    )
+    judged_at: JudgedAt = choice(JudgedAt, "judged at", "Where the SWR limit is held.", default=JudgedAt.FEED)
+    power: float = quantity(
+        "power", "power", "Power of the transmitter at its peaks.", default=100.0, above=0.0, high=5000.0
+    )
+    mode: str = choice(
+        MODES, "mode", "What is sent: how much of the power is there on average.", default="SSB"
+    )
+
+
+@dataclass(frozen=True, kw_only=True)
+class Design:
+    """One antenna at one site with one station."""
+
+    title: str = text("title", "What the design is called.", default="untitled")
+    bands: Bands = part("bands", "The bands that are wanted.")
+    antenna: Antenna = part("antenna", "What is carried.", default=Antenna())
+    site: Site = part("site", "Where it hangs.", default=Site())
+    station: Station = part("station", "What feeds it.", default=Station())
+
+
+def get(design: Design, key: str) -> Any:
+    """Return the value at a dotted key; KeyError for a key that the design does not have."""
+    value: Any = design
+    for name in key.split("."):
+        if not is_dataclass(value) or name not in declared(value):
+            raise KeyError(key)
+        value = getattr(value, name)
+    return value
+
+
+def with_value(part: Any, key: str, value: Any) -> Any:
+    """Return the design with another value at a dotted key; KeyError for a key that it does not have."""
+    name, _, rest = key.partition(".")
+    if not is_dataclass(part) or name not in declared(part):
+        raise KeyError(key)
+    return replace(part, **{name: with_value(getattr(part, name), rest, value) if rest else value})

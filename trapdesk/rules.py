@@ -1,0 +1,172 @@
+"""What a design must obey: every value its own limits, and all of them together."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import Any
+
+from .design import Band, Design, Shape, Site, get
+from .errors import TrapdeskError
+from .fields import SOLVE, Declared, declared, walk
+from .parts import Solenoid, Trap
+
+
+@dataclass(frozen=True, kw_only=True)
+class Breach:
+    """A value that a rule forbids: where, which rule, the value, and the bound or the other key it meets.
+
+    `code` is one of: missing, below, not_above, over, not_a_choice, not_a_number, unexpected, needs,
+    needs_one_of, not_both, order, outside, solve_one.
+    """
+
+    where: str
+    code: str
+    value: Any = None
+    bound: Any = None
+    dimension: str = ""
+
+
+class InvalidDesign(TrapdeskError):
+    """A design that no antenna can have; carries every breach."""
+
+    exit_code = 2
+
+    def __init__(self, breaches: tuple[Breach, ...]) -> None:
+        self.breaches = breaches
+        super().__init__("; ".join(f"{b.where}: {b.code} {b.value!r} {b.bound!r}" for b in breaches))
+
+
+def check(design: Design) -> tuple[Breach, ...]:
+    """Return every rule a design breaks: first each value against its limits, then what must fit together."""
+    breaches = [b for key, known, value in walk(design) for b in _limits(key, known, value)]
+    return tuple(breaches) or tuple(_together(design))
+
+
+def _limits(key: str, known: Declared, value: Any) -> Iterator[Breach]:
+    """Hold one value against its declaration."""
+    if value is None:
+        if not known.optional:
+            yield Breach(where=key, code="missing", dimension=known.dimension)
+    elif value is SOLVE:
+        if not known.solvable:
+            yield Breach(where=key, code="not_a_number", value="solve", dimension=known.dimension)
+    elif known.dimension == "choice":
+        if str(value) not in known.choices:
+            yield Breach(where=key, code="not_a_choice", value=value, bound=known.choices)
+    elif known.dimension not in ("text", "part"):
+        if not math.isfinite(value):
+            yield Breach(where=key, code="not_a_number", value=value, dimension=known.dimension)
+        elif known.low is not None and value < known.low:
+            yield Breach(where=key, code="below", value=value, bound=known.low, dimension=known.dimension)
+        elif known.above is not None and value <= known.above:
+            yield Breach(
+                where=key, code="not_above", value=value, bound=known.above, dimension=known.dimension
+            )
+        elif known.high is not None and value > known.high:
+            yield Breach(where=key, code="over", value=value, bound=known.high, dimension=known.dimension)
+
+
+def _together(design: Design) -> Iterator[Breach]:
+    """Hold values against each other."""
+    for role, band in design.bands.items():
+        yield from _band_order(f"bands.{role}", band)
+    bands = design.bands
+    if bands.upper is not None and bands.upper.target <= bands.lower.target:
+        yield Breach(
+            where="bands.upper.aim",
+            code="order",
+            value=bands.upper.target,
+            bound=bands.lower.target,
+            dimension="frequency",
+        )
+    yield from _lengths_and_trap(design)
+    yield from _site(design.site)
+
+
+def _band_order(key: str, band: Band) -> Iterator[Breach]:
+    low, high = band.wanted
+    if band.low >= band.high:
+        yield Breach(
+            where=f"{key}.high", code="order", value=band.high, bound=band.low, dimension="frequency"
+        )
+        return
+    for name in ("wanted_low", "wanted_high"):
+        value = getattr(band, name)
+        if value is not None and not band.low <= value <= band.high:
+            yield Breach(
+                where=f"{key}.{name}",
+                code="outside",
+                value=value,
+                bound=(band.low, band.high),
+                dimension="frequency",
+            )
+            return
+    if low >= high:
+        yield Breach(where=f"{key}.wanted_high", code="order", value=high, bound=low, dimension="frequency")
+    elif not band.low <= band.target <= band.high:
+        yield Breach(
+            where=f"{key}.aim",
+            code="outside",
+            value=band.target,
+            bound=(band.low, band.high),
+            dimension="frequency",
+        )
+
+
+def _lengths_and_trap(design: Design) -> Iterator[Breach]:
+    lengths, trap = design.antenna.lengths, design.antenna.trap
+    if trap is None:
+        if lengths.end is not None:
+            yield Breach(where="antenna.lengths.end", code="unexpected", bound="antenna.trap")
+        return
+    if lengths.end is None:
+        yield Breach(where="antenna.lengths.end", code="missing", dimension="length")
+    elif lengths.inner is SOLVE and lengths.end is SOLVE and design.bands.upper is None:
+        yield Breach(where="antenna.lengths.inner", code="needs", bound="bands.upper")
+    solved = [key for key in trap_unknowns(trap) if get(design, key) is SOLVE]
+    if len(solved) != 1:
+        yield Breach(
+            where="antenna.trap", code="solve_one", value=tuple(solved), bound=tuple(trap_unknowns(trap))
+        )
+    if isinstance(trap.coil, Solenoid) and trap.coil.pitch <= trap.coil.wire:
+        yield Breach(
+            where="antenna.trap.coil.pitch",
+            code="not_above",
+            value=trap.coil.pitch,
+            bound=trap.coil.wire,
+            dimension="length",
+        )
+    sides = ((lengths.inner, "antenna.lengths.inner"), (lengths.end, "antenna.lengths.end"))
+    for value, key in sides:
+        if isinstance(value, float | int) and trap.body / 2 >= value:
+            yield Breach(where=key, code="not_above", value=value, bound=trap.body / 2, dimension="length")
+
+
+def trap_unknowns(trap: Trap) -> tuple[str, str, str]:
+    """Return the keys of which exactly one is solved: the trap's resonance, coil value, capacitor value."""
+    found = ["antenna.trap.resonance"]
+    for name in ("coil", "capacitor"):
+        part = getattr(trap, name)
+        found += [f"antenna.trap.{name}.{key}" for key, known in declared(part).items() if known.solvable]
+    return tuple(found)  # type: ignore[return-value]
+
+
+def _site(site: Site) -> Iterator[Breach]:
+    sloping = [name for name in ("end_height", "included_angle") if getattr(site, name) is not None]
+    if site.shape == Shape.VEE and len(sloping) != 1:
+        code = "not_both" if sloping else "needs_one_of"
+        yield Breach(where="site.end_height", code=code, bound=("site.end_height", "site.included_angle"))
+    elif site.shape == Shape.FLAT and sloping:
+        yield Breach(where=f"site.{sloping[0]}", code="unexpected", bound="site.shape = vee")
+    elif site.end_height is not None and site.end_height > site.height:
+        yield Breach(
+            where="site.end_height", code="over", value=site.end_height, bound=site.height, dimension="length"
+        )
+    numbers = [name for name in ("conductivity", "permittivity") if getattr(site, name) is not None]
+    if numbers and site.soil is not None:
+        yield Breach(where="site.soil", code="not_both", bound=("site.soil", f"site.{numbers[0]}"))
+    elif len(numbers) == 1:
+        other = "permittivity" if numbers == ["conductivity"] else "conductivity"
+        yield Breach(where=f"site.{numbers[0]}", code="needs", bound=f"site.{other}")
