@@ -7,6 +7,7 @@ The files, each one subject:
 ``special``           Bessel, elliptic and sine/cosine integrals
 ``conductors``        resistivity, gauges, skin effect, AC resistance, insulation
 ``coils``             solenoid and toroid: inductance, self-capacitance, loss
+``coil_formulas``     published formulas for the solenoid: cross-checks of `coils`
 ``cables``            coaxial and parallel line: constants, loss, transformation; the coaxial trap
 ``capacitors``        single, stub and combinations: loss, drift, voltage
 ``resonator``         the one parallel resonator: trap, tuner element, trial and fit alike
@@ -15,6 +16,7 @@ The files, each one subject:
 ``ground``            the half-space: Sommerfeld kernels, reflection coefficients, field in the air
 ``networks``          ladders of series and shunt branches: cascade, loss, stress; closed-form matches
 ``stress``            what each part of the resonator carries: currents, volts, watts, reactive power
+``tank``              parts of a resonator from any sufficient subset of its quantities
 ``roots``             bracketed roots, Newton in a few unknowns, a status per element
 ====================  ==================================================================================
 
