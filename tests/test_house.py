@@ -328,10 +328,10 @@ def test_engine_docstrings_catch(right, wrong):
     assert len(docstring_faults(GOOD.replace(right, wrong))) == 1
 
 
-# A Source section cites as "key, p. 12, eq. (3)": the key begins a line or follows "; ", and a comma or colon
-# (or, if it ends in a year, anything) ends it. It may instead open with one of WITHOUT_KEY; a dashed word in backticks is a key in either.
+# A Source section cites as "key, p. 12, eq. (3)": the key begins a line or follows "; " and ends in a comma,
+# a colon or a year. It may open with one of WITHOUT_KEY; a dashed word in backticks is a key in either.
 NAME = re.compile(r"[a-z0-9]+(?:-[a-z0-9]+)*")
-KEY = re.compile(rf"(?:^|; )`?({NAME.pattern})(?:(?<=-\d{4})(?![\w-])|`?[,:] )", re.MULTILINE)
+KEY = re.compile(rf"(?:^|; )`?({NAME.pattern})(?:(?<=-\d\d\d\d)(?![\w-])|`?[,:] )", re.MULTILINE)
 DASHED = re.compile(r"`([a-z0-9]+(?:-[a-z0-9]+)+)`")
 WITHOUT_KEY = ("derived here", "definition", "common practice", "from memory")
 FIELDS = {"title": str, "author": str, "year": int, "where": str, "seen": bool, "note": str}
