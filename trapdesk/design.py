@@ -290,7 +290,7 @@ class Site:
     def soil_is_unknown(self) -> bool:
         """Whether the ground is real earth that nobody has named."""
         named = self.soil not in (None, UNKNOWN) or self.conductivity is not None
-        return self.ground is GroundKind.SOIL and not named
+        return self.ground == GroundKind.SOIL and not named
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -1,0 +1,196 @@
+"""Everything a design does, as frozen numbers in SI units: what `solve` returns and every face shows."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from enum import StrEnum
+
+import numpy as np
+
+from ..design import Design
+from ..engine.ports import Ports
+from ..engine.wire import Wire
+
+
+class Level(StrEnum):
+    """How serious a finding is."""
+
+    FINE = "fine"
+    WATCH = "watch"
+    STOP = "stop"
+
+
+@dataclass(frozen=True, kw_only=True)
+class Finding:
+    """A remark on the figures: which rule, where, the number behind it and the limit it was held against.
+
+    `where` is a dotted key of the design, or `bands.upper` and the like. `dimension` is that of value and limit.
+    """
+
+    code: str
+    level: Level
+    where: str
+    value: float
+    limit: float | None = None
+    dimension: str = "ratio"
+
+
+@dataclass(frozen=True, kw_only=True)
+class Shares:
+    """Where the power accepted at the feed point goes; the four add to 1."""
+
+    sky: float
+    ground: float
+    wire: float
+    trap: float
+
+
+@dataclass(frozen=True, kw_only=True)
+class Stress:
+    """What one trap bears at the stated power as a steady carrier, and on average in the stated mode.
+
+    `capacitor_peak` is the voltage across the trap, which its capacitor and coil share; `coil` and `capacitor` are
+    the currents that circulate in it.
+    """
+
+    frequency: float
+    peak_voltage: float
+    rms_current: float
+    coil_current: float
+    capacitor_current: float
+    watts: float
+    average_watts: float
+
+
+@dataclass(frozen=True, kw_only=True)
+class Curve:
+    """The band over frequency, arrays (n,)."""
+
+    frequency: np.ndarray
+    impedance: np.ndarray
+    swr: np.ndarray
+
+
+@dataclass(frozen=True, kw_only=True)
+class Effects:
+    """What moving something does to a band's resonance.
+
+    Of one metre of each wire of both sides [Hz/m]; of both traps' resonance by its whole, moved by the capacitor
+    [Hz]; of the height [Hz/m]; of soil from the driest to the wettest it may be [Hz], both None until asked for.
+    """
+
+    inner: float
+    end: float | None
+    trap: float | None
+    height: float | None = None
+    soil: tuple[float, float] | None = None
+
+
+@dataclass(frozen=True, kw_only=True)
+class BandFigures:
+    """What the antenna does on one band. None where a thing does not exist.
+
+    `frequency_doubt` [Hz] goes with resonance and dip, `impedance_doubt` [ohm] with impedances, `swr_doubt` [1] with
+    every SWR, `share_doubt` [1] with the shares, `stress_doubt` [1] is the relative one of volts, amps and watts.
+    """
+
+    role: str
+    name: str
+    aim: float
+    aim_impedance: complex
+    aim_swr: float
+    resonance: float | None
+    resonance_resistance: float | None
+    dip: float
+    dip_swr: float
+    low_swr: float
+    high_swr: float
+    worst_swr: float
+    width: float | None
+    usable: tuple[float, float] | None
+    shares: Shares
+    feed_current: float
+    stress: Stress | None
+    worst_stress: Stress | None
+    effects: Effects | None
+    curve: Curve
+    frequency_doubt: float
+    impedance_doubt: float
+    swr_doubt: float
+    share_doubt: float
+    stress_doubt: float
+
+
+@dataclass(frozen=True, kw_only=True)
+class CoilFigures:
+    """A wound coil: what to wind. Diameters and lengths to the centre of the wire."""
+
+    turns: float
+    diameter: float
+    length: float
+    wire_length: float
+    self_capacitance: tuple[float, float, float]
+    crowding: float
+
+
+@dataclass(frozen=True, kw_only=True)
+class TrapFigures:
+    """The trap by itself, at its resonance unless said otherwise. `reactance` and `impedance` by band role."""
+
+    resonance: float
+    inductance: float
+    capacitance: float
+    fitted_capacitance: float
+    q: float
+    dynamic_resistance: float
+    impedance: dict[str, complex]
+    coil: CoilFigures | None
+    curve: Curve
+    resonance_doubt: float
+    inductance_doubt: float
+    q_range: tuple[float, float]
+
+
+@dataclass(frozen=True, kw_only=True)
+class LengthFigures:
+    """The wires of one side. `mark` is where the tape mark goes, `reel` what to cut off the reel.
+
+    `half_wave` is a plain half wave in free space at the lower aim, for comparison with `total`, both sides.
+    """
+
+    inner: float
+    inner_mark: float
+    inner_reel: float
+    end: float | None
+    end_mark: float | None
+    end_reel: float | None
+    total: float
+    half_wave: float
+    end_height: float | None
+    slope: float
+    doubt: float
+
+
+@dataclass(frozen=True, kw_only=True)
+class Figures:
+    """Everything computed for a design. `wire` and `ports` are kept for what comes after, not for show."""
+
+    design: Design
+    lengths: LengthFigures
+    trap: TrapFigures | None
+    bands: dict[str, BandFigures]
+    findings: tuple[Finding, ...]
+    wire: Wire = field(repr=False)
+    ports: dict[str, Ports] = field(repr=False)
+
+
+@dataclass(frozen=True, kw_only=True)
+class AtFrequency:
+    """The antenna at one frequency, inside a band or not."""
+
+    frequency: float
+    impedance: complex
+    swr: float
+    shares: Shares
+    feed_current: float
+    stress: Stress | None
