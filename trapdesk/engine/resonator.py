@@ -252,7 +252,7 @@ def lead_or_lag(
     Returns
     -------
     array of int
-        Sign of the reactance, zero to rounding.
+        Sign of the reactance, zero to rounding. [1]
     """
     positive(frequency=frequency)
     circuit = _circuit(inductance, capacitance, coil_resistance, capacitor_resistance)
