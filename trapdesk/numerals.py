@@ -30,6 +30,9 @@ NUMBER = re.compile(
     r"|(?P<digits>\d{1,3}(?: \d{3})+(?![\d/])(?:[.,]\d+)?|[\d.,]*\d\.?)(?:[eE](?P<power>[+-]?\d+))?",
     re.ASCII,
 )
+_GAUGE = re.compile(r"(?:#|awg ?#?|# ?awg) ?(0{1,4}|[1-4]/0|[1-9]\d?)(?: ?awg)?", re.ASCII)
+_GAUGE_LAST = re.compile(r"(0{1,4}|[1-4]/0|[1-9]\d?) ?awg", re.ASCII)
+_TO_ONE = re.compile(r"(\d+(?:[.,]\d+)?) ?: ?(\d+(?:[.,]\d+)?)", re.ASCII)
 
 
 class Number:
@@ -127,6 +130,53 @@ def exact_number(match: re.Match[str], refuse: Refuse, before: str, after: str) 
         raise refuse("not_finite")
     top, power = int(whole + fraction or "0"), power - len(fraction)
     return Number(top * 10**power, 1, 10**power) if power >= 0 else Number(top, 10**-power, 1)
+
+
+def gauge_number(text: str) -> int | None:
+    """Return the number of a wire gauge written as AWG 14, 14 AWG, #14, AWG 00 or 2/0 AWG.
+
+    Parameters
+    ----------
+    text : str
+        Plain text.
+
+    Returns
+    -------
+    int or None
+        The gauge, 0, -1, -2 and -3 for 0, 00, 000 and 0000; None for any other text. [1]
+    """
+    folded = text.lower()
+    match = _GAUGE.fullmatch(folded) or _GAUGE_LAST.fullmatch(folded)
+    if match is None:
+        return None
+    typed = match[1]
+    if "/" in typed:
+        return 1 - int(typed[0])
+    return 1 - len(typed) if typed[0] == "0" else int(typed)
+
+
+def to_one(text: str) -> Number | None:
+    """Return a ratio written as 2:1 or 1.5:1.
+
+    Parameters
+    ----------
+    text : str
+        Plain text.
+
+    Returns
+    -------
+    Number or None
+        The ratio; None for any other text, and when either side is zero.
+    """
+    match = _TO_ONE.fullmatch(text)
+    if match is None:
+        return None
+    over, under = (side.replace(",", ".").partition(".") for side in match.groups())
+    top, bottom = int(over[0] + over[2]), int(under[0] + under[2])
+    if top == 0 or bottom == 0:
+        return None
+    shift = 10 ** len(under[2])
+    return Number(top * shift, bottom * 10 ** len(over[2]), shift)
 
 
 def decimal_parts(text: str) -> tuple[str, int]:
@@ -256,3 +306,35 @@ def _nearest(top: int, bottom: int) -> float:
         return top / bottom
     except OverflowError:
         return math.inf
+
+
+def feet_and_inches(inches: float, digits: int, step: float | None) -> str:
+    """Return a length as a tape measure in feet and inches shows it.
+
+    Parameters
+    ----------
+    inches : float
+        The length. [in]
+    digits : int
+        Significant digits, used without a step. [1], >= 1
+    step : float, optional
+        How fine to be, from feet down to 1/64 inch; a little coarser is let pass. [in], > 0
+
+    Returns
+    -------
+    str
+        Such as "32 ft 6" or "32 ft 6 1/2"; the unit of the last number is the inch.
+    """
+    sign = "-" if inches < 0 else ""
+    if step is None:
+        feet, rest = divmod(float(f"{abs(inches):.{min(digits, 9) - 1}e}"), 12)
+        return f"{sign}{int(feet)} ft {rounded(rest, 12, None)}"
+    marks = ((12, 1), (6, 1), (3, 1), (2, 1), (1, 1), (1, 2), (1, 4), (1, 8), (1, 16), (1, 32))
+    coarse, part = next(((up, down) for up, down in marks if up / down <= 1.3 * step), (1, 64))
+    feet, count = divmod(round(abs(inches) * part / coarse) * coarse, 12 * part)
+    whole, over = divmod(count, part)
+    if not over:
+        return f"{sign}{feet} ft {whole}"
+    divisor = math.gcd(over, part)
+    fraction = f"{over // divisor}/{part // divisor}"
+    return f"{sign}{feet} ft {whole} {fraction}" if whole else f"{sign}{feet} ft {fraction}"

@@ -141,6 +141,28 @@ LETTERS: dict[Dimension, dict[str, int]] = {
 }
 """Letters that stand for the decimal point and the prefix, as in 4k7 (after IEC 60062), as powers of ten."""
 
+SI_NAMES: dict[Dimension, str] = {
+    Dimension.LENGTH: "meter",
+    Dimension.FREQUENCY: "hertz",
+    Dimension.INDUCTANCE: "henry",
+    Dimension.CAPACITANCE: "farad",
+    Dimension.RESISTANCE: "ohm",
+    Dimension.POWER: "watt",
+    Dimension.VOLTAGE: "volt",
+    Dimension.CURRENT: "ampere",
+    Dimension.ANGLE: "radian",
+    Dimension.CONDUCTIVITY: "siemens/meter",
+    Dimension.RATIO: "percent",
+    Dimension.COUNT: "turn",
+    Dimension.TIME: "second",
+    Dimension.MASS: "kilogram",
+    Dimension.LOSS: "decibel",
+    Dimension.LOSS_PER_LENGTH: "decibel/meter",
+    Dimension.TEMPERATURE_COEFFICIENT: "1/kelvin",
+    Dimension.CAPACITANCE_PER_LENGTH: "farad/meter",
+}
+"""The SI unit in words pint knows; temperatures are not its business, for they have a shifted zero."""
+
 DESCRIPTIONS = {
     Dimension.LENGTH: ("a length", ("9.91 m", "32 ft 6 in", "AWG 14"), ("m", "ft")),
     Dimension.FREQUENCY: ("a frequency", ("7.05 MHz", "7050 kHz"), ("MHz", "kHz", "Hz")),

@@ -17,11 +17,14 @@ from trapdesk.numerals import (
     Refuse,
     decimal_parts,
     exact_number,
+    feet_and_inches,
+    gauge_number,
     placed,
     plain_text,
     rounded,
     shortest_decimal,
     snapped,
+    to_one,
 )
 from trapdesk.unit_names import (
     DESCRIPTIONS,
@@ -32,6 +35,7 @@ from trapdesk.unit_names import (
     LIKELY,
     ONE,
     SHOWN,
+    SI_NAMES,
     SLIPS,
     UNITS,
     Dimension,
@@ -59,9 +63,6 @@ class Reading:
 _LONGEST = 80
 _LETTERED = re.compile(r"(\d*)([A-Za-z])(\d+) ?([A-Za-z]*)", re.ASCII)
 _PART = re.compile(rf"(?P<number>{NUMBER.pattern}) ?(?P<unit>[A-Za-z]+|['\"]|$)[ -]?", re.ASCII)
-_GAUGE = re.compile(r"(?:#|awg ?#?|# ?awg) ?(0{1,4}|[1-4]/0|[1-9]\d?)(?: ?awg)?", re.ASCII)
-_GAUGE_LAST = re.compile(r"(0{1,4}|[1-4]/0|[1-9]\d?) ?awg", re.ASCII)
-_TO_ONE = re.compile(r"(\d+(?:[.,]\d+)?) ?: ?(\d+(?:[.,]\d+)?)", re.ASCII)
 _PLAIN = r"[\d.,]*\d\.?(?:e[+-]?\d+)?"
 _RESISTANCE = rf"(?P<sign>[+-]?) ?(?P<resistance>{_PLAIN})"
 _IMAGINARY = rf"(?:[ji] ?(?P<after>{_PLAIN})|(?P<before>{_PLAIN}) ?[ji])"
@@ -137,9 +138,10 @@ def read_exact(text: str, dimension: Dimension, where: str = "") -> Reading:
         raise refuse("unreadable")
     sign = -1 if tidy[0] == "-" else 1
     body = tidy[1:].lstrip(" ") if tidy[0] in "+-" else tidy
-    special = _SPECIAL.get(dimension)
-    if special is not None and (reading := special(body)) is not None and body == tidy:
-        return reading
+    if dimension is Dimension.LENGTH and (number := gauge_number(tidy)) is not None:
+        return Reading(value=gauge_diameter(number), relative_slack=92.0 ** (0.5 / 39) - 1)
+    if dimension is Dimension.RATIO and (ratio := to_one(tidy)) is not None:
+        return _reading(ratio.top, ratio.bottom, ratio.step, refuse)
     match = NUMBER.match(body)
     if match is not None:
         name = _unit_name(body[match.end() :])
@@ -208,7 +210,7 @@ def read_impedance(text: str, where: str = "") -> complex:
 
 
 def gauge_diameter(number: int) -> float:
-    """Return the diameter of a bare wire of American wire gauge, by the rule of ASTM B258.
+    """Return the diameter of a bare wire of American wire gauge.
 
     Parameters
     ----------
@@ -219,6 +221,10 @@ def gauge_diameter(number: int) -> float:
     -------
     float
         Diameter. [m]
+
+    Source
+    ------
+    astm-b258, for the law and its two defining diameters.
     """
     return 0.127e-3 * 92.0 ** ((36 - number) / 39)
 
@@ -281,29 +287,7 @@ def _registry() -> tuple[Any, dict[Any, Dimension], type[Exception]]:
     registry.load_definitions(
         resources.files("trapdesk").joinpath("units.txt").read_text("utf-8").splitlines()
     )
-    known = {
-        registry.Quantity(1, name).dimensionality: dimension
-        for dimension, name in (
-            (Dimension.LENGTH, "meter"),
-            (Dimension.FREQUENCY, "hertz"),
-            (Dimension.INDUCTANCE, "henry"),
-            (Dimension.CAPACITANCE, "farad"),
-            (Dimension.RESISTANCE, "ohm"),
-            (Dimension.POWER, "watt"),
-            (Dimension.VOLTAGE, "volt"),
-            (Dimension.CURRENT, "ampere"),
-            (Dimension.ANGLE, "radian"),
-            (Dimension.CONDUCTIVITY, "siemens/meter"),
-            (Dimension.RATIO, "percent"),
-            (Dimension.COUNT, "turn"),
-            (Dimension.TIME, "second"),
-            (Dimension.MASS, "kilogram"),
-            (Dimension.LOSS, "decibel"),
-            (Dimension.LOSS_PER_LENGTH, "decibel/meter"),
-            (Dimension.TEMPERATURE_COEFFICIENT, "1/kelvin"),
-            (Dimension.CAPACITANCE_PER_LENGTH, "farad/meter"),
-        )
-    }
+    known = {registry.Quantity(1, name).dimensionality: dimension for dimension, name in SI_NAMES.items()}
     return registry, known, pint.UndefinedUnitError
 
 
@@ -389,42 +373,9 @@ def _compound(body: str, dimension: Dimension, refuse: Refuse) -> Number | None:
     return total
 
 
-def _gauge(body: str) -> Reading | None:
-    """Return the diameter of a wire given by its gauge; half a gauge number is its slack."""
-    folded = body.lower()
-    match = _GAUGE.fullmatch(folded) or _GAUGE_LAST.fullmatch(folded)
-    if match is None:
-        return None
-    typed = match[1]
-    if "/" in typed:
-        number = 1 - int(typed[0])
-    elif typed[0] == "0":
-        number = 1 - len(typed)
-    else:
-        number = int(typed)
-    return Reading(value=gauge_diameter(number), relative_slack=92.0 ** (0.5 / 39) - 1)
-
-
-def _to_one(body: str) -> Reading | None:
-    """Return a ratio written as 2:1."""
-    match = _TO_ONE.fullmatch(body)
-    if match is None:
-        return None
-    over, under = (text.replace(",", ".").partition(".") for text in match.groups())
-    top = int(over[0] + over[2]) * 10 ** len(under[2])
-    bottom = int(under[0] + under[2]) * 10 ** len(over[2])
-    if bottom == 0 or top == 0:
-        return None
-    return Reading(value=top / bottom, relative_slack=1 / (2 * int(over[0] + over[2])))
-
-
-_SPECIAL = {Dimension.LENGTH: _gauge, Dimension.RATIO: _to_one}
-
-
 def show(
     value: float,
     dimension: Dimension,
-    *,
     system: str = "metric",
     digits: int = 4,
     resolution: float | None = None,
@@ -433,21 +384,13 @@ def show(
 
     Parameters
     ----------
-    value : float
-        The value. [SI]
-    dimension : Dimension
-        What it measures.
-    system : str
-        "metric" or "imperial".
-    digits : int
-        Significant digits, used without a resolution; zeros at the end are dropped. [1], >= 1
-    resolution : float, optional
-        The step to round to, taken to the nearest 1, 2 or 5; zeros at the end are kept. [SI], > 0
+    value, dimension, system, digits, resolution
+        As for `show_parts`.
 
     Returns
     -------
     str
-        The text, which `read` takes back unless the value is NaN ("not known") or infinite.
+        Number and unit, which `read` takes back unless the value is NaN ("not known") or infinite.
     """
     return " ".join(part for part in show_parts(value, dimension, system, digits, resolution) if part)
 
@@ -470,9 +413,9 @@ def show_parts(
     system : str
         "metric" or "imperial".
     digits : int
-        Significant digits, used without a resolution. [1], >= 1
+        Significant digits, used without a resolution; zeros at the end are dropped. [1], >= 1
     resolution : float, optional
-        The step to round to. [SI], > 0
+        The step to round to, taken to the nearest 1, 2 or 5; zeros at the end are kept. [SI], > 0
 
     Returns
     -------
@@ -501,7 +444,8 @@ def show_parts(
         size = abs(value) if abs(value) > 1e15 * step else round(abs(value) / step) * step * (1 + 1e-12)
     name = _fitting(size, shown)
     if name == "ft":
-        return _feet(value, digits, resolution)
+        step = None if resolution is None else resolution / 0.0254
+        return feet_and_inches(value / 0.0254, digits, step), "in"
     unit = UNITS[dimension][name]
     number = (value * unit.bottom - unit.shift) / unit.top
     if resolution is not None:
@@ -547,23 +491,3 @@ def _fitting(size: float, shown: tuple[tuple[str, float], ...]) -> str:
     if size == 0.0:
         return next((name for name, least in shown if least == 1.0), shown[0][0])
     return next((name for name, least in reversed(shown) if size >= least), shown[0][0])
-
-
-def _feet(value: float, digits: int, resolution: float | None) -> tuple[str, str]:
-    """Return a length in feet and inches; a resolution becomes the fraction of a tape measure."""
-    inches = abs(value) / 0.0254
-    sign = "-" if value < 0 else ""
-    if resolution is None:
-        inches = float(f"{inches:.{digits - 1}e}")
-        feet, rest = divmod(inches, 12)
-        rest_text = rounded(round(rest, 9), 12, None)
-        if rest_text == "12":
-            feet, rest_text = feet + 1, "0"
-    else:
-        part = next((part for part in (1, 2, 4, 8, 16, 32) if 1 / part <= 1.3 * resolution / 0.0254), 64)
-        feet, count = divmod(round(inches * part), 12 * part)
-        whole, over = divmod(count, part)
-        divisor = math.gcd(over, part)
-        fraction = f"{over // divisor}/{part // divisor}" if over else ""
-        rest_text = " ".join(text for text in (str(whole) if whole or not over else "", fraction) if text)
-    return f"{sign}{int(feet)} ft {rest_text}", "in"
