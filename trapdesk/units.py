@@ -296,9 +296,16 @@ def _ask_pint(name: str) -> tuple[Dimension | None, Unit | None]:
     """Return the dimension and size of a unit by its name alone; (None, None) when pint does not know it."""
     registry, known, undefined = _registry()
     try:
-        quantity = registry.Quantity(1, name).to_base_units()
+        # Resolved one by one: pint's parser would take some words, such as nan, for numbers.
+        parts = [registry.get_name(part) for part in name.split("/")]
     except undefined:
         return None, None
+    if "" in parts:
+        return None, None
+    units = registry.UnitsContainer({parts[0]: 1})
+    if len(parts) == 2:
+        units /= registry.UnitsContainer({parts[1]: 1})
+    quantity = registry.Quantity(1, units).to_base_units()
     dimension = known.get(quantity.dimensionality)
     if dimension is None:
         return None, None
