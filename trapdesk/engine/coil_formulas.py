@@ -19,10 +19,13 @@ WHEELER_RANGE = {"length_over_radius": (0.8, np.inf)}
 """Wheeler's limit; within it the formula is good to `WHEELER_ERROR`, at a quarter of it only to 11 %."""
 WHEELER_ERROR = 0.01
 LUNDIN_ERROR = 3e-6
-MEDHURST_ERROR = (-0.22, 0.50)
-"""Error of Medhurst's proximity table against the ring solution, for coils of 3 to 25 turns."""
+MEDHURST_ERROR = (-0.10, 0.55)
+"""Error of Medhurst's proximity table against the rings, 3 to 25 turns, pitch from 1.5 wire diameters on.
+
+Closer turns are worse: the table was made for so many turns that their number does not matter.
+"""
 MEDHURST_RANGE = {"radius_over_skin_depth": (2.5, np.inf), "turns": (30.0, np.inf)}
-"""Where the table is meant to hold: thin skin, and so many turns that their number does not matter."""
+"""Where the table is meant to hold: thin skin, and many turns."""
 CAPACITANCE_RANGE = {"length_over_diameter": (0.1, 50.0)}
 
 WIRE_OVER_PITCH = np.array([1.0, 0.9, 0.8, 0.7, 0.6, 0.5, 0.4, 0.3, 0.2, 0.1])

@@ -15,9 +15,6 @@ VACUUM_PERMEABILITY = 1.25663706212e-6
 VACUUM_PERMITTIVITY = 8.8541878128e-12
 """CODATA 2018. [F/m]"""
 
-THIN_SKIN_RANGE = {"radius_over_skin_depth": (4.0, np.inf)}
-"""Where the thin-skin form r/(2 delta) + 1/4 is good to 1 %."""
-
 GAUGE_RANGE = {"gauge": (-3, 56)}
 """Gauges the law of ASTM B258 is printed for: 0000 (as -3) to 56."""
 

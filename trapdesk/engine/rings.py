@@ -137,7 +137,7 @@ def check_shape(diameter: float, pitch: float, wire_diameter: float) -> None:
 
 
 def _between(turns: float, whole: Callable[[int], tuple[float, float]]) -> tuple[float, float]:
-    """Return the pair `whole` gives, by a cubic over ln turns in between: of ln of the first, of the second."""
+    """Return the pair `whole` gives; between whole turns ln of the first and the second by a cubic."""
     if not 1.0 <= turns <= MOST_TURNS:
         raise ValueError(f"turns must be between 1 and {MOST_TURNS}")
     if float(turns).is_integer():
