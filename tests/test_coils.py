@@ -47,6 +47,8 @@ def test_reference_coil_at_frequency(case):
     assert coil.inductance == pytest.approx(expected["l_hf_total_h"], rel=3e-5)
     assert coil.inductance - wound.inductance == pytest.approx(expected["l_internal_h"], rel=2e-3)
     assert coil.resistance == pytest.approx(expected["r_hf_ohm"], rel=1.1e-3)
+    stretched = expected["r_isolated_per_m_ohm"] * expected["wire_length_m"]
+    assert coil.resistance / wound.proximity_factor == pytest.approx(stretched, rel=1e-8)
     assert coil.q == pytest.approx(expected["q_coil"], rel=1.1e-3)
 
 
