@@ -1,0 +1,100 @@
+"""Rows and sentences as plain lines of at most 79 columns."""
+
+from __future__ import annotations
+
+import math
+import textwrap
+from collections.abc import Iterable
+
+from ..services.figures import AtFrequency, BandFigures, Figures, Stress
+from . import words
+from .rows import Row, summary
+from .shown import impedance, known, percent, swr
+
+WIDTH = 79
+GROUPS: dict[str, str] = {
+    "site": "Site and station",
+    "bands": "Bands",
+    "wires": "Wires of one side",
+    "trap": "Trap, each of two",
+    "stress": "Stress of one trap",
+    "effects": "What moves the resonance",
+    "findings": "Findings",
+}
+
+
+def layout(shown_rows: Iterable[Row]) -> list[str]:
+    """Return rows as lines of at most 79 columns: what was given beside what was found."""
+    lines: list[str] = []
+    group = ""
+    for row in shown_rows:
+        if row.group != group:
+            group = row.group
+            heads = "" if group == "findings" else f"{'given':<17}found"
+            lines += [*([""] if lines else []), f"{GROUPS[group]:<29}{heads}".rstrip()]
+        if group == "findings":
+            lines += said(f"  {row.label}: ", row.value, row.why)
+            continue
+        line = f"  {row.label:<26} {row.given:<16} {row.found}".rstrip()
+        if row.finding is not None:
+            line = f"{line:<{WIDTH - 6}} {words.LEVELS[row.finding.level]}"
+        lines += (
+            [line]
+            if len(line) <= WIDTH
+            else folded(f"  {row.label:<26} ", f"{row.given} {row.found}".strip())
+        )
+    return lines
+
+
+def folded(head: str, text: str, width: int = WIDTH) -> list[str]:
+    """Return text after a head, broken into lines that hang under its first word."""
+    wrapper = textwrap.TextWrapper(
+        width=width, initial_indent=head, subsequent_indent=" " * len(head), break_on_hyphens=False
+    )
+    return wrapper.wrap(text) or [head.rstrip()]
+
+
+def said(head: str, text: str, cure: str) -> list[str]:
+    """Return a finding's sentence and what would help, as lines."""
+    return folded(head, f"{text}. What would help: {cure}." if cure else f"{text}.")
+
+
+def at_rows(figures: Figures, at: Iterable[AtFrequency]) -> list[str]:
+    """Return a small table of the antenna at single frequencies, no finer than the nearest band is known."""
+    lines = ["", "At single frequencies, stress of one trap as a steady carrier"]
+    lines += [
+        f"  {'MHz':>9} {'SWR':>8} {'Z at the feed point':>21} {'sky':>6} {'feed':>8} {'trap peak':>10} {'heat':>8}"
+    ]
+    for one in at:
+        band = min(figures.bands.values(), key=lambda b: abs(math.log(b.aim / one.frequency)))
+        volts, watts = _at_stress(one.stress, band.stress_doubt)
+        feed = known(one.feed_current, one.feed_current * band.stress_doubt, "current")
+        lines += [
+            f"  {one.frequency / 1e6:>9.7g} {swr(one.swr, band.swr_doubt):>8}"
+            f" {impedance(one.impedance, _spread(one.impedance, band)):>21}"
+            f" {percent(one.shares.sky, band.share_doubt):>6}"
+            f" {feed.number + ' ' + feed.unit:>8} {volts:>10} {watts:>8}"
+        ]
+    return lines
+
+
+def _spread(z: complex, band: BandFigures) -> float:
+    """Return the doubt of an impedance away from the band: never a smaller part of it than at the aim."""
+    return band.impedance_doubt * max(1.0, abs(z) / abs(band.aim_impedance))
+
+
+def _at_stress(stress: Stress | None, doubt: float) -> tuple[str, str]:
+    if stress is None:
+        return "", ""
+    volts = known(stress.peak_voltage, stress.peak_voltage * doubt, "voltage")
+    watts = known(stress.watts, stress.watts * doubt, "power")
+    return f"{volts.number} {volts.unit}", f"{watts.number} {watts.unit}"
+
+
+def summary_lines(figures: Figures, width: int = WIDTH) -> list[str]:
+    """Return the summary as lines of text."""
+    return [
+        line
+        for row in summary(figures)
+        for line in folded(f"{row.label:<7}" if row.label else "", row.value, width)
+    ]

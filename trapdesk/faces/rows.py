@@ -1,0 +1,393 @@
+"""The one presenter: figures become rows, which the desk, the command line and the sheet all show."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from typing import Any
+
+from ..design import MODES, Design, Shape, get
+from ..engine.ground import UNKNOWN_SOIL, GroundKind
+from ..errors import visible
+from ..fields import SOLVE, declared
+from ..services.figures import BandFigures, Figures, Finding
+from . import words
+from .lines import (
+    band_line,
+    band_name,
+    check_line,
+    ground_words,
+    length_text,
+    moves_line,
+    next_move,
+    rating,
+    site_line,
+    station_line,
+    trap_line,
+    turns_doubt,
+    wire_line,
+)
+from .shown import (
+    about,
+    exact,
+    impedance,
+    impedance_range,
+    kilohertz_per_centimetre,
+    known,
+    megahertz,
+    percent,
+    swr,
+)
+
+# Which row of a band or a trap a finding belongs to, where its place alone does not tell.
+_FINDING_ROWS = {
+    "swr_wanted": "worst_swr",
+    "wanted_wide": "width",
+    "no_width": "width",
+    "aim_missed": "resonance",
+    "no_resonance": "resonance",
+    "site_doubt": "dip",
+    "ground_share": "ground_share",
+    "trap_heat": "trap_average",
+    "trap_voltage": "trap_worst_peak",
+    "trap_voltage_unrated": "trap_worst_peak",
+}
+
+
+@dataclass(frozen=True, kw_only=True)
+class Row:
+    """One thing given or found: `given` is what somebody set, `value` and `unit` what was found.
+
+    `key` is a dotted key of the design or of the results. `why` says where the number comes from.
+    """
+
+    key: str
+    group: str
+    label: str
+    value: str = ""
+    unit: str = ""
+    given: str = ""
+    why: str = ""
+    finding: Finding | None = None
+
+    @property
+    def found(self) -> str:
+        """Value and unit together."""
+        return f"{self.value} {self.unit}".rstrip()
+
+
+def given(design: Design, key: str) -> str:
+    """Return what somebody set at a dotted key, as text; empty where nothing is set."""
+    value = get(design, key)
+    above, _, name = key.rpartition(".")
+    what = declared(get(design, above) if above else design)[name]
+    if value is None:
+        return ""
+    if value is SOLVE:
+        return "solve"
+    if what.dimension == "frequency":
+        return megahertz(value)
+    return visible(value, 60) if what.dimension in ("text", "choice") else str(exact(value, what.dimension))
+
+
+def rows(figures: Figures) -> tuple[Row, ...]:
+    """Return everything there is to show of a design, group by group, with the findings on their rows."""
+    found = [
+        *_site(figures),
+        *(row for band in figures.bands.values() for row in _band(figures, band)),
+        *_wires(figures),
+        *_trap(figures),
+        *(row for band in figures.bands.values() for row in _stress(figures, band)),
+        *(row for band in figures.bands.values() for row in _effects(band)),
+    ]
+    for finding in words.ranked(figures.findings):
+        index = _row_of(finding, found)
+        if index is not None and found[index].finding is None:
+            found[index] = replace(found[index], finding=finding)
+    return (*found, *_findings(figures))
+
+
+def _row_of(finding: Finding, among: list[Row]) -> int | None:
+    """Return the row a finding belongs to, or None."""
+    name = _FINDING_ROWS.get(finding.code)
+    keys = [f"{finding.where}.{name}"] if name else []
+    for key in (*keys, finding.where):
+        for index, row in enumerate(among):
+            if row.key == key:
+                return index
+    for index, row in enumerate(among):
+        if row.key.startswith(finding.where + "."):
+            return index
+    return None
+
+
+def _input(figures: Figures, key: str, group: str = "site", **more: Any) -> Row:
+    """Return the row of a value somebody set."""
+    above, _, name = key.rpartition(".")
+    what = declared(get(figures.design, above) if above else figures.design)[name]
+    return Row(
+        key=key, group=group, label=what.label, given=given(figures.design, key), why=what.help, **more
+    )
+
+
+def _site(figures: Figures) -> Iterator[Row]:
+    design, lengths = figures.design, figures.lengths
+    yield Row(key="title", group="site", label="design", given=visible(design.title, 40))
+    yield Row(key="basis", group="site", label="these figures are", value=words.ESTIMATE)
+    yield _input(figures, "site.shape")
+    yield _input(figures, "site.height")
+    if design.site.shape is Shape.VEE:
+        if design.site.included_angle is not None:
+            yield _input(figures, "site.included_angle")
+        ends = known(lengths.end_height, 0.1, "length", "m")
+        yield _input(figures, "site.end_height", value=ends.number, unit=ends.unit)
+        slope = f"{math.degrees(lengths.slope):.0f}"
+        yield Row(key="site.slope", group="site", label="slope of the wire", value=slope, unit="deg")
+    soil = ""
+    if design.site.soil_is_unknown:
+        soil = f"{about(UNKNOWN_SOIL.conductivity, 'conductivity')}, {UNKNOWN_SOIL.permittivity:.0f}"
+    yield Row(
+        key="site.soil", group="site", label="ground", given=_ground_given(design), value=soil,
+        why="conductivity and relative permittivity taken for it",
+    )  # fmt: skip
+    yield _input(figures, "station.power")
+    mode = MODES[design.station.mode]
+    yield _input(figures, "station.mode", value=f"{100 * mode.mean:.0f} %", unit="mean while sending")
+    yield _input(figures, "station.reference")
+    yield _input(figures, "station.swr_limit", value="", unit="")
+
+
+def _ground_given(design: Design) -> str:
+    if design.site.ground is not GroundKind.SOIL:
+        return str(design.site.ground)
+    return ground_words(design).partition(",")[0] if design.site.soil_is_unknown else ground_words(design)
+
+
+def _band(figures: Figures, band: BandFigures) -> Iterator[Row]:
+    key, name = f"bands.{band.role}", band_name(band)
+    design = getattr(figures.design.bands, band.role)
+    limit = f"{figures.design.station.swr_limit:.3g}"
+
+    def row(tail: str, label: str, shown_: Any, **more: str) -> Row:
+        value, unit = (shown_, "") if isinstance(shown_, str) else (shown_.value, shown_.unit)
+        return Row(
+            key=f"{key}.{tail}", group="bands", label=f"{name} {label}", value=value, unit=unit, **more
+        )
+
+    doubt = band.frequency_doubt
+    yield row("dip", "dip", known(band.dip, doubt, "frequency", "MHz"), why="where the SWR is least")
+    yield row("dip_swr", "SWR at the dip", swr(band.dip_swr, band.swr_doubt))
+    yield row(
+        "resonance", "resonance", known(band.resonance, doubt, "frequency", "MHz"),
+        given=f"aim {megahertz(band.aim)}", why="where the reactance rises through zero, nearest the aim",
+    )  # fmt: skip
+    yield row("aim_swr", "SWR at the aim", swr(band.aim_swr, band.swr_doubt))
+    yield row("z_aim", "Z at the aim", impedance(band.aim_impedance, band.impedance_doubt))
+    if band.resonance_resistance is not None:
+        resistance = known(band.resonance_resistance, band.impedance_doubt, "resistance", "ohm")
+        yield row("r_resonance", "R at resonance", resistance)
+    low, high = design.wanted
+    yield row("low_swr", "SWR at the low edge", swr(band.low_swr, band.swr_doubt), given=megahertz(low))
+    yield row("high_swr", "SWR at the high edge", swr(band.high_swr, band.swr_doubt), given=megahertz(high))
+    worst = swr(band.worst_swr, band.swr_doubt)
+    yield row("worst_swr", "worst SWR wanted", worst, given=f"limit {limit}")
+    width = known(band.width, doubt, "frequency", "kHz")
+    yield row(
+        "width", "width under the limit", replace(width, doubt=""), why=f"around the dip, SWR below {limit}"
+    )
+    if band.usable is not None:
+        first, last = (known(edge, doubt, "frequency", "MHz").number for edge in band.usable)
+        yield row("usable", "usable", f"{first} to {last} MHz")
+    yield row("sky_share", "to the sky", percent(band.shares.sky, band.share_doubt))
+    yield row("ground_share", "to the ground", percent(band.shares.ground, band.share_doubt))
+    # What the ground takes is not known well; what wire and traps take is as well known as the stress.
+    yield row("wire_share", "to the wire", percent(band.shares.wire, band.stress_doubt * band.shares.wire))
+    if figures.trap is not None:
+        lost = percent(band.shares.trap, band.stress_doubt * band.shares.trap)
+        yield row("trap_share", "to both traps", lost)
+    current = known(band.feed_current, band.feed_current * band.stress_doubt, "current", "A")
+    yield row("feed_rms", "feed current, rms", current, why="at the aim, as a steady carrier")
+
+
+def _wires(figures: Figures) -> Iterator[Row]:
+    lengths, design = figures.lengths, figures.design
+    for name, far in (("inner", "feed point to trap centre"), ("end", "trap centre to the wire's end")):
+        length = getattr(lengths, name)
+        if length is None:
+            continue
+        if name == "inner" and lengths.end is None:
+            far = "feed point to the wire's end"
+        solved = get(design, f"antenna.lengths.{name}") is SOLVE
+        value = length_text(length, lengths.doubt if solved else 0.0)
+        yield Row(
+            key=f"antenna.lengths.{name}", group="wires", label=f"{name} wire", value=value.value,
+            unit=value.unit, given=given(design, f"antenna.lengths.{name}"), why=f"electrical, {far}",
+        )  # fmt: skip
+        for tail, label in (("mark", "tape mark"), ("reel", "off the reel")):
+            yield Row(
+                key=f"antenna.lengths.{name}_{tail}", group="wires", label=f"{name} wire, {label}",
+                value=f"{getattr(lengths, f'{name}_{tail}'):.2f}", unit="m",
+            )  # fmt: skip
+    reserve = design.antenna.lengths.reserve
+    yield Row(
+        key="antenna.lengths.reserve", group="wires", label="extra on each wire", given=str(exact(reserve, "length")),
+        why="left on when cutting, so that wire can still be let out",
+    )  # fmt: skip
+    total = known(lengths.total, 2 * lengths.doubt, "length", "m")
+    yield Row(key="antenna.lengths.total", group="wires", label="tip to tip", value=total.number, unit="m")
+    yield Row(
+        key="antenna.lengths.half_wave", group="wires", label="plain half wave", value=f"{lengths.half_wave:.1f}",
+        unit="m", why="in free space at the lower aim, for comparison",
+    )  # fmt: skip
+
+
+def _trap(figures: Figures) -> Iterator[Row]:
+    trap, design = figures.trap, figures.design
+    if trap is None:
+        return
+
+    def row(tail: str, label: str, shown_: Any, **more: str) -> Row:
+        value, unit = (shown_, "") if isinstance(shown_, str) else (shown_.value, shown_.unit)
+        return Row(key=f"antenna.trap.{tail}", group="trap", label=label, value=value, unit=unit, **more)
+
+    def set_(tail: str) -> str:
+        return given(design, f"antenna.trap.{tail}")
+
+    yield row(
+        "resonance", "trap resonance", megahertz(trap.resonance), given=set_("resonance"),
+        why="what to bring it to, by itself, off the wire",
+    )  # fmt: skip
+    if trap.resonance_doubt > 0:
+        off = known(trap.resonance_doubt, trap.resonance_doubt, "frequency", "kHz").doubt
+        yield row("resonance_doubt", "as wound, off by up to", f"{off} kHz", why="before it is brought there")
+    own = design.antenna.trap.coil.kind if design.antenna.trap else ""
+    inductance = known(trap.inductance, trap.inductance_doubt, "inductance")
+    yield row(
+        "coil.inductance", "inductance", inductance, given=set_("coil.inductance") if own == "given" else ""
+    )
+    parts = exact(trap.fitted_capacitance, "capacitance")
+    fitted = f"{trap.fitted_capacitance * 1e12:.3g}"
+    solved = get(design, "antenna.trap.capacitor.capacitance") is SOLVE
+    yield row(
+        "capacitor.capacitance", "capacitor", replace(parts, number=fitted, unit="pF") if solved else parts,
+        given=set_("capacitor.capacitance"), why="what is fitted; the coil adds its own",
+    )  # fmt: skip
+    if trap.coil is not None:
+        coil = trap.coil
+        turns = known(coil.turns, turns_doubt(figures), "count")
+        yield row("coil.turns", "turns", replace(turns, unit=""), given=set_("coil.turns"))
+        yield row(
+            "coil.diameter",
+            "coil diameter",
+            f"{coil.diameter * 1e3:.1f} mm",
+            why="centre to centre of the wire",
+        )
+        yield row("coil.length", "winding length", f"{coil.length * 1e3:.0f} mm", why="turns times pitch")
+        yield row("coil.wire", "wire in the coil", f"{coil.wire_length:.2f} m", why="without the tails")
+        low, middle, high = (c * 1e12 for c in coil.self_capacitance)
+        yield row(
+            "coil.self_capacitance", "coil's own capacitance", f"{middle:.1f} ({low:.1f} to {high:.1f}) pF"
+        )
+    least, most = trap.q_range
+    spread = f" ({about(least, 'ratio')} to {about(most, 'ratio')})" if most > least else ""
+    yield row("q", "Q of the trap", f"{about(trap.q, 'ratio', 2 if spread else 3)}{spread}")
+    yield row("dynamic", "dynamic resistance", about(trap.dynamic_resistance, "resistance"))
+    for role, z in trap.impedance.items():
+        name = visible(getattr(design.bands, role).name, 12)
+        yield row(f"z_{role}", f"trap Z at the {name} aim", impedance_range(z))
+
+
+def _stress(figures: Figures, band: BandFigures) -> Iterator[Row]:
+    if band.stress is None or band.worst_stress is None:
+        return
+    name, rated = band_name(band), rating(figures.design)
+
+    def row(tail: str, label: str, value: float, dimension: str, **more: str) -> Row:
+        text = known(
+            value, value * band.stress_doubt, dimension, {"power": "W", "current": "A"}.get(dimension, "")
+        )
+        key = f"bands.{band.role}.{tail}"
+        return Row(key=key, group="stress", label=f"{name} {label}", value=text.value, unit=text.unit, **more)
+
+    at = "at the aim, as a steady carrier"
+    yield row("trap_peak", "peak volts at the aim", band.stress.peak_voltage, "voltage", why=at)
+    yield row(
+        "trap_worst_peak", "worst peak volts", band.worst_stress.peak_voltage, "voltage",
+        given=f"rated {about(rated, 'voltage', 3)}" if rated else "no rating",
+        why=f"in the wanted part, at {megahertz(band.worst_stress.frequency)}",
+    )  # fmt: skip
+    yield row("trap_rms", "current, rms", band.stress.rms_current, "current", why=at)
+    yield row("trap_coil", "coil current, rms", band.stress.coil_current, "current", why=at)
+    yield row("trap_capacitor", "capacitor current, rms", band.stress.capacitor_current, "current", why=at)
+    yield row("trap_heat", "heat, steady carrier", band.stress.watts, "power", why=at)
+    yield row(
+        "trap_average", "worst heat, average", band.worst_stress.average_watts, "power",
+        given=figures.design.station.mode, why="in the wanted part, in this mode while sending",
+    )  # fmt: skip
+
+
+def _effects(band: BandFigures) -> Iterator[Row]:
+    effects = band.effects
+    if effects is None:
+        return
+    name, key = band_name(band), f"bands.{band.role}.effects"
+
+    def row(tail: str, label: str, value: str, why: str) -> Row:
+        return Row(key=f"{key}.{tail}", group="effects", label=f"{name} {label}", value=value, why=why)
+
+    for tail, label in (("inner", "per cm of inner wire"), ("end", "per cm of end wire")):
+        slope = getattr(effects, tail)
+        if slope is not None:
+            way = "lower" if slope < 0 else "higher"
+            why = f"both sides made longer: the band goes {way}"
+            yield row(tail, label, f"{kilohertz_per_centimetre(slope)} {way}", why)
+    if effects.trap is not None:
+        way = "higher" if effects.trap > 0 else "lower"
+        text = f"{about(abs(effects.trap) / 100, 'frequency')} {way}"
+        yield row("trap", "per % of trap", text, "both traps tuned 1 % higher")
+    if effects.height is not None:
+        way = "higher" if effects.height > 0 else "lower"
+        yield row(
+            "height", "per m of height", f"{about(abs(effects.height), 'frequency')} {way}", "hung higher"
+        )
+    if effects.soil is not None:
+        low, high = sorted(effects.soil)
+        text = f"{low / 1e3:+.0f} to {high / 1e3:+.0f} kHz"
+        yield row("soil", "from dry to wet soil", text, "against the soil taken")
+
+
+def _findings(figures: Figures) -> Iterator[Row]:
+    for number, finding in enumerate(words.ranked(figures.findings)):
+        yield Row(
+            key=f"findings.{number}", group="findings", label=words.LEVELS[finding.level],
+            value=words.sentence(finding, figures.design), why=words.cure(finding), finding=finding,
+        )  # fmt: skip
+
+
+def summary(figures: Figures) -> tuple[Row, ...]:
+    """Return what is needed to trust or doubt a design in ten seconds, a short text each."""
+
+    def row(key: str, label: str, value: str, finding: Finding | None = None) -> Row:
+        return Row(key=key, group="summary", label=label, value=value, finding=finding)
+
+    found = [
+        row("title", "", f"{visible(figures.design.title, 40)}: {words.ESTIMATE}"),
+        row("site", "site", site_line(figures)),
+        row("station", "radio", station_line(figures.design)),
+    ]
+    found += [row(f"bands.{b.role}", band_name(b), band_line(figures, b)) for b in figures.bands.values()]
+    found += [row("antenna.lengths", "wires", wire_line(figures))]
+    if moves := moves_line(figures):
+        found += [row("effects", "1 cm", moves)]
+    if figures.trap is not None:
+        found += [row("antenna.trap", "trap", trap_line(figures))]
+    found += [row("check", "check", check_line(figures))]
+    worst = next(iter(words.ranked(figures.findings)), None)
+    if worst is None:
+        found += [row("worst", "fine", "no findings")]
+    else:
+        text = words.sentence(worst, figures.design)
+        helps = words.cure(worst)
+        found += [row("worst", words.LEVELS[worst.level], f"{text}; {helps}" if helps else text, worst)]
+    return (*found, row("next", "next", next_move(figures)))

@@ -1,0 +1,127 @@
+"""Numbers as a person reads them: in everyday units, and never finer than they are known."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from ..units import UNITS, Dimension, show, show_parts
+
+LARGEST_SWR = 10.0
+"""A larger SWR is only said to be larger: nobody can use it, and no estimate of it holds."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class Shown:
+    """A number as text, how far it may be off (empty when not known), and its unit."""
+
+    number: str
+    doubt: str = ""
+    unit: str = ""
+
+    @property
+    def value(self) -> str:
+        """Number and doubt without the unit."""
+        return f"{self.number} +- {self.doubt}" if self.doubt else self.number
+
+    def __str__(self) -> str:
+        """Return number, doubt and unit."""
+        return f"{self.value} {self.unit}".rstrip()
+
+
+NONE = Shown(number="none")
+
+
+def resolution(doubt: float) -> float:
+    """Return the finest step worth printing for a doubt: the power of ten at or below it."""
+    return 10.0 ** math.floor(math.log10(doubt) + 1e-9)
+
+
+def rounded(number: float, step: float) -> str:
+    """Return a number rounded to a power of ten, zeros at its end kept."""
+    power = round(math.log10(step))
+    text = f"{round(number / 10.0**power) * 10.0**power:.{max(0, -power)}f}"
+    return text.removeprefix("-") if float(text) == 0 else text
+
+
+def known(value: float | None, doubt: float | None, dimension: str, unit: str = "") -> Shown:
+    """Return a number no finer than its doubt allows, with the doubt beside it.
+
+    A doubt of none or zero leaves the number with four digits. `unit` is chosen by the value unless given.
+    """
+    if value is None or not math.isfinite(value):
+        return NONE if value is None else Shown(number=show(value, Dimension(dimension)))
+    kind = Dimension(dimension)
+    if not doubt or not math.isfinite(doubt):
+        return exact(value, dimension, unit)
+    name = unit or show_parts(max(abs(value), resolution(doubt)), kind)[1]
+    size = UNITS[kind].get(name)
+    factor = size.bottom / size.top if size else 1.0
+    step = resolution(doubt * factor)
+    # A doubt is rounded up unless it is over by a quarter of its step at most.
+    off = math.ceil(doubt * factor / step - 0.25) * step
+    return Shown(number=rounded(value * factor, step), doubt=rounded(off, step), unit=name)
+
+
+def exact(value: float | None, dimension: str, unit: str = "") -> Shown:
+    """Return a number somebody set, with as many digits as it needs up to five."""
+    if value is None:
+        return NONE
+    kind = Dimension(dimension)
+    if unit and math.isfinite(value):
+        size = UNITS[kind][unit]
+        return Shown(number=f"{value * size.bottom / size.top:.5g}", unit=unit)
+    number, name = show_parts(value, kind, digits=5)
+    return Shown(number=number, unit=name)
+
+
+def about(value: float, dimension: str, digits: int = 2) -> str:
+    """Return a number that is only roughly known, with its unit."""
+    return show(value, Dimension(dimension), digits=digits)
+
+
+def swr(value: float, doubt: float = 0.05) -> str:
+    """Return an SWR no finer than its doubt and never finer than one decimal in ten."""
+    if not value <= LARGEST_SWR:
+        return f"over {LARGEST_SWR:.0f}"
+    step = min(max(resolution(doubt) if doubt > 0 else 0.01, 0.01), 1.0)
+    return rounded(max(value, 1.0), step)
+
+
+def percent(share: float, doubt: float = 0.01) -> str:
+    """Return a share in per cent, no finer than its doubt."""
+    step = max(resolution(100 * doubt) if doubt > 0 else 1.0, 1.0)
+    text = rounded(100 * share, step)
+    return f"under {step:.0f} %" if text == "0" and share > 0 else f"{text} %"
+
+
+def megahertz(value: float, digits: int = 5) -> str:
+    """Return a frequency somebody set, in MHz with at least two decimals."""
+    text = f"{value / 1e6:.{digits}g}"
+    whole, _, decimals = text.partition(".")
+    return f"{whole}.{decimals:0<2} MHz"
+
+
+def impedance(value: complex, doubt: float = 1.0) -> str:
+    """Return R and X in ohm, no finer than their doubt."""
+    step = max(resolution(doubt) if doubt > 0 else 0.1, 0.1)
+    sign = "-" if value.imag < 0 else "+"
+    return f"{rounded(value.real, step)} {sign} j{rounded(abs(value.imag), step)} ohm"
+
+
+def impedance_range(value: complex) -> str:
+    """Return an impedance to three digits of its size, for a part with no doubt of its own."""
+    step = resolution(abs(value)) / 100 if value else 0.1
+    return impedance(value, step)
+
+
+def kilohertz_per_centimetre(slope: float) -> str:
+    """Return what one centimetre does, from Hz per metre, to two digits."""
+    return f"{abs(slope) / 1e5:.2g} kHz"
+
+
+def centimetres(length: float) -> str:
+    """Return a length in whole centimetres, from half a centimetre down in millimetres."""
+    if abs(length) < 0.0095:
+        return f"{abs(length) * 1e3:.0f} mm"
+    return f"{abs(length) * 100:.0f} cm"

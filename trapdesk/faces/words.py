@@ -1,0 +1,250 @@
+"""Sentences: what a finding says and what would help, why there is no answer, and the cautions."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from ..design import Design, get
+from ..errors import NoAnswer, visible
+from ..fields import declared
+from ..services.figures import Finding, Level
+from ..units import Dimension, show
+from . import shown
+
+ESTIMATE = "an estimate, not measured"
+
+LEVELS: dict[Level, str] = {Level.FINE: "fine", Level.WATCH: "watch", Level.STOP: "STOP"}
+SEVERITY = (Level.STOP, Level.WATCH, Level.FINE)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Saying:
+    """What a finding says, with {where}, {value} and {limit} to fill in, and what would help.
+
+    `bare` is said when there is no limit. `as_` is how value and limit read when not by their dimension.
+    """
+
+    says: str
+    helps: str
+    bare: str = ""
+    as_: str = ""
+
+
+SAYINGS: dict[str, Saying] = {
+    "swr_wanted": Saying(
+        says="{where}: SWR reaches {value} in the wanted part, the limit is {limit}",
+        bare="{where}: SWR reaches {value} in the wanted part",
+        helps="want less of the band, move the aim, or expect to use a tuner",
+        as_="swr",
+    ),
+    "wanted_wide": Saying(
+        says="{where}: {value} is wanted, {limit} lies within the SWR limit",
+        bare="{where}: {value} is wanted, more than lies within the SWR limit",
+        helps="want less of the band, or expect to use a tuner at its edges",
+    ),
+    "aim_missed": Saying(
+        says="{where}: resonance lies {value} the aim; up to {limit} would not matter",
+        bare="{where}: resonance lies {value} the aim",
+        helps="let both wires be solved, or change the one that was set",
+        as_="miss",
+    ),
+    "no_resonance": Saying(
+        says="{where}: no resonance near the aim of {value}",
+        helps="change the wires, or let them be solved",
+    ),
+    "no_width": Saying(
+        says="{where}: nowhere within the SWR limit of {limit}, the dip is {value}",
+        bare="{where}: nowhere within the SWR limit, the dip is {value}",
+        helps="raise the limit, change the height or the angle, or use a tuner",
+        as_="swr",
+    ),
+    "trap_voltage": Saying(
+        says="the trap bears {value} peak, its capacitor is rated {limit}",
+        bare="the trap bears {value} peak",
+        helps="a capacitor of higher rating, several in series, more capacitance, or less power",
+    ),
+    "trap_voltage_unrated": Saying(
+        says="the trap bears {value} peak and no capacitor rating is given; {limit} would leave a margin",
+        bare="the trap bears {value} peak and no capacitor rating is given",
+        helps="enter what the capacitor is rated for, peak, at radio frequency",
+    ),
+    "trap_heat": Saying(
+        says="each trap turns {value} into heat on average; from {limit} on it gets warm",
+        bare="each trap turns {value} into heat on average",
+        helps="thicker wire on the coil, another trap resonance, less power or shorter overs",
+    ),
+    "end_low": Saying(
+        says="the wire ends hang at {value}, below {limit}: within reach, and they carry high voltage",
+        bare="the wire ends hang at {value}: within reach, and they carry high voltage",
+        helps="raise the ends or the feed point, or open the angle",
+    ),
+    "trap_far": Saying(
+        says="the trap resonates at {value}, far below the upper band that starts at {limit}",
+        bare="the trap resonates at {value}, far from the upper band",
+        helps="fewer turns or less capacitance: in or just below the band serves best",
+    ),
+    "trap_above_band": Saying(
+        says="the trap resonates at {value}, above the upper band that ends at {limit}",
+        bare="the trap resonates at {value}, above the upper band",
+        helps="more turns or more capacitance: in or just below the band serves best",
+    ),
+    "soil_unknown": Saying(
+        says="the soil is not known; dry or wet, resonance may lie {value} off; naming it narrows that",
+        helps="name the soil, or measure the dip and trust that",
+    ),
+    "coil_range": Saying(
+        says="the coil's {where} is {value}, its formulas are held to {limit}",
+        bare="the coil's {where} is {value}, outside the range its formulas hold for",
+        helps="wind it, measure its inductance, and enter that as a given coil",
+    ),
+    "site_doubt": Saying(
+        says="{where}: site and parts may move the dip by {value}, more than the {limit} there is to spare",
+        bare="{where}: site and parts may move the dip by {value}",
+        helps="leave the wires long, measure, then cut",
+    ),
+    "ground_share": Saying(
+        says="{where}: the ground takes about {value} of the power, more than {limit}",
+        bare="{where}: the ground takes about {value} of the power",
+        helps="hang it higher",
+        as_="percent",
+    ),
+    "length_odd": Saying(
+        says="tip to tip the wire is {value} of a plain half wave, where {limit} would be the usual bound",
+        bare="tip to tip the wire is {value} of a plain half wave, which is unusual",
+        helps="look over the aims, the trap's values and the lengths that were set",
+        as_="percent",
+    ),
+    "not_converged": Saying(
+        says="{where}: the computation did not settle, {value} is left where {limit} is allowed",
+        bare="{where}: the computation did not settle",
+        helps="do not build from these figures; change the design a little and look again",
+    ),
+}
+
+REASONS = {
+    "aim_not_met": "no wire lengths give resonance at the aim",
+    "ends_too_low": "the wire that meets the aim reaches the ground",
+    "side_shorter_than_its_drop": "a side is shorter than the drop to the height of its ends",
+    "coil_resonates_below_by_itself": "the coil alone resonates below the trap's resonance",
+    "no_such_coil": "no number of turns on this former makes the coil that is needed",
+}
+"""Why there is no answer, by the code of `NoAnswer`."""
+
+POWER_LINES = (
+    "Power lines kill. Keep wire, mast and halyard away from every overhead line, much further"
+    " than the length of antenna plus mast, also when they fall or swing."
+)
+CAUTIONS: tuple[str, ...] = (
+    POWER_LINES,
+    "Trap and wire ends carry high voltage, kilovolts at 100 W, and any part of a transmitting"
+    " antenna burns. Keep people, animals and what may catch fire out of reach of it.",
+    "Nobody on the halyard or at the wire while transmitting: lock the transmitter out first.",
+    "People may not be exposed to strong fields: keep well away while transmitting; the law sets"
+    " the limits, and no distance is worked out here.",
+    "Masts need guys, a clear fall zone and somebody who knows how.",
+    "Take it down and disconnect the line before a thunderstorm. No arrester makes it safe to stay.",
+    "Volts and heat are estimates: leave a margin and begin at low power.",
+    "Local codes and licensed practice decide, not this sheet.",
+)
+
+
+def place(where: str, design: Design) -> str:
+    """Return what a person calls the place a dotted key names: a band by its name, else its label."""
+    head, _, rest = where.partition(".")
+    if head == "bands" and rest:
+        band = getattr(design.bands, rest.split(".")[0], None)
+        if band is not None:
+            return visible(band.name, 20)
+    above, _, name = where.rpartition(".")
+    try:
+        part = get(design, above) if above else design
+        return declared(part)[name].label
+    except (KeyError, TypeError, AttributeError):
+        return visible(where.replace("_", " ").replace(".", " "), 60)
+
+
+def sentence(finding: Finding, design: Design) -> str:
+    """Return what a finding says, with its number and its limit; a code without words is spoken as it is."""
+    saying = SAYINGS.get(finding.code)
+    where = place(finding.where, design)
+    as_ = saying.as_ if saying else ""
+    value = amount(finding.value, finding.dimension, as_)
+    limit = "" if finding.limit is None else amount(finding.limit, finding.dimension, as_ and as_ + " limit")
+    if saying is None:
+        text = f"{where}: {visible(finding.code.replace('_', ' '))}, {value}"
+        return f"{text}, limit {limit}" if limit else text
+    if as_ == "swr" and finding.limit is not None and finding.value > finding.limit >= float_or(value):
+        value = f"just over {limit}"
+    if not limit:
+        return (saying.bare or saying.says).format(where=where, value=value)
+    return saying.says.format(where=where, value=value, limit=limit)
+
+
+def float_or(text: str, otherwise: float = math.inf) -> float:
+    """Return a number that may have become words."""
+    try:
+        return float(text)
+    except ValueError:
+        return otherwise
+
+
+def cure(finding: Finding) -> str:
+    """Return what would help; empty where nothing needs help, and for a code without words."""
+    saying = SAYINGS.get(finding.code)
+    return saying.helps if saying and finding.level is not Level.FINE else ""
+
+
+def amount(value: float, dimension: str, as_: str = "") -> str:
+    """Return a finding's number in words, to two or three digits."""
+    if as_ == "swr":
+        return shown.swr(value, 0.1)
+    if as_ == "swr limit":
+        return f"{value:.3g}"
+    if as_ in ("percent", "percent limit"):
+        return shown.percent(value)
+    if not math.isfinite(value):
+        return "no number"
+    if as_ == "miss":
+        return f"{show(abs(value), Dimension(dimension), digits=2)} {'above' if value > 0 else 'below'}"
+    # A frequency is told to the kilohertz when it is a place on the dial, to two digits when it is a distance.
+    if dimension == "frequency":
+        return shown.megahertz(value, 4) if value >= 1e6 else show(value, Dimension(dimension), digits=2)
+    return show(value, Dimension(dimension), digits=3 if as_ else 2)
+
+
+def ranked(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:
+    """Return the findings, the most serious first, otherwise as they came."""
+    return tuple(sorted(findings, key=lambda f: SEVERITY.index(f.level)))
+
+
+_SUFFIXES = {
+    "hz": Dimension.FREQUENCY,
+    "h": Dimension.INDUCTANCE,
+    "f": Dimension.CAPACITANCE,
+    "ohm": Dimension.RESISTANCE,
+    "m": Dimension.LENGTH,
+    "v": Dimension.VOLTAGE,
+    "a": Dimension.CURRENT,
+    "w": Dimension.POWER,
+}
+
+
+def no_answer(error: NoAnswer) -> str:
+    """Return in one line why there is no answer, how near it came and what would help."""
+    reason = REASONS.get(error.code)
+    if reason is None:
+        return str(error)
+    numbers = []
+    for name, value in error.numbers.items():
+        words, _, suffix = name.rpartition("_")
+        kind = _SUFFIXES.get(suffix)
+        if kind is None or not words:
+            words, text = name, f"{value:.4g}"
+        else:
+            text = show(value, kind)
+        numbers.append(f"{visible(words.replace('_', ' '))} {text}")
+    line = f"{visible(error.where, 120)}: {reason}" if error.where else reason
+    if numbers:
+        line += f" ({', '.join(numbers)})"
+    return f"{line}; {visible(error.help, 300)}" if error.help else line
