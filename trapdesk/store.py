@@ -1,0 +1,239 @@
+"""Designs and their TOML files: reading with every fault at once, saving without loss, the presets."""
+
+from __future__ import annotations
+
+import difflib
+import json
+import os
+import secrets
+import stat
+from dataclasses import dataclass
+from importlib import resources
+from pathlib import Path
+from typing import Any
+
+from . import toml_edit, units
+from .design import Design
+from .errors import FileFault, TrapdeskError
+from .fields import SOLVE, Declared, walk
+from .toml_read import HEAD, read_text
+
+FIRST_PRESET = "40-20-vee"
+"""The preset that opens when nothing else is asked for."""
+
+LARGEST_FILE = 1_000_000
+
+
+@dataclass(frozen=True, kw_only=True)
+class Document:
+    """A design as it was opened: with its text, and its path unless it is a preset."""
+
+    design: Design
+    text: str
+    name: str
+    path: Path | None = None
+
+
+@dataclass(frozen=True, kw_only=True)
+class Saved:
+    """What was written: where, and whether the person's comments and layout are still there."""
+
+    path: Path
+    comments_kept: bool
+
+
+def load(path: str | os.PathLike[str]) -> Design:
+    """Return the design in a file; FileFault when there is none, DesignFault with all that is wrong in it."""
+    return read_text(read_file(path), os.fspath(path))
+
+
+def read_file(path: str | os.PathLike[str]) -> str:
+    """Return the text of a file; FileFault when it cannot be read, is too large or is not text."""
+    try:
+        with open(path, "rb") as file:
+            data = file.read(LARGEST_FILE + 1)
+    except FileNotFoundError:
+        raise FileFault(path, "not_found", help=_near_presets(os.fspath(path))) from None
+    except IsADirectoryError:
+        raise FileFault(path, "is_directory", help="name a file in it") from None
+    except (OSError, ValueError) as error:
+        raise FileFault(path, "not_readable", help=_reason(error)) from None
+    if len(data) > LARGEST_FILE:
+        raise FileFault(path, "too_large", help=f"a design is at most {LARGEST_FILE // 1000} kB")
+    try:
+        text = data.decode("utf-8")
+    except UnicodeDecodeError as error:
+        raise FileFault(path, "not_text", help=f"byte {error.start + 1} is no part of it") from None
+    if "\0" in text:
+        raise FileFault(path, "not_text", help=f"byte {data.index(0) + 1} is zero: a binary file")
+    return text
+
+
+def find(argument: str | os.PathLike[str] = FIRST_PRESET) -> Document:
+    """Return what a person named: a file, or else a preset, with or without .toml."""
+    name = os.fspath(argument)
+    if not os.path.lexists(argument) and (known := name.removesuffix(".toml")) in presets():
+        design, text = preset(known)
+        return Document(design=design, text=text, name=known)
+    text = read_file(argument)
+    return Document(design=read_text(text, name), text=text, name=name, path=Path(argument))
+
+
+def presets() -> list[str]:
+    """Return the names of the presets."""
+    return sorted(f.name.removesuffix(".toml") for f in _shelf().iterdir() if f.name.endswith(".toml"))
+
+
+def preset(name: str) -> tuple[Design, str]:
+    """Return a preset's design and text; FileFault when there is no such preset."""
+    known = name.removesuffix(".toml")
+    if known not in presets():
+        raise FileFault(name, "not_found", help=_near_presets(name))
+    text = _shelf().joinpath(f"{known}.toml").read_text("utf-8")
+    return read_text(text, known), text
+
+
+def _shelf() -> Any:
+    """Return the folder of the presets: in the installed package, else at the top of the checkout."""
+    packaged = resources.files("trapdesk") / "presets"
+    return packaged if packaged.is_dir() else Path(__file__).parents[1] / "presets"
+
+
+def _near_presets(name: str) -> str:
+    known = presets()
+    near = difflib.get_close_matches(Path(name).name.removesuffix(".toml")[:60], known, n=1)
+    return f"did you mean the preset {near[0]}?" if near else f"presets are {', '.join(known)}"
+
+
+def _reason(error: Exception) -> str:
+    return (error.strerror if isinstance(error, OSError) else "") or str(error)
+
+
+def to_text(design: Design, original_text: str | None = None) -> str:
+    """Return a design as TOML: the original text with values changed in place where that is possible.
+
+    Values that did not change stay as the person wrote them. Raises DesignFault for a design that could
+    not be read again.
+    """
+    return _to_text(design, original_text)[0]
+
+
+def _to_text(design: Design, original_text: str | None) -> tuple[str, bool]:
+    """Return the text, and whether comments and layout of the original are in it."""
+    wanted = _written(design)
+    if original_text is not None:
+        edited = _edited(design, wanted, original_text)
+        if edited is not None:
+            return edited, True
+    text = _fresh(wanted)
+    if read_text(text) != design:
+        raise ValueError("design must read back from its text")
+    return text, original_text is None
+
+
+def _edited(design: Design, wanted: dict[str, str], original: str) -> str | None:
+    """Return the original with its changed values set; None where what comes out is not the design."""
+    try:
+        before = _written(read_text(original))
+        changed = {key for key, value in wanted.items() if before.get(key) != value}
+        aliases = {
+            f"{key.rpartition('.')[0]}.{known.alias}": key for key, known, _ in walk(design) if known.alias
+        }
+        edited = toml_edit.edit(original, wanted, changed, aliases)
+        return edited if read_text(edited) == design else None
+    except (TrapdeskError, toml_edit.Unforeseen):
+        return None
+
+
+def _written(design: Design) -> dict[str, str]:
+    """Return every value there is as TOML, by dotted key, in the order of a fresh file."""
+    written = dict(HEAD)
+    for key, known, value in walk(design):
+        if known.dimension != "part":
+            if value is not None:
+                written[key] = _value(known, value)
+        elif value is not None and isinstance(known.choices, dict):
+            written[f"{key}.kind"] = _text(value.kind)
+    return written
+
+
+def _value(known: Declared, value: Any) -> str:
+    """Return one value as TOML."""
+    if value is SOLVE:
+        return _text(SOLVE.value)
+    if known.dimension in ("text", "choice"):
+        return _text(str(value))
+    if known.example.startswith("AWG"):
+        gauge = next((n for n in range(41) if units.gauge_diameter(n) == value), None)
+        if gauge is not None:
+            return _text(f"AWG {gauge}")
+    written = units.to_text(value, units.Dimension(known.dimension))
+    return written if known.dimension in ("ratio", "count") else _text(written)
+
+
+def _text(text: str) -> str:
+    """Return a TOML string; TOML escapes what JSON does, and DEL."""
+    return json.dumps(text, ensure_ascii=False).replace("\x7f", "\\u007f")
+
+
+def _fresh(wanted: dict[str, str]) -> str:
+    """Return a file of these values alone."""
+    tables: dict[str, list[str]] = {"": []}
+    for key, value in wanted.items():
+        table, _, name = key.rpartition(".")
+        tables.setdefault(table, []).append(f"{name} = {value}\n")
+    return "\n".join((f"[{table}]\n" if table else "") + "".join(lines) for table, lines in tables.items())
+
+
+def save(design: Design, path: str | os.PathLike[str], original_text: str | None = None) -> Saved:
+    """Write a design to a file, all of it or nothing, and say whether comments were kept.
+
+    The new text is on the disk under another name before it takes the old one's place, so a failure at any
+    moment leaves the old file or the new one. A link is followed. Raises FileFault when that cannot be done,
+    DesignFault for a design that could not be read again.
+    """
+    text, kept = _to_text(design, original_text)
+    try:
+        target = os.path.realpath(path)
+        mode = _mode(target)
+        if mode is not None and not stat.S_ISREG(mode):
+            code = "is_directory" if stat.S_ISDIR(mode) else "not_writable"
+            raise FileFault(path, code, help="a design goes into a file of its own")
+        if mode is not None and not os.access(target, os.W_OK):
+            raise FileFault(path, "not_writable", help="it is read-only; save under another name")
+        _replace(target, text.encode("utf-8"), mode)
+    except (OSError, ValueError) as error:
+        raise FileFault(path, "not_writable", help=_reason(error)) from None
+    return Saved(path=Path(path), comments_kept=kept)
+
+
+def _mode(target: str) -> int | None:
+    """Return kind and permissions of what is there, None where nothing is."""
+    try:
+        return os.stat(target).st_mode
+    except FileNotFoundError:
+        return None
+
+
+def _replace(target: str, data: bytes, mode: int | None) -> None:
+    """Put bytes in the place of a file."""
+    folder = os.path.dirname(target)
+    beside = os.path.join(folder, f".{secrets.token_hex(6)}.trapdesk")
+    handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o666)
+    try:
+        with open(handle, "wb") as file:
+            if mode is not None:
+                os.fchmod(handle, stat.S_IMODE(mode))
+            file.write(data)
+            file.flush()
+            os.fsync(handle)
+        os.replace(beside, target)
+    except BaseException:
+        os.unlink(beside)
+        raise
+    # The new name itself must outlive a power cut.
+    entry = os.open(folder, os.O_RDONLY)
+    try:
+        os.fsync(entry)
+    finally:
+        os.close(entry)
