@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 import textwrap
 from collections.abc import Iterable
 
@@ -22,6 +23,10 @@ GROUPS: dict[str, str] = {
     "findings": "Findings",
 }
 
+# A number stays on one line with its unit.
+_UNIT = re.compile(r"(?<=\d) (?=(?:[munpk]?[mVWAFH]|cm|[kM]?Hz|[kM]?ohm|deg|turns|%)(?![A-Za-z]))")
+_GLUE = "\x1f"
+
 
 def layout(shown_rows: Iterable[Row]) -> list[str]:
     """Return rows as lines of at most 79 columns: what was given beside what was found."""
@@ -31,18 +36,17 @@ def layout(shown_rows: Iterable[Row]) -> list[str]:
         if row.group != group:
             group = row.group
             heads = "" if group == "findings" else f"{'given':<17}found"
-            lines += [*([""] if lines else []), f"{GROUPS[group]:<29}{heads}".rstrip()]
+            lines += [*([""] if lines else []), f"{GROUPS[group]:<30}{heads}".rstrip()]
         if group == "findings":
             lines += said(f"  {row.label}: ", row.value, row.why)
             continue
-        line = f"  {row.label:<26} {row.given:<16} {row.found}".rstrip()
+        line = f"  {row.label:<27} {row.given:<16} {row.found}".rstrip()
         if row.finding is not None:
             line = f"{line:<{WIDTH - 6}} {words.LEVELS[row.finding.level]}"
-        lines += (
-            [line]
-            if len(line) <= WIDTH
-            else folded(f"  {row.label:<26} ", f"{row.given} {row.found}".strip())
-        )
+        if len(line) > WIDTH:
+            lines += folded(f"  {row.label:<27} ", f"{row.given} {row.found}".strip())
+        else:
+            lines += [line]
     return lines
 
 
@@ -51,7 +55,8 @@ def folded(head: str, text: str, width: int = WIDTH) -> list[str]:
     wrapper = textwrap.TextWrapper(
         width=width, initial_indent=head, subsequent_indent=" " * len(head), break_on_hyphens=False
     )
-    return wrapper.wrap(text) or [head.rstrip()]
+    lines = wrapper.wrap(_UNIT.sub(_GLUE, text))
+    return [line.replace(_GLUE, " ") for line in lines] or [head.rstrip()]
 
 
 def said(head: str, text: str, cure: str) -> list[str]:
@@ -61,19 +66,18 @@ def said(head: str, text: str, cure: str) -> list[str]:
 
 def at_rows(figures: Figures, at: Iterable[AtFrequency]) -> list[str]:
     """Return a small table of the antenna at single frequencies, no finer than the nearest band is known."""
-    lines = ["", "At single frequencies, stress of one trap as a steady carrier"]
-    lines += [
-        f"  {'MHz':>9} {'SWR':>8} {'Z at the feed point':>21} {'sky':>6} {'feed':>8} {'trap peak':>10} {'heat':>8}"
-    ]
+    lines = ["", "At single frequencies, the trap's stress that of a steady carrier"]
+    head = f"  {'MHz':>9} {'SWR':>8} {'Z at the feed point':>21} {'sky':>6} {'feed':>8}"
+    lines += [head if figures.trap is None else f"{head} {'trap peak':>10} {'heat':>8}"]
     for one in at:
         band = min(figures.bands.values(), key=lambda b: abs(math.log(b.aim / one.frequency)))
         volts, watts = _at_stress(one.stress, band.stress_doubt)
         feed = known(one.feed_current, one.feed_current * band.stress_doubt, "current")
         lines += [
-            f"  {one.frequency / 1e6:>9.7g} {swr(one.swr, band.swr_doubt):>8}"
+            f"  {one.frequency / 1e6:>9.7g} {swr(one.swr, band.swr_doubt * one.swr / band.aim_swr):>8}"
             f" {impedance(one.impedance, _spread(one.impedance, band)):>21}"
             f" {percent(one.shares.sky, band.share_doubt):>6}"
-            f" {feed.number + ' ' + feed.unit:>8} {volts:>10} {watts:>8}"
+            f" {feed.number + ' ' + feed.unit:>8}" + (f" {volts:>10} {watts:>8}" if volts else "")
         ]
     return lines
 

@@ -69,10 +69,10 @@ def band_line(figures: Figures, band: BandFigures) -> str:
     """Return a band in one line: dip, and SWR there and at both edges."""
     low, high = getattr(figures.design.bands, band.role).wanted
     dip = known(band.dip, band.frequency_doubt, "frequency", "MHz")
-    off = known(band.frequency_doubt, band.frequency_doubt, "frequency", "kHz").doubt
+    off = about(band.frequency_doubt, "frequency")
     doubt = band.swr_doubt
     return (
-        f"dip {dip.number} MHz +- {off} kHz, SWR {swr(band.dip_swr, doubt)};"
+        f"dip {dip.number} MHz +- {off}, SWR {swr(band.dip_swr, doubt)};"
         f" {swr(band.low_swr, doubt)} at {megahertz(low).removesuffix(' MHz')},"
         f" {swr(band.high_swr, doubt)} at {megahertz(high)}"
     )

@@ -210,6 +210,11 @@ def _band(figures: Figures, band: BandFigures) -> Iterator[Row]:
     yield row("feed_rms", "feed current, rms", current, why="at the aim, as a steady carrier")
 
 
+def _relative(band: BandFigures) -> float:
+    """Return the relative doubt of the impedance."""
+    return band.impedance_doubt / abs(band.aim_impedance)
+
+
 def _wires(figures: Figures) -> Iterator[Row]:
     lengths, design = figures.lengths, figures.design
     for name, far in (("inner", "feed point to trap centre"), ("end", "trap centre to the wire's end")):
@@ -231,14 +236,15 @@ def _wires(figures: Figures) -> Iterator[Row]:
             )  # fmt: skip
     reserve = design.antenna.lengths.reserve
     yield Row(
-        key="antenna.lengths.reserve", group="wires", label="extra on each wire", given=str(exact(reserve, "length")),
+        key="antenna.lengths.reserve", group="wires", label="extra on each wire",
+        given=str(exact(reserve, "length")),
         why="left on when cutting, so that wire can still be let out",
     )  # fmt: skip
     total = known(lengths.total, 2 * lengths.doubt, "length", "m")
     yield Row(key="antenna.lengths.total", group="wires", label="tip to tip", value=total.number, unit="m")
     yield Row(
-        key="antenna.lengths.half_wave", group="wires", label="plain half wave", value=f"{lengths.half_wave:.1f}",
-        unit="m", why="in free space at the lower aim, for comparison",
+        key="antenna.lengths.half_wave", group="wires", label="plain half wave",
+        value=f"{lengths.half_wave:.1f}", unit="m", why="in free space at the lower aim, for comparison",
     )  # fmt: skip
 
 

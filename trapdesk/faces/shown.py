@@ -10,6 +10,9 @@ from ..units import UNITS, Dimension, show, show_parts
 LARGEST_SWR = 10.0
 """A larger SWR is only said to be larger: nobody can use it, and no estimate of it holds."""
 
+PLAIN_UNITS = {"power": "W", "current": "A"}
+"""What is compared side by side keeps one unit."""
+
 
 @dataclass(frozen=True, kw_only=True)
 class Shown:
@@ -54,13 +57,11 @@ def known(value: float | None, doubt: float | None, dimension: str, unit: str = 
     kind = Dimension(dimension)
     if not doubt or not math.isfinite(doubt):
         return exact(value, dimension, unit)
-    name = unit or show_parts(max(abs(value), resolution(doubt)), kind)[1]
+    name = unit or PLAIN_UNITS.get(dimension) or show_parts(max(abs(value), resolution(doubt)), kind)[1]
     size = UNITS[kind].get(name)
     factor = size.bottom / size.top if size else 1.0
     step = resolution(doubt * factor)
-    # A doubt is rounded up unless it is over by a quarter of its step at most.
-    off = math.ceil(doubt * factor / step - 0.25) * step
-    return Shown(number=rounded(value * factor, step), doubt=rounded(off, step), unit=name)
+    return Shown(number=rounded(value * factor, step), doubt=rounded(doubt * factor, step), unit=name)
 
 
 def exact(value: float | None, dimension: str, unit: str = "") -> Shown:
@@ -76,7 +77,9 @@ def exact(value: float | None, dimension: str, unit: str = "") -> Shown:
 
 
 def about(value: float, dimension: str, digits: int = 2) -> str:
-    """Return a number that is only roughly known, with its unit."""
+    """Return a number that is only roughly known, with its unit; watts and amps stay watts and amps."""
+    if dimension in ("power", "current") and 0 < abs(value) < 1:
+        return f"{value:.{digits}g} {'W' if dimension == 'power' else 'A'}"
     return show(value, Dimension(dimension), digits=digits)
 
 
@@ -105,8 +108,9 @@ def megahertz(value: float, digits: int = 5) -> str:
 def impedance(value: complex, doubt: float = 1.0) -> str:
     """Return R and X in ohm, no finer than their doubt."""
     step = max(resolution(doubt) if doubt > 0 else 0.1, 0.1)
-    sign = "-" if value.imag < 0 else "+"
-    return f"{rounded(value.real, step)} {sign} j{rounded(abs(value.imag), step)} ohm"
+    reactance = rounded(value.imag, step)
+    sign = "-" if reactance.startswith("-") else "+"
+    return f"{rounded(value.real, step)} {sign} j{reactance.removeprefix('-')} ohm"
 
 
 def impedance_range(value: complex) -> str:
@@ -116,8 +120,11 @@ def impedance_range(value: complex) -> str:
 
 
 def kilohertz_per_centimetre(slope: float) -> str:
-    """Return what one centimetre does, from Hz per metre, to two digits."""
-    return f"{abs(slope) / 1e5:.2g} kHz"
+    """Return what one centimetre does, from Hz per metre, to two digits and no finer than a tenth."""
+    size = abs(slope) / 1e5
+    if size < 0.1:
+        return "under 0.1 kHz"
+    return f"{size:.1f} kHz" if size < 10 else f"{float(f'{size:.2g}'):.0f} kHz"
 
 
 def centimetres(length: float) -> str:

@@ -207,10 +207,10 @@ def amount(value: float, dimension: str, as_: str = "") -> str:
         return "no number"
     if as_ == "miss":
         return f"{show(abs(value), Dimension(dimension), digits=2)} {'above' if value > 0 else 'below'}"
-    # A frequency is told to the kilohertz when it is a place on the dial, to two digits when it is a distance.
+    # A frequency is told finely when it is a place on the dial, to two digits when it is a distance.
     if dimension == "frequency":
         return shown.megahertz(value, 4) if value >= 1e6 else show(value, Dimension(dimension), digits=2)
-    return show(value, Dimension(dimension), digits=3 if as_ else 2)
+    return shown.about(value, dimension)
 
 
 def ranked(findings: tuple[Finding, ...]) -> tuple[Finding, ...]:
