@@ -112,13 +112,13 @@ def of_one_value(breach: Breach) -> bool:
 
 def _range(known: Declared) -> str:
     """Return the limits of a field in words."""
-    low = known.low if known.low is not None else known.above
-    words = (
-        []
-        if low is None
-        else [f"{'from' if known.above is None else 'above'} {_shown(low, known.dimension)}"]
-    )
-    words += [] if known.high is None else [f"up to {_shown(known.high, known.dimension)}"]
+    words = []
+    if known.low is not None:
+        words.append(f"from {_shown(known.low, known.dimension)}")
+    if known.above is not None:
+        words.append(f"above {_shown(known.above, known.dimension)}")
+    if known.high is not None:
+        words.append(f"up to {_shown(known.high, known.dimension)}")
     return " ".join(words)
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import difflib
+import errno
 import json
 import os
 import secrets
@@ -16,7 +17,9 @@ from . import toml_edit, units
 from .design import Design
 from .errors import FileFault, TrapdeskError
 from .fields import SOLVE, Declared, walk
-from .toml_read import HEAD, read_text
+from .rules import check
+from .spoken import spoken
+from .toml_read import HEAD, DesignFault, read_text
 
 FIRST_PRESET = "40-20-vee"
 """The preset that opens when nothing else is asked for."""
@@ -115,18 +118,21 @@ def to_text(design: Design, original_text: str | None = None) -> str:
     Values that did not change stay as the person wrote them. Raises DesignFault for a design that could
     not be read again.
     """
-    return _to_text(design, original_text)[0]
+    return _to_text(design, original_text, "design")[0]
 
 
-def _to_text(design: Design, original_text: str | None) -> tuple[str, bool]:
+def _to_text(design: Design, original_text: str | None, name: str) -> tuple[str, bool]:
     """Return the text, and whether comments and layout of the original are in it."""
+    breaches = check(design)
+    if breaches:
+        raise DesignFault(name, (spoken(breach) for breach in breaches))
     wanted = _written(design)
     if original_text is not None:
         edited = _edited(design, wanted, original_text)
         if edited is not None:
             return edited, True
     text = _fresh(wanted)
-    if read_text(text) != design:
+    if read_text(text, name) != design:
         raise ValueError("design must read back from its text")
     return text, original_text is None
 
@@ -134,11 +140,14 @@ def _to_text(design: Design, original_text: str | None) -> tuple[str, bool]:
 def _edited(design: Design, wanted: dict[str, str], original: str) -> str | None:
     """Return the original with its changed values set; None where what comes out is not the design."""
     try:
+        original = original.removeprefix("\ufeff")
         before = _written(read_text(original))
         changed = {key for key, value in wanted.items() if before.get(key) != value}
-        aliases = {
-            f"{key.rpartition('.')[0]}.{known.alias}": key for key, known, _ in walk(design) if known.alias
-        }
+        aliases = {}
+        for key, known, _ in walk(design):
+            if known.alias:
+                second = _second_name(key, known)
+                aliases |= {second: key} if key in wanted else {key: second}
         edited = toml_edit.edit(original, wanted, changed, aliases)
         return edited if read_text(edited) == design else None
     except (TrapdeskError, toml_edit.Unforeseen):
@@ -151,10 +160,16 @@ def _written(design: Design) -> dict[str, str]:
     for key, known, value in walk(design):
         if known.dimension != "part":
             if value is not None:
-                written[key] = _value(known, value)
+                text = _value(known, value)
+                by_gauge = known.alias and text.startswith('"AWG')
+                written[_second_name(key, known) if by_gauge else key] = text
         elif value is not None and isinstance(known.choices, dict):
             written[f"{key}.kind"] = _text(value.kind)
     return written
+
+
+def _second_name(key: str, known: Declared) -> str:
+    return f"{key.rpartition('.')[0]}.{known.alias}"
 
 
 def _value(known: Declared, value: Any) -> str:
@@ -167,7 +182,7 @@ def _value(known: Declared, value: Any) -> str:
         gauge = next((n for n in range(41) if units.gauge_diameter(n) == value), None)
         if gauge is not None:
             return _text(f"AWG {gauge}")
-    written = units.to_text(value, units.Dimension(known.dimension))
+    written = units.to_text(float(value), units.Dimension(known.dimension))
     return written if known.dimension in ("ratio", "count") else _text(written)
 
 
@@ -192,7 +207,7 @@ def save(design: Design, path: str | os.PathLike[str], original_text: str | None
     moment leaves the old file or the new one. A link is followed. Raises FileFault when that cannot be done,
     DesignFault for a design that could not be read again.
     """
-    text, kept = _to_text(design, original_text)
+    text, kept = _to_text(design, original_text, os.fspath(path))
     try:
         target = os.path.realpath(path)
         mode = _mode(target)
@@ -231,9 +246,18 @@ def _replace(target: str, data: bytes, mode: int | None) -> None:
     except BaseException:
         os.unlink(beside)
         raise
-    # The new name itself must outlive a power cut.
-    entry = os.open(folder, os.O_RDONLY)
+    _settle(folder)
+
+
+def _settle(folder: str) -> None:
+    """Have a folder's names outlive a power cut, where its file system can do that."""
     try:
-        os.fsync(entry)
-    finally:
-        os.close(entry)
+        handle = os.open(folder, os.O_RDONLY)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)
+    except OSError as error:
+        # The file itself is written and in place; some folders may not be read or synced.
+        if error.errno not in (errno.EACCES, errno.EINVAL, errno.ENOTSUP):
+            raise

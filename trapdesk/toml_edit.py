@@ -111,14 +111,14 @@ class _Scan:
 
     def _value(self, position: int, start: int, path: Path, table: Path) -> int:
         """Return where a value ends; what an inline table holds is noted on the way."""
-        opening = self.text[position]
-        if opening not in "[{":
+        opening = self.text[position : position + 1]
+        if opening not in ("[", "{"):
             match = _SCALAR.match(self.text, position)
             if match is None:
                 raise Unforeseen(f"no value at character {position}")
             return position + len(match[0].rstrip())
         position = self._skip(_INSIDE, position + 1)
-        while self.text[position] not in "]}":
+        while self.text[position : position + 1] not in "]}":
             if opening == "{":
                 position = self._pair(position, start, path, table, inline=True)
             else:
@@ -214,7 +214,7 @@ def _replaced(text: str, entry: _Entry, value: str) -> tuple[int, int, str]:
     comment = _COMMENT_AFTER.match(text, end)
     if comment is None:
         return start, end, value
-    room = max(1, len(comment[1]) - (len(value) - (end - start)))
+    room = max(2, len(comment[1]) - (len(value) - (end - start)))
     return start, comment.end(1), value + " " * room
 
 
