@@ -5,14 +5,17 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 from enum import StrEnum
+from itertools import pairwise
 
 import numpy as np
 
+from .conductors import VACUUM_PERMEABILITY, VACUUM_PERMITTIVITY
 from .special import bessel_j01
 
+TAIL = 16.0
+"""The spectra are followed until their decay e^-kZ has come to e^-16."""
 C0 = 299_792_458.0
-EPS0 = 8.854_187_8188e-12
-MU0 = 1.256_637_061_27e-6
+EPS0, MU0 = VACUUM_PERMITTIVITY, VACUUM_PERMEABILITY
 ETA0 = MU0 * C0
 
 
@@ -70,9 +73,9 @@ class Ground:
 class Reflected:
     """The four reflected-wave kernels between pairs of points, each of shape (frequencies, pairs).
 
-    `along` couples horizontal currents, `upright` vertical ones [1/m]; `cross` is what a horizontal current does
-    to a vertical one along the line of sight (the other way round with the other sign) [1/m]; `charge` is the
-    scalar potential's [1/m].
+    `along` couples horizontal currents, `upright` vertical ones; `cross` is what a horizontal current does to a
+    vertical one along the line of sight (the other way round with the other sign); `charge` is the scalar
+    potential's. All in 1/m.
     """
 
     along: np.ndarray
@@ -109,8 +112,8 @@ def reflected_kernels(
 
     Source
     ------
-    Derived here: Sommerfeld half-space potentials of a horizontal and a vertical dipole in Lorenz gauge, brought to
-    one common scalar potential by a gauge change of the vertical dipole (`michalski-zheng-1990`, formulation C).
+    Derived here: Sommerfeld half-space potentials of a horizontal and a vertical dipole in Lorenz gauge,
+    brought to one scalar potential by a change of gauge (`michalski-zheng-1990`, formulation C).
     """
     if ground.kind is GroundKind.SPACE:
         raise ValueError("ground: space reflects nothing; limit: mirror or soil")
@@ -126,31 +129,66 @@ def reflected_kernels(
 def _soil_kernels(
     frequency: np.ndarray, distance: np.ndarray, height_sum: np.ndarray, ground: Ground
 ) -> Reflected:
-    """Integrate the Sommerfeld integrals along the real axis for every frequency and pair."""
-    shape = (frequency.size, distance.size)
-    along, upright, cross, charge = (np.empty(shape, complex) for _ in range(4))
+    """Integrate the Sommerfeld integrals along the real axis for every frequency and pair.
+
+    Pairs of one height sum differ in distance only: a polynomial in the distance then serves them all.
+    """
+    reach, low = float(distance.max()), float(height_sum.min())
+    spread = None
+    if np.all(height_sum == low):
+        count = 14 + math.ceil(1.5 * reach / low + 3 * reach * frequency.max() / C0)
+        if count < distance.size:
+            x = np.cos(np.pi * (np.arange(count) + 0.5) / count)
+            spread = barycentric(
+                x, np.sin(np.pi * (np.arange(count) + 0.5) / count), 2 * distance / reach - 1
+            )
+            distance, height_sum = reach * (1 + x) / 2, np.full(count, low)
+    kernels = np.empty((4, frequency.size, distance.size), complex)
     for i, f in enumerate(frequency):
         k0 = 2 * math.pi * f / C0
-        k, u0, measure = _path(k0, float(distance.max()), float(height_sum.min()))
         n2 = complex(ground.index_squared(np.float64(f)))
+        k, u0, measure = _path(k0, n2, reach, low)
         u1 = np.sqrt(k * k - n2 * k0 * k0)  # principal root: Re >= 0, and Im > 0 where Re vanishes
         te = (n2 - 1) * (k0 / (u0 + u1)) ** 2
         w = 2 * (n2 - 1) / ((u0 + u1) * (n2 * u0 + u1))
+        tm = (n2 * u0 - u1) / (n2 * u0 + u1)
         # measure is k dk / u0, finite where the path passes u0 = 0.
-        spectra = np.stack(
-            [
-                te,
-                (n2 * u0 - u1) / (n2 * u0 + u1) + u0 * u0 * w,
-                te - u0 * u0 * w,
-            ]
-        )
-        spectra *= measure
-        bend = -w * k * u0 * measure
+        spectra = np.stack([te, tm + u0 * u0 * w, te - u0 * u0 * w]) * measure
         j0, j1 = bessel_j01(k[:, None] * distance)
         decay = np.exp(-u0[:, None] * height_sum)
-        along[i], upright[i], charge[i] = spectra @ (decay * j0)
-        cross[i] = bend @ (decay * j1)
+        kernels[:3, i] = spectra @ (decay * j0)
+        kernels[3, i] = (-w * k * u0 * measure) @ (decay * j1)
+    if spread is not None:
+        kernels = kernels @ spread.T
+    along, upright, charge, cross = kernels
     return Reflected(along, upright, cross, charge)
+
+
+def barycentric(nodes: np.ndarray, weights: np.ndarray, position: np.ndarray) -> np.ndarray:
+    """Return the values (positions, nodes) of each Chebyshev node's polynomial at positions.
+
+    Parameters
+    ----------
+    nodes : array (n,)
+        Chebyshev nodes of the first kind, any scale. [any unit]
+    weights : array (n,)
+        Sizes of their barycentric weights; the signs alternate. [1]
+    position : array (m,)
+        Where the polynomials are wanted. [the unit of the nodes]
+
+    Returns
+    -------
+    array (m, n)
+        Rows of sum 1. [1]
+
+    Source
+    ------
+    Definition: barycentric form of Lagrange's polynomial (`berrut-trefethen-2004`).
+    """
+    gap = position[:, None] - nodes
+    gap[gap == 0] = 1e-300
+    terms = weights * (-1.0) ** np.arange(nodes.size) / gap
+    return terms / terms.sum(axis=1, keepdims=True)
 
 
 _RULES: dict[int, tuple[np.ndarray, np.ndarray]] = {}
@@ -186,20 +224,42 @@ def gauss_legendre(count: int) -> tuple[np.ndarray, np.ndarray]:
     return _RULES[count]
 
 
-def _path(k0: float, reach: float, least_height_sum: float) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+def _path(k0: float, n2: complex, reach: float, low: float) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     """Return the nodes k, the decay u0 and the weight k dk / u0 along the real axis.
 
-    Below k0 the path is k0 sin t, above it k0 cosh v: both take the root singularity at k0 away.
+    Below k0 the path is k0 sin t, above it k0 cosh v: both take the root singularity at k0 away. It is broken
+    at the soil's own root, and close to k0 over soil so dense that the reflection turns there.
     """
-    t, wt = gauss_legendre(_rounded(20 + 1.2 * k0 * reach))
-    t, wt = t * (math.pi / 2), wt * (math.pi / 2)
-    last = math.asinh(23.0 / (k0 * least_height_sum))
-    v, wv = gauss_legendre(_rounded(24 + 3 * last + 1.1 * last * reach / least_height_sum))
-    v, wv = v * last, wv * last
+    turn = 4 / abs(n2) ** 0.5
+    last = math.asinh(TAIL / (k0 * low))
+    below, above = [0.0, math.pi / 2], [0.0]
+    if turn < 0.5:
+        below.insert(1, math.pi / 2 - turn)
+        above.append(turn)
+    kink = math.acosh(max(np.sqrt(n2).real, 1.0))
+    if above[-1] + 0.1 < kink < 0.95 * last:
+        above.append(kink)
+    above.append(last)
+    t, wt = _pieces(below, [10 + 0.55 * k0 * reach * (to - from_) for from_, to in pairwise(below)])
+    most = TAIL * reach / low
+    phases = [
+        min(k0 * reach * (math.cosh(to) - math.cosh(from_)), (to - from_) * most)
+        for from_, to in pairwise(above)
+    ]
+    counts = [8 + 4 * (to - from_) + 0.45 * p for (from_, to), p in zip(pairwise(above), phases, strict=True)]
+    v, wv = _pieces(above, counts)
     k = k0 * np.concatenate([np.sin(t), np.cosh(v)])
     u0 = k0 * np.concatenate([1j * np.cos(t), np.sinh(v)])
     measure = k0 * np.concatenate([-1j * np.sin(t) * wt, np.cosh(v) * wv])
     return k, u0, measure
+
+
+def _pieces(stops: list[float], counts: list[float]) -> tuple[np.ndarray, np.ndarray]:
+    """Return one Gauss rule over consecutive intervals."""
+    rules = [gauss_legendre(_rounded(count)) for count in counts]
+    x = [from_ + (to - from_) * r[0] for (from_, to), r in zip(pairwise(stops), rules, strict=True)]
+    w = [(to - from_) * r[1] for (from_, to), r in zip(pairwise(stops), rules, strict=True)]
+    return np.concatenate(x), np.concatenate(w)
 
 
 def _rounded(count: float) -> int:

@@ -11,8 +11,8 @@ import numpy as np
 class Ports:
     """Open-circuit port matrices of a wire, each (f, p, p): feed point first, then the trap of each side.
 
-    All currents count along the wire in the same sense. With rms port currents j, `j^H loss j` is what the wire's
-    resistance takes and `j^H sky j` what goes to the sky [ohm]; both are None when they were not asked for.
+    All currents count along the wire in the same sense. With rms port currents j, `j^H loss j` is what the
+    wire's resistance takes and `j^H sky j` what goes to the sky [ohm]; both are None when not asked for.
     """
 
     frequency: np.ndarray
@@ -103,7 +103,7 @@ def chebyshev_nodes(low: float, high: float, count: int) -> np.ndarray:
 
 @dataclass(frozen=True)
 class Terminated:
-    """A wire with its traps in place: feed impedance and the currents of all ports per ampere into the feed."""
+    """A wire with its traps in place: feed impedance, and all port currents per ampere into the feed."""
 
     impedance: np.ndarray
     currents: np.ndarray

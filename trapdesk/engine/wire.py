@@ -1,8 +1,8 @@
 """The thin wire over its ground: an integral equation solved once, seen from the feed point and the traps.
 
-A wire is two equal straight sides from the feed point, level or sloping down. Its currents are triangles on a mesh
-that is fine at the feed point, the trap and the end. Currents that are even about the feed point carry the feed, odd
-ones what unequal traps do; both need only how a side acts on itself and how it acts on the other side.
+A wire is two equal straight sides from the feed point, level or sloping down. Its currents are triangles on
+a mesh that is fine at the feed point, the trap and the end. Currents that are even about the feed point carry
+the feed, odd ones what unequal traps do; both need only how a side acts on itself and on the other side.
 """
 
 from __future__ import annotations
@@ -13,21 +13,33 @@ from dataclasses import dataclass
 import numpy as np
 
 from .conductors import internal_impedance
-from .ground import C0, EPS0, ETA0, MU0, Ground, GroundKind, fresnel, gauss_legendre, reflected_kernels
+from .ground import (
+    C0,
+    EPS0,
+    ETA0,
+    MU0,
+    Ground,
+    GroundKind,
+    barycentric,
+    fresnel,
+    gauss_legendre,
+    reflected_kernels,
+)
 from .ports import Ports
 
 GAP = 0.05
 """Length of the mesh elements at the feed point, the trap and the end. [m]"""
 COARSE, GROWTH = 30.0, 0.6
-"""Longest coarse element as a share of the wavelength (1/COARSE), and how fast elements grow from the gap on."""
+"""Longest coarse element as a share of the wavelength (1/COARSE); how fast elements grow from the gap."""
 
 
 @dataclass(frozen=True, kw_only=True)
 class Wire:
     """A wire dipole with or without a trap in each side, lengths along one side. SI units.
 
-    `end` is None without traps: then `inner` reaches from the feed point to the end. `slope` is the angle of each
-    side below the horizontal [rad]; `elastance` is what a coating takes off the wire's own potential [m/F].
+    `end` is None without traps: then `inner` reaches from the feed point to the end. `slope` is the angle of
+    each side below the horizontal [rad]; `elastance` is what a coating takes off the wire's own potential
+    [m/F].
     """
 
     inner: float
@@ -42,18 +54,18 @@ class Wire:
 
     @property
     def side(self) -> float:
-        """Length of one side. [m]"""
+        """Length of one side, in m."""
         return self.inner + (self.end or 0.0)
 
     @property
     def end_height(self) -> float:
-        """Height of the wire's ends. [m]"""
+        """Height of the wire's ends, in m."""
         return self.height - self.side * math.sin(self.slope)
 
 
 @dataclass(frozen=True)
 class Plan:
-    """How many elements a mesh has in each wire of a side, so that it does not jump while lengths are sought."""
+    """How many elements a mesh has in each wire of a side, so that it does not jump as lengths are sought."""
 
     inner: int
     end: int
@@ -81,7 +93,7 @@ def plan(wire: Wire, frequency: float) -> Plan:
 
     Source
     ------
-    Derived here: elements grow from `GAP` to a share of the wavelength; the counts were chosen by convergence.
+    Derived here: elements grow from `GAP` to a share of the wavelength, as convergence asks.
     """
     if not frequency > 0:
         raise ValueError("frequency: must be > 0")
@@ -105,7 +117,7 @@ def _cumulative(x: float, longest: float) -> float:
 
 
 def _stretch(length: float, count: int, longest: float) -> np.ndarray:
-    """Return the nodes of one wire from 0 to its length: a gap element, `count` graded ones, a gap element."""
+    """Return the nodes of one wire: a gap element, `count` graded ones, a gap element."""
     gap = min(GAP, length / 4)
     half = length / 2 - gap
     full = _cumulative(half, longest)
@@ -113,7 +125,9 @@ def _stretch(length: float, count: int, longest: float) -> np.ndarray:
     knee = _cumulative(grown, longest)
     n = np.linspace(0.0, 2 * full, count + 1)
     m = np.minimum(n, 2 * full - n)
-    rising = GAP * np.expm1(GROWTH * np.minimum(m, knee)) / GROWTH + np.maximum(m - knee, 0) * max(longest, GAP)
+    rising = GAP * np.expm1(GROWTH * np.minimum(m, knee)) / GROWTH + np.maximum(m - knee, 0) * max(
+        longest, GAP
+    )
     inside = gap + np.where(n <= full, rising, 2 * half - rising)
     return np.concatenate([[0.0], inside, [length]])
 
@@ -188,18 +202,18 @@ def solve_ports(
 
 
 class _Samples:
-    """Smooth kernels sampled on a few points of each side: the ground's, and the imaginary part of the direct wave.
+    """Smooth kernels on a few points of each side: the ground's, and the direct wave's imaginary part.
 
-    They do not depend on the mesh. `vector` and `charge` hold one array (f, q, q) for a side with itself and one for
-    it with the other side.
+    They do not depend on the mesh. `vector` and `charge` hold one array (f, q, q) for a side with itself and
+    one for it with the other side.
     """
 
     def __init__(self, wire: Wire, frequency: np.ndarray) -> None:
         low = 2 * wire.end_height if wire.ground.kind is not GroundKind.SPACE else math.inf
         count = 12 + 2 * math.ceil(max(0.0, 2.0 * wire.side / low - 4.0) if low < math.inf else 0)
-        x = np.cos(np.pi * (np.arange(count) + 0.5) / count)
-        self.points = wire.side * (1 + x) / 2
-        self.weights = (-1.0) ** np.arange(count) * np.sin(np.pi * (np.arange(count) + 0.5) / count)
+        angle = np.pi * (np.arange(count) + 0.5) / count
+        self.points = wire.side * (1 + np.cos(angle)) / 2
+        self._weights = np.sin(angle)
         c, s = math.cos(wire.slope), math.sin(wire.slope)
         i, j = np.triu_indices(count)
         a, b = self.points[i], self.points[j]
@@ -220,7 +234,9 @@ class _Samples:
         self.charge = self._square(charge, i, j, count)
 
     @staticmethod
-    def _square(values: np.ndarray, i: np.ndarray, j: np.ndarray, count: int) -> tuple[np.ndarray, np.ndarray]:
+    def _square(
+        values: np.ndarray, i: np.ndarray, j: np.ndarray, count: int
+    ) -> tuple[np.ndarray, np.ndarray]:
         """Unpack the triangle of pairs into full symmetric arrays, same side and other side."""
         halves = []
         for half in np.split(values, 2, axis=1):
@@ -231,10 +247,7 @@ class _Samples:
 
     def interpolate(self, position: np.ndarray) -> np.ndarray:
         """Return the values (positions, q) of each sample point's polynomial at positions along a side."""
-        gap = position[:, None] - self.points
-        gap[gap == 0] = 1e-300
-        terms = self.weights / gap
-        return terms / terms.sum(axis=1, keepdims=True)
+        return barycentric(self.points, self._weights, position)
 
 
 def _antiderivatives(x: np.ndarray, radius: float) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
@@ -249,25 +262,25 @@ def _antiderivatives(x: np.ndarray, radius: float) -> tuple[np.ndarray, np.ndarr
 
 
 def _same_side_moments(nodes: np.ndarray, radius: float) -> tuple[np.ndarray, ...]:
-    """Integrate 1/R over pairs of elements of one straight side, against 1, u, v and uv (u, v from 0 to 1)."""
+    """Integrate 1/R over pairs of elements of one straight side, against 1, u, v and uv, each 0 to 1."""
     g2, g3, g4 = _antiderivatives(nodes[:, None] - nodes, radius)
     h = np.diff(nodes)[:, None]
-    l = np.diff(nodes)[None, :]
+    g = np.diff(nodes)[None, :]
     # x = u - v + d: the element's far end minus the other's near end, and so on.
-    fn, nn, ff, nf = (slice(1, None), slice(None, -1)), (slice(None, -1),) * 2, (slice(1, None),) * 2, None
-    nf = (slice(None, -1), slice(1, None))
+    far, near = slice(1, None), slice(None, -1)
+    fn, nn, ff, nf = (far, near), (near, near), (far, far), (near, far)
     one = g2[fn] - g2[nn] - g2[ff] + g2[nf]
     u = h * (g2[fn] - g2[ff]) - g3[fn] + g3[nn] + g3[ff] - g3[nf]
-    v = -l * (g2[ff] - g2[nf]) + g3[fn] - g3[nn] - g3[ff] + g3[nf]
-    uv = -l * (h * g2[ff] - g3[ff] + g3[nf]) + h * (g3[fn] - g3[ff]) - g4[fn] + g4[nn] + g4[ff] - g4[nf]
-    return one, u / h, v / l, uv / (h * l)
+    v = -g * (g2[ff] - g2[nf]) + g3[fn] - g3[nn] - g3[ff] + g3[nf]
+    uv = -g * (h * g2[ff] - g3[ff] + g3[nf]) + h * (g3[fn] - g3[ff]) - g4[fn] + g4[nn] + g4[ff] - g4[nf]
+    return one, u / h, v / g, uv / (h * g)
 
 
 def _other_side_moments(nodes: np.ndarray, radius: float, cosine: float) -> tuple[np.ndarray, ...]:
     """Integrate 1/R over pairs of elements of both sides, which meet at the feed point at an angle.
 
-    The inner integral is closed; the outer one is a Gauss rule, crowded towards the feed point where the two first
-    elements meet.
+    The inner integral is closed; the outer one is a Gauss rule, crowded towards the feed point where the two
+    first elements meet.
     """
     x, w = gauss_legendre(3)
     t, wt = gauss_legendre(10)
@@ -324,7 +337,10 @@ class _Mesh:
         s = (nodes[:-1, None] + h[:, None] * x).ravel()
         self.values, self.slopes = self._quadrature(x, w)
         r = np.array(
-            [np.hypot(s[:, None] - s, wire.radius), np.sqrt(s[:, None] ** 2 + s**2 - 2 * cosine * np.outer(s, s))]
+            [
+                np.hypot(s[:, None] - s, wire.radius),
+                np.sqrt(s[:, None] ** 2 + s**2 - 2 * cosine * np.outer(s, s)),
+            ]
         )
         self.distance = r
         x, w = gauss_legendre(4)
@@ -335,7 +351,7 @@ class _Mesh:
         self.trap = self._gap_column(wire) if wire.end is not None else None
 
     def _quadrature(self, x: np.ndarray, w: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-        """Return weighted triangle values and slopes at the points of a rule on every element, (n, points)."""
+        """Return weighted triangle values and slopes at a rule's points on every element, (n, points)."""
         n, q = self.count, x.size
         values, slopes = np.zeros((n + 1, n, q)), np.zeros((n + 1, n, q))
         e = np.arange(n)
@@ -393,7 +409,9 @@ def _solve(
     if power:
         adjoint = [np.conj(c.transpose(0, 2, 1)) for c, _ in halves]
         matrices.append(
-            _full([2 * internal.real * (a @ mesh.mass @ c) for a, (c, _) in zip(adjoint, halves, strict=True)])
+            _full(
+                [2 * internal.real * (a @ mesh.mass @ c) for a, (c, _) in zip(adjoint, halves, strict=True)]
+            )
         )
         matrices.append(
             _full(
@@ -425,11 +443,13 @@ def _full(halves: list[np.ndarray]) -> np.ndarray:
     return even.T @ halves[0] @ even + odd.T @ (halves[1] if len(halves) > 1 else halves[0][:, 1:, 1:]) @ odd
 
 
-def _sky(wire: Wire, frequency: np.ndarray, points: np.ndarray, moments: np.ndarray, even: bool) -> np.ndarray:
+def _sky(
+    wire: Wire, frequency: np.ndarray, points: np.ndarray, moments: np.ndarray, even: bool
+) -> np.ndarray:
     """Return the power sent to the sky as a quadratic form (f, p, p) in the port currents.
 
-    Current moments (f, q, p) sit at sample points of one side; the other side follows by symmetry, and so does all
-    but a quarter of the directions.
+    Current moments (f, q, p) sit at sample points of one side; the other side follows by symmetry, and so do
+    all but a quarter of the directions.
     """
     space = wire.ground.kind is GroundKind.SPACE
     up, weight_up = gauss_legendre(24)

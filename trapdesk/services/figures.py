@@ -4,12 +4,16 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 from enum import StrEnum
+from typing import TYPE_CHECKING
 
 import numpy as np
 
 from ..design import Design
 from ..engine.ports import Ports
 from ..engine.wire import Wire
+
+if TYPE_CHECKING:
+    from .effects import Moved
 
 
 class Level(StrEnum):
@@ -24,7 +28,8 @@ class Level(StrEnum):
 class Finding:
     """A remark on the figures: which rule, where, the number behind it and the limit it was held against.
 
-    `where` is a dotted key of the design, or `bands.upper` and the like. `dimension` is that of value and limit.
+    `where` is a dotted key of the design, or `bands.upper` and the like. `dimension` is that of value and
+    limit.
     """
 
     code: str
@@ -49,8 +54,7 @@ class Shares:
 class Stress:
     """What one trap bears at the stated power as a steady carrier, and on average in the stated mode.
 
-    `capacitor_peak` is the voltage across the trap, which its capacitor and coil share; `coil` and `capacitor` are
-    the currents that circulate in it.
+    Coil and capacitor share the peak voltage; their currents are those that circulate in the trap.
     """
 
     frequency: float
@@ -75,8 +79,9 @@ class Curve:
 class Effects:
     """What moving something does to a band's resonance.
 
-    Of one metre of each wire of both sides [Hz/m]; of both traps' resonance by its whole, moved by the capacitor
-    [Hz]; of the height [Hz/m]; of soil from the driest to the wettest it may be [Hz], both None until asked for.
+    Of one metre of each wire of both sides [Hz/m]; of both traps' resonance by its whole, moved by the
+    capacitor [Hz]; of the height [Hz/m]; of the driest and the wettest soil it may be [Hz], both None until
+    asked for.
     """
 
     inner: float
@@ -90,8 +95,9 @@ class Effects:
 class BandFigures:
     """What the antenna does on one band. None where a thing does not exist.
 
-    `frequency_doubt` [Hz] goes with resonance and dip, `impedance_doubt` [ohm] with impedances, `swr_doubt` [1] with
-    every SWR, `share_doubt` [1] with the shares, `stress_doubt` [1] is the relative one of volts, amps and watts.
+    `frequency_doubt` [Hz] goes with resonance and dip, `impedance_doubt` [ohm] with impedances, `swr_doubt`
+    [1] with every SWR, `share_doubt` [1] with the shares, `stress_doubt` [1] is the relative one of volts,
+    amps and watts.
     """
 
     role: str
@@ -135,7 +141,7 @@ class CoilFigures:
 
 @dataclass(frozen=True, kw_only=True)
 class TrapFigures:
-    """The trap by itself, at its resonance unless said otherwise. `reactance` and `impedance` by band role."""
+    """The trap by itself, at its resonance unless said otherwise; `impedance` by band role, at the aim."""
 
     resonance: float
     inductance: float
@@ -173,7 +179,10 @@ class LengthFigures:
 
 @dataclass(frozen=True, kw_only=True)
 class Figures:
-    """Everything computed for a design. `wire` and `ports` are kept for what comes after, not for show."""
+    """Everything computed for a design.
+
+    `wire`, `ports` by band role and `moved` are kept for what comes after, not for show.
+    """
 
     design: Design
     lengths: LengthFigures
@@ -182,6 +191,7 @@ class Figures:
     findings: tuple[Finding, ...]
     wire: Wire = field(repr=False)
     ports: dict[str, Ports] = field(repr=False)
+    moved: Moved = field(repr=False)
 
 
 @dataclass(frozen=True, kw_only=True)
