@@ -184,6 +184,7 @@ FIGURES = Figures(
     findings=FINDINGS,
     wire=wire(5.0312, 3.2219),
     ports={},
+    moved=None,
 )
 
 PLAIN = Figures(
@@ -223,5 +224,6 @@ PLAIN = Figures(
     findings=(),
     wire=wire(10.11, None),
     ports={},
+    moved=None,
 )
 """One band, no trap, and everything missing that can be missing."""

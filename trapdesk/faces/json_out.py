@@ -1,4 +1,4 @@
-"""The figures as JSON that scripts rely on: full precision, SI, the unit in the key, null where there is nothing.
+"""The figures as JSON that scripts rely on: full precision, SI, unit in the key, null where there is nothing.
 
 The names are those of the tables of a design, with the results beside the inputs; `solved` names the inputs
 that stand as "solve" in the file.
@@ -170,7 +170,7 @@ def _effects(effects: Effects | None) -> dict[str, Any] | None:
         "end_hz_per_m": effects.end,
         "trap_hz_per_percent": None if effects.trap is None else effects.trap / 100,
         "height_hz_per_m": effects.height,
-        "soil_hz": effects.soil,
+        "soil_hz": None if effects.soil is None else sorted(effects.soil),
     }
 
 
@@ -275,7 +275,7 @@ def tank(given: Mapping[str, float], answer: TankAnswer) -> dict[str, Any]:
         "status": str(answer.status),
         "given": {_TANK_KEYS[name]: value for name, value in given.items()},
         "values": {_TANK_KEYS[str(name)]: value for name, value in answer.values.items()},
-        "doubt": {_TANK_KEYS[str(name)]: value for name, value in answer.doubt.items()},
+        "relative_doubt": {str(name): value for name, value in answer.doubt.items()},
         "behaviour": None
         if behaviour is None
         else {key: getattr(behaviour, name) for name, key in _BEHAVIOUR_KEYS.items()},

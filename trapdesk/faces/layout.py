@@ -64,7 +64,7 @@ def said(head: str, text: str, cure: str) -> list[str]:
     return folded(head, f"{text}. What would help: {cure}." if cure else f"{text}.")
 
 
-def at_rows(figures: Figures, at: Iterable[AtFrequency]) -> list[str]:
+def at_lines(figures: Figures, at: Iterable[AtFrequency]) -> list[str]:
     """Return a small table of the antenna at single frequencies, no finer than the nearest band is known."""
     lines = ["", "At single frequencies, the trap's stress that of a steady carrier"]
     head = f"  {'MHz':>9} {'SWR':>8} {'Z at the feed point':>21} {'sky':>6} {'feed':>8}"

@@ -11,6 +11,11 @@ from . import words
 from .shown import Shown, about, centimetres, exact, kilohertz_per_centimetre, known, megahertz, swr
 
 
+def title(design: Design, longest: int = 60) -> str:
+    """Return the design's title, fit to be shown."""
+    return visible(design.title, longest)
+
+
 def ground_words(design: Design) -> str:
     """Return what is under the wire, in a few words."""
     site = design.site
@@ -32,6 +37,18 @@ def rating(design: Design) -> float | None:
     """Return the peak voltage the trap's capacitor stands, None when nobody said."""
     trap = design.antenna.trap
     return trap.capacitor.voltage if trap else None
+
+
+def inductance_text(figures: Figures) -> Shown:
+    """Return the trap's inductance: to its doubt when wound, as it was typed or to four digits when given."""
+    trap = figures.trap
+    assert trap is not None
+    if trap.inductance_doubt:
+        return known(trap.inductance, trap.inductance_doubt, "inductance")
+    coil = figures.design.antenna.trap.coil if figures.design.antenna.trap else None
+    if getattr(coil, "inductance", SOLVE) is SOLVE:
+        return exact(trap.inductance, "inductance", digits=4)
+    return exact(trap.inductance, "inductance")
 
 
 def turns_doubt(figures: Figures) -> float:
@@ -118,7 +135,7 @@ def trap_line(figures: Figures) -> str:
     if trap.coil is not None:
         pieces += [f"{known(trap.coil.turns, turns_doubt(figures), 'count').number} turns"]
     else:
-        pieces += [f"{known(trap.inductance, trap.inductance_doubt, 'inductance')}"]
+        pieces += [f"{inductance_text(figures)}"]
     worst = [(b, b.worst_stress) for b in figures.bands.values() if b.worst_stress is not None]
     if worst:
         band, stress = max(worst, key=lambda pair: pair[1].peak_voltage)

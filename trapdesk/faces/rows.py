@@ -18,6 +18,7 @@ from .lines import (
     band_name,
     check_line,
     ground_words,
+    inductance_text,
     length_text,
     moves_line,
     next_move,
@@ -268,7 +269,7 @@ def _trap(figures: Figures) -> Iterator[Row]:
         off = known(trap.resonance_doubt, trap.resonance_doubt, "frequency", "kHz").doubt
         yield row("resonance_doubt", "as wound, off by up to", f"{off} kHz", why="before it is brought there")
     own = design.antenna.trap.coil.kind if design.antenna.trap else ""
-    inductance = known(trap.inductance, trap.inductance_doubt, "inductance")
+    inductance = inductance_text(figures)
     yield row(
         "coil.inductance", "inductance", inductance, given=set_("coil.inductance") if own == "given" else ""
     )

@@ -5,7 +5,8 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from ..units import UNITS, Dimension, show, show_parts
+from ..unit_names import UNITS, Dimension
+from ..units import show, show_parts
 
 LARGEST_SWR = 10.0
 """A larger SWR is only said to be larger: nobody can use it, and no estimate of it holds."""
@@ -64,15 +65,15 @@ def known(value: float | None, doubt: float | None, dimension: str, unit: str = 
     return Shown(number=rounded(value * factor, step), doubt=rounded(doubt * factor, step), unit=name)
 
 
-def exact(value: float | None, dimension: str, unit: str = "") -> Shown:
-    """Return a number somebody set, with as many digits as it needs up to five."""
+def exact(value: float | None, dimension: str, unit: str = "", digits: int = 5) -> Shown:
+    """Return a number somebody set, with as many digits as it needs up to a few."""
     if value is None:
         return NONE
     kind = Dimension(dimension)
     if unit and math.isfinite(value):
         size = UNITS[kind][unit]
-        return Shown(number=f"{value * size.bottom / size.top:.5g}", unit=unit)
-    number, name = show_parts(value, kind, digits=5)
+        return Shown(number=f"{value * size.bottom / size.top:.{digits}g}", unit=unit)
+    number, name = show_parts(value, kind, digits=digits)
     return Shown(number=number, unit=name)
 
 

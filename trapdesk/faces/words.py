@@ -9,7 +9,8 @@ from ..design import Design, get
 from ..errors import NoAnswer, visible
 from ..fields import declared
 from ..services.figures import Finding, Level
-from ..units import Dimension, show
+from ..unit_names import Dimension
+from ..units import show
 from . import shown
 
 ESTIMATE = "an estimate, not measured"

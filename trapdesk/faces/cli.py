@@ -1,0 +1,278 @@
+"""The command line: verbs, exit codes, and everything that goes wrong as words on stderr.
+
+Nothing heavy is imported before a verb needs it: help and version answer at once, also on a slow machine.
+"""
+
+from __future__ import annotations
+
+import argparse
+import difflib
+import os
+import sys
+from collections.abc import Callable, Sequence
+from typing import Any, NoReturn, TextIO
+
+from .. import __version__
+from ..errors import BadInput, Fault, FileFault, NoAnswer, TrapdeskError, quoted, visible
+
+ABOUT = """\
+Design, build and tune a two-band trap dipole, in one terminal.
+
+  trapdesk [FILE]               open the desk, with a design or the first preset
+  trapdesk figures FILE         everything computed for a design
+  trapdesk sheet FILE           the build sheet, plain text for paper
+  trapdesk tank NAME=VALUE ...  a parallel resonator from any few of its values
+
+FILE is a design in TOML, or the name of a preset. A file that is called like a
+verb is opened by its path: trapdesk ./figures. Every verb has --help with an
+example."""
+
+ENDING = """\
+Exit: 0 an answer, 1 no answer exists, 2 bad input, 3 a file that cannot be read.
+All figures are estimates until something is measured."""
+
+INTERRUPTED = 130
+
+
+class Misuse(TrapdeskError):
+    """A command line that is not one of ours."""
+
+    exit_code = 2
+
+
+class Parser(argparse.ArgumentParser):
+    """A parser that refuses with one line."""
+
+    def error(self, message: str) -> NoReturn:
+        """Raise what the user got wrong."""
+        raise Misuse(f"{visible(message, 200)}; {self.prog} --help shows what would be right")
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run one command and return its exit code."""
+    given = list(sys.argv[1:] if arguments is None else arguments)
+    try:
+        return _run(given)
+    except NoAnswer as error:
+        from . import words
+
+        return _say(words.no_answer(error), error.exit_code)
+    except TrapdeskError as error:
+        return _say(_in_words(error), error.exit_code)
+    except KeyboardInterrupt:
+        return INTERRUPTED
+
+
+def _in_words(error: TrapdeskError) -> str:
+    """Return an error's text; the rules a design breaks are spoken with labels and units."""
+    breaches = getattr(error, "breaches", ())
+    if not breaches:
+        return str(error)
+    from ..spoken import spoken
+
+    return "\n".join(str(spoken(breach)) for breach in breaches)
+
+
+def _say(text: str, code: int) -> int:
+    """Put words on stderr; a stderr that is gone is nobody's loss."""
+    if sys.stderr is not None:
+        _tolerant(sys.stderr)
+        try:
+            print("\n".join(f"trapdesk: {line}" for line in text.splitlines()), file=sys.stderr)
+        except OSError:
+            return code
+    return code
+
+
+def _run(given: list[str]) -> int:
+    if given and given[0] in VERBS:
+        options = _parser_of(given[0]).parse_args(given[1:])
+        return _write(VERBS[given[0]][1](options))
+    parser = Parser(
+        prog="trapdesk",
+        usage="trapdesk [FILE] | VERB ...",
+        description=ABOUT,
+        epilog=ENDING,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+        allow_abbrev=False,
+    )
+    parser.add_argument("--version", action="version", version=f"trapdesk {__version__}")
+    parser.add_argument("file", nargs="*", metavar="FILE", help="a design, or the name of a preset")
+    files = parser.parse_args(given).file
+    if len(files) > 1 or (files and not os.path.lexists(files[0])):
+        _refuse_verb(files)
+    return _desk(files[0] if files else None)
+
+
+def _refuse_verb(files: list[str]) -> None:
+    """Refuse what was meant as a verb and is none."""
+    near = difflib.get_close_matches(files[0][:30].lower(), VERBS, n=1, cutoff=0.7)
+    if not near and len(files) == 1:
+        return
+    help = f"did you mean {near[0]}?" if near else f"verbs are {', '.join(VERBS)}"
+    raise Misuse(f"{quoted(files[0])} is not a known verb; {help}")
+
+
+def _desk(file: str | None) -> int:
+    if not (sys.stdin and sys.stdin.isatty() and sys.stdout and sys.stdout.isatty()):
+        if file is not None:
+            from .. import store
+
+            store.find(file)
+        raise Misuse("the desk needs a terminal; trapdesk figures FILE prints what it would show")
+    from .desk.app import run
+
+    return run(file) or 0
+
+
+def _parser_of(verb: str) -> Parser:
+    """Return the parser of one verb."""
+    about, _, example, more = VERBS[verb]
+    parser = Parser(
+        prog=f"trapdesk {verb}",
+        description=about,
+        epilog=f"example:\n  {example}{more}",
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+        allow_abbrev=False,
+    )
+    if verb == "tank":
+        parser.add_argument("values", nargs="+", metavar="NAME=VALUE", help="f, L, C, R, RD, Q or B")
+    else:
+        parser.add_argument("file", metavar="FILE", help="a design, or the name of a preset")
+    if verb == "figures":
+        parser.add_argument(
+            "--at",
+            action="append",
+            default=[],
+            metavar="F[,F...]",
+            help="also at these frequencies, with units and a decimal point; commas separate them",
+        )
+    parser.add_argument("--json", action="store_true", help="print JSON: SI units, the unit in the key")
+    return parser
+
+
+def _figures_of(file: str) -> Any:
+    from .. import store
+    from ..services.solve import solve
+
+    return solve(store.find(file).design, site_effects=True)
+
+
+def figures(options: argparse.Namespace) -> str:
+    """Return the figures of a design as text or JSON."""
+    frequencies = frequencies_of(options.at)
+    from ..services.solve import at_frequencies
+    from . import json_out, layout, rows
+
+    found = _figures_of(options.file)
+    at = at_frequencies(found, frequencies) if frequencies else ()
+    if options.json:
+        return json_out.text(json_out.figures(found, at))
+    lines = [*layout.summary_lines(found), "", *layout.layout(rows.rows(found))]
+    lines += layout.at_lines(found, at) if at else []
+    return "\n".join(lines) + "\n"
+
+
+LOWEST, HIGHEST = 1e6, 100e6
+"""Between these the wire and its ground are computed. [Hz]"""
+
+
+def frequencies_of(texts: Sequence[str]) -> list[float]:
+    """Return the frequencies of --at in Hz; commas separate them, so decimals take a point."""
+    if not texts:
+        return []
+    from .. import units
+
+    found, faults = [], []
+    for piece in (piece for text in texts for piece in text.split(",")):
+        try:
+            frequency = units.read(piece, units.Dimension.FREQUENCY, "--at")
+        except BadInput as refused:
+            help = "commas separate frequencies, a decimal takes a point: --at 7.05MHz,14.2MHz"
+            faults += [Fault(f.where, f.code, f.value or piece, f.limit, help) for f in refused.faults]
+            continue
+        if not LOWEST <= frequency <= HIGHEST:
+            limit = f"{LOWEST / 1e6:.0f} to {HIGHEST / 1e6:.0f} MHz"
+            faults += [Fault("--at", "outside the range", piece, limit)]
+        found += [frequency]
+    if faults:
+        raise BadInput(faults)
+    return found
+
+
+def sheet(options: argparse.Namespace) -> str:
+    """Return the build sheet of a design as text or JSON."""
+    from . import json_out
+    from . import sheet as paper
+
+    found = _figures_of(options.file)
+    return json_out.text(paper.document(found)) if options.json else paper.text(found)
+
+
+def tank(options: argparse.Namespace) -> str:
+    """Return a resonator from any sufficient few of its values, as text or JSON."""
+    from . import json_out, tank_out
+
+    given, answer = tank_out.answer_to(options.values)
+    if options.json:
+        return json_out.text(json_out.tank(given, answer))
+    return "\n".join(tank_out.lines(given, answer)) + "\n"
+
+
+VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
+    "figures": (
+        "Print everything computed for a design.",
+        figures,
+        "trapdesk figures 40-20-vee --at 7.05MHz,14.2MHz",
+        "\n\nCommas separate frequencies, so a decimal takes a point: 7.05MHz.",
+    ),
+    "sheet": (
+        "Print the build sheet: what to cut, wind, check and measure, and the hill card.",
+        sheet,
+        "trapdesk sheet 40-20-vee > sheet.txt",
+        "",
+    ),
+    "tank": (
+        "Print a parallel resonator from any sufficient few of its values:\n"
+        "  f   LC resonance            R   series resistance of the coil\n"
+        "  L   inductance              RD  dynamic resistance, L/(C R)\n"
+        "  C   capacitance             Q   reactance over R\n"
+        "  B   width, f/Q\n"
+        "Capitals or not does not matter. Three values are enough, unless one of them\n"
+        "follows from the others.",
+        tank,
+        "trapdesk tank f=10.05MHz C=47pF Q=180",
+        "",
+    ),
+}
+"""What each verb says of itself, what it does, an example, and what else there is to know."""
+
+
+def _write(text: str) -> int:
+    """Put data on stdout: quiet when the reader has gone, in words when there is no room."""
+    if sys.stdout is None:
+        raise FileFault("standard output", "not_writable", help="it is closed")
+    _tolerant(sys.stdout)
+    try:
+        sys.stdout.write(text)
+        sys.stdout.flush()
+    except BrokenPipeError:
+        _let_go(sys.stdout)
+    except OSError as error:
+        _let_go(sys.stdout)
+        raise FileFault("standard output", "not_writable", help=error.strerror or str(error)) from None
+    return 0
+
+
+def _tolerant(stream: TextIO) -> None:
+    """Have letters a stream cannot write appear as escapes; what we write ourselves is plain ASCII."""
+    reconfigure = getattr(stream, "reconfigure", None)
+    if reconfigure is not None:
+        reconfigure(errors="backslashreplace")
+
+
+def _let_go(stream: TextIO) -> None:
+    """Turn a broken stream to nowhere, so that what is left in its buffer harms nobody at exit."""
+    nowhere = os.open(os.devnull, os.O_WRONLY)
+    os.dup2(nowhere, stream.fileno())
+    os.close(nowhere)

@@ -1,0 +1,209 @@
+"""The build sheet: plain text for paper, what to cut, wind, check and measure."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Any
+
+from ..design import Design, Shape
+from ..parts import Solenoid
+from ..services.figures import Figures
+from . import hill_card, json_out, words
+from .layout import WIDTH, folded, said
+from .lines import (
+    band_line,
+    band_name,
+    check_line,
+    inductance_text,
+    moves_line,
+    rating,
+    site_line,
+    station_line,
+    title,
+    turns_doubt,
+)
+from .shown import about, exact, known, megahertz
+
+TAIL = 0.10
+"""Wire to leave at each end of a coil. [m], common practice, no source"""
+ALIKE = 0.005
+"""How far the two traps may differ. [1], common practice, no source"""
+
+
+def text(figures: Figures) -> str:
+    """Return the whole sheet as text that ends in a line break."""
+    traps = () if figures.trap is None else (_trap, _stress)
+    parts = (_head, _wires, _parts, *traps[:1], _expected, *traps[1:], _findings)
+    lines = [line for part in parts for line in (*part(figures), "")]
+    rule = "-" * WIDTH
+    lines += [rule, *hill_card.lines(figures), rule, "", *_cautions()]
+    return "\n".join(line.rstrip() for line in lines) + "\n"
+
+
+def document(figures: Figures) -> dict[str, Any]:
+    """Return the sheet for scripts: the figures, the hill card and the cautions."""
+    cards = [
+        {
+            "band": card.band.role,
+            "aim_hz": card.band.aim,
+            "wire": card.wire,
+            "shorten_when_low": card.shorten_when_low,
+            "moves": [
+                {"dip_off_hz": move.off, "change_m": move.change, "other_band_hz": move.other}
+                for move in card.moves
+            ],
+        }
+        for card in hill_card.cards(figures)
+    ]
+    return json_out.figures(figures) | {"hill_card": cards, "cautions": list(words.CAUTIONS)}
+
+
+def _head(figures: Figures) -> Iterator[str]:
+    yield f"BUILD SHEET: {title(figures.design)}"
+    yield from folded("", f"This is {words.ESTIMATE}. Leave the wires long, measure, then cut.")
+    yield ""
+    yield from folded("  site   ", site_line(figures))
+    yield from folded("  radio  ", station_line(figures.design))
+
+
+def _wire_words(design: Design) -> str:
+    wire = design.antenna.wire
+    coat = f", coated {exact(wire.coating, 'length')}" if wire.coating else ", bare"
+    metal = wire.material if wire.conductivity is None else about(wire.conductivity, "conductivity", 3)
+    return f"{metal}, {exact(wire.diameter, 'length', digits=3)}{coat}"
+
+
+def _wires(figures: Figures) -> Iterator[str]:
+    lengths, own = figures.lengths, figures.design.antenna.lengths
+    doubt = known(lengths.doubt, lengths.doubt, "length", "cm").doubt
+    yield f"WIRES: {_wire_words(figures.design)}. Two of each."
+    yield f"  {'':<12}{'electrical':>12}{'tape mark':>12}{'off the reel':>14}"
+    rows = [
+        ("inner wire" if lengths.end else "each side", lengths.inner, lengths.inner_mark, lengths.inner_reel)
+    ]
+    if lengths.end is not None:
+        rows += [("end wire", lengths.end, lengths.end_mark, lengths.end_reel)]
+    for name, electrical, mark, reel in rows:
+        yield f"  {name:<12}{electrical:>10.2f} m{mark:>10.2f} m{reel:>12.2f} m"
+    if lengths.end is not None:
+        yield from folded(
+            "  electrical  ", "inner: feed point to trap centre; end: trap centre to the wire's end."
+        )
+        yield from folded(
+            "  tape mark   ",
+            "inner: from the feed point terminal to the trap's near end; end: from the trap's far end to the"
+            " fold at the end insulator. Between the fastenings, wire pulled tight.",
+        )
+    else:
+        yield from folded("  electrical  ", "feed point to the wire's end.")
+        yield from folded("  tape mark   ", "from the feed point terminal to the fold at the end insulator.")
+    yield from folded(
+        "  reel        ",
+        f"the tape mark and {exact(own.knot, 'length')} for each knot, {exact(own.loop, 'length')} for the"
+        f" end loop, {exact(own.reserve, 'length')} to spare. Fold what is to spare back along the wire.",
+    )
+    if stretch := figures.design.antenna.wire.stretch:
+        yield from folded(
+            "  stretch     ", f"marks are for slack wire, pulled it gets {100 * stretch:.1f} % longer."
+        )
+    yield from folded("  known to    ", f"about {doubt} cm before measuring.")
+    yield from folded("  check       ", f"{check_line(figures)}.")
+    if moves := moves_line(figures):
+        yield from folded("  one cm      ", f"{moves}.")
+
+
+def _parts(figures: Figures) -> Iterator[str]:
+    lengths, design = figures.lengths, figures.design
+    total = 2 * (lengths.inner_reel + (lengths.end_reel or 0.0))
+    yield "PARTS"
+    yield from folded("  wire       ", f"{total:.1f} m off the reel in all")
+    if figures.trap is not None:
+        rated = rating(design)
+        volts = f"rated {about(rated, 'voltage', 3)} peak at radio frequency" if rated else "rating not given"
+        fitted = exact(figures.trap.fitted_capacitance, "capacitance", digits=3)
+        yield from folded("  capacitors ", f"2 of {fitted}, {volts}")
+        if figures.trap.coil is not None:
+            cut = figures.trap.coil.wire_length + 2 * TAIL
+            yield from folded("  coil wire  ", f"2 of {cut:.2f} m")
+    support = "two supports" if design.site.shape is Shape.FLAT else "one support, cords for the ends"
+    yield from folded("  also       ", f"feed point insulator, choke, line, 2 end insulators, {support}")
+
+
+def _trap(figures: Figures) -> Iterator[str]:
+    trap = figures.trap
+    part = figures.design.antenna.trap
+    assert trap is not None and part is not None
+    yield "TRAPS: build two alike"
+    if trap.coil is not None and isinstance(part.coil, Solenoid):
+        coil, made = trap.coil, part.coil
+        turns = known(coil.turns, turns_doubt(figures), "count")
+        yield from folded(
+            "  coil     ",
+            f"{turns.value} turns of {made.material} wire {exact(made.wire, 'length')} on a former"
+            f" {exact(made.former, 'length')} outside, {exact(made.pitch, 'length')} from turn to turn.",
+        )
+        yield from folded(
+            "           ",
+            f"Mean diameter {coil.diameter * 1e3:.1f} mm (former and one wire), winding length"
+            f" {coil.length * 1e3:.1f} mm (turns times pitch). Cut {coil.wire_length + 2 * TAIL:.2f} m:"
+            f" {coil.wire_length:.2f} m in the turns, {TAIL * 100:.0f} cm for each tail.",
+        )
+        yield from folded(
+            "           ",
+            "Wind one turn more and take off: turns pushed together lower the trap, pulled apart raise it.",
+        )
+    else:
+        yield from folded("  coil     ", f"{inductance_text(figures)} at the trap's resonance")
+    fitted = exact(trap.fitted_capacitance, "capacitance", digits=3)
+    yield from folded("  with     ", f"{fitted} across the coil")
+    check = f"{megahertz(trap.resonance)} by itself, hanging free, before it goes into the wire."
+    if trap.resonance_doubt:
+        check += f" As wound it may be {about(trap.resonance_doubt, 'frequency', 1)} off: bring it there."
+    yield from folded("  check    ", f"{check} Both within {ALIKE * 100:.1f} % of each other.")
+    yield from folded("  Q        ", f"about {about(trap.q, 'ratio')}")
+
+
+def _expected(figures: Figures) -> Iterator[str]:
+    yield "EXPECTED AT THE FEED POINT"
+    for band in figures.bands.values():
+        yield from folded(f"  {band_name(band):<7} ", band_line(figures, band))
+
+
+def _stress(figures: Figures) -> Iterator[str]:
+    design = figures.design
+    yield f"STRESS OF ONE TRAP at {about(design.station.power, 'power', 3)}, worst in the wanted part"
+    bands = [band for band in figures.bands.values() if band.worst_stress is not None]
+    mode = f"average {design.station.mode}"
+    yield f"  {'':<13}{'peak volts':>14}{'coil, rms':>15}{'steady heat':>15}{mode:>19}"
+    for band in bands:
+        worst, doubt = band.worst_stress, band.stress_doubt
+        assert worst is not None
+        cells = [
+            str(known(value, value * doubt, dimension))
+            for value, dimension in (
+                (worst.peak_voltage, "voltage"),
+                (worst.coil_current, "current"),
+                (worst.watts, "power"),
+                (worst.average_watts, "power"),
+            )
+        ]
+        volts, amps, watts, average = cells
+        yield f"  {band_name(band):<13}{volts:>14}{amps:>15}{watts:>15}{average:>19}"
+    yield from folded(
+        "  ", "Peak volts decide the capacitor, average watts the heat. The wire ends carry high voltage too."
+    )
+
+
+def _findings(figures: Figures) -> Iterator[str]:
+    yield "FINDINGS"
+    for finding in words.ranked(figures.findings):
+        text = words.sentence(finding, figures.design)
+        yield from said(f"  {words.LEVELS[finding.level]}: ", text, words.cure(finding))
+    if not figures.findings:
+        yield "  none"
+
+
+def _cautions() -> Iterator[str]:
+    yield "BEFORE ANYTHING GOES UP"
+    for caution in words.CAUTIONS:
+        yield from folded("  - ", caution)
