@@ -209,8 +209,12 @@ class _Samples:
     """
 
     def __init__(self, wire: Wire, frequency: np.ndarray) -> None:
-        low = 2 * wire.end_height if wire.ground.kind is not GroundKind.SPACE else math.inf
-        count = 12 + 2 * math.ceil(max(0.0, 2.0 * wire.side / low - 4.0) if low < math.inf else 0)
+        # Enough points for the phase along a side, and for a kernel as narrow as a low level side is high; a side
+        # that is low at its end only needs few, for they crowd there.
+        longest = 2 * np.pi / C0 * float(frequency.max()) * wire.side
+        width = 2 * wire.end_height + 0.4 * (wire.height - wire.end_height)
+        narrow = 2.2 * wire.side / width if wire.ground.kind is not GroundKind.SPACE else 0.0
+        count = math.ceil(max(12, 8 + 1.2 * longest, 6 + narrow))
         angle = np.pi * (np.arange(count) + 0.5) / count
         self.points = wire.side * (1 + np.cos(angle)) / 2
         self._weights = np.sin(angle)
