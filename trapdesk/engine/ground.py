@@ -65,7 +65,22 @@ class Ground:
     permittivity: float = 1.0
 
     def index_squared(self, frequency: np.ndarray) -> np.ndarray:
-        """Return the complex relative permittivity of the soil at each frequency. [1]."""
+        """Return the complex relative permittivity of the soil at each frequency.
+
+        Parameters
+        ----------
+        frequency : float or array
+            Frequency. [Hz], > 0
+
+        Returns
+        -------
+        complex array
+            Permittivity, its imaginary part from the conductivity. [1]
+
+        Source
+        ------
+        Definition: eps_r - j sigma / (w eps0), time running as exp(+jwt).
+        """
         return self.permittivity - 1j * self.conductivity / (2 * np.pi * frequency * EPS0)
 
 
