@@ -18,7 +18,7 @@ from ..errors import BadInput, Fault, FileFault, NoAnswer, TrapdeskError, quoted
 ABOUT = """\
 Design, build and tune a two-band trap dipole, in one terminal.
 
-  trapdesk [FILE]               open the desk, with a design or the first preset
+  trapdesk [FILE]               open the desk, on a design or the first preset
   trapdesk figures FILE         everything computed for a design
   trapdesk sheet FILE           the build sheet, plain text for paper
   trapdesk tank NAME=VALUE ...  a parallel resonator from any few of its values
@@ -28,7 +28,8 @@ verb is opened by its path: trapdesk ./figures. Every verb has --help with an
 example."""
 
 ENDING = """\
-Exit: 0 an answer, 1 no answer exists, 2 bad input, 3 a file that cannot be read.
+Exit: 0 an answer, 1 no answer exists, 2 bad input, 3 a file that cannot be
+read or written.
 All figures are estimates until something is measured."""
 
 INTERRUPTED = 130

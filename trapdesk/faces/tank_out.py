@@ -42,7 +42,7 @@ def answer_to(texts: Sequence[str]) -> tuple[dict[str, float], TankAnswer]:
     for text in texts:
         name, equals, value = text.partition("=")
         known_name = NAMES.get(name.strip().lower(), "")
-        if not equals:
+        if not equals or not name.strip():
             faults += [Fault("", "unreadable", text, help=f"write name=value: {EXAMPLE}")]
         elif not known_name:
             near = difflib.get_close_matches(name.strip()[:10].lower(), NAMES, n=1)
@@ -140,7 +140,7 @@ def _definitions(b: TankBehaviour, answer: TankAnswer) -> list[str]:
         return str(known(number, off, dimension)) if off else str(exact(number, dimension))
 
     def beside(number: float | None, first: float, of: TankQuantity) -> str:
-        """Put a value by one definition beside that by the first: they differ by less than either is known."""
+        """Put a value beside that by the first definition; they differ by less than either is known."""
         if number is None:
             return "none"
         difference = number / first - 1

@@ -95,8 +95,8 @@ SAYINGS: dict[str, Saying] = {
         helps="name the soil, or measure the dip and trust that",
     ),
     "coil_range": Saying(
-        says="the coil's {where} is {value}, its formulas are held to {limit}",
-        bare="the coil's {where} is {value}, outside the range its formulas hold for",
+        says="{where} of the coil: {value}, its formulas are held to {limit}",
+        bare="{where} of the coil: {value}, outside the range its formulas hold for",
         helps="wind it, measure its inductance, and enter that as a given coil",
     ),
     "site_doubt": Saying(
@@ -118,7 +118,7 @@ SAYINGS: dict[str, Saying] = {
     ),
     "not_converged": Saying(
         says="{where}: the computation did not settle, {value} is left where {limit} is allowed",
-        bare="{where}: the computation did not settle",
+        bare="{where}: the computation did not settle, {value} is left",
         helps="do not build from these figures; change the design a little and look again",
     ),
 }
@@ -131,6 +131,8 @@ REASONS = {
     "no_such_coil": "no number of turns on this former makes the coil that is needed",
 }
 """Why there is no answer, by the code of `NoAnswer`."""
+HELPS = {"ends_too_low": "hang it higher or flatter, or raise the ends"}
+"""What would help where the one who found no answer does not say."""
 
 POWER_LINES = (
     "Power lines kill. Keep wire, mast and halyard away from every overhead line, much further"
@@ -248,4 +250,5 @@ def no_answer(error: NoAnswer) -> str:
     line = f"{visible(error.where, 120)}: {reason}" if error.where else reason
     if numbers:
         line += f" ({', '.join(numbers)})"
-    return f"{line}; {visible(error.help, 300)}" if error.help else line
+    help = error.help or HELPS.get(error.code, "")
+    return f"{line}; {visible(help, 300)}" if help else line
