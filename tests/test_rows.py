@@ -152,6 +152,37 @@ def test_no_finding_is_lost(code, level, limit):
         assert row.why
 
 
+def test_stress_is_marked_where_it_is_worst():
+    hot = Finding(code="trap_heat", level=Level.STOP, where="antenna.trap", value=30.0, dimension="power")
+    volts = Finding(
+        code="trap_voltage",
+        level=Level.WATCH,
+        where="antenna.trap.capacitor.voltage",
+        value=2.5e3,
+        dimension="voltage",
+    )
+    by_key = found(replace(FIGURES, findings=(hot, volts)))
+    assert by_key["bands.upper.trap_average"].finding == hot
+    assert by_key["bands.upper.trap_worst_peak"].finding == volts
+    assert by_key["antenna.trap.resonance"].finding is None
+
+
+def test_cure_is_that_of_the_cause():
+    swr = Finding(code="swr_wanted", level=Level.STOP, where="bands.upper", value=30.0, limit=2.0)
+    none = Finding(
+        code="no_resonance", level=Level.WATCH, where="bands.upper", value=14.15e6, dimension="frequency"
+    )
+    assert "let them be solved" in summary(replace(FIGURES, findings=(swr, none)))["next"]
+    elsewhere = replace(none, where="bands.lower")
+    assert "want less of the band" in summary(replace(FIGURES, findings=(swr, elsewhere)))["next"]
+
+
+def test_doubt_of_an_swr_goes_with_it():
+    odd = replace(BANDS["upper"], aim_swr=40.0, swr_doubt=4.0)
+    says = summary(replace(FIGURES, bands=BANDS | {"upper": odd}))["bands.upper"]
+    assert "SWR 1.2; 1.6 at" in says
+
+
 def test_worst_finding_comes_first():
     fine = Finding(code="trap_heat", level=Level.FINE, where="antenna.trap", value=1.0, dimension="power")
     stop = Finding(
@@ -171,7 +202,7 @@ def test_worst_finding_comes_first():
     ("code", "where", "value", "limit", "dimension", "text"),
     [
         ("swr_wanted", "bands.upper", 2.01, 2.0, "ratio",
-         "20 m: SWR reaches just over 2 in the wanted part, the limit is 2"),
+         "20 m: worst SWR just over 2 in the wanted part, the limit is 2"),
         ("aim_missed", "bands.lower", -41e3, 9e3, "frequency",
          "40 m: resonance lies 41 kHz below the aim; up to 9 kHz would not matter"),
         ("ground_share", "bands.lower", 0.61, 0.5, "ratio",
@@ -208,7 +239,7 @@ def test_summary_says_what_ten_seconds_need():
         "14.05 MHz, 10.37 turns, 1.9 kV peak on 20 m (rated 3 kV), 1.3 W heat"
     )
     assert "78 % of a plain half wave" in says["check"]
-    assert "SWR reaches 2.6" in says["worst"]
+    assert "worst SWR 2.6" in says["worst"]
     assert "bring both to 14.05 MHz" in says["next"]
 
 

@@ -78,11 +78,12 @@ def _even(size: float) -> float:
 
 def lines(figures: Figures) -> list[str]:
     """Return the card as lines, fewer than fill a small screen."""
-    head = f"HILL CARD: {title(figures.design, 30)}"
+    head = f"HILL CARD: {title(figures.design, 40)}"
     found = [f"{head:<{WIDTH - len(words.ESTIMATE)}}{words.ESTIMATE}", *_marks(figures)]
     all_cards = cards(figures)
     for number, card in enumerate(all_cards, start=1):
-        found += _table(card, f"{number}. " if len(all_cards) > 1 else "")
+        wire = "side" if figures.trap is None else f"{card.wire} wire"
+        found += _table(card, f"{number}. " if len(all_cards) > 1 else "", wire)
     if not all_cards:
         found += ["No resonance near the aim: mend the design before going out."]
     trap = figures.bands["upper"].effects if "upper" in figures.bands else None
@@ -105,14 +106,14 @@ def _marks(figures: Figures) -> Iterator[str]:
     )
 
 
-def _table(card: Card, number: str) -> Iterator[str]:
-    name, wire = band_name(card.band), card.wire if card.other is not None or number else "side's"
+def _table(card: Card, number: str, wire: str) -> Iterator[str]:
+    name = band_name(card.band)
     low, high = ("shorten", "let out") if card.shorten_when_low else ("let out", "shorten")
     yield f"{number}{name}, aim {megahertz(card.band.aim)}: dip too low, {low}; dip too high, {high}."
     beside = ""
     if card.other is not None and any(move.other is not None for move in card.moves):
         beside = f"{band_name(card.other)} goes with it by"
-    yield f"     {'dip off by':>12}   {'each ' + wire + ' wire by':>20}   {beside:>22}".rstrip()
+    yield f"     {'dip off by':>12}   {'each ' + wire + ' by':>20}   {beside:>22}".rstrip()
     for move in card.moves:
         other = _other(move.other) if beside else ""
         off, change = about(move.off, "frequency"), centimetres(move.change)

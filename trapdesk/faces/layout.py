@@ -9,8 +9,9 @@ from collections.abc import Iterable
 
 from ..services.figures import AtFrequency, BandFigures, Figures, Stress
 from . import words
+from .lines import swr_text
 from .rows import Row, summary
-from .shown import impedance, known, percent, swr
+from .shown import impedance, known, percent
 
 WIDTH = 79
 GROUPS: dict[str, str] = {
@@ -66,7 +67,8 @@ def said(head: str, text: str, cure: str) -> list[str]:
 
 def at_lines(figures: Figures, at: Iterable[AtFrequency]) -> list[str]:
     """Return a small table of the antenna at single frequencies, no finer than the nearest band is known."""
-    lines = ["", "At single frequencies, the trap's stress that of a steady carrier"]
+    stress = "" if figures.trap is None else ", the trap's stress that of a steady carrier"
+    lines = ["", f"At single frequencies{stress}"]
     head = f"  {'MHz':>9} {'SWR':>8} {'Z at the feed point':>21} {'sky':>6} {'feed':>8}"
     lines += [head if figures.trap is None else f"{head} {'trap peak':>10} {'heat':>8}"]
     for one in at:
@@ -74,17 +76,18 @@ def at_lines(figures: Figures, at: Iterable[AtFrequency]) -> list[str]:
         volts, watts = _at_stress(one.stress, band.stress_doubt)
         feed = known(one.feed_current, one.feed_current * band.stress_doubt, "current")
         lines += [
-            f"  {one.frequency / 1e6:>9.7g} {swr(one.swr, band.swr_doubt * one.swr / band.aim_swr):>8}"
-            f" {impedance(one.impedance, _spread(one.impedance, band)):>21}"
+            f"  {one.frequency / 1e6:>9.7g} {swr_text(band, one.swr):>8}"
+            f" {_impedance(one.impedance, band):>21}"
             f" {percent(one.shares.sky, band.share_doubt):>6}"
             f" {feed.number + ' ' + feed.unit:>8}" + (f" {volts:>10} {watts:>8}" if volts else "")
         ]
     return lines
 
 
-def _spread(z: complex, band: BandFigures) -> float:
-    """Return the doubt of an impedance away from the band: never a smaller part of it than at the aim."""
-    return band.impedance_doubt * max(1.0, abs(z) / abs(band.aim_impedance))
+def _impedance(z: complex, band: BandFigures) -> str:
+    """Return R and X away from the band, each to the part of itself that is in doubt at the aim."""
+    part = band.impedance_doubt / abs(band.aim_impedance)
+    return impedance(z, part * abs(z.real), part * max(abs(z.real), abs(z.imag)))
 
 
 def _at_stress(stress: Stress | None, doubt: float) -> tuple[str, str]:

@@ -33,6 +33,11 @@ def band_name(band: BandFigures) -> str:
     return visible(band.name, 12)
 
 
+def swr_text(band: BandFigures, value: float) -> str:
+    """Return an SWR of a band; its doubt is that at the aim, the same part of it elsewhere."""
+    return swr(value, band.swr_doubt * value / band.aim_swr)
+
+
 def rating(design: Design) -> float | None:
     """Return the peak voltage the trap's capacitor stands, None when nobody said."""
     trap = design.antenna.trap
@@ -87,11 +92,10 @@ def band_line(figures: Figures, band: BandFigures) -> str:
     low, high = getattr(figures.design.bands, band.role).wanted
     dip = known(band.dip, band.frequency_doubt, "frequency", "MHz")
     off = about(band.frequency_doubt, "frequency")
-    doubt = band.swr_doubt
     return (
-        f"dip {dip.number} MHz +- {off}, SWR {swr(band.dip_swr, doubt)};"
-        f" {swr(band.low_swr, doubt)} at {megahertz(low).removesuffix(' MHz')},"
-        f" {swr(band.high_swr, doubt)} at {megahertz(high)}"
+        f"dip {dip.number} MHz +- {off}, SWR {swr_text(band, band.dip_swr)};"
+        f" {swr_text(band, band.low_swr)} at {megahertz(low).removesuffix(' MHz')},"
+        f" {swr_text(band, band.high_swr)} at {megahertz(high)}"
     )
 
 
@@ -163,8 +167,9 @@ def check_line(figures: Figures) -> str:
 def next_move(figures: Figures) -> str:
     """Return what to do next with a design that nobody has measured yet."""
     worst = next(iter(words.ranked(figures.findings)), None)
-    if worst is not None and worst.level == words.SEVERITY[0] and words.cure(worst):
-        return f"mend the design first: {words.cure(worst)}"
+    helps = words.cure_among(worst, figures.findings) if worst is not None else ""
+    if worst is not None and worst.level == words.SEVERITY[0] and helps:
+        return f"mend the design first: {helps}"
     names = [band_name(band) for band in figures.bands.values()]
     hang = f"cut the wires to their reel lengths, hang them, measure the dip on {names[0]}"
     if len(names) > 1:

@@ -25,6 +25,7 @@ from .lines import (
     rating,
     site_line,
     station_line,
+    swr_text,
     trap_line,
     turns_doubt,
     wire_line,
@@ -38,7 +39,6 @@ from .shown import (
     known,
     megahertz,
     percent,
-    swr,
 )
 
 # Which row of a band or a trap a finding belongs to, where its place alone does not tell.
@@ -53,6 +53,12 @@ _FINDING_ROWS = {
     "trap_heat": "trap_average",
     "trap_voltage": "trap_worst_peak",
     "trap_voltage_unrated": "trap_worst_peak",
+}
+
+_STRESSES = {
+    "trap_voltage": "peak_voltage",
+    "trap_voltage_unrated": "peak_voltage",
+    "trap_heat": "average_watts",
 }
 
 
@@ -103,10 +109,20 @@ def rows(figures: Figures) -> tuple[Row, ...]:
         *(row for band in figures.bands.values() for row in _effects(band)),
     ]
     for finding in words.ranked(figures.findings):
-        index = _row_of(finding, found)
+        index = _row_of(_placed(finding, figures), found)
         if index is not None and found[index].finding is None:
             found[index] = replace(found[index], finding=finding)
     return (*found, *_findings(figures))
+
+
+def _placed(finding: Finding, figures: Figures) -> Finding:
+    """Return a finding on the trap's stress moved to the band in which the stress is worst."""
+    quantity = _STRESSES.get(finding.code)
+    bands = [band for band in figures.bands.values() if band.worst_stress is not None]
+    if quantity is None or not bands:
+        return finding
+    worst = max(bands, key=lambda band: getattr(band.worst_stress, quantity))
+    return replace(finding, where=f"bands.{worst.role}")
 
 
 def _row_of(finding: Finding, among: list[Row]) -> int | None:
@@ -178,20 +194,20 @@ def _band(figures: Figures, band: BandFigures) -> Iterator[Row]:
 
     doubt = band.frequency_doubt
     yield row("dip", "dip", known(band.dip, doubt, "frequency", "MHz"), why="where the SWR is least")
-    yield row("dip_swr", "SWR at the dip", swr(band.dip_swr, band.swr_doubt))
+    yield row("dip_swr", "SWR at the dip", swr_text(band, band.dip_swr))
     yield row(
         "resonance", "resonance", known(band.resonance, doubt, "frequency", "MHz"),
         given=f"aim {megahertz(band.aim)}", why="where the reactance rises through zero, nearest the aim",
     )  # fmt: skip
-    yield row("aim_swr", "SWR at the aim", swr(band.aim_swr, band.swr_doubt))
+    yield row("aim_swr", "SWR at the aim", swr_text(band, band.aim_swr))
     yield row("z_aim", "Z at the aim", impedance(band.aim_impedance, band.impedance_doubt))
     if band.resonance_resistance is not None:
         resistance = known(band.resonance_resistance, band.impedance_doubt, "resistance", "ohm")
         yield row("r_resonance", "R at resonance", resistance)
     low, high = design.wanted
-    yield row("low_swr", "SWR at the low edge", swr(band.low_swr, band.swr_doubt), given=megahertz(low))
-    yield row("high_swr", "SWR at the high edge", swr(band.high_swr, band.swr_doubt), given=megahertz(high))
-    worst = swr(band.worst_swr, band.swr_doubt)
+    yield row("low_swr", "SWR at the low edge", swr_text(band, band.low_swr), given=megahertz(low))
+    yield row("high_swr", "SWR at the high edge", swr_text(band, band.high_swr), given=megahertz(high))
+    worst = swr_text(band, band.worst_swr)
     yield row("worst_swr", "worst SWR wanted", worst, given=f"limit {limit}")
     width = known(band.width, doubt, "frequency", "kHz")
     yield row(
@@ -395,6 +411,6 @@ def summary(figures: Figures) -> tuple[Row, ...]:
         found += [row("worst", "fine", "no findings")]
     else:
         text = words.sentence(worst, figures.design)
-        helps = words.cure(worst)
+        helps = words.cure_among(worst, figures.findings)
         found += [row("worst", words.LEVELS[worst.level], f"{text}; {helps}" if helps else text, worst)]
     return (*found, row("next", "next", next_move(figures)))

@@ -106,10 +106,13 @@ def megahertz(value: float, digits: int = 5) -> str:
     return f"{whole}.{decimals:0<2} MHz"
 
 
-def impedance(value: complex, doubt: float = 1.0) -> str:
-    """Return R and X in ohm, no finer than their doubt."""
-    step = max(resolution(doubt) if doubt > 0 else 0.1, 0.1)
-    reactance = rounded(value.imag, step)
+def impedance(value: complex, doubt: float = 1.0, reactance_doubt: float | None = None) -> str:
+    """Return R and X in ohm, no finer than their doubt, which is the same for both unless given."""
+    step, other = (
+        max(resolution(off) if off > 0 else 0.1, 0.1)
+        for off in (doubt, doubt if reactance_doubt is None else reactance_doubt)
+    )
+    reactance = rounded(value.imag, other)
     sign = "-" if reactance.startswith("-") else "+"
     return f"{rounded(value.real, step)} {sign} j{reactance.removeprefix('-')} ohm"
 

@@ -34,8 +34,8 @@ class Saying:
 
 SAYINGS: dict[str, Saying] = {
     "swr_wanted": Saying(
-        says="{where}: SWR reaches {value} in the wanted part, the limit is {limit}",
-        bare="{where}: SWR reaches {value} in the wanted part",
+        says="{where}: worst SWR {value} in the wanted part, the limit is {limit}",
+        bare="{where}: worst SWR {value} in the wanted part",
         helps="want less of the band, move the aim, or expect to use a tuner",
         as_="swr",
     ),
@@ -123,6 +123,9 @@ SAYINGS: dict[str, Saying] = {
     ),
 }
 
+_SYMPTOMS = ("swr_wanted", "no_width", "wanted_wide", "site_doubt")
+_CAUSES = ("no_resonance", "aim_missed")
+
 REASONS = {
     "aim_not_met": "no wire lengths give resonance at the aim",
     "ends_too_low": "the wire that meets the aim reaches the ground",
@@ -198,6 +201,15 @@ def cure(finding: Finding) -> str:
     return saying.helps if saying and finding.level is not Level.FINE else ""
 
 
+def cure_among(finding: Finding, findings: tuple[Finding, ...]) -> str:
+    """Return what would help a finding, or its cause where another finding of that place is the cause."""
+    if finding.code in _SYMPTOMS:
+        for other in findings:
+            if other.where == finding.where and other.code in _CAUSES and other.level is not Level.FINE:
+                return cure(other)
+    return cure(finding)
+
+
 def amount(value: float, dimension: str, as_: str = "") -> str:
     """Return a finding's number in words, to two or three digits."""
     if as_ == "swr":
@@ -212,7 +224,7 @@ def amount(value: float, dimension: str, as_: str = "") -> str:
         return f"{show(abs(value), Dimension(dimension), digits=2)} {'above' if value > 0 else 'below'}"
     # A frequency is told finely when it is a place on the dial, to two digits when it is a distance.
     if dimension == "frequency":
-        return shown.megahertz(value, 4) if value >= 1e6 else show(value, Dimension(dimension), digits=2)
+        return shown.megahertz(value) if value >= 1e6 else show(value, Dimension(dimension), digits=2)
     return shown.about(value, dimension)
 
 
