@@ -4,16 +4,18 @@ The files, each one subject:
 
 ====================  ==================================================================================
 ``limits``            the check of arguments: a value outside its limits is named, never clamped
-``special``           Bessel, elliptic and sine/cosine integrals
+``special``           Bessel and complete elliptic integrals, round-wire ratio
 ``conductors``        resistivity, gauges, skin effect, AC resistance, insulation
 ``coils``             solenoid and toroid: inductance, self-capacitance, loss
 ``coil_formulas``     published formulas for the solenoid: cross-checks of `coils`
 ``cables``            coaxial and parallel line: constants, loss, transformation; the coaxial trap
 ``capacitors``        single, stub and combinations: loss, drift, voltage
 ``resonator``         the one parallel resonator: trap, tuner element, trial and fit alike
+``mesh``              sides of a wire cut into elements: quadratures, static integrals, sample points
 ``wire``              thin-wire integral equation: a wire with ports to its port matrix and currents
 ``ports``             that wire over frequency: port matrices, traps as terminations, interpolation
 ``ground``            the half-space: Sommerfeld kernels, reflection coefficients, field in the air
+``sky``               what a wire sends to the sky: the far field summed over all directions
 ``networks``          ladders of series and shunt branches: cascade, loss, stress; closed-form matches
 ``stress``            what each part of the resonator carries: currents, volts, watts, reactive power
 ``tank``              parts of a resonator from any sufficient subset of its quantities

@@ -88,9 +88,9 @@ class Ground:
 class Reflected:
     """The four reflected-wave kernels between pairs of points, each of shape (frequencies, pairs).
 
-    `along` couples horizontal currents, `upright` vertical ones; `cross` is what a horizontal current does to a
-    vertical one along the line of sight (the other way round with the other sign); `charge` is the scalar
-    potential's. All in 1/m.
+    `along` couples horizontal currents, `upright` vertical ones; `cross` is what a horizontal current does
+    to a vertical one along the line of sight (the other way round with the other sign); `charge` is the
+    scalar potential's. All in 1/m.
     """
 
     along: np.ndarray
