@@ -174,7 +174,7 @@ mode = 3
         'station.reference: true or false stands where a value is wanted; for example reference = "50 ohm"',
         "station.mode: a number stands where a word is wanted; one of carrier, CW, SSB, SSB processed",
         "bands.lower.high: '7.2 kHz' is less than 1.5 MHz; from 1.5 MHz up to 60 MHz",
-        "station.swr_limit: '1': not above (1); above 1 up to 20",
+        "station.swr_limit: '1' is not above 1; above 1 up to 20",
     ]
 
 
@@ -292,7 +292,7 @@ def test_a_rule_is_not_held_against_the_stand_in_of_a_fault():
             Breach(
                 where="bands.lower.aim", code="outside", value=8e6, bound=(7e6, 7.2e6), dimension="frequency"
             ),
-            "bands.lower.aim: '8 MHz': outside (7 MHz to 7.2 MHz); within low to high",
+            "bands.lower.aim: '8 MHz' is outside 7 MHz to 7.2 MHz; within low to high",
         ),
         (
             Breach(where="site.end_height", code="over", value=11.0, bound=10.0, dimension="length"),

@@ -18,7 +18,7 @@ class Breach:
     """A value that a rule forbids: where, which rule, the value, and the bound or the other key it meets.
 
     `code` is one of: missing, below, not_above, over, not_a_choice, not_a_number, unexpected, needs,
-    needs_one_of, not_both, order, outside, solve_one.
+    needs_one_of, not_both, order, outside, solve_one, ends_too_low.
     """
 
     where: str

@@ -128,6 +128,8 @@ _TOGETHER = {
     ("not_above", "antenna.lengths.inner"): "more than half of antenna.trap.body, which reaches into it",
     ("not_above", "antenna.lengths.end"): "more than half of antenna.trap.body, which reaches into it",
     ("over", "site.end_height"): "no higher than the feed point, site.height",
+    ("not_above", "site.end_height"): "a side of this length does not reach down that far",
+    ("ends_too_low", "site.height"): "hang it higher, hang it flatter, or make the wires shorter",
     ("order", "bands.upper.aim"): "the upper band's aim must lie above the lower band's",
     ("unexpected", "antenna.lengths.end"): "take it out, or add a table [antenna.trap]",
     ("unexpected", "site.end_height"): 'take it out, or set shape = "vee"',
@@ -148,7 +150,7 @@ def spoken(breach: Breach) -> Fault:
     help = _TOGETHER.get((code, where), "")
     if where.startswith("bands.") and code in ("order", "outside") and not help:
         help = _ENDS.get(where.rpartition(".")[2], "")
-    if code in ("below", "over", "not_above", "order", "outside"):
+    if code in ("below", "over", "not_above", "order", "outside", "ends_too_low"):
         value, limit = _both(breach.value, breach.bound, breach.dimension)
         code = {"below": "too_small", "over": "too_large", "order": "not_above"}.get(code, code)
         return Fault(where, code, value, limit, help or _range(known))

@@ -134,9 +134,6 @@ REASONS = {
     "no_such_coil": "no number of turns on this former makes the coil that is needed",
 }
 """Why there is no answer, by the code of `NoAnswer`."""
-HELPS = {"ends_too_low": "hang it higher or flatter, or raise the ends"}
-"""What would help where the one who found no answer does not say."""
-
 POWER_LINES = (
     "Power lines kill. Keep wire, mast and halyard away from every overhead line, much further"
     " than the length of antenna plus mast, also when they fall or swing."
@@ -262,5 +259,4 @@ def no_answer(error: NoAnswer) -> str:
     line = f"{visible(error.where, 120)}: {reason}" if error.where else reason
     if numbers:
         line += f" ({', '.join(numbers)})"
-    help = error.help or HELPS.get(error.code, "")
-    return f"{line}; {visible(help, 300)}" if help else line
+    return f"{line}; {visible(error.help, 300)}" if error.help else line

@@ -105,7 +105,12 @@ def _lengths(search: Search, x: np.ndarray) -> tuple[float, float | None]:
 def _hang(search: Search, x: np.ndarray) -> Wire:
     wire = search.make(*_lengths(search, x))
     if wire.ground.kind is not GroundKind.SPACE and wire.end_height < LEAST_END_HEIGHT:
-        raise NoAnswer("ends_too_low", search.keys[-1], {"end_height_m": wire.end_height})
+        raise NoAnswer(
+            "ends_too_low",
+            search.keys[-1],
+            {"end_height_m": wire.end_height},
+            "hang it higher, or flatter, or raise the ends",
+        )
     return wire
 
 

@@ -143,8 +143,10 @@ class Response:
         curve, ports = self.near, self.ports
         i = int(np.argmin(curve.swr))
         if i in (0, curve.frequency.size - 1):
-            curve, ports = self.far, self._wide_ports
-            i = int(np.argmin(curve.swr))
+            further = int(np.argmin(self.far.swr))
+            # A least value at the far edge too is no dip: then the nearest the band comes to one is given.
+            if 0 < further < self.far.frequency.size - 1:
+                curve, ports, i = self.far, self._wide_ports, further
         last = curve.frequency.size - 1
         i = min(max(i, 1), last - 1)
         f, s = curve.frequency[i - 1 : i + 2], curve.swr[i - 1 : i + 2]

@@ -137,6 +137,20 @@ def hang(design: Design, trap: BuiltTrap | None) -> Wire:
 
     unknown = [name for name in ("inner", "end") if getattr(lengths, name) is SOLVE]
     if not unknown:
+        side = lengths.inner + (lengths.end or 0.0)
+        if site.end_height is not None and site.height - site.end_height >= side:
+            lowest = site.height - side
+            raise InvalidDesign(
+                (
+                    Breach(
+                        where="site.end_height",
+                        code="not_above",
+                        value=site.end_height,
+                        bound=lowest,
+                        dimension="length",
+                    ),
+                )
+            )
         wire = make(lengths.inner, lengths.end)
         _refuse_low_ends(wire)
         return wire
