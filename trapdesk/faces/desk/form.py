@@ -1,0 +1,362 @@
+"""The input rows, made from the declared fields, and what typing into one means for the design."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+from typing import Any
+
+from ...design import UNKNOWN, Band, Design, Shape, get, with_value
+from ...engine.ground import UNKNOWN_SOIL
+from ...errors import BadInput, Fault, visible
+from ...fields import SOLVE, Declared, declared, walk
+from ...parts import Trap
+from ...rules import trap_unknowns
+from ...services.figures import Figures
+from ...units import Dimension, read, show, to_text
+from .. import rows as presenter
+
+DRAWERS: dict[str, tuple[str, ...]] = {
+    "Site": ("title", "site."),
+    "Bands": ("bands.",),
+    "Trap": ("antenna.trap",),
+    "Wire": ("antenna.wire.", "antenna.lengths."),
+    "Feed": ("station.",),
+}
+"""Drawers and the beginnings of the keys that lie in them."""
+
+# Where nothing is set: what then holds, in a word.
+UNSET = {
+    "wanted_low": "band edge",
+    "wanted_high": "band edge",
+    "aim": "middle",
+    "antenna.trap.capacitor.q": "lossless",
+    "antenna.trap.capacitor.voltage": "not known",
+    "antenna.wire.conductivity": "by metal",
+    "site.soil": UNKNOWN,
+    "site.conductivity": "by class",
+    "site.permittivity": "by class",
+}
+_NO = "none"
+_YES = {"antenna.trap": "fitted", "bands.upper": "wanted"}
+_STARTING_ANGLE = math.radians(120)
+_UPPER = Band(name="20 m", low=14.0e6, high=14.35e6)
+
+
+@dataclass(frozen=True, kw_only=True)
+class FormRow:
+    """One input: its key, what is declared of it, how its value reads, and whether that was found, not set.
+
+    `words` are the words it may be, when it is a choice. A row without a key is a heading.
+    """
+
+    key: str
+    known: Declared
+    value: Any
+    text: str
+    found: bool = False
+    unset: bool = False
+    words: tuple[str, ...] = ()
+
+    @property
+    def solvable(self) -> bool:
+        """Whether the desk can find this value."""
+        return self.known.solvable
+
+
+def drawer_of(key: str) -> str:
+    """Return the drawer a key lies in; empty for one that has none."""
+    return next((name for name, heads in DRAWERS.items() if key.startswith(heads)), "")
+
+
+def rows(design: Design, figures: Figures | None) -> dict[str, list[FormRow]]:
+    """Return the rows of every drawer; headings are rows without a key."""
+    drawers: dict[str, list[FormRow]] = {name: [] for name in DRAWERS}
+    answers = _answers(figures)
+    for key, known, value in walk(design):
+        drawer = drawer_of(key)
+        if not drawer or (key == "antenna.lengths.end" and design.antenna.trap is None):
+            continue
+        if known.dimension != "part":
+            drawers[drawer].append(_row(design, key, known, value, answers.get(key, "")))
+            continue
+        if key in _YES:
+            drawers[drawer].append(_presence(key, known, value))
+        if key.startswith("bands.") and value is not None:
+            drawers[drawer].append(_heading(visible(value.name, 20)))
+        if isinstance(known.choices, dict) and known.choices and value is not None:
+            kinds = tuple(known.choices)
+            drawers[drawer].append(
+                FormRow(key=f"{key}.kind", known=known, value=value.kind, text=value.kind, words=kinds)
+            )
+    # The upper band comes first wherever bands are shown; its row of presence divides the two.
+    bands = drawers["Bands"]
+    divide = next(place for place, row in enumerate(bands) if row.key == "bands.upper")
+    drawers["Bands"] = bands[divide:] + bands[:divide]
+    return drawers
+
+
+def _heading(text: str) -> FormRow:
+    return FormRow(key="", known=Declared(label=text, help="", dimension="part"), value=None, text="")
+
+
+def _presence(key: str, known: Declared, value: Any) -> FormRow:
+    text = _NO if value is None else _YES[key]
+    return FormRow(key=key, known=known, value=text, text=text, words=(_YES[key], _NO))
+
+
+def _row(design: Design, key: str, known: Declared, value: Any, answer: str) -> FormRow:
+    words = tuple(known.choices) if known.dimension == "choice" else ()
+    if value is SOLVE:
+        return FormRow(key=key, known=known, value=value, text=answer or "...", found=True)
+    if value is not None:
+        text = presenter.given(design, key)
+        return FormRow(key=key, known=known, value=value, text=text, words=words)
+    text = answer or UNSET.get(key) or UNSET.get(key.rpartition(".")[2], "not set")
+    return FormRow(key=key, known=known, value=value, text=text, unset=True, found=bool(answer), words=words)
+
+
+def _answers(figures: Figures | None) -> dict[str, str]:
+    """Return what was found for values of the design, as the rows have it, without the doubt."""
+    if figures is None:
+        return {}
+    answers = {}
+    for row in presenter.rows(figures):
+        if found(figures, row.key) is not None and row.value:
+            answers[row.key] = f"{row.value.partition(' +-')[0]} {row.unit}".rstrip()
+    angle = found(figures, "site.included_angle")
+    if angle is not None:
+        answers["site.included_angle"] = f"{math.degrees(angle):.0f} deg"
+    return answers
+
+
+def found(figures: Figures | None, key: str) -> float | None:
+    """Return what the figures found for a value that is solved or follows from others, in SI."""
+    if figures is None:
+        return None
+    lengths, trap = figures.lengths, figures.trap
+    if key == "antenna.lengths.inner":
+        return lengths.inner
+    if key == "antenna.lengths.end":
+        return lengths.end
+    if key == "site.end_height":
+        return lengths.end_height if figures.design.site.shape == Shape.VEE else None
+    if key == "site.included_angle":
+        return math.pi - 2 * lengths.slope if figures.design.site.shape == Shape.VEE else None
+    if trap is None:
+        return None
+    turns = trap.coil.turns if trap.coil is not None else None
+    return {
+        "antenna.trap.resonance": trap.resonance,
+        "antenna.trap.coil.inductance": trap.inductance,
+        "antenna.trap.coil.turns": turns,
+        "antenna.trap.capacitor.capacitance": trap.fitted_capacitance,
+    }.get(key)
+
+
+def starting_text(row: FormRow) -> str:
+    """Return the text an edit of a row starts with."""
+    if row.words or row.known.dimension == "text":
+        return "" if row.value is None else str(row.value)
+    if row.value is SOLVE:
+        return "solve"
+    return "" if row.value is None else to_text(row.value, Dimension(row.known.dimension))
+
+
+def read_row(row: FormRow, typed: str) -> Any:
+    """Return the value a person typed into a row; BadInput says what would be right."""
+    text = typed.strip()
+    if row.known.dimension == "text":
+        if not text:
+            raise BadInput(Fault(where="", code="empty", help="a few words"))
+        return text
+    if row.words:
+        return _word(row, text)
+    if not text and row.known.optional:
+        return None
+    if text.lower() in ("solve", "solved"):
+        if row.solvable:
+            return SOLVE
+        raise BadInput(Fault(where="", code="cannot_be_solved", value=text, help=_example(row)))
+    return read(text, Dimension(row.known.dimension))
+
+
+def _example(row: FormRow) -> str:
+    return f"for example {row.known.example}" if row.known.example else "a value is needed"
+
+
+def _word(row: FormRow, text: str) -> str | None:
+    if not text and row.known.optional and row.key not in _YES:
+        return None
+    lowered = text.lower()
+    exact = [word for word in row.words if word.lower() == lowered]
+    begun = [word for word in row.words if word.lower().startswith(lowered)] if text else []
+    if exact or len(begun) == 1:
+        return (exact or begun)[0]
+    code = "two_meanings" if begun else "unknown_choice"
+    raise BadInput(Fault(where="", code=code, value=text, limit=", ".join(row.words), help=_among(begun)))
+
+
+def _among(words: list[str]) -> str:
+    return " or ".join(words[:4])
+
+
+def following_word(row: FormRow) -> str:
+    """Return the word after the present one of a choice, the first after the last."""
+    present = str(row.value) if row.value is not None else UNSET.get(row.key, "")
+    place = row.words.index(present) + 1 if present in row.words else 0
+    return row.words[place % len(row.words)]
+
+
+def put(design: Design, key: str, value: Any, figures: Figures | None, past: Iterator[Design]) -> Design:
+    """Return the design with a value set, and with what must change along with it.
+
+    A value that takes another's place (a soil class those of measured numbers, the height of the ends the
+    angle) clears the other; one that stops being solved keeps what was found for it.
+    """
+    name = key.rpartition(".")[2]
+    if name == "kind":
+        return _with_kind(design, key.removesuffix(".kind"), value, figures)
+    if key == "antenna.trap":
+        return _with_trap(design, value != _NO, past)
+    if key == "bands.upper":
+        return _with_upper(design, value != _NO, figures, past)
+    changed = with_value(design, key, value)
+    site = changed.site
+    if key == "site.shape":
+        sloping = site.end_height is not None or site.included_angle is not None
+        if site.shape == Shape.VEE and not sloping:
+            changed = replace(changed, site=replace(site, included_angle=_STARTING_ANGLE))
+        elif site.shape == Shape.FLAT:
+            changed = replace(changed, site=replace(site, end_height=None, included_angle=None))
+    elif key == "site.end_height" and value is not None:
+        changed = replace(changed, site=replace(site, included_angle=None))
+    elif key == "site.included_angle" and value is not None:
+        changed = replace(changed, site=replace(site, end_height=None))
+    elif key == "site.soil" and value is not None:
+        changed = replace(changed, site=replace(site, conductivity=None, permittivity=None))
+    elif key in ("site.conductivity", "site.permittivity"):
+        changed = _with_soil_numbers(changed, value)
+    elif changed.antenna.trap is not None and key in trap_unknowns(changed.antenna.trap):
+        changed = _one_solved(changed, key, figures)
+    return changed
+
+
+def _with_soil_numbers(design: Design, value: float | None) -> Design:
+    """Return the design with both numbers of the soil, or with neither."""
+    site = design.site
+    if value is None:
+        return replace(design, site=replace(site, conductivity=None, permittivity=None))
+    conductivity = UNKNOWN_SOIL.conductivity if site.conductivity is None else site.conductivity
+    permittivity = UNKNOWN_SOIL.permittivity if site.permittivity is None else site.permittivity
+    return replace(
+        design, site=replace(site, soil=None, conductivity=conductivity, permittivity=permittivity)
+    )
+
+
+def _with_kind(design: Design, key: str, kind: str, figures: Figures | None) -> Design:
+    known = declared(get(design, key.rpartition(".")[0]))[key.rpartition(".")[2]]
+    present = get(design, key)
+    if present.kind == kind:
+        return design
+    unknown = [name for name, of in declared(present).items() if of.solvable]
+    was_solved = any(getattr(present, name) is SOLVE for name in unknown)
+    changed = with_value(design, key, known.choices[kind]())
+    if was_solved:
+        return changed
+    solved = next(k for k in trap_unknowns(changed.antenna.trap) if k.startswith(f"{key}."))
+    return _one_solved(changed, solved, figures)
+
+
+def _with_trap(design: Design, fitted: bool, past: Iterator[Design]) -> Design:
+    if fitted == (design.antenna.trap is not None):
+        return design
+    antenna = design.antenna
+    if not fitted:
+        lengths = replace(antenna.lengths, end=None)
+        return replace(design, antenna=replace(antenna, trap=None, lengths=lengths))
+    trap = next((old.antenna.trap for old in past if old.antenna.trap is not None), None)
+    upper = design.bands.upper
+    if trap is None:
+        resonance = upper.target if upper is not None else 2 * design.bands.lower.target
+        trap = replace(Trap(), resonance=resonance, coil=replace(Trap().coil, inductance=5e-6))
+    lengths = replace(antenna.lengths, end=SOLVE)
+    return replace(design, antenna=replace(antenna, trap=trap, lengths=lengths))
+
+
+def _with_upper(design: Design, wanted: bool, figures: Figures | None, past: Iterator[Design]) -> Design:
+    if wanted == (design.bands.upper is not None):
+        return design
+    if wanted:
+        upper = next((old.bands.upper for old in past if old.bands.upper is not None), _UPPER)
+        return replace(design, bands=replace(design.bands, upper=upper))
+    lengths = design.antenna.lengths
+    changed = replace(design, bands=replace(design.bands, upper=None))
+    if design.antenna.trap is not None and lengths.inner is SOLVE and lengths.end is SOLVE:
+        inner = settled_value(found(figures, "antenna.lengths.inner"), Dimension.LENGTH)
+        changed = with_value(changed, "antenna.lengths.inner", inner)
+    return changed
+
+
+def _one_solved(design: Design, key: str, figures: Figures | None) -> Design:
+    """Return the design with this one of the trap's values solved, if it is, and the others set as found."""
+    if get(design, key) is not SOLVE:
+        return design
+    changed = design
+    for other in trap_unknowns(design.antenna.trap):
+        if other != key and get(design, other) is SOLVE:
+            known = declared(get(design, other.rpartition(".")[0]))[other.rpartition(".")[2]]
+            value = settled_value(found(figures, other), Dimension(known.dimension))
+            changed = with_value(changed, other, value)
+    return changed
+
+
+def settled_value(value: float | None, dimension: Dimension) -> float:
+    """Return a found value as a person would set it, to five digits; BadInput when there is none yet."""
+    if value is None:
+        raise BadInput(Fault(where="", code="nothing_was_found_for_it_yet", help="type a value instead"))
+    return read(show(value, dimension, digits=5), dimension)
+
+
+def toggled(design: Design, row: FormRow, figures: Figures | None) -> Any:
+    """Return the value that turns a row from set to solved or back."""
+    if not row.solvable:
+        raise BadInput(Fault(where="", code="this_is_always_set", help="Enter changes it"))
+    if row.value is not SOLVE:
+        return SOLVE
+    trap = design.antenna.trap
+    if trap is not None and row.key in trap_unknowns(trap):
+        labels = [
+            declared(get(design, k.rpartition(".")[0]))[k.rpartition(".")[2]].label
+            for k in trap_unknowns(trap)
+        ]
+        others = " or ".join(label for label in labels if label != row.known.label)
+        raise BadInput(Fault(where="", code="one_of_the_three_is_always_solved", help=f"press s on {others}"))
+    return settled_value(found(figures, row.key), Dimension(row.known.dimension))
+
+
+_STEPS = {
+    Dimension.FREQUENCY: 10e3,
+    Dimension.COUNT: 0.5,
+    Dimension.ANGLE: math.radians(5),
+    Dimension.CAPACITANCE: 1e-12,
+    Dimension.INDUCTANCE: 0.1e-6,
+}
+
+
+def nudged(row: FormRow, direction: int) -> float:
+    """Return a row's value one step further: half a turn, a centimetre, else its second digit."""
+    dimension = row.known.dimension
+    if row.words or dimension in ("text", "part"):
+        raise BadInput(Fault(where="", code="there_is_nothing_to_step", help="Enter changes it"))
+    if row.value is None or row.value is SOLVE:
+        raise BadInput(Fault(where="", code="only_a_set_value_can_be_stepped", help="Enter sets it"))
+    kind = Dimension(dimension)
+    size = abs(row.value)
+    step = _STEPS.get(kind) or (10.0 ** (math.floor(math.log10(size) + 1e-9) - 1) if size else 0.001)
+    if kind is Dimension.LENGTH and size >= 0.1:
+        step = 0.01
+    count = round(row.value / step, 9)
+    whole = math.floor(count) + 1 if direction > 0 else math.ceil(count) - 1
+    return whole * step

@@ -1,0 +1,305 @@
+"""The inputs: drawers of rows, browsed and edited by keyboard."""
+
+from __future__ import annotations
+
+from textual.events import Click, Key, MouseScrollDown, MouseScrollUp, Paste, Resize
+from textual.message import Message
+
+from ....errors import BadInput, visible
+from ....fields import SOLVE
+from ....services.figures import Level
+from .. import form
+from ..form import DRAWERS, FormRow
+from ..lines import Line, Lines, Piece, padded
+from ..session import Session
+from ..typed import Typed
+from .answer import MARKS, STYLES
+
+ALL_AT_ONCE = 26
+"""Height from which all drawers stand one below the other."""
+_LONGEST_LABEL = 20
+
+
+class DrawersPane(Lines):
+    """Rows with a cursor. Browsing, keys move or command; editing, they type into the row."""
+
+    can_focus = True
+
+    class Changed(Message):
+        """The design changed."""
+
+    class Moved(Message):
+        """The cursor, or what is being typed, changed."""
+
+    class Said(Message):
+        """Something to tell: words, and whether they are a refusal."""
+
+        def __init__(self, words: str, refused: bool = False) -> None:
+            super().__init__()
+            self.words = words
+            self.refused = refused
+
+    def __init__(self, session: Session, *, id: str) -> None:
+        super().__init__(id=id)
+        self.pinned = 1
+        self.session = session
+        self.drawer = next(iter(DRAWERS))
+        self.typed: Typed | None = None
+        self._key = ""
+        self._last: dict[str, str] = {}
+        self._rows: list[FormRow] = []
+        self._places: list[int | None] = []
+
+    @property
+    def row(self) -> FormRow | None:
+        """The row under the cursor."""
+        return next((row for row in self._rows if row.key == self._key), None)
+
+    @property
+    def editing(self) -> bool:
+        """Whether keys type into the row."""
+        return self.typed is not None
+
+    def repaint(self) -> None:
+        """Make the rows anew from the session and show them."""
+        drawers = form.rows(self.session.design, self.session.figures)
+        shown = list(DRAWERS) if self.size.height >= ALL_AT_ONCE else [self.drawer]
+        self._rows = [row for name in shown for row in drawers[name]]
+        keys = [row.key for row in self._rows if row.key and form.drawer_of(row.key) == self.drawer]
+        if self._key not in keys:
+            self._key = keys[0] if keys else ""
+        marks = self._marks()
+        lines: list[Line] = [self._names()]
+        self._places = [None]
+        cursor = 0
+        for name in shown:
+            if len(shown) > 1:
+                lines += [*([[]] if len(lines) > 1 else []), [(name, "head")]]
+                self._places += [None] * (len(lines) - len(self._places))
+            label = max(len(r.known.label) for r in drawers[name])
+            for row in drawers[name]:
+                if row.key == self._key:
+                    cursor = len(lines)
+                self._places.append(self._rows.index(row) if row.key else None)
+                lines.append(self._line(row, min(label, _LONGEST_LABEL, self.room - 15), marks))
+        self.show(lines)
+        # From the first row on everything above it is in sight too.
+        self.keep_in_sight(cursor if cursor > 3 else 1)
+
+    def _names(self) -> Line:
+        pieces: list[Piece] = []
+        for name in DRAWERS:
+            here = name == self.drawer
+            pieces.append((f"[{name}]" if here else f" {name} ", "picked" if here else "quiet"))
+        return pieces
+
+    def _marks(self) -> dict[str, Level]:
+        """Return the most serious level of the findings on each key."""
+        figures = self.session.figures
+        found: dict[str, Level] = {}
+        order = list(Level)
+        for finding in figures.findings if figures is not None else ():
+            if order.index(finding.level) > order.index(found.get(finding.where, Level.FINE)):
+                found[finding.where] = finding.level
+        return found
+
+    def _line(self, row: FormRow, label: int, marks: dict[str, Level]) -> Line:
+        if not row.key:
+            return [("  " + row.known.label, "head")]
+        here = row.key == self._key
+        level = marks.get(row.key, Level.FINE)
+        front = MARKS[level].strip() or (">" if here else " ")
+        width = self.room - label - 3
+        name = padded(row.known.label, label)
+        if here and self.typed is not None:
+            return [(front, "cursor"), (f" {name} ", "head"), *self.typed.pieces(width)]
+        tail = " found" if row.found and not row.unset else ""
+        if len(tail) + len(row.text) > width:
+            tail = " *" if tail else ""
+        value = padded(row.text, max(1, width - len(tail)))
+        style = "quiet" if row.unset else "found" if row.found else "text"
+        if row.found and self.session.stale:
+            style = "quiet"
+        if here:
+            return [(f"{front} {name} {value}{tail}", "cursor")]
+        return [(front + " ", STYLES[level]), (name + " ", "text"), (value, style), (tail, style)]
+
+    def on_resize(self, event: Resize) -> None:
+        """Fit the rows to the new size."""
+        self.repaint()
+
+    def on_key(self, event: Key) -> None:
+        """Type, or move, or do what the key stands for."""
+        if self.typed is not None:
+            handled = self._type(event)
+        else:
+            handled = self._browse(event)
+        if handled:
+            event.stop()
+            event.prevent_default()
+
+    def _type(self, event: Key) -> bool:
+        assert self.typed is not None
+        if event.key in ("ctrl+c", "ctrl+q"):
+            return False
+        if event.key == "enter":
+            self._keep(self.typed.text)
+        elif event.key == "escape":
+            self.typed = None
+            self._tell("as it was")
+        elif self.typed.key(event):
+            self.post_message(self.Moved())
+        self.repaint()
+        return True
+
+    def _browse(self, event: Key) -> bool:
+        row, name = self.row, event.key
+        steps = {"up": -1, "k": -1, "down": 1, "j": 1}
+        if name in steps:
+            self.move(steps[name])
+        elif name in ("home", "end"):
+            self.move(-999 if name == "home" else 999)
+        elif name in ("tab", "shift+tab"):
+            self.turn(1 if name == "tab" else -1)
+        elif row is None:
+            return False
+        elif name in ("enter", "space") and row.words:
+            self._set(row, form.following_word(row))
+        elif name in ("enter", "e"):
+            self.edit(Typed(form.starting_text(row), fresh=row.value is SOLVE))
+        elif event.character and event.character in "0123456789.," and not row.words:
+            self.edit(Typed(event.character))
+        elif name == "s":
+            self._try(row, lambda: form.toggled(self.session.design, row, self.session.figures))
+        elif event.character in ("+", "=", "-"):
+            self._try(row, lambda: form.nudged(row, -1 if event.character == "-" else 1))
+        else:
+            return False
+        return True
+
+    def on_paste(self, event: Paste) -> None:
+        """Type what is pasted, its first line only."""
+        row = self.row
+        if self.typed is None and row is not None and not row.words:
+            self.edit(Typed(form.starting_text(row), fresh=True))
+        if self.typed is not None:
+            self.typed.insert(event.text)
+            self.repaint()
+        event.stop()
+
+    def edit(self, typed: Typed) -> None:
+        """Start typing into the row under the cursor."""
+        self.typed = typed
+        self.repaint()
+        self.post_message(self.Moved())
+
+    def _keep(self, text: str) -> None:
+        row = self.row
+        assert row is not None
+        if text.strip() == form.starting_text(row):
+            self.typed = None
+            self._tell("as it was")
+            return
+        self._try(row, lambda: form.read_row(row, text))
+
+    def _try(self, row: FormRow, value) -> None:  # noqa: ANN001 - a function that may raise BadInput
+        try:
+            self._set(row, value())
+        except BadInput as refusal:
+            self._refuse(row, refusal)
+
+    def _set(self, row: FormRow, value: object) -> None:
+        """Set a row; what a rule forbids is told, and the old value stays."""
+        before = row.text
+        try:
+            changed = self.session.set(row, value)
+        except BadInput as refusal:
+            self._refuse(row, refusal)
+            return
+        self.typed = None
+        self.repaint()
+        after = self.row
+        now = after.text if after is not None else ""
+        if after is not None and after.value is SOLVE:
+            now = "to be solved"
+        said = (
+            f"{row.known.label}: {now}, was {before}" if changed else f"{row.known.label}: {now}, as before"
+        )
+        self._tell(said)
+        if changed:
+            self.post_message(self.Changed())
+
+    def _refuse(self, row: FormRow, refusal: BadInput) -> None:
+        """Tell the first fault; while editing the text stays, to be mended."""
+        fault = refusal.faults[0]
+        words = str(fault)
+        if fault.where:
+            label = (
+                row.known.label
+                if fault.where == row.key
+                else fault.where.rpartition(".")[2].replace("_", " ")
+            )
+            words = label + words[len(visible(fault.where, 120)) :]
+        else:
+            words = f"{row.known.label}: {words}"
+        self.post_message(self.Said(words, refused=True))
+        self.repaint()
+
+    def _tell(self, words: str) -> None:
+        self.post_message(self.Said(words))
+
+    def move(self, by: int) -> None:
+        """Move the cursor by so many rows."""
+        keys = [row.key for row in self._rows if row.key]
+        if not keys:
+            return
+        place = keys.index(self._key) if self._key in keys else 0
+        self._go(keys[max(0, min(len(keys) - 1, place + by))])
+
+    def turn(self, by: int) -> None:
+        """Go to another drawer, to the row that was last under the cursor there."""
+        names = list(DRAWERS)
+        self.drawer = names[(names.index(self.drawer) + by) % len(names)]
+        self._key = self._last.get(self.drawer, "")
+        self.repaint()
+        self._go(self._key)
+
+    def _go(self, key: str) -> None:
+        self._key = key
+        self.drawer = form.drawer_of(key) or self.drawer
+        self._last[self.drawer] = key
+        self.repaint()
+        self.post_message(self.Moved())
+
+    def on_click(self, event: Click) -> None:
+        """Put the cursor where the mouse points; a second click edits."""
+        index = self.line_at(event.y)
+        if self.typed is not None or not 0 <= index < len(self._places):
+            return
+        if index == 0:
+            return self._pick(event.x)
+        place = self._places[index]
+        if place is None:
+            return
+        row = self._rows[place]
+        if row.key == self._key and event.chain > 1 and not row.words:
+            self.edit(Typed(form.starting_text(row)))
+        else:
+            self._go(row.key)
+
+    def _pick(self, x: int) -> None:
+        """Open the drawer whose name is at a column of the first line."""
+        left = len(self.edge) + 1 if self.edge else 0
+        for number, name in enumerate(DRAWERS):
+            if left <= x < left + len(name) + 2:
+                self.turn(number - list(DRAWERS).index(self.drawer))
+                return
+            left += len(name) + 2
+
+    def on_mouse_scroll_down(self, event: MouseScrollDown) -> None:
+        """Scroll the rows."""
+        self.scroll_lines(2)
+
+    def on_mouse_scroll_up(self, event: MouseScrollUp) -> None:
+        """Scroll the rows."""
+        self.scroll_lines(-2)

@@ -1,0 +1,181 @@
+"""What surrounds the panes: the heading above, the worst finding, next move, note and keys below."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+from textual.events import Key, Paste
+from textual.message import Message
+
+from ....errors import visible
+from ....services.figures import Figures, Level
+from ... import rows as presenter
+from ..form import FormRow
+from ..lines import Line, Lines, padded, width_of, wrapped
+from ..session import Session
+from ..typed import Typed
+from .answer import MARKS, STYLES
+
+# What a key does, the most needed first: the last ones go when there is no room.
+BROWSING = (
+    ("Enter", "edit"), ("?", "help"), ("q", "quit"), ("v", "view"), ("Tab", "drawer"), ("w", "write"),
+    ("u", "undo"), ("+-", "nudge"), ("arrows", "rows"), ("U", "redo"), ("PgDn", "scroll"), ("t", "colours"),
+)  # fmt: skip
+EDITING = (("Enter", "keeps"), ("Esc", "restores"), ("Ctrl+U", "clears"))
+
+ANSWERING = (("Enter", "answers"), ("Esc", "leaves it"))
+
+
+class Heading(Lines):
+    """Which antenna, where, with what, and whether it is an estimate."""
+
+    def repaint(self, session: Session) -> None:
+        """Show the heading of a session in as many lines as there are."""
+        width, height, figures = self.size.width, self.size.height, session.figures
+        state = "no answer" if session.no_answer else "solving" if session.solving else ""
+        star = " (unsaved)" if session.unsaved else ""
+        title = visible(session.design.title, 40)
+        about = _summary(figures) if figures is not None else {}
+        if not session.stale:
+            title = about["title"].value
+        room = width - len(state) - 1 if state else width
+        lines: list[Line] = [[(padded(title + star, room), "head"), (f" {state}" if state else "", "watch")]]
+        below = [about[key].value for key in ("site", "station") if key in about]
+        lines += [[(padded(text, width), "text")] for text in below]
+        self.show(lines[:height], stale=False)
+
+
+class Foot(Lines):
+    """The worst finding and its cure, the next move, a note, the keys; and questions in a line."""
+
+    class Typing(Message):
+        """What is being typed changed."""
+
+    def __init__(self, *, id: str) -> None:
+        super().__init__(id=id)
+        self.note = ""
+        self.refused = False
+        self._asking = ""
+        self._typed: Typed | None = None
+        self._answer: Callable[[str], None] | None = None
+
+    def say(self, text: str, refused: bool = False) -> None:
+        """Set the note, shown until the next thing is said."""
+        self.note, self.refused = text, refused
+
+    def ask(self, question: str, answer: Callable[[str], None], text: str | None = None) -> None:
+        """Ask in one line: with a text, for a line that Enter gives; without, for a single key."""
+        self._asking, self._answer = question, answer
+        self._typed = None if text is None else Typed(text)
+        self.can_focus = True
+        self.focus()
+
+    @property
+    def asking(self) -> bool:
+        """Whether a question is open."""
+        return self._answer is not None
+
+    def _close(self) -> Callable[[str], None]:
+        answer = self._answer
+        assert answer is not None
+        self._asking, self._answer, self._typed = "", None, None
+        self.can_focus = False
+        return answer
+
+    def on_key(self, event: Key) -> None:
+        """Type the answer, or give it."""
+        if self._answer is None:
+            return
+        event.stop()
+        event.prevent_default()
+        if event.key == "escape":
+            self._close()("")
+        elif self._typed is None:
+            if event.character and event.is_printable:
+                self._close()(event.character)
+        elif event.key == "enter":
+            text = self._typed.text.strip()
+            self._close()(text)
+        elif self._typed.key(event):
+            self.post_message(self.Typing())
+
+    def on_paste(self, event: Paste) -> None:
+        """Type what is pasted."""
+        if self._typed is not None:
+            self._typed.insert(event.text)
+            self.post_message(self.Typing())
+        event.stop()
+
+    def repaint(self, session: Session, row: FormRow | None, editing: bool) -> None:
+        """Show worst finding, next move, note and keys in as many lines as there are."""
+        width, height = self.size.width, self.size.height
+        note = self._note(row, width, 2 if height > 3 else 1)
+        room = height - 1 - len(note)
+        worst = self._worst(session, width)
+        following = self._next(session, width)
+        # The worst finding always has a line; what is left goes to its cure, then to the next move.
+        share = max(1, room - (1 if height > 3 else 0))
+        worst = _cut(worst, min(share, 2), width)
+        following = _cut(following, room - len(worst), width) if room > len(worst) else []
+        blank: list[Line] = [[] for _ in range(height - 1 - len(worst) - len(following) - len(note))]
+        keys = ANSWERING if self.asking else EDITING if editing else BROWSING
+        self.show([*worst, *following, *blank, *note, keys_line(keys, row, editing or self.asking, width)])
+
+    def _worst(self, session: Session, width: int) -> list[Line]:
+        if session.no_answer:
+            return [[(piece, "stop")] for piece in wrapped("! " + session.no_answer, width, 2)]
+        if session.figures is None:
+            return [[]]
+        row = _summary(session.figures)["worst"]
+        level = row.finding.level if row.finding is not None else Level.FINE
+        style = "quiet" if session.stale else STYLES[level]
+        text = f"{MARKS[level].lstrip()}{row.label}: {row.value}"
+        return [[(piece, style)] for piece in wrapped(text, width, 2)]
+
+    def _next(self, session: Session, width: int) -> list[Line]:
+        if session.figures is None:
+            return []
+        row = _summary(session.figures)["next"]
+        style = "quiet" if session.stale else "text"
+        return [[(piece, style)] for piece in wrapped(f"{row.label}: {row.value}", width, 2)]
+
+    def _note(self, row: FormRow | None, width: int, most: int) -> list[Line]:
+        if self._asking:
+            if self._typed is None:
+                return _cut([[(p, "watch")] for p in wrapped(self._asking, width)], most, width)
+            question = padded(self._asking, min(len(self._asking), max(0, width - 12))) + " "
+            return [[(question, "watch"), *self._typed.pieces(width - len(question))]]
+        if self.note:
+            style = "stop" if self.refused else "found"
+            text = f"! {self.note}" if self.refused else self.note
+            return _cut([[(piece, style)] for piece in wrapped(text, width, 2)], most, width)
+        if row is None:
+            return [[]]
+        text = "one of " + ", ".join(row.words) + ". " + row.known.help if row.words else row.known.help
+        return _cut([[(piece, "quiet")] for piece in wrapped(text, width)], 1, width)
+
+
+def _summary(figures: Figures) -> dict[str, presenter.Row]:
+    return {row.key: row for row in presenter.summary(figures)}
+
+
+def _cut(lines: list[Line], most: int, width: int) -> list[Line]:
+    """Return so many lines at most; a cut text ends in dots."""
+    if len(lines) <= most or most < 1:
+        return lines[: max(0, most)]
+    text, style = lines[most - 1][0]
+    return [*lines[: most - 1], [(text[: max(0, width - 4)].rstrip() + " ...", style)]]
+
+
+def keys_line(keys: tuple[tuple[str, str], ...], row: FormRow | None, busy: bool, width: int) -> Line:
+    """Return what the keys do just now, as many as fit."""
+    if not busy and row is not None:
+        first = ("Enter", "next word") if row.words else keys[0]
+        solve = (("s", "set it" if row.found and not row.unset else "solve it"),) if row.solvable else ()
+        keys = (first, *solve, *keys[1:])
+    line: list[tuple[str, str]] = []
+    for key, does in keys:
+        piece = [(key, "head"), (f" {does}  ", "quiet")]
+        if width_of([*line, *piece]) - 2 <= width:
+            line += piece
+    return line

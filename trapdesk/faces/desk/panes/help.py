@@ -1,0 +1,73 @@
+"""Help: the row under the cursor first, then the keys."""
+
+from __future__ import annotations
+
+from ....units import Dimension, show
+from ..form import FormRow
+from ..lines import Line, wrapped
+from ..view import Sight
+
+KEYS: tuple[tuple[str, str], ...] = (
+    ("up down, j k", "move between rows"),
+    ("Tab, Shift+Tab", "next drawer, drawer before"),
+    ("Enter or a digit", "edit the row; a choice takes its next word"),
+    ("e", "type into the row, also into a choice"),
+    ("while editing", "Enter keeps, Esc restores"),
+    ("s", "set or solved: let the desk find the value, or keep what it found"),
+    ("+ -", "nudge: a centimetre, half a turn, one step"),
+    ("u, U", "undo, redo"),
+    ("v, V", "next view, view before"),
+    ("PgUp PgDn", "scroll the view"),
+    ("w, W", "write the file, write another file"),
+    ("t", "colours: dark, daylight, the terminal's sixteen, none"),
+    ("h or ?", "this help, and back"),
+    ("q", "quit"),
+)
+
+
+def help_lines(sight: Sight) -> list[Line]:
+    """Return what is known of the row under the cursor, and what every key does."""
+    lines: list[Line] = []
+    if sight.row is not None and sight.row.key:
+        lines += _about(sight.row, sight.width)
+    lines.append([("keys", "head")])
+    for key, does in KEYS:
+        pieces = wrapped(does, max(8, sight.width - 18))
+        lines.append([(f"{key:<17} ", "found"), (pieces[0], "text")])
+        lines += [[(" " * 18 + piece, "text")] for piece in pieces[1:]]
+    return lines
+
+
+def _about(row: FormRow, width: int) -> list[Line]:
+    known = row.known
+    lines: list[Line] = [[(known.label, "head")]]
+    texts = [known.help]
+    if row.words:
+        texts.append("one of: " + ", ".join(row.words))
+    elif limits := _limits(row):
+        texts.append(limits)
+    if known.example:
+        texts.append(f"for example {known.example}")
+    if known.optional and not row.words:
+        texts.append("may be left empty")
+    if known.solvable:
+        texts.append("s lets the desk find it")
+    for text in texts:
+        lines += [[(piece, "text")] for piece in wrapped(text, width)]
+    return [*lines, [(row.key, "quiet")], []]
+
+
+def _limits(row: FormRow) -> str:
+    """Return the limits of a quantity in words."""
+    known = row.known
+    if known.dimension in ("text", "choice", "part"):
+        return ""
+    kind = Dimension(known.dimension)
+    pieces = []
+    if known.low is not None:
+        pieces.append(f"from {show(known.low, kind)}")
+    if known.above is not None:
+        pieces.append(f"above {show(known.above, kind)}")
+    if known.high is not None:
+        pieces.append(f"up to {show(known.high, kind)}")
+    return " ".join(pieces)
