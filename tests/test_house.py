@@ -19,6 +19,8 @@ LONG: dict[str, str] = {}
 # The design is spread over several files at the top, one room.
 # Rooms at the top that take more than one file.
 ROOM_OF = {
+    "box": "design",
+    "box_read": "store",
     "fields": "design",
     "parts": "design",
     "rules": "design",

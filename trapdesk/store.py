@@ -25,6 +25,8 @@ FIRST_PRESET = "40-20-vee"
 """The preset that opens when nothing else is asked for."""
 
 LARGEST_FILE = 1_000_000
+BOX_ENDING = "-box.toml"
+"""What the name of a ready box ends in."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -83,8 +85,10 @@ def find(argument: str | os.PathLike[str] = FIRST_PRESET) -> Document:
 
 
 def presets() -> list[str]:
-    """Return the names of the presets."""
-    return sorted(f.name.removesuffix(".toml") for f in _shelf().iterdir() if f.name.endswith(".toml"))
+    """Return the names of the presets; a box on the same shelf is no design."""
+    names = (f.name for f in shelf().iterdir())
+    found = (name for name in names if name.endswith(".toml") and not name.endswith(BOX_ENDING))
+    return sorted(name.removesuffix(".toml") for name in found)
 
 
 def preset(name: str) -> tuple[Design, str]:
@@ -92,11 +96,11 @@ def preset(name: str) -> tuple[Design, str]:
     known = name.removesuffix(".toml")
     if known not in presets():
         raise FileFault(name, "not_found", help=_near_presets(name))
-    text = _shelf().joinpath(f"{known}.toml").read_text("utf-8")
+    text = shelf().joinpath(f"{known}.toml").read_text("utf-8")
     return read_text(text, known), text
 
 
-def _shelf() -> Any:
+def shelf() -> Any:
     """Return the folder of the presets: in the installed package, else at the top of the checkout."""
     packaged = resources.files("trapdesk") / "presets"
     return packaged if packaged.is_dir() else Path(__file__).parents[1] / "presets"
