@@ -8,7 +8,10 @@ The files, each one subject:
 ``conductors``        resistivity, gauges, skin effect, AC resistance, insulation
 ``coils``             solenoid and toroid: inductance, self-capacitance, loss
 ``coil_formulas``     published formulas for the solenoid: cross-checks of `coils`
-``cables``            coaxial and parallel line: constants, loss, transformation; the coaxial trap
+``cables``            lines, coaxial or parallel: loss, transformation, what stands on them
+``cable_types``       cables by name, and lines from their listed values or their section
+``cable_trap``        the trap wound of coaxial cable, as a circuit
+``cable_winding``     the same as a winding: inductance, resistance, turns for a resonance
 ``capacitors``        single, stub and combinations: loss, drift, voltage
 ``resonator``         the one parallel resonator: trap, tuner element, trial and fit alike
 ``mesh``              sides of a wire cut into elements: quadratures, static integrals, sample points
@@ -16,7 +19,12 @@ The files, each one subject:
 ``ports``             that wire over frequency: port matrices, traps as terminations, interpolation
 ``ground``            the half-space: Sommerfeld kernels, reflection coefficients, field in the air
 ``sky``               what a wire sends to the sky: the far field summed over all directions
-``networks``          ladders of series and shunt branches: cascade, loss, stress; closed-form matches
+``ladder``            series and shunt branches and stretches of line: cascade, loss, what each part carries
+``arms``              coils and capacitors as immittances: the algebra under the closed-form matches
+``networks``          the registry of matching networks and the closed-form match of each; width, touchiness
+``boxes``             limits of real parts: the box of settings of a network
+``matching``          the match of least loss within limits, its family, the loads in reach
+``nearest``           the best setting for a load: match or nearest, what is short, arms in steps
 ``stress``            what each part of the resonator carries: currents, volts, watts, reactive power
 ``tank``              parts of a resonator from any sufficient subset of its quantities
 ``roots``             bracketed roots, Newton in a few unknowns, a status per element
