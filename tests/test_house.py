@@ -21,8 +21,13 @@ LONG: dict[str, str] = {}
 ROOM_OF = {
     "box": "design",
     "box_read": "store",
+    "doubts": "design",
     "fields": "design",
     "parts": "design",
+    "reading_kinds": "design",
+    "reading_text": "units",
+    "sweep_columns": "store",
+    "sweep_files": "store",
     "rules": "design",
     "numerals": "units",
     "unit_names": "units",

@@ -27,6 +27,8 @@ The files, each one subject:
 ``nearest``           the best setting for a load: match or nearest, what is short, arms in steps
 ``stress``            what each part of the resonator carries: currents, volts, watts, reactive power
 ``tank``              parts of a resonator from any sufficient subset of its quantities
+``measured``          parts from a few measured numbers, each with its uncertainty
+``fits``              resonators fitted to a sweep, each value with its uncertainty
 ``roots``             bracketed roots, Newton in a few unknowns, a status per element
 ====================  ==================================================================================
 
