@@ -259,7 +259,7 @@ def infinitely_thin(length):
     radii = (1e-12, 1e-24, 1e-48)
     x = np.array([1 / math.log(length / a) for a in radii])
     # The reactance grows with the logarithm, and so does what a mesh leaves of it: a finer one.
-    z = np.array([impedance(in_space(length, 2 * a), C0 / WAVELENGTH, finer=3) for a in radii])
+    z = np.array([impedance(in_space(length, 2 * a), C0 / WAVELENGTH, finer=5) for a in radii])
     return z, polynomial_weights(x, np.zeros(1))[0] @ z
 
 
@@ -368,8 +368,8 @@ def test_thicker_wire_resonates_lower():
 
 
 def test_coated_wire_resonates_lower():
-    # A starting rule, seen as an anecdote, is 453/f for insulated and 468/f for bare wire: about 3 %. A coating
-    # of 0.6 mm on 2 mm of wire, permittivity 2.3 to 4, should be of that size.
+    # A starting rule, seen as an anecdote, is 453/f for insulated and 468/f for bare wire, about 3 %. A
+    # coating of 0.6 mm on 2 mm of wire, permittivity 2.3 to 4, should be of that size.
     bare = resonance(PLAIN, 6.5e6, 7.5e6)
     for permittivity in (2.3, 4.0):
         elastance = float(coating_elastance(2e-3, 0.6e-3, permittivity))
