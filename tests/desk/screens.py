@@ -3,12 +3,17 @@
 import asyncio
 from contextlib import asynccontextmanager
 
+from textual.events import Key
+
 from trapdesk import store
+from trapdesk.faces.desk import form
 from trapdesk.faces.desk.app import Desk
+from trapdesk.faces.desk.form import DRAWERS
 from trapdesk.faces.desk.session import Session
 from trapdesk.faces.desk.terminal import Glyphs, Look
 from trapdesk.services.solve import solve
 
+CHARACTERS = {"space": " ", "plus": "+", "minus": "-", "question_mark": "?"}
 PLAIN = Look(glyphs=Glyphs.ASCII, theme="plain")
 LONGEST = 20
 """Seconds after which a test gives up waiting."""
@@ -25,10 +30,17 @@ async def opened(size=(80, 24), *, document=None, look=PLAIN, solver=solve, wait
         yield desk, pilot
 
 
-async def typed(pilot, text, *keys):
-    """Press a key a character, then others by name."""
-    await pilot.press(*text, *keys)
+async def pressed(desk, pilot, *names):
+    """Press keys one after the other, a character or a name each, then wait until all are dealt with."""
+    for name in names:
+        character = name if len(name) == 1 else CHARACTERS.get(name)
+        desk.post_message(Key(name, character))
     await pilot.pause()
+
+
+async def typed(desk, pilot, text, *names):
+    """Type a text, then press keys by name."""
+    await pressed(desk, pilot, *text, *names)
 
 
 async def settled(desk, pilot):
@@ -53,14 +65,11 @@ def text(desk):
 
 async def go_to(desk, pilot, key):
     """Move the cursor to a row, by keys alone."""
-    for _ in range(6):
-        for _ in range(40):
-            if desk.drawers.row is not None and desk.drawers.row.key == key:
-                return
-            before = desk.drawers.row
-            await pilot.press("down")
-            if desk.drawers.row == before:
-                break
-        await pilot.press("tab")
-        await pilot.press("home")
+    for _ in DRAWERS:
+        rows = [row.key for row in form.rows(desk.session.design, None)[desk.drawers.drawer] if row.key]
+        if key in rows:
+            await pressed(desk, pilot, *["up"] * len(rows), *["down"] * rows.index(key))
+            assert desk.drawers.row.key == key
+            return
+        await pressed(desk, pilot, "tab")
     raise AssertionError(f"no row {key}")

@@ -5,8 +5,9 @@ import threading
 from dataclasses import replace
 
 import pytest
+from textual.events import Paste
 
-from tests.desk.screens import BRAILLE, go_to, opened, screen, settled, text, typed
+from tests.desk.screens import BRAILLE, go_to, opened, pressed, screen, settled, text, typed
 from trapdesk import store
 from trapdesk.design import get
 from trapdesk.faces import rows
@@ -43,10 +44,8 @@ async def test_is_laid_out_at_every_size(size):
             assert "estimate" in lines[0]
             assert any(level in " ".join(lines) for level in ("watch:", "fine:", "STOP:"))
             assert lines[-1].strip()
-            await pilot.press("v")
-            await pilot.pause()
-        await pilot.press("question_mark")
-        await pilot.pause()
+            await pressed(desk, pilot, "v")
+        await pressed(desk, pilot, "question_mark")
         assert "[help]" in text(desk) or "help" in text(desk).splitlines()[3]
 
 
@@ -75,15 +74,14 @@ async def test_bare_terminal_gets_nothing_but_ascii():
     async with opened((120, 40)) as (desk, pilot):
         for _ in range(4):
             assert text(desk).isascii()
-            await pilot.press("v")
-            await pilot.pause()
+            await pressed(desk, pilot, "v")
 
 
 async def test_an_edit_changes_the_design_and_the_figures():
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, HEIGHT)
         before = desk.session.figures
-        await typed(pilot, "39 ft 4 in", "enter")
+        await typed(desk, pilot, "39 ft 4 in", "enter")
         await settled(desk, pilot)
         assert desk.session.design.site.height == pytest.approx(472 * 0.0254)
         assert desk.session.figures.bands["lower"].dip != before.bands["lower"].dip
@@ -94,8 +92,8 @@ async def test_an_edit_changes_the_design_and_the_figures():
 async def test_a_gauge_is_typed_after_enter():
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, "antenna.wire.diameter")
-        await pilot.press("enter", "ctrl+u")
-        await typed(pilot, "AWG 12", "enter")
+        await pressed(desk, pilot, "enter", "ctrl+u")
+        await typed(desk, pilot, "AWG 12", "enter")
         # ASTM B258: AWG 12 is 0.0808 in.
         assert desk.session.design.antenna.wire.diameter == pytest.approx(0.0808 * 0.0254, rel=1e-3)
 
@@ -119,15 +117,15 @@ async def test_what_cannot_be_is_refused_in_a_line_and_the_old_value_stays(key, 
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, key)
         before = desk.session.design
-        await pilot.press("enter", "ctrl+u")
-        await typed(pilot, wrong, "enter")
+        await pressed(desk, pilot, "enter", "ctrl+u")
+        await typed(desk, pilot, wrong, "enter")
         note = [line for line in screen(desk)[-4:-1] if line.startswith("! ")]
         assert len(note) == 1
         assert says in " ".join(screen(desk)[-4:-1])
         assert "Traceback" not in text(desk)
         assert desk.session.design is before
         assert desk.drawers.editing
-        await pilot.press("escape")
+        await pressed(desk, pilot, "escape")
         assert not desk.drawers.editing
         assert desk.session.design is before
 
@@ -136,7 +134,7 @@ async def test_escape_restores():
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, HEIGHT)
         before = desk.session.design
-        await typed(pilot, "99 m", "escape")
+        await typed(desk, pilot, "99 m", "escape")
         assert desk.session.design is before
         assert "height            10 m" in text(desk)
 
@@ -144,8 +142,8 @@ async def test_escape_restores():
 async def test_letters_are_commands_only_while_browsing():
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, "title")
-        await pilot.press("enter", "ctrl+u")
-        await typed(pilot, "quiver vows tea", "enter")
+        await pressed(desk, pilot, "enter", "ctrl+u")
+        await typed(desk, pilot, "quiver vows tea", "enter")
         assert desk.session.design.title == "quiver vows tea"
         assert desk.is_running
 
@@ -154,17 +152,17 @@ async def test_undo_and_redo():
     async with opened() as (desk, pilot):
         first = desk.session.design
         await go_to(desk, pilot, HEIGHT)
-        await typed(pilot, "12 m", "enter")
-        await pilot.press("plus")
+        await typed(desk, pilot, "12 m", "enter")
+        await pressed(desk, pilot, "plus")
         await settled(desk, pilot)
         assert desk.session.design.site.height == pytest.approx(12.01)
-        await pilot.press("u", "u")
+        await pressed(desk, pilot, "u", "u")
         await settled(desk, pilot)
         assert desk.session.design is first
         assert desk.session.figures.design == first
-        await pilot.press("u")
+        await pressed(desk, pilot, "u")
         assert "nothing to undo" in text(desk)
-        await pilot.press("U", "ctrl+r")
+        await pressed(desk, pilot, "U", "ctrl+r")
         await settled(desk, pilot)
         assert desk.session.design.site.height == pytest.approx(12.01)
 
@@ -174,10 +172,10 @@ async def test_solved_becomes_set_to_what_was_found_and_back():
         key = "antenna.lengths.inner"
         await go_to(desk, pilot, key)
         found = desk.session.figures.lengths.inner
-        await pilot.press("s")
+        await pressed(desk, pilot, "s")
         await settled(desk, pilot)
         assert get(desk.session.design, key) == pytest.approx(found, rel=1e-4)
-        await pilot.press("s")
+        await pressed(desk, pilot, "s")
         await settled(desk, pilot)
         assert get(desk.session.design, key) is SOLVE
 
@@ -186,11 +184,10 @@ async def test_one_of_the_traps_three_values_is_always_solved():
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, "antenna.trap.coil.turns")
         turns = desk.session.figures.trap.coil.turns
-        await pilot.press("s")
-        await pilot.pause()
+        await pressed(desk, pilot, "s")
         assert "press s on" in " ".join(screen(desk)[-4:-1])
         await go_to(desk, pilot, "antenna.trap.capacitor.capacitance")
-        await pilot.press("s")
+        await pressed(desk, pilot, "s")
         await settled(desk, pilot)
         trap = desk.session.design.antenna.trap
         assert trap.capacitor.capacitance is SOLVE
@@ -202,13 +199,13 @@ async def test_one_of_the_traps_three_values_is_always_solved():
 async def test_choices_take_the_next_word_and_what_hangs_on_them_follows():
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, "site.shape")
-        await pilot.press("enter")
+        await pressed(desk, pilot, "enter")
         await settled(desk, pilot)
         assert desk.session.design.site.shape == "flat"
         assert desk.session.design.site.included_angle is None
         assert screen(desk)[1].startswith("flat, feed point at 10 m")
-        await pilot.press("e", "ctrl+u")
-        await typed(pilot, "v", "enter")
+        await pressed(desk, pilot, "e", "ctrl+u")
+        await typed(desk, pilot, "v", "enter")
         await settled(desk, pilot)
         assert desk.session.design.site.shape == "vee"
         assert desk.session.design.site.included_angle is not None
@@ -219,11 +216,11 @@ async def test_every_kind_and_presence_can_be_gone_through(key):
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, key)
         before = desk.session.design
-        await pilot.press("enter")
+        await pressed(desk, pilot, "enter")
         await settled(desk, pilot)
         assert desk.session.design != before
         assert not desk.session.no_answer
-        await pilot.press("u")
+        await pressed(desk, pilot, "u")
         await settled(desk, pilot)
         assert desk.session.design is before
 
@@ -231,7 +228,7 @@ async def test_every_kind_and_presence_can_be_gone_through(key):
 async def test_why_there_is_no_answer_is_said_and_the_last_figures_stay():
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, HEIGHT)
-        await typed(pilot, "1 m", "enter")
+        await typed(desk, pilot, "1 m", "enter")
         await settled(desk, pilot)
         assert desk.session.no_answer
         assert screen(desk)[0].endswith("no answer")
@@ -240,45 +237,45 @@ async def test_why_there_is_no_answer_is_said_and_the_last_figures_stay():
         assert desk.query_one("#answer").stale
 
 
-async def test_saves_a_preset_under_a_name_it_asks_for(tmp_path):
+async def test_saves_a_preset_under_a_name_it_asks_for(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
     target = tmp_path / "hill.toml"
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, HEIGHT)
-        await typed(pilot, "9.5 m", "enter")
+        await typed(desk, pilot, "9.5 m", "enter")
         assert "(unsaved)" in screen(desk)[0]
-        await pilot.press("w")
+        await pressed(desk, pilot, "w")
         assert "write to 40-20-vee.toml" in text(desk)
-        await pilot.press("ctrl+u")
-        await typed(pilot, str(target), "enter")
+        await pressed(desk, pilot, "ctrl+u")
+        await typed(desk, pilot, target.name, "enter")
         assert not desk.session.unsaved
         assert "written to" in text(desk)
         assert "(unsaved)" not in screen(desk)[0]
         assert store.load(target) == desk.session.design
         assert "# of the feed point" in target.read_text("utf-8")
-        await typed(pilot, "12 m", "enter")
-        await pilot.press("w")
-        await pilot.pause()
+        await typed(desk, pilot, "12 m", "enter")
+        await pressed(desk, pilot, "w")
         assert store.load(target).site.height == 12.0
 
 
-async def test_a_file_that_is_there_is_not_replaced_without_a_word(tmp_path):
+async def test_a_file_that_is_there_is_not_replaced_without_a_word(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
     target = tmp_path / "other.toml"
     target.write_text("keep me")
     async with opened() as (desk, pilot):
         for key, left in (("escape", "keep me"), ("x", "keep me"), ("r", None)):
-            await pilot.press("w", "ctrl+u")
-            await typed(pilot, str(target), "enter")
+            await pressed(desk, pilot, "w", "ctrl+u")
+            await typed(desk, pilot, target.name, "enter")
             assert "is there already" in text(desk)
-            await pilot.press(key)
-            await pilot.pause()
+            await pressed(desk, pilot, key)
             assert left is None or target.read_text() == left
         assert store.load(target) == desk.session.design
 
 
 async def test_a_place_that_cannot_be_written_is_told_in_a_line(tmp_path):
     async with opened() as (desk, pilot):
-        await pilot.press("w", "ctrl+u")
-        await typed(pilot, str(tmp_path / "no" / "such.toml"), "enter")
+        await pressed(desk, pilot, "w", "ctrl+u")
+        await typed(desk, pilot, str(tmp_path / "no" / "such.toml"), "enter")
         assert [line for line in screen(desk)[-4:-1] if line.startswith("! ")]
         assert desk.session.path is None
 
@@ -286,21 +283,19 @@ async def test_a_place_that_cannot_be_written_is_told_in_a_line(tmp_path):
 async def test_quitting_asks_only_when_something_is_not_saved():
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, HEIGHT)
-        await typed(pilot, "11 m", "enter")
-        await pilot.press("q")
+        await typed(desk, pilot, "11 m", "enter")
+        await pressed(desk, pilot, "q")
         assert "not saved: w writes it and quits" in text(desk)
-        await pilot.press("escape")
+        await pressed(desk, pilot, "escape")
         assert desk.is_running
-        await pilot.press("u")
+        await pressed(desk, pilot, "u")
         await settled(desk, pilot)
-        await pilot.press("q")
-        await pilot.pause()
+        await pressed(desk, pilot, "q")
         assert not desk.is_running
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, HEIGHT)
-        await typed(pilot, "11 m", "enter")
-        await pilot.press("q", "q")
-        await pilot.pause()
+        await typed(desk, pilot, "11 m", "enter")
+        await pressed(desk, pilot, "q", "q")
         assert not desk.is_running
 
 
@@ -316,7 +311,7 @@ async def test_typing_and_resizing_do_not_wait_for_a_solve_and_stale_answers_are
         assert "working out" in text(desk)
         await go_to(desk, pilot, HEIGHT)
         for height in ("11", "12", "13"):
-            await typed(pilot, f"{height} m", "enter")
+            await typed(desk, pilot, f"{height} m", "enter")
             assert f"height            {height} m" in text(desk)
         for size in ((120, 40), (40, 12), (30, 5), (80, 24)):
             await pilot.resize_terminal(*size)
@@ -343,26 +338,46 @@ async def test_foreign_text_is_shown_and_does_nothing(size):
     document = store.find()
     document = replace(document, design=replace(document.design, title=title), text="")
     async with opened(size, document=document) as (desk, pilot):
-        assert "[red]x[/red]\\x1b[2J[/x]\\u202e" in screen(desk)[0]
+        shown = "[red]x[/red]\\x1b[2J[/x]\\u202e" if size[0] > 40 else "[red]x[/red]\\x1b[2J[/x]"
+        assert screen(desk)[0].startswith(shown)
         for key in ("v", "v", "question_mark", "enter"):
-            await pilot.press(key)
-            await pilot.pause()
+            await pressed(desk, pilot, key)
             assert "\x1b" not in text(desk)
             assert "\u202e" not in text(desk)
-        await pilot.press("escape")
+        await pressed(desk, pilot, "escape")
+
+
+async def test_keys_typed_ahead_are_dealt_with_in_their_order(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    async with opened() as (desk, pilot):
+        await go_to(desk, pilot, HEIGHT)
+        await typed(desk, pilot, "12 m", "enter", "plus", "u", "plus", "w", "ctrl+u", *"a.toml", "enter")
+        await settled(desk, pilot)
+        assert store.load("a.toml").site.height == pytest.approx(12.01)
+        await pressed(desk, pilot, "plus", "q", "w")
+        assert not desk.is_running
+    assert store.load("a.toml").site.height == pytest.approx(12.02)
+
+
+async def test_a_paste_types_its_first_line_only():
+    async with opened() as (desk, pilot):
+        await go_to(desk, pilot, HEIGHT)
+        desk.post_message(Paste("8.5 m\n\x1b[2Jq"))
+        await pilot.pause()
+        assert desk.drawers.typed.text == "8.5 m"
+        await pressed(desk, pilot, "enter")
+        assert desk.session.design.site.height == 8.5
 
 
 async def test_help_tells_of_the_row_under_the_cursor():
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, HEIGHT)
-        await pilot.press("question_mark")
-        await pilot.pause()
+        await pressed(desk, pilot, "question_mark")
         whole = text(desk)
         assert "Height of the feed point above ground." in whole
         assert "from 50 cm up to 300 m" in whole
         assert "Enter keeps, Esc restores" in whole
-        await pilot.press("h")
-        await pilot.pause()
+        await pressed(desk, pilot, "h")
         assert "[answer]" in text(desk)
 
 
@@ -370,8 +385,7 @@ async def test_colours_can_be_gone_through():
     async with opened() as (desk, pilot):
         seen = set()
         for _ in range(4):
-            await pilot.press("t")
-            await pilot.pause()
+            await pressed(desk, pilot, "t")
             seen.add(desk.theme)
         assert seen == {"dark", "daylight", "sixteen", "plain"}
 
@@ -380,8 +394,7 @@ async def test_any_keys_leave_it_standing():
     keys = "enter j j 9 escape tab s minus plus v k space e x enter escape pagedown w escape t u U h q escape"
     async with opened((80, 24)) as (desk, pilot):
         for _ in range(4):
-            await pilot.press(*keys.split())
-            await pilot.pause()
+            await pressed(desk, pilot, *keys.split())
             assert desk.is_running
             screen(desk)
         await asyncio.wait_for(desk.settled(), 20)

@@ -9,22 +9,21 @@ from typing import ClassVar
 
 from textual.app import App, ComposeResult
 from textual.binding import Binding
-from textual.containers import Container
-from textual.events import Resize
+from textual.events import Key, Paste, Resize
 
 from ... import store
 from ...errors import TrapdeskError
 from ...services.solve import solve
-from .arrange import ANSWER, FINDINGS, HELP, INPUTS, LEAST_HEIGHT, LEAST_WIDTH, arrangement, names
+from .arrange import LEAST_HEIGHT, LEAST_WIDTH, arrangement
 from .filing import Filing
 from .lines import Lines, padded
+from .middle import Middle
 from .panes.drawers import DrawersPane
 from .panes.frame import Foot, Heading
 from .session import Session
 from .solving import Solved, Solver, Solving
 from .terminal import Look, look
 from .themes import THEMES
-from .view import ViewPane
 
 
 class Desk(App[None]):
@@ -32,6 +31,7 @@ class Desk(App[None]):
 
     CSS_PATH = "desk.tcss"
     ENABLE_COMMAND_PALETTE = False
+    AUTO_FOCUS = None
     BINDINGS: ClassVar = [
         Binding("u", "undo"),
         Binding("U,ctrl+r", "redo"),
@@ -51,11 +51,9 @@ class Desk(App[None]):
         super().__init__()
         self.session = session
         self.drawn = drawn
+        self._fitting = False
         self._solving = Solving(self, session, solver)
         self._filing = Filing(session, self)
-        self._arranged = arrangement(80, 24)
-        self._view = ANSWER
-        self._helping = False
         for theme in THEMES.values():
             self.register_theme(theme)
         self.theme = drawn.theme
@@ -67,19 +65,35 @@ class Desk(App[None]):
     def compose(self) -> ComposeResult:
         """Lay out heading, panes and foot."""
         yield Heading(id="heading")
-        with Container(id="middle"):
-            yield DrawersPane(self.session, id="drawers")
-            with Container(id="centre"):
-                yield ViewPane(id="answer")
-                yield ViewPane(id="below")
-            yield ViewPane(id="side")
+        yield Middle(self.session, self.drawn, id="middle")
         yield Foot(id="foot")
         yield Lines(id="small")
 
     def on_mount(self) -> None:
         """Paint, then begin to solve."""
-        self.drawers.focus()
         self.call_after_refresh(self._solve)
+
+    def on_key(self, event: Key) -> None:
+        """Give a key to whom it is for: nothing has the focus, so that keys are dealt with in their order."""
+        if self.foot.asking:
+            self.foot.key(event)
+            self._repaint_foot()
+        elif not self.drawers.key(event):
+            return
+        event.stop()
+        event.prevent_default()
+
+    def on_paste(self, event: Paste) -> None:
+        """Give what is pasted to whom it is for."""
+        if self.foot.asking:
+            self.foot.paste(event.text)
+            self._repaint_foot()
+        else:
+            self.drawers.paste(event.text)
+
+    @property
+    def _middle(self) -> Middle:
+        return self.query_one(Middle)
 
     @property
     def drawers(self) -> DrawersPane:
@@ -107,38 +121,25 @@ class Desk(App[None]):
     def on_resize(self, event: Resize) -> None:
         """Choose the arrangement for a size."""
         width, height = event.size
-        self._arranged = arrangement(width, height)
+        self._middle.arranged = arrangement(width, height)
         text = f"{width}x{height} is too small: the desk needs {LEAST_WIDTH}x{LEAST_HEIGHT}"
         self.query_one("#small", Lines).show([[(padded(text, width), "text")]])
         self.repaint()
-        self.call_after_refresh(self.repaint)
+
+    def on_lines_resized(self) -> None:
+        """Fit the panes to their new sizes, once for all of them."""
+        if not self._fitting:
+            self._fitting = True
+            self.call_later(self._fit)
+
+    def _fit(self) -> None:
+        self._fitting = False
+        self.repaint()
 
     def repaint(self) -> None:
         """Hand the session to every pane."""
-        arranged, cycle = self._arranged, self._arranged.cycle
-        if self._view not in cycle:
-            self._view = cycle[0]
-        helping = self._helping and not arranged.wide
-        inputs = arranged.thin and self._view is INPUTS and not helping
-        for name in ("small", "short", "thin", "wide", "tall"):
-            self.screen.set_class(getattr(arranged, name), name)
-        self.screen.set_class(inputs, "inputs")
-        self.screen.set_class(arranged.thin and not inputs, "views")
         self.query_one(Heading).repaint(self.session)
-        self.drawers.repaint()
-        answer, below, side = (self.query_one(f"#{name}", ViewPane) for name in ("answer", "below", "side"))
-        given = (self.session, self.drawers.row, self.drawn)
-        for pane in (answer, below, side):
-            pane.edge = "" if arranged.thin else self.drawn.upright
-        view = HELP if helping else self._view
-        turning = below if arranged.tall else answer
-        if arranged.tall:
-            answer.update_view(*given, ANSWER, [("answer", "picked")])
-        if not inputs:
-            turning.update_view(*given, view, names(cycle, view, turning.room))
-        if arranged.wide:
-            beside = HELP if self._helping else FINDINGS
-            side.update_view(*given, beside, [(beside.name, "picked")])
+        self._middle.repaint()
         self._repaint_foot()
 
     def _repaint_foot(self) -> None:
@@ -151,15 +152,11 @@ class Desk(App[None]):
     def on_drawers_pane_moved(self) -> None:
         """Tell of the row the cursor came to."""
         self.foot.say("")
-        self.repaint() if self._helping else self._repaint_foot()
+        self.repaint() if self._middle.helping else self._repaint_foot()
 
     def on_drawers_pane_said(self, message: DrawersPane.Said) -> None:
         """Show what the inputs have to tell."""
         self.say(message.words, message.refused)
-
-    def on_foot_typing(self) -> None:
-        """Echo an answer being typed."""
-        self._repaint_foot()
 
     def say(self, text: str, refused: bool = False) -> None:
         """Show a note."""
@@ -169,12 +166,7 @@ class Desk(App[None]):
 
     def ask(self, question: str, answer: Callable[[str], None], text: str | None = None) -> None:
         """Ask in the foot for a line, or for a single key when there is no text to start from."""
-
-        def answered(given: str) -> None:
-            self.drawers.focus()
-            answer(given)
-
-        self.foot.ask(question, answered, text)
+        self.foot.ask(question, answer, text)
         self._repaint_foot()
 
     def close(self) -> None:
@@ -194,37 +186,24 @@ class Desk(App[None]):
         if moved:
             self._solve()
 
-    def _turn(self) -> None:
-        """Repaint now for the words, and once more when the panes have their new sizes."""
-        self.repaint()
-        self.call_after_refresh(self.repaint)
-
     def action_view(self, by: int) -> None:
         """Show another view."""
-        cycle = self._arranged.cycle
-        if self._helping and not self._arranged.wide:
-            self._helping = False
-        else:
-            self._view = cycle[(cycle.index(self._view) + by) % len(cycle)]
-        self._turn()
+        self._middle.turn(by)
 
     def action_help(self) -> None:
         """Show help, or take it away."""
-        self._helping = not self._helping
-        self._turn()
+        self._middle.helping = not self._middle.helping
+        self.repaint()
 
     def action_back(self) -> None:
         """Take help and note away."""
-        self._helping = False
+        self._middle.helping = False
         self.foot.say("")
-        self._turn()
+        self.repaint()
 
     def action_scroll(self, pages: int) -> None:
         """Scroll the view."""
-        beside = self._helping and self._arranged.wide
-        name = "#side" if beside else "#below" if self._arranged.tall else "#answer"
-        pane = self.query_one(name, ViewPane)
-        pane.scroll_lines(pages * max(1, pane.size.height - 2))
+        self._middle.scroll_view(pages)
 
     def action_colours(self) -> None:
         """Take the next theme."""

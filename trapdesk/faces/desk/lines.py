@@ -7,7 +7,9 @@ from typing import ClassVar
 
 from rich.cells import cell_len
 from rich.segment import Segment
+from textual.events import Resize
 from textual.geometry import Region
+from textual.message import Message
 from textual.selection import Selection
 from textual.strip import Strip
 from textual.widget import Widget
@@ -72,6 +74,9 @@ class Lines(Widget):
     COMPONENT_CLASSES: ClassVar[set[str]] = {f"lines--{name}" for name in STYLES}
     can_focus = False
 
+    class Resized(Message):
+        """A pane has another size, and wants other lines."""
+
     def __init__(self, *, id: str) -> None:
         super().__init__(id=id)
         self._lines: list[list[Piece]] = []
@@ -84,6 +89,10 @@ class Lines(Widget):
     def room(self) -> int:
         """Cells a line may take."""
         return max(0, self.size.width - len(self.edge))
+
+    def on_resize(self, event: Resize) -> None:
+        """Tell of the new size."""
+        self.post_message(self.Resized())
 
     def show(self, lines: Sequence[Line], *, stale: bool = False) -> None:
         """Show other lines; only those that changed are repainted. Stale ones are dimmed."""

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from textual.events import Click, Key, MouseScrollDown, MouseScrollUp, Paste, Resize
+from textual.events import Click, Key, MouseScrollDown, MouseScrollUp
 from textual.message import Message
 
 from ....errors import BadInput, visible
@@ -22,8 +22,6 @@ _LONGEST_LABEL = 20
 
 class DrawersPane(Lines):
     """Rows with a cursor. Browsing, keys move or command; editing, they type into the row."""
-
-    can_focus = True
 
     class Changed(Message):
         """The design changed."""
@@ -124,19 +122,9 @@ class DrawersPane(Lines):
             return [(f"{front} {name} {value}{tail}", "cursor")]
         return [(front + " ", STYLES[level]), (name + " ", "text"), (value, style), (tail, style)]
 
-    def on_resize(self, event: Resize) -> None:
-        """Fit the rows to the new size."""
-        self.repaint()
-
-    def on_key(self, event: Key) -> None:
-        """Type, or move, or do what the key stands for."""
-        if self.typed is not None:
-            handled = self._type(event)
-        else:
-            handled = self._browse(event)
-        if handled:
-            event.stop()
-            event.prevent_default()
+    def key(self, event: Key) -> bool:
+        """Type, or move, or do what the key stands for; return whether it stands for anything here."""
+        return self._browse(event) if self.typed is None else self._type(event)
 
     def _type(self, event: Key) -> bool:
         assert self.typed is not None
@@ -177,15 +165,14 @@ class DrawersPane(Lines):
             return False
         return True
 
-    def on_paste(self, event: Paste) -> None:
+    def paste(self, text: str) -> None:
         """Type what is pasted, its first line only."""
         row = self.row
         if self.typed is None and row is not None and not row.words:
             self.edit(Typed(form.starting_text(row), fresh=True))
         if self.typed is not None:
-            self.typed.insert(event.text)
+            self.typed.insert(text)
             self.repaint()
-        event.stop()
 
     def edit(self, typed: Typed) -> None:
         """Start typing into the row under the cursor."""

@@ -4,12 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from textual.events import Key, Paste
-from textual.message import Message
+from textual.events import Key
 
 from ....errors import visible
 from ....services.figures import Figures, Level
 from ... import rows as presenter
+from ... import words
 from ..form import FormRow
 from ..lines import Line, Lines, padded, width_of, wrapped
 from ..session import Session
@@ -34,12 +34,14 @@ class Heading(Lines):
         width, height, figures = self.size.width, self.size.height, session.figures
         state = "no answer" if session.no_answer else "solving" if session.solving else ""
         star = " (unsaved)" if session.unsaved else ""
-        title = visible(session.design.title, 40)
         about = _summary(figures) if figures is not None else {}
-        if not session.stale:
-            title = about["title"].value
         room = width - len(state) - 1 if state else width
-        lines: list[Line] = [[(padded(title + star, room), "head"), (f" {state}" if state else "", "watch")]]
+        basis = "" if session.stale else f": {words.ESTIMATE}"
+        if width < 2 * len(basis):
+            basis = basis.partition(",")[0]
+        title = visible(session.design.title, max(8, room - len(basis) - len(star)))
+        text = padded(title + basis + star, room)
+        lines: list[Line] = [[(text, "head"), (f" {state}" if state else "", "watch")]]
         below = [about[key].value for key in ("site", "station") if key in about]
         lines += [[(padded(text, width), "text")] for text in below]
         self.show(lines[:height], stale=False)
@@ -47,9 +49,6 @@ class Heading(Lines):
 
 class Foot(Lines):
     """The worst finding and its cure, the next move, a note, the keys; and questions in a line."""
-
-    class Typing(Message):
-        """What is being typed changed."""
 
     def __init__(self, *, id: str) -> None:
         super().__init__(id=id)
@@ -67,8 +66,6 @@ class Foot(Lines):
         """Ask in one line: with a text, for a line that Enter gives; without, for a single key."""
         self._asking, self._answer = question, answer
         self._typed = None if text is None else Typed(text)
-        self.can_focus = True
-        self.focus()
 
     @property
     def asking(self) -> bool:
@@ -79,15 +76,10 @@ class Foot(Lines):
         answer = self._answer
         assert answer is not None
         self._asking, self._answer, self._typed = "", None, None
-        self.can_focus = False
         return answer
 
-    def on_key(self, event: Key) -> None:
+    def key(self, event: Key) -> None:
         """Type the answer, or give it."""
-        if self._answer is None:
-            return
-        event.stop()
-        event.prevent_default()
         if event.key == "escape":
             self._close()("")
         elif self._typed is None:
@@ -96,15 +88,13 @@ class Foot(Lines):
         elif event.key == "enter":
             text = self._typed.text.strip()
             self._close()(text)
-        elif self._typed.key(event):
-            self.post_message(self.Typing())
+        else:
+            self._typed.key(event)
 
-    def on_paste(self, event: Paste) -> None:
+    def paste(self, text: str) -> None:
         """Type what is pasted."""
         if self._typed is not None:
-            self._typed.insert(event.text)
-            self.post_message(self.Typing())
-        event.stop()
+            self._typed.insert(text)
 
     def repaint(self, session: Session, row: FormRow | None, editing: bool) -> None:
         """Show worst finding, next move, note and keys in as many lines as there are."""
