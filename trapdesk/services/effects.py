@@ -8,47 +8,14 @@ from dataclasses import replace
 import numpy as np
 
 from ..engine.ground import Ground
-from ..engine.ports import Ports, chebyshev_nodes, terminate
+from ..engine.ports import terminate
 from ..engine.resonator import impedance as tank_impedance
-from ..engine.wire import Wire, plan, solve_ports
+from ..engine.wire import Wire
 from .figures import Effects
+from .moved import ASIDE, Moved
 from .response import Response
-from .trap import BuiltTrap
 
 LENGTH_STEP, HEIGHT_STEP, TRAP_STEP = 0.005, 0.25, 2e-3
-ASIDE = np.array([0.9995, 1.0, 1.0005])
-NODES = 3
-
-
-class Moved:
-    """A wire and wires a little different, on one coarse mesh, over every band.
-
-    The mesh's error is the same before and after, so that differences are good where values would not be.
-    Nothing here knows the traps: `by` brings them in, and a change of trap costs no new field solve.
-    """
-
-    def __init__(self, wires: Sequence[Wire], ranges: dict[str, tuple[float, float]]) -> None:
-        self.ranges = ranges
-        nodes = np.concatenate([chebyshev_nodes(low, high, NODES) for low, high in ranges.values()])
-        highest = float(nodes.max())
-        counts = plan(wires[0], highest)
-        solved = [
-            solve_ports(w, nodes, counts, highest, extrapolate=False, odd=False, power=False).impedance
-            for w in wires
-        ]
-        self._ports = {
-            role: [Ports(nodes[i : i + NODES], z[i : i + NODES]) for z in solved]
-            for role, i in zip(ranges, range(0, nodes.size, NODES), strict=True)
-        }
-
-    def by(self, role: str, frequency: float, trap: BuiltTrap | None) -> np.ndarray:
-        """Return how far a resonance moves when the first wire becomes each other one, in Hz."""
-        low, high = self.ranges[role]
-        at = min(max(frequency, low), high) * ASIDE
-        loads = () if trap is None else (trap.impedance(at),)
-        base, *others = (terminate(p.at(at).impedance, *loads).impedance.imag for p in self._ports[role])
-        slope = (base[2] - base[0]) / (at[2] - at[0])
-        return np.array([(base[1] - x[1]) / slope for x in others])
 
 
 def length_moves(wire: Wire, responses: dict[str, Response]) -> Moved:

@@ -4,16 +4,13 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 from enum import StrEnum
-from typing import TYPE_CHECKING
 
 import numpy as np
 
 from ..design import Design
 from ..engine.ports import Ports
 from ..engine.wire import Wire
-
-if TYPE_CHECKING:
-    from .effects import Moved
+from .moved import Moved
 
 
 class Level(StrEnum):

@@ -16,7 +16,7 @@ from ..engine.wire import Wire, plan, solve_ports
 from ..errors import NoAnswer
 from ..fields import SOLVE
 from ..rules import Breach, InvalidDesign, check
-from .effects import HEIGHT_STEP, Moved, effects, length_moves, site_moves
+from .effects import HEIGHT_STEP, effects, length_moves, site_moves
 from .figures import (
     AtFrequency,
     BandFigures,
@@ -30,6 +30,7 @@ from .figures import (
 )
 from .findings import find
 from .lengths import LEAST_END_HEIGHT, Search, find_lengths, first_guess, slope_of
+from .moved import Moved
 from .response import Behaviour, Response, behave, swr
 from .trap import BuiltTrap, build
 
