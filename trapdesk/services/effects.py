@@ -5,8 +5,6 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import replace
 
-import numpy as np
-
 from ..engine.ground import Ground
 from ..engine.ports import terminate
 from ..engine.resonator import impedance as tank_impedance
