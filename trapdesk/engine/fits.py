@@ -212,7 +212,7 @@ def fit_loop(sweep: Sweep, delay: float = 0.0) -> Fitted:
 
     def model(at: Array) -> Array:
         loop = at[3] * z0 / (2.0 * np.pi * middle)
-        z = loop_impedance(f, math.exp(at[0]), math.exp(at[1]), math.exp(at[2]), loop, at[4] * z0, z0)
+        z = loop_impedance(f, *np.exp(at[:3]), loop, at[4] * z0, z0)
         return delayed(f, (z - z0) / (z + z0), 2.0 * delay)
 
     def named(at: Array) -> dict[str, float]:
