@@ -22,6 +22,8 @@ Design, build and tune a two-band trap dipole, in one terminal.
   trapdesk figures FILE         everything computed for a design
   trapdesk sheet FILE           the build sheet, plain text for paper
   trapdesk tank NAME=VALUE ...  a parallel resonator from any few of its values
+  trapdesk readings FILE [...]  what was measured of a trap, and how to measure it
+  trapdesk touchstone FILE      the computed feed impedance as a Touchstone file
 
 FILE is a design in TOML, or the name of a preset. A file that is called like a
 verb is opened by its path: trapdesk ./figures. Every verb has --help with an
@@ -148,6 +150,12 @@ def _parser_of(verb: str) -> Parser:
             metavar="F[,F...]",
             help="also at these frequencies, with units and a decimal point; commas separate them",
         )
+    if verb == "readings":
+        parser.add_argument("values", nargs="*", metavar="NAME=VALUE", help="readings; none lists all kinds")
+        parser.add_argument("--keep", action="store_true", help="keep the result in the design's file")
+    if verb == "touchstone":
+        parser.add_argument("--band", choices=("lower", "upper"), help="this band alone; both unless said")
+        parser.add_argument("--out", metavar="NAME", help="write a file that is not there yet")
     parser.add_argument("--json", action="store_true", help="print JSON: SI units, the unit in the key")
     return parser
 
@@ -220,6 +228,47 @@ def tank(options: argparse.Namespace) -> str:
     return "\n".join(tank_out.lines(given, answer)) + "\n"
 
 
+def readings(options: argparse.Namespace) -> str:
+    """Return what readings of a trap come to, as text or JSON; without any, how each is done."""
+    from .. import store
+    from . import json_out, readings_out
+
+    opened = store.find(options.file)
+    if not options.values:
+        if options.keep:
+            raise Misuse("there are no readings to keep; trapdesk readings --help shows how to give them")
+        kinds = readings_out.kinds_document() if options.json else readings_out.kinds_lines()
+        return json_out.text(kinds) if options.json else "\n".join(kinds) + "\n"
+    given = readings_out.parts_of(options.values)
+    if options.keep and opened.path is None:
+        help = "a preset is never written over: save it under a name of its own first"
+        raise FileFault(options.file, "not_writable", help=help)
+    sweeps, notes = readings_out.sweeps_of(given)
+    found = readings_out.answer(opened.design, given, sweeps)
+    if options.keep:
+        store.save(readings_out.keep(opened.design, found), opened.path, opened.text)
+    if options.json:
+        return json_out.text(readings_out.document(found, given, notes, options.keep))
+    kept = ["", f"Kept in {visible(options.file, 60)}."] if options.keep else []
+    return "\n".join([*readings_out.lines(found, given, notes), *kept]) + "\n"
+
+
+def touchstone(options: argparse.Namespace) -> str:
+    """Return the computed feed impedance as a Touchstone file or JSON."""
+    from .. import sweep_files
+    from . import feed_file, json_out
+
+    found = _figures_of(options.file)
+    if options.band and options.band not in found.bands:
+        raise Misuse(f"the design has no {options.band} band; --band {' or '.join(found.bands)}")
+    roles = (options.band,) if options.band else tuple(found.bands)
+    data = json_out.text(feed_file.document(found, roles)) if options.json else feed_file.text(found, roles)
+    if options.out is None:
+        return data
+    sweep_files.write_new(options.out, data)
+    return ""
+
+
 VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
     "figures": (
         "Print everything computed for a design.",
@@ -243,6 +292,20 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
         "follows from the others.",
         tank,
         "trapdesk tank f=10.05MHz C=47pF Q=180",
+        "",
+    ),
+    "readings": (
+        "Print what was measured of a trap and its parts beside what is computed, with\n"
+        "how sure it is. Without readings: every kind of them and how to do it well.",
+        readings,
+        "trapdesk readings 40-20-vee trap.f0=13.98MHz trap.f0_with=11.6MHz,added=22pF",
+        "\n\nWhat is to be said of a reading follows it behind commas: doubt=, how=, ...\n"
+        "--keep puts the result into the design, where it replaces what is computed.",
+    ),
+    "touchstone": (
+        "Print the computed impedance at the feed point as a Touchstone 1 file, .s1p.",
+        touchstone,
+        "trapdesk touchstone 40-20-vee --band upper > upper.s1p",
         "",
     ),
 }
