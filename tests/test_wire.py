@@ -266,7 +266,7 @@ def infinitely_thin(length):
 def test_half_wave_dipole_of_a_thin_wire_heads_for_the_induced_emf_value():
     # Orfanidis, Electromagnetic Waves and Antennas, help text of the book's mutual-impedance function (public
     # copy, seen): 73.079 + j42.515 for a sinusoidal current, which an infinitely thin wire carries.
-    # The reactance cannot be as near: the thinnest wire is a line of 13 kohm, on which 5 parts in a million of
+    # The reactance cannot be as near: the thinnest wire is a line of 13 kohm, on which 5 millionths of its
     # length are 0.1 ohm.
     _, limit = infinitely_thin(0.5)
     assert limit.real == pytest.approx(73.079, abs=0.02)
