@@ -211,18 +211,39 @@ async def test_choices_take_the_next_word_and_what_hangs_on_them_follows():
         assert desk.session.design.site.included_angle is not None
 
 
-@pytest.mark.parametrize("key", ["antenna.trap.coil.kind", "antenna.trap", "bands.upper", "station.mode"])
-async def test_every_kind_and_presence_can_be_gone_through(key):
+@pytest.mark.parametrize(
+    ("key", "word"),
+    [
+        ("antenna.trap.coil.kind", "given"),
+        ("antenna.trap", "none"),
+        ("bands.upper", "none"),
+        ("station.mode", "CW"),
+    ],
+)
+async def test_kinds_and_what_may_be_absent_are_chosen_by_a_word(key, word):
     async with opened() as (desk, pilot):
         await go_to(desk, pilot, key)
         before = desk.session.design
-        await pressed(desk, pilot, "enter")
+        await pressed(desk, pilot, "e", "ctrl+u")
+        await typed(desk, pilot, word, "enter")
         await settled(desk, pilot)
         assert desk.session.design != before
         assert not desk.session.no_answer
+        assert desk.drawers.row.text == word
         await pressed(desk, pilot, "u")
         await settled(desk, pilot)
         assert desk.session.design is before
+
+
+@pytest.mark.parametrize("key", ["antenna.trap.coil.kind", "antenna.trap.capacitor.kind"])
+async def test_every_kind_can_be_tried(key):
+    async with opened() as (desk, pilot):
+        await go_to(desk, pilot, key)
+        for _ in range(6):
+            await pressed(desk, pilot, "enter")
+            await settled(desk, pilot)
+            screen(desk)
+            assert desk.is_running
 
 
 async def test_why_there_is_no_answer_is_said_and_the_last_figures_stay():

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from dataclasses import MISSING, dataclass, fields, replace
 from typing import Any
 
 from ...design import UNKNOWN, Band, Design, Shape, get, with_value
@@ -39,6 +39,8 @@ UNSET = {
     "site.permittivity": "by class",
 }
 _NO = "none"
+_ONLY_WORDS = ("text", "choice")
+_MEASURED = frozenset(str(dimension) for dimension in Dimension)
 _YES = {"antenna.trap": "fitted", "bands.upper": "wanted"}
 _STARTING_ANGLE = math.radians(120)
 _UPPER = Band(name="20 m", low=14.0e6, high=14.35e6)
@@ -48,7 +50,8 @@ _UPPER = Band(name="20 m", low=14.0e6, high=14.35e6)
 class FormRow:
     """One input: its key, what is declared of it, how its value reads, and whether that was found, not set.
 
-    `words` are the words it may be, when it is a choice. A row without a key is a heading.
+    A `fixed` value is changed in the file only. `words` are the words it may be, when it is a choice. A row
+    without a key is a heading.
     """
 
     key: str
@@ -57,6 +60,7 @@ class FormRow:
     text: str
     found: bool = False
     unset: bool = False
+    fixed: bool = False
     words: tuple[str, ...] = ()
 
     @property
@@ -77,6 +81,9 @@ def rows(design: Design, figures: Figures | None) -> dict[str, list[FormRow]]:
     for key, known, value in walk(design):
         drawer = drawer_of(key)
         if not drawer or (key == "antenna.lengths.end" and design.antenna.trap is None):
+            continue
+        if known.dimension not in ("part", *_ONLY_WORDS, *_MEASURED):
+            drawers[drawer].append(_fixed(key, known, value))
             continue
         if known.dimension != "part":
             drawers[drawer].append(_row(design, key, known, value, answers.get(key, "")))
@@ -99,6 +106,16 @@ def rows(design: Design, figures: Figures | None) -> dict[str, list[FormRow]]:
 
 def _heading(text: str) -> FormRow:
     return FormRow(key="", known=Declared(label=text, help="", dimension="part"), value=None, text="")
+
+
+def _fixed(key: str, known: Declared, value: Any) -> FormRow:
+    """Return the row of a value that the desk can show but not change."""
+    text = (
+        f"{len(value)} of them"
+        if isinstance(value, tuple)
+        else visible("not set" if value is None else value)
+    )
+    return FormRow(key=key, known=known, value=value, text=text, unset=value is None, fixed=True)
 
 
 def _presence(key: str, known: Declared, value: Any) -> FormRow:
@@ -157,6 +174,8 @@ def found(figures: Figures | None, key: str) -> float | None:
 
 def starting_text(row: FormRow) -> str:
     """Return the text an edit of a row starts with."""
+    if row.fixed:
+        return row.text
     if row.words or row.known.dimension == "text":
         return "" if row.value is None else str(row.value)
     if row.value is SOLVE:
@@ -167,6 +186,7 @@ def starting_text(row: FormRow) -> str:
 def read_row(row: FormRow, typed: str) -> Any:
     """Return the value a person typed into a row; BadInput says what would be right."""
     text = typed.strip()
+    _refuse_fixed(row)
     if row.known.dimension == "text":
         if not text:
             raise BadInput(Fault(where="", code="empty", help="a few words"))
@@ -180,6 +200,13 @@ def read_row(row: FormRow, typed: str) -> Any:
             return SOLVE
         raise BadInput(Fault(where="", code="cannot_be_solved", value=text, help=_example(row)))
     return read(text, Dimension(row.known.dimension))
+
+
+def _refuse_fixed(row: FormRow) -> None:
+    if row.fixed:
+        raise BadInput(
+            Fault(where="", code="this_is_set_in_the_file", help="write it there and open it again")
+        )
 
 
 def _example(row: FormRow) -> str:
@@ -262,11 +289,12 @@ def _with_kind(design: Design, key: str, kind: str, figures: Figures | None) -> 
         return design
     unknown = [name for name, of in declared(present).items() if of.solvable]
     was_solved = any(getattr(present, name) is SOLVE for name in unknown)
-    changed = with_value(design, key, known.choices[kind]())
-    if was_solved:
-        return changed
-    solved = next(k for k in trap_unknowns(changed.antenna.trap) if k.startswith(f"{key}."))
-    return _one_solved(changed, solved, figures)
+    made = known.choices[kind]
+    if any(f.default is MISSING and f.default_factory is MISSING for f in fields(made)):
+        raise BadInput(Fault(where="", code="this_kind_needs_values", value=kind, help="set it in the file"))
+    changed = with_value(design, key, made())
+    solved = next((k for k in trap_unknowns(changed.antenna.trap) if k.startswith(f"{key}.")), "")
+    return changed if was_solved or not solved else _one_solved(changed, solved, figures)
 
 
 def _with_trap(design: Design, fitted: bool, past: Iterator[Design]) -> Design:
@@ -348,6 +376,7 @@ _STEPS = {
 def nudged(row: FormRow, direction: int) -> float:
     """Return a row's value one step further: half a turn, a centimetre, else its second digit."""
     dimension = row.known.dimension
+    _refuse_fixed(row)
     if row.words or dimension in ("text", "part"):
         raise BadInput(Fault(where="", code="there_is_nothing_to_step", help="Enter changes it"))
     if row.value is None or row.value is SOLVE:

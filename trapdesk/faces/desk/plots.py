@@ -151,7 +151,7 @@ def _frequencies(panel: Panel, columns: int, look: Look) -> str:
     rough = (high - low) / max(2, columns // 9)
     power = 10.0 ** math.floor(math.log10(rough))
     step = next(power * s for s in _SPEEDS if power * s >= rough * 0.999)
-    decimals = max(0, 1 - math.floor(math.log10(step) + 1e-9)) if step < 1 else 0
+    decimals = max(1, 1 - math.floor(math.log10(step) + 1e-9)) if step < 1 else 1
     text, after, last = [" "] * columns, 0, columns - len(unit)
     text[last:] = unit
     for place in range(math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9) + 1):

@@ -66,7 +66,7 @@ class Typed:
         width = max(2, width)
         text, caret = self.text, self.caret
         start = 0
-        while cell_len(text[start:caret]) > width - 2:
+        while cell_len(text[start:caret]) > width - 1:
             start += 1
         end = len(text)
         while cell_len(text[start:end]) > width - (1 if end == caret else 0) and end > caret + 1:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from textual.events import MouseScrollDown, MouseScrollUp
 
@@ -59,6 +59,9 @@ class ViewPane(Lines):
             tall=self.screen.size.height >= TALL,
         )
         lines = view.lines(sight)
+        if len(lines) > sight.height:
+            # Where there is more below, the last column is for the mark that says so.
+            lines = view.lines(replace(sight, width=sight.width - 1))
         if not lines and session.figures is None:
             words = session.no_answer or "working out the first answer"
             lines = [[(words, "stop" if session.no_answer else "quiet")]]

@@ -44,6 +44,7 @@ class DrawersPane(Lines):
         self.drawer = next(iter(DRAWERS))
         self.typed: Typed | None = None
         self._key = ""
+        self._spare = 0
         self._last: dict[str, str] = {}
         self._rows: list[FormRow] = []
         self._places: list[int | None] = []
@@ -67,6 +68,8 @@ class DrawersPane(Lines):
         if self._key not in keys:
             self._key = keys[0] if keys else ""
         marks = self._marks()
+        # Where there is more below, the last column is for the mark that says so.
+        self._spare = int(len(shown) > 1 or len(self._rows) >= self.size.height)
         lines: list[Line] = [self._names()]
         self._places = [None]
         cursor = 0
@@ -107,7 +110,7 @@ class DrawersPane(Lines):
         here = row.key == self._key
         level = marks.get(row.key, Level.FINE)
         front = MARKS[level].strip() or (">" if here else " ")
-        width = self.room - label - 3
+        width = self.room - label - 3 - self._spare
         name = padded(row.known.label, label)
         if here and self.typed is not None:
             return [(front, "cursor"), (f" {name} ", "head"), *self.typed.pieces(width)]

@@ -60,7 +60,7 @@ def _about(row: FormRow, width: int) -> list[Line]:
 def _limits(row: FormRow) -> str:
     """Return the limits of a quantity in words."""
     known = row.known
-    if known.dimension in ("text", "choice", "part"):
+    if row.fixed or known.dimension in ("text", "choice", "part"):
         return ""
     kind = Dimension(known.dimension)
     pieces = []
