@@ -128,7 +128,7 @@ class Problem:
 
 @dataclass(frozen=True, kw_only=True)
 class Chain:
-    """A network of coils and capacitors as immittances, arms counted from the load.
+    """A network of coils and capacitors as immittances, arms counted from the load, all of one shape.
 
     Parameters
     ----------
@@ -166,17 +166,18 @@ def chain(arms: tuple[Arm, ...], problem: Problem) -> Chain:
     Chain
         The same, arms counted from the load.
     """
-    arms = arms[::-1]
-    load, wanted = (np.asarray(z, dtype=complex) for z in (problem.load, problem.wanted))
+    arms, shape = arms[::-1], problem.shape
+    load, wanted = (np.broadcast_to(np.asarray(z, complex), shape) for z in (problem.load, problem.wanted))
     directions = []
     for arm in arms:
         q = {Kind.COIL: problem.coil_q, Kind.CAPACITOR: problem.capacitor_q}.get(arm.kind, np.inf)
         same = (arm.kind is not Kind.CAPACITOR) == (arm.place is Place.SERIES)
         stub = arm.kind in (Kind.OPEN_STUB, Kind.SHORTED_STUB)
-        directions.append(1.0 / np.asarray(q, dtype=float) + (1j if same or stub else -1j))
+        step = 1.0 / np.asarray(q, dtype=float) + (1j if same or stub else -1j)
+        directions.append(np.broadcast_to(step, shape))
     return Chain(
         arms=arms,
-        w=2.0 * np.pi * np.asarray(problem.frequency, dtype=float),
+        w=np.broadcast_to(2.0 * np.pi * np.asarray(problem.frequency, dtype=float), shape),
         direction=tuple(directions),
         start=load if arms[0].place is Place.SERIES else 1.0 / load,
         goal=wanted if arms[-1].place is Place.SERIES else 1.0 / wanted,

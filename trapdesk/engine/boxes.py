@@ -146,6 +146,25 @@ def values_of(links: Chain, sizes: FloatArray) -> FloatArray:
         return np.stack([sizes_to_values(links, i, sizes[i]) for i in reversed(range(count))])
 
 
+def clipped(values: FloatArray, within: Limits) -> FloatArray:
+    """Return values that a search left within the limits to rounding, wholly within them.
+
+    Parameters
+    ----------
+    values : float array
+        (arms, ...), counted from the source. [H], [F]
+    within : Limits
+        Limits of the arms.
+
+    Returns
+    -------
+    float array
+        The same values, those at a limit exactly there. [H], [F]
+    """
+    ends = zip(values, within.low, within.high, strict=True)
+    return np.stack([np.clip(value, low, high) for value, low, high in ends])
+
+
 def efficiency(links: Chain, sizes: FloatArray) -> FloatArray:
     """Return power out over power in.
 

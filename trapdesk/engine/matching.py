@@ -15,6 +15,7 @@ from .boxes import (
     Limits,
     at_limits,
     box_of,
+    clipped,
     curve,
     decibels,
     efficiency,
@@ -32,7 +33,7 @@ BoolArray = NDArray[np.bool_]
 SLACK = 1e-9
 """Relative excess over a limit that is rounding."""
 SCAN = 33
-MAP_SCAN = 9
+MAP_SCAN = 17
 """Points of the search for a map: its edges come from the limits and are exact."""
 ZOOM_POINTS = 9
 ZOOM_LEVELS = 8
@@ -148,9 +149,9 @@ def least_loss(
     box = box_of(network, problem, within)
     sizes, cost = least_sizes(box, points, refine)
     matched = np.isfinite(cost)
-    values = values_of(box.links, np.where(matched, np.clip(sizes, box.low, box.high), np.nan))
+    values = values_of(box.links, np.where(matched, sizes, np.nan)).reshape(-1, *problem.shape)
     return LeastLoss(
-        values=values.reshape(-1, *problem.shape),
+        values=clipped(values, within),
         loss_db=decibels(np.where(matched, 1.0 - cost, np.nan)).reshape(problem.shape)[()],
         matched=matched.reshape(problem.shape)[()],
     )
@@ -224,5 +225,5 @@ def reach(
     return least_loss(network, problem, within, points=MAP_SCAN, refine=False)
 
 
-MAP_SCAN = 9
+MAP_SCAN = 17
 """Points of the search for a map: its edges come from the limits and are exact."""

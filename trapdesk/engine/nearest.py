@@ -13,6 +13,7 @@ from .boxes import (
     Limits,
     at_limits,
     box_of,
+    clipped,
     curve,
     decibels,
     efficiency,
@@ -32,8 +33,8 @@ BoolArray = NDArray[np.bool_]
 
 MATCHED = 1e-6
 """Reflection below which a setting counts as a match when steps are compared."""
-NEAREST_SCAN = 129
-NEAREST_LEVELS = 12
+NEAREST_SCAN = 97
+NEAREST_LEVELS = 9
 SHORT_SCAN = 33
 ZOOM_POINTS = 9
 
@@ -115,6 +116,8 @@ def _along(box: Box, fixed: dict[int, FloatArray], scanned: int, free: int) -> t
         log_size = np.clip(centre + step * np.linspace(-1.0, 1.0, points)[:, None], low, high)
         sizes = [np.broadcast_to(fixed.get(i, np.nan), log_size.shape) for i in range(count)]
         sizes[scanned] = np.clip(np.exp(log_size), box.low[scanned], box.high[scanned])
+        if level == 0:  # a limit of nothing has no logarithm
+            sizes[scanned][0] = box.low[scanned]
         sizes[free], squares = _best_of_arm(box, sizes, free)
         here, here_square = pick(np.stack(sizes), squares)
         best = np.where(here_square < least, here, best)
@@ -212,7 +215,7 @@ def best_setting(network: Network, problem: Problem, within: Limits) -> Setting:
         short[~matched], needed[~matched], limit[~matched] = _shortage(
             left, np.stack(some_within.low), np.stack(some_within.high)
         )
-    values = values_of(box.links, np.clip(sizes, box.low, box.high))
+    values = clipped(values_of(box.links, sizes), within)
     z = input_impedance(ladder_of(network, values, spread), spread.load)
     return Setting(
         values=values.reshape(-1, *shape),
@@ -279,7 +282,7 @@ def snap(
         if free:
             arm = len(steps) - 1 - next(i for i in range(len(steps)) if i not in stepped)
             sizes[arm] = _best_of_arm(inside, sizes, arm)[0]
-        values = values_of(inside.links, np.stack(sizes))
+        values = clipped(values_of(inside.links, np.stack(sizes)), box)
         ratio = swr(input_impedance(ladder_of(network, values, many), many.load), many.wanted)
         loss = decibels(efficiency(inside.links, np.stack(sizes)))
     matched = ratio <= swr_of_reflection(MATCHED)

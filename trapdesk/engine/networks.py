@@ -103,8 +103,8 @@ def _three_part_match(network: Network, problem: Problem, quality: ArrayLike | N
 def _line(problem: Problem) -> tuple[ComplexArray, ComplexArray]:
     if problem.line is None:
         raise ValueError("line must be given for a network with line in it")
-    gamma, impedance = problem.line.gamma, problem.line.impedance
-    return np.asarray(gamma, dtype=complex), np.asarray(impedance, dtype=complex)
+    gamma, impedance = (np.asarray(z, complex) for z in (problem.line.gamma, problem.line.impedance))
+    return np.broadcast_to(gamma, problem.shape), np.broadcast_to(impedance, problem.shape)
 
 
 def _stub_length(kind: Kind, susceptance: FloatArray, phase: FloatArray) -> FloatArray:
