@@ -170,9 +170,59 @@ def terminate(impedance: np.ndarray, *traps: np.ndarray) -> Terminated:
         return Terminated(z11, np.ones((*z11.shape, 1), complex))
     if not 1 <= len(traps) <= 2:
         raise ValueError("traps: must be one for both sides, or two")
-    first, second = traps[0], traps[-1]
-    a, d, b = impedance[..., 1, 1] + first, impedance[..., 2, 2] + second, impedance[..., 1, 2]
-    p, q = impedance[..., 0, 1], impedance[..., 0, 2]
-    determinant = a * d - b * b
-    i2, i3 = (b * q - d * p) / determinant, (b * p - a * q) / determinant
-    return Terminated(z11 + p * i2 + q * i3, np.stack([np.ones_like(i2), i2, i3], axis=-1))
+    z = impedance
+    entries = (z11, z[..., 0, 1], z[..., 0, 2], z[..., 1, 1], z[..., 2, 2], z[..., 1, 2])
+    shape = np.broadcast_shapes(z11.shape, *(np.shape(trap) for trap in traps))
+    first, second = (np.broadcast_to(trap, shape) for trap in (traps[0], traps[-1]))
+    feed, i2, i3 = terminate_entries(*entries, first, second)
+    currents = np.stack([np.ones_like(i2), i2, i3], axis=-1)
+    return Terminated(feed.reshape(shape)[()], currents.reshape(*shape, 3))
+
+
+def terminate_entries(
+    feed: np.ndarray,
+    to_first: np.ndarray,
+    to_second: np.ndarray,
+    first: np.ndarray,
+    second: np.ndarray,
+    between: np.ndarray,
+    first_trap: np.ndarray,
+    second_trap: np.ndarray,
+) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    """Close the trap ports of a matrix whose entries are arrays of their own, as many trials have them.
+
+    Parameters
+    ----------
+    feed, to_first, to_second : complex array
+        Open-circuit impedance of the feed point, and between it and the traps. [ohm]
+    first, second, between : complex array
+        Open-circuit impedance of each trap gap, and between both. [ohm]
+    first_trap, second_trap : complex array
+        Impedance of the trap in each side, of the full shape. [ohm]
+
+    Returns
+    -------
+    tuple of complex array
+        Feed impedance, and the current in each trap for one ampere into the feed, of one axis at least.
+        [ohm], [1]
+
+    Source
+    ------
+    Derived here: `V = Z I` with `V = -Z_trap I` at the traps.
+    """
+    # Work in place: this is what an ensemble spends its time on.
+    a, d = first + np.atleast_1d(first_trap), second + np.atleast_1d(second_trap)
+    b, p, q = between, to_first, to_second
+    scale = a * d
+    scale -= b * b
+    np.divide(1.0, scale, out=scale)
+    d *= p
+    i2 = b * q - d
+    i2 *= scale
+    a *= q
+    i3 = b * p - a
+    i3 *= scale
+    fed = np.multiply(p, i2, out=a)
+    fed += np.multiply(q, i3, out=d)
+    fed += feed
+    return fed, i2, i3

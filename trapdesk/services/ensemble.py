@@ -1,0 +1,540 @@
+"""Trials of one antenna as it might come out: each through the same resonator and the same port matrices."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from functools import cached_property
+
+import numpy as np
+
+from ..design import Design
+from ..engine import resonator
+from ..engine.coil_formulas import sheet_inductance
+from ..engine.ports import terminate_entries
+from ..fields import SOLVE
+from ..parts import Solenoid
+from .beliefs import TWO_THIRDS, Belief, Draws, beliefs, draw
+from .figures import Figures
+from .nearby import Nearby, Table
+from .response import MARGIN
+from .trap import BuiltTrap, build
+
+POINTS = 41
+"""Frequencies a band is looked at: in its wanted part, and over the band and its margins."""
+WANTED_POINTS = 9
+CHUNK = 200
+"""Trials that are worked on at once: their arrays stay near the processor."""
+REFERENCE_TEMPERATURE = 20.0
+"""Where the values of parts hold. [degC]"""
+AIM_STEPS = 8
+NEAR_ENOUGH = 0.3
+"""Reactance at the aim that counts as none. [ohm]"""
+FARTHEST = 0.08
+"""How far a wire is changed on the way to the aim, as a share of the side."""
+WIRES = ("inner", "end")
+
+
+@dataclass(frozen=True, kw_only=True)
+class Stage:
+    """What has been done by then: traps tuned on the bench, before or after sealing; wires brought to aim."""
+
+    name: str
+    tuned: bool = False
+    sealed: bool = False
+    sealed_first: bool = False
+    aimed: bool = False
+    wet: bool = False
+
+
+STAGES: tuple[Stage, ...] = (
+    Stage(name="as_cut"),
+    Stage(name="tuned", tuned=True, sealed=True),
+    Stage(name="aimed", tuned=True, sealed=True, aimed=True),
+    Stage(name="wet", tuned=True, sealed=True, aimed=True, wet=True),
+)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Traps:
+    """The traps of many trials, arrays (2, trials): inductance over nominal, capacitance [F], Q over nominal."""
+
+    inductance: np.ndarray
+    capacitance: np.ndarray
+    q: np.ndarray
+
+
+@dataclass(frozen=True, kw_only=True)
+class Outcome:
+    """What one band does in many trials, arrays (trials,), and its reflection (trials, frequencies).
+
+    `worst` and `aim` are squared reflections of the wanted part and at the aim; volts are peak, the worse trap
+    at its worst in the wanted part; `loss` is the share of power that both traps turn to heat at the aim.
+    """
+
+    dip: np.ndarray
+    dip_reflection: np.ndarray
+    aim: np.ndarray
+    worst: np.ndarray
+    volts: np.ndarray
+    loss: np.ndarray
+    reflection: np.ndarray
+
+
+def swr_of(reflection: np.ndarray) -> np.ndarray:
+    """Return the standing wave ratio of squared reflections."""
+    size = np.sqrt(reflection)
+    return (1 + size) / np.maximum(1 - size, 1e-9)
+
+
+def reflection_of(swr: float) -> float:
+    """Return the squared reflection of a standing wave ratio."""
+    return ((swr - 1) / (swr + 1)) ** 2
+
+
+@dataclass(frozen=True, kw_only=True)
+class Circuit:
+    """The nominal trap at some frequencies: inductance, coil resistance, and capacitor resistance times capacitance.
+
+    An inductance that is the same everywhere is one number; the last is None of a lossless capacitor.
+    """
+
+    frequency: np.ndarray
+    inductance: np.ndarray
+    resistance: np.ndarray
+    lost: np.ndarray | None
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Grid:
+    """A band's frequencies, where among them the wanted part and the aim are, and what stands there."""
+
+    frequency: np.ndarray
+    wanted: slice
+    aim: int
+    table: Table
+    circuit: Circuit | None
+
+
+class Ensemble:
+    """All that trials of a design have in common: its ports and their neighbours, its trap, its beliefs."""
+
+    def __init__(self, figures: Figures, varying: Mapping[str, Belief] | None = None) -> None:
+        design = figures.design
+        self.design, self.figures = design, figures
+        self.varying = dict(beliefs(design) if varying is None else varying)
+        self.trap: BuiltTrap | None = build(design.antenna.trap) if design.antenna.trap is not None else None
+        self.wire = figures.wire
+        self.roles = [role for role, _ in design.bands.items()]
+        self._bands = dict(design.bands.items())
+        ranges = {
+            role: (band.low * (1 - MARGIN), band.high * (1 + MARGIN)) for role, band in design.bands.items()
+        }
+        self.nearby = Nearby(design, self.wire, figures.ports, ranges, self._reach())
+        self.grids = {role: self._grid(role) for role in self.roles}
+
+    def with_beliefs(self, varying: Mapping[str, Belief]) -> Ensemble:
+        """Return the ensemble with other beliefs on the same ports."""
+        other = object.__new__(Ensemble)
+        cached = ("_slopes", "_aim_tables", "_aim_circuits", "exponents")
+        other.__dict__.update({name: value for name, value in self.__dict__.items() if name not in cached})
+        other.varying = dict(varying)
+        return other
+
+    def with_trap(self, design: Design, trap: BuiltTrap) -> Ensemble:
+        """Return the ensemble with another trap and other aims in the same wire, which is to be brought to aim."""
+        other = self.with_beliefs(self.varying)
+        other.design, other.trap = design, trap
+        other._bands = dict(design.bands.items())
+        other.grids = {role: other._grid(role) for role in self.roles}
+        return other
+
+    def _reach(self) -> dict[str, float]:
+        reach = {name: belief.reach for name, belief in self.varying.items()}
+
+        def total(*names: str) -> float:
+            return sum(reach.get(name, 0.0) for name in names)
+
+        found = {name: reach[name] for name in ("soil", "coating", "site") if name in reach}
+        found["height"] = 0.8 * (total("height") + TWO_THIRDS * total("sag"))
+        for wire in WIRES:
+            found[wire] = total(f"marking_{wire}", f"fastening_{wire}")
+        return found
+
+    def _grid(self, role: str) -> _Grid:
+        band = self._bands[role]
+        low, high = band.low * (1 - MARGIN), band.high * (1 + MARGIN)
+        begin, end = band.wanted
+        wanted = np.unique(np.append(np.linspace(begin, end, WANTED_POINTS - 1), band.target))
+        rest = POINTS - wanted.size
+        below = round(rest * (begin - low) / (begin - low + high - end))
+        frequency = np.concatenate(
+            [
+                np.linspace(low, begin, below, endpoint=False),
+                wanted,
+                np.linspace(end, high, rest - below + 1)[1:],
+            ]
+        )
+        return _Grid(
+            frequency=frequency,
+            wanted=slice(below, below + wanted.size),
+            aim=int(np.argmin(np.abs(frequency - band.target))),
+            table=self.nearby.table(role, frequency),
+            circuit=self._circuit(frequency),
+        )
+
+    def _circuit(self, frequency: np.ndarray) -> Circuit | None:
+        if self.trap is None:
+            return None
+        inductance, capacitance, resistance, esr = self.trap.circuit(frequency)
+        same = float(np.ptp(inductance)) == 0.0
+        return Circuit(
+            frequency=frequency,
+            inductance=inductance[:1] if same else inductance,
+            resistance=resistance,
+            lost=np.broadcast_to(esr * capacitance, frequency.shape) if np.any(esr) else None,
+        )
+
+    def draws(self, seed: int, begin: int, count: int) -> dict[str, np.ndarray]:
+        """Return trials as values of what varies."""
+        return draw(self.varying, seed, begin, count)
+
+    def nominal(self, count: int = 1) -> dict[str, np.ndarray]:
+        """Return trials in which nothing varies: ranges at their middle where they are allowed for."""
+        found = {}
+        for name, belief in self.varying.items():
+            middle = sum(belief.ends) / 2 if name in ("sealing", "temperature", "weather") else 0.0
+            found[name] = np.full((count, 2) if belief.pair else count, middle)
+        return found
+
+    # The traps
+
+    @cached_property
+    def exponents(self) -> tuple[float, float, float]:
+        """Powers by which a wound coil's inductance follows turns, pitch and diameter, by the current sheet."""
+        wound = self.trap.wound if self.trap is not None else None
+        if wound is None:
+            return 0.0, 0.0, 0.0
+        given = (wound.diameter, wound.pitch, wound.turns)
+
+        def log(diameter: float, pitch: float, turns: float) -> float:
+            return math.log(float(sheet_inductance(diameter, turns * pitch, turns)))
+
+        step = 1e-3
+        rates = [
+            (log(*(v * (1 + step * (i == j)) for j, v in enumerate(given))) - log(*given)) / math.log1p(step)
+            for i in range(3)
+        ]
+        return rates[2], rates[1], rates[0]
+
+    def traps(self, draws: Draws, stage: Stage, count: int) -> Traps:
+        """Return the traps of trials at a stage."""
+        trap, part = self.trap, self.design.antenna.trap
+        assert trap is not None and part is not None
+
+        def of(name: str) -> np.ndarray | float:
+            return draws[name].T if name in draws else 0.0
+
+        turns = trap.wound.turns if trap.wound is not None else 1.0
+        by_turns, by_pitch, by_diameter = self.exponents
+        inductance = np.ones((2, count)) * (1 + of("coil"))
+        if isinstance(part.coil, Solenoid):
+            log = by_turns * np.log1p(of("turns") / turns)
+            log = log + by_pitch * np.log1p(of("pitch")) + by_diameter * np.log1p(of("former"))
+            inductance = inductance * np.exp(log)
+        own = trap.capacitance - trap.fitted
+        capacitance = trap.fitted * (1 + of("capacitor")) + np.zeros((2, count))
+        if own:
+            low, middle, high = trap.self_capacitance
+            x = np.asarray(of("self_capacitance"))
+            factor = np.where(x > 0, math.log(high / middle), math.log(middle / low))
+            capacitance = capacitance + own * np.exp(x * factor)
+        sealing = of("sealing")
+        if stage.tuned:
+            belief = self.varying.get("sealing")
+            allowed = 1.0
+            if belief is not None and stage.sealed and not stage.sealed_first:
+                # Who tunes before sealing tunes as much too high as sealing takes in the middle.
+                allowed = 1 - sum(belief.ends) / 2
+            wanted = (1 + of("tuning")) / allowed
+            inductance = trap.capacitance / capacitance / wanted**2
+        if stage.sealed and not stage.sealed_first:
+            capacitance = capacitance / (1 - sealing) ** 2
+        doubts = self.design.doubts
+        weather = "weather" if stage.wet else "temperature"
+        if weather in draws:
+            warmer = draws[weather] - REFERENCE_TEMPERATURE
+            inductance = inductance * (1 + doubts.coil_drift * warmer)
+            capacitance = capacitance * (1 + doubts.capacitor_drift * warmer)
+        if stage.wet:
+            capacitance = capacitance / (1 - of("rain")) ** 2
+        return Traps(inductance=inductance, capacitance=capacitance, q=np.ones((2, count)) * (1 + of("q")))
+
+    def trap_resonance(self, traps: Traps) -> np.ndarray:
+        """Return the resonance of the traps (2, trials), in Hz."""
+        assert self.trap is not None
+        return resonator.lc_resonance(self.trap.inductance * traps.inductance, traps.capacitance)
+
+    def trap_impedances(
+        self, circuit: Circuit, traps: Traps, pick: slice = slice(None), frequency: np.ndarray | None = None
+    ) -> list[np.ndarray]:
+        """Return the impedance of both traps of trials (trials, frequencies); at frequencies near the circuit's."""
+        found = []
+        for i in range(2):
+            factor, capacitance = traps.inductance[i, pick, None], traps.capacitance[i, pick, None]
+            found += [
+                resonator.impedance(
+                    circuit.frequency if frequency is None else frequency,
+                    circuit.inductance * factor,
+                    capacitance,
+                    circuit.resistance * (factor / traps.q[i, pick, None]),
+                    0.0 if circuit.lost is None else circuit.lost / capacitance,
+                )
+            ]
+        return found
+
+    # The wires
+
+    def places(
+        self, draws: Draws, count: int, change: Mapping[str, np.ndarray] | None = None
+    ) -> dict[str, np.ndarray]:
+        """Return where trials stand among the nearby wires, `change` [m] being made to both sides."""
+        zero = np.zeros(count)
+        creep = draws.get("creep", zero)
+        found = {
+            "height": draws.get("height", zero) - TWO_THIRDS * draws.get("sag", zero),
+            "soil": draws.get("soil", zero),
+            "coating": draws.get("coating", zero),
+            "site": draws.get("site", zero),
+        }
+        for wire in WIRES:
+            length = getattr(self.wire, wire)
+            if length is None:
+                continue
+            sides = draws.get(f"fastening_{wire}", np.zeros((count, 2)))
+            found[wire] = draws.get(f"marking_{wire}", zero) + creep * length + sides.mean(axis=1)
+            found[f"odd_{wire}"] = (sides[:, 0] - sides[:, 1]) / 2
+            if change is not None:
+                found[wire] = found[wire] + change[wire]
+        return found
+
+    @property
+    def unknown_wires(self) -> dict[str, str]:
+        """Which wire is changed for which band's aim."""
+        if self.wire.end is None:
+            return {"inner": "lower"}
+        return {"inner": "upper", "end": "lower"} if "upper" in self._bands else {"end": "lower"}
+
+    @cached_property
+    def _aim_tables(self) -> dict[str, Table]:
+        return {
+            role: self.nearby.table(role, np.array([self._bands[role].target]))
+            for role in self.unknown_wires.values()
+        }
+
+    @cached_property
+    def _aim_circuits(self) -> dict[str, Circuit]:
+        found = {role: self._circuit(np.array([self._bands[role].target])) for role in self._aim_tables}
+        return {role: circuit for role, circuit in found.items() if circuit is not None}
+
+    def _reactances(
+        self, places: Mapping[str, np.ndarray], traps: Traps | None, draws: Draws, count: int
+    ) -> np.ndarray:
+        """Return the reactance (trials, aims) where each aim is thought to be."""
+        found = []
+        for role in self.unknown_wires.values():
+            aim = self._bands[role].target
+            off = draws.get(f"aim_{role}", np.zeros(count))
+            # The wire at another frequency is the wire with another scale of frequency.
+            there = {**places, "site": (1 + places["site"]) / (1 + off) - 1}
+            entries = Nearby.entries(self._aim_tables[role], self.nearby.features(there, count))[:, :, 0]
+            if traps is None:
+                found += [entries[:, 0].imag]
+                continue
+            frequency = aim * (1 + off[:, None])
+            loads = self.trap_impedances(self._aim_circuits[role], traps, frequency=frequency)
+            found += [terminate_entries(*entries.T, *(load[:, 0] for load in loads))[0].imag]
+        return np.column_stack(found)
+
+    def to_aim(
+        self,
+        draws: Draws,
+        stage: Stage,
+        count: int,
+        most: Mapping[str, float] | None = None,
+        free: Mapping[str, np.ndarray] | None = None,
+    ) -> dict[str, np.ndarray]:
+        """Return how much longer each wire of a side must be for both aims, in m; at most `most`.
+
+        NaN marks trials in which no length near the computed one brings it to the aim. `free` is the answer
+        without `most`, where it is known.
+        """
+        traps = None if self.trap is None else self.traps(draws, stage, count)
+        places = self.places(draws, count)
+        names = list(self.unknown_wires)
+        held: dict[str, np.ndarray] = {}
+        change = self._newton(places, traps, draws, count, names, held) if free is None else dict(free)
+        if most is not None:
+            for name in names:
+                over = change[name] > most[name]
+                if not np.any(over):
+                    continue
+                held[name] = np.minimum(change[name], most[name])
+                rest = [other for other in names if other not in held]
+                if rest:
+                    # What the held wire leaves to the other one only concerns the trials where it was held.
+                    pick = np.flatnonzero(over)
+                    some = {key: value[pick] for key, value in places.items()}
+                    part = None if traps is None else _part(traps, pick)
+                    mine = {key: value[pick] for key, value in held.items()}
+                    own = {key: value[pick] for key, value in draws.items()}
+                    again = self._newton(some, part, own, pick.size, rest, mine)
+                    for other in rest:
+                        change[other] = change[other].copy()
+                        change[other][pick] = again[other]
+                change[name] = held[name]
+        return {wire: change.get(wire, np.zeros(count)) for wire in WIRES}
+
+    def _newton(
+        self,
+        places: Mapping[str, np.ndarray],
+        traps: Traps | None,
+        draws: Draws,
+        count: int,
+        names: list[str],
+        held: Mapping[str, np.ndarray],
+    ) -> dict[str, np.ndarray]:
+        """Bring the reactances at the aims to nothing by changing wires; slopes are learned on the way."""
+        aims = [list(self.unknown_wires).index(name) for name in names]
+        bound = FARTHEST * self.wire.side
+
+        def miss(change: np.ndarray) -> np.ndarray:
+            there = dict(places)
+            for name, value in (*held.items(), *zip(names, change.T, strict=True)):
+                there[name] = places[name] + value
+            return self._reactances(there, traps, draws, count)[:, aims]
+
+        change = np.zeros((count, len(names)))
+        off = miss(change)
+        inverse = np.broadcast_to(
+            np.linalg.inv(self._slopes[np.ix_(aims, aims)]), (count, len(names), len(names))
+        )
+        inverse = inverse.copy()
+        best, best_change = np.full(count, np.inf), change.copy()
+        for _ in range(AIM_STEPS):
+            size = np.abs(off).max(axis=1)
+            better = size < best
+            best = np.where(better, size, best)
+            best_change = np.where(better[:, None], change, best_change)
+            if np.all(best < NEAR_ENOUGH):
+                break
+            move = -np.einsum("nij,nj->ni", inverse, off)
+            largest = np.abs(move).max(axis=1) / (bound / 3)
+            move = np.clip(change + move / np.maximum(largest, 1.0)[:, None], -bound, bound) - change
+            new = miss(change + move)
+            # Broyden's update of the inverse slopes, each trial its own.
+            gained = np.einsum("nij,nj->ni", inverse, new - off)
+            along = np.einsum("ni,nij->nj", move, inverse)
+            scale = np.einsum("ni,ni->n", move, gained)
+            safe = np.abs(scale) > 1e-3 * np.einsum("ni,ni->n", move, move)
+            step = np.where(safe[:, None], (move - gained) / np.where(safe, scale, 1.0)[:, None], 0.0)
+            inverse += step[:, :, None] * along[:, None, :]
+            change, off = change + move, new
+        else:
+            size = np.abs(off).max(axis=1)
+            best_change = np.where((size < best)[:, None], change, best_change)
+            best = np.minimum(best, size)
+        best_change[~(best < 10 * NEAR_ENOUGH)] = np.nan
+        return dict(zip(names, best_change.T, strict=True))
+
+    @cached_property
+    def _slopes(self) -> np.ndarray:
+        """Change of the reactance at each aim with each wire, in ohm per metre, for the nominal antenna."""
+        count = 2 * len(self.unknown_wires)
+        stage = replace(STAGES[0], name="nominal")
+        nothing = self.nominal(count)
+        traps = None if self.trap is None else self.traps(nothing, stage, count)
+        places = self.places({}, count)
+        step = 0.005 * self.wire.side
+        for i, name in enumerate(self.unknown_wires):
+            places[name] = places[name].copy()
+            places[name][2 * i : 2 * i + 2] += (step, -step)
+        found = self._reactances(places, traps, {}, count)
+        return ((found[0::2] - found[1::2]) / (2 * step)).T
+
+    # The outcome
+
+    def features(self, draws: Draws, count: int, change: Mapping[str, np.ndarray] | None) -> np.ndarray:
+        """Return the terms of the port polynomials for trials whose wires were changed."""
+        return self.nearby.features(self.places(draws, count, change), count)
+
+    def outcome(self, role: str, features: np.ndarray, traps: list[Traps | None]) -> list[list[Outcome]]:
+        """Return what a band does with each set of traps in the same wires, in pieces of a chunk each."""
+        found: list[list[Outcome]] = [[] for _ in traps]
+        for begin in range(0, features.shape[0], CHUNK):
+            pick = slice(begin, begin + CHUNK)
+            entries = Nearby.entries(self.grids[role].table, features[pick])
+            for pieces, own in zip(found, traps, strict=True):
+                pieces.append(self._closed(role, entries, own, pick))
+        return found
+
+    def _closed(self, role: str, entries: np.ndarray, traps: Traps | None, pick: slice) -> Outcome:
+        grid, station = self.grids[role], self.design.station
+        if traps is None or grid.circuit is None:
+            feed = entries[:, 0]
+            volts = loss = np.zeros(feed.shape[0])
+        else:
+            loads = self.trap_impedances(grid.circuit, traps, pick)
+            feed, *currents = terminate_entries(*(entries[:, k] for k in range(6)), *loads)
+            resistance = feed[:, grid.wanted].real
+            squares = [_square(current[:, grid.wanted]) for current in currents]
+            across = [s * _square(z[:, grid.wanted]) for s, z in zip(squares, loads, strict=True)]
+            volts = np.sqrt(2 * station.power * (np.maximum(*across) / resistance).max(axis=1))
+            aim = grid.aim - grid.wanted.start
+            heat = sum(s[:, aim] * z[:, grid.aim].real for s, z in zip(squares, loads, strict=True))
+            loss = heat / resistance[:, aim]
+        real, imaginary = feed.real, feed.imag
+        square = imaginary * imaginary
+        reflection = ((real - station.reference) ** 2 + square) / ((real + station.reference) ** 2 + square)
+        dip, least = _dips(grid.frequency, reflection)
+        return Outcome(
+            dip=dip,
+            dip_reflection=least,
+            aim=reflection[:, grid.aim],
+            worst=reflection[:, grid.wanted].max(axis=1),
+            volts=volts,
+            loss=loss,
+            reflection=reflection,
+        )
+
+    @property
+    def solved_lengths(self) -> tuple[str, ...]:
+        """The wires the design leaves to be solved."""
+        lengths = self.design.antenna.lengths
+        return tuple(name for name in WIRES if getattr(lengths, name) is SOLVE)
+
+
+def _part(traps: Traps, pick: np.ndarray) -> Traps:
+    return Traps(
+        inductance=traps.inductance[:, pick], capacitance=traps.capacitance[:, pick], q=traps.q[:, pick]
+    )
+
+
+def _square(value: np.ndarray) -> np.ndarray:
+    return value.real * value.real + value.imag * value.imag
+
+
+def _dips(frequency: np.ndarray, reflection: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+    """Return where each row of squared reflections is least, and how much, by a parabola through three points."""
+    trial = np.arange(reflection.shape[0])
+    at = np.clip(np.argmin(reflection, axis=1), 1, frequency.size - 2)
+    f0, f1, f2 = (frequency[at + k] for k in (-1, 0, 1))
+    g0, g1, g2 = (reflection[trial, at + k] for k in (-1, 0, 1))
+    down, up = (g1 - g0) / (f1 - f0), (g2 - g1) / (f2 - f1)
+    bend = (up - down) / (f2 - f0)
+    bent = bend > 0
+    middle = (f0 + f1) / 2 - down / (2 * np.where(bent, bend, 1.0))
+    dip = np.where(bent, np.clip(middle, f0, f2), np.where(g0 < g2, f0, f2))
+    least = g0 + down * (dip - f0) + bend * (dip - f0) * (dip - f1)
+    return dip, np.maximum(least, 0.0)
