@@ -81,6 +81,7 @@ class _Reader:
 
     def __init__(self) -> None:
         self.faults: list[Fault] = []
+        self.places: dict[int, str] = {}
 
     def fault(self, where: str, code: str, value: object = "", limit: str = "", help: str = "") -> None:
         self.faults.append(Fault(where=where, code=code, value=str(value), limit=limit, help=help))
@@ -102,11 +103,23 @@ class _Reader:
                 self.fault(visible(key), "unknown_key", key, help=help)
         title = self.text("title", table.get("title", "box"))
         found = {name: self.rows(kind, table.get(name, [])) for name, kind in TABLES.items()}
+        self.thin_formers(found)
         box = Box(title=title or "box", **found)
         if box.is_empty and not self.faults:
             help = "list what there is, for example [[formers]] with name, diameter and length below it"
             self.fault("", "the box is empty", help=help)
         return box
+
+    def thin_formers(self, found: dict[str, tuple[Any, ...]]) -> None:
+        """Drop formers on which no wire or cable of the box could lie, and name each."""
+        thinnest = min([w.diameter for w in found["wires"]] + [c.outside for c in found["cables"]], default=0)
+        for former in found["formers"]:
+            if former.diameter <= thinnest:
+                row = self.places[id(former)]
+                limit = f"the thinnest wire, {units.show(thinnest, units.Dimension.LENGTH)}"
+                shown = units.show(former.diameter, units.Dimension.LENGTH)
+                self.fault(f"{row}: diameter", "not_above", shown, limit)
+        found["formers"] = tuple(f for f in found["formers"] if f.diameter > thinnest)
 
     def rows(self, kind: type, given: Any) -> tuple[Any, ...]:
         """Return the good entries of one list."""
@@ -141,6 +154,7 @@ class _Reader:
         if len(self.faults) > before:
             return None
         entry = kind(**values)
+        self.places[id(entry)] = where
         self.together(entry, where)
         return entry if len(self.faults) == before else None
 

@@ -22,6 +22,8 @@ Design, build and tune a two-band trap dipole, in one terminal.
   trapdesk figures FILE         everything computed for a design
   trapdesk sheet FILE           the build sheet, plain text for paper
   trapdesk tank NAME=VALUE ...  a parallel resonator from any few of its values
+  trapdesk rummage FILE         the best traps a box of parts can build for it
+  trapdesk choices FILE         other trap resonances, other L to C: what for what
   trapdesk readings FILE [...]  what was measured of a trap, and how to measure it
   trapdesk touchstone FILE      the computed feed impedance as a Touchstone file
 
@@ -156,6 +158,9 @@ def _parser_of(verb: str) -> Parser:
     if verb == "touchstone":
         parser.add_argument("--band", choices=("lower", "upper"), help="this band alone; both unless said")
         parser.add_argument("--out", metavar="NAME", help="write a file that is not there yet")
+    if verb == "rummage":
+        parser.add_argument("--box", metavar="FILE", help="what there is; the ready box unless said")
+        parser.add_argument("--rows", type=int, default=20, metavar="N", help="at most so many rows")
     parser.add_argument("--json", action="store_true", help="print JSON: SI units, the unit in the key")
     return parser
 
@@ -269,6 +274,49 @@ def touchstone(options: argparse.Namespace) -> str:
     return ""
 
 
+MOST_ROWS = 200
+
+
+def rummage(options: argparse.Namespace) -> str:
+    """Return the best traps a box can build for a design; what is wrong in the box is said after them."""
+    if not 1 <= options.rows <= MOST_ROWS:
+        raise BadInput(Fault("--rows", "outside the range", str(options.rows), f"1 to {MOST_ROWS}"))
+    from .. import box_read, store
+    from ..services import rummage as service
+    from . import json_out, rummage_out
+
+    design, fault = store.find(options.file).design, None
+    try:
+        box = box_read.find_box(options.box or box_read.READY_BOX)
+    except box_read.BoxFault as error:
+        box, fault = error.box, error
+        if box.is_empty:
+            raise
+    found = rummage_out.last(service.rummage(design, box, options.rows))
+    if options.json:
+        text = json_out.text(rummage_out.document(design, box, found))
+    else:
+        text = "\n".join(rummage_out.lines(design, box, found)) + "\n"
+    if fault is None and found.rows:
+        return text
+    # What was found is not lost to a bad entry of the box, nor what is nearest when nothing can be built.
+    _write(text)
+    raise fault or NoAnswer("nothing_to_build", "", {}, "the one part named above, or another design")
+
+
+def choices(options: argparse.Namespace) -> str:
+    """Return what other trap resonances and other ratios of L to C would do, as text or JSON."""
+    from .. import store
+    from ..services import choices as service
+    from . import choices_out, json_out
+
+    design = store.find(options.file).design
+    found = service.choices(design)
+    if options.json:
+        return json_out.text(choices_out.document(design, found))
+    return "\n".join(choices_out.lines(design, found)) + "\n"
+
+
 VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
     "figures": (
         "Print everything computed for a design.",
@@ -280,6 +328,19 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
         "Print the build sheet: what to cut, wind, check and measure, and the hill card.",
         sheet,
         "trapdesk sheet 40-20-vee > sheet.txt",
+        "",
+    ),
+    "rummage": (
+        "Print the best traps a box of parts can build for a design, two of each.",
+        rummage,
+        "trapdesk rummage 40-20-vee --box relief-box --rows 5",
+        '\n\nA box is a TOML file of kind = "box"; relief-box is ready to copy. Ctrl-C keeps\n'
+        "what was found so far.",
+    ),
+    "choices": (
+        "Print what other resonances of the trap and other ratios of L to C would do.",
+        choices,
+        "trapdesk choices 40-20-vee",
         "",
     ),
     "tank": (

@@ -131,6 +131,8 @@ REASONS = {
     "ends_too_low": "the wire that meets the aim reaches the ground",
     "side_shorter_than_its_drop": "a side is shorter than the drop to the height of its ends",
     "coil_resonates_below_by_itself": "the coil alone resonates below the trap's resonance",
+    "nothing_to_build": "the box holds no two equal traps for this design",
+    "no_trap_to_build": "the design has no trap",
     "no_such_coil": "no number of turns on this former makes the coil that is needed",
 }
 """Why there is no answer, by the code of `NoAnswer`."""

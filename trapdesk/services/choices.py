@@ -1,0 +1,130 @@
+"""Where to put the trap's resonance and how large L over C: what is given up for what."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..design import Design
+from ..engine.resonator import impedance
+from ..engine.stress import Stress, stress
+from ..errors import NoAnswer
+from .port_grid import BandSummary, summary
+from .response import Response
+from .rummage import wanted_resonance
+from .solve import hang
+from .trap import build
+
+BELOW, ABOVE, PLACES = 0.05, 0.02, 12
+"""How far from the upper aim the trap's resonance is tried, relative, and at how many places."""
+RATIOS = np.geomspace(1 / 4, 4, 9)
+"""By what L over C is multiplied."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class Tank:
+    """A trap of which only resonance, capacitance and Q matter; its resistance goes with the root of f."""
+
+    resonance: float
+    capacitance: float
+    q: float
+
+    @property
+    def inductance(self) -> float:
+        """Inductance, in H."""
+        return 1 / ((2 * np.pi * self.resonance) ** 2 * self.capacitance)
+
+    def _circuit(self, frequency: np.ndarray) -> tuple[float, float, np.ndarray]:
+        reactance = 2 * np.pi * self.resonance * self.inductance
+        return self.inductance, self.capacitance, reactance / self.q * np.sqrt(frequency / self.resonance)
+
+    def impedance(self, frequency: np.ndarray) -> np.ndarray:
+        """Return the impedance at frequencies, in ohm."""
+        return impedance(frequency, *self._circuit(frequency))
+
+    def stress(self, frequency: np.ndarray, current: np.ndarray) -> Stress:
+        """Return what it bears for an rms current through it."""
+        return stress(frequency, *self._circuit(frequency), current=current)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Point:
+    """One choice with what it does; without wires that meet the aims, `bands` is empty and `why` the code."""
+
+    resonance: float
+    inductance: float
+    capacitance: float
+    present: bool
+    inner: float | None = None
+    end: float | None = None
+    bands: dict[str, BandSummary]
+    why: str = ""
+
+    @property
+    def loss(self) -> float:
+        """Share of the power both traps take, added over the bands."""
+        return sum(b.loss for b in self.bands.values())
+
+    @property
+    def volts(self) -> float:
+        """Worst peak voltage of one trap on any band, in V."""
+        return max(b.peak_voltage for b in self.bands.values())
+
+
+@dataclass(frozen=True, kw_only=True)
+class Choices:
+    """Both curves, each with the present choice in it; the trap's Q is held at the present `q`."""
+
+    by_resonance: tuple[Point, ...]
+    by_ratio: tuple[Point, ...]
+    q: float
+
+
+def choices(design: Design) -> Choices:
+    """Return what other resonances and other ratios of L to C would do, with the real wire and ground.
+
+    NoAnswer without a trap. A length that is set stays as it is.
+    """
+    present = wanted_resonance(design)
+    built = build(design.antenna.trap)
+    bands = dict(design.bands.items())
+    aim = bands.get("upper", design.bands.lower).target if "upper" in bands else present
+    places = np.linspace(aim * (1 - BELOW), aim * (1 + ABOVE), PLACES)
+    # A place as good as the present one only repeats it.
+    places = [f for f in places if abs(f / present - 1) > 1e-3]
+    c = built.capacitance
+    return Choices(
+        by_resonance=tuple(
+            _point(design, Tank(resonance=float(f), capacitance=c, q=built.q), f == present)
+            for f in sorted([*places, present])
+        ),
+        by_ratio=tuple(
+            _point(design, Tank(resonance=present, capacitance=float(c / np.sqrt(r)), q=built.q), r == 1.0)
+            for r in RATIOS
+        ),
+        q=built.q,
+    )
+
+
+def _point(design: Design, tank: Tank, present: bool) -> Point:
+    """Return one choice: wires solved, both bands looked at."""
+    of = {
+        "resonance": tank.resonance,
+        "inductance": tank.inductance,
+        "capacitance": tank.capacitance,
+        "present": present,
+    }
+    try:
+        wire = hang(design, tank)
+    except NoAnswer as error:
+        return Point(**of, bands={}, why=error.code)
+    return Point(
+        **of,
+        inner=wire.inner,
+        end=wire.end,
+        bands={
+            role: summary(design, role, Response(wire, band, tank, design.station.reference))
+            for role, band in design.bands.items()
+        },
+    )

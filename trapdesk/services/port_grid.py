@@ -1,0 +1,206 @@
+"""A wire of any lengths within a range, from a few that were solved: what a search over traps needs.
+
+The port matrices vary smoothly with both wire lengths. Solved on a small grid of them and interpolated, they
+give wire lengths and all band figures of any trap at the cost of small algebra.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+
+from ..design import MODES, Design, Lengths
+from ..engine.ports import Ports, chebyshev_nodes, polynomial_weights, terminate
+from ..engine.wire import Wire, plan, solve_ports
+from ..errors import NoAnswer
+from ..fields import SOLVE
+from .response import MARGIN, Response, behave
+from .solve import WANTED_POINTS, hang
+
+NODES_INNER, NODES_END, NODES_BAND = 3, 4, 3
+STEPS = 20
+CLOSE = 1e-6
+"""Part of a length to which it is found."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class BandSummary:
+    """What a trap makes of one band; `width` is None above the SWR limit, `loss` the share of both traps.
+
+    `peak_voltage` [V] and `average_watts` [W] are the worst of one trap in the wanted part.
+    """
+
+    role: str
+    name: str
+    loss: float
+    width: float | None
+    wanted: float
+    worst_swr: float
+    dip: float
+    resonance: float | None
+    peak_voltage: float
+    average_watts: float
+    sky: float
+
+
+@dataclass(frozen=True, kw_only=True)
+class Outcome:
+    """An antenna with one trap: the wires that meet the aims, and each band."""
+
+    inner: float
+    end: float
+    bands: dict[str, BandSummary]
+
+
+def with_lengths(design: Design, inner: float | Any, end: float | Any) -> Design:
+    """Return the design with other wire lengths."""
+    lengths: Lengths = replace(design.antenna.lengths, inner=inner, end=end)
+    return replace(design, antenna=replace(design.antenna, lengths=lengths))
+
+
+class PortGrid:
+    """Port matrices over inner and end wire for each band of a design."""
+
+    def __init__(self, design: Design, traps: list[Any]) -> None:
+        """Solve a grid that holds the wires of all these traps; NoAnswer when one of them has none."""
+        self.design, self.bands = design, dict(design.bands.items())
+        hung = [hang(design, trap) for trap in traps]
+        lengths = design.antenna.lengths
+        self.inner = _nodes([w.inner for w in hung], lengths.inner is SOLVE, NODES_INNER)
+        self.end = _nodes([w.end for w in hung], lengths.end is SOLVE, NODES_END)
+        self.guess = (float(np.mean(self.inner)), float(np.mean(self.end)))
+        self._trap = traps[0]
+        self._to_inner, self._to_end = (
+            np.linalg.inv(np.array([_powers(n, x) for x in n])) for n in (self.inner, self.end)
+        )
+        self._solve()
+
+    def make(self, inner: float, end: float) -> Wire:
+        """Return the wire hung with these lengths."""
+        return hang(with_lengths(self.design, inner, end), self._trap)
+
+    def _solve(self) -> None:
+        middle = self.make(*self.guess)
+        wires = [[self.make(i, e) for e in self.end] for i in self.inner]
+        self._nodes, self._matrices, self._at_aim = {}, {}, {}
+        for role, band in self.bands.items():
+            nodes = chebyshev_nodes(band.low * (1 - MARGIN), band.high * (1 + MARGIN), NODES_BAND)
+            counts = plan(middle, band.target)
+            solved = [[solve_ports(w, nodes, counts, band.target, odd=False) for w in row] for row in wires]
+            parts = [
+                np.array([[getattr(p, name) for p in row] for row in solved])
+                for name in ("impedance", "loss", "sky")
+            ]
+            weights = polynomial_weights(nodes, np.array([band.target]))[0]
+            self._nodes[role], self._matrices[role] = nodes, parts
+            self._at_aim[role] = np.einsum("f,iefpq->iepq", weights, parts[0])
+
+    def _weights(self, inner: float, end: float) -> np.ndarray:
+        one = _powers(self.inner, inner) @ self._to_inner
+        return np.outer(one, _powers(self.end, end) @ self._to_end)
+
+    def ports(self, role: str, inner: float, end: float) -> Ports:
+        """Return a band's port matrices for these lengths."""
+        weights = self._weights(inner, end)
+        return Ports(self._nodes[role], *(np.tensordot(weights, m, 2) for m in self._matrices[role]))
+
+    def lengths(self, trap: Any) -> tuple[float, float]:
+        """Return the wires that meet the aims with a trap; NoAnswer when they leave the grid."""
+        given = self.design.antenna.lengths
+        unknown = [n for n, v in enumerate((given.inner, given.end)) if v is SOLVE]
+        if not unknown:
+            return self.guess
+        roles = [("upper", "lower")[n] if "upper" in self.bands else "lower" for n in unknown]
+        loads = {r: trap.impedance(np.array([self.bands[r].target]))[0] for r in roles}
+        x = np.array(self.guess)
+
+        def miss(at: np.ndarray) -> np.ndarray:
+            weights = self._weights(*at)
+            ports = (np.tensordot(weights, self._at_aim[r], 2) for r in roles)
+            return np.array(
+                [terminate(z, loads[r]).impedance.imag for z, r in zip(ports, roles, strict=True)]
+            )
+
+        spans = [np.ptp(n) if n.size > 1 else 0.0 for n in (self.inner, self.end)]
+        now, columns = miss(x), []
+        for n in unknown:
+            step = np.zeros(2)
+            step[n] = 1e-4 * x[n]
+            columns.append((miss(x + step) - now) / step[n])
+        slopes = np.column_stack(columns)
+        most = np.array([spans[n] / 2 for n in unknown])
+        for _ in range(STEPS):
+            move = np.linalg.solve(slopes, -now)
+            move = move / max(1.0, float(np.max(np.abs(move) / most)))
+            x[unknown] += move
+            if np.all(np.abs(move) < CLOSE * x[unknown]):
+                break
+            new = miss(x)
+            # Broyden's update keeps the slopes right along the step just made.
+            slopes = slopes + np.outer(new - now - slopes @ move, move) / (move @ move)
+            now = new
+        for n, nodes, name in ((0, self.inner, "inner"), (1, self.end, "end")):
+            room = 0.25 * np.ptp(nodes)
+            if n in unknown and not nodes[0] - room <= x[n] <= nodes[-1] + room:
+                raise NoAnswer("aim_not_met", f"antenna.lengths.{name}", {f"{name}_m": float(x[n])})
+        return float(x[0]), float(x[1])
+
+    def outcome(self, trap: Any) -> Outcome:
+        """Return what the antenna does with a trap."""
+        inner, end = self.lengths(trap)
+        wire = self.make(inner, end)
+        return Outcome(
+            inner=inner,
+            end=end,
+            bands={
+                role: summary(self.design, role, Response(wire, band, trap, self._reference, ports))
+                for role, band in self.bands.items()
+                for ports in (self.ports(role, inner, end),)
+            },
+        )
+
+    @property
+    def _reference(self) -> float:
+        return self.design.station.reference
+
+
+def summary(design: Design, role: str, response: Response) -> BandSummary:
+    """Return a band in a few numbers, by the same rules as the full figures."""
+    band, station = response.band, design.station
+    wanted = behave(
+        response.ports.at(np.append(np.linspace(*band.wanted, WANTED_POINTS), band.target)),
+        response.trap,
+        station.reference,
+        station.power,
+    )
+    usable = response.usable(station.swr_limit)
+    return BandSummary(
+        role=role,
+        name=band.name,
+        loss=float(wanted.trap[-1]),
+        width=None if usable is None else usable[1] - usable[0],
+        wanted=band.wanted[1] - band.wanted[0],
+        worst_swr=float(wanted.swr[:-1].max()),
+        dip=response.dip[0],
+        resonance=response.resonance,
+        peak_voltage=float(wanted.stress.peak_voltage.max()),
+        average_watts=float(wanted.stress.total_power.max()) * MODES[station.mode].mean,
+        sky=float(wanted.sky[-1]),
+    )
+
+
+def _powers(nodes: np.ndarray, at: float) -> np.ndarray:
+    """Return the powers of a place among nodes, brought to the order of one."""
+    low, high = nodes[0], nodes[-1]
+    return ((at - low) / (high - low) if nodes.size > 1 else 0.0) ** np.arange(nodes.size)
+
+
+def _nodes(lengths: list[float], solved: bool, count: int) -> np.ndarray:
+    """Return where to solve over a length, with a little room; a length that is set needs one place."""
+    if not solved:
+        return np.array(lengths[:1])
+    low, high = min(lengths), max(lengths)
+    room = 0.02 * (high - low) + 0.002 * low
+    return chebyshev_nodes(low - room, high + room, count)
