@@ -10,8 +10,9 @@ from tests.cases import reference
 from trapdesk.engine import matching, nearest
 from trapdesk.engine.arms import Kind, Problem
 from trapdesk.engine.boxes import Limits, limits
-from trapdesk.engine.ladder import carried, input_impedance, reflection, swr
+from trapdesk.engine.ladder import carried, input_impedance
 from trapdesk.engine.networks import NETWORKS, ladder_of, match
+from trapdesk.engine.reflection import reflection, swr
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=60)
 THREE = [name for name, network in NETWORKS.items() if len(network.arms) == 3]
@@ -198,6 +199,17 @@ def test_what_is_short_and_by_how_much():
     hopeless = nearest.best_setting(other, problem, limits(other, (0.0, 1e-3), (0.0, 1e-6)))
     assert not hopeless.matched and hopeless.short_arm == -1
     assert hopeless.swr == pytest.approx(40.0, rel=1e-6)
+
+
+def test_nearest_setting_with_an_arm_at_nothing():
+    # By hand: through two coils an inductive load of 60 ohm only gets worse, so the one in series is left at
+    # nothing and the one across at infinity, and the SWR is the load's own.
+    network, load = NETWORKS["l-source-coils"], 60.0 + 100j
+    problem = Problem(frequency=3.6e6, load=load)
+    got = nearest.best_setting(network, problem, Limits(low=(4e-6, 0.0), high=(np.inf, 3e-6)))
+    assert not got.matched
+    assert got.values.tolist() == [np.inf, 0.0]
+    assert got.swr == pytest.approx(swr(load), rel=1e-12)
 
 
 def test_widening_the_limit_named_short_gives_a_match():

@@ -10,8 +10,9 @@ from tests.cases import published, reference
 from trapdesk.engine import matching, nearest, networks
 from trapdesk.engine.arms import Kind, LineConstants, Problem
 from trapdesk.engine.boxes import limits
-from trapdesk.engine.ladder import Ladder, Part, Place, carried, input_impedance, swr
+from trapdesk.engine.ladder import Ladder, Part, Place, carried, input_impedance
 from trapdesk.engine.networks import NETWORKS, MatchStatus, ladder_of, match, touchiness, width
+from trapdesk.engine.reflection import swr
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=60)
 L_FORMS = [name for name in NETWORKS if name.startswith("l-")]
@@ -258,6 +259,21 @@ def test_arms_that_drop_out():
         assert any(np.array_equal(v, gone) for v in match(network, problem).values)
         assert seen(network, np.array(gone), problem) == 50.0
         assert len(found(match(network, problem.lossless()).values)) == 1  # a double root counts once
+
+
+@pytest.mark.parametrize("name", ["stub-open", "stub-shorted"])
+def test_stub_at_the_load_that_loss_moves_beyond_it(name):
+    # Conductance 1/50 S at the load: without loss one stub sits there. With loss it would have to sit behind
+    # the load, so the one half a wave before it is taken.
+    load = 1.0 / (1.0 / 50.0 + 0.03j)
+    problem = Problem(frequency=7.1e6, load=load, line=line_at(7.1e6, 0.002, 75.0 - 1j))
+    before, after = (match(NETWORKS[name], p).values for p in (problem.lossless(), problem))
+    half_wave = 0.5 * 0.66 * 299792458.0 / 7.1e6
+    index = int(np.argmin(before[:, 1]))
+    assert before[index, 1] == pytest.approx(0.0, abs=1e-6)
+    assert after[index, 1] == pytest.approx(half_wave, rel=0.02)
+    for values in after:
+        assert seen(NETWORKS[name], values, problem) == pytest.approx(50.0, rel=1e-6)
 
 
 @pytest.mark.parametrize("name", NETWORKS)
