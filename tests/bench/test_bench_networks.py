@@ -6,8 +6,9 @@ from tests.bench.yardstick import ratio, record
 from trapdesk.engine import matching, nearest
 from trapdesk.engine.arms import Problem
 from trapdesk.engine.boxes import limits
-from trapdesk.engine.ladder import carried, swr
+from trapdesk.engine.ladder import carried
 from trapdesk.engine.networks import NETWORKS, ladder_of, touchiness
+from trapdesk.engine.reflection import swr
 
 TUNER = NETWORKS["t-clc"]
 WITHIN = limits(TUNER, coil=(0.1e-6, 30e-6), capacitor=(15e-12, 250e-12))

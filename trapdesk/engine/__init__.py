@@ -19,6 +19,7 @@ The files, each one subject:
 ``ports``             that wire over frequency: port matrices, traps as terminations, interpolation
 ``ground``            the half-space: Sommerfeld kernels, reflection coefficients, field in the air
 ``sky``               what a wire sends to the sky: the far field summed over all directions
+``reflection``        reflection and standing wave ratio of an impedance against the wanted one
 ``ladder``            series and shunt branches and stretches of line: cascade, loss, what each part carries
 ``arms``              coils and capacitors as immittances: the algebra under the closed-form matches
 ``networks``          the registry of matching networks and the closed-form match of each; width, touchiness

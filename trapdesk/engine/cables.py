@@ -11,6 +11,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from .ground import C0
 from .limits import at_least, positive
+from .reflection import swr
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
@@ -138,39 +139,6 @@ def propagation(line: Line, frequency: ArrayLike) -> tuple[ComplexArray, Complex
     series = 2.0 * alpha_c * z0 + 1j * w * line.inductance
     across = 2.0 * alpha_d / z0 + 1j * w * line.capacitance
     return np.sqrt(series * across), np.sqrt(series / across)
-
-
-def swr(impedance: ArrayLike, reference: ArrayLike) -> FloatArray:
-    """Return the standing wave ratio of impedances against a real reference; infinite without resistance.
-
-    Parameters
-    ----------
-    impedance : complex or array
-        Impedance. [ohm], finite, resistance >= 0
-    reference : float or array
-        Reference. [ohm], > 0
-
-    Returns
-    -------
-    float array
-        Standing wave ratio, of the broadcast shape. [-]
-
-    Raises
-    ------
-    ValueError
-        If any value is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    Derived here: (1 + |r|) / (1 - |r|) of r = (Z - Z0) / (Z + Z0), its denominator free of cancellation by
-    |Z + Z0|^2 - |Z - Z0|^2 = 4 Z0 Re Z.
-    """
-    positive(reference=reference)
-    z, r0 = np.asarray(impedance, complex), np.asarray(reference, float)
-    if not (np.isfinite(z).all() and (z.real >= 0.0).all()):
-        raise ValueError("impedance must be finite with a resistance of at least 0")
-    with np.errstate(divide="ignore"):
-        return (np.abs(z + r0) + np.abs(z - r0)) ** 2 / (4.0 * r0 * z.real)
 
 
 def _check(propagation_constant: ComplexArray, line_impedance: ComplexArray, length: ArrayLike) -> None:

@@ -23,10 +23,11 @@ from .boxes import (
     search_range,
     values_of,
 )
-from .ladder import input_impedance, swr, swr_of_reflection
+from .ladder import input_impedance
 from .limits import positive
 from .matching import least_sizes
 from .networks import Network, ladder_of
+from .reflection import swr, swr_of_reflection
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]

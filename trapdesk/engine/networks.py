@@ -8,8 +8,9 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from .arms import ROUNDING, Arm, Chain, Kind, Problem, chain, pinned, sizes_to_values, two_arms
-from .ladder import Ladder, Part, Place, input_impedance, swr
+from .ladder import Ladder, Part, Place, input_impedance
 from .limits import positive
+from .reflection import swr
 from .roots import bracketed, newton
 
 FloatArray = NDArray[np.float64]

@@ -1,0 +1,97 @@
+"""Reflection and standing wave ratio of an impedance against the wanted one."""
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+FloatArray = NDArray[np.float64]
+ComplexArray = NDArray[np.complex128]
+
+
+def _wanted(wanted: ArrayLike, name: str) -> ComplexArray:
+    z = np.asarray(wanted, dtype=complex)
+    if not (np.isfinite(z).all() and (z.real > 0.0).all()):
+        raise ValueError(f"{name} must be finite and its resistance above 0")
+    return z
+
+
+def reflection(impedance: ArrayLike, reference: ArrayLike = 50.0) -> FloatArray:
+    """Return the magnitude of the reflection of an impedance against the wanted one.
+
+    Parameters
+    ----------
+    impedance : complex or array
+        What the source sees. [ohm]
+    reference : complex or array
+        What it should see. [ohm], real part > 0
+
+    Returns
+    -------
+    float array
+        |Z - Z_w| / |Z + Z_w*|: zero where the wanted impedance is met, its square the share of the available
+        power that is refused. [-]
+
+    Raises
+    ------
+    ValueError
+        If the reference is outside the limits above; NaN counts as outside.
+
+    Source
+    ------
+    Definition.
+    """
+    z, z_w = np.asarray(impedance, dtype=complex), _wanted(reference, "reference")
+    return (np.abs(z - z_w) / np.abs(z + z_w.conj()))[()]
+
+
+def swr(impedance: ArrayLike, reference: ArrayLike = 50.0) -> FloatArray:
+    """Return the standing wave ratio of impedances against the wanted one; infinite without resistance.
+
+    Parameters
+    ----------
+    impedance : complex or array
+        What the source sees. [ohm], finite, resistance >= 0
+    reference : complex or array
+        What it should see. [ohm], real part > 0
+
+    Returns
+    -------
+    float array
+        Standing wave ratio, of the broadcast shape. [-]
+
+    Raises
+    ------
+    ValueError
+        If any value is outside the limits above; NaN counts as outside.
+
+    Source
+    ------
+    Derived here: (1 + r) / (1 - r) of `reflection`, its denominator free of cancellation by
+    |Z + Z_w*|^2 - |Z - Z_w|^2 = 4 Re Z_w Re Z.
+    """
+    z, z_w = np.asarray(impedance, dtype=complex), _wanted(reference, "reference")
+    if not (np.isfinite(z).all() and (z.real >= 0.0).all()):
+        raise ValueError("impedance must be finite with a resistance of at least 0")
+    with np.errstate(divide="ignore"):
+        return ((np.abs(z + z_w.conj()) + np.abs(z - z_w)) ** 2 / (4.0 * z_w.real * z.real))[()]
+
+
+def swr_of_reflection(magnitude: ArrayLike) -> FloatArray:
+    """Return the standing wave ratio that belongs to the magnitude of a reflection.
+
+    Parameters
+    ----------
+    magnitude : float or array
+        Magnitude of the reflection coefficient. [-], 0 to 1
+
+    Returns
+    -------
+    float array
+        Standing wave ratio, infinite at 1. [-]
+
+    Source
+    ------
+    Definition.
+    """
+    r = np.asarray(magnitude, dtype=float)
+    with np.errstate(divide="ignore"):
+        return ((1.0 + r) / (1.0 - r))[()]
