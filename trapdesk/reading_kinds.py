@@ -181,7 +181,8 @@ KINDS: dict[str, Kind] = {
         takes="frequency",
         hows={"": Doubt(relative=1e-4)},
         options={"load": _LOAD},
-        advice="As trap.low, going up from the largest voltage until it is 0.707 of it.",
+        advice="As trap.low, going up from the largest voltage until it is 0.707 of it, with nothing moved in"
+        " between: the width is a small difference of two large numbers.",
         example="trap.low=14.01MHz,trap.high=14.09MHz",
     ),
     "trap.ratio": Kind(
@@ -294,7 +295,8 @@ KINDS: dict[str, Kind] = {
         takes="file",
         hows={"": Doubt(relative=1e-5)},
         options={"end": Option(choices=("open", "short"), help="how its far end was left")},
-        advice="With the antenna taken off and the far end left open, swept at the radio's end.",
+        advice="With the antenna taken off and the far end left open or shorted, swept at the radio's end over"
+        " both bands: it tells the line's length, loss and impedance.",
         example="line.sweep=line.s1p,end=open",
     ),
 }

@@ -122,7 +122,7 @@ def _kind(head: str) -> tuple[str, str, Kind]:
         return subject, what, KINDS[f"{group}.{what}"]
     names = [f"{s}.{key.partition('.')[2]}" for s, g in GROUPS.items() for key in KINDS if key.startswith(g)]
     own = [n for n in names if n.startswith(f"{subject}.")]
-    near = difflib.get_close_matches(head.lower()[:40], names, n=1)
+    near = difflib.get_close_matches(head.lower()[:40], names, n=1, cutoff=0.8)
     help = f"did you mean {near[0]}?" if near else f"known are {', '.join(own or names)}"
     _refuse("", "unknown_key", head, help)
 

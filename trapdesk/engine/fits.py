@@ -399,11 +399,14 @@ def _fitted(
     holds = structure <= STRUCTURE or alike * math.sqrt(left.size) < UNLIKELY
     # Neighbours that err alike count for fewer points than there are.
     fewer = (1.0 + min(max(alike, 0.0), 0.99)) / (1.0 - min(max(alike, 0.0), 0.99))
-    values = named(at)
     step = 1e-6
     shifts = step * np.eye(at.size)
-    sides = [(named(at + d), named(at - d)) for d in shifts]
-    slopes = {name: np.array([(a[name] - b[name]) / (2 * step) for a, b in sides]) for name in values}
+    with np.errstate(over="ignore", invalid="ignore", divide="ignore"):
+        values = named(at)
+        if not all(np.isfinite(value) for value in values.values()):
+            raise ValueError("sweep must show a resonance that the model can settle on")
+        sides = [(named(at + d), named(at - d)) for d in shifts]
+        slopes = {name: np.array([(a[name] - b[name]) / (2 * step) for a, b in sides]) for name in values}
     return Fitted(
         frequency=f,
         data=data,

@@ -40,7 +40,9 @@ UNSAID_FIXTURE, UNSAID_LEAD = 3e-11, 1e-8
 FARTHEST, FARTHEST_PART = 0.25, 3.0
 """Resonance this far from the computed one, or a part off by this factor, belongs to something else. [1]"""
 PRIOR = 0.2
-"""Doubt of the computed L over C that the correction for a probe rests on, relative. An estimate. [1]"""
+"""Doubt of the computed parts that the correction for a probe rests on, relative. An estimate. [1]"""
+LONE = 0.2
+"""Part of a resonance that may rest on the computed parts, and no more. [1]"""
 VAGUE = 0.3
 """A value less sure than this counts as not told. [1]"""
 LEAST_METER_INDUCTANCE = 1e-6
@@ -105,7 +107,7 @@ def find(design: Design, readings: Sequence[Reading], sweeps: Mapping[str, Sweep
     reactance = math.exp((at[0] - at[1]) / 2)
     resonance = values["resonance"].value if values["resonance"] else None
     q, loaded, told = quality(readings, pair, fitted, resonance, reactance, remarks)
-    _check_parts(values, computed)
+    _check_parts(values, computed, fitted)
     names = {name: tuple(dict.fromkeys(_tellers(name, seen))) for name, v in values.items() if v}
     return PartsFound(
         **values,
@@ -147,8 +149,6 @@ def _seen(reading: Reading, computed: BuiltTrap, remarks: list[Remark]) -> list[
         if added:
             doubt = reading.option_doubt("added_doubt", ADDED_DOUBT).of(added)
             sigma = math.hypot(sigma, 0.5 * doubt / total)
-        # What a probe takes off rests on the trap's own L over C, known only as it was computed.
-        sigma = math.hypot(sigma, 0.25 * PRIOR * probe / total)
         without = value * math.sqrt(total / computed.capacitance)
         _hold_to_band(name, without, computed.resonance)
         return [
@@ -308,7 +308,8 @@ def _least_squares(seen: Sequence[_Seen], start: np.ndarray) -> tuple[np.ndarray
             break
     if seen:
         slope = np.array([s.slope(at) for s in seen])
-        covariance = np.linalg.pinv(slope.T @ slope, rcond=1e-18, hermitian=True)
+        inverse = np.linalg.pinv(slope, rcond=1e-9)
+        covariance = inverse @ inverse.T
     left = np.array([s.residual(at) for s in seen])
     return at, covariance, float(left @ left), len(seen) - int(rank)
 
@@ -334,11 +335,11 @@ def _values(seen: Sequence[_Seen], at: np.ndarray, covariance: np.ndarray) -> di
     for name, direction in _DIRECTIONS.items():
         d = np.array(direction)
         fit = np.linalg.lstsq(rows.T, d, rcond=1e-9)[0]
-        # A probe turns the direction of a lone resonance a little; its doubt already counts for that.
-        off = np.linalg.norm(rows.T @ fit - d)
-        if off > (0.2 if name == "resonance" and rows.shape[0] == 1 else 1e-6):
+        # A probe turns the direction of a lone resonance a little: that much rests on the computed parts.
+        open_part = float(np.linalg.norm(rows.T @ fit - d))
+        if open_part > (LONE if name == "resonance" else 1e-6):
             continue
-        sigma = math.sqrt(float(d @ covariance @ d)) if rows.shape[0] > 1 else seen[0].sigma
+        sigma = math.hypot(math.sqrt(float(d @ covariance @ d)), PRIOR * open_part)
         if sigma < VAGUE:
             value = math.exp(float(d @ at)) / (2 * math.pi if name == "resonance" else 1.0)
             found[name] = Estimate(value=value, sigma=sigma * value)
@@ -351,17 +352,27 @@ def _tellers(name: str, seen: Sequence[_Seen]) -> list[str]:
     return [s.name for s in seen] if name != "resonance" or not alone else alone
 
 
-def _check_parts(values: Mapping[str, Estimate | None], computed: BuiltTrap) -> None:
+def _check_parts(
+    values: Mapping[str, Estimate | None], computed: BuiltTrap, fitted: Sequence[SweepFit]
+) -> None:
     """Refuse parts that are off by a factor: a slipped unit, or another trap."""
     for name, one in values.items():
-        if one is not None:
-            _hold_to_part(f"antenna.trap.{name}", one.value, getattr(computed, name), _SUFFIXES[name])
+        if one is None:
+            continue
+        # Small angles taken for degrees that were radians scale the parts by as much, and still fit.
+        factor = abs(math.log(one.value / getattr(computed, name)))
+        swept = any(each.used and each.reading.how != "loop" for each in fitted)
+        slipped = swept and abs(factor - math.log(math.degrees(1.0))) < math.log(1.5)
+        suspects = ("angles_in_radians",) if slipped else ()
+        _hold_to_part(f"antenna.trap.{name}", one.value, getattr(computed, name), _SUFFIXES[name], suspects)
 
 
 _SUFFIXES = {"resonance": "hz", "inductance": "h", "capacitance": "f"}
 
 
-def _hold_to_part(where: str, value: float, computed: float, suffix: str) -> None:
+def _hold_to_part(
+    where: str, value: float, computed: float, suffix: str, suspects: tuple[str, ...] = ()
+) -> None:
     if abs(math.log(value / computed)) > math.log(FARTHEST_PART):
         numbers = {f"read_{suffix}": value, f"computed_{suffix}": computed}
-        raise ReadingRefused("another_part", where, numbers)
+        raise ReadingRefused("another_part", where, numbers, suspects)
