@@ -99,7 +99,7 @@ def test_several_capacitors_and_a_meter_make_it_surer():
 
 
 def test_low_frequency_meter_reads_more_than_radio_frequency_has():
-    wound = BUILT.coil_series(np.array([100e3, BUILT.resonance]))[0]
+    wound = BUILT.circuit(np.array([100e3, BUILT.resonance]))[0]
     answer = found(f"coil.l={float(wound[0])!r}H", f"trap.f0={BUILT.resonance!r}Hz")
     assert wound[0] > 1.005 * wound[1]
     assert answer.inductance.value == pytest.approx(wound[1], rel=1e-9)

@@ -295,8 +295,8 @@ KINDS: dict[str, Kind] = {
         takes="file",
         hows={"": Doubt(relative=1e-5)},
         options={"end": Option(choices=("open", "short"), help="how its far end was left")},
-        advice="With the antenna taken off and the far end left open or shorted, swept at the radio's end over"
-        " both bands: it tells the line's length, loss and impedance.",
+        advice="With the antenna taken off and the far end left open or shorted, swept at the radio's end"
+        " over both bands: it tells the line's length, loss and impedance.",
         example="line.sweep=line.s1p,end=open",
     ),
 }

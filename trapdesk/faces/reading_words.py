@@ -18,6 +18,10 @@ REFUSALS: dict[str, tuple[str, str]] = {
     ),
     "no_reflection": ("the file holds no reflection with its phase", "export S11, or R and X"),
     "no_transmission": ("the file holds no transmission with its phase", "export both ports, as .s2p"),
+    "cable_is_both": (
+        "a trap of cable is coil and capacitor in one: a meter at low frequency reads neither",
+        "measure its resonance, with and without a known capacitor across",
+    ),
     "probe_is_more_than_all": ("probe= is more than the {read_f} that was read", "a probe has 1 to 2 pF"),
     "meter_near_resonance": (
         "a coil joined to its capacitor cannot be read at {at_hz}",

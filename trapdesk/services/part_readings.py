@@ -46,6 +46,8 @@ LONE = 0.2
 VAGUE = 0.3
 """A value less sure than this counts as not told. [1]"""
 LEAST_METER_INDUCTANCE = 1e-6
+CABLE = "cable"
+"""The kind of coil that is its own capacitor: neither can be read without the other."""
 RESONANCES = ("trap.f0", "trap.f0_with")
 
 
@@ -93,6 +95,10 @@ def find(design: Design, readings: Sequence[Reading], sweeps: Mapping[str, Sweep
     if design.antenna.trap is None:
         raise ReadingRefused("no_trap_in_the_design", "antenna.trap")
     computed = build(replace(design.antenna.trap, **_unmeasured(design)))
+    if design.antenna.trap.coil.kind == CABLE:
+        for reading in readings:
+            if reading.subject in ("coil", "capacitor"):
+                raise ReadingRefused("cable_is_both", reading.name)
     remarks: list[Remark] = []
     fitted = tuple(_fit(reading, sweeps, remarks) for reading in readings if reading.what == "sweep")
     for one in fitted:
@@ -189,7 +195,7 @@ def _low_frequency(
             typed=value,
             sigma=math.hypot(sigma, GIVEN_COIL_DOUBT),
         )
-    there, here = (float(computed.coil_series(np.array([f]))[0][0]) for f in (computed.resonance, at))
+    there, here = (float(computed.circuit(np.array([f]))[0][0]) for f in (computed.resonance, at))
     drop = there / here
     remarks.append(Remark(code="brought_to_radio_frequency", where=reading.name, value=1 - drop))
     # The step between the frequencies is computed: half of it is a fair doubt of it.
