@@ -148,7 +148,7 @@ def _soil_kernels(
 
     Pairs of one height sum differ in distance only: a polynomial in the distance then serves them all.
     """
-    reach, low = float(distance.max()), float(height_sum.min())
+    reach, low, high = float(distance.max()), float(height_sum.min()), float(height_sum.max())
     spread = None
     if np.all(height_sum == low):
         count = 14 + math.ceil(1.5 * reach / low + 3 * reach * frequency.max() / C0)
@@ -162,17 +162,24 @@ def _soil_kernels(
     for i, f in enumerate(frequency):
         k0 = 2 * math.pi * f / C0
         n2 = complex(ground.index_squared(np.float64(f)))
-        k, u0, measure = _path(k0, n2, reach, low)
+        k, u0, measure, waves = _path(k0, n2, reach, low, high)
         u1 = np.sqrt(k * k - n2 * k0 * k0)  # principal root: Re >= 0, and Im > 0 where Re vanishes
         te = (n2 - 1) * (k0 / (u0 + u1)) ** 2
         w = 2 * (n2 - 1) / ((u0 + u1) * (n2 * u0 + u1))
         tm = (n2 * u0 - u1) / (n2 * u0 + u1)
         # measure is k dk / u0, finite where the path passes u0 = 0.
-        spectra = np.stack([te, tm + u0 * u0 * w, te - u0 * u0 * w]) * measure
+        spectra = np.stack([te, tm + u0 * u0 * w, te - u0 * u0 * w, -w * k * u0]) * measure
         j0, j1 = bessel_j01(k[:, None] * distance)
-        decay = np.exp(-u0[:, None] * height_sum)
-        kernels[:3, i] = spectra @ (decay * j0)
-        kernels[3, i] = (-w * k * u0 * measure) @ (decay * j1)
+        wave = np.exp(-u0[:waves, None] * height_sum)
+        kernels[:3, i] = spectra[:3, :waves] @ (wave * j0[:waves])
+        kernels[3, i] = spectra[3, :waves] @ (wave * j1[:waves])
+        # Above k0 everything but the spectra is real, and half the work.
+        decay = np.exp(-u0[waves:, None].real * height_sum)
+        parts = spectra[:, waves:]
+        parts = np.concatenate([parts.real, parts.imag])
+        level, bend = parts[[0, 1, 2, 4, 5, 6]] @ (decay * j0[waves:]), parts[[3, 7]] @ (decay * j1[waves:])
+        kernels[:3, i] += level[:3] + 1j * level[3:]
+        kernels[3, i] += bend[0] + 1j * bend[1]
     if spread is not None:
         kernels = kernels @ spread.T
     along, upright, charge, cross = kernels
@@ -239,8 +246,10 @@ def gauss_legendre(count: int) -> tuple[np.ndarray, np.ndarray]:
     return _RULES[count]
 
 
-def _path(k0: float, n2: complex, reach: float, low: float) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
-    """Return the nodes k, the decay u0 and the weight k dk / u0 along the real axis.
+def _path(
+    k0: float, n2: complex, reach: float, low: float, high: float
+) -> tuple[np.ndarray, np.ndarray, np.ndarray, int]:
+    """Return the nodes k, the decay u0, the weight k dk / u0 along the real axis, and how many lie below k0.
 
     Below k0 the path is k0 sin t, above it k0 cosh v: both take the root singularity at k0 away. It is broken
     at the soil's own root, and close to k0 over soil so dense that the reflection turns there.
@@ -255,7 +264,8 @@ def _path(k0: float, n2: complex, reach: float, low: float) -> tuple[np.ndarray,
     if above[-1] + 0.1 < kink < 0.95 * last:
         above.append(kink)
     above.append(last)
-    t, wt = _pieces(below, [10 + 0.55 * k0 * reach * (to - from_) for from_, to in pairwise(below)])
+    turns = 0.55 * k0 * (reach + 0.9 * high)
+    t, wt = _pieces(below, [10 + turns * (to - from_) for from_, to in pairwise(below)])
     most = TAIL * reach / low
     phases = [
         min(k0 * reach * (math.cosh(to) - math.cosh(from_)), (to - from_) * most)
@@ -266,7 +276,7 @@ def _path(k0: float, n2: complex, reach: float, low: float) -> tuple[np.ndarray,
     k = k0 * np.concatenate([np.sin(t), np.cosh(v)])
     u0 = k0 * np.concatenate([1j * np.cos(t), np.sinh(v)])
     measure = k0 * np.concatenate([-1j * np.sin(t) * wt, np.cosh(v) * wv])
-    return k, u0, measure
+    return k, u0, measure, t.size
 
 
 def _pieces(stops: list[float], counts: list[float]) -> tuple[np.ndarray, np.ndarray]:

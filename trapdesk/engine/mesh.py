@@ -7,6 +7,7 @@ but the last; all currents and coordinates count outward from the feed point.
 from __future__ import annotations
 
 import math
+from copy import copy
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -228,7 +229,8 @@ class SideMesh:
         self.starts = vertices[:-1]
         x, w = gauss_legendre(2)
         self.values, self.slopes = self._quadrature(x, w)
-        self.points = self._position((nodes[:-1, None] + h[:, None] * x).ravel(), np.repeat(self.piece, 2))
+        self._distances = (nodes[:-1, None] + h[:, None] * x).ravel()
+        self.points = self._position(self._distances, np.repeat(self.piece, 2))
         x, w = gauss_legendre(4)
         values, slopes = self._quadrature(x, w)
         s = (nodes[:-1, None] + h[:, None] * x).ravel()
@@ -240,6 +242,26 @@ class SideMesh:
     def _position(self, s: np.ndarray, piece: np.ndarray) -> np.ndarray:
         """Return points (n, 3) at distances s along the side, on given pieces."""
         return self.starts[piece] + (s - self.side.corners[piece])[:, None] * self.directions[piece]
+
+    def mirrored(self, side: Side) -> SideMesh:
+        """Return the same mesh on the mirror image of the side.
+
+        Parameters
+        ----------
+        side : Side
+            The mirror image. [-]
+
+        Returns
+        -------
+        SideMesh
+            It shares all that does not know where the side is. [-]
+        """
+        image = copy(self)
+        vertices = np.array(side.vertices)
+        image.side, image.starts = side, vertices[:-1]
+        image.directions = np.diff(vertices, axis=0) / np.diff(side.corners)[:, None]
+        image.points = image._position(self._distances, np.repeat(self.piece, 2))
+        return image
 
     @property
     def slices(self) -> list[slice]:

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
+import math
 from functools import cache
 
 import numpy as np
 
 from .ground import C0, ETA0, Ground, GroundKind, fresnel, gauss_legendre
 from .mesh import Samples
-
-ELEVATIONS, QUARTER_TURNS = 24, 8
 
 
 class Sky:
@@ -21,8 +20,14 @@ class Sky:
     def __init__(
         self, ground: Ground, frequency: np.ndarray, samples: list[Samples], *, mirrored: bool
     ) -> None:
-        cosine, phi, self._weight = _directions(ground.kind is GroundKind.SPACE, mirrored)
         position = np.concatenate([s.position for s in samples])
+        # A long or a high wire has many lobes: their number goes with its size in wavelengths.
+        wave = 2 * np.pi * float(frequency.max()) / C0
+        wide, tall = wave * np.ptp(position[:, :2], axis=0).max() / 2, wave * position[:, 2].max()
+        if ground.kind is GroundKind.SPACE:
+            tall = wave * np.ptp(position[:, 2])
+        ups, turns = 8 * math.ceil((16 + 0.75 * tall + wide) / 8), 4 * math.ceil((6 + 0.6 * wide) / 4)
+        cosine, phi, self._weight = _directions(ground.kind is GroundKind.SPACE, mirrored, ups, turns)
         direction = np.concatenate([s.direction for s in samples])
         sine, east, north = np.sqrt(1 - cosine**2), np.sin(phi), np.cos(phi)
         level = np.outer(sine * east, position[:, 0]) + np.outer(sine * north, position[:, 1])
@@ -74,16 +79,18 @@ class Sky:
 
 
 @cache
-def _directions(all_around: bool, quarter: bool) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+def _directions(
+    all_around: bool, quarter: bool, ups: int, turns: int
+) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     """Return cosines from the vertical, angles from +y towards +x, and solid angles of the directions."""
-    up, weight_up = gauss_legendre(ELEVATIONS)
+    up, weight_up = gauss_legendre(ups)
     if all_around:
         up, weight_up = 2 * up - 1, 2 * weight_up
     if quarter:
-        turn, weight_turn = gauss_legendre(QUARTER_TURNS)
+        turn, weight_turn = gauss_legendre(turns)
         turn, weight_turn = turn * np.pi / 2, weight_turn * 2 * np.pi
     else:
-        count = 4 * QUARTER_TURNS
+        count = 4 * turns
         turn, weight_turn = np.arange(count) * 2 * np.pi / count, np.full(count, 2 * np.pi / count)
     cosine, phi = (a.ravel() for a in np.meshgrid(up, turn, indexing="ij"))
     return cosine, phi, np.outer(weight_up, weight_turn).ravel()

@@ -156,11 +156,13 @@ def solve_ports(
     samples = [Samples(side, float(frequency.max()), _reflects(wire), C0) for side in sides]
     kernels = _sampled(wire.ground, frequency, samples, mirrored=True)
     sky = Sky(wire.ground, frequency, samples, mirrored=True) if power else None
+    internal = internal_impedance(frequency, 2 * wire.radius, wire.resistivity)[:, None, None]
 
     def on(counts: Plan) -> Ports:
         nodes = nodes_of(sides[0], counts, C0 / mesh_frequency)
-        meshes = [SideMesh(side, nodes, s) for side, s in zip(sides, samples, strict=True)]
-        return _solve_halves(wire, frequency, meshes, kernels, sky, odd=odd)
+        mesh = SideMesh(sides[0], nodes, samples[0])
+        meshes = [mesh, mesh.mirrored(sides[1])]
+        return _solve_halves(wire, frequency, meshes, kernels, internal, sky, odd=odd)
 
     coarse = on(counts)
     return on(tuple(2 * n for n in counts)).extrapolated(coarse) if extrapolate else coarse
@@ -213,13 +215,14 @@ def solve_whole(
     samples = [Samples(side, float(frequency.max()), _reflects(wire), C0) for side in wire.sides]
     kernels = _sampled(wire.ground, frequency, samples)
     sky = Sky(wire.ground, frequency, samples, mirrored=False) if power else None
+    internal = internal_impedance(frequency, 2 * wire.radius, wire.resistivity)[:, None, None]
 
     def on(counts: tuple[Plan, ...]) -> Ports:
         meshes = [
             SideMesh(side, nodes_of(side, n, C0 / mesh_frequency), s)
             for side, n, s in zip(wire.sides, counts, samples, strict=True)
         ]
-        return _solve_all(wire, frequency, meshes, kernels, sky)
+        return _solve_all(wire, frequency, meshes, kernels, internal, sky)
 
     coarse = on(counts)
     finer = tuple(tuple(2 * n for n in side) for side in counts)
@@ -306,19 +309,24 @@ def _block(pair: Pair, kernels: tuple[np.ndarray, np.ndarray], frequency: np.nda
     )
 
 
-def _own(wire: Wire | BentWire, mesh: SideMesh, frequency: np.ndarray) -> np.ndarray:
+def _own(wire: Wire | BentWire, mesh: SideMesh, frequency: np.ndarray, internal: np.ndarray) -> np.ndarray:
     """Return what a side's conductor and coating add to its block."""
-    w = 2 * np.pi * frequency[:, None, None]
-    internal = internal_impedance(frequency, 2 * wire.radius, wire.resistivity)[:, None, None]
-    return internal * mesh.mass - wire.elastance / (1j * w) * mesh.stiffness
+    return internal * mesh.mass - wire.elastance / (2j * np.pi * frequency[:, None, None]) * mesh.stiffness
 
 
 def _solve_halves(
-    wire: Wire, frequency: np.ndarray, meshes: list[SideMesh], kernels: Kernels, sky: Sky | None, *, odd: bool
+    wire: Wire,
+    frequency: np.ndarray,
+    meshes: list[SideMesh],
+    kernels: Kernels,
+    internal: np.ndarray,
+    sky: Sky | None,
+    *,
+    odd: bool,
 ) -> Ports:
     """Solve the even and the odd half of a symmetric wire on one mesh."""
     one, other = meshes
-    same = _block(Pair(one, one, wire.radius), kernels[0], frequency) + _own(wire, one, frequency)
+    same = _block(Pair(one, one, wire.radius), kernels[0], frequency) + _own(wire, one, frequency, internal)
     mirror = _block(Pair(one, other, wire.radius, mirrored=True), kernels[1], frequency)
     feed = np.eye(one.count)[:, :1]
     columns = feed if one.trap is None else np.column_stack([feed, one.trap])
@@ -333,7 +341,7 @@ def _solve_halves(
     return Ports(
         frequency,
         impedance,
-        _full([2 * _loss(wire, frequency, one, c) for c, _ in halves]),
+        _full([2 * _loss(internal, one, c) for c, _ in halves]),
         # Outward on the other side an even current counts against the one on this side.
         _full(
             [
@@ -345,12 +353,17 @@ def _solve_halves(
 
 
 def _solve_all(
-    wire: BentWire, frequency: np.ndarray, meshes: list[SideMesh], kernels: Kernels, sky: Sky | None
+    wire: BentWire,
+    frequency: np.ndarray,
+    meshes: list[SideMesh],
+    kernels: Kernels,
+    internal: np.ndarray,
+    sky: Sky | None,
 ) -> Ports:
     """Solve both sides of any wire at once on one mesh."""
     one, other = meshes
     first, second = (
-        _block(Pair(m, m, wire.radius), k, frequency) + _own(wire, m, frequency)
+        _block(Pair(m, m, wire.radius), k, frequency) + _own(wire, m, frequency, internal)
         for m, k in ((one, kernels[0]), (other, kernels[2]))
     )
     across = _block(Pair(one, other, wire.radius), kernels[1], frequency)
@@ -371,14 +384,13 @@ def _solve_all(
     outward = join @ currents
     halves = outward[:, : one.count], outward[:, one.count :]
     moments = [m.project.T @ c for m, c in zip(meshes, halves, strict=True)]
-    loss = sum(_loss(wire, frequency, m, c) for m, c in zip(meshes, halves, strict=True))
+    loss = sum(_loss(internal, m, c) for m, c in zip(meshes, halves, strict=True))
     return Ports(frequency, impedance, loss, sky.form(np.concatenate(moments, axis=1)))
 
 
-def _loss(wire: Wire | BentWire, frequency: np.ndarray, mesh: SideMesh, currents: np.ndarray) -> np.ndarray:
+def _loss(internal: np.ndarray, mesh: SideMesh, currents: np.ndarray) -> np.ndarray:
     """Return the power lost in a side's conductor as a quadratic form (f, p, p) in the port currents."""
-    per_metre = internal_impedance(frequency, 2 * wire.radius, wire.resistivity).real[:, None, None]
-    return per_metre * (np.conj(currents.transpose(0, 2, 1)) @ mesh.mass @ currents)
+    return internal.real * (np.conj(currents.transpose(0, 2, 1)) @ mesh.mass @ currents)
 
 
 def _open(matrix: np.ndarray, columns: np.ndarray) -> tuple[np.ndarray, np.ndarray]:

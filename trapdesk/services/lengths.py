@@ -8,10 +8,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..design import Design
 from ..engine.ground import C0, GroundKind
 from ..engine.ports import terminate
 from ..engine.wire import Plan, Wire, plan, solve_ports
 from ..errors import NoAnswer
+from ..fields import SOLVE
 
 LEAST_END_HEIGHT = 0.5
 """The ground kernels are held to be exact down to here. [m]"""
@@ -49,11 +51,25 @@ def reactances(
     return terminate(ports.impedance, *loads).impedance.imag
 
 
-def find_lengths(search: Search, guess: tuple[float, float | None]) -> tuple[float, float | None]:
+def solved_for(design: Design) -> dict[str, str]:
+    """Return the band role whose aim each solved wire has to meet, by wire."""
+    lengths, bands = design.antenna.lengths, dict(design.bands.items())
+    role_of = {"inner": "upper", "end": "lower"}
+    trap = design.antenna.trap is not None
+    return {
+        name: role if trap and role in bands else "lower"
+        for name, role in role_of.items()
+        if getattr(lengths, name) is SOLVE
+    }
+
+
+def find_lengths(
+    search: Search, guess: tuple[float, float | None], *, thorough: bool = False
+) -> tuple[float, float | None]:
     """Return inner and end wire for which the feed point is resonant at every aim.
 
-    Newton steps on a coarse mesh, then one on the fine mesh's limit with the same slopes. NoAnswer says which
-    aim is missed and how near it came.
+    Newton steps on a coarse mesh, then one on the fine mesh's limit with the same slopes; `thorough` takes as
+    many there as it needs. NoAnswer says which aim is missed and how near it came.
     """
     aims = np.array(search.aims)
     known = (search.inner, search.end) if search.has_trap else (search.inner,)
@@ -82,15 +98,26 @@ def find_lengths(search: Search, guess: tuple[float, float | None]) -> tuple[flo
             x, miss = moved, new
             slopes = _slopes(search, x, counts, aims, miss)
             continue
-        # Broyden's update keeps the slopes right along the step just made.
-        slopes = slopes + np.outer(new - miss - slopes @ move, move) / (move @ move)
+        slopes = _updated(slopes, move, new - miss)
         x, miss = moved, new
     else:
         raise _missed(search, best[1], best[2])
-    fine = reactances(_hang(search, x), counts, aims, search.trap, extrapolate=True)
-    x = x + _bounded(np.linalg.solve(slopes, -fine), x)
-    _hang(search, x)
+    miss = reactances(_hang(search, x), counts, aims, search.trap, extrapolate=True)
+    for _ in range(STEPS if thorough else 1):
+        if np.abs(miss).max() < NEAR_ENOUGH:
+            break
+        move = _bounded(np.linalg.solve(slopes, -miss), x)
+        x = x + move
+        wire = _hang(search, x)
+        if thorough:
+            new = reactances(wire, counts, aims, search.trap, extrapolate=True)
+            slopes, miss = _updated(slopes, move, new - miss), new
     return _lengths(search, x)
+
+
+def _updated(slopes: np.ndarray, move: np.ndarray, change: np.ndarray) -> np.ndarray:
+    """Return slopes that are right along the step just made (Broyden's update)."""
+    return slopes + np.outer(change - slopes @ move, move) / (move @ move)
 
 
 def _lengths(search: Search, x: np.ndarray) -> tuple[float, float | None]:
@@ -153,7 +180,7 @@ def first_guess(
     if trap is None:
         return quarter, None
     if inner is None:
-        inner = 0.237 * C0 / aims["upper"]
+        inner = 0.237 * C0 / aims["upper"] if "upper" in aims else 0.6 * quarter
     wave = 60 * (math.log(2 * quarter / radius) - 1)
     theta = 2 * math.pi * lower / C0 / 0.95
     reactance = float(trap(np.array([lower])).imag[0])
