@@ -62,7 +62,7 @@ class Doubts:
     coil: float | None = _relative(
         "coil doubt",
         "Inductance of the coil against what was computed or given. Unset: 0.5 % wound by these formulas,"
-        " 1.5 % given.",
+        " that of the core on a ring, 1.5 % else.",
         default=None,
         example="1.5 %",
     )
@@ -81,7 +81,7 @@ class Doubts:
     former_meaning: Meaning = _meaning("former", Meaning.TWO_SIGMA)
     capacitor: float | None = _relative(
         "capacitor doubt",
-        "Tolerance of the capacitor, as printed on it. Unset: 5 %.",
+        "Tolerance of the capacitor. Unset: what is printed on it, else 5 %.",
         default=None,
         example="5 %",
     )
@@ -117,44 +117,54 @@ class Doubts:
         default=0.002,
     )
     tuning_meaning: Meaning = _meaning("trap reading", Meaning.TWO_SIGMA)
-    sealing_least: float = _relative(
-        "sealing, least", "Tape, shrink or potting lowers a trap by at least this much.", default=0.005
+    sealing_least: float | None = _relative(
+        "sealing, least",
+        "Closing a trap lowers it by at least this much. Unset: half of what the trap's weather says.",
+        default=None,
+        example="0.5 %",
     )
-    sealing_most: float = _relative(
-        "sealing, most", "Tape, shrink or potting lowers a trap by at most this much.", default=0.02
+    sealing_most: float | None = _relative(
+        "sealing, most",
+        "Closing a trap lowers it by at most this much. Unset: twice what the trap's weather says.",
+        default=None,
+        example="2 %",
     )
-    rain_least: float = _relative("rain, least", "Rain lowers a trap by at least this much.", default=0.005)
-    rain_most: float = _relative("rain, most", "Rain lowers a trap by at most this much.", default=0.01)
-    coldest: float = quantity(
-        "temperature",
-        "coldest",
-        "Lowest temperature in use; values of parts hold at 20 degC.",
-        default=0.0,
-        low=-80.0,
-        high=80.0,
+    rain_least: float | None = _relative(
+        "rain, least",
+        "Rain lowers a trap by at least this much. Unset: two thirds of what the trap's weather says.",
+        default=None,
+        example="0.5 %",
     )
-    warmest: float = quantity(
-        "temperature",
-        "warmest",
-        "Highest temperature in use; the same as the coldest switches it off.",
-        default=35.0,
-        low=-80.0,
-        high=80.0,
+    rain_most: float | None = _relative(
+        "rain, most",
+        "Rain lowers a trap by at most this much. Unset: four thirds of what the trap's weather says.",
+        default=None,
+        example="1 %",
     )
-    coil_drift: float = quantity(
+    temperature: float = quantity(
+        "ratio",
+        "temperature range",
+        "How much of the range from the cold to the sun counts; what it was built at is the middle.",
+        default=1.0,
+        low=0.0,
+        high=1.0,
+    )
+    coil_drift: float | None = quantity(
         "temperature_coefficient",
         "coil drift",
-        "Temperature coefficient of the inductance.",
-        default=4e-5,
+        "Change of the inductance with temperature. Unset: that of the part, else 40 ppm/K.",
+        default=None,
+        optional=True,
         low=-2e-3,
         high=2e-3,
         example="40 ppm/K",
     )
-    capacitor_drift: float = quantity(
+    capacitor_drift: float | None = quantity(
         "temperature_coefficient",
         "capacitor drift",
-        "Temperature coefficient of the capacitance, by its marking.",
-        default=3e-5,
+        "Change of the capacitance with temperature. Unset: that of the part, else 30 ppm/K.",
+        default=None,
+        optional=True,
         low=-6e-3,
         high=6e-3,
         example="30 ppm/K",

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -12,12 +13,19 @@ from ..design import Design, Shape
 from ..doubts import SIGMAS, Meaning, farthest
 from ..engine.ground import SOILS, UNKNOWN_SOIL_FROM, Ground, GroundKind
 from ..engine.sampling import normal_probability, normal_quantile, uniform
-from ..parts import Solenoid
+from ..parts import GivenCoil, Solenoid
+from .capacitors import drift_of, tolerance_of
+from .trap import BuiltTrap
 
-COIL = {"given": 0.015, "solenoid": 0.005}
-"""How far a coil's inductance may be off, by its kind: as made, and as computed. [1]"""
-CAPACITOR = {"given": 0.05}
-Q = {"given": 0.15, "solenoid": 1 / 3}
+COIL, WOUND = 0.015, 0.005
+"""How far an inductance may be off: of a coil as made, and of one wound as computed. [1]"""
+CAPACITOR = 0.05
+"""Tolerance of a capacitor nobody says anything of. [1], common practice, no source"""
+Q = 0.15
+DRIFTS = (4e-5, 3e-5)
+"""Drift of coil and capacitor where the parts do not say. [1/K], common practice, no source"""
+SEALING, RAIN = (0.5, 2.0), (2 / 3, 4 / 3)
+"""Least and most of what sealing and rain do, over what the trap's weather says. [1]"""
 SAG = {Shape.FLAT: 0.4, Shape.VEE: 0.2}
 """Most a side sags, by shape. [m], an estimate, no source"""
 TWO_THIRDS = 2 / 3
@@ -101,52 +109,29 @@ Draws = Mapping[str, np.ndarray]
 """Values of every quantity: (trials,), or (trials, 2) of a pair."""
 
 
-def beliefs(design: Design) -> dict[str, Belief]:
+def beliefs(design: Design, trap: BuiltTrap | None) -> dict[str, Belief]:
     """Return what varies in a design, by quantity; what does not apply to it is left out."""
-    found = {name: belief for name, belief in _all(design) if belief.active}
+    found = {name: belief for name, belief in _all(design, trap) if belief.active}
     return {name: found[name] for name in QUANTITIES if name in found}
 
 
-def _all(design: Design) -> Iterator[tuple[str, Belief]]:
-    doubts, trap = design.doubts, design.antenna.trap
-
-    def about(name: str, size: float | None = None, **more: object) -> Belief:
-        meaning = Meaning(getattr(doubts, f"{name}_meaning"))
-        if more.get("pair") and meaning is Meaning.MEASURED:
-            more["alike"] = 0.0
-        return Belief(size=getattr(doubts, name) if size is None else size, meaning=meaning, **more)  # type: ignore[arg-type]
-
-    def both(low: float, high: float, **more: object) -> Belief:
-        return Belief(low=low, high=high, between=True, **more)  # type: ignore[arg-type]
-
-    pair = {"pair": True, "alike": doubts.alike}
+def _all(design: Design, trap: BuiltTrap | None) -> Iterator[tuple[str, Belief]]:
     if trap is not None:
-        wound = isinstance(trap.coil, Solenoid)
-        size = COIL[trap.coil.kind] if doubts.coil is None else doubts.coil
-        yield "coil", about("coil", size, pair=True, alike=1.0 if wound else doubts.alike)
-        if wound:
-            yield "turns", Belief(size=doubts.turns, **pair)
-            yield "pitch", about("pitch", **pair)
-            yield "former", about("former", **pair)
-            yield "self_capacitance", about("self_capacitance", **pair)
-        size = CAPACITOR[trap.capacitor.kind] if doubts.capacitor is None else doubts.capacitor
-        yield "capacitor", about("capacitor", size, **pair)
-        yield "q", about("q", Q[trap.coil.kind] if doubts.q is None else doubts.q, **pair)
-        yield "tuning", about("tuning", **pair)
-        yield "sealing", both(doubts.sealing_least, doubts.sealing_most, **pair)
-        yield "rain", both(doubts.rain_least, doubts.rain_most, **pair)
-        if doubts.coil_drift or doubts.capacitor_drift:
-            yield "temperature", both(doubts.coldest, doubts.warmest)
-            yield "weather", both(doubts.coldest, doubts.warmest)
+        yield from _of_trap(design, trap)
+    doubts = design.doubts
+
+    def about(name: str, **more: Any) -> Belief:
+        return Belief(size=getattr(doubts, name), meaning=Meaning(getattr(doubts, f"{name}_meaning")), **more)
+
     for wire in ("inner",) if trap is None else ("inner", "end"):
         yield f"marking_{wire}", about("marking")
-        yield f"fastening_{wire}", about("fastening", pair=True)
-    yield "creep", both(0.0, doubts.creep_most)
+        yield f"fastening_{wire}", about("fastening", pair=True, alike=0.0)
+    yield "creep", _between(0.0, doubts.creep_most)
     ground = GroundKind(design.site.ground)
     if ground is not GroundKind.SPACE:
         yield "height", about("height")
         sag = SAG[Shape(design.site.shape)] if doubts.sag_most is None else doubts.sag_most
-        yield "sag", both(0.0, sag)
+        yield "sag", _between(0.0, sag)
     if ground is GroundKind.SOIL:
         yield "soil", about("soil")
     if design.antenna.wire.coating:
@@ -154,6 +139,75 @@ def _all(design: Design) -> Iterator[tuple[str, Belief]]:
     yield "site", about("site")
     for role, _ in design.bands.items():
         yield f"aim_{role}", about("aim")
+
+
+def _between(low: float, high: float, **more: Any) -> Belief:
+    return Belief(low=low, high=high, between=True, **more)
+
+
+def _of_trap(design: Design, trap: BuiltTrap) -> Iterator[tuple[str, Belief]]:
+    doubts, part = design.doubts, design.antenna.trap
+    assert part is not None
+
+    def about(name: str, size: float, alike: float = doubts.alike) -> Belief:
+        meaning = Meaning(getattr(doubts, f"{name}_meaning"))
+        # What was measured of one part says nothing of the other.
+        alike = 0.0 if meaning is Meaning.MEASURED else alike
+        return Belief(size=size, meaning=meaning, pair=True, alike=alike)
+
+    coil = part.coil
+    pair = {"pair": True, "alike": doubts.alike}
+    if doubts.coil is not None:
+        size = doubts.coil
+    elif isinstance(coil, GivenCoil):
+        size = COIL
+    else:
+        size = WOUND if isinstance(coil, Solenoid) else max(trap.doubt, WOUND)
+    yield "coil", about("coil", size, doubts.alike if isinstance(coil, GivenCoil) else 1.0)
+    if trap.wound is not None:
+        yield "turns", Belief(size=doubts.turns, **pair)
+        if isinstance(coil, Solenoid):
+            yield "pitch", about("pitch", doubts.pitch)
+            yield "former", about("former", doubts.former)
+        if trap.capacitance > trap.fitted:
+            yield "self_capacitance", about("self_capacitance", doubts.self_capacitance)
+    printed = None
+    if doubts.capacitor is None and trap.capacitor is not None:
+        printed = tolerance_of(trap.capacitor, trap.resonance)
+    if printed is not None and printed[0] != printed[1]:
+        yield "capacitor", _between(-printed[0], printed[1], **pair)
+    else:
+        size = printed[0] if printed else CAPACITOR if doubts.capacitor is None else doubts.capacitor
+        yield "capacitor", about("capacitor", size)
+    reached = max(abs(factor - 1) for factor in trap.q_factors) or Q
+    yield "q", about("q", min(reached, 0.9) if doubts.q is None else doubts.q)
+    yield "tuning", about("tuning", doubts.tuning)
+    weather = part.weather
+    for name, shift, factors in (
+        ("sealing", weather.sealing_shift, SEALING),
+        ("rain", weather.rain_shift, RAIN),
+    ):
+        ends = [getattr(doubts, f"{name}_{end}") for end in ("least", "most")]
+        low, high = (f * shift if end is None else end for end, f in zip(ends, factors, strict=True))
+        yield name, _between(min(low, high), high, **pair)
+    for name in ("temperature", "weather"):
+        cold, hot = (doubts.temperature * (at - weather.built_at) for at in (weather.in_cold, weather.in_sun))
+        yield name, _between(cold, hot)
+
+
+def drifts(design: Design, trap: BuiltTrap) -> tuple[float, float]:
+    """Return the drift of inductance and capacitance with temperature, in 1/K."""
+    doubts = design.doubts
+    of_coil, of_capacitor = DRIFTS
+    if trap.coil is not None and trap.coil.drift is not None:
+        of_coil = trap.coil.drift
+    if trap.capacitor is not None:
+        drift, _, known = drift_of(trap.capacitor, trap.resonance)
+        of_capacitor = drift if known else of_capacitor
+    return (
+        of_coil if doubts.coil_drift is None else doubts.coil_drift,
+        of_capacitor if doubts.capacitor_drift is None else doubts.capacitor_drift,
+    )
 
 
 def draw(varying: Mapping[str, Belief], seed: int, begin: int, count: int) -> dict[str, np.ndarray]:

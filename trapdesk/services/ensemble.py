@@ -6,28 +6,29 @@ import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from functools import cached_property
+from typing import Any
 
 import numpy as np
 
 from ..design import Design
 from ..engine import resonator
 from ..engine.coil_formulas import sheet_inductance
-from ..engine.ports import terminate_entries
+from ..engine.ports import terminate, terminate_entries
 from ..fields import SOLVE
-from ..parts import Solenoid
-from .beliefs import TWO_THIRDS, Belief, Draws, beliefs, draw
+from ..parts import CableCoil, Toroid
+from .beliefs import TWO_THIRDS, Belief, Draws, beliefs, draw, drifts
+from .feed import Path, path_of
 from .figures import Figures
 from .nearby import Nearby, Table
 from .response import MARGIN
 from .trap import BuiltTrap, build
+from .tuning import TunerSetting
 
 POINTS = 41
 """Frequencies a band is looked at: in its wanted part, and over the band and its margins."""
 WANTED_POINTS = 9
 CHUNK = 200
 """Trials that are worked on at once: their arrays stay near the processor."""
-REFERENCE_TEMPERATURE = 20.0
-"""Where the values of parts hold. [degC]"""
 AIM_STEPS = 8
 NEAR_ENOUGH = 0.3
 """Reactance at the aim that counts as none. [ohm]"""
@@ -95,26 +96,29 @@ def reflection_of(swr: float) -> float:
 
 @dataclass(frozen=True, kw_only=True)
 class Circuit:
-    """The nominal trap at some frequencies: inductance, coil resistance, and capacitor resistance times capacitance.
-
-    An inductance that is the same everywhere is one number; the last is None of a lossless capacitor.
-    """
+    """The nominal trap at some frequencies: inductance and resistance beside its capacitance, all loss in it."""
 
     frequency: np.ndarray
     inductance: np.ndarray
     resistance: np.ndarray
-    lost: np.ndarray | None
 
 
 @dataclass(frozen=True, kw_only=True)
 class _Grid:
-    """A band's frequencies, where among them the wanted part and the aim are, and what stands there."""
+    """A band's frequencies, where among them the wanted part and the aim are, and what stands there.
+
+    `aim_wanted` is the aim's place in the wanted part, `watts` what arrives at the feed point over that part
+    of the antenna as designed; `setting` is how a tuner stands.
+    """
 
     frequency: np.ndarray
-    wanted: slice
+    wanted: slice | np.ndarray
     aim: int
+    aim_wanted: int
     table: Table
     circuit: Circuit | None
+    watts: np.ndarray | float
+    setting: TunerSetting | None
 
 
 class Ensemble:
@@ -123,9 +127,10 @@ class Ensemble:
     def __init__(self, figures: Figures, varying: Mapping[str, Belief] | None = None) -> None:
         design = figures.design
         self.design, self.figures = design, figures
-        self.varying = dict(beliefs(design) if varying is None else varying)
         self.trap: BuiltTrap | None = build(design.antenna.trap) if design.antenna.trap is not None else None
+        self.varying = dict(beliefs(design, self.trap) if varying is None else varying)
         self.wire = figures.wire
+        self.path: Path | None = path_of(design.station)
         self.roles = [role for role, _ in design.bands.items()]
         self._bands = dict(design.bands.items())
         ranges = {
@@ -137,7 +142,7 @@ class Ensemble:
     def with_beliefs(self, varying: Mapping[str, Belief]) -> Ensemble:
         """Return the ensemble with other beliefs on the same ports."""
         other = object.__new__(Ensemble)
-        cached = ("_slopes", "_aim_tables", "_aim_circuits", "exponents")
+        cached = ("_slopes", "_aim_tables", "_aim_circuits", "exponents", "_drifts")
         other.__dict__.update({name: value for name, value in self.__dict__.items() if name not in cached})
         other.varying = dict(varying)
         return other
@@ -165,35 +170,50 @@ class Ensemble:
     def _grid(self, role: str) -> _Grid:
         band = self._bands[role]
         low, high = band.low * (1 - MARGIN), band.high * (1 + MARGIN)
-        begin, end = band.wanted
-        wanted = np.unique(np.append(np.linspace(begin, end, WANTED_POINTS - 1), band.target))
-        rest = POINTS - wanted.size
+        segments = band.segments_wanted
+        each = max(3, (WANTED_POINTS - 1) // len(segments))
+        parts = [np.linspace(*segment, each) for segment in segments]
+        wanted = np.unique(np.concatenate([*parts, [band.target]]))
+        begin, end = wanted[0], wanted[-1]
+        rest = max(POINTS - wanted.size, 8)
         below = round(rest * (begin - low) / (begin - low + high - end))
-        frequency = np.concatenate(
-            [
-                np.linspace(low, begin, below, endpoint=False),
-                wanted,
-                np.linspace(end, high, rest - below + 1)[1:],
-            ]
-        )
+        outer = np.linspace(low, begin, below, endpoint=False), np.linspace(end, high, rest - below + 1)[1:]
+        frequency = np.concatenate([outer[0], wanted, outer[1]])
+        aim = int(np.argmin(np.abs(frequency - band.target)))
+        judged = [aim, *(i for i, f in enumerate(frequency) if any(a <= f <= b for a, b in segments))]
+        picked = np.unique(judged)
+        # A slice where one does: it takes no copy.
+        one_piece = picked[-1] - picked[0] + 1 == picked.size
         return _Grid(
             frequency=frequency,
-            wanted=slice(below, below + wanted.size),
-            aim=int(np.argmin(np.abs(frequency - band.target))),
+            wanted=slice(picked[0], picked[-1] + 1) if one_piece else picked,
+            aim=aim,
+            aim_wanted=int(np.searchsorted(picked, aim)),
             table=self.nearby.table(role, frequency),
             circuit=self._circuit(frequency),
+            **self._fed(role, frequency[picked]),
         )
+
+    def _fed(self, role: str, frequency: np.ndarray) -> dict[str, Any]:
+        """Return how a tuner stands and what arrives at the feed point of the antenna as designed."""
+        if self.path is None:
+            return {"watts": self.design.station.power, "setting": None}
+        ports = self.figures.ports[role].at(frequency)
+        loads = () if self.trap is None else (self.trap.impedance(frequency),)
+        feed = terminate(ports.impedance, *loads).impedance
+        setting = self.path.set_at(self._bands[role].target, self.figures.bands[role].aim_impedance)
+        return {"watts": self.path.passage(frequency, feed).arriving, "setting": setting}
 
     def _circuit(self, frequency: np.ndarray) -> Circuit | None:
         if self.trap is None:
             return None
-        inductance, capacitance, resistance, esr = self.trap.circuit(frequency)
-        same = float(np.ptp(inductance)) == 0.0
+        # Whatever the trap is made of, beside its capacitance there is a coil that makes up its impedance.
+        w = 2 * np.pi * frequency
+        coil = 1 / (1 / self.trap.impedance(frequency) - 1j * w * self.trap.capacitance)
         return Circuit(
             frequency=frequency,
-            inductance=inductance[:1] if same else inductance,
-            resistance=resistance,
-            lost=np.broadcast_to(esr * capacitance, frequency.shape) if np.any(esr) else None,
+            inductance=coil.imag / w,
+            resistance=np.maximum(coil.real, 0.0),
         )
 
     def draws(self, seed: int, begin: int, count: int) -> dict[str, np.ndarray]:
@@ -204,7 +224,7 @@ class Ensemble:
         """Return trials in which nothing varies: ranges at their middle where they are allowed for."""
         found = {}
         for name, belief in self.varying.items():
-            middle = sum(belief.ends) / 2 if name in ("sealing", "temperature", "weather") else 0.0
+            middle = sum(belief.ends) / 2 if name == "sealing" else 0.0
             found[name] = np.full((count, 2) if belief.pair else count, middle)
         return found
 
@@ -216,6 +236,8 @@ class Ensemble:
         wound = self.trap.wound if self.trap is not None else None
         if wound is None:
             return 0.0, 0.0, 0.0
+        if wound.pitch <= 0 or isinstance(self.design.antenna.trap.coil, Toroid):
+            return 2.0, 0.0, 0.0
         given = (wound.diameter, wound.pitch, wound.turns)
 
         def log(diameter: float, pitch: float, turns: float) -> float:
@@ -228,6 +250,11 @@ class Ensemble:
         ]
         return rates[2], rates[1], rates[0]
 
+    @cached_property
+    def _drifts(self) -> tuple[float, float]:
+        assert self.trap is not None
+        return drifts(self.design, self.trap)
+
     def traps(self, draws: Draws, stage: Stage, count: int) -> Traps:
         """Return the traps of trials at a stage."""
         trap, part = self.trap, self.design.antenna.trap
@@ -239,12 +266,14 @@ class Ensemble:
         turns = trap.wound.turns if trap.wound is not None else 1.0
         by_turns, by_pitch, by_diameter = self.exponents
         inductance = np.ones((2, count)) * (1 + of("coil"))
-        if isinstance(part.coil, Solenoid):
-            log = by_turns * np.log1p(of("turns") / turns)
-            log = log + by_pitch * np.log1p(of("pitch")) + by_diameter * np.log1p(of("former"))
-            inductance = inductance * np.exp(log)
+        longer = np.log1p(of("turns") / turns)
+        log = by_turns * longer + by_pitch * np.log1p(of("pitch")) + by_diameter * np.log1p(of("former"))
+        inductance = inductance * np.exp(log)
         own = trap.capacitance - trap.fitted
         capacitance = trap.fitted * (1 + of("capacitor")) + np.zeros((2, count))
+        if isinstance(part.coil, CableCoil):
+            # More turns of cable are more capacitance as well.
+            capacitance = capacitance * np.exp(longer)
         if own:
             low, middle, high = trap.self_capacitance
             x = np.asarray(of("self_capacitance"))
@@ -261,12 +290,11 @@ class Ensemble:
             inductance = trap.capacitance / capacitance / wanted**2
         if stage.sealed and not stage.sealed_first:
             capacitance = capacitance / (1 - sealing) ** 2
-        doubts = self.design.doubts
         weather = "weather" if stage.wet else "temperature"
         if weather in draws:
-            warmer = draws[weather] - REFERENCE_TEMPERATURE
-            inductance = inductance * (1 + doubts.coil_drift * warmer)
-            capacitance = capacitance * (1 + doubts.capacitor_drift * warmer)
+            of_coil, of_capacitor = self._drifts
+            inductance = inductance * (1 + of_coil * draws[weather])
+            capacitance = capacitance * (1 + of_capacitor * draws[weather])
         if stage.wet:
             capacitance = capacitance / (1 - of("rain")) ** 2
         return Traps(inductance=inductance, capacitance=capacitance, q=np.ones((2, count)) * (1 + of("q")))
@@ -289,7 +317,6 @@ class Ensemble:
                     circuit.inductance * factor,
                     capacitance,
                     circuit.resistance * (factor / traps.q[i, pick, None]),
-                    0.0 if circuit.lost is None else circuit.lost / capacitance,
                 )
             ]
         return found
@@ -480,7 +507,7 @@ class Ensemble:
         return found
 
     def _closed(self, role: str, entries: np.ndarray, traps: Traps | None, pick: slice) -> Outcome:
-        grid, station = self.grids[role], self.design.station
+        grid, reference = self.grids[role], self.design.station.reference
         if traps is None or grid.circuit is None:
             feed = entries[:, 0]
             volts = loss = np.zeros(feed.shape[0])
@@ -490,13 +517,13 @@ class Ensemble:
             resistance = feed[:, grid.wanted].real
             squares = [_square(current[:, grid.wanted]) for current in currents]
             across = [s * _square(z[:, grid.wanted]) for s, z in zip(squares, loads, strict=True)]
-            volts = np.sqrt(2 * station.power * (np.maximum(*across) / resistance).max(axis=1))
-            aim = grid.aim - grid.wanted.start
+            volts = np.sqrt((2 * grid.watts * np.maximum(*across) / resistance).max(axis=1))
+            aim = grid.aim_wanted
             heat = sum(s[:, aim] * z[:, grid.aim].real for s, z in zip(squares, loads, strict=True))
             loss = heat / resistance[:, aim]
-        real, imaginary = feed.real, feed.imag
-        square = imaginary * imaginary
-        reflection = ((real - station.reference) ** 2 + square) / ((real + station.reference) ** 2 + square)
+        judged = feed if self.path is None else self.path.judged(grid.frequency, feed, grid.setting)
+        real, square = np.maximum(judged.real, 0.0), judged.imag * judged.imag
+        reflection = ((real - reference) ** 2 + square) / ((real + reference) ** 2 + square)
         dip, least = _dips(grid.frequency, reflection)
         return Outcome(
             dip=dip,

@@ -175,14 +175,17 @@ def run_stage(
     count: int,
     most: Mapping[str, float] | None,
     free: Mapping[str, np.ndarray] | None = None,
+    cut: Mapping[str, float] | None = None,
 ) -> tuple[dict[str, dict[str, Outcome]], dict[str, np.ndarray]]:
     """Return what every band does at each stage, and which trials no wire brought to aim, by stage.
 
-    Stages that share their wires share their ports. `free` is what brings tuned traps to the aims.
+    Stages that share their wires share their ports. `free` is what brings tuned traps to the aims,
+    `cut` how much longer than computed the wires were cut.
     """
     groups: list[tuple[list[Stage], Mapping[str, np.ndarray] | None]] = []
-    cut = [stage for stage in stages if not stage.aimed]
-    groups += [(cut, None)] if cut else []
+    as_cut = [stage for stage in stages if not stage.aimed]
+    longer = None if cut is None else {name: np.full(count, extra) for name, extra in cut.items()}
+    groups += [(as_cut, longer)] if as_cut else []
     unreached = {stage.name: np.zeros(count, bool) for stage in stages}
     for tuned in (True, False):
         aimed = [stage for stage in stages if stage.aimed and stage.tuned is tuned]
@@ -218,10 +221,14 @@ def _joined(pieces: list[Outcome]) -> Outcome:
     return Outcome(**{n: np.concatenate([getattr(piece, n) for piece in pieces]) for n in names})
 
 
-def pilot_change(ensemble: Ensemble, seed: int, trials: int) -> dict[str, np.ndarray]:
-    """Return what would bring the first trials to the aims, traps tuned, however much wire that takes."""
-    count = min(trials, PILOT)
-    return ensemble.to_aim(ensemble.draws(seed, 0, count), STAGES[2], count)
+def pilot_change(ensemble: Ensemble, draws: Mapping[str, np.ndarray], count: int) -> dict[str, np.ndarray]:
+    """Return what would bring trials to the aims, traps tuned, however much wire that takes."""
+    return ensemble.to_aim(draws, STAGES[2], count)
+
+
+def part_of(values: Mapping[str, np.ndarray], begin: int, end: int) -> dict[str, np.ndarray]:
+    """Return some of the trials."""
+    return {name: value[begin:end] for name, value in values.items()}
 
 
 def allowances(ensemble: Ensemble, change: Mapping[str, np.ndarray], risk: float) -> dict[str, Allowance]:
@@ -262,22 +269,24 @@ def tolerance(
         raise ValueError(f"trials: must be {FEWEST} to {MOST}")
     ensemble = Ensemble(figures) if ensemble is None else ensemble
     risk = figures.design.doubts.risk
-    first = pilot_change(ensemble, seed, trials)
+    pilot = min(trials, PILOT)
+    early = ensemble.draws(seed, 0, pilot)
+    first = pilot_change(ensemble, early, pilot)
     allowed = allowances(ensemble, first, risk)
     most = {name: allowance.length for name, allowance in allowed.items()}
     gathered = _Gathered(ensemble, min(trials, KEPT))
     done = 0
     while done < trials:
         count = min(BLOCK, trials - done)
-        draws = ensemble.draws(seed, done, count)
-        known = done + count <= first["inner"].size
-        free = {name: value[done : done + count] for name, value in first.items()} if known else None
+        known = done + count <= pilot
+        draws = part_of(early, done, done + count) if known else ensemble.draws(seed, done, count)
+        free = part_of(first, done, done + count) if known else None
         gathered.add(*run_stage(ensemble, STAGES, draws, count, most, free), done, count)
         done += count
         if progress is not None and not progress(done, trials):
             break
     pilot = min(done, PILOT)
-    draws = ensemble.draws(seed, 0, pilot)
+    draws = part_of(early, 0, pilot)
     return Tolerance(
         design=figures.design,
         seed=seed,
@@ -452,7 +461,8 @@ def stage_yield(ensemble: Ensemble, stage: Stage, trials: int, seed: int) -> Yie
     """Return the yield of an ensemble at a stage of any kind."""
     most = None
     if stage.aimed:
-        change = pilot_change(ensemble, seed, trials)
+        count = min(trials, PILOT)
+        change = pilot_change(ensemble, ensemble.draws(seed, 0, count), count)
         allowed = allowances(ensemble, change, ensemble.design.doubts.risk)
         most = {name: allowance.length for name, allowance in allowed.items()}
     limit = reflection_of(ensemble.design.station.swr_limit)
