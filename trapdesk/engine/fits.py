@@ -407,15 +407,13 @@ def _fitted(
             raise ValueError("sweep must show a resonance that the model can settle on")
         sides = [(named(at + d), named(at - d)) for d in shifts]
         slopes = {name: np.array([(a[name] - b[name]) / (2 * step) for a, b in sides]) for name in values}
+        spread = {name: float(slope @ covariance @ slope) for name, slope in slopes.items()}
     return Fitted(
         frequency=f,
         data=data,
         model=model(at),
         values={name: float(value) for name, value in values.items()},
-        sigmas={
-            name: noise * math.sqrt(max(float(slope @ covariance @ slope), 0.0) * fewer)
-            for name, slope in slopes.items()
-        },
+        sigmas={name: noise * math.sqrt(max(size, 0.0) * fewer) for name, size in spread.items()},
         noise=noise,
         alikeness=alike,
         structure=structure,
