@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import MISSING, dataclass, field, fields, is_dataclass
+from dataclasses import MISSING, dataclass, field, fields, is_dataclass, replace
 from enum import Enum
 from typing import Any
 
@@ -22,8 +22,9 @@ Value = float | Solve
 class Declared:
     """What is known of a field: how it reads, what it measures, what it may be.
 
-    `dimension` names a unit family, or is `text`, `choice` or `part`. Limits are SI and include their ends,
-    except `above`, which excludes its end. `choices` are the words a choice may be, or a registry of kinds.
+    `dimension` names a unit family, or is `text`, `print`, `choice`, `part`, or `parts` for a list of them.
+    Limits are SI and include their ends, except `above`, which excludes its end. `choices` are the words a
+    choice may be, or a registry of kinds.
     """
 
     label: str
@@ -69,15 +70,37 @@ def part(label: str, help: str, *, default: Any = MISSING, kinds: Any = (), opti
     return _declare(default, dimension="part", label=label, help=help, choices=kinds, optional=optional)
 
 
+def parts(label: str, help: str, *, kinds: Any, default: Any = ()) -> Any:
+    """Declare a list of parts, each with fields of its own, of a registry of kinds."""
+    return _declare(default, dimension="parts", label=label, help=help, choices=kinds)
+
+
+def printed(label: str, help: str, *, example: str) -> Any:
+    """Declare what is printed on a part."""
+    return _declare(None, dimension="print", label=label, help=help, example=example)
+
+
 def declared(part: Any) -> dict[str, Declared]:
     """Return the declarations of a part's fields, by name, in order."""
     return {f.name: f.metadata["declared"] for f in fields(part)}
 
 
 def walk(part: Any, prefix: str = "") -> Iterator[tuple[str, Declared, Any]]:
-    """Yield dotted key, declaration and value of every field below a part, parts before what is in them."""
+    """Yield dotted key, declaration and value of every field below a part, parts before what is in them.
+
+    A part of a list has its place in it for a name, counted from 1.
+    """
     for name, known in declared(part).items():
         key, value = prefix + name, getattr(part, name)
         yield key, known, value
-        if is_dataclass(value):
+        if known.dimension == "part" and is_dataclass(value):
             yield from walk(value, key + ".")
+        elif known.dimension == "parts":
+            for place, member in enumerate(value, start=1):
+                yield f"{key}.{place}", member_of(known, place), member
+                yield from walk(member, f"{key}.{place}.")
+
+
+def member_of(known: Declared, place: int) -> Declared:
+    """Return what is known of one part of a list."""
+    return replace(known, dimension="part", label=f"{known.label}, {place}")

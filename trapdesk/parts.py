@@ -1,129 +1,96 @@
-"""What a trap is made of: kinds of coils and capacitors, each declared once, in registries."""
+"""What a trap is made of: a coil, a capacitor unless the coil is one too, and what the weather does."""
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
-from typing import ClassVar
+from enum import StrEnum
+from typing import Any
 
-from .engine.conductors import MATERIALS
-from .fields import SOLVE, Value, choice, part, quantity
+from .capacitor_kinds import (
+    CAPACITORS,
+    GivenCapacitor,
+    ParallelCapacitors,
+    SeriesCapacitors,
+    SingleCapacitor,
+    StubCapacitor,
+)
+from .coil_kinds import COILS, CableCoil, GivenCoil, Solenoid, Toroid
+from .fields import SOLVE, Value, choice, declared, part, quantity
 
 
-@dataclass(frozen=True, kw_only=True)
-class GivenCoil:
-    """A coil known by its inductance and Q."""
+class Sealing(StrEnum):
+    """How a trap is closed against the weather."""
 
-    kind: ClassVar[str] = "given"
-    inductance: Value = quantity(
-        "inductance",
-        "inductance",
-        "Inductance of the coil at the trap's resonance.",
-        default=SOLVE,
-        solvable=True,
-        low=1e-8,
-        high=1e-3,
-        example="8.2 uH",
-    )
-    q: float = quantity(
-        "ratio",
-        "coil Q",
-        "Q of the coil at the trap's resonance; its resistance goes with the square root of frequency.",
-        default=200.0,
-        low=1.0,
-        high=5000.0,
-    )
+    NONE = "none"
+    TAPE = "tape"
+    POTTED = "potted"
 
 
 @dataclass(frozen=True, kw_only=True)
-class Solenoid:
-    """A single-layer coil of round wire on a round former."""
+class Weather:
+    """What closing, water and temperature do to a trap. All shifts are common practice, no source."""
 
-    kind: ClassVar[str] = "solenoid"
-    former: float = quantity(
-        "length",
-        "former",
-        "Outside diameter of the former the wire lies on.",
-        default=0.05,
-        low=0.003,
-        high=0.5,
+    sealing: Sealing = choice(
+        Sealing,
+        "sealed with",
+        "none; tape or shrink; potted: nothing can be moved afterwards.",
+        default=Sealing.NONE,
     )
-    wire: float = quantity(
-        "length",
-        "coil wire",
-        "Diameter of the coil's wire without insulation; a gauge such as AWG 14 will do.",
-        default=0.0016,
-        low=5e-5,
-        high=0.01,
-        example="AWG 14",
-    )
-    pitch: float = quantity(
-        "length",
-        "pitch",
-        "From one turn to the next, wire centre to wire centre.",
-        default=0.003,
-        low=5e-5,
-        high=0.1,
-    )
-    turns: Value = quantity(
-        "count",
-        "turns",
-        "Turns of the coil. Solved: those that bring the trap to its resonance.",
-        default=SOLVE,
-        solvable=True,
-        low=1.0,
-        high=200.0,
-    )
-    material: str = choice(MATERIALS, "coil metal", "Metal of the coil's wire.", default="copper")
-    q_share: float = quantity(
+    sealing_shift: float = quantity(
         "ratio",
-        "share of ideal Q",
-        "What a built coil reaches of the Q of smooth bare wire in free air. An estimate; measure it.",
-        default=0.7,
-        low=0.05,
-        high=1.0,
+        "sealing lowers by",
+        "How much closing it lowers the trap's resonance. 0.5 to 2 %: common practice, no source.",
+        default=0.01,
+        low=0.0,
+        high=0.2,
+        example="1 %",
     )
-
-
-COILS: dict[str, type] = {c.kind: c for c in (GivenCoil, Solenoid)}
-
-
-@dataclass(frozen=True, kw_only=True)
-class GivenCapacitor:
-    """A capacitor known by its capacitance and Q."""
-
-    kind: ClassVar[str] = "given"
-    capacitance: Value = quantity(
-        "capacitance",
-        "capacitance",
-        "Capacitance of the capacitor; what the coil itself adds is counted apart.",
-        default=SOLVE,
-        solvable=True,
-        low=1e-13,
-        high=1e-7,
-        example="60 pF",
-    )
-    q: float | None = quantity(
+    rain_shift: float = quantity(
         "ratio",
-        "capacitor Q",
-        "Q of the capacitor at the trap's resonance; none given counts as lossless.",
-        default=None,
-        optional=True,
-        low=1.0,
-        high=1e6,
+        "rain lowers by",
+        "How much rain lowers the trap's resonance. 0.5 to 1 %: common practice, no source.",
+        default=0.0075,
+        low=0.0,
+        high=0.2,
+        example="0.75 %",
     )
-    voltage: float | None = quantity(
-        "voltage",
-        "capacitor rating",
-        "Highest peak voltage the capacitor stands at radio frequency.",
-        default=None,
-        optional=True,
-        low=1.0,
-        high=1e6,
-        example="3 kV",
+    ice_shift: float = quantity(
+        "ratio",
+        "ice lowers by",
+        "How much ice lowers the trap's resonance; more than rain: common practice, no source.",
+        default=0.02,
+        low=0.0,
+        high=0.3,
+        example="2 %",
     )
-
-
-CAPACITORS: dict[str, type] = {c.kind: c for c in (GivenCapacitor,)}
+    built_at: float = quantity(
+        "temperature",
+        "built at",
+        "Temperature at which it is brought to its resonance.",
+        default=20.0,
+        low=-40.0,
+        high=60.0,
+        example="20 degC",
+    )
+    in_sun: float = quantity(
+        "temperature",
+        "in the sun",
+        "How warm the trap gets in the sun, nothing sent. Common practice, no source.",
+        default=45.0,
+        low=-40.0,
+        high=100.0,
+        example="45 degC",
+    )
+    in_cold: float = quantity(
+        "temperature",
+        "in the cold",
+        "Coldest it is used at.",
+        default=-10.0,
+        low=-80.0,
+        high=60.0,
+        example="-10 degC",
+    )
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -147,7 +114,26 @@ class Trap:
         low=0.0,
         high=0.5,
     )
-    coil: GivenCoil | Solenoid = part("coil", "How the coil is made.", default=GivenCoil(), kinds=COILS)
-    capacitor: GivenCapacitor = part(
-        "capacitor", "How the capacitor is made.", default=GivenCapacitor(), kinds=CAPACITORS
+    coil: GivenCoil | Solenoid | CableCoil | Toroid = part(
+        "coil", "How the coil is made.", default=GivenCoil(), kinds=COILS
     )
+    capacitor: (
+        GivenCapacitor | SingleCapacitor | StubCapacitor | SeriesCapacitors | ParallelCapacitors | None
+    ) = part(
+        "capacitor",
+        "How the capacitor is made. A coil of cable is one already and needs none.",
+        default=GivenCapacitor(),
+        kinds=CAPACITORS,
+    )
+    weather: Weather = part("weather", "What closing and weather do to it.", default=Weather())
+
+
+def solvable(part_: Any, prefix: str) -> Iterator[tuple[str, Any]]:
+    """Yield key and value of everything in a coil or capacitor that may be solved, members included."""
+    for name, known in declared(part_).items():
+        value = getattr(part_, name)
+        if known.solvable:
+            yield prefix + name, value
+        elif known.dimension == "parts":
+            for place, member in enumerate(value, start=1):
+                yield from solvable(member, f"{prefix}{name}.{place}.")

@@ -4,28 +4,18 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator
-from dataclasses import dataclass
 from typing import Any
 
 from .design import Band, Design, Shape, Site, get
+from .doubts import Doubts, farthest
 from .errors import TrapdeskError
-from .fields import SOLVE, Declared, declared, walk
-from .parts import Solenoid, Trap
+from .fields import SOLVE, Declared, walk
+from .part_rules import Breach, trap_rules
+from .parts import Trap, solvable
+from .station_rules import station_rules, wanted_rules
 
-
-@dataclass(frozen=True, kw_only=True)
-class Breach:
-    """A value that a rule forbids: where, which rule, the value, and the bound or the other key it meets.
-
-    `code` is one of: missing, below, not_above, over, not_a_choice, not_a_number, unexpected, needs,
-    needs_one_of, not_both, order, outside, solve_one, ends_too_low.
-    """
-
-    where: str
-    code: str
-    value: Any = None
-    bound: Any = None
-    dimension: str = ""
+BY_THE_COIL = "antenna.trap.capacitor"
+"""Whether it is wanted depends on the coil: `trap_rules` says."""
 
 
 class InvalidDesign(TrapdeskError):
@@ -47,7 +37,7 @@ def check(design: Design) -> tuple[Breach, ...]:
 def _limits(key: str, known: Declared, value: Any) -> Iterator[Breach]:
     """Hold one value against its declaration."""
     if value is None:
-        if not known.optional:
+        if not known.optional and key != BY_THE_COIL:
             yield Breach(where=key, code="missing", dimension=known.dimension)
     elif value is SOLVE:
         if not known.solvable:
@@ -55,7 +45,7 @@ def _limits(key: str, known: Declared, value: Any) -> Iterator[Breach]:
     elif known.dimension == "choice":
         if str(value) not in known.choices:
             yield Breach(where=key, code="not_a_choice", value=value, bound=known.choices)
-    elif known.dimension not in ("text", "part"):
+    elif known.dimension not in ("text", "part", "parts", "print"):
         if not math.isfinite(value):
             yield Breach(where=key, code="not_a_number", value=value, dimension=known.dimension)
         elif known.low is not None and value < known.low:
@@ -72,6 +62,7 @@ def _together(design: Design) -> Iterator[Breach]:
     """Hold values against each other."""
     for role, band in design.bands.items():
         yield from _band_order(f"bands.{role}", band)
+        yield from wanted_rules(f"bands.{role}", band)
     bands = design.bands
     if bands.upper is not None and bands.upper.target <= bands.lower.target:
         yield Breach(
@@ -83,10 +74,12 @@ def _together(design: Design) -> Iterator[Breach]:
         )
     yield from _lengths_and_trap(design)
     yield from _site(design.site)
+    yield from station_rules(design.station)
+    yield from _doubts(design.doubts)
 
 
 def _band_order(key: str, band: Band) -> Iterator[Breach]:
-    low, high = band.wanted
+    low, high = band.wanted_edges
     if band.low >= band.high:
         yield Breach(
             where=f"{key}.high", code="order", value=band.high, bound=band.low, dimension="frequency"
@@ -103,9 +96,12 @@ def _band_order(key: str, band: Band) -> Iterator[Breach]:
                 dimension="frequency",
             )
             return
+    if band.wanted:
+        # What is wrong in the list is told of the list.
+        low, high = band.low, band.high
     if low >= high:
         yield Breach(where=f"{key}.wanted_high", code="order", value=high, bound=low, dimension="frequency")
-    elif not band.low <= band.target <= band.high:
+    elif (band.aim is not None or not band.wanted) and not band.low <= band.target <= band.high:
         yield Breach(
             where=f"{key}.aim",
             code="outside",
@@ -130,27 +126,21 @@ def _lengths_and_trap(design: Design) -> Iterator[Breach]:
         yield Breach(
             where="antenna.trap", code="solve_one", value=tuple(solved), bound=tuple(trap_unknowns(trap))
         )
-    if isinstance(trap.coil, Solenoid) and trap.coil.pitch <= trap.coil.wire:
-        yield Breach(
-            where="antenna.trap.coil.pitch",
-            code="not_above",
-            value=trap.coil.pitch,
-            bound=trap.coil.wire,
-            dimension="length",
-        )
+    yield from trap_rules(trap, "antenna.trap")
     sides = ((lengths.inner, "antenna.lengths.inner"), (lengths.end, "antenna.lengths.end"))
     for value, key in sides:
         if isinstance(value, float | int) and trap.body / 2 >= value:
             yield Breach(where=key, code="not_above", value=value, bound=trap.body / 2, dimension="length")
 
 
-def trap_unknowns(trap: Trap) -> tuple[str, str, str]:
-    """Return the keys of which exactly one is solved: the trap's resonance, coil value, capacitor value."""
+def trap_unknowns(trap: Trap) -> tuple[str, ...]:
+    """Return the keys of which exactly one is solved: the trap's resonance, values of coil and capacitor."""
     found = ["antenna.trap.resonance"]
     for name in ("coil", "capacitor"):
         part = getattr(trap, name)
-        found += [f"antenna.trap.{name}.{key}" for key, known in declared(part).items() if known.solvable]
-    return tuple(found)  # type: ignore[return-value]
+        if part is not None:
+            found += [key for key, _ in solvable(part, f"antenna.trap.{name}.")]
+    return tuple(found)
 
 
 def _site(site: Site) -> Iterator[Breach]:
@@ -170,3 +160,16 @@ def _site(site: Site) -> Iterator[Breach]:
     elif len(numbers) == 1:
         other = "permittivity" if numbers == ["conductivity"] else "conductivity"
         yield Breach(where=f"site.{numbers[0]}", code="needs", bound=f"site.{other}")
+
+
+def _doubts(doubts: Doubts) -> Iterator[Breach]:
+    """Refuse a doubt under which a part could come out at nothing or less, and ranges upside down."""
+    for name in ("coil", "pitch", "former", "capacitor", "q", "coating"):
+        size, reach = getattr(doubts, name) or 0.0, farthest(getattr(doubts, f"{name}_meaning"))
+        if size * reach >= 1:
+            bound = 0.99 / reach
+            yield Breach(where=f"doubts.{name}", code="over", value=size, bound=bound, dimension="ratio")
+    for least, most in (("sealing_least", "sealing_most"), ("rain_least", "rain_most")):
+        value, bound = getattr(doubts, least), getattr(doubts, most)
+        if value is not None and bound is not None and value > bound:
+            yield Breach(where=f"doubts.{least}", code="over", value=value, bound=bound, dimension="ratio")

@@ -14,6 +14,7 @@ from .fields import SOLVE, Declared, declared
 from .rules import Breach
 
 _PLAIN = ("ratio", "count")
+_WORDS = ("text", "choice", "part", "parts", "print")
 
 
 @functools.cache
@@ -39,16 +40,26 @@ def tables() -> dict[str, tuple[type, ...]]:
         key = waiting.pop(0)
         for kind in tables[key]:
             for name, known in declared(kind).items():
-                if known.dimension == "part":
-                    inner = f"{key}.{name}".lstrip(".")
+                # A list in a list of the same kinds is the same table again.
+                inner = bare(f"{key}.{name}")
+                if known.dimension in ("part", "parts") and inner not in tables:
                     tables[inner] = tuple(kinds(kind, name).values())
                     waiting.append(inner)
     return tables
 
 
+def bare(key: str) -> str:
+    """Return a dotted key without places in lists, a list within a list of its own name being one."""
+    names: list[str] = []
+    for name in key.lstrip(".").split("."):
+        if not name.isdecimal() and not (names and names[-1] == name):
+            names.append(name)
+    return ".".join(names)
+
+
 def _field(key: str) -> Field[Any]:
     """Return the field at a dotted key; KeyError for a key no design can have."""
-    table, _, name = key.rpartition(".")
+    table, _, name = bare(key).rpartition(".")
     for kind in tables()[table]:
         for field in fields(kind):
             if name in (field.name, field.metadata["declared"].alias):
@@ -65,10 +76,11 @@ def example(key: str) -> str:
     """Return in words what would be right for a key."""
     field = _field(key)
     known: Declared = field.metadata["declared"]
-    if known.dimension == "part":
-        inside = tables()[key][0]
+    if known.dimension in ("part", "parts"):
+        inside = tables()[bare(key)][0]
         needed = [name for name in declared(inside) if _needed(inside, name)]
-        return f"a table [{key}]" + (f" with {', '.join(needed)}" if needed else "")
+        head = f"[[{bare(key)}]]" if known.dimension == "parts" else f"[{key}]"
+        return f"a table {head}" + (f" with {', '.join(needed)}" if needed else "")
     if known.dimension == "choice":
         return f"one of {', '.join(known.choices)}"
     value = known.example or ("40 m" if field.name == "name" else "")
@@ -89,7 +101,11 @@ def _shown(value: Any, dimension: str) -> str:
     """Return a value, or a stretch between two, as a person reads it."""
     if isinstance(value, tuple):
         return " to ".join(_shown(end, dimension) for end in value)
-    if not isinstance(value, float | int) or not dimension or dimension in ("text", "choice", "part"):
+    if (
+        not isinstance(value, float | int)
+        or not dimension
+        or dimension in ("text", "choice", "part", "print")
+    ):
         return str(value)
     return units.show(value, units.Dimension(dimension), digits=6)
 
@@ -125,6 +141,16 @@ def _range(known: Declared) -> str:
 # What would be right where a value meets another one, by code and key.
 _TOGETHER = {
     ("not_above", "antenna.trap.coil.pitch"): "turns must not lie in each other: more than the coil's wire",
+    ("not_above", "antenna.trap.coil.length"): "so many turns of this wire are longer than the winding",
+    ("not_above", "antenna.trap.coil.former"): "a former thicker than what is wound on it",
+    ("not_above", "antenna.trap.coil.insulation"): "turns wound close need insulation: or give a pitch",
+    ("not_above", "antenna.trap.coil.outer"): "more than the core's inside",
+    ("not_above", "antenna.trap.coil.inner"): "two wires must fit through the core",
+    ("not_above", "antenna.trap.coil.outside"): "more than the shield's diameter",
+    ("below", "antenna.trap.coil.pitch"): "cables must not lie in each other: at least the cable's diameter",
+    ("missing", "antenna.trap.coil.outside"): "the list has none: give the cable's diameter",
+    ("missing", "antenna.trap.coil.shield"): "no list has one for it: give the diameter over the braid",
+    ("unexpected", "antenna.trap.capacitor"): "take it out: a coil of cable is its own capacitor",
     ("not_above", "antenna.lengths.inner"): "more than half of antenna.trap.body, which reaches into it",
     ("not_above", "antenna.lengths.end"): "more than half of antenna.trap.body, which reaches into it",
     ("over", "site.end_height"): "no higher than the feed point, site.height",
@@ -134,6 +160,12 @@ _TOGETHER = {
     ("unexpected", "antenna.lengths.end"): "take it out, or add a table [antenna.trap]",
     ("unexpected", "site.end_height"): 'take it out, or set shape = "vee"',
     ("unexpected", "site.included_angle"): 'take it out, or set shape = "vee"',
+    **{
+        ("over", f"doubts.{name}"): "with this meaning the value itself could come out at nothing or less"
+        for name in ("coil", "pitch", "former", "capacitor", "q", "coating")
+    },
+    ("over", "doubts.sealing_least"): "no more than sealing_most",
+    ("over", "doubts.rain_least"): "no more than rain_most",
     ("needs", "antenna.lengths.inner"): "with one band set inner or end, or add a table [bands.upper]",
 }
 _ENDS = {
@@ -166,9 +198,13 @@ def spoken(breach: Breach) -> Fault:
         return Fault(where, code, limit=" and ".join(breach.value), help=help)
     if code == "missing":
         code = "a_table_is_missing" if known.dimension == "part" else "missing"
-        return Fault(where, code, help=example(where))
+        return Fault(where, code, help=help or example(where))
     bound = " and ".join(breach.bound) if isinstance(breach.bound, tuple) else str(breach.bound)
     words = {
+        "cannot_be_fitted": ("cannot_be_fitted", str(breach.bound)),
+        "too_few_members": ("too_few_members", "a combination has at least two"),
+        "nested_too_deeply": ("nested_too_deeply", f"at most {bound} combinations in each other"),
+        "not_whole": ("is_not_whole", "a whole number of pieces"),
         "unexpected": ("has_no_use_here", f"it goes with {bound}"),
         "needs": ("cannot_stand_alone", f"give {bound} too"),
         "needs_one_of": ("a_value_is_missing", f"give one of {bound}"),

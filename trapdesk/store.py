@@ -162,12 +162,14 @@ def _written(design: Design) -> dict[str, str]:
     """Return every value there is as TOML, by dotted key, in the order of a fresh file."""
     written = dict(HEAD)
     for key, known, value in walk(design):
+        if known.dimension == "parts":
+            continue
         if known.dimension != "part":
             if value is not None:
                 text = _value(known, value)
                 by_gauge = known.alias and text.startswith('"AWG')
                 written[_second_name(key, known) if by_gauge else key] = text
-        elif value is not None and isinstance(known.choices, dict):
+        elif value is not None and isinstance(known.choices, dict) and "" not in known.choices:
             written[f"{key}.kind"] = _text(value.kind)
     return written
 
@@ -180,7 +182,7 @@ def _value(known: Declared, value: Any) -> str:
     """Return one value as TOML."""
     if value is SOLVE:
         return _text(SOLVE.value)
-    if known.dimension in ("text", "choice"):
+    if known.dimension in ("text", "choice", "print"):
         return _text(str(value))
     if known.example.startswith("AWG"):
         gauge = next((n for n in range(41) if units.gauge_diameter(n) == value), None)
@@ -201,7 +203,8 @@ def _fresh(wanted: dict[str, str]) -> str:
     for key, value in wanted.items():
         table, _, name = key.rpartition(".")
         tables.setdefault(table, []).append(f"{name} = {value}\n")
-    return "\n".join((f"[{table}]\n" if table else "") + "".join(lines) for table, lines in tables.items())
+    heads = {table: f"{toml_edit.header(tuple(table.split('.')))}\n" if table else "" for table in tables}
+    return "\n".join(heads[table] + "".join(lines) for table, lines in tables.items())
 
 
 def save(design: Design, path: str | os.PathLike[str], original_text: str | None = None) -> Saved:

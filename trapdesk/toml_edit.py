@@ -57,18 +57,31 @@ class _Scan:
         self.text = text
         self.entries: list[_Entry] = []
         self.headers: list[_Header] = []
+        self.counts: dict[Path, int] = {}
         table: Path = ()
         position = self._skip(_BLANK, 0)
         while position < len(text):
             start = text.rfind("\n", 0, position) + 1
             if text[position] == "[":
-                brackets = 2 if text.startswith("[[", position) else 1
-                table, position = self._keys(self._skip(_SPACE, position + brackets))
+                listed = text.startswith("[[", position)
+                names, position = self._keys(self._skip(_SPACE, position + 1 + listed))
+                table = self._placed(names, listed)
                 position = self._line_end(position)
                 self.headers.append(_Header(path=table, start=start, end=position))
             else:
                 position = self._line_end(self._pair(position, start, table, table, inline=False))
             position = self._skip(_BLANK, position)
+
+    def _placed(self, names: Path, listed: bool) -> Path:
+        """Return a header's path with places in lists, the last of each list being meant."""
+        path: Path = ()
+        for number, name in enumerate(names, start=1):
+            path = (*path, name)
+            if listed and number == len(names):
+                self.counts[path] = self.counts.get(path, 0) + 1
+            if path in self.counts:
+                path = (*path, str(self.counts[path]))
+        return path
 
     def _skip(self, pattern: re.Pattern[str], position: int) -> int:
         match = pattern.match(self.text, position)
@@ -118,11 +131,13 @@ class _Scan:
                 raise Unforeseen(f"no value at character {position}")
             return position + len(match[0].rstrip())
         position = self._skip(_INSIDE, position + 1)
+        place = 0
         while self.text[position : position + 1] not in "]}":
             if opening == "{":
                 position = self._pair(position, start, path, table, inline=True)
             else:
-                position = self._value(position, start, path, table)
+                place += 1
+                position = self._value(position, start, (*path, str(place)), table)
             position = self._skip(_INSIDE, position)
         return position + 1
 
@@ -178,13 +193,42 @@ def edit(text: str, wanted: Mapping[str, str], changed: Set[str], aliases: Mappi
     for table, lines in added.items():
         place = _place(scan, table, gone, last_kept)
         if place is None:
-            tail += newline + newline.join([f"[{'.'.join(table)}]", *lines]) + newline
+            block = newline + newline.join([header(table), *lines]) + newline
+            after = _after_siblings(scan, table, gone)
+            if after is None:
+                tail += block
+            else:
+                broken = newline if text[after - 1] != "\n" else ""
+                cuts.append((after, after, broken + block))
             continue
         position, before = place
         broken = newline if position and text[position - 1] != "\n" else ""
         cuts.append((position, position, broken + "".join(f"{before}{line}{newline}" for line in lines)))
     edited = _cut(text, cuts)
     return edited + (newline if tail and edited and not edited.endswith("\n") else "") + tail
+
+
+def header(table: Path) -> str:
+    """Return the line that opens a table, or the next table of a list."""
+    names = ".".join(name for name in table if not name.isdecimal())
+    return f"[[{names}]]" if table[-1].isdecimal() else f"[{names}]"
+
+
+def _after_siblings(scan: _Scan, table: Path, gone: list[tuple[int, int]]) -> int | None:
+    """Return where a new table of a list goes: after the tables before it in that list; None for no list."""
+    place = next((n for n in reversed(range(len(table))) if table[n].isdecimal()), None)
+    if place is None:
+        return None
+    above = table[:place]
+    ends = [
+        end
+        for path, start, end in (
+            *((h.path, h.start, h.end) for h in scan.headers),
+            *((e.path, e.start, e.end) for e in scan.entries if not e.inline),
+        )
+        if path[: len(above)] == above and not any(s <= start < e for s, e in gone)
+    ]
+    return max(ends, default=None)
 
 
 def _gone(scan: _Scan, prefixes: Set[Path]) -> list[tuple[int, int]]:

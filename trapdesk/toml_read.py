@@ -9,12 +9,14 @@ from collections.abc import Iterable
 from dataclasses import MISSING, fields, replace
 from typing import Any
 
-from . import units
+from . import prints, units
+from .capacitor_kinds import MOST_DEEP
+from .coil_kinds import CableCoil
 from .design import Design, with_value
 from .errors import BadInput, Fault, FileFault, visible
 from .fields import SOLVE, Declared, declared
 from .rules import check
-from .spoken import example, kinds, of_one_value, spoken, tables
+from .spoken import bare, example, kinds, of_one_value, spoken, tables
 
 FORMAT = 1
 KIND = "design"
@@ -84,6 +86,9 @@ class _Reader:
         design: Design = self.part(Design, table, "")
         if design.antenna.trap is not None and design.antenna.lengths.end is None:
             design = with_value(design, "antenna.lengths.end", SOLVE)
+        trap = design.antenna.trap
+        if trap is not None and isinstance(trap.coil, CableCoil) and not _has(table, "capacitor"):
+            design = with_value(design, "antenna.trap.capacitor", None)
         self.hold_to_rules(design)
         if self.more:
             self.fault_more()
@@ -137,6 +142,10 @@ class _Reader:
                 given, where = table[name], dot + name
                 if spec.dimension == "part":
                     value = self.inner(kind, field.name, default, given, where)
+                elif spec.dimension == "parts":
+                    value = self.members(spec, given, where)
+                elif spec.dimension == "print":
+                    value = self.print(spec, default, given, where)
                 elif spec.dimension == "text":
                     value = self.text(spec, default, given, where)
                 elif spec.dimension == "choice":
@@ -153,14 +162,16 @@ class _Reader:
             return
         names = [*declared(kind), *(d.alias for d in declared(kind).values() if d.alias)]
         names += list(HEAD) if kind is Design else []
-        others = [c for c in tables()[key] if c is not kind and name in declared(c)]
-        places = [t for t, kinds in tables().items() if t != key and any(name in declared(c) for c in kinds)]
+        here = bare(key)
+        others = [c for c in tables()[here] if c is not kind and name in declared(c)]
+        places = [t for t, kinds in tables().items() if t != here and any(name in declared(c) for c in kinds)]
         near = difflib.get_close_matches(name[:40], names, n=1)
         if others:
             help = f'it goes with kind = "{others[0].kind}"'  # type: ignore[attr-defined]
         elif near:
             help = f"did you mean {near[0]}?"
         elif places:
+            places = _nearest(places, here)
             help = f"it stands in {' or '.join(f'[{t}]' if t else 'the head of the file' for t in places)}"
         else:
             help = f"known here: {', '.join(names)}"
@@ -175,13 +186,53 @@ class _Reader:
         known = kinds(owner, field_name)
         if "" in known:
             return self.part(known[""], given, where)
-        word = given.get("kind", default.kind)
+        usual = next(iter(known)) if default is None else default.kind
+        return self.of_kind(known, usual, default, given, where)
+
+    def of_kind(
+        self, known: dict[str, type], usual: str, default: Any, given: dict[str, Any], where: str
+    ) -> Any:
+        """Return a part of one kind out of several."""
+        word = given.get("kind", usual)
         if not isinstance(word, str) or word not in known:
             near = difflib.get_close_matches(str(word)[:40], known, n=1)
             help = f'did you mean kind = "{near[0]}"?' if near else ""
             self.fault(f"{where}.kind", "unknown_choice", word, ", ".join(known), help)
             return default
         return self.part(known[word], {name: v for name, v in given.items() if name != "kind"}, where)
+
+    def members(self, spec: Declared, given: Any, where: str) -> tuple[Any, ...]:
+        """Return the parts of a list, those left out that are none."""
+        if not isinstance(given, list):
+            help = f"[[{bare(where)}]] on a line of its own, once for each, its keys below"
+            self.fault(where, f"{_what(given)}_stands_where_a_list_is_wanted", help=help)
+            return ()
+        if where.count(".members") > MOST_DEEP:
+            self.fault(where, "nested_too_deeply", help=f"at most {MOST_DEEP} combinations in each other")
+            return ()
+        found = []
+        for place, table in enumerate(given, start=1):
+            at = f"{where}.{place}"
+            if not isinstance(table, dict):
+                help = f"[[{bare(where)}]] on a line of its own, its keys below"
+                self.fault(at, f"{_what(table)}_stands_where_a_table_is_wanted", help=help)
+            elif "" in spec.choices:
+                found.append(self.part(spec.choices[""], table, at))
+            else:
+                found.append(self.of_kind(spec.choices, next(iter(spec.choices)), None, table, at))
+        return tuple(member for member in found if member is not None)
+
+    def print(self, spec: Declared, default: Any, given: Any, where: str) -> Any:
+        """Return what a print says."""
+        if isinstance(given, bool) or not isinstance(given, str | int):
+            self.fault(where, f"{_what(given)}_stands_where_a_print_is_wanted", help=example(where))
+            return default
+        try:
+            return prints.read(str(given), where)
+        except BadInput as refused:
+            for fault in refused.faults:
+                self.add(fault)
+        return default
 
     def text(self, spec: Declared, default: Any, given: Any, where: str) -> Any:
         if not isinstance(given, str):
@@ -230,6 +281,26 @@ class _Reader:
                     fault = replace(fault, help=f"{fault.help} (in quotes)")
                 self.add(fault)
         return default
+
+
+def _nearest(places: list[str], here: str) -> list[str]:
+    """Return the tables that have most of their path in common with one; a list in a list not by itself."""
+
+    def common(place: str) -> int:
+        pairs = zip(place.split("."), here.split("."), strict=False)
+        return next(
+            (n for n, (a, b) in enumerate(pairs) if a != b), min(place.count("."), here.count(".")) + 1
+        )
+
+    known = [place for place in places if place.removesuffix(".members") == place or len(places) == 1]
+    most = max(common(place) for place in known)
+    return [place for place in known if common(place) == most]
+
+
+def _has(table: dict[str, Any], name: str) -> bool:
+    """Return whether a file says something of a part of the trap."""
+    trap = table["antenna"]["trap"]
+    return isinstance(trap, dict) and name in trap
 
 
 def _what(value: Any) -> str:

@@ -26,6 +26,7 @@ class Dimension(StrEnum):
     LOSS_PER_LENGTH = "loss_per_length"  # dB/m
     TEMPERATURE_COEFFICIENT = "temperature_coefficient"  # 1/K
     CAPACITANCE_PER_LENGTH = "capacitance_per_length"  # F/m
+    FLUX_DENSITY = "flux_density"  # T
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
@@ -126,6 +127,7 @@ UNITS: dict[Dimension, dict[str, Unit]] = {
     Dimension.CAPACITANCE_PER_LENGTH: _prefixed("p n u", "F/m")
     | {"pF/cm": Unit(top=1, bottom=10**10), "pF/ft": Unit(top=10_000, bottom=3048 * 10**12)}
     | {"nF/km": Unit(top=1, bottom=10**12)},
+    Dimension.FLUX_DENSITY: _prefixed("u m", "T") | {"gauss": Unit(top=1, bottom=10**4)},
 }
 """Everyday unit names of every dimension; a test proves them equal to pint's conversions."""
 
@@ -160,6 +162,7 @@ SI_NAMES: dict[Dimension, str] = {
     Dimension.LOSS_PER_LENGTH: "decibel/meter",
     Dimension.TEMPERATURE_COEFFICIENT: "1/kelvin",
     Dimension.CAPACITANCE_PER_LENGTH: "farad/meter",
+    Dimension.FLUX_DENSITY: "tesla",
 }
 """The SI unit in words pint knows; temperatures are not its business, for they have a shifted zero."""
 
@@ -191,6 +194,7 @@ DESCRIPTIONS = {
         ("100 pF/m", "30 pF/ft"),
         ("pF/m", "pF/ft"),
     ),
+    Dimension.FLUX_DENSITY: ("a flux density", ("5 mT", "50 gauss"), ("mT", "T")),
 }
 # Units a value is shown in, with the least value each is used for; powers of ten except the degree.
 SHOWN: dict[Dimension, tuple[tuple[str, float], ...]] = {
@@ -213,6 +217,7 @@ SHOWN: dict[Dimension, tuple[tuple[str, float], ...]] = {
     Dimension.LOSS_PER_LENGTH: (("dB/100m", 0.0),),
     Dimension.TEMPERATURE_COEFFICIENT: (("ppm/K", 0.0),),
     Dimension.CAPACITANCE_PER_LENGTH: (("pF/m", 1e-12), ("nF/m", 1e-9), ("uF/m", 1e-6)),
+    Dimension.FLUX_DENSITY: (("uT", 1e-6), ("mT", 1e-3), ("T", 1.0)),
 }
 IMPERIAL: dict[Dimension, tuple[tuple[str, float], ...]] = {
     Dimension.LENGTH: (("in", 1e-3), ("ft", 0.3048)),

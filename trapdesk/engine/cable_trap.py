@@ -181,6 +181,34 @@ def dielectric_voltage(frequency: ArrayLike, trap: CableTrap) -> FloatArray:
     return np.maximum(np.abs(joined), np.abs(far)) / np.abs(impedance)
 
 
+def shield_current(frequency: ArrayLike, trap: CableTrap) -> FloatArray:
+    """Return the current on the outside of the shield per ampere through the trap: what heats the winding.
+
+    Parameters
+    ----------
+    frequency : float or array
+        Frequency. [Hz], > 0
+    trap : CableTrap
+        The trap; its values broadcast with the frequency.
+
+    Returns
+    -------
+    float array
+        Ratio of currents, of the broadcast shape. [1]
+
+    Raises
+    ------
+    ValueError
+        If any value is outside its limits; NaN counts as outside.
+
+    Source
+    ------
+    Derived here: the drop along the shield over the impedance of its outside, see `cable_trap_impedance`.
+    """
+    _, _, _, sech, below = _solve(frequency, trap)
+    return np.abs((1.0 if trap.terminals is Terminals.SHIELD else 1.0 + sech) / below)
+
+
 def cable_trap_resonance(trap: CableTrap) -> FloatArray:
     """Return the resonance of a cable trap without loss.
 

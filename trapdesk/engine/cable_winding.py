@@ -1,12 +1,12 @@
 """Cable wound on a former for a trap: what the outside of its shield is, and turns for a resonance."""
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from .cable_trap import CableTrap, cable_trap_resonance
 from .cables import Line
 from .coils import wire_length
 from .conductors import VACUUM_PERMEABILITY, internal_impedance
@@ -272,19 +272,20 @@ def cable_trap_turns(
     at_least(0.0, tail=tail, self_capacitance=self_capacitance)
     shape = _shape(former, outside, shield, pitch)
     straight = 2.0 * straight_inductance(tail, shield)
+    positive(z0=line.z0, velocity_factor=line.velocity_factor)
+    w, z0 = 2.0 * np.pi * frequency, float(line.z0)
+    per_metre = w / float(line.velocity)
 
     def cable(turns: float) -> float:
         return float(wire_length(shape[0], shape[1], turns)) + 2.0 * tail
 
     def height(inductance: Callable[[float], float]) -> Callable[[float], float]:
         def above(turns: float) -> float:
-            trap = CableTrap(
-                line=line,
-                length=cable(turns),
-                inductance=inductance(turns) + straight,
-                self_capacitance=self_capacitance,
-            )
-            return float(np.log(cable_trap_resonance(trap) / frequency))
+            # The condition of `cable_trap_resonance` at the wanted frequency: above zero below resonance.
+            wl = w * (inductance(turns) + straight)
+            theta = per_metre * cable(turns)
+            inside = z0 * math.cos(theta) * (1.0 - w * wl * self_capacitance)
+            return (inside - wl * math.sin(theta)) / (wl + z0)
 
         return above
 

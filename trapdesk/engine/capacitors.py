@@ -1,4 +1,4 @@
-"""Capacitors: loss from their Q, and what voltage they stand at a frequency."""
+"""Capacitors: loss from Q or dielectric, open stubs, and what voltage they stand at a frequency."""
 
 from dataclasses import dataclass
 from enum import StrEnum
@@ -6,9 +6,64 @@ from enum import StrEnum
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from .cables import Line, propagation
 from .limits import at_least, positive
 
 FloatArray = NDArray[np.float64]
+
+
+@dataclass(frozen=True, kw_only=True)
+class Dielectric:
+    """What a capacitor is made of, as far as its loss goes; constant over the high frequencies.
+
+    Parameters
+    ----------
+    loss_tangent : float
+        Series resistance over reactance, 1/Q. [-]
+    source : str
+        Key of the source.
+    seen : bool
+        Whether the value was read there, or recalled from memory.
+    note : str
+        What else is known about it.
+    """
+
+    loss_tangent: float
+    source: str
+    seen: bool
+    note: str = ""
+
+
+DIELECTRICS: dict[str, Dielectric] = {
+    "ceramic": Dielectric(
+        loss_tangent=1e-3,
+        source="np0-sheet",
+        seen=True,
+        note="class 1 of 30 pF and more, the most a maker allows at 1 MHz; below 30 pF see ceramic_q",
+    ),
+    "ceramic, class 2": Dielectric(
+        loss_tangent=0.025, source="from memory", seen=False, note="not meant for tuned circuits"
+    ),
+    "silver mica": Dielectric(loss_tangent=5e-4, source="from memory", seen=False),
+    "polystyrene": Dielectric(
+        loss_tangent=2e-4, source="dielectric-table", seen=True, note="the material; its foil loses more"
+    ),
+    "PTFE": Dielectric(loss_tangent=2e-4, source="dielectric-table", seen=True, note="the material"),
+    "polyethylene": Dielectric(loss_tangent=3e-4, source="dielectric-table", seen=True, note="the material"),
+    "PVC": Dielectric(
+        loss_tangent=0.04,
+        source="dielectric-table",
+        seen=True,
+        note="0.02 to 0.08 by compound: not for traps",
+    ),
+    "air": Dielectric(
+        loss_tangent=1e-4, source="from memory", seen=False, note="its insulators lose a little"
+    ),
+    "vacuum": Dielectric(loss_tangent=5e-5, source="from memory", seen=False),
+}
+"""Loss by dielectric: an estimate for a part nobody has measured."""
+CERAMIC_FULL = 30e-12
+"""Capacitance from which on a class 1 ceramic is allowed the loss above. [F]"""
 
 
 class Limit(StrEnum):
@@ -102,7 +157,7 @@ def rating(
     capacitance : float or array
         Capacitance. [F], > 0
     peak_voltage : float or array
-        Highest voltage, as a peak. [V], > 0
+        Highest voltage, as a peak, infinite if it does not matter. [V], > 0
     rms_current : float or array
         Highest current, infinite if it does not matter. [A rms], > 0
     dissipation : float or array
@@ -124,9 +179,10 @@ def rating(
     ------
     Derived here: V = V_peak / sqrt(2), V = I / (w C), V^2 w C tan(delta) = P (tan(delta) small).
     """
-    positive(frequency=frequency, capacitance=capacitance, peak_voltage=peak_voltage)
+    positive(frequency=frequency, capacitance=capacitance)
     at_least(0.0, loss_tangent=loss_tangent)
-    for name, value in {"rms_current": rms_current, "dissipation": dissipation}.items():
+    limits = {"peak_voltage": peak_voltage, "rms_current": rms_current, "dissipation": dissipation}
+    for name, value in limits.items():
         if not np.all(np.asarray(value, float) > 0.0):
             raise ValueError(f"{name} must be above 0")
     given = (frequency, capacitance, peak_voltage, rms_current, dissipation, loss_tangent)
@@ -139,12 +195,135 @@ def rating(
     by_heat = np.where(lossy, np.sqrt(power / (w * loss)), np.inf)
     limits = np.stack([by_voltage, by_current, by_heat])
     kinds = np.array([Limit.VOLTAGE.value, Limit.CURRENT.value, Limit.HEAT.value])
+    with np.errstate(invalid="ignore"):
+        to_current = current / (2.0 * np.pi * c * by_voltage)
+        to_heat = power / (2.0 * np.pi * loss * by_voltage**2)
     return Rating(
         voltage_limit=by_voltage,
         current_limit=by_current,
         heat_limit=by_heat,
         allowed=limits.min(axis=0),
         limited_by=kinds[limits.argmin(axis=0)],
-        voltage_to_current=current / (2.0 * np.pi * c * by_voltage),
-        voltage_to_heat=np.where(lossy, power / (2.0 * np.pi * loss * by_voltage**2), np.inf),
+        voltage_to_current=np.where(np.isinf(current), np.inf, to_current),
+        voltage_to_heat=np.where(lossy & np.isfinite(power), to_heat, np.inf),
     )
+
+
+def ceramic_q(capacitance: ArrayLike) -> FloatArray:
+    """Return the least Q a maker allows a class 1 ceramic capacitor, at 1 MHz.
+
+    Parameters
+    ----------
+    capacitance : float or array
+        Capacitance. [F], > 0
+
+    Returns
+    -------
+    float array
+        Q. [-]
+
+    Raises
+    ------
+    ValueError
+        If the capacitance is outside its limit; NaN counts as outside.
+
+    Source
+    ------
+    np0-sheet: 1000 from 30 pF on, below 400 and 20 for each pF.
+    """
+    positive(capacitance=capacitance)
+    picofarads = np.asarray(capacitance, float) * 1e12
+    return np.where(picofarads >= CERAMIC_FULL * 1e12, 1000.0, 400.0 + 20.0 * picofarads)[()]
+
+
+def stub_impedance(frequency: ArrayLike, line: Line, length: ArrayLike) -> NDArray[np.complex128]:
+    """Return the impedance of a line that is open at its far end.
+
+    Parameters
+    ----------
+    frequency : float or array
+        Frequency. [Hz], > 0
+    line : Line
+        The line.
+    length : float or array
+        Length. [m], > 0
+
+    Returns
+    -------
+    complex array
+        Impedance; capacitive up to a quarter wave. [ohm]
+
+    Raises
+    ------
+    ValueError
+        If any value is outside the limits above; NaN counts as outside.
+
+    Source
+    ------
+    Derived here: the telegraph equations with no current at the end, Z coth of gamma times length.
+    """
+    positive(length=length)
+    gamma, z_line = propagation(line, frequency)
+    return (z_line / np.tanh(gamma * np.asarray(length, float)))[()]
+
+
+def stub_length(frequency: ArrayLike, line: Line, reactance: ArrayLike) -> FloatArray:
+    """Return the length of an open stub, under a quarter wave, of a capacitive reactance; loss left out.
+
+    Parameters
+    ----------
+    frequency : float or array
+        Frequency. [Hz], > 0
+    line : Line
+        The line.
+    reactance : float or array
+        Reactance wanted, without its sign. [ohm], > 0
+
+    Returns
+    -------
+    float array
+        Length. [m]
+
+    Raises
+    ------
+    ValueError
+        If any value is outside the limits above; NaN counts as outside.
+
+    Source
+    ------
+    Derived here: Z0 cot(w s / v) without loss.
+    """
+    positive(frequency=frequency, reactance=reactance)
+    w = 2.0 * np.pi * np.asarray(frequency, float)
+    return line.velocity / w * np.arctan(np.asarray(line.z0, float) / np.asarray(reactance, float))
+
+
+def stub_end_voltage(frequency: ArrayLike, line: Line, length: ArrayLike) -> FloatArray:
+    """Return the voltage at the open end of a stub over that at its input: the largest on it.
+
+    Parameters
+    ----------
+    frequency : float or array
+        Frequency. [Hz], > 0
+    line : Line
+        The line.
+    length : float or array
+        Length, under a quarter wave. [m], > 0
+
+    Returns
+    -------
+    float array
+        Ratio. [1]
+
+    Raises
+    ------
+    ValueError
+        If any value is outside the limits above; NaN counts as outside.
+
+    Source
+    ------
+    Derived here: 1 / |cosh| of gamma times length.
+    """
+    positive(length=length)
+    gamma, _ = propagation(line, frequency)
+    return 1.0 / np.abs(np.cosh(gamma * np.asarray(length, float)))

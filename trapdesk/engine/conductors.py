@@ -37,6 +37,8 @@ class Material:
         Key of the source of the resistivity.
     seen : bool
         Whether the resistivity was read in that source, or recalled from memory.
+    density : float
+        Mass per volume; that of copper seen in nbs-handbook-100, the others from memory. [kg/m3]
     note : str
         What else is known about the values.
     """
@@ -47,6 +49,7 @@ class Material:
     expansion: float
     source: str
     seen: bool
+    density: float = 8890.0
     note: str = ""
 
 
@@ -71,6 +74,7 @@ MATERIALS: dict[str, Material] = {
     ),
     "silver": Material(
         name="silver",
+        density=10490.0,
         resistivity=1.59e-8,
         temperature_coefficient=3.8e-3,
         expansion=19e-6,
@@ -80,6 +84,7 @@ MATERIALS: dict[str, Material] = {
     ),
     "aluminium": Material(
         name="aluminium",
+        density=2700.0,
         resistivity=2.824e-8,
         temperature_coefficient=3.9e-3,
         expansion=23e-6,
@@ -89,6 +94,7 @@ MATERIALS: dict[str, Material] = {
     ),
     "bronze": Material(
         name="phosphor bronze",
+        density=8800.0,
         resistivity=9.5e-8,
         temperature_coefficient=1.5e-3,
         expansion=18e-6,
@@ -98,6 +104,7 @@ MATERIALS: dict[str, Material] = {
     ),
     "copper-clad steel": Material(
         name="copper-clad steel",
+        density=8200.0,
         resistivity=1.7241e-8,
         temperature_coefficient=3.93e-3,
         expansion=13e-6,

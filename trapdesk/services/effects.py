@@ -7,7 +7,6 @@ from dataclasses import replace
 
 from ..engine.ground import Ground
 from ..engine.ports import terminate
-from ..engine.resonator import impedance as tank_impedance
 from ..engine.wire import Wire
 from .figures import Effects
 from .moved import ASIDE, Moved
@@ -43,12 +42,8 @@ def _by_trap(response: Response) -> float | None:
         return None
     at = min(max(response.resonance, response.low), response.high) * ASIDE
     ports = response.ports.at(at).impedance
-    inductance, capacitance, coil, capacitor = trap.circuit(at)
     base, up, down = (
-        terminate(
-            ports, tank_impedance(at, inductance, capacitance / (1 + step) ** 2, coil, capacitor)
-        ).impedance.imag
-        for step in (0.0, TRAP_STEP, -TRAP_STEP)
+        terminate(ports, load).impedance.imag for load in trap.moved(at, (0.0, TRAP_STEP, -TRAP_STEP))
     )
     slope = (base[2] - base[0]) / (at[2] - at[0])
     return float((down[1] - up[1]) / slope / (2 * TRAP_STEP))

@@ -3,31 +3,54 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
+from ..coil_kinds import CableCoil
 from ..engine import resonator
-from ..engine.coils import (
-    BUILT_Q,
-    MOST_TURNS,
-    Coil,
-    Winding,
-    coil_at,
-    self_capacitance_range,
-    solenoid_turns,
-    winding,
-)
-from ..engine.conductors import MATERIALS
 from ..engine.stress import Stress, stress
 from ..errors import NoAnswer
 from ..fields import SOLVE
-from ..parts import GivenCoil, Solenoid, Trap
+from ..parts import Trap
+from .cable_coil import BuiltCable, CableNetwork, build_cable
+from .capacitors import BuiltCapacitor, Fitted, Limits, build_capacitor, cable_rating, is_open
+from .coils import NO_SELF_CAPACITANCE, BuiltCoil, Wound, build_coil
 
-COIL_DOUBT = 0.015
-"""How far the inductance of a coil wound by hand may be off, relative; a given one is taken as given."""
-NO_SELF_CAPACITANCE = (0.0, 0.0, 0.0)
+SETTLED = 1e-13
+LOOKS = 40
+
+
+@dataclass(frozen=True, kw_only=True)
+class Lumped:
+    """A coil and a capacitor side by side, and what the coil adds of its own."""
+
+    coil: BuiltCoil
+    capacitor: BuiltCapacitor
+
+    def circuit(self, frequency: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray, np.ndarray]:
+        """Return coil inductance, capacitance, coil and capacitor resistance at frequencies."""
+        inductance, resistance = self.coil.series(frequency)
+        w = 2 * np.pi * np.asarray(frequency)
+        z = self.capacitor.impedance(frequency)
+        if own := self.coil.own[1]:
+            z = z / (1 + 1j * w * own * z)
+        return inductance, -1 / (w * z.imag), resistance, np.maximum(z.real, 0.0)
+
+    def impedance(self, frequency: np.ndarray) -> np.ndarray:
+        """Return the impedance at frequencies, in ohm."""
+        return resonator.impedance(frequency, *self.circuit(frequency))
+
+    def moved(self, frequency: np.ndarray, steps: Sequence[float]) -> np.ndarray:
+        """Return the impedance with the resonance moved by parts of itself, by the capacitor: (steps, n)."""
+        inductance, capacitance, coil, capacitor = self.circuit(frequency)
+        factor = (1 + np.asarray(steps, float)[:, None]) ** 2
+        return resonator.impedance(frequency, inductance, capacitance / factor, coil, capacitor)
+
+    def stress(self, frequency: np.ndarray, current: np.ndarray) -> Stress:
+        """Return what its parts bear for an rms current through the whole trap."""
+        return stress(frequency, *self.circuit(frequency), current=current)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -35,35 +58,38 @@ class BuiltTrap:
     """A trap as it is computed with: anything with `impedance(frequency)` can stand in its place.
 
     `inductance` [H] is that at the trap's own resonance [Hz]; `capacitance` [F] is what is fitted plus what
-    the coil adds. `doubt` is the relative doubt of the inductance, `q_factors` what a built trap may reach of
-    the Q computed.
+    the coil adds; of a trap of cable both are those of the plain circuit that is alike near resonance.
+    `doubt` is the relative doubt of the inductance, `q_factors` what a built trap may reach of the Q
+    computed.
     """
 
     resonance: float
     inductance: float
     capacitance: float
     fitted: float
-    coil_series: Callable[[np.ndarray], tuple[np.ndarray, np.ndarray]]
-    capacitor_q: float
-    wound: Winding | None
+    network: Lumped | CableNetwork
+    wound: Wound | None
+    coil: BuiltCoil | None
+    capacitor: BuiltCapacitor | None
     self_capacitance: tuple[float, float, float]
     doubt: float
     q_factors: tuple[float, float]
 
-    def circuit(self, frequency: np.ndarray) -> tuple[np.ndarray, float, np.ndarray, np.ndarray | float]:
+    def circuit(self, frequency: np.ndarray) -> tuple:
         """Return coil inductance, capacitance, coil and capacitor resistance at frequencies."""
-        inductance, resistance = self.coil_series(frequency)
-        lossless = math.isinf(self.capacitor_q)
-        esr = 0.0 if lossless else 1 / (2 * np.pi * frequency * self.capacitance * self.capacitor_q)
-        return inductance, self.capacitance, resistance, esr
+        return self.network.circuit(frequency)
 
     def impedance(self, frequency: np.ndarray) -> np.ndarray:
         """Return the impedance of the trap at frequencies, in ohm."""
-        return resonator.impedance(frequency, *self.circuit(frequency))
+        return self.network.impedance(frequency)
+
+    def moved(self, frequency: np.ndarray, steps: Sequence[float]) -> np.ndarray:
+        """Return the impedance with the trap's resonance moved by parts of itself, (steps, n), in ohm."""
+        return self.network.moved(frequency, steps)
 
     def stress(self, frequency: np.ndarray, current: np.ndarray) -> Stress:
         """Return what its parts bear for an rms current through the whole trap."""
-        return stress(frequency, *self.circuit(frequency), current=current)
+        return self.network.stress(frequency, current)
 
     @property
     def q(self) -> float:
@@ -75,38 +101,28 @@ class BuiltTrap:
 
 def build(trap: Trap) -> BuiltTrap:
     """Return the trap with its solved value found; NoAnswer when there is none."""
-    capacitance = trap.capacitor.capacitance
+    if isinstance(trap.coil, CableCoil):
+        return _of_cable(trap.coil, None if trap.resonance is SOLVE else trap.resonance)
+    if trap.resonance is SOLVE:
+        return _with_resonance_found(trap)
     resonance = trap.resonance
-    if isinstance(trap.coil, GivenCoil):
-        return _with_given_coil(trap, trap.coil, resonance, capacitance)
-    return _with_solenoid(trap, trap.coil, resonance, capacitance)
+    if is_open(trap.capacitor):
+        return _with_capacitor_found(trap, resonance)
+    capacitor = build_capacitor(trap.capacitor)
+    fitted = _farads(capacitor, resonance)
+    coil = build_coil(trap.coil, resonance, lambda own: _partner(resonance, fitted + own), resonance)
+    return _built(resonance, coil, capacitor)
 
 
-def _with_given_coil(trap: Trap, coil: GivenCoil, resonance, capacitance) -> BuiltTrap:  # noqa: ANN001
-    inductance = coil.inductance
-    if resonance is SOLVE:
-        resonance = float(resonator.lc_resonance(inductance, capacitance))
-    elif inductance is SOLVE:
-        inductance = _partner(resonance, capacitance)
-    else:
-        capacitance = _partner(resonance, inductance)
-    at_resonance = 2 * math.pi * resonance * inductance / coil.q
-
-    def series(frequency: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-        return np.full_like(frequency, inductance), at_resonance * np.sqrt(frequency / resonance)
-
-    return BuiltTrap(
-        resonance=resonance,
-        inductance=inductance,
-        capacitance=capacitance,
-        fitted=capacitance,
-        coil_series=series,
-        capacitor_q=trap.capacitor.q or math.inf,
-        wound=None,
-        self_capacitance=NO_SELF_CAPACITANCE,
-        doubt=0.0,
-        q_factors=(1.0, 1.0),
-    )
+def _farads(capacitor: BuiltCapacitor, frequency: float) -> float:
+    """Return what capacitance a capacitor is at a frequency; NoAnswer where it is none."""
+    reactance = float(np.imag(capacitor.impedance(np.float64(frequency))))
+    if not reactance < 0:
+        where = next(
+            (p.key for p, _, _ in capacitor.shares(np.float64(frequency)) if p.length), capacitor.key
+        )
+        raise NoAnswer("stub_is_too_long", where, {"trap_hz": frequency}, "less than a quarter wave of it")
+    return -1 / (2 * math.pi * frequency * reactance)
 
 
 def _partner(resonance: float, value: float) -> float:
@@ -114,78 +130,76 @@ def _partner(resonance: float, value: float) -> float:
     return 1 / ((2 * math.pi * resonance) ** 2 * value)
 
 
-def _with_solenoid(trap: Trap, coil: Solenoid, resonance, capacitance) -> BuiltTrap:  # noqa: ANN001
-    diameter = coil.former + coil.wire
-    resistivity = MATERIALS[coil.material].resistivity
-    turns = coil.turns
-    if turns is SOLVE:
-        turns = _turns(coil, diameter, resistivity, resonance, capacitance)
-    wound = winding(diameter, coil.pitch, coil.wire, turns)
-    own = self_capacitance_range(diameter, wound.length)
+def _with_capacitor_found(trap: Trap, resonance: float) -> BuiltTrap:
+    coil = build_coil(trap.coil, resonance, None, resonance)
+    total = _partner(resonance, float(coil.series(np.float64(resonance))[0]))
+    left = total - coil.own[1]
+    if left <= 0:
+        raise NoAnswer(
+            "coil_resonates_below_by_itself",
+            "antenna.trap.capacitor.capacitance",
+            {"self_capacitance_f": coil.own[1], "needed_f": total},
+            "fewer turns or a smaller former",
+        )
+    reactance = 1 / (2 * math.pi * resonance * left)
+    capacitor = build_capacitor(trap.capacitor, frequency=resonance, reactance=reactance)
+    return _built(resonance, coil, capacitor)
 
-    def smooth(frequency: np.ndarray) -> Coil:
-        return coil_at(wound, frequency, resistivity)
 
-    def series(frequency: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-        at = smooth(frequency)
-        return at.inductance, at.resistance / coil.q_share
+def _with_resonance_found(trap: Trap) -> BuiltTrap:
+    """Find where the reactances of both are equal; they change little with frequency."""
+    capacitor = build_capacitor(trap.capacitor)
+    # A first look at a frequency where everything that varies has nearly its value.
+    at = 1e6
+    coil = build_coil(trap.coil, at, None, at)
+    for _ in range(LOOKS):
+        fitted = _farads(capacitor, min(at, 1e8))
+        inductance = float(coil.series(np.float64(at))[0])
+        found = float(resonator.lc_resonance(inductance, fitted + coil.own[1]))
+        if abs(found / at - 1) < SETTLED:
+            break
+        at = found
+    return _built(at, build_coil(trap.coil, at, None, at), capacitor)
 
-    if capacitance is SOLVE:
-        total = _partner(resonance, float(smooth(np.float64(resonance)).inductance))
-        capacitance = total - own[1]
-        if capacitance <= 0:
-            raise NoAnswer(
-                "coil_resonates_below_by_itself",
-                "antenna.trap.capacitor.capacitance",
-                {"self_capacitance_f": own[1], "needed_f": total},
-                "fewer turns or a smaller former",
-            )
-    total = capacitance + own[1]
-    if resonance is SOLVE:
-        resonance = float(resonator.lc_resonance(wound.inductance, total))
-        for _ in range(3):
-            resonance = float(resonator.lc_resonance(smooth(np.float64(resonance)).inductance, total))
+
+def _built(resonance: float, coil: BuiltCoil, capacitor: BuiltCapacitor) -> BuiltTrap:
+    fitted = _farads(capacitor, resonance)
     return BuiltTrap(
         resonance=resonance,
-        inductance=float(smooth(np.float64(resonance)).inductance),
-        capacitance=total,
-        fitted=capacitance,
-        coil_series=series,
-        capacitor_q=trap.capacitor.q or math.inf,
-        wound=wound,
-        self_capacitance=own,
-        doubt=COIL_DOUBT,
-        q_factors=(BUILT_Q[0] / BUILT_Q[1], BUILT_Q[2] / BUILT_Q[1]),
+        inductance=float(coil.series(np.float64(resonance))[0]),
+        capacitance=fitted + coil.own[1],
+        fitted=fitted,
+        network=Lumped(coil=coil, capacitor=capacitor),
+        wound=coil.wound,
+        coil=coil,
+        capacitor=capacitor,
+        self_capacitance=coil.own if coil.wound is not None else NO_SELF_CAPACITANCE,
+        doubt=coil.doubt,
+        q_factors=coil.q_factors,
     )
 
 
-def _turns(coil: Solenoid, diameter: float, resistivity: float, resonance: float, fitted: float) -> float:
-    """Return the turns that bring the trap to its resonance with what the coil's own capacitance adds."""
-
-    def miss(turns: float) -> float:
-        wound = winding(diameter, coil.pitch, coil.wire, turns)
-        inductance = float(coil_at(wound, resonance, resistivity).inductance)
-        total = fitted + self_capacitance_range(diameter, wound.length)[1]
-        return math.log(inductance / _partner(resonance, total))
-
-    wanted = _partner(resonance, fitted + self_capacitance_range(diameter, diameter)[1])
-    try:
-        turns = solenoid_turns(wanted, diameter, coil.pitch, coil.wire, resonance, resistivity)
-        # L goes with about the 1.7th power of the turns: a start for secant steps in the logarithm.
-        x, step = math.log(turns), -miss(turns) / 1.7
-        old = miss(turns)
-        for _ in range(12):
-            x += step
-            new = miss(math.exp(x))
-            if abs(new) < 1e-9 or new == old:
-                break
-            step, old = -new * step / (new - old), new
-        return math.exp(x)
-    except ValueError:
-        few = winding(diameter, coil.pitch, coil.wire, 1.0).inductance > wanted
-        raise NoAnswer(
-            "no_such_coil",
-            "antenna.trap.coil.turns",
-            {"wanted_h": wanted, "turns_bound": 1 if few else MOST_TURNS},
-            "a smaller former or less capacitance" if few else "a larger former or more capacitance",
-        ) from None
+def _of_cable(coil: CableCoil, resonance: float | None) -> BuiltTrap:
+    built: BuiltCable = build_cable(coil, resonance)
+    network = built.network
+    inductance, capacitance, _ = network.equivalent
+    rating = Fitted(
+        key="antenna.trap.coil",
+        name=coil.cable,
+        impedance=network.impedance,
+        limits=Limits(voltage=cable_rating(coil), reach=network.inside),
+        length=network.length,
+    )
+    return BuiltTrap(
+        resonance=network.resonance if resonance is None else resonance,
+        inductance=inductance,
+        capacitance=capacitance,
+        fitted=capacitance,
+        network=network,
+        wound=built.wound,
+        coil=None,
+        capacitor=rating,
+        self_capacitance=built.own,
+        doubt=built.doubt,
+        q_factors=built.q_factors,
+    )

@@ -1,0 +1,113 @@
+"""What closing, water, sun, cold and its own heat do to a trap's resonance, and through it to the bands."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..coil_kinds import Solenoid
+from ..design import Design
+from ..engine.coils import temperature_drift
+from ..engine.conductors import MATERIALS
+from ..engine.heat import drifted
+from ..engine.ports import polynomial_weights, terminate
+from ..former_kinds import FORMER_MATERIALS
+from ..parts import Sealing
+from .cable_coil import CableNetwork
+from .capacitors import drift_of, weights
+from .figures import Figures, Heat, Shift
+from .response import MARGIN, swr
+from .trap import BuiltTrap
+
+POINTS = 121
+
+
+def drifts(design: Design, trap: BuiltTrap) -> tuple[float, float]:
+    """Return the temperature coefficients of inductance and of all capacitance, unknown ones as 0, in 1/K."""
+    if isinstance(trap.network, CableNetwork):
+        # The shield follows the former; of the dielectric nothing is listed.
+        return FORMER_MATERIALS[design.antenna.trap.coil.former_material].expansion, 0.0
+    coil, part = trap.coil, design.antenna.trap.coil
+    of_coil = coil.drift or 0.0
+    if isinstance(part, Solenoid) and coil.winding is not None:
+        material = MATERIALS[part.material]
+        of_coil = float(
+            temperature_drift(
+                coil.winding,
+                trap.resonance,
+                material.resistivity,
+                FORMER_MATERIALS[part.former_material].expansion,
+                material.expansion,
+                material.temperature_coefficient,
+            )
+        )
+    share = trap.fitted / trap.capacitance
+    return of_coil, drift_of(trap.capacitor, trap.resonance)[0] * share
+
+
+def _steps(design: Design, trap: BuiltTrap, heat: Heat | None) -> Iterator[tuple[str, float]]:
+    """Yield what happens and by which part of itself the resonance moves."""
+    weather = design.antenna.trap.weather
+    if weather.sealing is not Sealing.NONE:
+        yield "sealing", -weather.sealing_shift
+    yield "rain", -weather.rain_shift
+    yield "ice", -weather.ice_shift
+    of_coil, of_capacitor = drifts(design, trap)
+    warmth = [("sun", weather.in_sun - weather.built_at), ("cold", weather.in_cold - weather.built_at)]
+    if heat is not None:
+        warmth.append(("heat", heat.over))
+    for what, kelvin in warmth:
+        yield what, float(drifted(1.0, of_coil * kelvin, of_capacitor * kelvin)) - 1
+
+
+def varies(trap: BuiltTrap) -> float:
+    """Return by how much the capacitance may change over temperature for class 2 ceramics in it, relative."""
+    return sum(
+        weight * max(fitted.varies)
+        for fitted, weight in weights(trap.capacitor, trap.resonance)
+        if fitted.varies is not None
+    )
+
+
+def shifts(figures: Figures, trap: BuiltTrap, heat: Heat | None) -> tuple[Shift, ...]:
+    """Return what each thing does by itself to a trap that is as it was built.
+
+    Sealing is counted from the resonance before it: a trap brought to where the design says beforehand falls
+    by so much.
+    """
+    design = figures.design
+    steps = list(_steps(design, trap, heat))
+    dips: dict[str, np.ndarray] = {}
+    worst: dict[str, np.ndarray] = {}
+    for role, band in design.bands.items():
+        ports = figures.ports[role]
+        low, high = band.low * (1 - MARGIN), band.high * (1 + MARGIN)
+        frequency = np.linspace(low, high, POINTS)
+        at = np.append(frequency, np.linspace(*band.wanted_edges, 9))
+        z = np.tensordot(polynomial_weights(ports.frequency, at), ports.impedance, 1)
+        loads = trap.moved(at, [0.0, *(step for _, step in steps)])
+        each = np.array([swr(terminate(z, load).impedance, design.station.reference) for load in loads])
+        found = np.array([_dip(frequency, s[:POINTS]) for s in each])
+        dips[role] = found[1:] - found[0]
+        worst[role] = each[1:, POINTS:].max(axis=1)
+    return tuple(
+        Shift(
+            what=what,
+            trap=step * trap.resonance,
+            dips={role: float(dips[role][n]) for role in dips},
+            swr={role: float(worst[role][n]) for role in worst},
+        )
+        for n, (what, step) in enumerate(steps)
+    )
+
+
+def _dip(frequency: np.ndarray, ratio: np.ndarray) -> float:
+    """Return where the SWR is least, by the parabola of the squared reflection; NaN at an end."""
+    i = int(np.argmin(ratio))
+    if i in (0, frequency.size - 1):
+        return float("nan")
+    g = ((ratio[i - 1 : i + 2] - 1) / (ratio[i - 1 : i + 2] + 1)) ** 2
+    bend = g[0] - 2 * g[1] + g[2]
+    shift = 0.5 * (g[0] - g[2]) / bend if bend > 0 else 0.0
+    return float(frequency[i] + shift * (frequency[1] - frequency[0]))
