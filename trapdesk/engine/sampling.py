@@ -1,6 +1,6 @@
 """Random numbers that are the same everywhere: raw bits of a fixed generator, our own transforms of them.
 
-A stream is a seed and a number; trial n of a stream is the same however many are drawn, and in whatever pieces.
+A stream is a seed and a number; trial n of a stream is the same however many are drawn, in any pieces.
 """
 
 from __future__ import annotations

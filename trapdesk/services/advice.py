@@ -9,23 +9,27 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from ..design import Design, with_value
+from ..doubts import Meaning
 from ..errors import NoAnswer
 from ..fields import SOLVE
 from ..parts import GivenCapacitor
 from ..rules import check
 from .beliefs import Belief
-from .ensemble import STAGES, Ensemble, Stage, reflection_of
+from .ensemble import Ensemble, reflection_of
 from .figures import Figures
-from .findings import TRAP_VOLTAGE_MARGIN
 from .solve import solve
-from .tolerance import BLOCK, SEED, Yield, allowances, pilot_change, run_stage, stage_yield
+from .tolerance import BLOCK, SEED, Yield, allowances, run_stage, stage_yield
 from .trap import build
+from .trap_findings import TRAP_VOLTAGE_MARGIN
+from .trial_traps import STAGES, Stage
 
 TRIALS = 2000
 SEARCH_TRIALS = 400
 TIGHT_CAPACITOR = 0.01
 """What a good capacitor is bought to. [1]"""
-MATCHED = ("coil", "turns", "pitch", "former", "self_capacitance", "capacitor", "q")
+METER = 0.01
+"""How well a meter tells an inductance or a capacitance. [1], common practice, no source"""
+WOUND_PARTS = ("turns", "pitch", "former")
 ROUNDS = 5
 RESONANCE_STEP, RATIO_STEP = 0.004, 0.12
 """First steps of the search in trap resonance and in its capacitance, both relative."""
@@ -72,10 +76,12 @@ def _tighter(plan: _Plan) -> _Plan | None:
 
 
 def _matched(plan: _Plan) -> _Plan | None:
-    if plan.stage.tuned or not any(name in plan.varying for name in MATCHED):
+    """Measure coils and capacitors, put like to like, and trim the coils to what was measured."""
+    if plan.stage.tuned or "capacitor" not in plan.varying:
         return None
-    alike = {n: replace(b, alike=1.0) if n in MATCHED else b for n, b in plan.varying.items()}
-    return replace(plan, varying=alike)
+    known = Belief(size=METER, meaning=Meaning.TWO_SIGMA, pair=True, alike=1.0)
+    rest = {name: belief for name, belief in plan.varying.items() if name not in WOUND_PARTS}
+    return replace(plan, varying={**rest, "capacitor": known, "coil": known})
 
 
 def _tuned(plan: _Plan) -> _Plan | None:
@@ -172,7 +178,7 @@ class _Search:
                 self.keys["antenna.trap.capacitor.capacitance"] = (trap.fitted, RATIO_STEP * trap.fitted)
         for role in self.ensemble.unknown_wires.values():
             band = dict(design.bands.items())[role]
-            low, high = band.wanted
+            low, high = band.wanted_edges
             self.keys[f"bands.{role}.aim"] = (band.target, AIM_STEP * (high - low))
 
     def design_at(self, values: Mapping[str, float]) -> Design:
@@ -187,7 +193,7 @@ class _Search:
         return design
 
     def worth(self, values: Mapping[str, float]) -> float:
-        """Return the share of trials within the limit, counted gradually; nothing for what cannot be built."""
+        """Return the share of trials within the limit, counted gradually; least for what cannot be built."""
         design = self.design_at(values)
         if check(design):
             return -math.inf
@@ -217,7 +223,7 @@ class _Search:
         return float((1 / (1 + np.exp(-np.clip(margin / SOFTNESS, -50, 50)))).mean())
 
     def best(self) -> dict[str, float]:
-        """Return the values of largest worth: one after the other up and down, the steps halved every round."""
+        """Return the values of largest worth, sought one after the other, the steps halved every round."""
         values = {key: start for key, (start, _) in self.keys.items()}
         found = self.worth(values)
         steps = {key: step for key, (_, step) in self.keys.items()}
@@ -239,7 +245,7 @@ class _Search:
     def _bounded(self, key: str, value: float) -> float:
         start, _ = self.keys[key]
         if key.endswith(".aim"):
-            low, high = dict(self.figures.design.bands.items())[key.split(".")[1]].wanted
+            low, high = dict(self.figures.design.bands.items())[key.split(".")[1]].wanted_edges
             return min(max(value, low), high)
         far = FARTHEST[0] if key.endswith("resonance") else FARTHEST[1]
         return min(max(value, start * math.exp(-far)), start * math.exp(far))
@@ -253,9 +259,7 @@ def _dry_of(stage: Stage) -> Stage:
     return replace(stage, wet=False)
 
 
-def for_yield(
-    figures: Figures, *, stage: str = "aimed", trials: int = BLOCK, seed: int = SEED
-) -> ForYield:
+def for_yield(figures: Figures, *, stage: str = "aimed", trials: int = BLOCK, seed: int = SEED) -> ForYield:
     """Return a design whose trap, ratio of L to C and aims are chosen for the largest yield at a stage.
 
     What is set in the design is where the search begins; wires stay solved for the aims. NoAnswer where a
@@ -287,13 +291,10 @@ def for_yield(
         for role in figures.bands
         if figures.bands[role].worst_stress is not None
     }
-    return ForYield(
-        design=changed, stage=stage, changes=changes, before=before, after=after, prices=prices
-    )
+    return ForYield(design=changed, stage=stage, changes=changes, before=before, after=after, prices=prices)
 
 
 def _told(value: float) -> float:
     """Return a value to the four digits in which it is told, so that what is told is what was judged."""
     digits = 3 - math.floor(math.log10(abs(value)))
     return round(value, digits) if digits <= 0 else round(value * 10.0**digits) / 10.0**digits
-

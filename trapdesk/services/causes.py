@@ -10,7 +10,8 @@ import numpy as np
 
 from ..doubts import SIGMAS
 from .beliefs import CAUSES, Belief, Draws
-from .ensemble import Ensemble, Stage
+from .ensemble import Ensemble
+from .trial_traps import Stage
 
 FEWEST = 200
 """Trials below which shares of variance tell nothing. [1]"""
@@ -101,7 +102,7 @@ class Regression:
 
 
 def corners(varying: Mapping[str, Belief], draws: Draws, results: np.ndarray) -> dict[str, np.ndarray]:
-    """Return two trials a result (trials, results), every cause at the end of its doubt that raises or lowers it."""
+    """Return two trials a result, every cause at that end of its doubt that raises it, or lowers it."""
     moved = results - results.mean(axis=0)
     found = {}
     for name, belief in varying.items():
@@ -125,10 +126,10 @@ def deviation(belief: Belief) -> float:
 
 def trap_first_order(ensemble: Ensemble) -> float | None:
     """Return the scatter of one trap's resonance as built, by df/f = -(dL/L + dC/C)/2; relative."""
-    trap = ensemble.trap
-    if trap is None:
+    if ensemble.of_traps is None:
         return None
-    by_turns, by_pitch, by_diameter = ensemble.exponents
+    trap = ensemble.of_traps.trap
+    by_turns, by_pitch, by_diameter = ensemble.of_traps.exponents
     own = (trap.capacitance - trap.fitted) / trap.capacitance
     low, _, high = trap.self_capacitance
     rates = {
@@ -146,7 +147,7 @@ def trap_first_order(ensemble: Ensemble) -> float | None:
 
 
 def one_at_a_time(ensemble: Ensemble, stage: Stage) -> dict[str, float]:
-    """Return the scatter of each band's dip as cut if every cause acted by itself and in proportion, in Hz."""
+    """Return the scatter of each band's dip if every cause acted by itself and in proportion, in Hz."""
     names = list(ensemble.varying)
     trials = ensemble.nominal(4 * max(len(names), 1))
     weights = np.zeros(len(names) * 2)
@@ -166,7 +167,7 @@ def one_at_a_time(ensemble: Ensemble, stage: Stage) -> dict[str, float]:
                 weights[2 * i] = (1 + belief.alike) / 2
     count = 4 * max(len(names), 1)
     features = ensemble.features(trials, count, None)
-    traps = None if ensemble.trap is None else ensemble.traps(trials, stage, count)
+    traps = ensemble.traps(trials, stage, count)
     found = {}
     for role in ensemble.roles:
         dips = np.concatenate([piece.dip for piece in ensemble.outcome(role, features, [traps])[0]])

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from functools import cached_property
@@ -11,17 +10,15 @@ from typing import Any
 import numpy as np
 
 from ..design import Design
-from ..engine import resonator
-from ..engine.coil_formulas import sheet_inductance
 from ..engine.ports import terminate, terminate_entries
-from ..fields import SOLVE
-from ..parts import CableCoil, Toroid
-from .beliefs import TWO_THIRDS, Belief, Draws, beliefs, draw, drifts
+from .aiming import root
+from .beliefs import TWO_THIRDS, Belief, Draws, beliefs, draw
 from .feed import Path, path_of
 from .figures import Figures
 from .nearby import Nearby, Table
 from .response import MARGIN
 from .trap import BuiltTrap, build
+from .trial_traps import STAGES, Circuit, Stage, Traps, TrialTraps
 from .tuning import TunerSetting
 
 POINTS = 41
@@ -29,49 +26,17 @@ POINTS = 41
 WANTED_POINTS = 9
 CHUNK = 200
 """Trials that are worked on at once: their arrays stay near the processor."""
-AIM_STEPS = 8
-NEAR_ENOUGH = 0.3
-"""Reactance at the aim that counts as none. [ohm]"""
 FARTHEST = 0.08
 """How far a wire is changed on the way to the aim, as a share of the side."""
 WIRES = ("inner", "end")
 
 
 @dataclass(frozen=True, kw_only=True)
-class Stage:
-    """What has been done by then: traps tuned on the bench, before or after sealing; wires brought to aim."""
-
-    name: str
-    tuned: bool = False
-    sealed: bool = False
-    sealed_first: bool = False
-    aimed: bool = False
-    wet: bool = False
-
-
-STAGES: tuple[Stage, ...] = (
-    Stage(name="as_cut"),
-    Stage(name="tuned", tuned=True, sealed=True),
-    Stage(name="aimed", tuned=True, sealed=True, aimed=True),
-    Stage(name="wet", tuned=True, sealed=True, aimed=True, wet=True),
-)
-
-
-@dataclass(frozen=True, kw_only=True)
-class Traps:
-    """The traps of many trials, arrays (2, trials): inductance over nominal, capacitance [F], Q over nominal."""
-
-    inductance: np.ndarray
-    capacitance: np.ndarray
-    q: np.ndarray
-
-
-@dataclass(frozen=True, kw_only=True)
 class Outcome:
     """What one band does in many trials, arrays (trials,), and its reflection (trials, frequencies).
 
-    `worst` and `aim` are squared reflections of the wanted part and at the aim; volts are peak, the worse trap
-    at its worst in the wanted part; `loss` is the share of power that both traps turn to heat at the aim.
+    `worst` and `aim` are squared reflections in the wanted part and at the aim; volts are peak, of the worse
+    trap at its worst in the wanted part; `loss` is the share of power that both traps heat with at the aim.
     """
 
     dip: np.ndarray
@@ -92,15 +57,6 @@ def swr_of(reflection: np.ndarray) -> np.ndarray:
 def reflection_of(swr: float) -> float:
     """Return the squared reflection of a standing wave ratio."""
     return ((swr - 1) / (swr + 1)) ** 2
-
-
-@dataclass(frozen=True, kw_only=True)
-class Circuit:
-    """The nominal trap at some frequencies: inductance and resistance beside its capacitance, all loss in it."""
-
-    frequency: np.ndarray
-    inductance: np.ndarray
-    resistance: np.ndarray
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -142,13 +98,13 @@ class Ensemble:
     def with_beliefs(self, varying: Mapping[str, Belief]) -> Ensemble:
         """Return the ensemble with other beliefs on the same ports."""
         other = object.__new__(Ensemble)
-        cached = ("_slopes", "_aim_tables", "_aim_circuits", "exponents", "_drifts")
+        cached = ("_slopes", "_aim_tables", "_aim_circuits", "of_traps")
         other.__dict__.update({name: value for name, value in self.__dict__.items() if name not in cached})
         other.varying = dict(varying)
         return other
 
     def with_trap(self, design: Design, trap: BuiltTrap) -> Ensemble:
-        """Return the ensemble with another trap and other aims in the same wire, which is to be brought to aim."""
+        """Return the ensemble with another trap and other aims in the same wire."""
         other = self.with_beliefs(self.varying)
         other.design, other.trap = design, trap
         other._bands = dict(design.bands.items())
@@ -205,16 +161,16 @@ class Ensemble:
         return {"watts": self.path.passage(frequency, feed).arriving, "setting": setting}
 
     def _circuit(self, frequency: np.ndarray) -> Circuit | None:
-        if self.trap is None:
-            return None
-        # Whatever the trap is made of, beside its capacitance there is a coil that makes up its impedance.
-        w = 2 * np.pi * frequency
-        coil = 1 / (1 / self.trap.impedance(frequency) - 1j * w * self.trap.capacitance)
-        return Circuit(
-            frequency=frequency,
-            inductance=coil.imag / w,
-            resistance=np.maximum(coil.real, 0.0),
-        )
+        return None if self.of_traps is None else self.of_traps.circuit(frequency)
+
+    @cached_property
+    def of_traps(self) -> TrialTraps | None:
+        """The traps of the trials, None without traps."""
+        return None if self.trap is None else TrialTraps(self.design, self.trap, self.varying)
+
+    def traps(self, draws: Draws, stage: Stage, count: int) -> Traps | None:
+        """Return the traps of trials at a stage, None without traps."""
+        return None if self.of_traps is None else self.of_traps.made(draws, stage, count)
 
     def draws(self, seed: int, begin: int, count: int) -> dict[str, np.ndarray]:
         """Return trials as values of what varies."""
@@ -227,101 +183,6 @@ class Ensemble:
             middle = sum(belief.ends) / 2 if name == "sealing" else 0.0
             found[name] = np.full((count, 2) if belief.pair else count, middle)
         return found
-
-    # The traps
-
-    @cached_property
-    def exponents(self) -> tuple[float, float, float]:
-        """Powers by which a wound coil's inductance follows turns, pitch and diameter, by the current sheet."""
-        wound = self.trap.wound if self.trap is not None else None
-        if wound is None:
-            return 0.0, 0.0, 0.0
-        if wound.pitch <= 0 or isinstance(self.design.antenna.trap.coil, Toroid):
-            return 2.0, 0.0, 0.0
-        given = (wound.diameter, wound.pitch, wound.turns)
-
-        def log(diameter: float, pitch: float, turns: float) -> float:
-            return math.log(float(sheet_inductance(diameter, turns * pitch, turns)))
-
-        step = 1e-3
-        rates = [
-            (log(*(v * (1 + step * (i == j)) for j, v in enumerate(given))) - log(*given)) / math.log1p(step)
-            for i in range(3)
-        ]
-        return rates[2], rates[1], rates[0]
-
-    @cached_property
-    def _drifts(self) -> tuple[float, float]:
-        assert self.trap is not None
-        return drifts(self.design, self.trap)
-
-    def traps(self, draws: Draws, stage: Stage, count: int) -> Traps:
-        """Return the traps of trials at a stage."""
-        trap, part = self.trap, self.design.antenna.trap
-        assert trap is not None and part is not None
-
-        def of(name: str) -> np.ndarray | float:
-            return draws[name].T if name in draws else 0.0
-
-        turns = trap.wound.turns if trap.wound is not None else 1.0
-        by_turns, by_pitch, by_diameter = self.exponents
-        inductance = np.ones((2, count)) * (1 + of("coil"))
-        longer = np.log1p(of("turns") / turns)
-        log = by_turns * longer + by_pitch * np.log1p(of("pitch")) + by_diameter * np.log1p(of("former"))
-        inductance = inductance * np.exp(log)
-        own = trap.capacitance - trap.fitted
-        capacitance = trap.fitted * (1 + of("capacitor")) + np.zeros((2, count))
-        if isinstance(part.coil, CableCoil):
-            # More turns of cable are more capacitance as well.
-            capacitance = capacitance * np.exp(longer)
-        if own:
-            low, middle, high = trap.self_capacitance
-            x = np.asarray(of("self_capacitance"))
-            factor = np.where(x > 0, math.log(high / middle), math.log(middle / low))
-            capacitance = capacitance + own * np.exp(x * factor)
-        sealing = of("sealing")
-        if stage.tuned:
-            belief = self.varying.get("sealing")
-            allowed = 1.0
-            if belief is not None and stage.sealed and not stage.sealed_first:
-                # Who tunes before sealing tunes as much too high as sealing takes in the middle.
-                allowed = 1 - sum(belief.ends) / 2
-            wanted = (1 + of("tuning")) / allowed
-            inductance = trap.capacitance / capacitance / wanted**2
-        if stage.sealed and not stage.sealed_first:
-            capacitance = capacitance / (1 - sealing) ** 2
-        weather = "weather" if stage.wet else "temperature"
-        if weather in draws:
-            of_coil, of_capacitor = self._drifts
-            inductance = inductance * (1 + of_coil * draws[weather])
-            capacitance = capacitance * (1 + of_capacitor * draws[weather])
-        if stage.wet:
-            capacitance = capacitance / (1 - of("rain")) ** 2
-        return Traps(inductance=inductance, capacitance=capacitance, q=np.ones((2, count)) * (1 + of("q")))
-
-    def trap_resonance(self, traps: Traps) -> np.ndarray:
-        """Return the resonance of the traps (2, trials), in Hz."""
-        assert self.trap is not None
-        return resonator.lc_resonance(self.trap.inductance * traps.inductance, traps.capacitance)
-
-    def trap_impedances(
-        self, circuit: Circuit, traps: Traps, pick: slice = slice(None), frequency: np.ndarray | None = None
-    ) -> list[np.ndarray]:
-        """Return the impedance of both traps of trials (trials, frequencies); at frequencies near the circuit's."""
-        found = []
-        for i in range(2):
-            factor, capacitance = traps.inductance[i, pick, None], traps.capacitance[i, pick, None]
-            found += [
-                resonator.impedance(
-                    circuit.frequency if frequency is None else frequency,
-                    circuit.inductance * factor,
-                    capacitance,
-                    circuit.resistance * (factor / traps.q[i, pick, None]),
-                )
-            ]
-        return found
-
-    # The wires
 
     def places(
         self, draws: Draws, count: int, change: Mapping[str, np.ndarray] | None = None
@@ -380,7 +241,7 @@ class Ensemble:
                 found += [entries[:, 0].imag]
                 continue
             frequency = aim * (1 + off[:, None])
-            loads = self.trap_impedances(self._aim_circuits[role], traps, frequency=frequency)
+            loads = self.of_traps.impedances(self._aim_circuits[role], traps, frequency=frequency)
             found += [terminate_entries(*entries.T, *(load[:, 0] for load in loads))[0].imag]
         return np.column_stack(found)
 
@@ -397,7 +258,7 @@ class Ensemble:
         NaN marks trials in which no length near the computed one brings it to the aim. `free` is the answer
         without `most`, where it is known.
         """
-        traps = None if self.trap is None else self.traps(draws, stage, count)
+        traps = self.traps(draws, stage, count)
         places = self.places(draws, count)
         names = list(self.unknown_wires)
         held: dict[str, np.ndarray] = {}
@@ -413,7 +274,7 @@ class Ensemble:
                     # What the held wire leaves to the other one only concerns the trials where it was held.
                     pick = np.flatnonzero(over)
                     some = {key: value[pick] for key, value in places.items()}
-                    part = None if traps is None else _part(traps, pick)
+                    part = None if traps is None else traps.part(pick)
                     mine = {key: value[pick] for key, value in held.items()}
                     own = {key: value[pick] for key, value in draws.items()}
                     again = self._newton(some, part, own, pick.size, rest, mine)
@@ -432,9 +293,8 @@ class Ensemble:
         names: list[str],
         held: Mapping[str, np.ndarray],
     ) -> dict[str, np.ndarray]:
-        """Bring the reactances at the aims to nothing by changing wires; slopes are learned on the way."""
+        """Bring the reactances at the aims to nothing by changing wires; see `aiming.root`."""
         aims = [list(self.unknown_wires).index(name) for name in names]
-        bound = FARTHEST * self.wire.side
 
         def miss(change: np.ndarray) -> np.ndarray:
             there = dict(places)
@@ -442,38 +302,9 @@ class Ensemble:
                 there[name] = places[name] + value
             return self._reactances(there, traps, draws, count)[:, aims]
 
-        change = np.zeros((count, len(names)))
-        off = miss(change)
-        inverse = np.broadcast_to(
-            np.linalg.inv(self._slopes[np.ix_(aims, aims)]), (count, len(names), len(names))
-        )
-        inverse = inverse.copy()
-        best, best_change = np.full(count, np.inf), change.copy()
-        for _ in range(AIM_STEPS):
-            size = np.abs(off).max(axis=1)
-            better = size < best
-            best = np.where(better, size, best)
-            best_change = np.where(better[:, None], change, best_change)
-            if np.all(best < NEAR_ENOUGH):
-                break
-            move = -np.einsum("nij,nj->ni", inverse, off)
-            largest = np.abs(move).max(axis=1) / (bound / 3)
-            move = np.clip(change + move / np.maximum(largest, 1.0)[:, None], -bound, bound) - change
-            new = miss(change + move)
-            # Broyden's update of the inverse slopes, each trial its own.
-            gained = np.einsum("nij,nj->ni", inverse, new - off)
-            along = np.einsum("ni,nij->nj", move, inverse)
-            scale = np.einsum("ni,ni->n", move, gained)
-            safe = np.abs(scale) > 1e-3 * np.einsum("ni,ni->n", move, move)
-            step = np.where(safe[:, None], (move - gained) / np.where(safe, scale, 1.0)[:, None], 0.0)
-            inverse += step[:, :, None] * along[:, None, :]
-            change, off = change + move, new
-        else:
-            size = np.abs(off).max(axis=1)
-            best_change = np.where((size < best)[:, None], change, best_change)
-            best = np.minimum(best, size)
-        best_change[~(best < 10 * NEAR_ENOUGH)] = np.nan
-        return dict(zip(names, best_change.T, strict=True))
+        slopes = self._slopes[np.ix_(aims, aims)]
+        change = root(miss, slopes, count, FARTHEST * self.wire.side)
+        return dict(zip(names, change.T, strict=True))
 
     @cached_property
     def _slopes(self) -> np.ndarray:
@@ -481,7 +312,7 @@ class Ensemble:
         count = 2 * len(self.unknown_wires)
         stage = replace(STAGES[0], name="nominal")
         nothing = self.nominal(count)
-        traps = None if self.trap is None else self.traps(nothing, stage, count)
+        traps = self.traps(nothing, stage, count)
         places = self.places({}, count)
         step = 0.005 * self.wire.side
         for i, name in enumerate(self.unknown_wires):
@@ -512,7 +343,7 @@ class Ensemble:
             feed = entries[:, 0]
             volts = loss = np.zeros(feed.shape[0])
         else:
-            loads = self.trap_impedances(grid.circuit, traps, pick)
+            loads = self.of_traps.impedances(grid.circuit, traps, pick)
             feed, *currents = terminate_entries(*(entries[:, k] for k in range(6)), *loads)
             resistance = feed[:, grid.wanted].real
             squares = [_square(current[:, grid.wanted]) for current in currents]
@@ -535,25 +366,13 @@ class Ensemble:
             reflection=reflection,
         )
 
-    @property
-    def solved_lengths(self) -> tuple[str, ...]:
-        """The wires the design leaves to be solved."""
-        lengths = self.design.antenna.lengths
-        return tuple(name for name in WIRES if getattr(lengths, name) is SOLVE)
-
-
-def _part(traps: Traps, pick: np.ndarray) -> Traps:
-    return Traps(
-        inductance=traps.inductance[:, pick], capacitance=traps.capacitance[:, pick], q=traps.q[:, pick]
-    )
-
 
 def _square(value: np.ndarray) -> np.ndarray:
     return value.real * value.real + value.imag * value.imag
 
 
 def _dips(frequency: np.ndarray, reflection: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-    """Return where each row of squared reflections is least, and how much, by a parabola through three points."""
+    """Return where each row of squared reflections is least, and how much, by a parabola."""
     trial = np.arange(reflection.shape[0])
     at = np.clip(np.argmin(reflection, axis=1), 1, frequency.size - 2)
     f0, f1, f2 = (frequency[at + k] for k in (-1, 0, 1))

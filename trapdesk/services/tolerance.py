@@ -1,4 +1,4 @@
-"""The ensemble: will the antenna, built and hung with its doubts, still cover the bands that are wanted?"""
+"""The ensemble: whether the antenna, built and hung with its doubts, still covers the wanted bands."""
 
 from __future__ import annotations
 
@@ -11,9 +11,10 @@ import numpy as np
 from ..design import Design
 from .beliefs import Belief
 from .causes import Regression, Shares, corners, one_at_a_time, trap_first_order
-from .ensemble import STAGES, Ensemble, Outcome, Stage, Traps, reflection_of, swr_of
+from .ensemble import Ensemble, Outcome, reflection_of, swr_of
 from .figures import Figures
 from .solve import solve
+from .trial_traps import STAGES, Stage, Traps
 
 TRIALS, SEED = 10_000, 1
 FEWEST, MOST = 2, 10_000_000
@@ -31,7 +32,7 @@ EDGE = 0.001
 CONFIDENCE = 1.959964
 """Sigma of a 95 % interval. [1]"""
 RESULTS = ("dip", "aim_swr", "worst_swr", "volts", "loss")
-BINS = 24
+BINS = 96
 
 Progress = Callable[[int, int], bool]
 """Told trials done and wanted; whether to go on."""
@@ -200,9 +201,7 @@ def run_stage(
     found: dict[str, dict[str, Outcome]] = {}
     for members, change in groups:
         features = ensemble.features(draws, count, change)
-        traps: list[Traps | None] = [
-            None if ensemble.trap is None else ensemble.traps(draws, stage, count) for stage in members
-        ]
+        traps: list[Traps | None] = [ensemble.traps(draws, stage, count) for stage in members]
         for role in ensemble.roles:
             for stage, pieces in zip(members, ensemble.outcome(role, features, traps), strict=True):
                 found.setdefault(stage.name, {})[role] = _joined(pieces)
@@ -432,7 +431,7 @@ def _check(ensemble: Ensemble, draws: Mapping[str, np.ndarray], count: int, gath
     first = trap_first_order(ensemble)
     if first is not None:
         built = ensemble.traps({n: v for n, v in draws.items() if n != "temperature"}, STAGES[0], count)
-        resonance = ensemble.trap_resonance(built)
+        resonance = ensemble.of_traps.resonance(built)
         trap = (first, float(resonance.std() / resonance.mean()))
     dips = one_at_a_time(ensemble, STAGES[0])
     return Check(
