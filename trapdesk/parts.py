@@ -17,6 +17,7 @@ from .capacitor_kinds import (
 )
 from .coil_kinds import COILS, CableCoil, GivenCoil, Solenoid, Toroid
 from .fields import SOLVE, Value, choice, declared, part, quantity
+from .measured_part import Measured
 
 
 class Sealing(StrEnum):
@@ -126,6 +127,12 @@ class Trap:
         kinds=CAPACITORS,
     )
     weather: Weather = part("weather", "What closing and weather do to it.", default=Weather())
+    measured: Measured | None = part(
+        "measured",
+        "What was measured of the built trap; it replaces what is computed.",
+        default=None,
+        optional=True,
+    )
 
 
 def solvable(part_: Any, prefix: str) -> Iterator[tuple[str, Any]]:

@@ -12,7 +12,6 @@ from ..design import MODES, Design
 from ..engine.capacitors import rating
 from ..engine.heat import over_share, temperature_rise
 from ..engine.toroids import toroid_flux
-from .cable_coil import CableNetwork
 from .capacitors import Fitted, capacitance_of
 from .figures import BandFigures, Heat, PartStress
 from .response import Behaviour
@@ -27,7 +26,7 @@ def part_stress(design: Design, trap: BuiltTrap, over: Behaviour) -> tuple[PartS
     """Return what each part bears at its worst over the frequencies of a behaviour."""
     mean = MODES[design.station.mode].mean
     volts = over.stress.voltage
-    if isinstance(trap.network, CableNetwork):
+    if trap.cable is not None:
         return (_cable(trap, over, mean),)
     found = [_coil(design, trap, over, mean)]
     for fitted, share, amps in trap.capacitor.shares(over.frequency):

@@ -17,6 +17,7 @@ from ..parts import Trap
 from .cable_coil import BuiltCable, CableNetwork, build_cable
 from .capacitors import BuiltCapacitor, Fitted, Limits, build_capacitor, cable_rating, is_open
 from .coils import NO_SELF_CAPACITANCE, BuiltCoil, Wound, build_coil
+from .measured_trap import MeasuredNetwork, with_measured
 
 SETTLED = 1e-13
 LOOKS = 40
@@ -67,7 +68,7 @@ class BuiltTrap:
     inductance: float
     capacitance: float
     fitted: float
-    network: Lumped | CableNetwork
+    network: Lumped | CableNetwork | MeasuredNetwork
     wound: Wound | None
     coil: BuiltCoil | None
     capacitor: BuiltCapacitor | None
@@ -92,6 +93,12 @@ class BuiltTrap:
         return self.network.stress(frequency, current)
 
     @property
+    def cable(self) -> CableNetwork | None:
+        """The cable it is wound of as it was computed, None for coil and capacitor apart."""
+        inner = self.network.computed if isinstance(self.network, MeasuredNetwork) else self.network
+        return inner if isinstance(inner, CableNetwork) else None
+
+    @property
     def q(self) -> float:
         """Q at its resonance, losses of coil and capacitor together."""
         inductance, _, coil, capacitor = self.circuit(np.float64(self.resonance))
@@ -100,7 +107,12 @@ class BuiltTrap:
 
 
 def build(trap: Trap) -> BuiltTrap:
-    """Return the trap with its solved value found; NoAnswer when there is none."""
+    """Return the trap with its solved value found and what was measured in its place; NoAnswer for none."""
+    return with_measured(_computed(trap), trap.measured)
+
+
+def _computed(trap: Trap) -> BuiltTrap:
+    """Return the trap as it is computed."""
     if isinstance(trap.coil, CableCoil):
         return _of_cable(trap.coil, None if trap.resonance is SOLVE else trap.resonance)
     if trap.resonance is SOLVE:

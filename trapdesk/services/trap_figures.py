@@ -11,7 +11,6 @@ from ..design import Design
 from ..engine.capacitors import stub_impedance
 from ..engine.resonator import dynamic_resistance, lc_resonance
 from ..parts import Sealing, Trap
-from .cable_coil import CableNetwork
 from .capacitors import Fitted, capacitance_of, tolerance_of, weights
 from .coils import Wound
 from .figures import Adjustment, BandFigures, CoilFigures, Curve, PartFigures, TrapFigures
@@ -90,7 +89,7 @@ def _coil(trap: BuiltTrap, wound: Wound) -> CoilFigures:
 
 def _follows(trap: BuiltTrap, wound: Wound, turns: float) -> float:
     """Return the resonance with other turns over that as it is."""
-    if isinstance(trap.network, CableNetwork):
+    if trap.cable is not None:
         power = CABLE_POWER
     else:
         power = 2.0 if wound.most_turns is not None else SOLENOID_POWER
@@ -118,7 +117,7 @@ def adjustments(part: Trap, trap: BuiltTrap) -> Iterator[Adjustment]:
     if part.weather.sealing is Sealing.POTTED:
         return
     yield from _of_coil(part, trap)
-    if isinstance(trap.network, CableNetwork):
+    if trap.cable is not None:
         return
     for fitted, weight in weights(trap.capacitor, trap.resonance):
         if fitted.line is None:
@@ -138,10 +137,10 @@ def adjustments(part: Trap, trap: BuiltTrap) -> Iterator[Adjustment]:
 
 def _of_coil(part: Trap, trap: BuiltTrap) -> Iterator[Adjustment]:
     where = "antenna.trap.coil"
-    if isinstance(trap.network, CableNetwork):
+    if trap.cable is not None:
         tail = 2 * (part.coil.tail - SNIP_KEEPS)
-        rate = trap.network.by_length(1e-3) / 1e-3
-        reach = trap.network.by_length(tail) if tail > 0 else 0.0
+        rate = trap.cable.by_length(1e-3) / 1e-3
+        reach = trap.cable.by_length(tail) if tail > 0 else 0.0
         yield Adjustment(what="tail", where=where, raises=reach, lowers=0.0, rate=rate)
     elif isinstance(part.coil, Solenoid):
         per_length = 0.5 * abs(trap.coil.spread) * trap.resonance
