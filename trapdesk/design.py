@@ -12,10 +12,12 @@ from dataclasses import dataclass, is_dataclass, replace
 from enum import StrEnum
 from typing import Any
 
+from .doubts import Doubts
 from .engine.conductors import MATERIALS
 from .engine.ground import SOILS, GroundKind
-from .fields import SOLVE, Value, choice, declared, part, quantity, text
+from .fields import SOLVE, Declared, Value, choice, declared, member_of, part, parts, quantity, text
 from .parts import Trap
+from .station import Choke, FeedLine, Segment, Transmitter, Tuner
 
 
 class Shape(StrEnum):
@@ -41,7 +43,8 @@ class Mode:
 
 
 MODES: dict[str, Mode] = {
-    "carrier": Mode(1.0, "full carrier without a pause: tuning up, FM, most data modes"),
+    "carrier": Mode(1.0, "full carrier without a pause: tuning up, FM"),
+    "data": Mode(1.0, "data modes that send a full carrier for a whole over; common practice, no source"),
     "CW": Mode(0.5, "keyed carrier; half the time on, common practice, no source"),
     "SSB": Mode(0.2, "speech without processing; common practice, no source"),
     "SSB processed": Mode(0.5, "speech with strong processing; common practice, no source"),
@@ -73,6 +76,11 @@ class Band:
         optional=True,
         **_BAND_LIMITS,
     )
+    wanted: tuple[Segment, ...] = parts(
+        "wanted segments",
+        "Several parts that are wanted, each with a weight, instead of one from and to.",
+        kinds={"": Segment},
+    )
     aim: float | None = quantity(
         "frequency",
         "aim",
@@ -83,14 +91,32 @@ class Band:
     )
 
     @property
-    def wanted(self) -> tuple[float, float]:
-        """The edges of the wanted part, in Hz."""
+    def wanted_edges(self) -> tuple[float, float]:
+        """The edges of all that is wanted, in Hz."""
+        if self.wanted:
+            return (min(part.low for part in self.wanted), max(part.high for part in self.wanted))
         return (self.wanted_low or self.low, self.wanted_high or self.high)
 
     @property
+    def segments(self) -> tuple[Segment, ...]:
+        """Every wanted segment, from low to high; one of weight 1 where no list is given."""
+        if self.wanted:
+            return tuple(sorted(self.wanted, key=lambda part: part.low))
+        low, high = self.wanted_edges
+        return (Segment(low=low, high=high),)
+
+    @property
+    def segments_wanted(self) -> tuple[tuple[float, float], ...]:
+        """The edges of every wanted segment, from low to high, in Hz."""
+        return tuple((part.low, part.high) for part in self.segments)
+
+    @property
     def target(self) -> float:
-        """The aim in Hz, set or by default."""
-        return self.aim or sum(self.wanted) / 2
+        """The aim in Hz, set or by default: the middle, of several segments by weight."""
+        if self.aim is None and self.wanted:
+            middles = [part.weight * (part.low + part.high) / 2 for part in self.wanted]
+            return sum(middles) / sum(part.weight for part in self.wanted)
+        return self.aim or sum(self.wanted_edges) / 2
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -315,6 +341,40 @@ class Station:
     mode: str = choice(
         MODES, "mode", "What is sent: how much of the power is there on average.", default="SSB"
     )
+    over: float = quantity(
+        "time",
+        "over",
+        "How long it is sent at a stretch. 2 minutes: common practice, no source.",
+        default=120.0,
+        low=1.0,
+        high=86400.0,
+        example="2 min",
+    )
+    pause: float = quantity(
+        "time",
+        "pause",
+        "How long it is listened in between. 2 minutes: common practice, no source.",
+        default=120.0,
+        low=0.0,
+        high=86400.0,
+        example="2 min",
+    )
+    line: FeedLine | None = part(
+        "line",
+        "From the transmitter to the feed point; none: no line is counted.",
+        default=None,
+        optional=True,
+    )
+    choke: Choke | None = part(
+        "choke", "The choke or transformer at the feed point.", default=None, optional=True
+    )
+    tuner: Tuner | None = part("tuner", "The tuner, where there is one.", default=None, optional=True)
+    transmitter: Transmitter | None = part(
+        "transmitter",
+        "How the transmitter takes a mismatch; none: it gives its full power into any.",
+        default=None,
+        optional=True,
+    )
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -326,21 +386,44 @@ class Design:
     antenna: Antenna = part("antenna", "What is carried.", default=Antenna())
     site: Site = part("site", "Where it hangs.", default=Site())
     station: Station = part("station", "What feeds it.", default=Station())
+    doubts: Doubts = part("doubts", "How far what is built may be off.", default=Doubts())
 
 
-def get(design: Design, key: str) -> Any:
+def get(design: Any, key: str) -> Any:
     """Return the value at a dotted key; KeyError for a key that the design does not have."""
     value: Any = design
     for name in key.split("."):
-        if not is_dataclass(value) or name not in declared(value):
-            raise KeyError(key)
-        value = getattr(value, name)
+        value = _inside(value, name, key)
     return value
+
+
+def _inside(owner: Any, name: str, key: str) -> Any:
+    """Return a field of a part, or a part of a list by its place, counted from 1."""
+    if isinstance(owner, tuple):
+        if not (name.isdecimal() and 1 <= int(name) <= len(owner)):
+            raise KeyError(key)
+        return owner[int(name) - 1]
+    if not is_dataclass(owner) or name not in declared(owner):
+        raise KeyError(key)
+    return getattr(owner, name)
+
+
+def known_at(design: Any, key: str) -> Declared:
+    """Return what is declared of the value at a dotted key; KeyError for a key the design does not have."""
+    above, _, name = key.rpartition(".")
+    owner = get(design, above) if above else design
+    _inside(owner, name, key)
+    if isinstance(owner, tuple):
+        return member_of(known_at(design, above), int(name))
+    return declared(owner)[name]
 
 
 def with_value(part: Any, key: str, value: Any) -> Any:
     """Return the design with another value at a dotted key; KeyError for a key that it does not have."""
     name, _, rest = key.partition(".")
-    if not is_dataclass(part) or name not in declared(part):
-        raise KeyError(key)
-    return replace(part, **{name: with_value(getattr(part, name), rest, value) if rest else value})
+    new = _inside(part, name, key)
+    new = with_value(new, rest, value) if rest else value
+    if isinstance(part, tuple):
+        place = int(name) - 1
+        return (*part[:place], new, *part[place + 1 :])
+    return replace(part, **{name: new})

@@ -14,6 +14,7 @@ from typing import Any, NoReturn, TextIO
 
 from .. import __version__
 from ..errors import BadInput, Fault, FileFault, NoAnswer, TrapdeskError, quoted, visible
+from . import verb_words
 
 ABOUT = """\
 Design, build and tune a two-band trap dipole, in one terminal.
@@ -22,10 +23,14 @@ Design, build and tune a two-band trap dipole, in one terminal.
   trapdesk figures FILE         everything computed for a design
   trapdesk sheet FILE           the build sheet, plain text for paper
   trapdesk tank NAME=VALUE ...  a parallel resonator from any few of its values
+  trapdesk match Z=... f=...    a load of your own matched, network by network
+  trapdesk line TYPE length=... what a line does to a load
+  trapdesk tuner FILE           is a tuner worth it; its settings, its reach
   trapdesk rummage FILE         the best traps a box of parts can build for it
   trapdesk choices FILE         other trap resonances, other L to C: what for what
-  trapdesk readings FILE [...]  what was measured of a trap, and how to measure it
-  trapdesk touchstone FILE      the computed feed impedance as a Touchstone file
+  trapdesk tolerance FILE       will it, as built and hung, still cover the bands
+  trapdesk readings FILE ...    what was measured of a trap; how to measure it
+  trapdesk touchstone FILE      the feed impedance as a Touchstone file
 
 FILE is a design in TOML, or the name of a preset. A file that is called like a
 verb is opened by its path: trapdesk ./figures. Every verb has --help with an
@@ -91,7 +96,7 @@ def _say(text: str, code: int) -> int:
 
 def _run(given: list[str]) -> int:
     if given and given[0] in VERBS:
-        options = _parser_of(given[0]).parse_args(given[1:])
+        options = _parser_of(given[0]).parse_intermixed_args(given[1:])
         return _write(VERBS[given[0]][1](options))
     parser = Parser(
         prog="trapdesk",
@@ -130,6 +135,14 @@ def _desk(file: str | None) -> int:
     return run(file) or 0
 
 
+TYPED = {
+    "tank": ("NAME=VALUE", "f, L, C, R, RD, Q or B"),
+    "match": ("NAME=VALUE", "Z and f, and what else is said below"),
+    "line": ("TYPE or NAME=VALUE", "a type of line, and length, f, Z or Zin"),
+}
+"""Verbs that work on what is typed alone, and what that is."""
+
+
 def _parser_of(verb: str) -> Parser:
     """Return the parser of one verb."""
     about, _, example, more = VERBS[verb]
@@ -140,8 +153,8 @@ def _parser_of(verb: str) -> Parser:
         formatter_class=argparse.RawDescriptionHelpFormatter,
         allow_abbrev=False,
     )
-    if verb == "tank":
-        parser.add_argument("values", nargs="+", metavar="NAME=VALUE", help="f, L, C, R, RD, Q or B")
+    if verb in TYPED:
+        parser.add_argument("values", nargs="+", metavar=TYPED[verb][0], help=TYPED[verb][1])
     else:
         parser.add_argument("file", metavar="FILE", help="a design, or the name of a preset")
     if verb == "figures":
@@ -152,6 +165,12 @@ def _parser_of(verb: str) -> Parser:
             metavar="F[,F...]",
             help="also at these frequencies, with units and a decimal point; commas separate them",
         )
+    if verb == "tuner":
+        parser.add_argument(
+            "--load", metavar="Z", help="also what the tuner makes of this load, on each band"
+        )
+        parser.add_argument("--line", metavar="TYPE", help="as if fed through this type of line")
+        parser.add_argument("--length", metavar="LENGTH", help="and so much of it; 25 m unless said")
     if verb == "readings":
         parser.add_argument("values", nargs="*", metavar="NAME=VALUE", help="readings; none lists all kinds")
         parser.add_argument("--keep", action="store_true", help="keep the result in the design's file")
@@ -161,6 +180,15 @@ def _parser_of(verb: str) -> Parser:
     if verb == "rummage":
         parser.add_argument("--box", metavar="FILE", help="what there is; the ready box unless said")
         parser.add_argument("--rows", type=int, default=20, metavar="N", help="at most so many rows")
+    if verb == "tolerance":
+        parser.add_argument("--trials", default="10000", metavar="N", help="antennas; 10000 unless said")
+        parser.add_argument("--seed", default="1", metavar="S", help="the same seed, the same antennas")
+        parser.add_argument(
+            "--for-yield",
+            choices=("as_cut", "tuned", "aimed", "wet"),
+            metavar="STAGE",
+            help="also choose trap and aims for the largest yield: as_cut, tuned, aimed, wet",
+        )
     parser.add_argument("--json", action="store_true", help="print JSON: SI units, the unit in the key")
     return parser
 
@@ -216,11 +244,13 @@ def frequencies_of(texts: Sequence[str]) -> list[float]:
 
 def sheet(options: argparse.Namespace) -> str:
     """Return the build sheet of a design as text or JSON."""
+    from ..services.tolerance import tolerance as ensemble
     from . import json_out
     from . import sheet as paper
 
     found = _figures_of(options.file)
-    return json_out.text(paper.document(found)) if options.json else paper.text(found)
+    trials = ensemble(found, trials=SHEET_TRIALS)
+    return json_out.text(paper.document(found, trials)) if options.json else paper.text(found, trials)
 
 
 def tank(options: argparse.Namespace) -> str:
@@ -275,6 +305,8 @@ def touchstone(options: argparse.Namespace) -> str:
 
 
 MOST_ROWS = 200
+SHEET_TRIALS = 2000
+"""Trials by which the sheet says how much wire to leave."""
 
 
 def rummage(options: argparse.Namespace) -> str:
@@ -317,6 +349,43 @@ def choices(options: argparse.Namespace) -> str:
     return "\n".join(choices_out.lines(design, found)) + "\n"
 
 
+def match(options: argparse.Namespace) -> str:
+    """Return every match of a typed load, as text or JSON."""
+    from . import json_out, match_out
+
+    answer = match_out.answer_to(options.values)
+    if options.json:
+        return json_out.text(match_out.document(answer))
+    return "\n".join(match_out.lines(answer)) + "\n"
+
+
+def line(options: argparse.Namespace) -> str:
+    """Return what a line does to a typed load, as text or JSON."""
+    from . import json_out, line_out
+
+    answer = line_out.answer_to(options.values)
+    if options.json:
+        return json_out.text(line_out.document(answer))
+    return "\n".join(line_out.lines(answer)) + "\n"
+
+
+def tuner(options: argparse.Namespace) -> str:
+    """Return whether a tuner is worth it, its settings and its reach, as text or JSON."""
+    from . import tuner_out
+
+    return tuner_out.text(options.file, options.load, options.line, options.length, as_json=options.json)
+
+
+def tolerance(options: argparse.Namespace) -> str:
+    """Return what becomes of a design over many trials, as text or JSON."""
+    from . import json_out, tolerance_json, tolerance_out, trial_run
+
+    found = trial_run.run(options.file, options.trials, options.seed, options.for_yield)
+    if options.json:
+        return json_out.text(tolerance_json.document(*found))
+    return "\n".join(tolerance_out.lines(*found)) + "\n"
+
+
 VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
     "figures": (
         "Print everything computed for a design.",
@@ -343,6 +412,15 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
         "trapdesk choices 40-20-vee",
         "",
     ),
+    "tolerance": (
+        "Print how many antennas of a design, as built and hung with all their doubts,\n"
+        "keep the SWR limit: as cut, with tuned traps, brought to aim, wet; what that\n"
+        "comes from, what would help, and how much longer to cut the wires.",
+        tolerance,
+        "trapdesk tolerance 40-20-vee --trials 2000 --seed 7",
+        "\n\nCtrl-C stops a long run and prints what there is. What varies stands in the\n"
+        "design's table [doubts].",
+    ),
     "tank": (
         "Print a parallel resonator from any sufficient few of its values:\n"
         "  f   LC resonance            R   series resistance of the coil\n"
@@ -355,6 +433,14 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
         "trapdesk tank f=10.05MHz C=47pF Q=180",
         "",
     ),
+    "match": (
+        verb_words.MATCH,
+        match,
+        "trapdesk match Z=35-j120 f=7.1MHz",
+        "\n  trapdesk match Z=10-j200 f=3.6MHz network=t-clc Lmax=30uH Cmax=250pF",
+    ),
+    "line": (verb_words.LINE, line, "trapdesk line RG-58/U length=20m f=7.1MHz Z=35-j120", ""),
+    "tuner": (verb_words.TUNER, tuner, "trapdesk tuner 40-20-vee --line RG-58/U --length 25m", ""),
     "readings": (
         "Print what was measured of a trap and its parts beside what is computed, with\n"
         "how sure it is. Without readings: every kind of them and how to do it well.",

@@ -17,6 +17,7 @@ WIDTH = 79
 GROUPS: dict[str, str] = {
     "site": "Site and station",
     "bands": "Bands",
+    "feed": "Feed point to transmitter",
     "wires": "Wires of one side",
     "trap": "Trap, each of two",
     "stress": "Stress of one trap",

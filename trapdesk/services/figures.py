@@ -10,6 +10,7 @@ import numpy as np
 from ..design import Design
 from ..engine.ports import Ports
 from ..engine.wire import Wire
+from .feed import FeedFigures
 from .moved import Moved
 
 
@@ -94,7 +95,8 @@ class BandFigures:
 
     `frequency_doubt` [Hz] goes with resonance and dip, `impedance_doubt` [ohm] with impedances, `swr_doubt`
     [1] with every SWR, `share_doubt` [1] with the shares, `stress_doubt` [1] is the relative one of volts,
-    amps and watts.
+    amps and watts. Every SWR is that where it is judged; impedances are those at the feed point. `feed` is
+    None where nothing lies between feed point and transmitter.
     """
 
     role: str
@@ -122,11 +124,19 @@ class BandFigures:
     swr_doubt: float
     share_doubt: float
     stress_doubt: float
+    feed: FeedFigures | None = None
+    parts: tuple[PartStress, ...] = ()
 
 
 @dataclass(frozen=True, kw_only=True)
 class CoilFigures:
-    """A wound coil: what to wind. Diameters and lengths to the centre of the wire."""
+    """A wound coil: what to wind. Diameters and lengths to the centre of the wire, `outer_…` over all.
+
+    `turns_range` is that of a cable's braid, `wind` the turns to begin with, `cut` the wire or cable to cut;
+    `mass` [kg] is without former and core. `half_turns` are the turns to the half, and `half_resonance` is
+    where the trap then is. `most_turns` is what fits on a core. `own_resonance` is that of the coil alone,
+    None where nothing is known of it.
+    """
 
     turns: float
     diameter: float
@@ -134,11 +144,108 @@ class CoilFigures:
     wire_length: float
     self_capacitance: tuple[float, float, float]
     crowding: float
+    pitch: float = 0.0
+    cut: float = 0.0
+    outer_diameter: float = 0.0
+    outer_length: float = 0.0
+    mass: float = 0.0
+    turns_range: tuple[float, float] | None = None
+    wind: int | None = None
+    most_turns: int | None = None
+    half_turns: float | None = None
+    half_resonance: float | None = None
+    own_resonance: float | None = None
+
+
+@dataclass(frozen=True, kw_only=True)
+class Adjustment:
+    """What can be moved on a built trap, and what that does to its resonance.
+
+    `raises` [Hz] is what moving it one way may give at most and `lowers` the other way, 0 where it does not
+    go; `rate` [Hz/m] is per metre taken off, None where nothing is taken off.
+    """
+
+    what: str
+    where: str
+    raises: float
+    lowers: float
+    rate: float | None = None
+
+
+@dataclass(frozen=True, kw_only=True)
+class PartFigures:
+    """A capacitor of the trap, or its cable: what it is and what makes it up.
+
+    `loss_source` says where its loss comes from: "given", "none" (counted as lossless), "estimate" or the key
+    of a source. `length` is that of a stub or cable.
+    """
+
+    key: str
+    name: str
+    capacitance: float
+    loss_tangent: float
+    loss_source: str
+    tolerance: tuple[float, float] | None
+    drift: float | None
+    pieces: int
+    length: float | None
+
+
+@dataclass(frozen=True, kw_only=True)
+class PartStress:
+    """What one part of the trap bears at its worst in the wanted part of a band.
+
+    Volts, amps and steady watts each at its own worst; `average` are watts on average while sending. `share`
+    is the largest of what it bears over what it stands, at `frequency`, and `rules` says by which limit;
+    both None where no limit is known. `allowed` [V peak] is the voltage at which the limit would be reached.
+    """
+
+    key: str
+    name: str
+    frequency: float
+    peak_voltage: float
+    rms_current: float
+    watts: float
+    average: float
+    share: float | None
+    rules: str | None
+    allowed: float | None
+
+
+@dataclass(frozen=True, kw_only=True)
+class Heat:
+    """How warm a trap gets, an estimate: `lasting` [K] without a pause, `over` [K] at the end of an over.
+
+    `hottest` [degC] is that on top of the sun, `softens` [degC] what the former stands, None for no limit.
+    """
+
+    watts: float
+    lasting: float
+    over: float
+    hottest: float
+    softens: float | None
+
+
+@dataclass(frozen=True, kw_only=True)
+class Shift:
+    """What one thing does to the trap's resonance [Hz], and then to each band by role.
+
+    `dips` are shifts of the dip [Hz], `swr` the worst SWR in the wanted part after it.
+    """
+
+    what: str
+    trap: float
+    dips: dict[str, float]
+    swr: dict[str, float]
 
 
 @dataclass(frozen=True, kw_only=True)
 class TrapFigures:
-    """The trap by itself, at its resonance unless said otherwise; `impedance` by band role, at the aim."""
+    """The trap by itself, at its resonance unless said otherwise; `impedance` by band role, at the aim.
+
+    `bring_to` is where to bring it before it is closed, so that it ends at its resonance. `tolerance` is that
+    of the capacitor, down and up.
+    """
 
     resonance: float
     inductance: float
@@ -152,6 +259,12 @@ class TrapFigures:
     resonance_doubt: float
     inductance_doubt: float
     q_range: tuple[float, float]
+    bring_to: float | None = None
+    parts: tuple[PartFigures, ...] = ()
+    tolerance: tuple[float, float] | None = None
+    adjustments: tuple[Adjustment, ...] = ()
+    heat: Heat | None = None
+    shifts: tuple[Shift, ...] = ()
 
 
 @dataclass(frozen=True, kw_only=True)

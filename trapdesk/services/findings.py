@@ -4,20 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from ..engine.coils import SOLENOID_RANGE
 from ..engine.ground import GroundKind
+from .feed_findings import feed_findings
 from .figures import BandFigures, Figures, Finding, Level
+from .lengths import solved_for
+from .trap_findings import trap_findings
 
 WITHIN_REACH = 3.0
 """Wire ends below this height are within people's reach. [m], common practice, no source"""
-TRAP_VOLTAGE_MARGIN = 0.7
-"""Share of a capacitor's rating from which on it is worth a remark; an estimate, no source."""
-UNRATED_VOLTAGE = 500.0
-"""Peak volts across a trap above which a rating is worth knowing. [V], an estimate, no source"""
-TRAP_WATTS = (5.0, 20.0)
-"""Average watts in one trap from which on it gets warm, and hot; a hand-sized trap, an estimate."""
-TRAP_FAR = 0.03
-TRAP_ABOVE = 0.01
 LENGTH_RATIO = (0.45, 1.05)
 GROUND_SHARE = 0.5
 AIM_MISSED = (0.1, 0.5)
@@ -27,7 +21,7 @@ _ORDER = (Level.STOP, Level.WATCH, Level.FINE)
 
 def find(figures: Figures) -> tuple[Finding, ...]:
     """Return every finding, the most serious first, each kind in a fixed order."""
-    found = [*_bands(figures), *_trap(figures), *_site(figures)]
+    found = [*_bands(figures), *trap_findings(figures), *feed_findings(figures), *_site(figures)]
     return tuple(sorted(found, key=lambda finding: _ORDER.index(finding.level)))
 
 
@@ -47,12 +41,12 @@ def _bands(figures: Figures) -> Iterator[Finding]:
             value=band.worst_swr,
             limit=limit,
         )
-        low, high = bands[role].wanted
+        low, high = bands[role].wanted_edges
         if band.resonance is None:
             yield Finding(
                 code="no_resonance", level=Level.WATCH, where=where, value=band.aim, dimension="frequency"
             )
-        elif not _was_solved(figures, role):
+        elif role not in solved_for(figures.design).values():
             yield from _aim(band, where)
         if band.width is None:
             yield Finding(code="no_width", level=Level.STOP, where=where, value=band.dip_swr, limit=limit)
@@ -84,18 +78,6 @@ def _bands(figures: Figures) -> Iterator[Finding]:
             )
 
 
-def _was_solved(figures: Figures, role: str) -> bool:
-    """Return whether a wire was solved for this band's aim."""
-    lengths = figures.design.antenna.lengths
-    if figures.trap is None or "upper" not in figures.bands:
-        return role == "lower" and "solve" in (_word(lengths.inner), _word(lengths.end))
-    return _word(lengths.inner if role == "upper" else lengths.end) == "solve"
-
-
-def _word(value: object) -> object:
-    return getattr(value, "value", value)
-
-
 def _aim(band: BandFigures, where: str) -> Iterator[Finding]:
     miss = band.resonance - band.aim
     width = band.width or band.frequency_doubt
@@ -107,74 +89,6 @@ def _aim(band: BandFigures, where: str) -> Iterator[Finding]:
         value=miss,
         limit=AIM_MISSED[0] * width,
         dimension="frequency",
-    )
-
-
-def _trap(figures: Figures) -> Iterator[Finding]:
-    trap = figures.trap
-    if trap is None:
-        return
-    design, where = figures.design, "antenna.trap"
-    worst = max((b.worst_stress for b in figures.bands.values()), key=lambda s: s.peak_voltage)
-    rating = design.antenna.trap.capacitor.voltage
-    if rating is not None:
-        share = worst.peak_voltage / rating
-        level = Level.STOP if share > 1 else Level.WATCH if share > TRAP_VOLTAGE_MARGIN else Level.FINE
-        yield Finding(
-            code="trap_voltage",
-            level=level,
-            where=f"{where}.capacitor.voltage",
-            value=worst.peak_voltage,
-            limit=rating,
-            dimension="voltage",
-        )
-    elif worst.peak_voltage > UNRATED_VOLTAGE:
-        yield Finding(
-            code="trap_voltage_unrated",
-            level=Level.WATCH,
-            where=f"{where}.capacitor.voltage",
-            value=worst.peak_voltage,
-            dimension="voltage",
-        )
-    watts = max(b.worst_stress.average_watts for b in figures.bands.values())
-    yield Finding(
-        code="trap_heat",
-        level=_ORDER[2 - sum(watts > limit for limit in TRAP_WATTS)],
-        where=where,
-        value=watts,
-        limit=TRAP_WATTS[0],
-        dimension="power",
-    )
-    yield from _trap_place(figures)
-    if trap.coil is not None:
-        coil = design.antenna.trap.coil
-        ratio = coil.pitch / coil.wire
-        for key, value in (("pitch_over_wire_diameter", ratio), ("turns", trap.coil.turns)):
-            low, high = SOLENOID_RANGE[key]
-            if not low <= value <= high:
-                yield Finding(
-                    code="coil_range",
-                    level=Level.WATCH,
-                    where=f"{where}.coil." + ("turns" if key == "turns" else "pitch"),
-                    value=float(value),
-                    limit=low if value < low else high,
-                )
-
-
-def _trap_place(figures: Figures) -> Iterator[Finding]:
-    """Hold the trap's resonance against the upper band, which it is to cut off."""
-    upper = figures.design.bands.upper
-    if upper is None:
-        return
-    resonance, where = figures.trap.resonance, "antenna.trap.resonance"
-    if resonance > upper.high * (1 + TRAP_ABOVE):
-        code, limit = "trap_above_band", upper.high
-    elif resonance < upper.low * (1 - TRAP_FAR):
-        code, limit = "trap_far", upper.low
-    else:
-        return
-    yield Finding(
-        code=code, level=Level.WATCH, where=where, value=resonance, limit=limit, dimension="frequency"
     )
 
 

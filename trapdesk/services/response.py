@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
 
 from ..design import Band
+from ..engine import reflection
 from ..engine.ports import Ports, chebyshev_nodes, polynomial_weights, terminate
 from ..engine.stress import Stress
 from ..engine.wire import Wire, plan, solve_ports
@@ -22,10 +24,15 @@ GRID = 161
 """Points over the band and its margins: close enough for a cubic through four of them to find a zero."""
 
 
+LARGEST = 1e9
+"""SWR of what takes no power, also where the polynomial between ports has it give some."""
+
+
 def swr(impedance: np.ndarray, reference: float) -> np.ndarray:
-    """Return the standing wave ratio of impedances against a real reference."""
-    size = np.abs((impedance - reference) / (impedance + reference))
-    return (1 + size) / np.maximum(1 - size, 1e-9)
+    """Return the standing wave ratio of impedances against a real reference, finite for any of them."""
+    return np.minimum(
+        reflection.swr(np.maximum(impedance.real, 0.0) + 1j * impedance.imag, reference), LARGEST
+    )
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -44,8 +51,22 @@ class Behaviour:
     stress: Stress | None
 
 
-def behave(ports: Ports, trap: BuiltTrap | None, reference: float, power: float) -> Behaviour:
-    """Return what a wire does with its traps, at its ports' frequencies and a power at the feed point."""
+Look = Callable[[np.ndarray, np.ndarray], np.ndarray]
+"""From frequencies and feed impedances to the impedance that is judged."""
+
+
+def behave(
+    ports: Ports,
+    trap: BuiltTrap | None,
+    reference: float,
+    power: float,
+    feeding: Callable[[np.ndarray, np.ndarray], tuple[np.ndarray, np.ndarray]] | None = None,
+) -> Behaviour:
+    """Return what a wire does with its traps, at its ports' frequencies and a power at the feed point.
+
+    `feeding` says instead, for frequencies and feed impedances, what power arrives and which impedance is
+    judged.
+    """
     frequency = ports.frequency
     closed = terminate(ports.impedance, *(() if trap is None else (trap.impedance(frequency),)))
     feed = closed.impedance.real
@@ -53,17 +74,22 @@ def behave(ports: Ports, trap: BuiltTrap | None, reference: float, power: float)
         np.einsum("fp,fpq,fq->f", np.conj(closed.currents), m, closed.currents, optimize=False).real / feed
         for m in (ports.loss, ports.sky)
     )
-    amps = np.sqrt(power / feed)
+    arriving, judged = (power, closed.impedance) if feeding is None else feeding(frequency, closed.impedance)
+    amps = np.sqrt(arriving / feed)
     current = borne = None
     in_traps = np.zeros(frequency.size)
     if trap is not None:
         current = amps * np.abs(closed.currents[:, 1])
         borne = trap.stress(frequency, current)
-        in_traps = 2 * borne.total_power / power
+        heat = borne.total_power
+        if feeding is not None:
+            # A transmitter that has tripped gives nothing to share, so the share is taken at the full power.
+            heat = trap.stress(frequency, np.sqrt(power / feed) * np.abs(closed.currents[:, 1])).total_power
+        in_traps = 2 * heat / power
     return Behaviour(
         frequency=frequency,
         impedance=closed.impedance,
-        swr=swr(closed.impedance, reference),
+        swr=swr(judged, reference),
         sky=sky,
         ground=1 - sky - wire - in_traps,
         wire=wire,
@@ -78,7 +104,13 @@ class Response:
     """A band with its solved ports; looks further out for what is not near the band."""
 
     def __init__(
-        self, wire: Wire, band: Band, trap: BuiltTrap | None, reference: float, ports: Ports | None = None
+        self,
+        wire: Wire,
+        band: Band,
+        trap: BuiltTrap | None,
+        reference: float,
+        ports: Ports | None = None,
+        looking: Callable[[float, complex], Look] | None = None,
     ) -> None:
         self.wire, self.band, self.trap, self.reference = wire, band, trap, reference
         self.low, self.high = band.low * (1 - MARGIN), band.high * (1 + MARGIN)
@@ -86,6 +118,8 @@ class Response:
             nodes = chebyshev_nodes(self.low, self.high, 3 + math.ceil(math.log(self.high / self.low) / 0.06))
             ports = solve_ports(wire, nodes, plan(wire, band.target), band.target)
         self.ports = ports
+        # How it looks from where it is judged may hang on what a tuner is set to at the aim.
+        self.look = None if looking is None else looking(band.target, self.at(band.target))
         self.near = self._curve(ports, np.linspace(self.low, self.high, GRID))
         self._find_resonance()
         self.dip = self._find_dip()
@@ -94,7 +128,14 @@ class Response:
         weights = polynomial_weights(ports.frequency, frequency)
         loads = () if self.trap is None else (self.trap.impedance(frequency),)
         impedance = terminate(np.tensordot(weights, ports.impedance, 1), *loads).impedance
-        return Curve(frequency=frequency, impedance=impedance, swr=swr(impedance, self.reference))
+        judged = impedance if self.look is None else self.look(frequency, impedance)
+        return Curve(frequency=frequency, impedance=impedance, swr=swr(judged, self.reference))
+
+    def at(self, frequency: float) -> complex:
+        """Return the feed impedance at a frequency in or near the band."""
+        here = np.array([frequency])
+        loads = () if self.trap is None else (self.trap.impedance(here),)
+        return complex(terminate(self.ports.at(here).impedance, *loads).impedance[0])
 
     @cached_property
     def _wide_ports(self) -> Ports:

@@ -8,31 +8,33 @@ from dataclasses import replace
 
 import numpy as np
 
-from ..design import MODES, UNKNOWN, Design
+from ..design import MODES, UNKNOWN, Band, Design
 from ..engine.conductors import MATERIALS, coating_elastance
 from ..engine.ground import C0, SOILS, UNKNOWN_SOIL, UNKNOWN_SOIL_FROM, Ground, GroundKind
-from ..engine.resonator import dynamic_resistance
+from ..engine.ports import Ports
 from ..engine.wire import Wire, plan, solve_ports
 from ..errors import NoAnswer
 from ..fields import SOLVE
 from ..rules import Breach, InvalidDesign, check
 from .effects import HEIGHT_STEP, effects, length_moves, site_moves
+from .feed import FeedFigures, Feeding, Passage, Path, View, feed_figures, path_of
 from .figures import (
     AtFrequency,
     BandFigures,
-    CoilFigures,
     Curve,
     Figures,
     LengthFigures,
     Shares,
     Stress,
-    TrapFigures,
 )
 from .findings import find
-from .lengths import LEAST_END_HEIGHT, Search, find_lengths, first_guess, slope_of
+from .lengths import LEAST_END_HEIGHT, Search, find_lengths, first_guess, slope_of, solved_for
 from .moved import Moved
-from .response import Behaviour, Response, behave, swr
+from .part_stress import part_stress
+from .response import Behaviour, Look, Response, behave, swr
 from .trap import BuiltTrap, build
+from .trap_figures import trap_figures
+from .weather import shifts
 
 SITE_DOUBT = 0.007
 """How far trees, slopes and masts may move a frequency, relative. Common practice, no source."""
@@ -40,6 +42,8 @@ IMPEDANCE_DOUBT, UNKNOWN_IMPEDANCE_DOUBT = 0.05, 0.12
 """How far an impedance may be off over a named soil and over an unknown one, relative; an estimate."""
 SHARE_DOUBT, UNKNOWN_SHARE_DOUBT = 0.02, 0.15
 STRESS_DOUBT = 0.1
+AIM_MET = 1e-4
+"""How near a solved wire must bring the resonance to its aim, relative."""
 WANTED_POINTS, TRAP_POINTS = 33, 61
 
 
@@ -55,16 +59,19 @@ def solve(design: Design, previous: Figures | None = None, *, site_effects: bool
     trap = _built(design)
     wire = hang(design, trap)
     reusable = previous is not None and previous.wire == wire and previous.design.bands == design.bands
-    responses = {
-        role: Response(wire, band, trap, design.station.reference, previous.ports[role] if reusable else None)
-        for role, band in design.bands.items()
-    }
+    path = path_of(design.station)
+    responses = _responses(design, wire, trap, path, previous.ports if reusable else {})
+    if _missed(design, responses) is not None:
+        wire, reusable = hang(design, trap, thorough=True), False
+        responses = _responses(design, wire, trap, path, {})
+        _refuse_missed(design, wire, responses)
     moved = previous.moved if reusable else length_moves(wire, responses)
+    bands = {role: _band(design, role, response, moved, path) for role, response in responses.items()}
     figures = Figures(
         design=design,
         lengths=_lengths(design, wire),
-        trap=_trap(design, trap) if trap is not None else None,
-        bands={role: _band(design, role, response, moved) for role, response in responses.items()},
+        trap=None if trap is None else trap_figures(design, trap, bands.values()),
+        bands=bands,
         findings=(),
         wire=wire,
         ports={role: r.ports for role, r in responses.items()},
@@ -75,9 +82,50 @@ def solve(design: Design, previous: Figures | None = None, *, site_effects: bool
     return replace(figures, findings=find(figures))
 
 
+def _responses(
+    design: Design, wire: Wire, trap: BuiltTrap | None, path: Path | None, ports: dict[str, Ports]
+) -> dict[str, Response]:
+    return {
+        role: Response(wire, band, trap, design.station.reference, ports.get(role), _looking(path))
+        for role, band in design.bands.items()
+    }
+
+
+def _missed(design: Design, responses: dict[str, Response]) -> str | None:
+    """Return a band for which a wire was solved and which is not resonant at its aim, or None."""
+    for role in solved_for(design).values():
+        found, aim = responses[role].resonance, responses[role].band.target
+        if found is None or abs(found - aim) > AIM_MET * aim:
+            return role
+    return None
+
+
+def _refuse_missed(design: Design, wire: Wire, responses: dict[str, Response]) -> None:
+    """Refuse wires that are not resonant at an aim after all, as where the reactance falls through zero."""
+    role = _missed(design, responses)
+    if role is None:
+        return
+    response = responses[role]
+    numbers = {"aim_hz": response.band.target, "inner_m": wire.inner}
+    if wire.end is not None:
+        numbers["end_m"] = wire.end
+    if response.resonance is not None:
+        numbers["nearest_resonance_hz"] = response.resonance
+    raise NoAnswer(
+        "aim_not_met",
+        f"bands.{role}.aim",
+        numbers,
+        "another trap resonance, another L to C ratio, or set the wires yourself",
+    )
+
+
 def with_site_effects(figures: Figures) -> Figures:
-    """Return the figures with what the height and the soil are worth, and the findings that follow."""
+    """Return the figures with what height, soil and weather are worth, and the findings that follow."""
     design, wire = figures.design, figures.wire
+    trap = _built(design)
+    if trap is not None and figures.trap is not None:
+        found = shifts(figures, trap, figures.trap.heat)
+        figures = replace(figures, trap=replace(figures.trap, shifts=found))
     there = {role: band for role, band in figures.bands.items() if band.resonance is not None}
     if wire.ground.kind is GroundKind.SPACE or not there:
         return figures
@@ -85,7 +133,6 @@ def with_site_effects(figures: Figures) -> Figures:
     if wire.ground.kind is GroundKind.SOIL:
         soils = [ground_of(design, soil) for soil in UNKNOWN_SOIL_FROM]
     moved = site_moves(wire, soils, {role: figures.moved.ranges[role] for role in there})
-    trap = _built(design)
     bands = dict(figures.bands)
     for role, band in there.items():
         higher, lower, *by_soil = moved.by(role, band.resonance, trap)
@@ -105,8 +152,8 @@ def _built(design: Design) -> BuiltTrap | None:
     return build(design.antenna.trap) if design.antenna.trap is not None else None
 
 
-def hang(design: Design, trap: BuiltTrap | None) -> Wire:
-    """Return the wire with its lengths found and its slope known."""
+def hang(design: Design, trap: BuiltTrap | None, *, thorough: bool = False) -> Wire:
+    """Return the wire with its lengths found and its slope known; `thorough` takes all the steps it needs."""
     site, lengths, material = design.site, design.antenna.lengths, design.antenna.wire
     resistivity = MATERIALS[material.material].resistivity
     if material.conductivity is not None:
@@ -136,8 +183,8 @@ def hang(design: Design, trap: BuiltTrap | None) -> Wire:
             )
         return replace(blank, inner=inner, end=end, slope=slope)
 
-    unknown = [name for name in ("inner", "end") if getattr(lengths, name) is SOLVE]
-    if not unknown:
+    roles = solved_for(design)
+    if not roles:
         side = lengths.inner + (lengths.end or 0.0)
         if site.end_height is not None and site.height - site.end_height >= side:
             lowest = site.height - side
@@ -155,9 +202,7 @@ def hang(design: Design, trap: BuiltTrap | None) -> Wire:
         wire = make(lengths.inner, lengths.end)
         _refuse_low_ends(wire)
         return wire
-    role_for = {"inner": "upper", "end": "lower"}
     bands = dict(design.bands.items())
-    roles = [role_for[n] if trap is not None and role_for[n] in bands else "lower" for n in unknown]
     impedance = None if trap is None else trap.impedance
     search = Search(
         make=make,
@@ -165,14 +210,14 @@ def hang(design: Design, trap: BuiltTrap | None) -> Wire:
         end=None if lengths.end is SOLVE else lengths.end,
         has_trap=trap is not None,
         trap=impedance,
-        aims=tuple(bands[r].target for r in roles),
-        keys=tuple(f"antenna.lengths.{n}" for n in unknown),
-        aim_keys=tuple(f"bands.{r}.aim" for r in roles),
+        aims=tuple(bands[r].target for r in roles.values()),
+        keys=tuple(f"antenna.lengths.{n}" for n in roles),
+        aim_keys=tuple(f"bands.{r}.aim" for r in roles.values()),
     )
     guess = first_guess(
         {role: band.target for role, band in bands.items()}, impedance, search.inner, blank.radius
     )
-    return make(*find_lengths(search, guess))
+    return make(*find_lengths(search, guess, thorough=thorough))
 
 
 def _refuse_low_ends(wire: Wire) -> None:
@@ -204,13 +249,29 @@ def ground_of(design: Design, soil: str | None = None) -> Ground:
     return Ground(kind=kind, conductivity=known.conductivity, permittivity=known.permittivity)
 
 
-def _band(design: Design, role: str, response: Response, moved: Moved) -> BandFigures:
+def _looking(path: Path | None) -> Callable[[float, complex], View] | None:
+    """Return how a band looks from where it is judged, the tuner set for its aim; None without a feed."""
+    if path is None:
+        return None
+    return lambda aim, impedance: View(path=path, setting=path.set_at(aim, impedance))
+
+
+def wanted_frequencies(band: Band) -> np.ndarray:
+    """Return frequencies over the wanted part of a band, segment by segment."""
+    return np.concatenate([np.linspace(*edges, WANTED_POINTS) for edges in band.segments_wanted])
+
+
+def _band(
+    design: Design, role: str, response: Response, moved: Moved, path: Path | None = None
+) -> BandFigures:
     station, band, trap = design.station, response.band, response.trap
+    feeding = None if path is None else Feeding(path, response.look)
     wanted = behave(
-        response.ports.at(np.append(np.linspace(*band.wanted, WANTED_POINTS), band.target)),
+        response.ports.at(np.append(wanted_frequencies(band), band.target)),
         trap,
         station.reference,
         station.power,
+        feeding,
     )
     aim = at_point(wanted, -1, design)
     part = wanted.swr[:-1]
@@ -221,6 +282,7 @@ def _band(design: Design, role: str, response: Response, moved: Moved) -> BandFi
     by = effects(response, role, moved)
     of_trap = abs(by.trap or 0.0) * trap.doubt / 2 if by is not None and trap is not None else 0.0
     near = response.near
+    feed = None if path is None else _feed(path, response, feeding.passage, aim)
     return BandFigures(
         role=role,
         name=band.name,
@@ -240,6 +302,7 @@ def _band(design: Design, role: str, response: Response, moved: Moved) -> BandFi
         feed_current=aim.feed_current,
         stress=aim.stress,
         worst_stress=_worst(wanted, design),
+        parts=() if trap is None else part_stress(design, trap, wanted),
         effects=by,
         curve=Curve(frequency=near.frequency[::2], impedance=near.impedance[::2], swr=near.swr[::2]),
         frequency_doubt=math.hypot(SITE_DOUBT * band.target, of_trap),
@@ -247,18 +310,48 @@ def _band(design: Design, role: str, response: Response, moved: Moved) -> BandFi
         swr_doubt=relative * aim.swr,
         share_doubt=UNKNOWN_SHARE_DOUBT if unknown else SHARE_DOUBT,
         stress_doubt=STRESS_DOUBT,
+        feed=feed,
     )
+
+
+def _feed(path: Path, response: Response, over: Passage, aim: AtFrequency) -> FeedFigures:
+    """Return what lies between feed point and transmitter does on a band."""
+    setting, near = response.look.setting, response.near
+    ratio = swr(path.other(near.frequency, near.impedance, setting), path.reference)
+    dip = int(np.argmin(ratio))
+    shares = {"sky": aim.shares.sky, "ground": aim.shares.ground, "wire": aim.shares.wire}
+    if response.trap is not None:
+        shares["traps"] = aim.shares.trap
+    return feed_figures(path, setting, over, shares, (float(near.frequency[dip]), float(ratio[dip])))
 
 
 def at_frequencies(figures: Figures, frequencies: Sequence[float]) -> tuple[AtFrequency, ...]:
     """Return what the antenna does at any frequencies, each solved by itself."""
     design, wire = figures.design, figures.wire
-    trap = _built(design)
+    trap, path = _built(design), path_of(design.station)
+    feeding = None if path is None else Feeding(path, _retuned(path))
     found = []
     for frequency in frequencies:
         ports = solve_ports(wire, np.array([float(frequency)]), plan(wire, frequency), frequency)
-        found.append(at_point(behave(ports, trap, design.station.reference, design.station.power), 0, design))
+        over = behave(ports, trap, design.station.reference, design.station.power, feeding)
+        found.append(at_point(over, 0, design))
     return tuple(found)
+
+
+def _retuned(path: Path) -> Look:
+    """Return how single frequencies look from where they are judged, the tuner set for each."""
+
+    def look(frequency: np.ndarray, feed: np.ndarray) -> np.ndarray:
+        each = zip(frequency.tolist(), feed.tolist(), strict=True)
+        settings = [path.set_at(f, z) for f, z in each]
+        return np.array(
+            [
+                complex(path.judged(frequency[i : i + 1], feed[i : i + 1], setting)[0])
+                for i, setting in enumerate(settings)
+            ]
+        )
+
+    return look
 
 
 def at_point(over: Behaviour, i: int, design: Design) -> AtFrequency:
@@ -326,39 +419,4 @@ def _lengths(design: Design, wire: Wire) -> LengthFigures:
         end_height=None if wire.ground.kind is GroundKind.SPACE else wire.end_height,
         slope=wire.slope,
         doubt=SITE_DOUBT * wire.inner,
-    )
-
-
-def _trap(design: Design, trap: BuiltTrap) -> TrapFigures:
-    at = np.float64(trap.resonance)
-    roles = {role: band.target for role, band in design.bands.items()}
-    wound = trap.wound
-    edges = [f for _, band in design.bands.items() for f in (band.low, band.high)] + [trap.resonance]
-    frequency = np.linspace(0.9 * min(edges), 1.1 * max(edges), TRAP_POINTS)
-    impedance = trap.impedance(frequency)
-    return TrapFigures(
-        resonance=trap.resonance,
-        inductance=trap.inductance,
-        capacitance=trap.capacitance,
-        fitted_capacitance=trap.fitted,
-        q=trap.q,
-        dynamic_resistance=float(dynamic_resistance(*trap.circuit(at))),
-        impedance={
-            role: complex(z)
-            for role, z in zip(roles, trap.impedance(np.array(list(roles.values()))), strict=True)
-        },
-        coil=None
-        if wound is None
-        else CoilFigures(
-            turns=wound.turns,
-            diameter=wound.diameter,
-            length=wound.length,
-            wire_length=wound.wire_length,
-            self_capacitance=trap.self_capacitance,
-            crowding=wound.proximity_factor,
-        ),
-        curve=Curve(frequency=frequency, impedance=impedance, swr=swr(impedance, design.station.reference)),
-        resonance_doubt=trap.resonance * trap.doubt / 2,
-        inductance_doubt=trap.inductance * trap.doubt,
-        q_range=(trap.q * trap.q_factors[0], trap.q * trap.q_factors[1]),
     )

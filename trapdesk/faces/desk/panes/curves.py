@@ -67,7 +67,7 @@ def _swr_panel(figures: Figures, band: BandFigures) -> Panel:
         y_range=(1.0, top),
         ticks=tuple(ticks.items()),
         marks=(design.low / 1e6, design.high / 1e6),
-        wanted=tuple(edge / 1e6 for edge in design.wanted),
+        wanted=tuple(edge / 1e6 for edge in design.wanted_edges),
         limit=limit,
     )
 

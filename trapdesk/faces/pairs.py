@@ -1,0 +1,91 @@
+"""Values typed as name=value: read with every fault at once."""
+
+from __future__ import annotations
+
+import difflib
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+from ..errors import BadInput, Fault
+from ..unit_names import Dimension
+from ..units import read, read_impedance, show
+
+IMPEDANCE, OHMS, TEXT = "impedance", "ohms", "text"
+
+
+@dataclass(frozen=True, kw_only=True)
+class Name:
+    """What may be typed: what it measures, an example, and its limits."""
+
+    dimension: str
+    example: str
+    low: float | None = None
+    above: float | None = None
+    high: float | None = None
+
+
+def read_pairs(texts: Sequence[str], names: Mapping[str, Name], example: str) -> dict[str, Any]:
+    """Return the values typed by name; BadInput names every text that cannot be used."""
+    known = {name.lower(): name for name in names}
+    found: dict[str, Any] = {}
+    faults: list[Fault] = []
+    for text in texts:
+        typed, equals, value = text.partition("=")
+        name = known.get(typed.strip().lower(), "")
+        if not equals or not typed.strip():
+            faults += [Fault("", "unreadable", text, help=f"write name=value: {example}")]
+        elif not name:
+            near = difflib.get_close_matches(typed.strip()[:10].lower(), known, n=1)
+            help = f"did you mean {known[near[0]]}?" if near else f"names are {', '.join(names)}"
+            faults += [Fault("", "unknown_key", typed, help=help)]
+        elif name in found:
+            faults += [Fault("", "duplicate", name, help="keep one of them")]
+        else:
+            try:
+                found[name] = _value(name, names[name], value)
+            except BadInput as refused:
+                faults += refused.faults
+                found[name] = None
+    if faults:
+        raise BadInput(faults)
+    return found
+
+
+def _value(name: str, what: Name, text: str) -> Any:
+    if what.dimension == TEXT:
+        if not text.strip():
+            raise BadInput(Fault(name, "empty", help=f"for example {name}={what.example}"))
+        return text.strip()
+    if what.dimension in (IMPEDANCE, OHMS):
+        value = read_impedance(text, name)
+        if value.real <= 0:
+            help = f"a load takes power only with a resistance above zero: {name}={what.example}"
+            raise BadInput(Fault(name, "resistance_is_not_above_zero", text, help=help))
+        if what.dimension == IMPEDANCE:
+            return value
+        if value.imag:
+            raise BadInput(
+                Fault(name, "is_not_a_resistance", text, help=f"for example {name}={what.example}")
+            )
+    kind = Dimension.RESISTANCE if what.dimension == OHMS else Dimension(what.dimension)
+    number = value.real if what.dimension == OHMS else read(text, kind, name)
+    for code, bound, broken in (
+        ("too_small", what.low, what.low is not None and number < what.low),
+        ("not_above", what.above, what.above is not None and number <= what.above),
+        ("too_large", what.high, what.high is not None and number > what.high),
+    ):
+        if broken:
+            raise BadInput(Fault(name, code, text, show(bound, kind), f"for example {name}={what.example}"))
+    return number
+
+
+def need(found: Mapping[str, Any], names: Mapping[str, Name], wanted: Sequence[str]) -> None:
+    """Raise BadInput for each value that must be given and is not."""
+    faults = [
+        Fault(name, "missing", help=f"for example {name}={names[name].example}")
+        for name in wanted
+        if name not in found
+    ]
+    if faults:
+        raise BadInput(faults)
