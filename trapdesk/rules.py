@@ -10,7 +10,7 @@ from .design import Band, Design, Shape, Site, get
 from .doubts import Doubts, farthest
 from .errors import TrapdeskError
 from .fields import SOLVE, Declared, walk
-from .part_rules import Breach, trap_rules
+from .part_rules import Breach, part_rules, trap_rules
 from .parts import Trap, solvable
 from .station_rules import station_rules, wanted_rules
 
@@ -32,6 +32,12 @@ def check(design: Design) -> tuple[Breach, ...]:
     """Return every rule a design breaks: first each value against its limits, then what must fit together."""
     breaches = [b for key, known, value in walk(design) for b in _limits(key, known, value)]
     return tuple(breaches) or tuple(_together(design))
+
+
+def check_part(part: Any, key: str) -> tuple[Breach, ...]:
+    """Return every rule a coil or capacitor breaks by itself."""
+    breaches = [b for where, known, value in walk(part, f"{key}.") for b in _limits(where, known, value)]
+    return tuple(breaches) or tuple(part_rules(part, key))
 
 
 def _limits(key: str, known: Declared, value: Any) -> Iterator[Breach]:

@@ -15,7 +15,7 @@ from .coil_kinds import CableCoil
 from .design import Design, with_value
 from .errors import BadInput, Fault, FileFault, visible
 from .fields import SOLVE, Declared, declared
-from .rules import check
+from .rules import check, check_part
 from .spoken import bare, example, kinds, of_one_value, spoken, tables
 
 FORMAT = 1
@@ -307,3 +307,16 @@ def _what(value: Any) -> str:
     """Return what a TOML value is, in a word for a fault's code."""
     words = {dict: "a_table", list: "a_list", bool: "true_or_false", str: "text", int: "a_number"}
     return words.get(type(value), "a_number" if isinstance(value, float) else "a_date")
+
+
+def read_part(kinds: dict[str, type], table: dict[str, Any], where: str) -> Any:
+    """Return a part by itself, of one kind out of several; BadInput with every fault, keys as in a design."""
+    reader = _Reader("")
+    usual = next(iter(kinds))
+    part = reader.of_kind(kinds, usual, None, table, where)
+    if not reader.faults:
+        for breach in check_part(part, where):
+            reader.add(spoken(breach))
+    if reader.faults:
+        raise BadInput(reader.faults)
+    return part

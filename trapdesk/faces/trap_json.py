@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from typing import Any
 
-from ..services.figures import CoilFigures, Figures, Heat, PartFigures, PartStress, Shift
+from ..services.figures import Adjustment, CoilFigures, Figures, Heat, PartFigures, PartStress, Shift
 
 
 def add_trap(table: dict[str, Any], figures: Figures) -> None:
@@ -23,16 +24,7 @@ def add_trap(table: dict[str, Any], figures: Figures) -> None:
         "z_ohm": trap.impedance,
         "reactance_ohm": {role: z.imag for role, z in trap.impedance.items()},
         "capacitor_tolerance": trap.tolerance,
-        "adjustments": [
-            {
-                "what": a.what,
-                "where": a.where,
-                "raises_hz": a.raises,
-                "lowers_hz": a.lowers,
-                "rate_hz_per_m": a.rate,
-            }
-            for a in trap.adjustments
-        ],
+        "adjustments": adjustments(trap.adjustments),
         "parts": [_part(part) for part in trap.parts],
         "stress": {role: [_stress(part) for part in band.parts] for role, band in figures.bands.items()},
         "heat": _heat(trap.heat),
@@ -68,6 +60,20 @@ def coil(coil: CoilFigures) -> dict[str, Any]:
         "own_resonance_hz": coil.own_resonance,
         "crowding": coil.crowding,
     }
+
+
+def adjustments(found: Iterable[Adjustment]) -> list[dict[str, Any]]:
+    """Return what can be moved on a built trap."""
+    return [
+        {
+            "what": a.what,
+            "where": a.where,
+            "raises_hz": a.raises,
+            "lowers_hz": a.lowers,
+            "rate_hz_per_m": a.rate,
+        }
+        for a in found
+    ]
 
 
 def _part(part: PartFigures) -> dict[str, Any]:

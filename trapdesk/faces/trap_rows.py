@@ -96,17 +96,17 @@ def adjustment_text(adjustment: Adjustment) -> str:
     return text
 
 
-def side_text(trap: TrapFigures) -> str:
+def side_text(adjustments: tuple[Adjustment, ...]) -> str:
     """Return on which side of its resonance to build a trap."""
-    if not trap.adjustments:
+    if not adjustments:
         return "right at once: nothing on it can be moved afterwards"
-    if all(a.lowers <= HARDLY for a in trap.adjustments):
+    if all(a.lowers <= HARDLY for a in adjustments):
         return "a little low: afterwards it only goes up"
     return "a little low: raising it is the easier way"
 
 
 def _side(trap: TrapFigures) -> Iterator[Cells]:
-    yield _row("build", "build it", side_text(trap))
+    yield _row("build", "build it", side_text(trap.adjustments))
     for number, adjustment in enumerate(trap.adjustments, start=1):
         key = f"adjustments.{number}"
         yield _row(key, "then", adjustment_text(adjustment), why="what its kind allows after building")
@@ -169,8 +169,9 @@ def _parts(figures: Figures, given: Callable[[str], str], of_cable: bool) -> Ite
     trap, design = figures.trap, figures.design
     inductance = inductance_text(figures)
     kind = design.antenna.trap.coil.kind if design.antenna.trap else ""
+    was = given("coil.inductance") if kind == "given" else ""
     yield _row(
-        "coil.inductance", "inductance", inductance, given=given("coil.inductance") if kind == "given" else "",
+        "coil.inductance", "inductance", inductance, given=was,
         why="of the plain circuit that is alike near resonance" if of_cable else "",
     )  # fmt: skip
     fitted = f"{trap.fitted_capacitance * 1e12:.3g}"
@@ -243,19 +244,14 @@ def stress_rows(figures: Figures, band: BandFigures) -> Iterator[Cells]:
         return
     for part in parts:
         doubt = band.stress_doubt
-        cells = [
-            str(known(value, value * doubt, dimension).number) + " " + unit
-            for value, dimension, unit in (
-                (
-                    part.peak_voltage,
-                    "voltage",
-                    known(part.peak_voltage, part.peak_voltage * doubt, "voltage").unit,
-                ),
-                (part.rms_current, "current", "A"),
-                (part.average, "power", "W"),
+        volts, amps, watts = (
+            f"{shown.number} {shown.unit}"
+            for shown in (
+                known(part.peak_voltage, part.peak_voltage * doubt, "voltage"),
+                known(part.rms_current, part.rms_current * doubt, "current", "A"),
+                known(part.average, part.average * doubt, "power", "W"),
             )
-        ]
-        volts, amps, watts = cells
+        )
         limit = "no limit known"
         if part.share is not None:
             limit = f"{percent(part.share)} of {RULES[part.rules]}"
@@ -277,8 +273,7 @@ def heat_rows(figures: Figures) -> Iterator[Cells]:
     softens = f"softens {heat.softens:.0f} C" if heat.softens is not None else ""
     yield {
         "key": "antenna.trap.heat", "group": "stress", "label": "trap gets warmer by", "value": text,
-        "given": softens, "why": "an estimate in still air; with the sun it reaches"
-        f" {heat.hottest:.0f} degC",
+        "given": softens, "why": f"an estimate in still air; with the sun it reaches {heat.hottest:.0f} degC",
     }  # fmt: skip
 
 

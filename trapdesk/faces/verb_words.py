@@ -1,4 +1,29 @@
-"""What the verbs match, line and tuner say of themselves; nothing heavy, for help answers at once."""
+"""What the command line and some verbs say of themselves; nothing heavy, for help answers at once."""
+
+ABOUT = """\
+Design, build and tune a two-band trap dipole, in one terminal.
+
+  trapdesk [FILE]               open the desk, on a design or the first preset
+  trapdesk figures FILE         everything computed for a design
+  trapdesk sheet FILE           the build sheet, plain text for paper
+  trapdesk tank NAME=VALUE ...  a parallel resonator from any few of its values
+  trapdesk match Z=... f=...    a load of your own matched, network by network
+  trapdesk line TYPE length=... what a line does to a load
+  trapdesk tuner FILE           is a tuner worth it; its settings, its reach
+  trapdesk rummage FILE         the best traps a box of parts can build for it
+  trapdesk choices FILE         other trap resonances, other L to C
+  trapdesk tolerance FILE       will it still cover the bands, built and hung
+  trapdesk readings FILE ...    what was measured of a trap; how to measure it
+  trapdesk touchstone FILE      the feed impedance as a Touchstone file
+
+FILE is a design in TOML, or the name of a preset. A file that is called like a
+verb is opened by its path: trapdesk ./figures. Every verb has --help with an
+example."""
+
+ENDING = """\
+Exit: 0 an answer, 1 no answer exists, 2 bad input, 3 a file that cannot be
+read or written.
+All figures are estimates until something is measured."""
 
 MATCH = """\
 Print how to match a load, network by network, the least loss first.
@@ -23,3 +48,14 @@ Print what a line does to a load, or what load is at its far end.
 TUNER = """\
 Print whether a tuner is worth it, the watts on the way down, its settings and
 the loads it can match. A design without a line may be given one here."""
+
+COIL = """\
+Print one coil: what it is at a frequency, what to wind and cut, what can still be
+moved afterwards.
+  kind          solenoid unless said; given, cable, toroid
+  f             at what frequency
+  turns         or, to have them solved: the L it shall have, or the C it shall
+                resonate with; turns of cable are solved for f alone
+  and what it is made from, as in a design's table [antenna.trap.coil]:
+  former wire pitch length insulation lead material; cable former tail terminals;
+  inductance_index outer inner height wire"""

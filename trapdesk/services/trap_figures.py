@@ -49,10 +49,10 @@ def trap_figures(design: Design, trap: BuiltTrap, bands: Iterable[BandFigures]) 
         q=trap.q,
         dynamic_resistance=float(dynamic_resistance(*trap.circuit(at))),
         impedance={role: complex(z) for role, z in zip(roles, each[TRAP_POINTS:], strict=True)},
-        coil=None if trap.wound is None else _coil(trap, trap.wound),
+        coil=None if trap.wound is None else coil_figures(trap, trap.wound),
         curve=Curve(frequency=frequency, impedance=impedance, swr=swr(impedance, design.station.reference)),
         resonance_doubt=trap.resonance * trap.doubt / 2,
-        inductance_doubt=trap.inductance * trap.doubt,
+        inductance_doubt=_inductance_doubt(part, trap),
         q_range=(trap.q * trap.q_factors[0], trap.q * trap.q_factors[1]),
         bring_to=trap.resonance / (1 - sealed),
         parts=tuple(_part(fitted, trap.resonance) for fitted, _ in weights(trap.capacitor, trap.resonance)),
@@ -62,7 +62,16 @@ def trap_figures(design: Design, trap: BuiltTrap, bands: Iterable[BandFigures]) 
     )
 
 
-def _coil(trap: BuiltTrap, wound: Wound) -> CoilFigures:
+def _inductance_doubt(part: Trap, trap: BuiltTrap) -> float:
+    """Return the doubt of the inductance: what was measured of it, or that of its making."""
+    measured = part.measured
+    if measured is not None and measured.inductance is not None:
+        return measured.inductance_doubt
+    return trap.inductance * trap.doubt
+
+
+def coil_figures(trap: BuiltTrap, wound: Wound) -> CoilFigures:
+    """Return what to wind."""
     half = round(2 * wound.turns) / 2
     own = trap.self_capacitance[1]
     alone = None if trap.coil is None or not own else float(lc_resonance(trap.inductance, own))

@@ -1,0 +1,142 @@
+"""The trap on the build sheet: what to buy and cut, how to wind each kind, which side to build on."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from typing import Any
+
+from ..coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
+from ..engine.cable_trap import Terminals
+from ..services.coils import CUT_TAIL
+from ..services.figures import Figures
+from .layout import folded
+from .lines import inductance_text, rating, turns_doubt
+from .shown import about, exact, known, megahertz, percent
+from .trap_rows import adjustment_text, part_label, part_text, side_text
+
+ALIKE = 0.005
+"""How far the two traps may differ. [1], common practice, no source"""
+HEAD = "           "
+
+
+def parts(figures: Figures) -> Iterator[str]:
+    """Yield what both traps take."""
+    trap, design = figures.trap, figures.design
+    if trap is None:
+        return
+    of_cable = isinstance(design.antenna.trap.coil, CableCoil)
+    rated = rating(design)
+    if not of_cable:
+        volts = f"rated {about(rated, 'voltage', 3)} peak at radio frequency" if rated else "rating not given"
+        if len(trap.parts) > 1 or (trap.parts and trap.parts[0].name != "capacitor"):
+            for part in trap.parts:
+                place = part_label(part).removeprefix("capacitor").strip()
+                yield from folded("  capacitors ", f"2 of {place and place + ', '}{part_text(part)}")
+        else:
+            fitted = exact(trap.fitted_capacitance, "capacitance", digits=3)
+            yield from folded("  capacitors ", f"2 of {fitted}, {volts}")
+    if trap.coil is not None:
+        name = "cable     " if of_cable else "coil wire "
+        yield from folded(f"  {name} ", f"2 of {_cut(figures):.2f} m")
+
+
+def _cut(figures: Figures) -> float:
+    """Return the wire or cable of one trap, its tails included."""
+    coil = figures.trap.coil
+    return coil.cut or coil.wire_length + 2 * CUT_TAIL
+
+
+def lines(figures: Figures) -> Iterator[str]:
+    """Yield how to build a trap, and what to check."""
+    trap, part = figures.trap, figures.design.antenna.trap
+    yield "TRAPS: build two alike"
+    yield from KINDS[type(part.coil)](figures, part.coil)
+    if not isinstance(part.coil, CableCoil):
+        fitted = exact(trap.fitted_capacitance, "capacitance", digits=3)
+        yield from folded("  with     ", f"{fitted} across the coil")
+    yield from folded("  build    ", f"{side_text(trap.adjustments)}.")
+    for adjustment in trap.adjustments:
+        yield from folded(HEAD, f"Then {adjustment_text(adjustment)}.")
+    target = trap.bring_to or trap.resonance
+    check = f"{megahertz(target)} by itself, hanging free, before it goes into the wire."
+    if target != trap.resonance:
+        check += f" Closing it brings it to {megahertz(trap.resonance)}: measure again after that."
+    if trap.resonance_doubt:
+        check += f" As wound it may be {about(trap.resonance_doubt, 'frequency', 1)} off: bring it there."
+    yield from folded("  check    ", f"{check} Both within {ALIKE * 100:.1f} % of each other.")
+    yield from folded("  Q        ", f"about {about(trap.q, 'ratio')}")
+
+
+def _given(figures: Figures, made: GivenCoil) -> Iterator[str]:
+    yield from folded("  coil     ", f"{inductance_text(figures)} at the trap's resonance")
+
+
+def _solenoid(figures: Figures, made: Solenoid) -> Iterator[str]:
+    coil = figures.trap.coil
+    turns = known(coil.turns, turns_doubt(figures), "count")
+    spaced = made.pitch is not None or made.length is not None
+    pitch = coil.pitch or made.pitch or 0.0
+    how = f"{exact(pitch, 'length', digits=3)} from turn to turn" if spaced else "wound close"
+    yield from folded(
+        "  coil     ",
+        f"{turns.value} turns of {made.material} wire {exact(made.wire, 'length')} on a former"
+        f" {exact(made.former, 'length')} outside, {how}.",
+    )
+    yield from folded(
+        HEAD,
+        f"Mean diameter {coil.diameter * 1e3:.1f} mm (former and one wire), winding length"
+        f" {coil.length * 1e3:.1f} mm (turns times pitch). Cut {_cut(figures):.2f} m:"
+        f" {coil.wire_length:.2f} m in the turns, {CUT_TAIL * 100:.0f} cm for each tail"
+        + (f", {exact(made.lead, 'length')} for each lead." if made.lead else "."),
+    )
+    yield from folded(
+        HEAD,
+        "Wind one turn more and take off: turns pushed together lower the trap, pulled apart raise it.",
+    )
+
+
+def _cable(figures: Figures, made: CableCoil) -> Iterator[str]:
+    coil = figures.trap.coil
+    if coil.turns_range is not None:
+        low, high = coil.turns_range
+        first = f"Wind {coil.wind} turns and trim: {low:.2f} to {high:.2f} bring it to its resonance."
+    else:
+        first = f"{coil.turns:.2f} turns."
+    how = f"{exact(coil.pitch, 'length', digits=3)} from turn to turn" if made.pitch else "wound close"
+    yield from folded(
+        "  cable    ", f"{made.cable} on a former {exact(made.former, 'length')} outside, {how}."
+    )
+    yield from folded(
+        HEAD,
+        f"{first} Cut {coil.cut:.2f} m of cable, {exact(made.tail, 'length')} of it for each tail.",
+    )
+    where = (
+        "the two ends that are left go to the wires"
+        if made.terminals is Terminals.SERIES
+        else "the joint and the shield's other end go to the wires, the inner conductor there stays open"
+    )
+    yield from folded(
+        "  join     ", f"Inner conductor at one end to the shield at the other; {where} ({made.terminals})."
+    )
+    lost = 1 - 1 / coil.crowding
+    yield from folded(HEAD, f"Crowding costs {percent(lost)} of Q; weave and tinning cost more.")
+
+
+def _toroid(figures: Figures, made: Toroid) -> Iterator[str]:
+    coil = figures.trap.coil
+    turns = known(coil.turns, turns_doubt(figures), "count")
+    yield from folded(
+        "  coil     ",
+        f"{turns.value} turns, each once through the hole, of wire {exact(made.wire, 'length')} on a core"
+        f" {exact(made.outer, 'length')} x {exact(made.inner, 'length')} x {exact(made.height, 'length')},"
+        f" {exact(made.inductance_index, 'inductance')} a turn; {coil.most_turns} would fit.",
+    )
+    yield from folded(HEAD, f"Cut {_cut(figures):.2f} m. Wind one turn more and take off.")
+
+
+KINDS: dict[type, Callable[[Figures, Any], Iterator[str]]] = {
+    GivenCoil: _given,
+    Solenoid: _solenoid,
+    CableCoil: _cable,
+    Toroid: _toroid,
+}
