@@ -17,9 +17,12 @@ from trapdesk.design import with_value
 from trapdesk.faces import cli, readings_out
 from trapdesk.measured_part import Measured
 from trapdesk.reading_kinds import KINDS, PARTS
+from trapdesk.services.beliefs import beliefs, draw
+from trapdesk.services.ensemble import Ensemble
 from trapdesk.services.part_values import ReadingRefused
 from trapdesk.services.solve import solve
 from trapdesk.services.trap import build
+from trapdesk.services.trial_traps import STAGES
 
 LOOP = HERE / "s1p" / "trap_loop_ma_mhz.s1p"
 PRESET = "40-20-vee"
@@ -159,7 +162,7 @@ def test_keep_puts_it_into_the_file_and_nothing_else(call, file):
     shown(call("readings", file, "trap.f0=13.98MHz", "trap.f0_with=11.6MHz,added=22pF", "--keep"))
     text = file.read_text("utf-8")
     kept = store.load(file).antenna.trap.measured
-    assert kept.resonance == pytest.approx(13.98e6)
+    assert (kept.resonance, kept.resonance_doubt) == (13.98e6, 14e3)
     assert kept.capacitance_doubt == pytest.approx(0.66e-12, rel=0.02)
     assert kept.q is None
     assert [line for line in TEXT.splitlines() if line not in text.splitlines()] == []
@@ -237,6 +240,34 @@ def test_what_was_not_measured_stays_as_computed(values, expected):
             assert getattr(trap, name) == pytest.approx(wanted, rel=1e-9)
     product = (2 * math.pi * trap.resonance) ** 2 * trap.inductance * trap.capacitance
     assert product == pytest.approx(1, rel=1e-6)
+
+
+def spread(design, **more):
+    built = build(design.antenna.trap)
+    varying = beliefs(design, built)
+    return built, {name: varying[name] for name in ("coil", "capacitor", "turns", "q") if name in varying}
+
+
+def test_doubt_of_what_was_measured_goes_into_the_ensemble():
+    _, computed = spread(DESIGN)
+    assert set(computed) == {"coil", "capacitor", "turns", "q"}
+    trap, known = spread(measured(resonance=13.98e6, resonance_doubt=14e3, q=250.0, q_doubt=25.0))
+    # 0.1 % of the resonance is 0.2 % of the inductance, and nothing of the making is left in doubt beside it.
+    assert set(known) == {"coil", "q"}
+    assert known["coil"].size == pytest.approx(2 * 14e3 / 13.98e6)
+    assert known["q"].size == pytest.approx(0.1)
+    _, parts = spread(
+        measured(inductance=2.7e-6, inductance_doubt=27e-9, capacitance=48e-12, capacitance_doubt=1e-12)
+    )
+    assert parts["coil"].size == pytest.approx(0.01)
+    assert parts["capacitor"].size == pytest.approx(1 / 48, rel=0.05)
+    ensemble = Ensemble(solve(measured(resonance=13.98e6, resonance_doubt=14e3)))
+    count = 4000
+    # What the day's temperature adds is left out here.
+    draws = {"coil": draw(ensemble.varying, 1, 0, count)["coil"]}
+    found = ensemble.of_traps.resonance(ensemble.traps(draws, STAGES[0], count))
+    assert found.std() == pytest.approx(14e3, rel=0.05)
+    assert found.mean() == pytest.approx(13.98e6, abs=4 * 14e3 / math.sqrt(2 * count))
 
 
 def test_measured_as_computed_changes_nothing():

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass
 from typing import Any
 
@@ -13,6 +13,7 @@ from ..design import Design, Shape
 from ..doubts import SIGMAS, Meaning, farthest
 from ..engine.ground import SOILS, UNKNOWN_SOIL_FROM, Ground, GroundKind
 from ..engine.sampling import normal_probability, normal_quantile, uniform
+from ..measured_part import Measured
 from ..parts import GivenCoil, Solenoid
 from .capacitors import drift_of, tolerance_of
 from .trap import BuiltTrap
@@ -155,8 +156,58 @@ def _of_trap(design: Design, trap: BuiltTrap) -> Iterator[tuple[str, Belief]]:
         alike = 0.0 if meaning is Meaning.MEASURED else alike
         return Belief(size=size, meaning=meaning, pair=True, alike=alike)
 
-    coil = part.coil
     pair = {"pair": True, "alike": doubts.alike}
+    known = dict(_as_measured(part.measured, trap))
+    yield from known.items()
+    for name, belief in _as_built(design, trap, about, pair):
+        if name not in known:
+            yield name, belief
+    yield "tuning", about("tuning", doubts.tuning)
+    weather = part.weather
+    for name, shift, factors in (
+        ("sealing", weather.sealing_shift, SEALING),
+        ("rain", weather.rain_shift, RAIN),
+    ):
+        ends = [getattr(doubts, f"{name}_{end}") for end in ("least", "most")]
+        low, high = (f * shift if end is None else end for end, f in zip(ends, factors, strict=True))
+        yield name, _between(min(low, high), high, **pair)
+    for name in ("temperature", "weather"):
+        cold, hot = (doubts.temperature * (at - weather.built_at) for at in (weather.in_cold, weather.in_sun))
+        yield name, _between(cold, hot)
+
+
+def _as_measured(measured: Measured | None, trap: BuiltTrap) -> Iterator[tuple[str, Belief]]:
+    """Yield what a measured trap leaves in doubt, and with a size of 0 what no longer is.
+
+    A measured resonance leaves its own doubt, put into the coil: at a known resonance the rest hardly counts.
+    """
+    if measured is None:
+        return
+
+    def one_sigma(size: float) -> Belief:
+        return Belief(size=size, meaning=Meaning.MEASURED, pair=True, alike=0.0)
+
+    settled = one_sigma(0.0)
+    if measured.resonance is not None or measured.inductance is not None:
+        size = 2 * measured.resonance_doubt / trap.resonance
+        if measured.resonance is None:
+            size = measured.inductance_doubt / trap.inductance
+        yield "coil", one_sigma(size)
+        yield from ((name, settled) for name in ("turns", "pitch", "former"))
+    if measured.resonance is not None:
+        yield from ((name, settled) for name in ("capacitor", "self_capacitance"))
+    elif measured.capacitance is not None:
+        yield "capacitor", one_sigma(measured.capacitance_doubt / trap.fitted)
+        yield "self_capacitance", settled
+    if measured.q is not None:
+        yield "q", one_sigma(min(measured.q_doubt / measured.q, 0.9))
+
+
+def _as_built(
+    design: Design, trap: BuiltTrap, about: Callable[..., Belief], pair: dict[str, Any]
+) -> Iterator[tuple[str, Belief]]:
+    """Yield what may turn out otherwise in a trap that nobody has measured."""
+    doubts, coil = design.doubts, design.antenna.trap.coil
     if doubts.coil is not None:
         size = doubts.coil
     elif isinstance(coil, GivenCoil):
@@ -181,18 +232,6 @@ def _of_trap(design: Design, trap: BuiltTrap) -> Iterator[tuple[str, Belief]]:
         yield "capacitor", about("capacitor", size)
     reached = max(abs(factor - 1) for factor in trap.q_factors) or Q
     yield "q", about("q", min(reached, 0.9) if doubts.q is None else doubts.q)
-    yield "tuning", about("tuning", doubts.tuning)
-    weather = part.weather
-    for name, shift, factors in (
-        ("sealing", weather.sealing_shift, SEALING),
-        ("rain", weather.rain_shift, RAIN),
-    ):
-        ends = [getattr(doubts, f"{name}_{end}") for end in ("least", "most")]
-        low, high = (f * shift if end is None else end for end, f in zip(ends, factors, strict=True))
-        yield name, _between(min(low, high), high, **pair)
-    for name in ("temperature", "weather"):
-        cold, hot = (doubts.temperature * (at - weather.built_at) for at in (weather.in_cold, weather.in_sun))
-        yield name, _between(cold, hot)
 
 
 def drifts(design: Design, trap: BuiltTrap) -> tuple[float, float]:

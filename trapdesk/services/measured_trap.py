@@ -10,6 +10,7 @@ from typing import Any, Protocol, TypeVar
 import numpy as np
 
 from ..design import Design, with_value
+from ..engine.measured import Estimate
 from ..engine.stress import Stress
 from ..measured_part import Measured
 from .part_values import PartsFound
@@ -163,6 +164,13 @@ def _as_fields(names: tuple[str, ...], found: PartsFound) -> dict[str, float | N
     fields: dict[str, float | None] = {}
     for name in names:
         one = getattr(found, name)
-        fields[name] = one.value if one else None
-        fields[f"{name}_doubt"] = one.sigma if one else 0.0
+        fields[name], fields[f"{name}_doubt"] = _to_doubt(one) if one else (None, 0.0)
     return fields
+
+
+def _to_doubt(one: Estimate) -> tuple[float, float]:
+    """Return a value to a hundredth of its doubt and the doubt to two digits: no finer is it kept."""
+    if one.sigma <= 0.0:
+        return one.value, one.sigma
+    digits = math.floor(math.log10(one.value)) - math.floor(math.log10(one.sigma)) + 3
+    return float(f"{one.value:.{max(digits, 3)}g}"), float(f"{one.sigma:.2g}")
