@@ -1,0 +1,222 @@
+"""What is believed of an antenna once it was read: trials moved to where the readings are, and weighed.
+
+Before readings every trial is as likely as any other. Where readings leave many of those, they are weighed as
+they are. Else the step of an ensemble Kalman filter, repeated until it rests, leads to the most likely antenna;
+trials are drawn around it and each weighed by how much likelier it is than it was to be drawn, so that the
+answer does not hang on the step having been straight.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..engine.fits import Sweep
+from ..engine.sampling import normal_quantile, uniform
+from .antenna_readings import Altered, Forward, Hoist
+from .ensemble import Ensemble
+from .latents import Latents
+from .trial_traps import STAGES, Stage
+
+TRIALS = 1000
+PILOT = 200
+SURVIVE = 0.15
+"""Share of the pilot that must survive for the trials to be weighed as they are. [1]"""
+STEPS, STEP = 12, 0.25
+"""Kalman steps at most, and how far apart numbers are put to see what they do. [sigma]"""
+WIDER = 1.25
+"""How much wider than computed trials are drawn along what was read. [1]"""
+STREAM = 4096
+"""First stream of random numbers here: those of the beliefs lie below."""
+BUILT = Stage(name="built", sealed=True)
+"""Traps closed as they came out, never brought to their frequency."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class Posterior:
+    """Trials (trials, numbers) with weights that add to 1, and what came with them.
+
+    `evidence` is the log of how likely the readings were before they were taken; `misfit` is how far the most
+    likely antenna is from beliefs and readings, as a sum of squares. `told` is what each reading tells beyond
+    all the others [nats], `strain` how far each is from the most likely antenna [sigma].
+    """
+
+    forward: Forward
+    z: np.ndarray
+    weights: np.ndarray
+    evidence: float
+    misfit: float
+    told: tuple[float, ...]
+    strain: tuple[float, ...]
+    moved: bool
+
+    @property
+    def survivors(self) -> float:
+        """How many trials of equal weight these are worth."""
+        return float(1 / (self.weights**2).sum())
+
+    def even(self, count: int) -> np.ndarray:
+        """Return trials of equal weight."""
+        steps = (np.arange(count) + 0.5) / count
+        picked = np.searchsorted(np.cumsum(self.weights), steps).clip(0, self.weights.size - 1)
+        return self.z[picked]
+
+
+def stage_of(tuned: bool) -> Stage:
+    """Return the stage the traps are at when it hangs."""
+    return STAGES[1] if tuned else BUILT
+
+
+def latents_of(ensemble: Ensemble, moves: int, tunings: int) -> Latents:
+    """Return what a trial is made of after moves and tunings."""
+    has_line = ensemble.path is not None and ensemble.path.line is not None
+    return Latents(ensemble.varying, moves, tunings, has_line, ensemble.wire.end is not None)
+
+
+def update(
+    ensemble: Ensemble,
+    hoists: Sequence[Hoist],
+    *,
+    tuned: bool = True,
+    sweeps: Mapping[str, Sweep] | None = None,
+    trials: int = TRIALS,
+    seed: int = 1,
+    altered: Altered | None = None,
+    latents: Latents | None = None,
+) -> Posterior:
+    """Return what is believed once all readings of all hoists are in.
+
+    The last hoist is how it hangs now, read or not. `altered` makes it another antenna than was meant.
+    """
+    if latents is None:
+        latents = latents_of(ensemble, hoists[-1].moves, hoists[-1].tunings)
+    forward = Forward(ensemble, latents, hoists, stage_of(tuned), sweeps or {}, altered)
+    return weigh(forward, trials, seed)
+
+
+def weigh(forward: Forward, trials: int, seed: int) -> Posterior:
+    """Return trials weighed by the readings, moved to where they are if few would survive."""
+    size = forward.size
+    if not forward.channels:
+        z = _normal(seed, 0, trials, size)
+        return _posterior(forward, z, np.zeros(trials), 0.0, np.zeros((0, size)), np.zeros(0), moved=False)
+    pilot = _normal(seed, 0, min(PILOT, trials), size)
+    _, chance = forward.residuals(pilot)
+    share = np.exp(chance - chance.max())
+    if share.sum() ** 2 / (share**2).sum() >= SURVIVE * pilot.shape[0]:
+        z = _normal(seed, 0, trials, size)
+        off, chance = forward.residuals(z)
+        best = z[int(np.argmax(chance))]
+        _, slopes, off = _sloped(forward, best)
+        return _posterior(forward, z, chance, float(off @ off), slopes, off, moved=False)
+    peak, slopes, off = _peak(forward, pilot[int(np.argmax(chance))])
+    near = forward.narrowed()
+    for attempt in range(2):
+        z, weights = _around(near, peak, slopes, trials, seed + attempt, WIDER + attempt / 2)
+        share = np.exp(weights - weights.max())
+        if share.sum() ** 2 / (share**2).sum() >= 0.1 * trials:
+            break
+        peak, slopes, off = _peak(forward, z[int(np.argmax(weights))])
+    misfit = float(peak @ peak + off @ off)
+    return _posterior(forward, z, weights, misfit, slopes, off, moved=True)
+
+
+def _posterior(
+    forward: Forward, z: np.ndarray, logs: np.ndarray, misfit: float, slopes: np.ndarray, off: np.ndarray,
+    *, moved: bool,
+) -> Posterior:  # fmt: skip
+    largest = float(logs.max())
+    share = np.exp(logs - largest)
+    owners = np.array(forward.owners(), int)
+    count = len(forward.readings)
+    return Posterior(
+        forward=forward,
+        z=z,
+        weights=share / share.sum(),
+        evidence=largest + math.log(share.mean()),
+        misfit=misfit,
+        told=_told(slopes, owners, count),
+        strain=tuple(float(np.sqrt((off[owners == i] ** 2).sum())) for i in range(count)),
+        moved=moved,
+    )
+
+
+def _told(slopes: np.ndarray, owners: np.ndarray, count: int) -> tuple[float, ...]:
+    """Return what each reading tells that the others do not: by how much it narrows the belief, in nats."""
+
+    def told(rows: np.ndarray) -> float:
+        inside = np.eye(rows.shape[0]) + rows @ rows.T
+        return 0.5 * float(np.linalg.slogdet(inside)[1])
+
+    everything = told(slopes)
+    return tuple(everything - told(slopes[owners != i]) for i in range(count))
+
+
+def _normal(seed: int, begin: int, count: int, size: int) -> np.ndarray:
+    """Return standard normal numbers (count, size), trial n the same however many are drawn."""
+    columns = [uniform(seed, STREAM + i, begin, count) for i in range(size)]
+    return normal_quantile(np.array(columns).T) if columns else np.zeros((count, 0))
+
+
+def _sloped(forward: Forward, z: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    """Return what is at numbers z, and how it changes with each of them."""
+    steps = STEP * np.eye(z.size)
+    off, _ = forward.residuals(np.concatenate([z[None], z + steps, z - steps]))
+    slopes = (off[1 : z.size + 1] - off[z.size + 1 :]).T / (2 * STEP)
+    return z, slopes, off[0]
+
+
+def _peak(forward: Forward, start: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+    """Return the most likely numbers, with slopes and residuals there: Kalman steps until they rest."""
+
+    def cost(z: np.ndarray) -> np.ndarray:
+        off, _ = forward.residuals(z)
+        return (off**2).sum(axis=1) + (z**2).sum(axis=1)
+
+    both = np.array([np.zeros_like(start), start])
+    z = both[int(np.argmin(cost(both)))]
+    parts = np.array([1.0, 0.6, 0.3, 0.1, 0.03])[:, None]
+    for _ in range(STEPS):
+        _, slopes, off = _sloped(forward, z)
+        # The gain of a Kalman filter on numbers whose own covariance is the unit matrix.
+        inside = np.eye(off.size) + slopes @ slopes.T
+        goal = slopes.T @ np.linalg.solve(inside, slopes @ z - off)
+        step = goal - z
+        tries = np.concatenate([z[None], z + parts * step])
+        costs = cost(tries)
+        best = int(np.argmin(costs))
+        gained = costs[0] - costs[best]
+        z = tries[best]
+        if gained < 1e-2:
+            break
+    _, slopes, off = _sloped(forward, z)
+    return z, slopes, off
+
+
+def _around(
+    near: Forward, peak: np.ndarray, slopes: np.ndarray, count: int, seed: int, wider: float
+) -> tuple[np.ndarray, np.ndarray]:
+    """Return trials drawn around the most likely one, and the log of what each weighs.
+
+    Across what was read they are drawn as believed before; along it each where a Kalman step of its own leads,
+    `wider` than that step says.
+    """
+    _, sizes, along = np.linalg.svd(slopes, full_matrices=False)
+    e = _normal(seed, 0, count, peak.size)
+    inside = e @ along.T
+    start = along @ peak
+    z = e + (start - inside) @ along
+    off, _ = near.residuals(z)
+    slope = slopes @ along.T
+    narrow = 1 / (1 + sizes**2)
+    middle = (start * sizes**2 - off @ slope) * narrow
+    scale = np.minimum(wider * np.sqrt(narrow), 1.0)
+    inside = inside * scale
+    z = z + (middle + inside - start) @ along
+    _, chance = near.residuals(z)
+    away = middle + inside
+    drawn = -0.5 * ((inside / scale) ** 2).sum(axis=1) - np.log(scale).sum()
+    return z, chance - 0.5 * (away**2).sum(axis=1) - drawn
