@@ -7,7 +7,7 @@ from enum import StrEnum
 
 from .engine.cable_types import CABLES
 from .engine.networks import NETWORKS
-from .fields import choice, part, parts, quantity
+from .fields import choice, part, parts, quantity, text
 
 
 class TunerPlace(StrEnum):
@@ -342,6 +342,7 @@ TYPICAL_FOLDBACK = ((2.0, 1.0), (3.0, 0.5), (5.0, 0.25), (10.0, 0.1))
 class Transmitter:
     """How the transmitter takes a mismatch."""
 
+    name: str = text("transmitter", "What it is called.", default="transmitter")
     table: tuple[Foldback, ...] = parts(
         "SWR to watts",
         "What it gives at rising SWR, straight between rows, full power below the first; a typical one unless"

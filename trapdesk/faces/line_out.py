@@ -17,7 +17,7 @@ from ..services.feed import LineUse, line_of, voltage_rating
 from ..station import OWN, FeedLine, ListedLoss, Weather
 from ..unit_names import Dimension
 from ..units import read
-from . import feed_json
+from . import feed_json, json_out
 from .feed_rows import line_name
 from .layout import folded
 from .pairs import IMPEDANCE, OHMS, TEXT, Name, need, read_pairs
@@ -215,3 +215,9 @@ def document(answer: LineAnswer) -> dict[str, Any]:
         "velocity_factor": float(of.velocity_factor),
         "z_line_ohm": answer.impedance,
     } | feed_json.line(answer.use)
+
+
+def text(texts: Sequence[str], *, as_json: bool) -> str:
+    """Return what was typed and what was found, as text or JSON."""
+    answer = answer_to(texts)
+    return json_out.text(document(answer)) if as_json else "\n".join(lines(answer)) + "\n"

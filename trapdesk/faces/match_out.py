@@ -13,7 +13,7 @@ from ..services.feed import line_of
 from ..services.load_match import MatchedPart, Solution, solutions, with_line
 from ..services.tuning import TunerSetting, tune_at
 from ..station import TUNER_NETWORKS, FeedLine, Tuner
-from . import feed_json
+from . import feed_json, json_out
 from .feed_out import element_lines
 from .feed_rows import DIMENSIONS, PLACES, loss_text, setting_text, short_text
 from .layout import folded
@@ -266,3 +266,9 @@ def _json(one: Solution) -> dict[str, Any]:
             for part in one.parts
         ],
     }
+
+
+def text(texts: Sequence[str], *, as_json: bool) -> str:
+    """Return what was typed and what was found, as text or JSON."""
+    answer = answer_to(texts)
+    return json_out.text(document(answer)) if as_json else "\n".join(lines(answer)) + "\n"

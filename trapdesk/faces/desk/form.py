@@ -34,6 +34,15 @@ UNSET = {
     "antenna.trap.capacitor.q": "lossless",
     "antenna.trap.capacitor.voltage": "not known",
     "antenna.wire.conductivity": "by metal",
+    "station.line.z0": "by type",
+    "station.line.velocity_factor": "by type",
+    "station.line.voltage": "by type",
+    "station.line.current": "not known",
+    "station.line.wet_loss": "by type",
+    "station.line.wet_slower": "by type",
+    "station.choke.upper": "not known",
+    "station.choke.lower": "not known",
+    "steps": "any value",
     "site.soil": UNKNOWN,
     "site.conductivity": "by class",
     "site.permittivity": "by class",
@@ -90,9 +99,14 @@ def rows(design: Design, figures: Figures | None) -> dict[str, list[FormRow]]:
             continue
         if key in _YES:
             drawers[drawer].append(_presence(key, known, value))
-        if key.startswith("bands.") and value is not None:
+        if isinstance(value, Band):
             drawers[drawer].append(_heading(visible(value.name, 20)))
-        if isinstance(known.choices, dict) and known.choices and value is not None:
+        if (
+            isinstance(known.choices, dict)
+            and known.choices
+            and "" not in known.choices
+            and value is not None
+        ):
             kinds = tuple(known.choices)
             drawers[drawer].append(
                 FormRow(key=f"{key}.kind", known=known, value=value.kind, text=value.kind, words=kinds)
