@@ -153,7 +153,8 @@ def normal_quantile(probability: ArrayLike) -> FloatArray:
     ------
     wichura-1988, algorithm AS 241, PPND16.
     """
-    p = np.asarray(probability, float)
+    shape = np.shape(probability)
+    p = np.atleast_1d(np.asarray(probability, float))
     if not np.all((p > 0) & (p < 1)):
         raise ValueError("probability: must be above 0 and below 1")
     q = p - 0.5
@@ -163,7 +164,7 @@ def normal_quantile(probability: ArrayLike) -> FloatArray:
         r = np.sqrt(-np.log(np.minimum(p[outer], 1 - p[outer])))
         far = np.where(r <= 5, _ratio(_MIDDLE, r - 1.6), _ratio(_TAIL, r - 5))
         found[outer] = np.copysign(far, q[outer])
-    return found[()]
+    return found.reshape(shape)[()]
 
 
 STEP = 1 / 64
