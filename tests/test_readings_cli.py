@@ -176,6 +176,19 @@ def test_keep_puts_it_into_the_file_and_nothing_else(call, file):
     assert (last.resonance, last.inductance, last.q) == (pytest.approx(14e6), None, 250.0)
 
 
+def test_measured_values_are_marked_as_such(call, file):
+    shown(call("readings", file, "trap.f0=13.98MHz,doubt=14kHz", "trap.q=250", "--keep"))
+    lines = shown(call("figures", file)).splitlines()
+    for label, text in (
+        ("trap resonance", "measured         13.98 MHz"),
+        ("measured to, one sigma", "10 kHz"),
+        ("Q of the trap", "measured         250 ("),
+    ):
+        (line,) = (line for line in lines if line.strip().startswith(label))
+        assert text in line
+    assert not any("measured  " in line for line in lines if "inductance" in line)
+
+
 def test_kept_readings_do_not_change_what_is_computed(call, file):
     shown(call("readings", file, "trap.f0=13.98MHz", "--keep"))
     document = json.loads(call("readings", file, "trap.f0=13.98MHz", "--json")[1])

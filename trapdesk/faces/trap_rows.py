@@ -31,12 +31,29 @@ SHIFTS = {
     "heat": "its own heat",
 }
 RULES = {"voltage": "voltage", "current": "current", "heat": "heat", "flux": "flux"}
+MEASURED = {"resonance": "resonance", "coil.inductance": "inductance", "q": "q"}
+"""The rows that readings of the trap replace, and the readings that do."""
 HARDLY = 500.0
 """Shift below which it is said to hardly move. [Hz]"""
 
 
 def rows(figures: Figures, given: Callable[[str], str]) -> Iterator[Cells]:
-    """Yield the rows of the trap by itself; `given` tells what was set at a key."""
+    """Yield the rows of the trap by itself; `given` tells what was set at a key, or that it was measured."""
+    part = figures.design.antenna.trap
+    measured = None if part is None else part.measured
+    for cells in _computed(figures, given):
+        tail = cells["key"].removeprefix("antenna.trap.")
+        if measured is None:
+            yield cells
+        elif tail == "resonance_doubt" and measured.resonance is not None:
+            yield cells | {"label": "measured to, one sigma", "why": "what its readings leave in doubt"}
+        elif tail in MEASURED and getattr(measured, MEASURED[tail]) is not None:
+            yield cells | {"given": "measured"}
+        else:
+            yield cells
+
+
+def _computed(figures: Figures, given: Callable[[str], str]) -> Iterator[Cells]:
     trap, design = figures.trap, figures.design
     if trap is None:
         return
