@@ -164,7 +164,7 @@ mode = 3
         "antenna.lengths.knot: '1 furlongg' has a unit that is not known;"
         " for example 9.91 m, 32 ft 6 in or AWG 14",
         "antenna.trap.q: 'q' is not a known name;"
-        " it stands in [antenna.trap.coil] or [antenna.trap.capacitor]",
+        " it stands in [antenna.trap.coil] or [antenna.trap.capacitor] or [antenna.trap.measured]",
         "antenna.trap.coil.kind: 'solenoyd' is not one of given, solenoid; did you mean kind = \"solenoid\"?",
         "antenna.trap.capacitor.capacitance: a list stands where a value is wanted;"
         ' for example capacitance = "60 pF"',
