@@ -16,31 +16,6 @@ from .. import __version__
 from ..errors import BadInput, Fault, FileFault, NoAnswer, TrapdeskError, quoted, visible
 from . import verb_words
 
-ABOUT = """\
-Design, build and tune a two-band trap dipole, in one terminal.
-
-  trapdesk [FILE]               open the desk, on a design or the first preset
-  trapdesk figures FILE         everything computed for a design
-  trapdesk sheet FILE           the build sheet, plain text for paper
-  trapdesk tank NAME=VALUE ...  a parallel resonator from any few of its values
-  trapdesk match Z=... f=...    a load of your own matched, network by network
-  trapdesk line TYPE length=... what a line does to a load
-  trapdesk tuner FILE           is a tuner worth it; its settings, its reach
-  trapdesk rummage FILE         the best traps a box of parts can build for it
-  trapdesk choices FILE         other trap resonances, other L to C: what for what
-  trapdesk tolerance FILE       will it, as built and hung, still cover the bands
-  trapdesk readings FILE ...    what was measured of a trap; how to measure it
-  trapdesk touchstone FILE      the feed impedance as a Touchstone file
-
-FILE is a design in TOML, or the name of a preset. A file that is called like a
-verb is opened by its path: trapdesk ./figures. Every verb has --help with an
-example."""
-
-ENDING = """\
-Exit: 0 an answer, 1 no answer exists, 2 bad input, 3 a file that cannot be
-read or written.
-All figures are estimates until something is measured."""
-
 INTERRUPTED = 130
 
 
@@ -101,8 +76,8 @@ def _run(given: list[str]) -> int:
     parser = Parser(
         prog="trapdesk",
         usage="trapdesk [FILE] | VERB ...",
-        description=ABOUT,
-        epilog=ENDING,
+        description=verb_words.ABOUT,
+        epilog=verb_words.ENDING,
         formatter_class=argparse.RawDescriptionHelpFormatter,
         allow_abbrev=False,
     )
@@ -136,6 +111,7 @@ def _desk(file: str | None) -> int:
 
 
 TYPED = {
+    "coil": ("NAME=VALUE", "kind, f, and what it is made from"),
     "tank": ("NAME=VALUE", "f, L, C, R, RD, Q or B"),
     "match": ("NAME=VALUE", "Z and f, and what else is said below"),
     "line": ("TYPE or NAME=VALUE", "a type of line, and length, f, Z or Zin"),
@@ -351,22 +327,16 @@ def choices(options: argparse.Namespace) -> str:
 
 def match(options: argparse.Namespace) -> str:
     """Return every match of a typed load, as text or JSON."""
-    from . import json_out, match_out
+    from . import match_out
 
-    answer = match_out.answer_to(options.values)
-    if options.json:
-        return json_out.text(match_out.document(answer))
-    return "\n".join(match_out.lines(answer)) + "\n"
+    return match_out.text(options.values, as_json=options.json)
 
 
 def line(options: argparse.Namespace) -> str:
     """Return what a line does to a typed load, as text or JSON."""
-    from . import json_out, line_out
+    from . import line_out
 
-    answer = line_out.answer_to(options.values)
-    if options.json:
-        return json_out.text(line_out.document(answer))
-    return "\n".join(line_out.lines(answer)) + "\n"
+    return line_out.text(options.values, as_json=options.json)
 
 
 def tuner(options: argparse.Namespace) -> str:
@@ -384,6 +354,16 @@ def tolerance(options: argparse.Namespace) -> str:
     if options.json:
         return json_out.text(tolerance_json.document(*found))
     return "\n".join(tolerance_out.lines(*found)) + "\n"
+
+
+def coil(options: argparse.Namespace) -> str:
+    """Return one coil of any kind, as text or JSON."""
+    from . import coil_out, json_out
+
+    answer = coil_out.answer_to(options.values)
+    if options.json:
+        return json_out.text(coil_out.document(answer))
+    return "\n".join(coil_out.lines(answer)) + "\n"
 
 
 VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
@@ -432,6 +412,12 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
         tank,
         "trapdesk tank f=10.05MHz C=47pF Q=180",
         "",
+    ),
+    "coil": (
+        verb_words.COIL,
+        coil,
+        "trapdesk coil kind=solenoid former=40mm wire=AWG14 pitch=2.4mm turns=8 f=14.1MHz",
+        "\n  trapdesk coil kind=cable cable=RG-58/U former=50mm f=14.05MHz",
     ),
     "match": (
         verb_words.MATCH,

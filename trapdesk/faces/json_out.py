@@ -9,11 +9,11 @@ from __future__ import annotations
 import json
 import math
 from collections.abc import Iterable, Mapping
-from dataclasses import is_dataclass
 from typing import Any
 
 import numpy as np
 
+from ..capacitor_kinds import Printed
 from ..design import Design
 from ..fields import SOLVE, declared, walk
 from ..services.figures import (
@@ -24,10 +24,9 @@ from ..services.figures import (
     Finding,
     Shares,
     Stress,
-    TrapFigures,
 )
 from ..services.tank import TankAnswer
-from . import words
+from . import feed_json, trap_json, words
 
 FORMAT = 1
 SUFFIXES: dict[str, str] = {
@@ -52,6 +51,8 @@ SUFFIXES: dict[str, str] = {
     "count": "",
     "text": "",
     "choice": "",
+    "print": "",
+    "flux_density": "_t",
 }
 """What a key ends in, by what it measures."""
 
@@ -65,7 +66,7 @@ def plain(value: Any) -> Any:
     """Return a value as JSON knows it: complex as [re, im], what is not finite as null."""
     if isinstance(value, Mapping):
         return {str(key): plain(inner) for key, inner in value.items()}
-    if isinstance(value, str):
+    if isinstance(value, str | Printed):
         return str(value)
     if isinstance(value, list | tuple | np.ndarray):
         return [plain(inner) for inner in value]
@@ -84,10 +85,10 @@ def inputs(part: Any) -> dict[str, Any]:
         found["kind"] = kind
     for name, known in declared(part).items():
         value = getattr(part, name)
-        if is_dataclass(value) and not isinstance(value, type):
-            found[name] = inputs(value)
-        elif known.dimension == "part":
-            found[name] = None
+        if known.dimension == "part":
+            found[name] = None if value is None else inputs(value)
+        elif known.dimension == "parts":
+            found[name] = [inputs(member) for member in value]
         else:
             found[name + SUFFIXES[known.dimension]] = None if value is SOLVE else value
     return found
@@ -100,10 +101,10 @@ def figures(figures: Figures, at: Iterable[AtFrequency] = ()) -> dict[str, Any]:
     found["basis"] = "estimate"
     found["solved"] = [key for key, _, value in walk(design) if value is SOLVE]
     for role, band in figures.bands.items():
-        found["bands"][role] |= _band(band)
+        found["bands"][role] |= _band(band) | {"feed": feed_json.feed(band)}
     found["antenna"]["lengths"] |= _lengths(figures)
     if figures.trap is not None:
-        _add_trap(found["antenna"]["trap"], figures.trap)
+        trap_json.add_trap(found["antenna"]["trap"], figures)
     if figures.lengths.end_height is not None:
         found["site"]["end_height_m"] = figures.lengths.end_height
     found["site"]["slope_rad"] = figures.lengths.slope
@@ -186,36 +187,6 @@ def _lengths(figures: Figures) -> dict[str, Any]:
         "total_m": lengths.total,
         "half_wave_m": lengths.half_wave,
         "doubt_m": lengths.doubt,
-    }
-
-
-def _add_trap(table: dict[str, Any], trap: TrapFigures) -> None:
-    """Add what was found of the trap to what was set; a solved value takes its place among the inputs."""
-    table |= {
-        "resonance_hz": trap.resonance,
-        "inductance_h": trap.inductance,
-        "capacitance_f": trap.capacitance,
-        "q": trap.q,
-        "q_range": trap.q_range,
-        "dynamic_ohm": trap.dynamic_resistance,
-        "resonance_doubt_hz": trap.resonance_doubt,
-        "inductance_doubt_h": trap.inductance_doubt,
-        "z_ohm": trap.impedance,
-        "reactance_ohm": {role: z.imag for role, z in trap.impedance.items()},
-    }
-    table["capacitor"]["capacitance_f"] = trap.fitted_capacitance
-    coil = trap.coil
-    if coil is None:
-        table["coil"]["inductance_h"] = trap.inductance
-        return
-    table["coil"] |= {
-        "turns": coil.turns,
-        "diameter_m": coil.diameter,
-        "length_m": coil.length,
-        "wire_length_m": coil.wire_length,
-        "self_capacitance_f": coil.self_capacitance[1],
-        "self_capacitance_range_f": (coil.self_capacitance[0], coil.self_capacitance[2]),
-        "crowding": coil.crowding,
     }
 
 

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from ..coil_kinds import CableCoil
 from ..design import Design, Shape, get
 from ..engine.ground import GroundKind
 from ..errors import visible
 from ..fields import SOLVE
+from ..services.capacitors import cable_rating
 from ..services.figures import BandFigures, Figures
 from . import words
 from .shown import Shown, about, centimetres, exact, kilohertz_per_centimetre, known, megahertz, swr
@@ -41,7 +43,13 @@ def swr_text(band: BandFigures, value: float) -> str:
 def rating(design: Design) -> float | None:
     """Return the peak voltage the trap's capacitor stands, None when nobody said."""
     trap = design.antenna.trap
-    return trap.capacitor.voltage if trap else None
+    if trap is None:
+        return None
+    if isinstance(trap.coil, CableCoil):
+        return cable_rating(trap.coil)
+    part = trap.capacitor
+    printed = getattr(part, "print", None)
+    return getattr(part, "voltage", None) or (printed.voltage if printed is not None else None)
 
 
 def inductance_text(figures: Figures) -> Shown:
@@ -89,7 +97,7 @@ def station_line(design: Design) -> str:
 
 def band_line(figures: Figures, band: BandFigures) -> str:
     """Return a band in one line: dip, and SWR there and at both edges."""
-    low, high = getattr(figures.design.bands, band.role).wanted
+    low, high = getattr(figures.design.bands, band.role).wanted_edges
     dip = known(band.dip, band.frequency_doubt, "frequency", "MHz")
     off = about(band.frequency_doubt, "frequency")
     return (

@@ -7,18 +7,17 @@ from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from typing import Any
 
-from ..design import MODES, Design, Shape, get
+from ..design import MODES, Design, Shape, get, known_at
 from ..engine.ground import UNKNOWN_SOIL, GroundKind
 from ..errors import visible
-from ..fields import SOLVE, declared
+from ..fields import SOLVE
 from ..services.figures import BandFigures, Figures, Finding
-from . import words
+from . import feed_rows, trap_rows, words
 from .lines import (
     band_line,
     band_name,
     check_line,
     ground_words,
-    inductance_text,
     length_text,
     moves_line,
     next_move,
@@ -27,14 +26,12 @@ from .lines import (
     station_line,
     swr_text,
     trap_line,
-    turns_doubt,
     wire_line,
 )
 from .shown import (
     about,
     exact,
     impedance,
-    impedance_range,
     kilohertz_per_centimetre,
     known,
     megahertz,
@@ -50,6 +47,12 @@ _FINDING_ROWS = {
     "no_resonance": "resonance",
     "site_doubt": "dip",
     "ground_share": "ground_share",
+    "line_voltage": "feed.line_voltage",
+    "line_current": "feed.line_current",
+    "line_loss": "feed.line_loss",
+    "transmitter_folds_back": "feed.least",
+    "line_flatters": "feed.other_worst",
+    "tuner_short": "feed.tuner",
     "trap_heat": "trap_average",
     "trap_voltage": "trap_worst_peak",
     "trap_voltage_unrated": "trap_worst_peak",
@@ -87,15 +90,16 @@ class Row:
 def given(design: Design, key: str) -> str:
     """Return what somebody set at a dotted key, as text; empty where nothing is set."""
     value = get(design, key)
-    above, _, name = key.rpartition(".")
-    what = declared(get(design, above) if above else design)[name]
+    what = known_at(design, key)
     if value is None:
         return ""
     if value is SOLVE:
         return "solve"
     if what.dimension == "frequency":
         return megahertz(value)
-    return visible(value, 60) if what.dimension in ("text", "choice") else str(exact(value, what.dimension))
+    if what.dimension in ("text", "choice", "print"):
+        return visible(value, 60)
+    return str(exact(value, what.dimension))
 
 
 def rows(figures: Figures) -> tuple[Row, ...]:
@@ -103,10 +107,14 @@ def rows(figures: Figures) -> tuple[Row, ...]:
     found = [
         *_site(figures),
         *(row for band in figures.bands.values() for row in _band(figures, band)),
+        *(Row(**cells) for band in figures.bands.values() for cells in feed_rows.rows(figures, band)),
         *_wires(figures),
         *_trap(figures),
         *(row for band in figures.bands.values() for row in _stress(figures, band)),
+        *(Row(**cells) for band in figures.bands.values() for cells in trap_rows.stress_rows(figures, band)),
+        *(Row(**cells) for cells in trap_rows.heat_rows(figures)),
         *(row for band in figures.bands.values() for row in _effects(band)),
+        *(Row(**cells) for cells in trap_rows.shift_rows(figures)),
     ]
     for finding in words.ranked(figures.findings):
         index = _row_of(_placed(finding, figures), found)
@@ -141,8 +149,7 @@ def _row_of(finding: Finding, among: list[Row]) -> int | None:
 
 def _input(figures: Figures, key: str, group: str = "site", **more: Any) -> Row:
     """Return the row of a value somebody set."""
-    above, _, name = key.rpartition(".")
-    what = declared(get(figures.design, above) if above else figures.design)[name]
+    what = known_at(figures.design, key)
     return Row(
         key=key, group=group, label=what.label, given=given(figures.design, key), why=what.help, **more
     )
@@ -204,7 +211,7 @@ def _band(figures: Figures, band: BandFigures) -> Iterator[Row]:
     if band.resonance_resistance is not None:
         resistance = known(band.resonance_resistance, band.impedance_doubt, "resistance", "ohm")
         yield row("r_resonance", "R at resonance", resistance)
-    low, high = design.wanted
+    low, high = design.wanted_edges
     yield row("low_swr", "SWR at the low edge", swr_text(band, band.low_swr), given=megahertz(low))
     yield row("high_swr", "SWR at the high edge", swr_text(band, band.high_swr), given=megahertz(high))
     worst = swr_text(band, band.worst_swr)
@@ -266,59 +273,11 @@ def _wires(figures: Figures) -> Iterator[Row]:
 
 
 def _trap(figures: Figures) -> Iterator[Row]:
-    trap, design = figures.trap, figures.design
-    if trap is None:
-        return
-
-    def row(tail: str, label: str, shown_: Any, **more: str) -> Row:
-        value, unit = (shown_, "") if isinstance(shown_, str) else (shown_.value, shown_.unit)
-        return Row(key=f"antenna.trap.{tail}", group="trap", label=label, value=value, unit=unit, **more)
-
     def set_(tail: str) -> str:
-        return given(design, f"antenna.trap.{tail}")
+        return given(figures.design, f"antenna.trap.{tail}")
 
-    yield row(
-        "resonance", "trap resonance", megahertz(trap.resonance), given=set_("resonance"),
-        why="what to bring it to, by itself, off the wire",
-    )  # fmt: skip
-    if trap.resonance_doubt > 0:
-        off = known(trap.resonance_doubt, trap.resonance_doubt, "frequency", "kHz").doubt
-        yield row("resonance_doubt", "as wound, off by up to", f"{off} kHz", why="before it is brought there")
-    own = design.antenna.trap.coil.kind if design.antenna.trap else ""
-    inductance = inductance_text(figures)
-    yield row(
-        "coil.inductance", "inductance", inductance, given=set_("coil.inductance") if own == "given" else ""
-    )
-    parts = exact(trap.fitted_capacitance, "capacitance")
-    fitted = f"{trap.fitted_capacitance * 1e12:.3g}"
-    solved = get(design, "antenna.trap.capacitor.capacitance") is SOLVE
-    yield row(
-        "capacitor.capacitance", "capacitor", replace(parts, number=fitted, unit="pF") if solved else parts,
-        given=set_("capacitor.capacitance"), why="what is fitted; the coil adds its own",
-    )  # fmt: skip
-    if trap.coil is not None:
-        coil = trap.coil
-        turns = known(coil.turns, turns_doubt(figures), "count")
-        yield row("coil.turns", "turns", replace(turns, unit=""), given=set_("coil.turns"))
-        yield row(
-            "coil.diameter",
-            "coil diameter",
-            f"{coil.diameter * 1e3:.1f} mm",
-            why="centre to centre of the wire",
-        )
-        yield row("coil.length", "winding length", f"{coil.length * 1e3:.0f} mm", why="turns times pitch")
-        yield row("coil.wire", "wire in the coil", f"{coil.wire_length:.2f} m", why="without the tails")
-        low, middle, high = (c * 1e12 for c in coil.self_capacitance)
-        yield row(
-            "coil.self_capacitance", "coil's own capacitance", f"{middle:.1f} ({low:.1f} to {high:.1f}) pF"
-        )
-    least, most = trap.q_range
-    spread = f" ({about(least, 'ratio')} to {about(most, 'ratio')})" if most > least else ""
-    yield row("q", "Q of the trap", f"{about(trap.q, 'ratio', 2 if spread else 3)}{spread}")
-    yield row("dynamic", "dynamic resistance", about(trap.dynamic_resistance, "resistance"))
-    for role, z in trap.impedance.items():
-        name = visible(getattr(design.bands, role).name, 12)
-        yield row(f"z_{role}", f"trap Z at the {name} aim", impedance_range(z))
+    for cells in trap_rows.rows(figures, set_):
+        yield Row(**cells)
 
 
 def _stress(figures: Figures, band: BandFigures) -> Iterator[Row]:

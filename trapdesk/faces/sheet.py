@@ -6,42 +6,37 @@ from collections.abc import Iterator
 from typing import Any
 
 from ..design import Design, Shape
-from ..parts import Solenoid
 from ..services.figures import Figures
-from . import hill_card, json_out, words
+from ..services.tolerance import Tolerance
+from . import feed_out, hill_card, json_out, tolerance_json, tolerance_out, trap_sheet, words
+from .feed_rows import loss_text, setting_text
 from .layout import WIDTH, folded, said
 from .lines import (
     band_line,
     band_name,
     check_line,
-    inductance_text,
     moves_line,
-    rating,
     site_line,
     station_line,
     title,
-    turns_doubt,
 )
-from .shown import about, exact, known, megahertz
-
-TAIL = 0.10
-"""Wire to leave at each end of a coil. [m], common practice, no source"""
-ALIKE = 0.005
-"""How far the two traps may differ. [1], common practice, no source"""
+from .shown import about, exact, known
 
 
-def text(figures: Figures) -> str:
-    """Return the whole sheet as text that ends in a line break."""
-    traps = () if figures.trap is None else (_trap, _stress)
-    parts = (_head, _wires, _parts, *traps[:1], _expected, *traps[1:], _findings)
-    lines = [line for part in parts for line in (*part(figures), "")]
+def text(figures: Figures, ensemble: Tolerance | None = None) -> str:
+    """Return the whole sheet as text that ends in a line break; with an ensemble, how much longer to cut."""
+    traps = () if figures.trap is None else (trap_sheet.lines, _stress)
+    feed = (_feed,) if any(band.feed is not None for band in figures.bands.values()) else ()
+    parts = (_head, _wires, _parts, *traps[:1], _expected, *feed, *traps[1:], _findings)
+    cutting = () if ensemble is None else tolerance_out.sheet_lines(ensemble)
+    lines = [line for part in parts for line in (*part(figures), *(cutting if part is _wires else ()), "")]
     rule = "-" * WIDTH
-    lines += [rule, *hill_card.lines(figures), rule, "", *_cautions()]
+    lines += [rule, *hill_card.lines(figures, ensemble), rule, "", *_cautions()]
     return "\n".join(line.rstrip() for line in lines) + "\n"
 
 
-def document(figures: Figures) -> dict[str, Any]:
-    """Return the sheet for scripts: the figures, the hill card and the cautions."""
+def document(figures: Figures, ensemble: Tolerance | None = None) -> dict[str, Any]:
+    """Return the sheet for scripts: the figures, the hill card, the cautions, and what an ensemble says."""
     cards = [
         {
             "band": card.band.role,
@@ -55,7 +50,8 @@ def document(figures: Figures) -> dict[str, Any]:
         }
         for card in hill_card.cards(figures)
     ]
-    return json_out.figures(figures) | {"hill_card": cards, "cautions": list(words.CAUTIONS)}
+    found = json_out.figures(figures) | {"hill_card": cards, "cautions": list(words.CAUTIONS)}
+    return found if ensemble is None else found | {"tolerance": tolerance_json.document(ensemble)}
 
 
 def _head(figures: Figures) -> Iterator[str]:
@@ -117,56 +113,25 @@ def _parts(figures: Figures) -> Iterator[str]:
     total = 2 * (lengths.inner_reel + (lengths.end_reel or 0.0))
     yield "PARTS"
     yield from folded("  wire       ", f"{total:.1f} m off the reel in all")
-    if figures.trap is not None:
-        rated = rating(design)
-        volts = f"rated {about(rated, 'voltage', 3)} peak at radio frequency" if rated else "rating not given"
-        fitted = exact(figures.trap.fitted_capacitance, "capacitance", digits=3)
-        yield from folded("  capacitors ", f"2 of {fitted}, {volts}")
-        if figures.trap.coil is not None:
-            cut = figures.trap.coil.wire_length + 2 * TAIL
-            yield from folded("  coil wire  ", f"2 of {cut:.2f} m")
+    yield from trap_sheet.parts(figures)
     support = "two supports" if design.site.shape is Shape.FLAT else "one support, cords for the ends"
     yield from folded("  also       ", f"feed point insulator, choke, line, 2 end insulators, {support}")
-
-
-def _trap(figures: Figures) -> Iterator[str]:
-    trap = figures.trap
-    part = figures.design.antenna.trap
-    assert trap is not None and part is not None
-    yield "TRAPS: build two alike"
-    if trap.coil is not None and isinstance(part.coil, Solenoid):
-        coil, made = trap.coil, part.coil
-        turns = known(coil.turns, turns_doubt(figures), "count")
-        yield from folded(
-            "  coil     ",
-            f"{turns.value} turns of {made.material} wire {exact(made.wire, 'length')} on a former"
-            f" {exact(made.former, 'length')} outside, {exact(made.pitch, 'length')} from turn to turn.",
-        )
-        yield from folded(
-            "           ",
-            f"Mean diameter {coil.diameter * 1e3:.1f} mm (former and one wire), winding length"
-            f" {coil.length * 1e3:.1f} mm (turns times pitch). Cut {coil.wire_length + 2 * TAIL:.2f} m:"
-            f" {coil.wire_length:.2f} m in the turns, {TAIL * 100:.0f} cm for each tail.",
-        )
-        yield from folded(
-            "           ",
-            "Wind one turn more and take off: turns pushed together lower the trap, pulled apart raise it.",
-        )
-    else:
-        yield from folded("  coil     ", f"{inductance_text(figures)} at the trap's resonance")
-    fitted = exact(trap.fitted_capacitance, "capacitance", digits=3)
-    yield from folded("  with     ", f"{fitted} across the coil")
-    check = f"{megahertz(trap.resonance)} by itself, hanging free, before it goes into the wire."
-    if trap.resonance_doubt:
-        check += f" As wound it may be {about(trap.resonance_doubt, 'frequency', 1)} off: bring it there."
-    yield from folded("  check    ", f"{check} Both within {ALIKE * 100:.1f} % of each other.")
-    yield from folded("  Q        ", f"about {about(trap.q, 'ratio')}")
 
 
 def _expected(figures: Figures) -> Iterator[str]:
     yield "EXPECTED AT THE FEED POINT"
     for band in figures.bands.values():
         yield from folded(f"  {band_name(band):<7} ", band_line(figures, band))
+
+
+def _feed(figures: Figures) -> Iterator[str]:
+    """Yield the way from the wire to the transmitter, band by band, and the tuner's setting."""
+    yield "FROM THE WIRE TO THE TRANSMITTER"
+    for band in figures.bands.values():
+        yield from feed_out.way_lines(figures, band)
+        if band.feed is not None and band.feed.tuner is not None:
+            setting = band.feed.tuner
+            yield from folded("  tuner      ", f"{setting_text(setting)}; {loss_text(setting)}")
 
 
 def _stress(figures: Figures) -> Iterator[str]:

@@ -5,9 +5,8 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from ..design import Design, get
+from ..design import Design, known_at
 from ..errors import NoAnswer, visible
-from ..fields import declared
 from ..services.figures import Finding, Level
 from ..unit_names import Dimension
 from ..units import show
@@ -70,6 +69,39 @@ SAYINGS: dict[str, Saying] = {
         bare="the trap bears {value} peak and no capacitor rating is given",
         helps="enter what the capacitor is rated for, peak, at radio frequency",
     ),
+    "part_current": Saying(
+        says="{where} carries {value} of the current it stands",
+        bare="{where} carries {value} of the current it stands",
+        helps="several side by side, one that stands more, less capacitance, or less power",
+        as_="percent",
+    ),
+    "part_heat": Saying(
+        says="{where} turns {value} of the voltage its heat allows into warmth",
+        bare="{where}: {value} of the voltage its heat allows",
+        helps="less loss, several side by side, less power or shorter overs",
+        as_="percent",
+    ),
+    "part_flux": Saying(
+        says="{where}: the core's flux reaches {value} of its limit",
+        bare="{where}: the core's flux reaches {value} of its limit",
+        helps="more turns, a larger core, or less power",
+        as_="percent",
+    ),
+    "former_softens": Saying(
+        says="{where}: in the sun and at work it reaches {value}, it softens at {limit} (common practice)",
+        bare="{where}: in the sun and at work it reaches {value}",
+        helps="a former that stands more heat, thicker wire, less power or shorter overs",
+    ),
+    "turns_do_not_fit": Saying(
+        says="{where}: {value} do not fit into the core, only {limit}",
+        bare="{where}: {value} do not fit into the core",
+        helps="thinner wire, a larger core, or more inductance index",
+    ),
+    "trap_drifts": Saying(
+        says="heat or cold moves the trap by {value}, more than the {limit} that would not matter",
+        bare="heat or cold moves the trap by {value}",
+        helps="a capacitor that drifts less or the other way (C0G, P100), another former, shade",
+    ),
     "trap_heat": Saying(
         says="each trap turns {value} into heat on average; from {limit} on it gets warm",
         bare="each trap turns {value} into heat on average",
@@ -116,6 +148,76 @@ SAYINGS: dict[str, Saying] = {
         helps="look over the aims, the trap's values and the lengths that were set",
         as_="percent",
     ),
+    "choke_missing": Saying(
+        says="the line has no choke of {value} or more at the feed point: its shield is part of the antenna",
+        helps="a choke of 1 kohm or more on both bands (common practice, no source); until then grip the line"
+        " while you read the SWR: if the reading moves, it means nothing",
+    ),
+    "choke_unknown": Saying(
+        says="{where}: not known, {value} or more is wanted",
+        helps="measure it, or grip the line while you read the SWR: if the reading moves, it is too little",
+    ),
+    "choke_weak": Saying(
+        says="{where}: {value}, less than the {limit} wanted (common practice, no source)",
+        bare="{where}: {value}, less than wanted",
+        helps="more turns or another core; test by hand: grip the line while you read the SWR: if the reading"
+        " moves, it means nothing",
+    ),
+    "line_voltage": Saying(
+        says="{where}: {value} rms on the line, it is rated {limit}",
+        bare="{where}: {value} rms on the line",
+        helps="less power, a better match at the feed point, or a line that stands more",
+    ),
+    "line_current": Saying(
+        says="{where}: {value} rms on the line, it is rated {limit}",
+        bare="{where}: {value} rms on the line",
+        helps="less power, a better match at the feed point, or a thicker line",
+    ),
+    "line_loss": Saying(
+        says="{where}: the line loses {value} as it is used",
+        helps="a shorter or thicker line, or a better match at the feed point",
+    ),
+    "transmitter_folds_back": Saying(
+        says="{where}: the transmitter gives {value} of its {limit} at the worst of the wanted part",
+        bare="{where}: the transmitter gives {value} at the worst of the wanted part",
+        helps="want less of the band, or a tuner at the transmitter",
+    ),
+    "line_flatters": Saying(
+        says="{where}: the transmitter sees an SWR within {limit}, but at the feed point it is {value}",
+        bare="{where}: at the feed point the SWR is {value}",
+        helps="judge at the feed point when the antenna is what you tune: loss in the line hides its SWR",
+        as_="swr",
+    ),
+    "tuner_short": Saying(
+        says="{where}: no setting of the tuner matches; the nearest leaves SWR {value}",
+        helps="see which element runs short with trapdesk tuner, or bring the antenna nearer first",
+        as_="swr",
+    ),
+    "tuner_coil_voltage": Saying(
+        says="the tuner's coil bears {value} peak, it is rated {limit}",
+        bare="the tuner's coil bears {value} peak",
+        helps="less power, or a match nearer at the antenna",
+    ),
+    "tuner_coil_current": Saying(
+        says="the tuner's coil carries {value}, it is rated {limit}",
+        bare="the tuner's coil carries {value}",
+        helps="less power, or a match nearer at the antenna",
+    ),
+    "tuner_capacitor_voltage": Saying(
+        says="a capacitor of the tuner bears {value} peak, it is rated {limit}",
+        bare="a capacitor of the tuner bears {value} peak",
+        helps="less power, a wider capacitor, or a match nearer at the antenna",
+    ),
+    "tuner_capacitor_current": Saying(
+        says="a capacitor of the tuner carries {value}, it is rated {limit}",
+        bare="a capacitor of the tuner carries {value}",
+        helps="less power, or a match nearer at the antenna",
+    ),
+    "tuner_heat": Saying(
+        says="{where}: {value} of heat on average, from {limit} on it gets warm",
+        bare="{where}: {value} of heat on average",
+        helps="less power, shorter overs, or a match nearer at the antenna",
+    ),
     "not_converged": Saying(
         says="{where}: the computation did not settle, {value} is left where {limit} is allowed",
         bare="{where}: the computation did not settle, {value} is left",
@@ -133,6 +235,13 @@ REASONS = {
     "coil_resonates_below_by_itself": "the coil alone resonates below the trap's resonance",
     "nothing_to_build": "the box holds no two equal traps for this design",
     "no_trap_to_build": "the design has no trap",
+    "no_setting_in_reach": "no setting of this tuner matches it",
+    "network_does_not_match": "no match with these parts, whatever their size",
+    "no_load_gives_this": "no load that takes power shows this through the line",
+    "no_such_cable_trap": "no number of turns of this cable on this former resonates there",
+    "no_turns_fit": "the turns that are needed do not fit",
+    "no_capacitor_makes_up_the_rest": "no value of this member makes up what the others leave",
+    "stub_is_too_long": "the stub is longer than a quarter wave and is no capacitor",
     "no_such_coil": "no number of turns on this former makes the coil that is needed",
 }
 """Why there is no answer, by the code of `NoAnswer`."""
@@ -161,10 +270,8 @@ def place(where: str, design: Design) -> str:
         band = getattr(design.bands, rest.split(".")[0], None)
         if band is not None:
             return visible(band.name, 20)
-    above, _, name = where.rpartition(".")
     try:
-        part = get(design, above) if above else design
-        return declared(part)[name].label
+        return known_at(design, where).label
     except (KeyError, TypeError, AttributeError):
         return visible(where.replace("_", " ").replace(".", " "), 60)
 
