@@ -78,7 +78,7 @@ class Desk(App[None]):
         if self.foot.asking:
             self.foot.key(event)
             self._repaint_foot()
-        elif not self.drawers.key(event):
+        elif not (self._middle.key(event) or self.drawers.key(event)):
             return
         event.stop()
         event.prevent_default()

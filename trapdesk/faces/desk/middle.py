@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from textual.app import ComposeResult
 from textual.containers import Container
+from textual.events import Key
 
 from .arrange import ANSWER, FINDINGS, HELP, INPUTS, Arrangement, arrangement, names
 from .panes.drawers import DrawersPane
@@ -59,6 +60,10 @@ class Middle(Container):
         if arranged.wide:
             beside = HELP if self.helping else FINDINGS
             side.update_view(*given, beside, [(beside.name, "picked")])
+
+    def key(self, event: Key) -> bool:
+        """Do what a key asks of the view, and return whether it asks anything."""
+        return False
 
     def turn(self, by: int) -> None:
         """Show another view; help that stands in its place goes first."""

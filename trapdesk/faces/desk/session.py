@@ -12,6 +12,7 @@ from ...rules import check
 from ...services.figures import Figures
 from ...spoken import spoken
 from ...store import Document
+from .aside import Aside
 from .form import FormRow, put
 
 
@@ -32,6 +33,7 @@ class Session:
         self._designs = [document.design]
         self._place = 0
         self._saved = document.design
+        self.aside = Aside(self)
 
     @property
     def design(self) -> Design:
@@ -59,7 +61,10 @@ class Session:
 
     def set(self, row: FormRow, value: Any) -> bool:
         """Set a row's value and return whether that changed the design; BadInput when a rule forbids it."""
-        changed = put(self.design, row.key, value, self.figures, self.past())
+        return self.take(put(self.design, row.key, value, self.figures, self.past()))
+
+    def take(self, changed: Design) -> bool:
+        """Put another design in place of the present one, as an edit does."""
         if changed == self.design:
             return False
         breaches = check(changed)
