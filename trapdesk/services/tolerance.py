@@ -31,6 +31,8 @@ EDGE = 0.001
 """Share of trials on either side that would leave the rest of a histogram in one bin."""
 CONFIDENCE = 1.959964
 """Sigma of a 95 % interval. [1]"""
+LEVEL = 0.975
+"""Chance that lies below the end of such an interval. [1]"""
 RESULTS = ("dip", "aim_swr", "worst_swr", "volts", "loss")
 BINS = 96
 
@@ -145,16 +147,21 @@ class Tolerance:
 
 
 def yield_of(passed: int, trials: int) -> Yield:
-    """Return a share with its 95 % interval, honest also where none or all pass.
+    """Return a share with its 95 % interval.
 
-    Wilson's score interval (`wilson-1927`).
+    Wilson's score interval (`wilson-1927`); where none or all pass, up to the share that would leave it so in
+    one run of 40.
     """
     z2 = CONFIDENCE**2
     share = passed / trials
     middle = (passed + z2 / 2) / (trials + z2)
     half = CONFIDENCE / (trials + z2) * math.sqrt(passed * (trials - passed) / trials + z2 / 4)
-    low = 0.0 if passed == 0 else middle - half
-    high = 1.0 if passed == trials else middle + half
+    low, high = middle - half, middle + half
+    bound = 1 - (1 - LEVEL) ** (1 / trials)
+    if passed == 0:
+        low, high = 0.0, bound
+    if passed == trials:
+        low, high = 1 - bound, 1.0
     return Yield(share=share, low=low, high=high, passed=passed, trials=trials)
 
 
