@@ -9,12 +9,14 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from trapdesk import store
+from trapdesk import prints, store
+from trapdesk.capacitor_kinds import CAPACITORS, SingleCapacitor
+from trapdesk.coil_kinds import COILS, CableCoil, GivenCoil, Solenoid, Toroid
 from trapdesk.design import Band, Bands, Design, get, with_value
 from trapdesk.errors import FileFault
 from trapdesk.fields import SOLVE, declared
-from trapdesk.parts import CAPACITORS, COILS, GivenCoil, Solenoid, Trap
-from trapdesk.rules import Breach, check
+from trapdesk.parts import Trap, Weather
+from trapdesk.rules import Breach, check, trap_unknowns
 from trapdesk.spoken import declaration, spoken, tables
 from trapdesk.toml_read import LONGEST_TEXT, MOST_FAULTS, DesignFault
 
@@ -165,7 +167,8 @@ mode = 3
         " for example 9.91 m, 32 ft 6 in or AWG 14",
         "antenna.trap.q: 'q' is not a known name;"
         " it stands in [antenna.trap.coil] or [antenna.trap.capacitor] or [antenna.trap.measured]",
-        "antenna.trap.coil.kind: 'solenoyd' is not one of given, solenoid; did you mean kind = \"solenoid\"?",
+        "antenna.trap.coil.kind: 'solenoyd' is not one of given, solenoid, cable, toroid;"
+        ' did you mean kind = "solenoid"?',
         "antenna.trap.capacitor.capacitance: a list stands where a value is wanted;"
         ' for example capacitance = "60 pF"',
         "site.power: 'power' is not a known name; it stands in [station]",
@@ -181,7 +184,7 @@ mode = 3
 @pytest.mark.parametrize(
     ("lines", "begins"),
     [
-        ("[station]\nlin = 1\n", "station.lin: 'lin' is not a known name; known here: reference,"),
+        ("[station]\nzz = 1\n", "station.zz: 'zz' is not a known name; known here: reference,"),
         ("bands = 3\n", "bands: a number stands where a table is wanted; [bands] on a line of its own"),
         ("[[bands.lower]]\n", "bands.lower: a list stands where a table is wanted"),
         ("[bands.lower]\nname = 40\n", "bands.lower.name: a number stands where text is wanted; text stands"),
@@ -396,9 +399,9 @@ def parts(draw, kind):
             default = kind.__dataclass_fields__[name].default
             word = draw(st.sampled_from(known.choices))
             values[name] = type(default)(word) if isinstance(default, str) else word
-        elif known.dimension != "part":
+        elif known.dimension not in ("part", "parts", "print"):
             values[name] = draw(si(known))
-        if known.optional and known.dimension != "part" and draw(st.booleans()):
+        if known.optional and known.dimension not in ("part", "parts", "print") and draw(st.booleans()):
             values[name] = None
     return values
 
@@ -413,6 +416,62 @@ def bands(draw, low, high):
     )
 
 
+PRINTS = ("47J 3kV", "4n7", "101K N150", "4R7C", "470 1kV C0G", "n22 U2J", "33pF 10% X7R")
+
+
+@st.composite
+def coils(draw):
+    kind = draw(st.sampled_from(list(COILS.values())))
+    values = draw(parts(kind))
+    if kind is Solenoid:
+        values["pitch"] = draw(st.none() | st.just(min(0.1, values["wire"] * 2)))
+        values["length"] = None if values["pitch"] else draw(st.none() | st.just(2.0))
+        values["former"] = max(values["former"], 2 * values["wire"])
+        values["insulation"] = max(values["insulation"], 1e-6)
+    elif kind is CableCoil:
+        values |= {"outside": values["outside"] or 5e-3, "pitch": None}
+        values |= {"shield": values["outside"] / 2, "former": max(values["former"], 2 * values["outside"])}
+        values["shield"] = max(values["shield"], 3e-4)
+    elif kind is Toroid:
+        values["wire"], values["insulation"] = min(values["wire"], 1e-4), min(values["insulation"], 1e-4)
+        values["outer"] = max(values["outer"], values["inner"] * 1.5) if values["inner"] < 0.2 else 0.3
+        values["inner"] = min(values["inner"], values["outer"] / 1.5)
+    return kind(**values)
+
+
+@st.composite
+def capacitors(draw, deep=2):
+    kinds = [kind for kind in CAPACITORS.values() if deep or not hasattr(kind, "members")]
+    kind = draw(st.sampled_from(kinds))
+    values = draw(parts(kind))
+    if kind is SingleCapacitor:
+        values |= {
+            "print": prints.read(draw(st.sampled_from(PRINTS))),
+            "count": float(draw(st.integers(1, 9))),
+        }
+    if hasattr(kind, "members"):
+        return kind(members=tuple(draw(capacitors(deep - 1)) for _ in range(draw(st.integers(2, 3)))))
+    return kind(**values)
+
+
+@st.composite
+def traps(draw):
+    coil = draw(coils())
+    capacitor = None if isinstance(coil, CableCoil) else draw(capacitors())
+    weather = Weather(**draw(parts(Weather)))
+    trap = Trap(**draw(parts(Trap)), coil=coil, capacitor=capacitor, weather=weather)
+    unknowns = [key.removeprefix("antenna.trap.") for key in trap_unknowns(trap)]
+    solved = draw(st.sampled_from(unknowns))
+    for key in unknowns:
+        if key == solved:
+            trap = with_value(trap, key, SOLVE)
+        elif get(trap, key) is SOLVE:
+            trap = with_value(trap, key, declaration(f"antenna.trap.{key}").high)
+    if isinstance(coil, Solenoid) and coil.length is not None and trap.coil.turns is not SOLVE:
+        trap = with_value(trap, "coil.turns", min(trap.coil.turns, 1.9 / trap.coil.wire, 200.0))
+    return trap
+
+
 @st.composite
 def designs(draw):
     base = Design(bands=Bands(lower=draw(bands(1.5e6, 9e6)), upper=draw(st.none() | bands(10e6, 60e6))))
@@ -421,24 +480,7 @@ def designs(draw):
     )
     trap = None
     if draw(st.booleans()):
-        coil = draw(st.sampled_from(list(COILS.values())))
-        capacitor = draw(st.sampled_from(list(CAPACITORS.values())))
-        trap = Trap(
-            **draw(parts(Trap)), coil=coil(**draw(parts(coil))), capacitor=capacitor(**draw(parts(capacitor)))
-        )
-        unknowns = [
-            "resonance",
-            "coil.turns" if coil is Solenoid else "coil.inductance",
-            "capacitor.capacitance",
-        ]
-        solved = draw(st.sampled_from(unknowns))
-        for key in unknowns:
-            if key == solved:
-                trap = with_value(trap, key, SOLVE)
-            elif get(trap, key) is SOLVE:
-                trap = with_value(trap, key, declaration(f"antenna.trap.{key}").high)
-        if coil is Solenoid:
-            trap = with_value(trap, "coil.pitch", min(0.1, trap.coil.wire * 2))
+        trap = draw(traps())
         lengths["end"] = draw(st.floats(1.0, 200.0) | st.just(SOLVE))
         lengths["inner"] = draw(st.floats(1.0, 200.0)) if base.bands.upper is None else lengths["inner"]
         if lengths["inner"] is not SOLVE:

@@ -74,7 +74,7 @@ def _capacitor(
     reach = 1.0 if limits.reach is None else limits.reach(frequency)
     allowed = rating(
         frequency,
-        capacitance_of(z, frequency),
+        np.abs(capacitance_of(z, frequency)),
         math.inf if limits.voltage is None else limits.voltage / reach,
         math.inf if limits.current is None else limits.current,
         math.inf if limits.heat is None else limits.heat / mean,

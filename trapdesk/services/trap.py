@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
@@ -39,19 +40,63 @@ class Lumped:
             z = z / (1 + 1j * w * own * z)
         return inductance, -1 / (w * z.imag), resistance, np.maximum(z.real, 0.0)
 
+    @cached_property
+    def _of_line(self) -> bool:
+        """Whether a piece of line is in it, which far above resonance is no capacitor any more."""
+        return any(part.line is not None for part, _, _ in self.capacitor.shares(np.float64(1e6)))
+
+    def _branches(self, frequency: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+        """Return the impedances of the coil and of all capacitance across it."""
+        inductance, resistance = self.coil.series(frequency)
+        w = 2 * np.pi * np.asarray(frequency)
+        z = self.capacitor.impedance(frequency)
+        return resistance + 1j * w * inductance, z / (1 + 1j * w * self.coil.own[1] * z)
+
     def impedance(self, frequency: np.ndarray) -> np.ndarray:
         """Return the impedance at frequencies, in ohm."""
+        if self._of_line:
+            coil, capacitor = self._branches(frequency)
+            return coil * capacitor / (coil + capacitor)
         return resonator.impedance(frequency, *self.circuit(frequency))
 
     def moved(self, frequency: np.ndarray, steps: Sequence[float]) -> np.ndarray:
         """Return the impedance with the resonance moved by parts of itself, by the capacitor: (steps, n)."""
+        if self._of_line:
+            coil, capacitor = self._branches(frequency)
+            capacitor = capacitor * (1 + np.asarray(steps, float)[:, None]) ** 2
+            return coil * capacitor / (coil + capacitor)
         inductance, capacitance, coil, capacitor = self.circuit(frequency)
         factor = (1 + np.asarray(steps, float)[:, None]) ** 2
         return resonator.impedance(frequency, inductance, capacitance / factor, coil, capacitor)
 
     def stress(self, frequency: np.ndarray, current: np.ndarray) -> Stress:
         """Return what its parts bear for an rms current through the whole trap."""
+        if self._of_line:
+            return _stress(current, *self._branches(frequency))
         return stress(frequency, *self.circuit(frequency), current=current)
+
+
+def _stress(current: np.ndarray, coil: np.ndarray, capacitor: np.ndarray) -> Stress:
+    """Return what two branches bear, whatever they are made of."""
+    volts = current * np.abs(coil * capacitor / (coil + capacitor))
+    through, across = volts / np.abs(coil), volts / np.abs(capacitor)
+    in_coil, in_capacitor = through**2 * coil.real, across**2 * np.maximum(capacitor.real, 0.0)
+    nothing = np.zeros_like(volts)
+    return Stress(
+        line_current=np.broadcast_to(current, volts.shape),
+        voltage=volts,
+        peak_voltage=math.sqrt(2) * volts,
+        coil_current=through,
+        capacitor_current=across,
+        shunt_current=nothing,
+        circulating_current=np.minimum(through, across),
+        coil_power=in_coil,
+        capacitor_power=in_capacitor,
+        shunt_power=nothing,
+        total_power=in_coil + in_capacitor,
+        coil_reactive=through**2 * np.abs(coil.imag),
+        capacitor_reactive=across**2 * np.abs(capacitor.imag),
+    )
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -127,14 +172,13 @@ def _computed(trap: Trap) -> BuiltTrap:
 
 
 def _farads(capacitor: BuiltCapacitor, frequency: float) -> float:
-    """Return what capacitance a capacitor is at a frequency; NoAnswer where it is none."""
-    reactance = float(np.imag(capacitor.impedance(np.float64(frequency))))
-    if not reactance < 0:
-        where = next(
-            (p.key for p, _, _ in capacitor.shares(np.float64(frequency)) if p.length), capacitor.key
-        )
-        raise NoAnswer("stub_is_too_long", where, {"trap_hz": frequency}, "less than a quarter wave of it")
-    return -1 / (2 * math.pi * frequency * reactance)
+    """Return what capacitance a capacitor is at a frequency; NoAnswer where a stub in it is none there."""
+    at = np.float64(frequency)
+    for part, _, _ in capacitor.shares(at):
+        if part.line is not None and 4 * frequency * part.length >= part.line.velocity:
+            help = "less than a quarter wave of it"
+            raise NoAnswer("stub_is_too_long", part.key, {"trap_hz": frequency, "stub_m": part.length}, help)
+    return -1 / (2 * math.pi * frequency * float(np.imag(capacitor.impedance(at))))
 
 
 def _partner(resonance: float, value: float) -> float:
