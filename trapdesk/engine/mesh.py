@@ -19,6 +19,8 @@ GAP = 0.05
 """Length of the mesh elements at the feed point, the trap and the end. [m]"""
 COARSE, GROWTH = 30.0, 0.6
 """Longest coarse element as a share of the wavelength (1/COARSE); how fast elements grow from the gap."""
+SAME_PLACE = 1e-3
+"""A bend this near to the trap is at the trap: no element is made of the rest. [m]"""
 SNAP = 0.35
 """Share of an element within which a node is moved to a bend instead of cutting the element in two."""
 
@@ -145,10 +147,11 @@ def _with_bends(nodes: np.ndarray, side: Side) -> np.ndarray:
     for bend in side.corners[1:-1]:
         i = int(np.argmin(np.abs(nodes - bend)))
         gap = abs(nodes[i] - bend)
-        if gap < 1e-9:
+        if gap < SAME_PLACE:
+            nodes[i] = bend
             continue
         near = min(nodes[i] - nodes[i - 1] if i else math.inf, nodes[min(i + 1, nodes.size - 1)] - nodes[i])
-        movable = 0 < i < nodes.size - 1 and min(abs(nodes[i] - f) for f in fixed) > 1e-9
+        movable = 0 < i < nodes.size - 1 and min(abs(nodes[i] - f) for f in fixed) > SAME_PLACE
         if movable and gap < SNAP * near:
             nodes[i] = bend
         else:
@@ -294,7 +297,7 @@ class SideMesh:
         """Return the mean of each triangle over the trap's body; at a point for a trap without length."""
         centre, body = self.side.trap, self.side.body
         if body <= 0:
-            return (np.abs(self.nodes[:-1] - centre) < 1e-9).astype(float)
+            return (np.abs(self.nodes[:-1] - centre) < SAME_PLACE).astype(float)
         x, w = gauss_legendre(8)
         column = np.zeros(self.count + 1)
         for begin in (centre - body / 2, centre):
