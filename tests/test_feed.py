@@ -25,6 +25,7 @@ from trapdesk.station import (
     Transmitter,
     Tuner,
     TunerCapacitor,
+    TunerCoil,
     TunerPlace,
     Weather,
 )
@@ -376,6 +377,31 @@ def test_findings_of_line_and_transmitter():
     assert ("line_flatters", "bands.upper") in codes(wide)
     short = solve(fed(design, line=FeedLine(type="RG-213/U", length=2.0), transmitter=Transmitter()))
     assert ("transmitter_folds_back", "bands.upper") in codes(short)
+
+
+def test_findings_of_the_tuner():
+    """A T with tight ratings into a long line of high SWR, then one that cannot match."""
+    wide = replace(DESIGN.bands.lower, wanted_low=None, wanted_high=None, aim=7.19e6)
+    lengths = replace(DESIGN.antenna.lengths, inner=5.6, end=4.6)
+    design = replace(
+        DESIGN,
+        bands=replace(DESIGN.bands, lower=wide),
+        antenna=replace(DESIGN.antenna, lengths=lengths),
+    )
+    part = TunerCapacitor(voltage=10.0, current=0.1, q=30.0)
+    coil = TunerCoil(voltage=10.0, current=0.1, q=10.0)
+    line = FeedLine(type="RG-213/U", length=8.0)
+    loud = fed(design, line=line, tuner=Tuner(coil=coil, capacitor=part), power=1500.0)
+    found = solve(loud)
+    for kind in ("coil", "capacitor"):
+        for what in ("voltage", "current", "heat"):
+            assert (f"tuner_{kind}_{what}", "bands.lower") in codes(found)
+    short = solve(fed(design, line=line, tuner=Tuner(coil=TunerCoil(high=2e-7))), found)
+    assert ("tuner_short", "bands.lower") in codes(short)
+    told = [words.sentence(f, short.design) for f in short.findings if f.code == "tuner_short"]
+    assert all("no setting of the tuner matches; the nearest leaves SWR" in text for text in told)
+    row = next(row for row in rows.rows(short) if row.key == "bands.lower.feed.tuner")
+    assert row.finding is not None and "would need" in row.value
 
 
 def test_rows_and_json_show_the_feed():

@@ -10,6 +10,7 @@ from ..fields import SOLVE
 from ..services.capacitors import cable_rating
 from ..services.figures import BandFigures, Figures
 from . import words
+from .feed_rows import line_name
 from .shown import Shown, about, centimetres, exact, kilohertz_per_centimetre, known, megahertz, swr
 
 
@@ -92,6 +93,8 @@ def station_line(design: Design) -> str:
         f"{about(station.power, 'power', 3)} {station.mode},"
         f" SWR limit {station.swr_limit:.3g} at the {station.judged_at}"
         f" against {exact(station.reference, 'resistance')}"
+        + (f", {line_name(station.line)}" if station.line is not None else "")
+        + (f", tuner at the {station.tuner.place}" if station.tuner is not None else "")
     )
 
 

@@ -53,6 +53,11 @@ _FINDING_ROWS = {
     "transmitter_folds_back": "feed.least",
     "line_flatters": "feed.other_worst",
     "tuner_short": "feed.tuner",
+    **{
+        f"tuner_{kind}_{what}": "feed.tuner"
+        for kind in ("coil", "capacitor")
+        for what in ("voltage", "current", "heat")
+    },
     "trap_heat": "trap_average",
     "trap_voltage": "trap_worst_peak",
     "trap_voltage_unrated": "trap_worst_peak",

@@ -194,28 +194,33 @@ SAYINGS: dict[str, Saying] = {
         as_="swr",
     ),
     "tuner_coil_voltage": Saying(
-        says="the tuner's coil bears {value} peak, it is rated {limit}",
-        bare="the tuner's coil bears {value} peak",
+        says="{where}: the tuner's coil bears {value} peak, it is rated {limit}",
+        bare="{where}: the tuner's coil bears {value} peak",
         helps="less power, or a match nearer at the antenna",
     ),
     "tuner_coil_current": Saying(
-        says="the tuner's coil carries {value}, it is rated {limit}",
-        bare="the tuner's coil carries {value}",
+        says="{where}: the tuner's coil carries {value}, it is rated {limit}",
+        bare="{where}: the tuner's coil carries {value}",
         helps="less power, or a match nearer at the antenna",
     ),
     "tuner_capacitor_voltage": Saying(
-        says="a capacitor of the tuner bears {value} peak, it is rated {limit}",
-        bare="a capacitor of the tuner bears {value} peak",
+        says="{where}: a capacitor of the tuner bears {value} peak, it is rated {limit}",
+        bare="{where}: a capacitor of the tuner bears {value} peak",
         helps="less power, a wider capacitor, or a match nearer at the antenna",
     ),
     "tuner_capacitor_current": Saying(
-        says="a capacitor of the tuner carries {value}, it is rated {limit}",
-        bare="a capacitor of the tuner carries {value}",
+        says="{where}: a capacitor of the tuner carries {value}, it is rated {limit}",
+        bare="{where}: a capacitor of the tuner carries {value}",
         helps="less power, or a match nearer at the antenna",
     ),
-    "tuner_heat": Saying(
-        says="{where}: {value} of heat on average, from {limit} on it gets warm",
-        bare="{where}: {value} of heat on average",
+    "tuner_coil_heat": Saying(
+        says="{where}: {value} of heat on average in the tuner's coil, from {limit} on it gets warm",
+        bare="{where}: {value} of heat on average in the tuner's coil",
+        helps="less power, shorter overs, or a match nearer at the antenna",
+    ),
+    "tuner_capacitor_heat": Saying(
+        says="{where}: {value} of heat on average in a capacitor of the tuner, from {limit} on it gets warm",
+        bare="{where}: {value} of heat on average in a capacitor of the tuner",
         helps="less power, shorter overs, or a match nearer at the antenna",
     ),
     "not_converged": Saying(

@@ -114,17 +114,27 @@ def _tuner(figures: Figures, band: BandFigures, where: str) -> Iterator[Finding]
         yield Finding(code="tuner_short", level=Level.STOP, where=where, value=setting.swr)
     into = tuner_watts(band)
     mean = MODES[figures.design.station.mode].mean
-    for element in setting.elements:
-        part = f"station.tuner.{element.kind}"
-        volts, amps = math.sqrt(into) * element.volts, math.sqrt(into) * element.amps
-        yield from _rated(f"tuner_{element.kind}_voltage", part, volts, element.voltage, "voltage")
-        yield from _rated(f"tuner_{element.kind}_current", part, amps, element.current, "current")
-        watts = mean * into * element.share
+    for kind in ("coil", "capacitor"):
+        elements = [element for element in setting.elements if element.kind == kind]
+        if not elements:
+            continue
+        # Of parts alike the one that is worst off is told.
+        rated = [e for e in elements if e.voltage is not None]
+        if rated:
+            worst = max(rated, key=lambda e: e.volts / e.voltage)
+            volts = math.sqrt(into) * worst.volts
+            yield from _rated(f"tuner_{kind}_voltage", where, volts, worst.voltage, "voltage")
+        rated = [e for e in elements if e.current is not None]
+        if rated:
+            worst = max(rated, key=lambda e: e.amps / e.current)
+            amps = math.sqrt(into) * worst.amps
+            yield from _rated(f"tuner_{kind}_current", where, amps, worst.current, "current")
+        watts = mean * into * max(e.share for e in elements)
         if watts > TUNER_WATTS[0]:
             yield Finding(
-                code="tuner_heat",
+                code=f"tuner_{kind}_heat",
                 level=Level.WATCH if watts <= TUNER_WATTS[1] else Level.STOP,
-                where=part,
+                where=where,
                 value=watts,
                 limit=TUNER_WATTS[0],
                 dimension="power",
