@@ -12,9 +12,11 @@ import numpy as np
 import pytest
 
 from trapdesk import store
-from trapdesk.design import with_value
+from trapdesk.capacitor_kinds import Printed, SingleCapacitor
+from trapdesk.design import JudgedAt, with_value
 from trapdesk.engine.ports import chebyshev_nodes, terminate
 from trapdesk.engine.wire import plan, solve_whole
+from trapdesk.parts import CableCoil, StubCapacitor, Toroid
 from trapdesk.services import tolerance as service
 from trapdesk.services.advice import advise, for_yield
 from trapdesk.services.beliefs import CAUSES
@@ -24,6 +26,7 @@ from trapdesk.services.response import swr
 from trapdesk.services.solve import solve
 from trapdesk.services.tolerance import allowance_of, quick_yield, tolerance, yield_of
 from trapdesk.services.trial_traps import STAGES
+from trapdesk.station import FeedLine
 
 PRESETS = ("20-10-flat", "40-20-vee", "80-40-flat")
 AS_CUT, TUNED, AIMED, WET = STAGES
@@ -324,6 +327,16 @@ KINDS = {
     "space": changed("80-40-flat", ("site.ground", "space"), ("site.soil", None)),
     "coated": changed("80-40-flat", ("antenna.wire.coating", 1e-3)),
     "lengths set": changed("40-20-vee", ("antenna.lengths.inner", 5.12), ("antenna.lengths.end", 4.23)),
+    "coil of cable": changed(
+        "40-20-vee", ("antenna.trap.coil", CableCoil()), ("antenna.trap.capacitor", None)
+    ),
+    "ring core": changed("40-20-vee", ("antenna.trap.coil", Toroid())),
+    "stub": changed(
+        "40-20-vee", ("antenna.trap.coil.turns", 12.0), ("antenna.trap.capacitor", StubCapacitor())
+    ),
+    "line": changed(
+        "40-20-vee", ("station.line", FeedLine(length=25.0)), ("station.judged_at", JudgedAt.TRANSMITTER)
+    ),
     "given limits": changed("80-40-flat", ("station.swr_limit", 3.0), ("doubts.site", 0.0)),
 }
 
@@ -341,6 +354,27 @@ def test_every_kind_of_design_has_an_answer_of_numbers(design):
                 assert np.isfinite(numbers).all()
     assert stage.within.share <= min(band.within.share for band in stage.bands.values())
     assert advise(Ensemble(solve(design)), trials=200).steps
+
+
+@pytest.mark.parametrize("name", ["line", "coil of cable", "ring core", "stub", "coated", "mirror"])
+def test_the_nominal_trial_of_any_kind_is_the_design(name):
+    figures = solve(KINDS[name])
+    ensemble = Ensemble(figures)
+    nothing = {key: value * 0 for key, value in ensemble.nominal(1).items()}
+    for role, one in outcome_of(ensemble, AS_CUT, nothing, 1).items():
+        band = figures.bands[role]
+        assert swr_of(one.aim)[0] == pytest.approx(band.aim_swr, rel=1e-3)
+        assert swr_of(one.worst)[0] == pytest.approx(band.worst_swr, rel=2e-3)
+        assert one.volts[0] == pytest.approx(band.worst_stress.peak_voltage, rel=5e-3)
+
+
+def test_printed_tolerances_are_believed():
+    part = SingleCapacitor(print=Printed(text="47Z", capacitance=47e-12, tolerance=(0.2, 0.8)))
+    design = changed("40-20-vee", ("antenna.trap.capacitor", part))
+    varying = Ensemble(solve(design)).varying
+    assert varying["capacitor"].ends == pytest.approx((-0.2, 0.8))
+    said = with_value(design, "doubts.capacitor", 0.03)
+    assert Ensemble(solve(said)).varying["capacitor"].ends == pytest.approx((-0.03, 0.03))
 
 
 def test_with_every_cause_off_all_antennas_are_the_computed_one(vee):

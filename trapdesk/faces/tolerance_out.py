@@ -184,6 +184,14 @@ def scatters(found: Tolerance) -> list[str]:
             ends = f"({_mega(dip.least, 2)}-{_mega(dip.most, 2)})"
             dips = f"{_mega(dip.low)}-{_mega(dip.high)} {ends}"
             out += [f"  {STAGES[name]:<15}{dips:>27}{_swr_range(aim):>17}{_swr_range(worst):>18}"]
+        beyond = max(stages.items(), key=lambda pair: pair[1].outside)
+        if beyond[1].outside > 0:
+            low, high = (_mega(float(end)) for end in beyond[1].curve.frequency[[0, -1]])
+            out += folded(
+                "  ",
+                f"{STAGES[beyond[0]]}, {percent(beyond[1].outside)} of the dips lie beyond {low} to {high} MHz"
+                " and are counted there",
+            )
         if any(band.results["volts"].high > 0 for band in stages.values()):
             out += [f"  {'':<15}{'trap, peak volts':>27}{'lost in both traps':>25}"]
             for name, band in stages.items():

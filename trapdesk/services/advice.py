@@ -8,12 +8,12 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from ..design import Design, with_value
+from ..design import Design, get, with_value
 from ..doubts import Meaning
 from ..errors import NoAnswer
 from ..fields import SOLVE
 from ..parts import GivenCapacitor
-from ..rules import check
+from ..rules import check, trap_unknowns
 from .beliefs import Belief
 from .ensemble import Ensemble, reflection_of
 from .figures import Figures
@@ -182,14 +182,14 @@ class _Search:
             self.keys[f"bands.{role}.aim"] = (band.target, AIM_STEP * (high - low))
 
     def design_at(self, values: Mapping[str, float]) -> Design:
-        """Return the design with its values chosen; of the trap's three the coil is left to be solved."""
+        """Return the design with its values chosen; the coil is solved where nothing else of the trap is."""
         design = self.figures.design
         for key, value in values.items():
             design = with_value(design, key, value)
-        if "antenna.trap.resonance" in values:
-            for key in ("inductance", "turns"):
-                if hasattr(design.antenna.trap.coil, key):
-                    design = with_value(design, f"antenna.trap.coil.{key}", SOLVE)
+        trap = design.antenna.trap
+        if trap is not None and not any(get(design, key) is SOLVE for key in trap_unknowns(trap)):
+            key = next(key for key in trap_unknowns(trap) if key.startswith("antenna.trap.coil."))
+            design = with_value(design, key, SOLVE)
         return design
 
     def worth(self, values: Mapping[str, float]) -> float:

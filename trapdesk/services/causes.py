@@ -9,6 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from ..doubts import SIGMAS
+from ..parts import CableCoil
 from .beliefs import CAUSES, Belief, Draws
 from .ensemble import Ensemble
 from .trial_traps import Stage
@@ -130,11 +131,12 @@ def trap_first_order(ensemble: Ensemble) -> float | None:
         return None
     trap = ensemble.of_traps.trap
     by_turns, by_pitch, by_diameter = ensemble.of_traps.exponents
+    of_cable = float(isinstance(ensemble.of_traps.part.coil, CableCoil))
     own = (trap.capacitance - trap.fitted) / trap.capacitance
     low, _, high = trap.self_capacitance
     rates = {
         "coil": 1.0,
-        "turns": by_turns / trap.wound.turns if trap.wound is not None else 0.0,
+        "turns": (by_turns + of_cable) / trap.wound.turns if trap.wound is not None else 0.0,
         "pitch": by_pitch,
         "former": by_diameter,
         "capacitor": 1 - own,
