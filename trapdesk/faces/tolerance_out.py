@@ -189,8 +189,8 @@ def scatters(found: Tolerance) -> list[str]:
             low, high = (_mega(float(end)) for end in beyond[1].curve.frequency[[0, -1]])
             out += folded(
                 "  ",
-                f"{STAGES[beyond[0]]}, {percent(beyond[1].outside)} of the dips lie beyond {low} to {high} MHz"
-                " and are counted there",
+                f"{STAGES[beyond[0]]}, {percent(beyond[1].outside)} of the dips lie beyond {low} to {high}"
+                " MHz and are counted there",
             )
         if any(band.results["volts"].high > 0 for band in stages.values()):
             out += [f"  {'':<15}{'trap, peak volts':>27}{'lost in both traps':>25}"]
