@@ -38,6 +38,7 @@ ROOM_OF = {
     "station_rules": "design",
     "numerals": "units",
     "prints": "units",
+    "print_tables": "units",
     "unit_names": "units",
     "spoken": "store",
     "toml_edit": "store",

@@ -8,7 +8,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from trapdesk import prints
+from trapdesk import print_tables, prints
 from trapdesk.errors import BadInput
 
 PUBLISHED = tomllib.loads((Path(__file__).parent / "published" / "capacitor-codes.toml").read_text("utf-8"))
@@ -32,7 +32,7 @@ def test_published_tables():
             PUBLISHED["figure"][first] * PUBLISHED["multiplier"][second] * 1e-6, abs=1e-15
         )
         assert doubt == pytest.approx(PUBLISHED["allowed"][third] * 1e-6)
-    assert prints.SERIES["E24"] == tuple(round(10 * value) for value in PUBLISHED["e24"])
+    assert print_tables.SERIES["E24"] == tuple(round(10 * value) for value in PUBLISHED["e24"])
     for letter, share in PUBLISHED["percent"].items():
         assert prints.read_tolerance(letter, 47e-12) == pytest.approx((share / 100, share / 100))
     for letter, size in PUBLISHED["picofarads"].items():
@@ -51,22 +51,24 @@ def test_trade_names_mean_their_codes():
 
 
 def test_series():
-    assert prints.SERIES["E6"] == E6
-    assert prints.SERIES["E12"] == E12
-    assert len(prints.SERIES["E3"]) == 3
+    assert print_tables.SERIES["E6"] == E6
+    assert print_tables.SERIES["E12"] == E12
+    assert len(print_tables.SERIES["E3"]) == 3
     for name, (first, second, last) in FINE.items():
-        series = prints.SERIES[name]
+        series = print_tables.SERIES[name]
         assert (series[0], series[1], series[-1]) == (first, second, last)
         assert len(series) == int(name[1:]) == len(set(series))
-    assert set(prints.SERIES["E48"]) < set(prints.SERIES["E96"]) < set(prints.SERIES["E192"])
+    assert (
+        set(print_tables.SERIES["E48"]) < set(print_tables.SERIES["E96"]) < set(print_tables.SERIES["E192"])
+    )
 
 
-@pytest.mark.parametrize("series", prints.SERIES)
+@pytest.mark.parametrize("series", print_tables.SERIES)
 @given(st.floats(1e-14, 1e6))
 def test_preferred_is_the_nearest(series, value):
     found = prints.preferred(value, series)
     assert prints.preferred(found, series) == pytest.approx(found)
-    steps = 1 + 1.2 * (10 ** (1 / len(prints.SERIES[series])) - 1)
+    steps = 1 + 1.2 * (10 ** (1 / len(print_tables.SERIES[series])) - 1)
     assert value / steps < found < value * steps
 
 
@@ -78,14 +80,14 @@ def test_every_value_code_both_ways():
         assert prints.write_code(prints.read_code(code)) == code
 
 
-@pytest.mark.parametrize("letter", prints.PERCENT)
+@pytest.mark.parametrize("letter", print_tables.PERCENT)
 @pytest.mark.parametrize("capacitance", [4.7e-12, 47e-12, 4.7e-9])
 def test_every_tolerance_letter_both_ways(letter, capacitance):
     assert prints.write_tolerance(prints.read_tolerance(letter, capacitance), capacitance) == letter
 
 
 def test_every_characteristic_both_ways():
-    for code in map("".join, product(prints.FIGURE, prints.MULTIPLIER, prints.ALLOWED)):
+    for code in map("".join, product(print_tables.FIGURE, print_tables.MULTIPLIER, print_tables.ALLOWED)):
         meaning = prints.read_characteristic(code)
         written = prints.write_characteristic(*meaning)
         assert prints.read_characteristic(written) == pytest.approx(meaning, abs=1e-15)

@@ -6,13 +6,14 @@ The files, each one subject:
 ``limits``            the check of arguments: a value outside its limits is named, never clamped
 ``special``           Bessel and complete elliptic integrals, round-wire ratio
 ``conductors``        resistivity, gauges, skin effect, AC resistance, insulation
-``coils``             solenoid and toroid: inductance, self-capacitance, loss
+``coils``             solenoid: inductance, self-capacitance, loss
+``toroids``           coils on ring cores: inductance, wire, what fits, flux
 ``coil_formulas``     published formulas for the solenoid: cross-checks of `coils`
 ``cables``            lines, coaxial or parallel: loss, transformation, what stands on them
 ``cable_types``       cables by name, and lines from their listed values or their section
 ``cable_trap``        the trap wound of coaxial cable, as a circuit
 ``cable_winding``     the same as a winding: inductance, resistance, turns for a resonance
-``capacitors``        single, stub and combinations: loss, drift, voltage
+``capacitors``        loss by Q or dielectric, open stubs, what voltage a capacitor stands
 ``resonator``         the one parallel resonator: trap, tuner element, trial and fit alike
 ``mesh``              sides of a wire cut into elements: quadratures, static integrals, sample points
 ``wire``              thin-wire integral equation: a wire with ports to its port matrix and currents
@@ -26,6 +27,7 @@ The files, each one subject:
 ``boxes``             limits of real parts: the box of settings of a network
 ``matching``          the match of least loss within limits, its family, the loads in reach
 ``nearest``           the best setting for a load: match or nearest, what is short, arms in steps
+``heat``              how warm a part gets, and drift of a resonance
 ``stress``            what each part of the resonator carries: currents, volts, watts, reactive power
 ``tank``              parts of a resonator from any sufficient subset of its quantities
 ``measured``          parts from a few measured numbers, each with its uncertainty

@@ -416,7 +416,7 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
     "coil": (
         verb_words.COIL,
         coil,
-        "trapdesk coil kind=solenoid former=40mm wire=AWG14 pitch=2.4mm turns=8 f=14.1MHz",
+        "trapdesk coil former=40mm wire=AWG14 pitch=2.4mm turns=8 f=14.1MHz",
         "\n  trapdesk coil kind=cable cable=RG-58/U former=50mm f=14.05MHz",
     ),
     "match": (

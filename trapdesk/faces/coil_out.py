@@ -18,7 +18,7 @@ from .pairs import Name, need, read_pairs
 from .shown import about, exact, impedance_range, known, megahertz, percent
 from .trap_rows import adjustment_text, side_text
 
-EXAMPLE = "trapdesk coil kind=solenoid former=40mm wire=AWG14 pitch=2.4mm turns=8 f=14.1MHz"
+EXAMPLE = "trapdesk coil former=40mm wire=AWG14 pitch=2.4mm turns=8 f=14.1MHz"
 KEY = "antenna.trap.coil"
 USUAL = "solenoid"
 ASKED: dict[str, Name] = {

@@ -50,8 +50,8 @@ Print whether a tuner is worth it, the watts on the way down, its settings and
 the loads it can match. A design without a line may be given one here."""
 
 COIL = """\
-Print one coil: what it is at a frequency, what to wind and cut, what can still be
-moved afterwards.
+Print one coil: what it is at a frequency, what to wind and cut, what can
+still be moved afterwards.
   kind          solenoid unless said; given, cable, toroid
   f             at what frequency
   turns         or, to have them solved: the L it shall have, or the C it shall
