@@ -7,7 +7,9 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 from ..services.figures import BandFigures, Figures
-from . import words
+from ..services.tolerance import Tolerance
+from . import tolerance_out, words
+from .layout import folded
 from .lines import band_name, title
 from .shown import about, centimetres, megahertz
 
@@ -76,10 +78,11 @@ def _even(size: float) -> float:
     return next(n * power for n in (5, 2, 1) if n * power <= size * (1 + 1e-9))
 
 
-def lines(figures: Figures) -> list[str]:
-    """Return the card as lines, fewer than fill a small screen."""
+def lines(figures: Figures, ensemble: Tolerance | None = None) -> list[str]:
+    """Return the card as lines, fewer than fill a small screen; with an ensemble, how much wire to leave."""
     head = f"HILL CARD: {title(figures.design, 40)}"
     found = [f"{head:<{WIDTH - len(words.ESTIMATE)}}{words.ESTIMATE}", *_marks(figures)]
+    found += [] if ensemble is None else folded("", tolerance_out.card_line(ensemble))
     all_cards = cards(figures)
     for number, card in enumerate(all_cards, start=1):
         wire = "side" if figures.trap is None else f"{card.wire} wire"
