@@ -29,6 +29,7 @@ The files, each one subject:
 ``nearest``           the best setting for a load: match or nearest, what is short, arms in steps
 ``heat``              how warm a part gets, and drift of a resonance
 ``stress``            what each part of the resonator carries: currents, volts, watts, reactive power
+``sampling``          random numbers that are the same on every machine
 ``tank``              parts of a resonator from any sufficient subset of its quantities
 ``measured``          parts from a few measured numbers, each with its uncertainty
 ``fits``              resonators fitted to a sweep, each value with its uncertainty
