@@ -8,6 +8,8 @@ ComplexArray = NDArray[np.complex128]
 
 
 def _wanted(wanted: ArrayLike, name: str) -> ComplexArray:
+    if isinstance(wanted, float | int) and 0.0 < wanted < np.inf:
+        return np.complex128(wanted)
     z = np.asarray(wanted, dtype=complex)
     if not (np.isfinite(z).all() and (z.real > 0.0).all()):
         raise ValueError(f"{name} must be finite and its resistance above 0")
@@ -69,10 +71,14 @@ def swr(impedance: ArrayLike, reference: ArrayLike = 50.0) -> FloatArray:
     |Z + Z_w*|^2 - |Z - Z_w|^2 = 4 Re Z_w Re Z.
     """
     z, z_w = np.asarray(impedance, dtype=complex), _wanted(reference, "reference")
-    if not (np.isfinite(z).all() and (z.real >= 0.0).all()):
-        raise ValueError("impedance must be finite with a resistance of at least 0")
-    with np.errstate(divide="ignore"):
-        return ((np.abs(z + z_w.conj()) + np.abs(z - z_w)) ** 2 / (4.0 * z_w.real * z.real))[()]
+    real = z.real
+    sides = np.abs(z + z_w.conj()) + np.abs(z - z_w)
+    if real.size and not (real.min() > 0.0 and np.isfinite(sides.max())):
+        if not (np.isfinite(z).all() and real.min() >= 0.0):
+            raise ValueError("impedance must be finite with a resistance of at least 0")
+        with np.errstate(divide="ignore"):
+            return (sides * sides / (4.0 * z_w.real * real))[()]
+    return (sides * sides / (4.0 * z_w.real * real))[()]
 
 
 def swr_of_reflection(magnitude: ArrayLike) -> FloatArray:

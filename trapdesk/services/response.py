@@ -30,9 +30,10 @@ LARGEST = 1e9
 
 def swr(impedance: np.ndarray, reference: float) -> np.ndarray:
     """Return the standing wave ratio of impedances against a real reference, finite for any of them."""
-    return np.minimum(
-        reflection.swr(np.maximum(impedance.real, 0.0) + 1j * impedance.imag, reference), LARGEST
-    )
+    if impedance.real.min() <= 0.0:
+        impedance = np.maximum(impedance.real, 0.0) + 1j * impedance.imag
+        return np.minimum(reflection.swr(impedance, reference), LARGEST)
+    return reflection.swr(impedance, reference)
 
 
 @dataclass(frozen=True, kw_only=True)
