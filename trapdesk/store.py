@@ -223,7 +223,7 @@ def save(design: Design, path: str | os.PathLike[str], original_text: str | None
             raise FileFault(path, code, help="a design goes into a file of its own")
         if mode is not None and not os.access(target, os.W_OK):
             raise FileFault(path, "not_writable", help="it is read-only; save under another name")
-        _replace(target, text.encode("utf-8"), mode)
+        put_whole(target, text.encode("utf-8"), mode)
     except (OSError, ValueError) as error:
         raise FileFault(path, "not_writable", help=_reason(error)) from None
     return Saved(path=Path(path), comments_kept=kept)
@@ -237,8 +237,8 @@ def _mode(target: str) -> int | None:
         return None
 
 
-def _replace(target: str, data: bytes, mode: int | None) -> None:
-    """Put bytes in the place of a file."""
+def put_whole(target: str, data: bytes, mode: int | None = None) -> None:
+    """Put bytes in the place of a file, all of them or none."""
     folder = os.path.dirname(target)
     beside = os.path.join(folder, f".{secrets.token_hex(6)}.trapdesk")
     handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o666)
@@ -253,10 +253,10 @@ def _replace(target: str, data: bytes, mode: int | None) -> None:
     except BaseException:
         os.unlink(beside)
         raise
-    _settle(folder)
+    settle(folder)
 
 
-def _settle(folder: str) -> None:
+def settle(folder: str) -> None:
     """Have a folder's names outlive a power cut, where its file system can do that."""
     try:
         handle = os.open(folder, os.O_RDONLY)

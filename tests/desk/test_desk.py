@@ -405,10 +405,10 @@ async def test_help_tells_of_the_row_under_the_cursor():
 async def test_colours_can_be_gone_through():
     async with opened() as (desk, pilot):
         seen = set()
-        for _ in range(4):
+        for _ in range(5):
             await pressed(desk, pilot, "t")
             seen.add(desk.theme)
-        assert seen == {"dark", "daylight", "sixteen", "plain"}
+        assert seen == {"own", "dark", "daylight", "red-light", "plain"}
 
 
 async def test_any_keys_leave_it_standing():

@@ -7,15 +7,21 @@ import sys
 from collections.abc import Callable
 from typing import ClassVar
 
+from rich.console import RenderableType
+from rich.text import Text
 from textual.app import App, ComposeResult
 from textual.binding import Binding
 from textual.events import Key, Paste, Resize
+from textual.screen import Screen
 
 from ... import store
 from ...errors import TrapdeskError
 from ...services.solve import solve
+from . import config, journal
 from .arrange import LEAST_HEIGHT, LEAST_WIDTH, arrangement
-from .filing import Filing
+from .deeds import KEYS, Deeds
+from .endings import end_by_signals, told
+from .filing import Filing, begun
 from .lines import Lines, padded
 from .middle import Middle
 from .panes.drawers import DrawersPane
@@ -24,6 +30,7 @@ from .session import Session
 from .solving import Solved, Solver, Solving
 from .terminal import Look, look
 from .themes import THEMES
+from .thin import Thin
 
 
 class Desk(App[None]):
@@ -32,28 +39,29 @@ class Desk(App[None]):
     CSS_PATH = "desk.tcss"
     ENABLE_COMMAND_PALETTE = False
     AUTO_FOCUS = None
-    BINDINGS: ClassVar = [
-        Binding("u", "undo"),
-        Binding("U,ctrl+r", "redo"),
-        Binding("v", "view(1)"),
-        Binding("V", "view(-1)"),
-        Binding("h,question_mark,f1", "help"),
-        Binding("escape", "back"),
-        Binding("w", "write"),
-        Binding("W", "write_as"),
-        Binding("t", "colours"),
-        Binding("pagedown", "scroll(1)"),
-        Binding("pageup", "scroll(-1)"),
-        Binding("q,ctrl+q,ctrl+c", "leave"),
-    ]
+    BINDINGS: ClassVar = [Binding(keys, f"do('{deed}')") for deed, keys in KEYS.items()]
 
-    def __init__(self, session: Session, drawn: Look, solver: Solver = solve) -> None:
+    def __init__(
+        self,
+        session: Session,
+        drawn: Look,
+        solver: Solver = solve,
+        *,
+        chosen: config.Config | None = None,
+        kept: journal.Journal | None = None,
+        trouble: str = "",
+    ) -> None:
         super().__init__()
         self.session = session
         self.drawn = drawn
+        self.thin = Thin()
+        self.chosen = chosen or config.Config()
+        session.units = self.chosen.units
+        self._trouble = trouble
         self._fitting = False
         self._solving = Solving(self, session, solver)
-        self._filing = Filing(session, self)
+        self._filing = Filing(session, self, self.chosen, kept)
+        self._deeds = Deeds(self, self._filing)
         for theme in THEMES.values():
             self.register_theme(theme)
         self.theme = drawn.theme
@@ -61,6 +69,17 @@ class Desk(App[None]):
     def get_theme_variable_defaults(self) -> dict[str, str]:
         """Return the colours that a theme not of ours lacks."""
         return THEMES["plain"].variables
+
+    def _display(self, screen: Screen, renderable: RenderableType | None) -> None:
+        """Send only what changed of an update; nothing of one that changes nothing."""
+        sends = self._running and not self._closed and not self._batch_count and not self.is_headless
+        if sends and renderable is not None and self._driver is not None:
+            renderable = self.thin.reduced(renderable, tuple(self.size), self.console)
+        super()._display(screen, renderable)
+
+    def _fatal_error(self) -> None:
+        """End after an error nobody foresaw: one line for the person, the rest into a file."""
+        self.panic(Text(told(sys.exception(), os.environ)))
 
     def compose(self) -> ComposeResult:
         """Lay out heading, panes and foot."""
@@ -70,15 +89,24 @@ class Desk(App[None]):
         yield Lines(id="small")
 
     def on_mount(self) -> None:
-        """Paint, then begin to solve."""
-        self.call_after_refresh(self._solve)
+        """Paint, then begin to solve and to journal."""
+        self.app_resume_signal.subscribe(self, lambda app: self.thin.forget())
+        if not self.is_headless:
+            end_by_signals(self)
+        self.call_after_refresh(self._begin)
+
+    def _begin(self) -> None:
+        self.solve()
+        self._filing.begin()
+        if self._trouble:
+            self.say(self._trouble, refused=True)
 
     def on_key(self, event: Key) -> None:
         """Give a key to whom it is for: nothing has the focus, so that keys are dealt with in their order."""
         if self.foot.asking:
             self.foot.key(event)
             self._repaint_foot()
-        elif not (self._middle.key(event) or self.drawers.key(event)):
+        elif not (self.middle.key(event) or self.drawers.key(event)):
             return
         event.stop()
         event.prevent_default()
@@ -91,8 +119,13 @@ class Desk(App[None]):
         else:
             self.drawers.paste(event.text)
 
+    def action_do(self, deed: str) -> None:
+        """Do what a key stands for."""
+        getattr(self._deeds, deed)()
+
     @property
-    def _middle(self) -> Middle:
+    def middle(self) -> Middle:
+        """The panes between heading and foot."""
         return self.query_one(Middle)
 
     @property
@@ -109,7 +142,8 @@ class Desk(App[None]):
         """Wait until the present design has its whole answer, or the reason why there is none."""
         await self._solving.settled()
 
-    def _solve(self) -> None:
+    def solve(self) -> None:
+        """Solve and show the present design."""
         self._solving.begin()
         self.repaint()
 
@@ -121,7 +155,8 @@ class Desk(App[None]):
     def on_resize(self, event: Resize) -> None:
         """Choose the arrangement for a size."""
         width, height = event.size
-        self._middle.arranged = arrangement(width, height)
+        self.thin.forget()
+        self.middle.arranged = arrangement(width, height)
         text = f"{width}x{height} is too small: the desk needs {LEAST_WIDTH}x{LEAST_HEIGHT}"
         self.query_one("#small", Lines).show([[(padded(text, width), "text")]])
         self.repaint()
@@ -139,20 +174,23 @@ class Desk(App[None]):
     def repaint(self) -> None:
         """Hand the session to every pane."""
         self.query_one(Heading).repaint(self.session)
-        self._middle.repaint()
+        self.middle.repaint()
         self._repaint_foot()
 
     def _repaint_foot(self) -> None:
+        self.foot.plotting = self.middle.plotting
         self.foot.repaint(self.session, self.drawers.row, self.drawers.editing)
 
     def on_drawers_pane_changed(self) -> None:
-        """Solve the design that an edit made."""
-        self._solve()
+        """Solve the design that an edit made; say so when it could not be kept safe."""
+        if trouble := self._filing.trouble():
+            self.say(trouble, refused=True)
+        self.solve()
 
     def on_drawers_pane_moved(self) -> None:
         """Tell of the row the cursor came to."""
         self.foot.say("")
-        self.repaint() if self._middle.helping else self._repaint_foot()
+        self.repaint() if self.middle.helping else self._repaint_foot()
 
     def on_drawers_pane_said(self, message: DrawersPane.Said) -> None:
         """Show what the inputs have to tell."""
@@ -164,76 +202,35 @@ class Desk(App[None]):
         self.query_one(Heading).repaint(self.session)
         self._repaint_foot()
 
-    def ask(self, question: str, answer: Callable[[str], None], text: str | None = None) -> None:
+    def ask(
+        self,
+        question: str,
+        answer: Callable[[str], None],
+        text: str | None = None,
+        live: Callable[[str], object] | None = None,
+    ) -> None:
         """Ask in the foot for a line, or for a single key when there is no text to start from."""
-        self.foot.ask(question, answer, text)
+        self.foot.ask(question, answer, text, live)
         self._repaint_foot()
 
     def close(self) -> None:
         """End the desk."""
         self.exit()
 
-    def action_undo(self) -> None:
-        """Go back one design."""
-        self._step(self.session.undo(), "undone", "there is nothing to undo")
-
-    def action_redo(self) -> None:
-        """Take back an undo."""
-        self._step(self.session.redo(), "done again", "there is nothing to do again")
-
-    def _step(self, moved: bool, done: str, nothing: str) -> None:
-        self.say(done if moved else nothing, refused=not moved)
-        if moved:
-            self._solve()
-
-    def action_view(self, by: int) -> None:
-        """Show another view."""
-        self._middle.turn(by)
-
-    def action_help(self) -> None:
-        """Show help, or take it away."""
-        self._middle.helping = not self._middle.helping
-        self.repaint()
-
-    def action_back(self) -> None:
-        """Take help and note away."""
-        self._middle.helping = False
-        self.foot.say("")
-        self.repaint()
-
-    def action_scroll(self, pages: int) -> None:
-        """Scroll the view."""
-        self._middle.scroll_view(pages)
-
-    def action_colours(self) -> None:
-        """Take the next theme."""
-        order = list(THEMES)
-        self.theme = order[(order.index(self.theme) + 1) % len(order)]
-        self.say(f"colours: {self.theme}")
-
-    def action_write(self) -> None:
-        """Save the design."""
-        self._filing.write()
-
-    def action_write_as(self) -> None:
-        """Save the design under another name."""
-        self._filing.write_as()
-
-    def action_leave(self) -> None:
-        """Quit; ask when something is not saved."""
-        if not self.foot.asking:
-            self._filing.leave()
-
 
 def run(argument: str | None) -> int:
     """Open the desk on a file or preset, the first preset without one, and return the exit code."""
+    chosen, trouble = config.load(config.place(os.environ))
     try:
-        document = store.find(argument) if argument is not None else store.find()
+        document = store.find(argument) if argument is not None else begun(store.FIRST_PRESET, chosen)
     except TrapdeskError as error:
         print(error, file=sys.stderr)
         return error.exit_code
     if not (sys.stdin.isatty() and sys.stdout.isatty()):
         print("the desk needs a terminal; trapdesk figures FILE prints the figures", file=sys.stderr)
         return 2
-    Desk(Session(document), look(os.environ)).run()
-    return 0
+    kept = journal.Journal(folder=journal.folder(os.environ))
+    drawn = look(os.environ, chosen.theme)
+    desk = Desk(Session(document), drawn, chosen=chosen, kept=kept, trouble=trouble)
+    desk.run()
+    return desk.return_code or 0

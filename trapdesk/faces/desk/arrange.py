@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from .lines import Line
 from .panes.answer import answer_lines, figures_lines
-from .panes.curves import swr_lines, trap_lines
+from .panes.curves import feed_lines, swr_lines, trap_lines
 from .panes.findings import findings_lines
 from .panes.help import help_lines
 from .view import TALL, View
@@ -19,8 +19,9 @@ FINDINGS = View(name="findings", lines=findings_lines)
 HELP = View(name="help", lines=help_lines, dims=False)
 VIEWS = (
     ANSWER,
-    View(name="SWR", lines=swr_lines),
-    View(name="trap", lines=trap_lines),
+    View(name="SWR", lines=swr_lines, plot=True),
+    View(name="z", lines=feed_lines, plot=True),
+    View(name="trap", lines=trap_lines, plot=True),
     FINDINGS,
     View(name="figures", lines=figures_lines),
 )

@@ -83,8 +83,8 @@ def drawer_of(key: str) -> str:
     return next((name for name, heads in DRAWERS.items() if key.startswith(heads)), "")
 
 
-def rows(design: Design, figures: Figures | None) -> dict[str, list[FormRow]]:
-    """Return the rows of every drawer; headings are rows without a key."""
+def rows(design: Design, figures: Figures | None, units: str = "metric") -> dict[str, list[FormRow]]:
+    """Return the rows of every drawer, lengths in a system of units; headings are rows without a key."""
     drawers: dict[str, list[FormRow]] = {name: [] for name in DRAWERS}
     answers = _answers(figures)
     for key, known, value in walk(design):
@@ -112,10 +112,21 @@ def rows(design: Design, figures: Figures | None) -> dict[str, list[FormRow]]:
                 FormRow(key=f"{key}.kind", known=known, value=value.kind, text=value.kind, words=kinds)
             )
     # The upper band comes first wherever bands are shown; its row of presence divides the two.
+    if units != "metric":
+        drawers = {name: [in_units(row, figures, units) for row in made] for name, made in drawers.items()}
     bands = drawers["Bands"]
     divide = next(place for place, row in enumerate(bands) if row.key == "bands.upper")
     drawers["Bands"] = bands[divide:] + bands[:divide]
     return drawers
+
+
+def in_units(row: FormRow, figures: Figures | None, units: str) -> FormRow:
+    """Return a row with its length, set or found, in a system of units; any other row as it is."""
+    value = found(figures, row.key) if row.value in (None, SOLVE) else row.value
+    if row.known.dimension != Dimension.LENGTH or not isinstance(value, float) or row.fixed:
+        return row
+    digits = 4 if row.value is value else 3
+    return replace(row, text=show(value, Dimension.LENGTH, units, digits=digits))
 
 
 def _heading(text: str) -> FormRow:

@@ -74,6 +74,21 @@ class Middle(Container):
             self.shown = cycle[(cycle.index(self.shown) + by) % len(cycle)]
         self.repaint()
 
+    @property
+    def plotting(self) -> bool:
+        """Whether the view in sight is a plot."""
+        return self.shown.plot and not (self.helping and not self.arranged.wide)
+
+    def move_cursor(self, steps: int) -> None:
+        """Move the readout along the plots by so many columns; the first step puts it in the middle."""
+        if not self.plotting:
+            return
+        pane = self._pane("below" if self.arranged.tall else "answer")
+        step = 1.0 / max(8, pane.room - 7)
+        here = self._session.cursor
+        self._session.cursor = 0.5 if here is None else min(1.0, max(0.0, here + steps * step))
+        self.repaint()
+
     def scroll_view(self, pages: int) -> None:
         """Scroll the view, or help where that has a pane of its own."""
         beside = self.helping and self.arranged.wide

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from collections.abc import Callable
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -11,6 +12,7 @@ from .lines import Line, Piece, padded
 from .terminal import Glyphs, Look
 
 LEAST_WIDTH, LEAST_HEIGHT = 16, 5
+_EMPTY = (" ", "\u2800")
 _SPEEDS = (1.0, 2.0, 2.5, 5.0, 10.0)
 
 
@@ -18,8 +20,10 @@ _SPEEDS = (1.0, 2.0, 2.5, 5.0, 10.0)
 class Panel:
     """One curve over frequency: `heading` names it, `readout` is what it comes to in one line.
 
-    `x` is in MHz. `wanted` is a part of the axis drawn heavy, `marks` are upright lines, `limit` is a level
-    line. `ticks` are the values named at the left, each with its text, in a margin of at least `margin`.
+    `x` is in MHz; `ghost` is another curve, x and y, drawn dotted. `at` tells what there is at a frequency,
+    for the readout, whose place `cursor` goes from 0 to 1 along the axis. `wanted` is a part of the axis
+    drawn heavy, `marks` are upright lines, `limit` is a level line. `ticks` are the values named at the left,
+    each with its text, in a margin of at least `margin`.
     """
 
     heading: str
@@ -33,6 +37,9 @@ class Panel:
     wanted: tuple[float, float] | None = None
     limit: float | None = None
     margin: int = 0
+    ghost: tuple[np.ndarray, np.ndarray] | None = None
+    cursor: float | None = None
+    at: Callable[[float], str] | None = None
 
 
 def ready() -> None:
@@ -42,21 +49,48 @@ def ready() -> None:
 
 def draw(panel: Panel, width: int, height: int, look: Look) -> list[Line]:
     """Return a panel in so many columns and lines: heading with readout, canvas, axis, frequencies."""
+    panel, mark = _with_cursor(panel)
     if width < LEAST_WIDTH or height < LEAST_HEIGHT:
         return [[(padded(panel.readout, width), "text")]]
     margin = max(panel.margin, *(len(text) + 1 for _, text in panel.ticks))
     columns, rows = width - margin - 1, height - 3
-    canvas = _curve(panel, columns, rows, look)
+    canvas = _curve(panel, panel.x, panel.y, columns, rows, look)
     styles = [["curve"] * columns for _ in range(rows)]
+    _haunt(panel, canvas, styles, look)
     _rule(panel, canvas, styles, look)
+    column = None if mark is None else min(columns - 1, max(0, _column(panel, mark, columns, look)))
+    if column is not None:
+        for row in range(rows):
+            if canvas[row][column] not in _EMPTY and styles[row][column] == "curve":
+                styles[row][column] = "cursor"
     named = {_row(panel, value, rows, look): text for value, text in panel.ticks}
     lines: list[Line] = [_heading(panel, width)]
     for row in range(rows):
         label = named.get(row, "")
         lines.append([(f"{label:>{margin - 1}} {look.upright}", "quiet"), *_runs(canvas[row], styles[row])])
-    lines.append([(" " * margin + look.corner, "quiet"), *_axis(panel, columns, look)])
+    lines.append([(" " * margin + look.corner, "quiet"), *_marked(_axis(panel, columns, look), column)])
     lines.append([(padded(" " * (margin + 1) + _frequencies(panel, columns, look), width), "quiet")])
     return lines
+
+
+def _with_cursor(panel: Panel) -> tuple[Panel, float | None]:
+    """Return the panel reading out what is at its cursor, and the frequency of that."""
+    if panel.cursor is None or panel.at is None:
+        return panel, None
+    low, high = panel.x_range
+    step = 10.0 ** math.floor(math.log10((high - low) / 100))
+    x = round((low + panel.cursor * (high - low)) / step) * step
+    decimals = max(0, -math.floor(math.log10(step) + 1e-9))
+    return replace(panel, readout=f"{x:.{decimals}f} MHz {panel.at(x)}"), x
+
+
+def _marked(axis: list[Piece], column: int | None) -> list[Piece]:
+    """Return the axis with a mark at a column."""
+    if column is None:
+        return axis
+    cells = [(character, style) for text, style in axis for character in text]
+    cells[column] = ("^", "head")
+    return _runs([cell for cell, _ in cells], [style for _, style in cells])
 
 
 def _heading(panel: Panel, width: int) -> Line:
@@ -80,15 +114,17 @@ def _row(panel: Panel, y: float, rows: int, look: Look) -> int:
     return rows - 1 - _cell(y, panel.y_range, rows, 4 if look.glyphs is Glyphs.BRAILLE else 1)
 
 
-def _curve(panel: Panel, columns: int, rows: int, look: Look) -> list[list[str]]:
-    """Return the cells of the curve alone."""
+def _curve(
+    panel: Panel, x: np.ndarray, y: np.ndarray, columns: int, rows: int, look: Look
+) -> list[list[str]]:
+    """Return the cells of a curve alone."""
     import plotext
 
     low, high = panel.y_range
-    inside = np.isfinite(panel.y)
+    inside = np.isfinite(y)
     # What leaves the canvas is drawn to just beyond its edge, so that the curve is seen to leave.
     beyond = high + (high - low)
-    x, y = panel.x[inside], np.clip(panel.y[inside], low - (high - low), beyond)
+    x, y = x[inside], np.clip(y[inside], low - (high - low), beyond)
     figure = plotext.figure
     figure.clear()
     figure.plot_size(columns, rows)
@@ -104,20 +140,32 @@ def _curve(panel: Panel, columns: int, rows: int, look: Look) -> list[list[str]]
     return cells + [[" "] * columns for _ in range(rows - len(cells))]
 
 
+def _haunt(panel: Panel, canvas: list[list[str]], styles: list[list[str]], look: Look) -> None:
+    """Draw the other curve, every second cell of it, where the curve leaves room."""
+    if panel.ghost is None:
+        return
+    rows, columns = len(canvas), len(canvas[0])
+    other = _curve(panel, *panel.ghost, columns, rows, look)
+    for row in range(rows):
+        for column in range(row % 2, columns, 2):
+            if canvas[row][column] in _EMPTY and other[row][column] not in _EMPTY:
+                glyph = other[row][column] if look.glyphs is Glyphs.BRAILLE else "."
+                canvas[row][column], styles[row][column] = glyph, "quiet"
+
+
 def _rule(panel: Panel, canvas: list[list[str]], styles: list[list[str]], look: Look) -> None:
     """Draw the limit and the upright marks where the curve leaves room."""
     rows, columns = len(canvas), len(canvas[0])
-    empty = (" ", "\u2800")
     if panel.limit is not None and panel.y_range[0] <= panel.limit <= panel.y_range[1]:
         row = _row(panel, panel.limit, rows, look)
         for column in range(0, columns):
-            if canvas[row][column] in empty:
+            if canvas[row][column] in _EMPTY:
                 canvas[row][column], styles[row][column] = look.level if column % 2 else " ", "limit"
     for mark in panel.marks:
         column = _column(panel, mark, columns, look)
         if 0 <= column < columns:
             for row in range(rows):
-                if canvas[row][column] in (*empty, look.level):
+                if canvas[row][column] in (*_EMPTY, look.level):
                     canvas[row][column], styles[row][column] = look.upright if row % 2 else ":", "quiet"
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
 
@@ -19,26 +19,50 @@ from .form import FormRow, put
 class Session:
     """Designs for undo and redo, and the last good figures with the generation they belong to.
 
-    Every change of the design begins a new generation; an answer of an older one is dropped.
+    Every change of the design begins a new generation; an answer of an older one is dropped. `note` is called
+    after each change of the design or of where it is kept, with whether another design was opened. `ghost`
+    are figures to compare with; `cursor` is a place along the axes of the plots, from 0 to 1; `zoom` is the
+    role of the one band to plot, empty for all. `units` is the system in which lengths are shown.
     """
 
     def __init__(self, document: Document) -> None:
-        self.path = document.path
-        self.text = document.text
-        self.name = document.name
+        self.note: Callable[[bool], None] = lambda opened: None
         self.figures: Figures | None = None
+        self.ghost: Figures | None = None
+        self.cursor: float | None = None
+        self.zoom = ""
         self.no_answer = ""
+        self.unsafe = False
+        self.units = "metric"
         self.generation = 0
         self.answered = -1
-        self._designs = [document.design]
-        self._place = 0
-        self._saved = document.design
         self.aside = Aside(self)
+        self._hold(document, (document.design,), 0)
+
+    def _hold(self, document: Document, designs: tuple[Design, ...], place: int) -> None:
+        self.path: Path | None = document.path
+        self.text = document.text
+        self.name = document.name
+        self._designs = list(designs)
+        self._place = place
+        self._saved = document.design
+
+    def open(self, document: Document, designs: tuple[Design, ...] = (), place: int = 0) -> None:
+        """Begin with another document, or with the designs that were made from it."""
+        self._hold(document, designs or (document.design,), place)
+        self.generation += 1
+        self.no_answer = ""
+        self.note(True)
 
     @property
     def design(self) -> Design:
         """The present design."""
         return self._designs[self._place]
+
+    @property
+    def designs(self) -> tuple[tuple[Design, ...], int]:
+        """The designs for undo and redo, and the place of the present one."""
+        return tuple(self._designs), self._place
 
     @property
     def solving(self) -> bool:
@@ -64,7 +88,7 @@ class Session:
         return self.take(put(self.design, row.key, value, self.figures, self.past()))
 
     def take(self, changed: Design) -> bool:
-        """Put another design in place of the present one, as an edit does."""
+        """Take a design as an edit and return whether it is another; BadInput when a rule forbids it."""
         if changed == self.design:
             return False
         breaches = check(changed)
@@ -88,6 +112,7 @@ class Session:
             return False
         self._place = place
         self.generation += 1
+        self.note(False)
         return True
 
     def answer(self, generation: int, outcome: Figures | str) -> bool:
@@ -104,3 +129,4 @@ class Session:
         """Note that the present design is in a file, and how it reads there."""
         self.path, self.text = path, text
         self._saved = self.design
+        self.note(False)

@@ -42,8 +42,8 @@ class Look:
         return "└" if self.glyphs is Glyphs.BRAILLE else "+"
 
 
-def look(environment: Mapping[str, str]) -> Look:
-    """Return how to draw on the terminal an environment describes.
+def look(environment: Mapping[str, str], theme: str = "") -> Look:
+    """Return how to draw on the terminal an environment describes, in a theme where it has colours.
 
     `NO_COLOR` set to anything but nothing turns colours off, as its convention has it.
     """
@@ -51,7 +51,7 @@ def look(environment: Mapping[str, str]) -> Look:
     bare = name.startswith(_BARE)
     colourless = bool(environment.get("NO_COLOR")) or name.startswith(_COLOURLESS)
     glyphs = Glyphs.ASCII if bare or not _speaks_unicode(environment) else Glyphs.BRAILLE
-    return Look(glyphs=glyphs, theme="plain" if colourless else "sixteen" if bare else "dark")
+    return Look(glyphs=glyphs, theme="plain" if colourless else theme or "own")
 
 
 def _speaks_unicode(environment: Mapping[str, str]) -> bool:

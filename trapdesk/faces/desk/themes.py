@@ -1,4 +1,4 @@
-"""The colours of the desk: dark, daylight, the terminal's own sixteen, and none at all."""
+"""The colours of the desk: the terminal's own, dark, daylight, red light, and none at all."""
 
 from __future__ import annotations
 
@@ -12,7 +12,7 @@ _DEFAULT = "ansi_default"
 _BEHIND = {"ansi-background": _DEFAULT, "ansi-foreground": _DEFAULT}
 
 
-def _theme(name: str, colours: str, *, dark: bool = True, ansi: bool = False) -> Theme:
+def _theme(name: str, colours: str, *, dark: bool = True, ansi: bool = False, faint: str = "none") -> Theme:
     values = dict(zip(NAMES, colours.split(), strict=True))
     return Theme(
         name=name,
@@ -24,21 +24,25 @@ def _theme(name: str, colours: str, *, dark: bool = True, ansi: bool = False) ->
         boost=values["ground"],
         dark=dark,
         ansi=ansi,
-        variables=_BEHIND | {f"desk-{key}": value for key, value in values.items()},
+        variables=_BEHIND | {f"desk-{key}": value for key, value in values.items()} | {"desk-faint": faint},
     )
 
 
 THEMES = {
     theme.name: theme
     for theme in (
-        _theme("dark", "#101418 #d8dcd6 #8a949c #8fd0c0 #e0b860 #ff8a70 #8fd0c0"),
-        _theme("daylight", "#ffffff #000000 #4a4a4a #00506a #7a4a00 #a00000 #00506a", dark=False),
+        # Ground and text that the terminal has anyway need no codes: the fewest bytes over a thin line.
         _theme(
-            "sixteen",
+            "own",
             f"{_DEFAULT} {_DEFAULT} {_DEFAULT} ansi_cyan ansi_yellow ansi_bright_red ansi_cyan",
             ansi=True,
+            faint="dim",
         ),
-        _theme("plain", " ".join([_DEFAULT] * len(NAMES)), ansi=True),
+        _theme("dark", "#101418 #d8dcd6 #8a949c #8fd0c0 #e0b860 #ff8a70 #8fd0c0"),
+        _theme("daylight", "#ffffff #000000 #4a4a4a #00506a #7a4a00 #a00000 #00506a", dark=False),
+        # Red alone, and on black: what eyes used to the dark lose least by. Common practice, no source.
+        _theme("red-light", "#000000 #d02010 #8a1408 #ff4030 #ff4030 #ff4030 #8a1408"),
+        _theme("plain", " ".join([_DEFAULT] * len(NAMES)), ansi=True, faint="dim"),
     )
 }
 """Themes by name, in the order in which a key goes through them."""

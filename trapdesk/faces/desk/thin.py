@@ -12,8 +12,14 @@ from typing import Any
 
 from rich.cells import cell_len
 from rich.console import Console
-from textual._compositor import ChopsUpdate, CompositorUpdate, LayoutUpdate
 from textual.strip import Strip
+
+try:
+    from textual._compositor import ChopsUpdate, CompositorUpdate, LayoutUpdate
+except ImportError:  # another version, built otherwise: nothing is recognised
+    CompositorUpdate, UNDERSTOOD = object, ()
+else:
+    UNDERSTOOD = (ChopsUpdate, LayoutUpdate)
 
 Cell = tuple[str, str]
 """What stands in a cell, and the codes of its style; a wide character leaves its second cell empty."""
@@ -62,7 +68,7 @@ class Thin:
         console : Console
             Whose colours the terminal has.
         """
-        if not isinstance(update, ChopsUpdate | LayoutUpdate):
+        if not isinstance(update, UNDERSTOOD):
             self.forget()
             return update
         try:
@@ -139,7 +145,7 @@ def _cells(strip: Strip, console: Console) -> list[Cell]:
     for text, style, control in strip:
         if control:
             continue
-        codes = style._make_ansi_codes(system) if style is not None and system is not None else ""
+        codes = _lean(style._make_ansi_codes(system)) if style is not None and system is not None else ""
         if text.isascii():
             cells += [(character, codes) for character in text]
             continue
@@ -153,6 +159,23 @@ def _cells(strip: Strip, console: Console) -> list[Cell]:
     return cells
 
 
+def _tokens(codes: str) -> Iterator[tuple[str, ...]]:
+    """Yield the codes of a style, those of one colour together."""
+    numbers = iter(codes.split(";") if codes else ())
+    for number in numbers:
+        if number in ("38", "48"):
+            kind = next(numbers, "")
+            yield (number, kind, *(next(numbers, "") for _ in range(3 if kind == "2" else 1)))
+        else:
+            yield (number,)
+
+
+@cache
+def _lean(codes: str) -> str:
+    """Return the codes without those that ask for the terminal's own colours: they are there already."""
+    return ";".join(";".join(token) for token in _tokens(codes) if token not in (("39",), ("49",)))
+
+
 def _blank_from(row: list[Cell | None]) -> int:
     """Return the column from which a row is blank to its edge; its length where that is not worth erasing."""
     x = len(row)
@@ -164,11 +187,8 @@ def _blank_from(row: list[Cell | None]) -> int:
 @cache
 def _unseen(codes: str) -> bool:
     """Return whether a blank of this style looks as if it had none."""
-    numbers = iter(int(code) for code in codes.split(";") if code)
-    for number in numbers:
-        if number == 38:
-            for _ in range(3 if next(numbers) == 2 else 1):
-                next(numbers)
-        elif number in SEEN_ON_BLANKS or 40 <= number <= 48 or 100 <= number <= 107:
+    for token in _tokens(codes):
+        number = int(token[0])
+        if number in SEEN_ON_BLANKS or 40 <= number <= 48 or 100 <= number <= 107:
             return False
     return True

@@ -30,11 +30,12 @@ class Sight:
 
 @dataclass(frozen=True, kw_only=True)
 class View:
-    """A view by its name and the function that makes its lines."""
+    """A view by its name and the function that makes its lines; a `plot` has a readout and can be zoomed."""
 
     name: str
     lines: Callable[[Sight], list[Line]]
     dims: bool = True
+    plot: bool = False
 
 
 class ViewPane(Lines):

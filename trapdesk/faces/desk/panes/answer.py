@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from ....services.figures import Level
+from ....services.figures import Figures, Level
+from ....unit_names import Dimension
+from ....units import show
 from ... import rows as presenter
 from ...layout import GROUPS
 from ..lines import Line, wrapped
@@ -25,7 +27,21 @@ def answer_lines(sight: Sight) -> list[Line]:
     for row in presenter.summary(figures):
         if row.key not in skipped:
             lines += labelled(row.label, row.value, sight.width)
+        if row.key == "antenna.lengths" and sight.session.units != "metric":
+            lines += labelled("", _wires_in(figures, sight.session.units), sight.width)
     return lines
+
+
+def _wires_in(figures: Figures, units: str) -> str:
+    """Return the wires of one side in other units."""
+    lengths = figures.lengths
+    pairs = (("inner", lengths.inner), ("end", lengths.end))
+    shown = [
+        f"{name} {show(length, Dimension.LENGTH, units, resolution=max(lengths.doubt, 1e-3))}"
+        for name, length in pairs
+        if length is not None
+    ]
+    return "that is " + ", ".join(shown)
 
 
 def labelled(label: str, text: str, width: int, style: str = "text") -> list[Line]:

@@ -59,9 +59,12 @@ class DrawersPane(Lines):
         """Whether keys type into the row."""
         return self.typed is not None
 
+    def _form(self) -> dict[str, list[FormRow]]:
+        return form.rows(self.session.design, self.session.figures, self.session.units)
+
     def repaint(self) -> None:
         """Make the rows anew from the session and show them."""
-        drawers = form.rows(self.session.design, self.session.figures)
+        drawers = self._form()
         shown = list(DRAWERS) if self.size.height >= ALL_AT_ONCE else [self.drawer]
         self._rows = [row for name in shown for row in drawers[name]]
         keys = [row.key for row in self._rows if row.key and form.drawer_of(row.key) == self.drawer]
@@ -145,7 +148,7 @@ class DrawersPane(Lines):
 
     def _browse(self, event: Key) -> bool:
         row, name = self.row, event.key
-        steps = {"up": -1, "k": -1, "down": 1, "j": 1}
+        steps = {"up": -1, "down": 1}
         if name in steps:
             self.move(steps[name])
         elif name in ("home", "end"):
@@ -158,7 +161,7 @@ class DrawersPane(Lines):
             self._set(row, form.following_word(row))
         elif name in ("enter", "e"):
             self.edit(Typed(form.starting_text(row), fresh=row.value is SOLVE))
-        elif event.character and event.character in "0123456789.," and not row.words:
+        elif event.character and event.character in "0123456789" and not row.words:
             self.edit(Typed(event.character))
         elif name == "s":
             self._try(row, lambda: form.toggled(self.session.design, row, self.session.figures))
@@ -244,7 +247,7 @@ class DrawersPane(Lines):
         if not keys:
             return
         place = keys.index(self._key) if self._key in keys else 0
-        self._go(keys[max(0, min(len(keys) - 1, place + by))])
+        self._move_to(keys[max(0, min(len(keys) - 1, place + by))])
 
     def turn(self, by: int) -> None:
         """Go to another drawer, to the row that was last under the cursor there."""
@@ -252,14 +255,37 @@ class DrawersPane(Lines):
         self.drawer = names[(names.index(self.drawer) + by) % len(names)]
         self._key = self._last.get(self.drawer, "")
         self.repaint()
-        self._go(self._key)
+        self._move_to(self._key)
 
-    def _go(self, key: str) -> None:
-        self._key = key
-        self.drawer = form.drawer_of(key) or self.drawer
-        self._last[self.drawer] = key
+    def go(self, key: str) -> None:
+        """Put the cursor on the row of a key, or on the first of those that lie below it."""
+        drawers = self._form()
+        keys = [row.key for rows in drawers.values() for row in rows if row.key]
+        below = [one for one in keys if one.startswith(f"{key}.")]
+        # A key of the figures alone, such as a band's, may have no row but those below it.
+        found = [key] if key in keys and form.drawer_of(key) else below
+        if not found:
+            return
+        self._key = found[0]
+        self.drawer = form.drawer_of(self._key)
+        self._last[self.drawer] = self._key
         self.repaint()
+
+    def _move_to(self, key: str) -> None:
+        self.go(key)
         self.post_message(self.Moved())
+
+    def find(self, text: str) -> bool:
+        """Go to the first row that begins with a text, or has it in its name; return whether there is one."""
+        drawers = self._form()
+        rows = [row for drawer in drawers.values() for row in drawer if row.key]
+        wanted = text.strip().lower()
+        begins = [row for row in rows if row.known.label.lower().startswith(wanted)]
+        holds = [row for row in rows if wanted in row.known.label.lower() or wanted in row.key]
+        found = next(iter(begins or holds), None)
+        if found is not None and wanted:
+            self.go(found.key)
+        return found is not None
 
     def on_click(self, event: Click) -> None:
         """Put the cursor where the mouse points; a second click edits."""
@@ -275,7 +301,7 @@ class DrawersPane(Lines):
         if row.key == self._key and event.chain > 1 and not row.words:
             self.edit(Typed(form.starting_text(row)))
         else:
-            self._go(row.key)
+            self._move_to(row.key)
 
     def _pick(self, x: int) -> None:
         """Open the drawer whose name is at a column of the first line."""

@@ -19,11 +19,15 @@ from .answer import MARKS, STYLES
 # What a key does, the most needed first: the last ones go when there is no room.
 BROWSING = (
     ("Enter", "edit"), ("?", "help"), ("q", "quit"), ("v", "view"), ("Tab", "drawer"), ("w", "write"),
-    ("u", "undo"), ("+-", "nudge"), ("arrows", "rows"), ("U", "redo"), ("PgDn", "scroll"), ("t", "colours"),
+    ("u", "undo"), ("+-", "nudge"), ("g", "go to finding"), ("c", "cure"), ("/", "find"), ("k", "keep"),
+    ("o", "open"), ("n", "new"), ("arrows", "rows"), ("U", "redo"), ("PgDn", "scroll"), ("t", "colours"),
 )  # fmt: skip
 EDITING = (("Enter", "keeps"), ("Esc", "restores"), ("Ctrl+U", "clears"))
 
 ANSWERING = (("Enter", "answers"), ("Esc", "leaves it"))
+PLOTTING = (("left right", "readout"), ("z", "zoom"))
+"""What the keys also do while a plot is in sight."""
+SOLVE_ROOM = len("s solve it")
 
 
 class Heading(Lines):
@@ -34,6 +38,8 @@ class Heading(Lines):
         width, height, figures = self.size.width, self.size.height, session.figures
         state = "no answer" if session.no_answer else "solving" if session.solving else ""
         star = " (unsaved)" if session.unsaved else ""
+        if session.unsafe:
+            star += " (no journal)"
         about = _summary(figures) if figures is not None else {}
         room = width - len(state) - 1 if state else width
         basis = "" if session.stale else f": {words.ESTIMATE}"
@@ -54,17 +60,28 @@ class Foot(Lines):
         super().__init__(id=id)
         self.note = ""
         self.refused = False
+        self.plotting = False
         self._asking = ""
         self._typed: Typed | None = None
         self._answer: Callable[[str], None] | None = None
+        self._live: Callable[[str], object] | None = None
 
     def say(self, text: str, refused: bool = False) -> None:
         """Set the note, shown until the next thing is said."""
         self.note, self.refused = text, refused
 
-    def ask(self, question: str, answer: Callable[[str], None], text: str | None = None) -> None:
-        """Ask in one line: with a text, for a line that Enter gives; without, for a single key."""
-        self._asking, self._answer = question, answer
+    def ask(
+        self,
+        question: str,
+        answer: Callable[[str], None],
+        text: str | None = None,
+        live: Callable[[str], object] | None = None,
+    ) -> None:
+        """Ask in one line: with a text, for a line that Enter gives; without, for a single key.
+
+        `live` is told the text whenever it changes.
+        """
+        self._asking, self._answer, self._live = question, answer, live
         self._typed = None if text is None else Typed(text)
 
     @property
@@ -88,13 +105,15 @@ class Foot(Lines):
         elif event.key == "enter":
             text = self._typed.text.strip()
             self._close()(text)
-        else:
-            self._typed.key(event)
+        elif self._typed.key(event) and self._live is not None:
+            self._live(self._typed.text)
 
     def paste(self, text: str) -> None:
         """Type what is pasted."""
         if self._typed is not None:
             self._typed.insert(text)
+            if self._live is not None:
+                self._live(self._typed.text)
 
     def repaint(self, session: Session, row: FormRow | None, editing: bool) -> None:
         """Show worst finding, next move, note and keys in as many lines as there are."""
@@ -108,7 +127,8 @@ class Foot(Lines):
         worst = _cut(worst, min(share, 2), width)
         following = _cut(following, room - len(worst), width) if room > len(worst) else []
         blank: list[Line] = [[] for _ in range(height - 1 - len(worst) - len(following) - len(note))]
-        keys = ANSWERING if self.asking else EDITING if editing else BROWSING
+        browsing = (*BROWSING[:3], *PLOTTING, *BROWSING[3:]) if self.plotting else BROWSING
+        keys = ANSWERING if self.asking else EDITING if editing else browsing
         self.show([*worst, *following, *blank, *note, keys_line(keys, row, editing or self.asking, width)])
 
     def _worst(self, session: Session, width: int) -> list[Line]:
@@ -158,14 +178,21 @@ def _cut(lines: list[Line], most: int, width: int) -> list[Line]:
 
 
 def keys_line(keys: tuple[tuple[str, str], ...], row: FormRow | None, busy: bool, width: int) -> Line:
-    """Return what the keys do just now, as many as fit."""
+    """Return what the keys do just now, as many as fit; what changes with the row stands at the right.
+
+    So little changes from row to row that little goes down a thin line.
+    """
+    solve = ""
     if not busy and row is not None:
-        first = ("Enter", "next word") if row.words else keys[0]
-        solve = (("s", "set it" if row.found and not row.unset else "solve it"),) if row.solvable else ()
-        keys = (first, *solve, *keys[1:])
+        keys = (("Enter", "next word" if row.words else "edit     "), *keys[1:])
+        solve = f"s {'set it' if row.found and not row.unset else 'solve it'}" if row.solvable else ""
+    room = width if busy else width - SOLVE_ROOM
     line: list[tuple[str, str]] = []
     for key, does in keys:
         piece = [(key, "head"), (f" {does}  ", "quiet")]
-        if width_of([*line, *piece]) - 2 <= width:
+        if width_of([*line, *piece]) - 2 <= room:
             line += piece
+    if solve and room > 0:
+        gap = " " * (width - width_of(line) - SOLVE_ROOM)
+        line += [(gap, "quiet"), (solve[:1], "head"), (solve[1:], "quiet")]
     return line
