@@ -4,26 +4,82 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from .lines import Line
+from .lines import Line, Piece, padded, width_of
+from .panes import told
 from .panes.answer import answer_lines, figures_lines
+from .panes.box import KEYS as BOX_KEYS
+from .panes.box import box_lines, box_picked, box_press, box_told
+from .panes.chances import chances_lines
 from .panes.curves import feed_lines, swr_lines, trap_lines
 from .panes.findings import findings_lines
 from .panes.help import help_lines
+from .panes.jobs import CHOICES, FULL_TOLERANCE, RUMMAGE, SHEET_TOLERANCE, TOLERANCE, TUNER
+from .panes.measured import KEYS as READING_KEYS
+from .panes.measured import READINGS, measured_lines, measured_press, measured_told
+from .panes.quick import KEYS as SUM_KEYS
+from .panes.quick import SUM, quick_lines, quick_press, quick_told
+from .panes.texts import text_view
 from .view import TALL, View
 
 LEAST_WIDTH, LEAST_HEIGHT = 40, 12
+ROOMY = 117
+"""Width from which a text of the command line stands whole beside the inputs."""
 
-INPUTS = View(name="inputs", lines=lambda sight: [])
-ANSWER = View(name="answer", lines=answer_lines)
-FINDINGS = View(name="findings", lines=findings_lines)
+INPUTS = View(name="inputs", lines=lambda sight: [], letter="I")
+ANSWER = View(name="answer", lines=answer_lines, letter="A", told=told.numbers_told)
+FINDINGS = View(name="findings", lines=findings_lines, letter="F")
+CHANCES = View(name="yield", lines=chances_lines, letter="Y", jobs=(TOLERANCE,))
 HELP = View(name="help", lines=help_lines, dims=False)
 VIEWS = (
     ANSWER,
-    View(name="SWR", lines=swr_lines, plot=True),
-    View(name="z", lines=feed_lines, plot=True),
-    View(name="trap", lines=trap_lines, plot=True),
+    View(name="SWR", lines=swr_lines, letter="S", plot=True, told=told.feed_told, ending=".s1p"),
+    View(name="z", lines=feed_lines, letter="Z", plot=True, told=told.feed_told, ending=".s1p"),
+    View(name="trap", lines=trap_lines, letter="T", plot=True),
+    CHANCES,
     FINDINGS,
-    View(name="figures", lines=figures_lines),
+    View(name="numbers", lines=figures_lines, letter="N", told=told.numbers_told),
+    text_view(
+        "reasons", "R", told.causes_told, (FULL_TOLERANCE,), "what the yield hangs on, what would help"
+    ),
+    text_view("choices", "C", told.choices_told, (CHOICES,), "other resonances of the trap, other L to C"),
+    View(
+        name="box",
+        letter="B",
+        lines=box_lines,
+        broad=True,
+        jobs=(RUMMAGE,),
+        told=box_told,
+        keys=BOX_KEYS,
+        about="traps that can be built from a box of parts, the best first",
+        press=box_press,
+        picked=box_picked,
+    ),
+    text_view("down", "D", told.down_told, (TUNER,), "from wire to transmitter: is a tuner worth it"),
+    text_view("loads", "L", told.loads_told, (TUNER,), "what the tuner can reach, and its settings"),
+    View(
+        name="measured",
+        letter="M",
+        lines=measured_lines,
+        broad=True,
+        jobs=(READINGS,),
+        told=measured_told,
+        keys=READING_KEYS,
+        about="type what was measured, see what it comes to, keep it",
+        press=measured_press,
+    ),
+    text_view("paper", "P", told.sheet_told, (SHEET_TOLERANCE,), "the build sheet"),
+    text_view("hill", "H", told.card_told, (SHEET_TOLERANCE,), "the card to carry to the halyard"),
+    View(
+        name="quick sums",
+        letter="Q",
+        lines=quick_lines,
+        broad=True,
+        jobs=(SUM,),
+        told=quick_told,
+        keys=SUM_KEYS,
+        about="a resonator, a match or a line of your own",
+        press=quick_press,
+    ),
 )
 """The views of the desk, in the order in which a key goes through them."""
 
@@ -33,7 +89,8 @@ class Arrangement:
     """What a size of the screen allows.
 
     `small`: nothing. `short`: heading and foot of few lines. `thin`: one pane at a time. `wide`: findings in
-    a column of their own. `tall`: the answer in a pane of its own above the views.
+    a column of their own. `tall`: the answer in a pane of its own above the views. `roomy`: a broad text
+    beside the inputs.
     """
 
     small: bool
@@ -41,6 +98,7 @@ class Arrangement:
     thin: bool
     wide: bool
     tall: bool
+    roomy: bool
 
     @property
     def cycle(self) -> tuple[View, ...]:
@@ -48,6 +106,7 @@ class Arrangement:
         if self.thin:
             return (INPUTS, *VIEWS)
         own = ((ANSWER,) if self.tall else ()) + ((FINDINGS,) if self.wide else ())
+        own += (CHANCES,) if self.tall and self.wide else ()
         return tuple(view for view in VIEWS if view not in own)
 
 
@@ -60,15 +119,34 @@ def arrangement(width: int, height: int) -> Arrangement:
         thin=thin,
         wide=width >= 110,
         tall=height >= 36 and not thin,
+        roomy=width >= ROOMY,
     )
 
 
-def names(cycle: tuple[View, ...], here: View, width: int) -> Line:
-    """Return the names of the views, the present one in brackets; it alone where there is no room."""
+def names(cycle: tuple[View, ...], here: View, width: int, busy: str = "") -> Line:
+    """Return the names of the views by their letters, the present one in brackets, and what is being done.
+
+    Where there is no room for all, the others are letters alone.
+    """
     shown = cycle if here in cycle else (here,)
-    if sum(len(view.name) + 2 for view in shown) > width:
-        shown = (here,)
-    return [
-        (f"[{view.name}]" if view is here else f" {view.name} ", "picked" if view is here else "quiet")
-        for view in shown
-    ]
+    for pieces in ([_name(view, here, whole) for view in shown] for whole in (True, False)):
+        line = [piece for name in pieces for piece in name]
+        if width_of(line) <= width:
+            break
+    else:
+        line = _name(here, here, True)
+    free = width - width_of(line) - 1
+    if busy and free >= _LEAST_BUSY:
+        line.append((" " + padded(busy, free).rstrip(), "watch"))
+    return line
+
+
+_LEAST_BUSY = 12
+
+
+def _name(view: View, here: View, whole: bool) -> list[Piece]:
+    """Return a view's name with its letter as a capital."""
+    if view is here:
+        return [(f"[{view.name}]", "picked")]
+    rest = view.name[1:] if whole else ""
+    return [((" " if whole else "") + view.letter, "head"), (rest + " ", "quiet")]

@@ -90,7 +90,8 @@ class Aside:
     def fresh(self, job: Job) -> bool:
         """Return whether what a job found last belongs to the present design."""
         known = self._known.get(job.name)
-        return known is not None and known.token == self._token(job) and not self._session.stale
+        stale = job.needs_figures and self._session.stale
+        return known is not None and known.token == self._token(job) and not stale
 
     def running(self, name: str) -> bool:
         """Return whether a job is at work."""

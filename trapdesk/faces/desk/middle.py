@@ -2,15 +2,26 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 from textual.app import ComposeResult
 from textual.containers import Container
 from textual.events import Key
 
-from .arrange import ANSWER, FINDINGS, HELP, INPUTS, Arrangement, arrangement, names
+from ... import sweep_files
+from ...errors import TrapdeskError, visible
+from .arrange import ANSWER, CHANCES, FINDINGS, HELP, INPUTS, VIEWS, Arrangement, arrangement, names
+from .filing import Asker
 from .panes.drawers import DrawersPane
+from .panes.frame import Foot
+from .panes.jobs import TOLERANCE
 from .session import Session
 from .terminal import Look
 from .view import View, ViewPane
+
+LETTERS = {view.letter: view for view in (INPUTS, *VIEWS)}
+SIDEWAYS = 8
+_OF_INPUTS = frozenset("0123456789+=-es ")
 
 
 class Middle(Container):
@@ -18,79 +29,235 @@ class Middle(Container):
 
     def __init__(self, session: Session, drawn: Look, *, id: str) -> None:
         super().__init__(id=id)
-        self._session = session
+        self.session = session
         self._drawn = drawn
         self.arranged: Arrangement = arrangement(80, 24)
         self.shown: View = ANSWER
         self.helping = False
+        self._before: View = ANSWER
+        self._hold = False
 
     def compose(self) -> ComposeResult:
         """Lay the panes out; the style sheet hides those a size has no room for."""
-        yield DrawersPane(self._session, id="drawers")
+        yield DrawersPane(self.session, id="drawers")
         with Container(id="centre"):
             yield ViewPane(id="answer")
             yield ViewPane(id="below")
-        yield ViewPane(id="side")
+        with Container(id="right"):
+            yield ViewPane(id="side")
+            yield ViewPane(id="chances")
 
     def _pane(self, name: str) -> ViewPane:
         return self.query_one(f"#{name}", ViewPane)
 
+    @property
+    def _drawers(self) -> DrawersPane:
+        return self.query_one(DrawersPane)
+
+    @property
+    def _broad(self) -> bool:
+        """Whether the view takes the room of the panes beside it."""
+        return self.shown.broad and not self.arranged.thin and (not self.helping or self.arranged.wide)
+
+    @property
+    def _beside(self) -> bool:
+        """Whether findings, or help in their place, have a pane of their own just now."""
+        return self.arranged.wide and not self._broad
+
+    @property
+    def _covering(self) -> bool:
+        """Whether the inputs are hidden."""
+        return self.shown is not INPUTS if self.arranged.thin else self._broad and not self.arranged.roomy
+
+    @property
+    def held(self) -> bool:
+        """Whether keys are for the view first."""
+        return self._covering or (self._broad and self._hold)
+
+    @property
+    def _turning(self) -> ViewPane:
+        return self._pane("below" if self.arranged.tall else "answer")
+
     def repaint(self) -> None:
-        """Hand the session to every pane."""
+        """Hand the session to every pane, and have worked out what they lack."""
         arranged = self.arranged
         if self.shown not in arranged.cycle:
             self.shown = arranged.cycle[0]
-        helping = self.helping and not arranged.wide
+        helping = self.helping and not self._beside
         inputs = arranged.thin and self.shown is INPUTS and not helping
         for name in ("small", "short", "thin", "wide", "tall"):
             self.screen.set_class(getattr(arranged, name), name)
         self.screen.set_class(inputs, "inputs")
         self.screen.set_class(arranged.thin and not inputs, "views")
-        drawers = self.query_one(DrawersPane)
+        self.screen.set_class(self._broad, "broad")
+        self.screen.set_class(self._covering and not arranged.thin, "cover")
+        drawers = self._drawers
         drawers.repaint()
-        answer, below, side = (self._pane(name) for name in ("answer", "below", "side"))
-        for pane in (answer, below, side):
-            pane.edge = "" if arranged.thin else self._drawn.upright
-        given = (self._session, drawers.row, self._drawn)
-        if arranged.tall:
-            answer.update_view(*given, ANSWER, [(ANSWER.name, "picked")])
+        for name in ("answer", "below", "side", "chances"):
+            self._pane(name).edge = "" if arranged.thin or self._covering else self._drawn.upright
+        self.session.aside.want(self.app, dict.fromkeys((TOLERANCE, *self.shown.jobs)), self._found)
+        given = (self.session, drawers.row, self._drawn)
+        if arranged.tall and not self._broad:
+            self._pane("answer").update_view(*given, ANSWER, [(ANSWER.name, "picked")])
         if not inputs:
-            view, turning = HELP if helping else self.shown, below if arranged.tall else answer
-            turning.update_view(*given, view, names(arranged.cycle, view, turning.room))
-        if arranged.wide:
-            beside = HELP if self.helping else FINDINGS
-            side.update_view(*given, beside, [(beside.name, "picked")])
+            view, turning = HELP if helping else self.shown, self._turning
+            turning.update_view(*given, view, names(arranged.cycle, view, turning.room, self._busy()))
+        if self._beside:
+            view = HELP if self.helping else FINDINGS
+            self._pane("side").update_view(*given, view, [(view.name, "picked")])
+            if arranged.tall:
+                self._pane("chances").update_view(*given, CHANCES, [(CHANCES.name, "picked")])
+        foot = self.screen.query_one(Foot)
+        foot.offered = self.shown.keys or VIEWING if self.held and not helping else ()
+        foot.about = self.shown.about
+
+    def _busy(self) -> str:
+        """Return how far the work for the view is."""
+        aside = self.session.aside
+        return aside.progress if any(aside.running(job.name) for job in self.shown.jobs) else ""
+
+    def _found(self) -> None:
+        """Show what was worked out aside."""
+        self.repaint()
+        drawers = self._drawers
+        self.screen.query_one(Foot).repaint(self.session, drawers.row, drawers.editing)
 
     def key(self, event: Key) -> bool:
         """Do what a key asks of the view, and return whether it asks anything."""
-        return False
+        character = event.character or ""
+        if self._drawers.editing:
+            return False
+        if view := LETTERS.get(character):
+            self._show(view)
+        elif character == "x" and self.shown.told is not None and not self.helping:
+            self._export(self.shown)
+        elif not self.held or self.helping:
+            return False
+        elif self.shown.press is not None and self.shown.press(event.key, self):
+            self._found()
+        else:
+            return self._browse(event.key, character)
+        return True
+
+    def _browse(self, key: str, character: str) -> bool:
+        """Scroll, or go back to the inputs; return whether a key asks that."""
+        scrolls = {"up": -1, "down": 1, "home": -9999, "end": 9999}
+        slides = {"left": -SIDEWAYS, "right": SIDEWAYS}
+        if key in scrolls:
+            self._turning.scroll_lines(scrolls[key])
+        elif key in slides and self.shown.broad:
+            self._turning.slide(slides[key])
+            self.repaint()
+        elif key in ("escape", "tab", "shift+tab"):
+            self._leave()
+        elif key == "enter" or (character and character in _OF_INPUTS):
+            self.say("Tab goes to the inputs")
+        else:
+            return False
+        return True
+
+    def _show(self, view: View) -> None:
+        """Show a view; one with a pane of its own is there once nothing hides it."""
+        self.helping = False
+        if view in self.arranged.cycle:
+            self._go(view)
+        elif self._broad:
+            self._go(self._before)
+        else:
+            self.repaint()
+        self._found()
+
+    def _go(self, view: View) -> None:
+        if not self.shown.broad:
+            self._before = self.shown
+        self.shown, self._hold = view, view.broad
+
+    def _leave(self) -> None:
+        """Give the keys back to the inputs, in sight again."""
+        if self.arranged.thin:
+            self._go(INPUTS)
+        elif self._covering:
+            self._go(self._before)
+        else:
+            self._hold = False
+        self.say("")
+        self._found()
+
+    def _export(self, view: View) -> None:
+        """Ask for the name of a file and write there what a view tells."""
+        assert view.told is not None
+        texts = view.told(self.session)
+        if not texts:
+            self.say("there is nothing to write yet", refused=True)
+            return
+
+        def write(given: str) -> None:
+            if not given:
+                self.say("nothing was written")
+                return
+            # What is not plain ASCII is written as the command line writes it.
+            data = "".join(f"{text.rstrip()}\n" for text in texts).encode("ascii", "backslashreplace")
+            try:
+                sweep_files.write_new(given, data.decode("ascii"))
+            except TrapdeskError as error:
+                self.say("; ".join(str(error).splitlines()), refused=True)
+                return
+            self.say(f"written to {visible(given, 60)}")
+
+        self.ask(f"write {view.name} to", write, view.name.partition(" ")[0] + view.ending)
+
+    @property
+    def _asker(self) -> Asker:
+        return self.app  # type: ignore[return-value] - the desk is one
+
+    def ask(self, question: str, answer: Callable[[str], None], text: str | None = None) -> None:
+        """Ask in the foot for a line, or for a single key when there is no text to start from."""
+        self._asker.ask(question, answer, text)
+
+    def say(self, text: str, refused: bool = False) -> None:
+        """Show a note."""
+        self._asker.say(text, refused)
+
+    def changed(self) -> None:
+        """Have the design solved that an edit made."""
+        self._drawers.post_message(DrawersPane.Changed())
+
+    def show_again(self) -> None:
+        """Draw the views anew."""
+        self._found()
 
     def turn(self, by: int) -> None:
         """Show another view; help that stands in its place goes first."""
         cycle = self.arranged.cycle
-        if self.helping and not self.arranged.wide:
+        if self.helping and not self._beside:
             self.helping = False
         else:
-            self.shown = cycle[(cycle.index(self.shown) + by) % len(cycle)]
-        self.repaint()
+            self._go(cycle[(cycle.index(self.shown) + by) % len(cycle)])
+        self._found()
 
     @property
     def plotting(self) -> bool:
         """Whether the view in sight is a plot."""
-        return self.shown.plot and not (self.helping and not self.arranged.wide)
+        return self.shown.plot and not (self.helping and not self._beside)
 
     def move_cursor(self, steps: int) -> None:
         """Move the readout along the plots by so many columns; the first step puts it in the middle."""
         if not self.plotting:
             return
-        pane = self._pane("below" if self.arranged.tall else "answer")
+        pane = self._turning
         step = 1.0 / max(8, pane.room - 7)
-        here = self._session.cursor
-        self._session.cursor = 0.5 if here is None else min(1.0, max(0.0, here + steps * step))
+        here = self.session.cursor
+        self.session.cursor = 0.5 if here is None else min(1.0, max(0.0, here + steps * step))
         self.repaint()
 
     def scroll_view(self, pages: int) -> None:
         """Scroll the view, or help where that has a pane of its own."""
-        beside = self.helping and self.arranged.wide
-        pane = self._pane("side" if beside else "below" if self.arranged.tall else "answer")
+        pane = self._pane("side") if self.helping and self._beside else self._turning
         pane.scroll_lines(pages * max(1, pane.size.height - 2))
+
+
+VIEWING = (
+    ("Tab", "inputs"), ("v", "view"), ("arrows", "scroll"), ("?", "help"), ("x", "write to a file"),
+    ("q", "quit"),
+)  # fmt: skip
+"""What keys do in a view that hides the inputs, the most needed first."""

@@ -15,6 +15,8 @@ from ..lines import Line, Lines, padded, width_of, wrapped
 from ..session import Session
 from ..typed import Typed
 from .answer import MARKS, STYLES
+from .chances import chances_line
+from .jobs import TOLERANCE
 
 # What a key does, the most needed first: the last ones go when there is no room.
 BROWSING = (
@@ -54,12 +56,17 @@ class Heading(Lines):
 
 
 class Foot(Lines):
-    """The worst finding and its cure, the next move, a note, the keys; and questions in a line."""
+    """The worst finding and its cure, the yield, the next move, a note, the keys; and questions in a line.
+
+    `offered` are the keys of a view that has them first, and `about` what it is.
+    """
 
     def __init__(self, *, id: str) -> None:
         super().__init__(id=id)
         self.note = ""
         self.refused = False
+        self.offered: tuple[tuple[str, str], ...] = ()
+        self.about = ""
         self.plotting = False
         self._asking = ""
         self._typed: Typed | None = None
@@ -116,20 +123,30 @@ class Foot(Lines):
                 self._live(self._typed.text)
 
     def repaint(self, session: Session, row: FormRow | None, editing: bool) -> None:
-        """Show worst finding, next move, note and keys in as many lines as there are."""
+        """Show worst finding, yield, next move, note and keys in as many lines as there are."""
         width, height = self.size.width, self.size.height
+        row = None if self.offered else row
         note = self._note(row, width, 2 if height > 3 else 1)
         room = height - 1 - len(note)
-        worst = self._worst(session, width)
-        following = self._next(session, width)
+        chances = self._chances(session, width) if room >= 3 else []
         # The worst finding always has a line; what is left goes to its cure, then to the next move.
-        share = max(1, room - (1 if height > 3 else 0))
-        worst = _cut(worst, min(share, 2), width)
-        following = _cut(following, room - len(worst), width) if room > len(worst) else []
-        blank: list[Line] = [[] for _ in range(height - 1 - len(worst) - len(following) - len(note))]
+        share = max(1, room - len(chances) - (1 if height > 3 else 0))
+        worst = _cut(self._worst(session, width), min(share, 2), width)
+        left = room - len(worst) - len(chances)
+        following = _cut(self._next(session, width), left, width) if left > 0 else []
+        blank: list[Line] = [[] for _ in range(left - len(following))]
+        busy = editing or self.asking
         browsing = (*BROWSING[:3], *PLOTTING, *BROWSING[3:]) if self.plotting else BROWSING
-        keys = ANSWERING if self.asking else EDITING if editing else browsing
-        self.show([*worst, *following, *blank, *note, keys_line(keys, row, editing or self.asking, width)])
+        keys = ANSWERING if self.asking else EDITING if editing else self.offered or browsing
+        line = keys_line(keys, row, busy or bool(self.offered), width)
+        self.show([*worst, *chances, *following, *blank, *note, line])
+
+    def _chances(self, session: Session, width: int) -> list[Line]:
+        """Return the yield in a line."""
+        if session.figures is None:
+            return []
+        style = "text" if session.aside.fresh(TOLERANCE) else "quiet"
+        return [[(padded(chances_line(session, width), width).rstrip(), style)]]
 
     def _worst(self, session: Session, width: int) -> list[Line]:
         if session.no_answer:
@@ -160,7 +177,7 @@ class Foot(Lines):
             text = f"! {self.note}" if self.refused else self.note
             return _cut([[(piece, style)] for piece in wrapped(text, width, 2)], most, width)
         if row is None:
-            return [[]]
+            return [[(padded(self.about, width).rstrip(), "quiet")]]
         text = "one of " + ", ".join(row.words) + ". " + row.known.help if row.words else row.known.help
         return _cut([[(piece, "quiet")] for piece in wrapped(text, width)], 1, width)
 

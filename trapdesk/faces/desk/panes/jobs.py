@@ -1,0 +1,115 @@
+"""What the views have worked out aside, each with the same calls as its verb on the command line."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+from ....box import Box
+from ..aside import Job, Task
+
+if TYPE_CHECKING:
+    from ....services.advice import Advice
+    from ....services.rummage import Found
+    from ....services.tolerance import Tolerance
+
+QUICK, SHEET, FULL = 1000, 2000, 10_000
+"""Trials after each edit, those of the sheet, and those of the verb unless it is told otherwise."""
+ROWS = 20
+
+
+def _trials(task: Task, count: int, ensemble: Any = None) -> Tolerance:
+    from ....services.tolerance import tolerance
+
+    assert task.figures is not None
+
+    def progress(done: int, trials: int) -> bool:
+        task.tell(f"{done} of {trials} trials")
+        return not task.stopped()
+
+    return tolerance(task.figures, trials=count, progress=progress, ensemble=ensemble)
+
+
+def _quick(task: Task) -> Iterator[Tolerance]:
+    yield _trials(task, QUICK)
+
+
+def _for_sheet(task: Task) -> Iterator[Tolerance]:
+    yield _trials(task, SHEET)
+
+
+def _full(task: Task) -> Iterator[tuple[Tolerance, Advice]]:
+    """Yield few trials first, then as many as the verb takes."""
+    from ....services import advice
+    from ....services.ensemble import Ensemble
+
+    assert task.figures is not None
+    ensemble = Ensemble(task.figures)
+    for count in (QUICK, FULL):
+        found = _trials(task, count, ensemble)
+        if task.stopped():
+            return
+        task.tell("what would help")
+        yield found, advice.advise(ensemble, trials=min(found.trials, advice.TRIALS), seed=found.seed)
+
+
+def _choices(task: Task) -> Iterator[Any]:
+    from ....services.choices import choices
+
+    yield choices(task.design)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Rummaged:
+    """What a rummage found so far in which box, and what is wrong in the box."""
+
+    box: Box
+    found: Found
+    fault: str
+
+
+def _rummage(task: Task) -> Iterator[Rummaged]:
+    from .... import box_read
+    from ....services.rummage import rummage
+
+    fault = ""
+    try:
+        box = box_read.find_box(task.asked or box_read.READY_BOX)
+    except box_read.BoxFault as error:
+        if error.box.is_empty:
+            raise
+        box, fault = error.box, str(error)
+    for found in rummage(task.design, box, ROWS):
+        task.tell(f"{found.done} of {found.total} looked into")
+        yield Rummaged(box=box, found=found, fault=fault)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Fed:
+    """Settings and map of the tuner by band, and the table of ways."""
+
+    answers: dict[str, Any]
+    maps: dict[str, Any]
+    table: Any
+
+
+def _tuner(task: Task) -> Iterator[Fed]:
+    from ....services.reach import reach_map, tuner_answer
+    from ....services.worth import worth
+
+    figures = task.figures
+    assert figures is not None
+    yield Fed(
+        answers={role: tuner_answer(figures, role) for role in figures.bands},
+        maps={role: reach_map(figures, role) for role in figures.bands},
+        table=worth(figures),
+    )
+
+
+TOLERANCE = Job(name="tolerance", work=_quick)
+FULL_TOLERANCE = Job(name="full tolerance", work=_full)
+SHEET_TOLERANCE = Job(name="sheet", work=_for_sheet)
+CHOICES = Job(name="choices", work=_choices, needs_figures=False)
+RUMMAGE = Job(name="rummage", work=_rummage, asked=lambda aside: aside.box, needs_figures=False)
+TUNER = Job(name="tuner", work=_tuner)
