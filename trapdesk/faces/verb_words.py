@@ -57,5 +57,5 @@ still be moved afterwards.
   turns         or, to have them solved: the L it shall have, or the C it shall
                 resonate with; turns of cable are solved for f alone
   and what it is made from, as in a design's table [antenna.trap.coil]:
-  former wire pitch length insulation lead material; cable former tail terminals;
-  inductance_index outer inner height wire"""
+  former wire pitch length insulation lead material;
+  cable former tail terminals; inductance_index outer inner height wire"""

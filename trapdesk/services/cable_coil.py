@@ -85,11 +85,10 @@ class CableNetwork:
 
     def shorter(self, step: float) -> CableNetwork:
         """Return the trap with as much less cable as moves its resonance by this part of itself."""
-        changed = self
-        wanted = self.resonance * (1 + step)
-        for _ in range(4):
-            changed = replace(changed, length=changed.length * (changed.resonance / wanted) ** 2)
-        return changed
+        # The condition of `cable_trap_resonance`, solved for the length.
+        w = 2 * math.pi * self.resonance * (1 + step)
+        left = 1 / (w * self.inductance) - w * self.own
+        return replace(self, length=math.atan(left * self.line.z0) / w * float(self.line.velocity))
 
     def by_length(self, change: float) -> float:
         """Return how far the resonance moves when the cable is cut by a length, in Hz."""
