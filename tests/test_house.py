@@ -60,7 +60,7 @@ SEES = {
 }
 # Only what computes or declares: nothing that reads, writes or keeps time.
 ENGINE_MAY = set(
-    "__future__ collections.abc dataclasses enum functools itertools math numpy types typing".split()
+    "__future__ collections.abc copy dataclasses enum functools itertools math numpy types typing".split()
 )
 SERVICES_MAY_NOT = {"time", "datetime", "random"}
 OUTSIDERS = {
