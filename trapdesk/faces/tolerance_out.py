@@ -93,8 +93,15 @@ def chance(within: Yield) -> str:
     digits = 0 if high - low >= 1 and 2 <= low and high <= 98 else 1
     if high < 0.1 or low > 99.9:
         digits = 2
-    ends = (f"{end:.{0 if end in (0.0, 100.0) else digits}f}" for end in (low, high))
-    return f"{percent(within.share)} ({'-'.join(ends)})"
+    return f"{percent(within.share)} ({_end(low, digits)}-{_end(high, digits)})"
+
+
+def _end(value: float, digits: int) -> str:
+    """Return an end of an interval; nothing and all only where they are meant."""
+    if value in (0.0, 100.0):
+        return f"{value:.0f}"
+    step = 10.0**-digits
+    return f"{min(max(value, 0.0), 100.0 - step) if value > 99 else value:.{digits}f}"
 
 
 def trials_line(found: Tolerance) -> str:
@@ -152,13 +159,13 @@ def yields(found: Tolerance) -> list[str]:
     bands = next(iter(found.stages.values())).bands
     which = "the whole wanted part" if len(bands) == 1 else "the whole wanted parts of both bands"
     out = folded("", f"Of 100 antennas, how many keep SWR {limit:.3g} over {which}")
-    names = "".join(f"{visible(band.name, 12):>20}" for band in bands.values())
-    all_bands = "" if len(bands) == 1 else f"{'both':>20}"
-    out += [f"  {'':<15}{all_bands}{names}"]
+    names = "".join(f"{visible(band.name, 12):>21}" for band in bands.values())
+    all_bands = "" if len(bands) == 1 else f"{'both':>21}"
+    out += [f"  {'':<14}{all_bands}{names}"]
     for name, stage in found.stages.items():
         cells = [] if len(bands) == 1 else [chance(stage.within)]
         cells += [chance(band.within) for band in stage.bands.values()]
-        out += [f"  {STAGES[name]:<15}" + "".join(f"{cell:>20}" for cell in cells)]
+        out += [f"  {STAGES[name]:<14}" + "".join(f"{cell:>21}" for cell in cells)]
     out += folded("  ", "In brackets: between these it lies 95 times of 100; more trials narrow it.")
     for name, text in STAGE_HELP.items():
         out += folded(f"  {STAGES[name] + ':':<16} ", text)

@@ -16,6 +16,7 @@ from ...rules import trap_unknowns
 from ...services.figures import Figures
 from ...units import Dimension, read, show, to_text
 from .. import rows as presenter
+from .optional import ADDED, PARTS, put_part
 
 DRAWERS: dict[str, tuple[str, ...]] = {
     "Site": ("title", "site."),
@@ -23,6 +24,8 @@ DRAWERS: dict[str, tuple[str, ...]] = {
     "Trap": ("antenna.trap",),
     "Wire": ("antenna.wire.", "antenna.lengths."),
     "Feed": ("station.",),
+    "Tuner": ("station.tuner", "station.transmitter"),
+    "Doubts": ("doubts.",),
 }
 """Drawers and the beginnings of the keys that lie in them."""
 
@@ -46,11 +49,15 @@ UNSET = {
     "site.soil": UNKNOWN,
     "site.conductivity": "by class",
     "site.permittivity": "by class",
+    "z0": "by type",
+    "velocity_factor": "by type",
+    "wet_loss": "by type",
+    "wet_slower": "by type",
 }
 _NO = "none"
 _ONLY_WORDS = ("text", "choice")
 _MEASURED = frozenset(str(dimension) for dimension in Dimension)
-_YES = {"antenna.trap": "fitted", "bands.upper": "wanted"}
+_YES = {"antenna.trap": "fitted", "bands.upper": "wanted"} | dict.fromkeys(PARTS, ADDED)
 _STARTING_ANGLE = math.radians(120)
 _UPPER = Band(name="20 m", low=14.0e6, high=14.35e6)
 
@@ -80,7 +87,8 @@ class FormRow:
 
 def drawer_of(key: str) -> str:
     """Return the drawer a key lies in; empty for one that has none."""
-    return next((name for name, heads in DRAWERS.items() if key.startswith(heads)), "")
+    heads = [(len(head), name) for name, begins in DRAWERS.items() for head in begins if key.startswith(head)]
+    return max(heads)[1] if heads else ""
 
 
 def rows(design: Design, figures: Figures | None, units: str = "metric") -> dict[str, list[FormRow]]:
@@ -155,8 +163,12 @@ def _row(design: Design, key: str, known: Declared, value: Any, answer: str) -> 
     if value is not None:
         text = presenter.given(design, key)
         return FormRow(key=key, known=known, value=value, text=text, words=words)
-    text = answer or UNSET.get(key) or UNSET.get(key.rpartition(".")[2], "not set")
+    text = answer or UNSET.get(key) or UNSET.get(key.rpartition(".")[2], _unset(key))
     return FormRow(key=key, known=known, value=value, text=text, unset=True, found=bool(answer), words=words)
+
+
+def _unset(key: str) -> str:
+    return "usual" if key.startswith("doubts.") else "not set"
 
 
 def _answers(figures: Figures | None) -> dict[str, str]:
@@ -272,6 +284,8 @@ def put(design: Design, key: str, value: Any, figures: Figures | None, past: Ite
         return _with_kind(design, key.removesuffix(".kind"), value, figures)
     if key == "antenna.trap":
         return _with_trap(design, value != _NO, past)
+    if key in PARTS:
+        return put_part(design, key, value != _NO, past)
     if key == "bands.upper":
         return _with_upper(design, value != _NO, figures, past)
     changed = with_value(design, key, value)
