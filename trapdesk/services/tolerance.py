@@ -167,13 +167,21 @@ def yield_of(passed: int, trials: int) -> Yield:
 
 def allowance_of(needs: Mapping[str, np.ndarray], risk: float) -> dict[str, float]:
     """Return the least equal-risk lengths such that any wire is too short in at most that share of trials."""
-    low, high = risk / max(len(needs), 1), risk
+    names = list(needs)
+    values = np.array([needs[name] for name in names])
+    ranked = np.sort(values, axis=1)
+    count = values.shape[1]
+
+    def lengths(each: float) -> np.ndarray:
+        """Return the lengths that a wire exceeds in at most that share of trials."""
+        return ranked[:, min(count - 1, math.ceil((1 - each) * count))]
+
+    low, high = risk / len(names), risk
     for _ in range(20):
         each = (low + high) / 2
-        lengths = {name: float(np.quantile(need, 1 - each)) for name, need in needs.items()}
-        short = np.any([need > lengths[name] for name, need in needs.items()], axis=0).mean()
+        short = (values > lengths(each)[:, None]).any(axis=0).mean()
         low, high = (each, high) if short <= risk else (low, each)
-    return {name: max(0.0, float(np.quantile(need, 1 - low))) for name, need in needs.items()}
+    return {name: max(0.0, float(length)) for name, length in zip(names, lengths(low), strict=True)}
 
 
 def run_stage(
@@ -240,9 +248,8 @@ def part_of(values: Mapping[str, np.ndarray], begin: int, end: int) -> dict[str,
 def allowances(ensemble: Ensemble, change: Mapping[str, np.ndarray], risk: float) -> dict[str, Allowance]:
     """Return how much longer to cut each wire that is brought to an aim."""
     needs = {name: change[name] for name in ensemble.unknown_wires}
-    needs = {name: need[np.isfinite(need)] for name, need in needs.items()}
-    if not all(need.size for need in needs.values()):
-        needs = {name: np.zeros(1) for name in needs}
+    reached = np.all([np.isfinite(need) for need in needs.values()], axis=0)
+    needs = {name: need[reached] if reached.any() else np.zeros(1) for name, need in needs.items()}
     lengths = allowance_of(needs, risk)
     reserve = ensemble.design.antenna.lengths.reserve
     return {
@@ -417,7 +424,8 @@ def _scatter(
     begin, low, middle, high, end = (float(tail) for tail in tails)
     if not end > begin:
         begin, end = begin - 0.5, end + 0.5
-    counts, edges = np.histogram(np.clip(values, begin, end), BINS, (begin, end))
+    place = ((values - begin) * (BINS / (end - begin))).astype(int)
+    counts = np.bincount(np.clip(place, 0, BINS - 1), minlength=BINS)
     return Scatter(
         mean=float(values.mean()),
         deviation=float(values.std()),
@@ -427,7 +435,7 @@ def _scatter(
         least=min(ends),
         most=max(ends),
         causes=causes,
-        edges=edges,
+        edges=np.linspace(begin, end, BINS + 1),
         counts=counts,
     )
 
