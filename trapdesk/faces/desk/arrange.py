@@ -25,19 +25,44 @@ LEAST_WIDTH, LEAST_HEIGHT = 40, 12
 ROOMY = 117
 """Width from which a text of the command line stands whole beside the inputs."""
 
-INPUTS = View(name="inputs", lines=lambda sight: [], letter="I")
-ANSWER = View(name="answer", lines=answer_lines, letter="A", told=told.numbers_told)
-FINDINGS = View(name="findings", lines=findings_lines, letter="F")
-CHANCES = View(name="yield", lines=chances_lines, letter="Y", jobs=(TOLERANCE,))
-HELP = View(name="help", lines=help_lines, dims=False)
+INPUTS = View(name="inputs", lines=lambda sight: [], letter="I", about="what is given")
+ANSWER = View(
+    name="answer", lines=answer_lines, letter="A", told=told.numbers_told, about="what to know in ten seconds"
+)
+FINDINGS = View(name="findings", lines=findings_lines, letter="F", about="what is wrong, and what would help")
+CHANCES = View(
+    name="yield",
+    lines=chances_lines,
+    letter="Y",
+    jobs=(TOLERANCE,),
+    about="how many of a hundred antennas keep the SWR limit",
+)
 VIEWS = (
     ANSWER,
-    View(name="SWR", lines=swr_lines, letter="S", plot=True, told=told.feed_told, ending=".s1p"),
-    View(name="z", lines=feed_lines, letter="Z", plot=True, told=told.feed_told, ending=".s1p"),
-    View(name="trap", lines=trap_lines, letter="T", plot=True),
+    View(
+        name="SWR",
+        lines=swr_lines,
+        letter="S",
+        plot=True,
+        told=told.feed_told,
+        ending=".s1p",
+        about="SWR over both bands",
+    ),
+    View(
+        name="z",
+        lines=feed_lines,
+        letter="Z",
+        plot=True,
+        told=told.feed_told,
+        ending=".s1p",
+        about="R and X at the feed point",
+    ),
+    View(name="trap", lines=trap_lines, letter="T", plot=True, about="size and phase of its impedance"),
     CHANCES,
     FINDINGS,
-    View(name="numbers", lines=figures_lines, letter="N", told=told.numbers_told),
+    View(
+        name="numbers", lines=figures_lines, letter="N", told=told.numbers_told, about="every figure there is"
+    ),
     text_view(
         "reasons", "R", told.causes_told, (FULL_TOLERANCE,), "what the yield hangs on, what would help"
     ),
@@ -82,6 +107,8 @@ VIEWS = (
     ),
 )
 """The views of the desk, in the order in which a key goes through them."""
+LETTERS = {view.letter: view for view in (INPUTS, *VIEWS)}
+HELP = View(name="help", lines=lambda sight: help_lines(sight, LETTERS), dims=False)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -129,12 +156,13 @@ def names(cycle: tuple[View, ...], here: View, width: int, busy: str = "") -> Li
     Where there is no room for all, the others are letters alone.
     """
     shown = cycle if here in cycle else (here,)
-    for pieces in ([_name(view, here, whole) for view in shown] for whole in (True, False)):
-        line = [piece for name in pieces for piece in name]
-        if width_of(line) <= width:
+    room = width - (_LEAST_BUSY + 1 if busy else 0)
+    for most in (20, *range(6, 0, -1)):
+        line = [piece for view in shown for piece in _name(view, here, most)]
+        if width_of(line) <= room:
             break
     else:
-        line = _name(here, here, True)
+        line = _name(here, here, 20)
     free = width - width_of(line) - 1
     if busy and free >= _LEAST_BUSY:
         line.append((" " + padded(busy, free).rstrip(), "watch"))
@@ -144,9 +172,8 @@ def names(cycle: tuple[View, ...], here: View, width: int, busy: str = "") -> Li
 _LEAST_BUSY = 12
 
 
-def _name(view: View, here: View, whole: bool) -> list[Piece]:
-    """Return a view's name with its letter as a capital."""
+def _name(view: View, here: View, most: int) -> list[Piece]:
+    """Return a view's name, its letter a capital, cut to so many letters unless it is the present one."""
     if view is here:
         return [(f"[{view.name}]", "picked")]
-    rest = view.name[1:] if whole else ""
-    return [((" " if whole else "") + view.letter, "head"), (rest + " ", "quiet")]
+    return [(view.letter, "head"), (view.name[1:most] + " ", "quiet")]

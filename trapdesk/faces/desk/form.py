@@ -49,12 +49,8 @@ UNSET = {
     "site.soil": UNKNOWN,
     "site.conductivity": "by class",
     "site.permittivity": "by class",
-    "z0": "by type",
-    "velocity_factor": "by type",
-    "wet_loss": "by type",
-    "wet_slower": "by type",
 }
-_NO = "none"
+NONE = "none"
 _ONLY_WORDS = ("text", "choice")
 _MEASURED = frozenset(str(dimension) for dimension in Dimension)
 _YES = {"antenna.trap": "fitted", "bands.upper": "wanted"} | dict.fromkeys(PARTS, ADDED)
@@ -152,8 +148,8 @@ def _fixed(key: str, known: Declared, value: Any) -> FormRow:
 
 
 def _presence(key: str, known: Declared, value: Any) -> FormRow:
-    text = _NO if value is None else _YES[key]
-    return FormRow(key=key, known=known, value=text, text=text, words=(_YES[key], _NO))
+    text = NONE if value is None else _YES[key]
+    return FormRow(key=key, known=known, value=text, text=text, words=(_YES[key], NONE))
 
 
 def _row(design: Design, key: str, known: Declared, value: Any, answer: str) -> FormRow:
@@ -283,11 +279,11 @@ def put(design: Design, key: str, value: Any, figures: Figures | None, past: Ite
     if name == "kind":
         return _with_kind(design, key.removesuffix(".kind"), value, figures)
     if key == "antenna.trap":
-        return _with_trap(design, value != _NO, past)
+        return _with_trap(design, value != NONE, past)
     if key in PARTS:
-        return put_part(design, key, value != _NO, past)
+        return put_part(design, key, value != NONE, past)
     if key == "bands.upper":
-        return _with_upper(design, value != _NO, figures, past)
+        return _with_upper(design, value != NONE, figures, past)
     changed = with_value(design, key, value)
     site = changed.site
     if key == "site.shape":

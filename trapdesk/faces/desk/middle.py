@@ -10,7 +10,7 @@ from textual.events import Key
 
 from ... import sweep_files
 from ...errors import TrapdeskError, visible
-from .arrange import ANSWER, CHANCES, FINDINGS, HELP, INPUTS, VIEWS, Arrangement, arrangement, names
+from .arrange import ANSWER, CHANCES, FINDINGS, HELP, INPUTS, LETTERS, Arrangement, arrangement, names
 from .filing import Asker
 from .panes.drawers import DrawersPane
 from .panes.frame import Foot
@@ -19,7 +19,6 @@ from .session import Session
 from .terminal import Look
 from .view import View, ViewPane
 
-LETTERS = {view.letter: view for view in (INPUTS, *VIEWS)}
 SIDEWAYS = 8
 _OF_INPUTS = frozenset("0123456789+=-es ")
 
@@ -150,6 +149,10 @@ class Middle(Container):
             self.repaint()
         elif key in ("escape", "tab", "shift+tab"):
             self._leave()
+        elif character in ("g", "/") and character:
+            # They move between the inputs, which have to be in sight.
+            self._leave()
+            return False
         elif key == "enter" or (character and character in _OF_INPUTS):
             self.say("Tab goes to the inputs")
         else:

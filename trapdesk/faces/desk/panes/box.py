@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from ....errors import BadInput, visible
 from ..lines import Line, wrapped
 from ..session import Session
@@ -23,7 +25,11 @@ def box_told(session: Session) -> list[str]:
     found = session.aside.found(RUMMAGE.name)
     if found is None:
         return []
-    lines = rummage_out.lines(session.design, found.box, found.found)
+    rummaged = found.found
+    if session.aside.running(RUMMAGE.name):
+        # While it goes on, nothing was stopped early.
+        rummaged = replace(rummaged, finished=True)
+    lines = rummage_out.lines(session.design, found.box, rummaged)
     return [*lines, *(["", *found.fault.splitlines()] if found.fault else [])]
 
 
@@ -65,7 +71,7 @@ def box_press(key: str, acting: Acting) -> bool:
     aside = session.aside
     found = aside.found(RUMMAGE.name)
     rows = found.found.rows if found is not None else ()
-    steps = {"up": -1, "k": -1, "down": 1, "j": 1}
+    steps = {"up": -1, "down": 1}
     if key in steps:
         aside.place = max(0, min(aside.place + steps[key], len(rows) - 1))
         acting.show_again()

@@ -10,7 +10,7 @@ from ....fields import SOLVE
 from ....services.figures import Level
 from .. import form
 from ..form import DRAWERS, FormRow
-from ..lines import Line, Lines, Piece, padded
+from ..lines import Line, Lines, padded
 from ..session import Session
 from ..typed import Typed
 from .answer import MARKS, STYLES
@@ -91,11 +91,18 @@ class DrawersPane(Lines):
         self.keep_in_sight(cursor if cursor > 3 else 1)
 
     def _names(self) -> Line:
-        pieces: list[Piece] = []
-        for name in DRAWERS:
-            here = name == self.drawer
-            pieces.append((f"[{name}]" if here else f" {name} ", "picked" if here else "quiet"))
-        return pieces
+        return [(text, "picked" if name == self.drawer else "quiet") for name, text in self._titles()]
+
+    def _titles(self) -> list[tuple[str, str]]:
+        """Return each drawer's name and how it reads; all but the present one cut short for want of room."""
+        for most in (_LONGEST_LABEL, *range(6, 0, -1)):
+            titles = [(name, f"[{name}]" if name == self.drawer else f" {name[:most]} ") for name in DRAWERS]
+            if sum(len(text) for _, text in titles) <= self.room:
+                break
+            titles = [(name, text if name == self.drawer else text[1:]) for name, text in titles]
+            if sum(len(text) for _, text in titles) <= self.room:
+                break
+        return titles
 
     def _marks(self) -> dict[str, Level]:
         """Return the most serious level of the findings on each key."""
@@ -306,11 +313,11 @@ class DrawersPane(Lines):
     def _pick(self, x: int) -> None:
         """Open the drawer whose name is at a column of the first line."""
         left = len(self.edge) + 1 if self.edge else 0
-        for number, name in enumerate(DRAWERS):
-            if left <= x < left + len(name) + 2:
+        for number, (_, text) in enumerate(self._titles()):
+            if left <= x < left + len(text):
                 self.turn(number - list(DRAWERS).index(self.drawer))
                 return
-            left += len(name) + 2
+            left += len(text)
 
     def on_mouse_scroll_down(self, event: MouseScrollDown) -> None:
         """Scroll the rows."""

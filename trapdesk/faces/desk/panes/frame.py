@@ -10,7 +10,7 @@ from ....errors import visible
 from ....services.figures import Figures, Level
 from ... import rows as presenter
 from ... import words
-from ..form import FormRow
+from ..form import NONE, FormRow
 from ..lines import Line, Lines, padded, width_of, wrapped
 from ..session import Session
 from ..typed import Typed
@@ -201,7 +201,8 @@ def keys_line(keys: tuple[tuple[str, str], ...], row: FormRow | None, busy: bool
     """
     solve = ""
     if not busy and row is not None:
-        keys = (("Enter", "next word" if row.words else "edit     "), *keys[1:])
+        does = "edit     " if not row.words else "add it   " if row.value == NONE else "next word"
+        keys = (("Enter", does), *keys[1:])
         solve = f"s {'set it' if row.found and not row.unset else 'solve it'}" if row.solvable else ""
     room = width if busy else width - SOLVE_ROOM
     line: list[tuple[str, str]] = []

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from ....units import Dimension, show
 from ..form import FormRow
 from ..lines import Line, wrapped
-from ..view import Sight
+from ..view import Sight, View
 
 KEYS: tuple[tuple[str, str], ...] = (
     ("while editing", "Enter keeps, Esc restores"),
@@ -19,7 +21,7 @@ KEYS: tuple[tuple[str, str], ...] = (
     ("u, U", "undo, redo, as far back as you like"),
     ("g", "go to the row a finding is about, then to the next"),
     ("c", "try the cure of that finding, where it is an edit"),
-    ("a capital letter", "the view of that name, as in the line above it"),
+    ("a capital letter", "the view of that name, see below"),
     ("v, V", "next view, view before"),
     ("left right , .", "move the readout of a plot; < > move it far"),
     ("z", "plot one band alone, then both again"),
@@ -36,8 +38,8 @@ KEYS: tuple[tuple[str, str], ...] = (
 )
 
 
-def help_lines(sight: Sight) -> list[Line]:
-    """Return what is known of the row under the cursor, and what every key does."""
+def help_lines(sight: Sight, letters: Mapping[str, View]) -> list[Line]:
+    """Return what is known of the row under the cursor, what every key does, and the letters of the views."""
     lines: list[Line] = []
     if sight.row is not None and sight.row.key:
         lines += _about(sight.row, sight.width)
@@ -45,6 +47,11 @@ def help_lines(sight: Sight) -> list[Line]:
     for key, does in KEYS:
         pieces = wrapped(does, max(8, sight.width - 18))
         lines.append([(f"{key:<17} ", "found"), (pieces[0], "text")])
+        lines += [[(" " * 18 + piece, "text")] for piece in pieces[1:]]
+    lines += [[], [("views", "head")]]
+    for letter, view in letters.items():
+        pieces = wrapped(view.about, max(8, sight.width - 18))
+        lines.append([(f"{letter} {view.name:<15} ", "found"), (pieces[0], "text")])
         lines += [[(" " * 18 + piece, "text")] for piece in pieces[1:]]
     return lines
 

@@ -13,7 +13,7 @@ from ..view import Acting, Sight
 from .texts import text_lines, waiting_lines
 
 KEYS = (
-    ("Enter", "type a reading"), ("K", "keep in the design"), ("Backspace", "drop the last"),
+    ("Enter", "type a reading"), ("a", "accept into the design"), ("Backspace", "drop the last"),
     ("arrows", "scroll"), ("x", "write to a file"), ("Tab", "inputs"),
 )  # fmt: skip
 EXAMPLE = "for example trap.f0=13.98MHz"
@@ -72,7 +72,7 @@ def measured_press(key: str, acting: Acting) -> bool:
         acting.say(f"dropped {visible(aside.readings[-1], 60)}")
         aside.readings = aside.readings[:-1]
         acting.show_again()
-    elif key in ("K", "upper_k"):
+    elif key == "a":
         _keep(acting)
     else:
         return False
