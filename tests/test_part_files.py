@@ -6,11 +6,14 @@ from pathlib import Path
 import pytest
 
 from trapdesk import store
+from trapdesk.capacitor_kinds import CAPACITORS
 from trapdesk.coil_kinds import COILS
 from trapdesk.design import get, known_at, with_value
-from trapdesk.errors import NoAnswer, TrapdeskError
+from trapdesk.errors import BadInput, NoAnswer, TrapdeskError
 from trapdesk.faces import cli, coil_out, json_out, layout, rows, sheet
+from trapdesk.faces.desk import form
 from trapdesk.fields import SOLVE
+from trapdesk.rules import check
 from trapdesk.services.solve import at_frequencies, solve
 from trapdesk.toml_read import DesignFault
 
@@ -203,3 +206,27 @@ def test_no_answer_is_raised_for_a_stub_past_a_quarter_wave():
     figures = solve(with_value(design, "antenna.trap.capacitor.length", 0.45))
     high = at_frequencies(figures, [90e6, 99e6])
     assert all(one.stress.peak_voltage > 0 for one in high)
+
+
+def test_the_desk_takes_every_kind_and_back():
+    design = store.preset("40-20-vee")[0]
+    figures = solve(design)
+    for key, kinds in (("antenna.trap.coil", COILS), ("antenna.trap.capacitor", CAPACITORS)):
+        for kind in kinds:
+            changed = form.put(design, f"{key}.kind", kind, figures, iter([design]))
+            assert check(changed) == ()
+            assert get(changed, key).kind == kind
+            back = form.put(changed, "antenna.trap.coil.kind", "solenoid", solve(changed), iter([design]))
+            assert check(back) == ()
+
+
+def test_a_print_is_typed_on_the_desk():
+    design = store.load(COMBO)
+    wanted = "antenna.trap.capacitor.members.1.print"
+    row = next(row for row in form.rows(design, solve(design))["Trap"] if row.key == wanted)
+    assert (row.text, row.fixed) == ("101K 2kV N150", False)
+    assert form.starting_text(row) == "101K 2kV N150"
+    changed = form.put(design, row.key, form.read_row(row, "121J 3kV"), None, iter([]))
+    assert get(changed, wanted).capacitance == pytest.approx(120e-12)
+    with pytest.raises(BadInput, match="means nothing"):
+        form.read_row(row, "xx")

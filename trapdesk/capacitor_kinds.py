@@ -107,7 +107,7 @@ class SingleCapacitor:
         example="470J 3kV",
     )
     count: float = quantity(
-        "count", "pieces", "How many equal ones side by side.", default=1.0, low=1.0, high=50.0
+        "ratio", "pieces", "How many equal ones side by side.", default=1.0, low=1.0, high=50.0
     )
     dielectric: str = choice(
         DIELECTRICS,

@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator
-from dataclasses import MISSING, dataclass, fields, replace
+from dataclasses import dataclass, replace
 from typing import Any
 
-from ...design import UNKNOWN, Band, Design, Shape, get, with_value
+from ... import prints
+from ...design import UNKNOWN, Band, Design, Shape, get, known_at, with_value
 from ...engine.ground import UNKNOWN_SOIL
 from ...errors import BadInput, Fault, visible
 from ...fields import SOLVE, Declared, declared, walk
@@ -16,6 +17,7 @@ from ...rules import trap_unknowns
 from ...services.figures import Figures
 from ...units import Dimension, read, show, to_text
 from .. import rows as presenter
+from .kinds import begun, mended
 from .optional import ADDED, PARTS, put_part
 
 DRAWERS: dict[str, tuple[str, ...]] = {
@@ -51,7 +53,7 @@ UNSET = {
     "site.permittivity": "by class",
 }
 NONE = "none"
-_ONLY_WORDS = ("text", "choice")
+_ONLY_WORDS = ("text", "choice", "print")
 _MEASURED = frozenset(str(dimension) for dimension in Dimension)
 _YES = {"antenna.trap": "fitted", "bands.upper": "wanted"} | dict.fromkeys(PARTS, ADDED)
 _STARTING_ANGLE = math.radians(120)
@@ -209,7 +211,7 @@ def starting_text(row: FormRow) -> str:
     """Return the text an edit of a row starts with."""
     if row.fixed:
         return row.text
-    if row.words or row.known.dimension == "text":
+    if row.words or row.known.dimension in ("text", "print"):
         return "" if row.value is None else str(row.value)
     if row.value is SOLVE:
         return "solve"
@@ -224,6 +226,8 @@ def read_row(row: FormRow, typed: str) -> Any:
         if not text:
             raise BadInput(Fault(where="", code="empty", help="a few words"))
         return text
+    if row.known.dimension == "print":
+        return prints.read(text)
     if row.words:
         return _word(row, text)
     if not text and row.known.optional:
@@ -277,7 +281,7 @@ def put(design: Design, key: str, value: Any, figures: Figures | None, past: Ite
     """
     name = key.rpartition(".")[2]
     if name == "kind":
-        return _with_kind(design, key.removesuffix(".kind"), value, figures)
+        return _with_kind(design, key.removesuffix(".kind"), value, figures, past)
     if key == "antenna.trap":
         return _with_trap(design, value != NONE, past)
     if key in PARTS:
@@ -317,19 +321,22 @@ def _with_soil_numbers(design: Design, value: float | None) -> Design:
     )
 
 
-def _with_kind(design: Design, key: str, kind: str, figures: Figures | None) -> Design:
-    known = declared(get(design, key.rpartition(".")[0]))[key.rpartition(".")[2]]
+def _with_kind(
+    design: Design, key: str, kind: str, figures: Figures | None, past: Iterator[Design]
+) -> Design:
+    known = known_at(design, key)
     present = get(design, key)
     if present.kind == kind:
         return design
-    unknown = [name for name, of in declared(present).items() if of.solvable]
-    was_solved = any(getattr(present, name) is SOLVE for name in unknown)
-    made = known.choices[kind]
-    if any(f.default is MISSING and f.default_factory is MISSING for f in fields(made)):
-        raise BadInput(Fault(where="", code="this_kind_needs_values", value=kind, help="set it in the file"))
-    changed = with_value(design, key, made())
-    solved = next((k for k in trap_unknowns(changed.antenna.trap) if k.startswith(f"{key}.")), "")
-    return changed if was_solved or not solved else _one_solved(changed, solved, figures)
+    farads = figures.trap.fitted_capacitance if figures is not None and figures.trap is not None else None
+    changed = mended(with_value(design, key, begun(known.choices[kind], present, farads)), past)
+    unknown = trap_unknowns(changed.antenna.trap)
+    open_ = [k for k in unknown if get(changed, k) is SOLVE]
+    if not open_:
+        # Of what is left the coil is the easiest to make to measure.
+        return with_value(changed, next((k for k in unknown if ".coil." in k), unknown[0]), SOLVE)
+    keep = next((k for k in open_ if k.startswith(f"{key}.")), open_[0])
+    return _one_solved(changed, keep, figures)
 
 
 def _with_trap(design: Design, fitted: bool, past: Iterator[Design]) -> Design:

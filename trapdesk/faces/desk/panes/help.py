@@ -78,7 +78,7 @@ def _about(row: FormRow, width: int) -> list[Line]:
 def _limits(row: FormRow) -> str:
     """Return the limits of a quantity in words."""
     known = row.known
-    if row.fixed or known.dimension in ("text", "choice", "part"):
+    if row.fixed or known.dimension in ("text", "choice", "part", "print"):
         return ""
     kind = Dimension(known.dimension)
     pieces = []
