@@ -26,6 +26,7 @@ ROOM_OF = {
     "capacitor_kinds": "design",
     "coil_kinds": "design",
     "former_kinds": "design",
+    "history": "design",
     "part_rules": "design",
     "parts": "design",
     "measured_part": "design",

@@ -16,6 +16,7 @@ from .doubts import Doubts
 from .engine.conductors import MATERIALS
 from .engine.ground import SOILS, GroundKind
 from .fields import SOLVE, Declared, Value, choice, declared, member_of, part, parts, quantity, text
+from .history import History
 from .parts import Trap
 from .station import Choke, FeedLine, Segment, Transmitter, Tuner
 
@@ -387,6 +388,9 @@ class Design:
     site: Site = part("site", "Where it hangs.", default=Site())
     station: Station = part("station", "What feeds it.", default=Station())
     doubts: Doubts = part("doubts", "How far what is built may be off.", default=Doubts())
+    history: History | None = part(
+        "history", "What was read of the hung antenna, and what was done to it.", default=None, optional=True
+    )
 
 
 def get(design: Any, key: str) -> Any:

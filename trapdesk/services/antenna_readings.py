@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping, Sequence
+from weakref import WeakKeyDictionary
 from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 
@@ -23,10 +24,12 @@ SWEPT = 9
 """Points of a sweep that are weighed: neighbours tell the same. [1]"""
 SWEEP_SIGMA, LINE_SIGMA = 0.02, 0.01
 """How far a swept reflection of the antenna and of a bare line may be off. [1], an estimate, no source"""
-MODEL_SWR, MODEL_Z = 0.02, 0.02
-"""What the wire's model itself may be off in an SWR and an impedance, relative. [1], an estimate"""
+MODEL_DIP, MODEL_SWR, MODEL_Z = 1.5e-4, 0.02, 0.02
+"""What the nearby wires themselves may be off in a dip, an SWR and an impedance, relative. [1], an estimate"""
 WINDOW, WINDOW_POINTS = 0.012, 17
 """How far around a dip that was read trials near it are looked at, relative, and how closely."""
+FAR_POINTS = 15
+"""Frequencies below and above a band at which a broken antenna is looked at."""
 LEAST_CHANCE = 1e-300
 
 
@@ -61,16 +64,15 @@ class Altered:
     """Another antenna than the one that was meant: how its ports, its traps and its wires differ.
 
     `extras` is how many standard normal numbers of its own it has; `longer` turns them into changes of
-    both sides' wires [m]. `roles` says which band a reading is really of.
+    both sides' wires [m]. `ranges` names the ranges a band is looked at in and where they lie, its own first.
     """
 
     nearby: Nearby | None = None
-    bands: Callable[[str], tuple[str, ...]] = lambda role: (role,)
+    ranges: Callable[[str], Mapping[str, tuple[float, float]]] | None = None
     offset: Callable[[str, np.ndarray], np.ndarray] | None = None
     loads: Loads | None = None
     longer: Callable[[np.ndarray], dict[str, np.ndarray]] | None = None
     extras: int = 0
-    roles: Mapping[str, str] = field(default_factory=lambda: MappingProxyType({}))
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -99,7 +101,10 @@ class Forward:
         stage: Stage,
         sweeps: Mapping[str, Sweep],
         altered: Altered | None = None,
+        basis: np.ndarray | None = None,
+        origin: np.ndarray | None = None,
     ) -> None:
+        self.basis, self.origin = basis, origin
         self.ensemble, self.latents, self.hoists, self.stage = ensemble, latents, tuple(hoists), stage
         self.altered = altered or Altered()
         self.nearby = self.altered.nearby or ensemble.nearby
@@ -111,7 +116,16 @@ class Forward:
     @property
     def size(self) -> int:
         """Standard normal numbers a trial has."""
-        return self.latents.size + self.altered.extras
+        own = self.latents.size if self.basis is None else self.basis.shape[0]
+        return own + self.altered.extras
+
+    def whole(self, z: np.ndarray) -> np.ndarray:
+        """Return all numbers of trials of which only those along the basis were given."""
+        if self.basis is None:
+            return z
+        own = self.basis.shape[0]
+        inner = z[:, :own] @ self.basis
+        return np.concatenate([inner if self.origin is None else inner + self.origin, z[:, own:]], axis=1)
 
     def stage_at(self, hoist: Hoist) -> Stage:
         """Return the stage the traps are at: who tunes them again does so with the traps closed."""
@@ -131,7 +145,7 @@ class Forward:
         for h, hoist in enumerate(self.hoists):
             for reading in hoist.readings:
                 number += 1
-                role = self.altered.roles.get(reading.subject, reading.subject)
+                role = reading.subject
                 at = str(reading.options.get("at", "radio"))
                 yield from self._of(reading, number, h, role, at, sweeps)
 
@@ -147,7 +161,8 @@ class Forward:
         if reading.what == "dip":
             assert isinstance(value, float)
             where = math.log(value)
-            yield channel("dip", value, where, where, reading.doubt.of(value) / value)
+            sigma = math.hypot(reading.doubt.of(value) / value, MODEL_DIP)
+            yield channel("dip", value, where, where, sigma)
         elif reading.what == "swr":
             assert isinstance(value, Interval) and reading.frequency is not None
             known = max(value.low, 1.0) if math.isinf(value.high) else (value.low + value.high) / 2
@@ -178,7 +193,7 @@ class Forward:
 
     def _table(self, key: tuple, role: str, frequency: np.ndarray) -> tuple[Table, Circuit | None]:
         if key not in self._tables:
-            table = piecewise(self.nearby, self.altered.bands(role), frequency)
+            table = _kept(self.nearby, self._ranges(role), frequency)
             if self.altered.offset is not None:
                 coefficients = table.coefficients.copy()
                 offset = np.ascontiguousarray(self.altered.offset(role, frequency).ravel()).view(float)
@@ -188,14 +203,19 @@ class Forward:
             self._tables[key] = table, None if of_traps is None else of_traps.circuit(frequency)
         return self._tables[key]
 
+    def _ranges(self, role: str) -> Mapping[str, tuple[float, float]]:
+        return {role: (0.0, math.inf)} if self.altered.ranges is None else self.altered.ranges(role)
+
     def _grid(self, role: str, channel: _Channel) -> np.ndarray:
         if self._narrow:
             f = channel.frequency[0]
             return np.linspace(f * (1 - WINDOW), f * (1 + WINDOW), WINDOW_POINTS)
-        found = [np.asarray(self.ensemble.grids[role].frequency)]
-        for piece in self.altered.bands(role):
-            low, high = self.nearby._ranges[piece] if piece != role else (1.0, 0.0)
-            found += [np.linspace(low, high, 25)] if low < high else []
+        pieces = [ends for piece, ends in self._ranges(role).items() if piece != role]
+        near = np.asarray(self.ensemble.grids[role].frequency)
+        if not pieces:
+            return near
+        found = [near[::2], near[-1:]]
+        found += [np.linspace(*ends, FAR_POINTS) for ends in pieces]
         return np.unique(np.concatenate(found))
 
     def feed(self, role: str, key: tuple, frequency: np.ndarray, hoist: Hoist, z: np.ndarray) -> np.ndarray:
@@ -243,6 +263,7 @@ class Forward:
         The first (trials, numbers) is for steps towards what was read: an interval counts from its middle, a
         reading off the scale only where it is not reached. The second (trials,) is exact.
         """
+        z = self.whole(z)
         count = z.shape[0]
         columns, chance = [], np.zeros(count)
         reference = self.ensemble.design.station.reference
@@ -348,16 +369,31 @@ def dips(frequency: np.ndarray, reflection: np.ndarray) -> np.ndarray:
     return np.where(bent, np.clip(middle, f0 - reach, f2 + reach), np.where(g0 < g2, f0, f2))
 
 
-def piecewise(nearby: Nearby, bands: Sequence[str], frequency: np.ndarray) -> Table:
+_TABLES: WeakKeyDictionary[Nearby, dict] = WeakKeyDictionary()
+MOST_KEPT = 400
+"""Tables that are kept with a wire: the same frequencies are asked for again by every kind of antenna."""
+
+
+def _kept(nearby: Nearby, ranges: Mapping[str, tuple[float, float]], frequency: np.ndarray) -> Table:
+    kept = _TABLES.setdefault(nearby, {})
+    key = (*ranges, frequency.tobytes())
+    if key not in kept:
+        if len(kept) >= MOST_KEPT:
+            kept.clear()
+        kept[key] = piecewise(nearby, ranges, frequency)
+    return kept[key]
+
+
+def piecewise(nearby: Nearby, ranges: Mapping[str, tuple[float, float]], frequency: np.ndarray) -> Table:
     """Return the ports' polynomial at frequencies, each from the range it lies in; the first also beyond."""
+    bands = list(ranges)
     if len(bands) == 1:
         return nearby.table(bands[0], frequency)
     owner = np.zeros(frequency.size, int)
-    for i, band in enumerate(bands[1:], start=1):
-        low, high = nearby._ranges[band]
+    # The first range is laid over the others, so it has the last word.
+    for i, band in reversed(list(enumerate(bands))):
+        low, high = ranges[band]
         owner[(frequency >= low) & (frequency <= high)] = i
-    low, high = nearby._ranges[bands[0]]
-    owner[(frequency >= low) & (frequency <= high)] = 0
     coefficients = np.empty((len(nearby.terms), 6 if nearby.has_trap else 1, frequency.size), complex)
     for i, band in enumerate(bands):
         mine = owner == i

@@ -16,9 +16,10 @@ import numpy as np
 
 from ..engine.fits import Sweep
 from ..engine.sampling import normal_quantile, uniform
+from ..reading_kinds import Reading
 from .antenna_readings import Altered, Forward, Hoist
 from .ensemble import Ensemble
-from .latents import Latents
+from .latents import LINE, Latents
 from .trial_traps import STAGES, Stage
 
 TRIALS = 1000
@@ -59,10 +60,10 @@ class Posterior:
         return float(1 / (self.weights**2).sum())
 
     def even(self, count: int) -> np.ndarray:
-        """Return trials of equal weight."""
+        """Return trials of equal weight, all their numbers."""
         steps = (np.arange(count) + 0.5) / count
         picked = np.searchsorted(np.cumsum(self.weights), steps).clip(0, self.weights.size - 1)
-        return self.z[picked]
+        return self.forward.whole(self.z[picked])
 
 
 def stage_of(tuned: bool) -> Stage:
@@ -112,14 +113,15 @@ def weigh(forward: Forward, trials: int, seed: int) -> Posterior:
         best = z[int(np.argmax(chance))]
         _, slopes, off = _sloped(forward, best)
         return _posterior(forward, z, chance, float(off @ off), slopes, off, moved=False)
-    peak, slopes, off = _peak(forward, pilot[int(np.argmax(chance))])
+    nothing = np.zeros(size)
+    peak, slopes, off = peak_of(forward, np.array([nothing, pilot[int(np.argmax(chance))]]))
     near = forward.narrowed()
     for attempt in range(2):
         z, weights = _around(near, peak, slopes, trials, seed + attempt, WIDER + attempt / 2)
         share = np.exp(weights - weights.max())
         if share.sum() ** 2 / (share**2).sum() >= 0.1 * trials:
             break
-        peak, slopes, off = _peak(forward, z[int(np.argmax(weights))])
+        peak, slopes, off = peak_of(forward, z[int(np.argmax(weights))][None])
     misfit = float(peak @ peak + off @ off)
     return _posterior(forward, z, weights, misfit, slopes, off, moved=True)
 
@@ -169,15 +171,14 @@ def _sloped(forward: Forward, z: np.ndarray) -> tuple[np.ndarray, np.ndarray, np
     return z, slopes, off[0]
 
 
-def _peak(forward: Forward, start: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+def peak_of(forward: Forward, starts: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     """Return the most likely numbers, with slopes and residuals there: Kalman steps until they rest."""
 
     def cost(z: np.ndarray) -> np.ndarray:
         off, _ = forward.residuals(z)
         return (off**2).sum(axis=1) + (z**2).sum(axis=1)
 
-    both = np.array([np.zeros_like(start), start])
-    z = both[int(np.argmin(cost(both)))]
+    z = starts[int(np.argmin(cost(starts)))]
     parts = np.array([1.0, 0.6, 0.3, 0.1, 0.03])[:, None]
     for _ in range(STEPS):
         _, slopes, off = _sloped(forward, z)
@@ -220,3 +221,94 @@ def _around(
     away = middle + inside
     drawn = -0.5 * ((inside / scale) ** 2).sum(axis=1) - np.log(scale).sum()
     return z, chance - 0.5 * (away**2).sum(axis=1) - drawn
+
+
+def at_new_site(
+    posterior: Posterior,
+    ensemble: Ensemble,
+    readings: Sequence[Reading] = (),
+    *,
+    sweeps: Mapping[str, Sweep] | None = None,
+    trials: int = TRIALS,
+    seed: int = 1,
+) -> Posterior:
+    """Return what is believed of the same antenna elsewhere: what belongs to it is kept, the site forgotten.
+
+    What is kept is put into a normal distribution of the same mean and spread. `ensemble` is that of the new
+    site with the same computed wires.
+    """
+    old, last = posterior.forward.latents, posterior.forward.hoists[-1]
+    latents = latents_of(ensemble, last.moves, last.tunings)
+    z = posterior.even(trials)[:, : old.size]
+    basis, origin = np.eye(latents.size), np.zeros(latents.size)
+    kept = old.kept()
+    pairs = [
+        (i, latents.columns[name].start + n)
+        for name, columns in old.columns.items()
+        if name in latents.columns
+        for n, i in enumerate(range(columns.start, columns.stop))
+        if kept[i]
+    ]
+    here, there = (np.array(column) for column in zip(*pairs, strict=True))
+    spread = np.linalg.cholesky(np.cov(z[:, here].T) + 1e-6 * np.eye(here.size))
+    origin[there] = z[:, here].mean(axis=0)
+    basis[np.ix_(there, there)] = spread.T
+    hoist = Hoist(readings=tuple(readings), change=last.change, moves=last.moves, tunings=last.tunings)
+    stage = posterior.forward.stage
+    forward = Forward(ensemble, latents, [hoist], stage, sweeps or {}, basis=basis, origin=origin)
+    return weigh(forward, trials, seed)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Learned:
+    """One thing that is believed: 5, 50 and 95 of 100 trials before the readings and after them.
+
+    `belongs` is antenna, site or line: what belongs to the antenna stays with it at another site.
+    """
+
+    code: str
+    belongs: str
+    dimension: str
+    before: tuple[float, float, float]
+    after: tuple[float, float, float]
+
+
+def learned(posterior: Posterior, count: int = 400) -> tuple[Learned, ...]:
+    """Return what is believed about traps, wires, height, soil, site and line, before and after."""
+    forward = posterior.forward
+    prior = forward.whole(_normal(1, 0, count, forward.size))
+    found = []
+    before, after = (
+        _quantities(forward, z[:, : forward.latents.size]) for z in (prior, posterior.even(count))
+    )
+    for code, (belongs, dimension, values) in after.items():
+        ends = [np.quantile(v, (0.05, 0.5, 0.95)) for v in (before[code][2], values)]
+        low, high = (tuple(float(x) for x in three) for three in ends)
+        found.append(Learned(code=code, belongs=belongs, dimension=dimension, before=low, after=high))
+    return tuple(found)
+
+
+def _quantities(forward: Forward, z: np.ndarray) -> dict[str, tuple[str, str, np.ndarray]]:
+    ensemble, hoist, latents = forward.ensemble, forward.hoists[-1], forward.latents
+    draws, count = latents.draws(z, hoist.tunings), z.shape[0]
+    places = ensemble.places(draws, count, latents.change(z, hoist.change, hoist.moves))
+    found: dict[str, tuple[str, str, np.ndarray]] = {}
+    traps = ensemble.traps(draws, forward.stage_at(hoist), count)
+    if traps is not None and ensemble.of_traps is not None:
+        resonance = ensemble.of_traps.resonance(traps)
+        found["traps"] = "antenna", "frequency", resonance.mean(axis=0)
+        found["traps_apart"] = "antenna", "frequency", np.abs(resonance[0] - resonance[1])
+    for wire in ("inner", "end"):
+        own = getattr(ensemble.wire, wire)
+        if own is not None:
+            found[wire] = "antenna", "length", own + places[wire]
+    if "height" in ensemble.varying or "sag" in ensemble.varying:
+        found["height"] = "site", "length", ensemble.wire.height + places["height"]
+    if "soil" in ensemble.varying:
+        found["soil"] = "site", "ratio", places["soil"]
+    if "site" in ensemble.varying:
+        found["site"] = "site", "ratio", places["site"]
+    for name in latents.columns:
+        if name in LINE:
+            found[name] = "line", "ratio", np.expm1(LINE[name] * z[:, latents.columns[name].start])
+    return found
