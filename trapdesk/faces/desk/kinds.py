@@ -14,10 +14,6 @@ from ...capacitor_kinds import (
     SeriesCapacitors,
     SingleCapacitor,
 )
-    CAPACITORS,
-    GivenCapacitor,
-    SingleCapacitor,
-)
 from ...coil_kinds import CableCoil
 from ...design import Design
 from ...errors import BadInput, Fault
