@@ -7,13 +7,14 @@ from dataclasses import dataclass
 from .lines import Line, Piece, padded, width_of
 from .panes import told
 from .panes.answer import answer_lines, figures_lines
+from .panes.asking import LOAD_KEYS, YIELD_KEYS, load_press, yield_press
 from .panes.box import KEYS as BOX_KEYS
 from .panes.box import box_lines, box_picked, box_press, box_told
 from .panes.chances import chances_lines
 from .panes.curves import feed_lines, swr_lines, trap_lines
 from .panes.findings import findings_lines
 from .panes.help import help_lines
-from .panes.jobs import CHOICES, FULL_TOLERANCE, RUMMAGE, SHEET_TOLERANCE, TOLERANCE, TUNER
+from .panes.jobs import CHOICES, FOR_YIELD, FULL_TOLERANCE, RUMMAGE, SHEET_TOLERANCE, TOLERANCE, TUNER
 from .panes.measured import KEYS as READING_KEYS
 from .panes.measured import READINGS, measured_lines, measured_press, measured_told
 from .panes.quick import KEYS as SUM_KEYS
@@ -64,7 +65,13 @@ VIEWS = (
         name="numbers", lines=figures_lines, letter="N", told=told.numbers_told, about="every figure there is"
     ),
     text_view(
-        "reasons", "R", told.causes_told, (FULL_TOLERANCE,), "what the yield hangs on, what would help"
+        "reasons",
+        "R",
+        told.causes_told,
+        (FULL_TOLERANCE, FOR_YIELD),
+        "what the yield hangs on, what would help",
+        YIELD_KEYS,
+        yield_press,
     ),
     text_view("choices", "C", told.choices_told, (CHOICES,), "other resonances of the trap, other L to C"),
     View(
@@ -80,7 +87,15 @@ VIEWS = (
         picked=box_picked,
     ),
     text_view("down", "D", told.down_told, (TUNER,), "from wire to transmitter: is a tuner worth it"),
-    text_view("loads", "L", told.loads_told, (TUNER,), "what the tuner can reach, and its settings"),
+    text_view(
+        "loads",
+        "L",
+        told.loads_told,
+        (TUNER,),
+        "what the tuner can reach, and its settings",
+        LOAD_KEYS,
+        load_press,
+    ),
     View(
         name="measured",
         letter="M",
@@ -156,13 +171,10 @@ def names(cycle: tuple[View, ...], here: View, width: int, busy: str = "") -> Li
     Where there is no room for all, the others are letters alone.
     """
     shown = cycle if here in cycle else (here,)
-    room = width - (_LEAST_BUSY + 1 if busy else 0)
-    for most in (20, *range(6, 0, -1)):
-        line = [piece for view in shown for piece in _name(view, here, most)]
-        if width_of(line) <= room:
-            break
-    else:
-        line = _name(here, here, 20)
+    rooms = (width - _LEAST_BUSY - 1, width) if busy else (width,)
+    ways = [[piece for view in shown for piece in _name(view, here, most)] for most in (20, *range(6, 0, -1))]
+    fitting = (way for room in rooms for way in ways if width_of(way) <= room)
+    line = next(fitting, _name(here, here, 20))
     free = width - width_of(line) - 1
     if busy and free >= _LEAST_BUSY:
         line.append((" " + padded(busy, free).rstrip(), "watch"))

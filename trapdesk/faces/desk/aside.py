@@ -1,4 +1,4 @@
-"""What is worked out beside the figures: one piece of work at a time, stopped when the design has changed."""
+"""What is worked out beside the figures: a piece of work at a time, stopped when the design has changed."""
 
 from __future__ import annotations
 
@@ -36,13 +36,15 @@ class Task:
 class Job:
     """A piece of work: yields what it has found, more each time.
 
-    `asked` is what it depends on beside the design. One that `needs_figures` waits for an answer.
+    `asked` is what it depends on beside the design. One that `needs_figures` waits for an answer. A `slow`
+    one cannot be stopped, and does not keep the others waiting.
     """
 
     name: str
     work: Callable[[Task], Iterator[Any]]
     asked: Callable[[Aside], Hashable] = lambda aside: None
     needs_figures: bool = True
+    slow: bool = False
 
 
 @dataclass
@@ -56,26 +58,28 @@ class Known:
 
 
 class Aside:
-    """What the jobs of a session have found, and the one that runs.
+    """What the jobs of a session have found, and those that run: one, and beside it a slow one.
 
-    `box` is the box to rummage in, empty for the ready one, `place` the row picked in what was found,
-    `readings` and `command` what was typed.
+    `box` is the box to rummage in, empty for the ready one, `place` the row picked in what was found. `stage`
+    is the one to choose a design for, `readings`, `command` and `load` what was typed.
     """
 
     def __init__(self, session: Session) -> None:
         self._session = session
         self._known: dict[str, Known] = {}
-        self._running: tuple[str, Hashable] | None = None
-        self._stopped = False
+        self._running: dict[bool, tuple[str, Hashable]] = {}
+        self._stopped: set[str] = set()
+        self._progress: dict[str, str] = {}
         self._wanted: Sequence[Job] = ()
         self._idle = asyncio.Event()
         self._app: App | None = None
         self._changed: Callable[[], None] = lambda: None
-        self.progress = ""
         self.box = ""
         self.place = 0
         self.readings: tuple[str, ...] = ()
         self.command = ""
+        self.load = ""
+        self.stage = ""
 
     def found(self, name: str) -> Any:
         """Return what a job found last, None for nothing yet."""
@@ -95,7 +99,11 @@ class Aside:
 
     def running(self, name: str) -> bool:
         """Return whether a job is at work."""
-        return self._running is not None and self._running[0] == name
+        return any(running == name for running, _ in self._running.values())
+
+    def progress(self, name: str) -> str:
+        """Return how far a job is, empty when it is not at work."""
+        return self._progress.get(name, "") if self.running(name) else ""
 
     def _token(self, job: Job) -> Hashable:
         return (self._session.generation, job.asked(self))
@@ -105,42 +113,52 @@ class Aside:
         self._app, self._wanted, self._changed = app, tuple(jobs), changed
         self._next()
 
-    def stop(self) -> None:
-        """End what runs; what it found stays."""
-        self._stopped = True
+    def stop(self, name: str) -> None:
+        """End a job; what it found stays."""
+        self._stopped.add(name)
 
     async def settled(self) -> None:
         """Wait until everything wanted is there."""
         await self._idle.wait()
 
-    def _due(self) -> Job | None:
-        """Return the next job to begin."""
-        session = self._session
+    def _due(self) -> Iterator[Job]:
+        """Yield what is wanted and not there."""
         for job in self._wanted:
             known = self._known.get(job.name)
             done = known is not None and known.whole and known.token == self._token(job)
-            if not done and not (job.needs_figures and session.no_answer):
-                return job
-        return None
+            if not done and not (job.needs_figures and self._session.no_answer):
+                yield job
 
     def _next(self) -> None:
-        job = None if self._session.solving else self._due()
-        if job is None and self._running is None and not self._session.solving:
+        """Begin what is due and can begin."""
+        if self._session.solving:
+            self._idle.clear()
+            return
+        due = list(self._due())
+        if not due and not self._running:
             self._idle.set()
             return
         self._idle.clear()
-        if job is None or self._running is not None or self._app is None:
-            return
-        token = self._token(job)
-        self._running, self._stopped, self.progress = (job.name, token), False, ""
-        app, session = self._app, self._session
-        stopped = lambda: self._stopped or self._token(job) != token or not app.is_running  # noqa: E731
+        for job in due:
+            if job.slow not in self._running:
+                self._begin(job)
+
+    def _begin(self, job: Job) -> None:
+        app, session, token = self._app, self._session, self._token(job)
+        assert app is not None
+        self._running[job.slow] = (job.name, token)
+        self._stopped.discard(job.name)
+        self._progress.pop(job.name, None)
+
+        def stopped() -> bool:
+            return job.name in self._stopped or self._token(job) != token or not app.is_running
+
         task = Task(
             design=session.design,
-            figures=session.figures,
+            figures=None if session.no_answer else session.figures,
             asked=job.asked(self),
             stopped=stopped,
-            tell=lambda text: self._post(self._told, token, text),
+            tell=lambda text: self._post(self._told, job.name, text),
         )
         app.run_worker(lambda: self._work(job, token, task), thread=True)
 
@@ -152,7 +170,6 @@ class Aside:
         """Run a job in a thread and hand over what it finds."""
         from .solving import reason
 
-        before = sys.getswitchinterval()
         sys.setswitchinterval(SWITCHING)
         refusal = ""
         try:
@@ -162,13 +179,11 @@ class Aside:
                     break
         except TrapdeskError as error:
             refusal = reason(error)
-        finally:
-            sys.setswitchinterval(before)
-        self._post(self._ended, job.name, token, refusal)
+        self._post(self._ended, job, token, refusal)
 
-    def _told(self, token: Hashable, text: str) -> None:
-        if self._running is not None and self._running[1] == token:
-            self.progress = text
+    def _told(self, name: str, text: str) -> None:
+        if self._progress.get(name) != text:
+            self._progress[name] = text
             self._changed()
 
     def _take(self, name: str, token: Hashable, value: Any) -> None:
@@ -177,12 +192,12 @@ class Aside:
             self._known[name] = Known(token=token, value=value)
             self._changed()
 
-    def _ended(self, name: str, token: Hashable, refusal: str) -> None:
-        self._running, self.progress = None, ""
+    def _ended(self, job: Job, token: Hashable, refusal: str) -> None:
+        self._running.pop(job.slow, None)
         if token[0] == self._session.generation:
-            known = self._known.setdefault(name, Known())
+            known = self._known.setdefault(job.name, Known())
             if refusal:
-                known = self._known[name] = Known(value=None, refusal=refusal)
+                known = self._known[job.name] = Known(refusal=refusal)
             known.token, known.whole = token, True
         self._changed()
         self._next()

@@ -112,8 +112,8 @@ class Middle(Container):
 
     def _busy(self) -> str:
         """Return how far the work for the view is."""
-        aside = self.session.aside
-        return aside.progress if any(aside.running(job.name) for job in self.shown.jobs) else ""
+        told = (self.session.aside.progress(job.name) for job in self.shown.jobs)
+        return next(filter(None, told), "")
 
     def _found(self) -> None:
         """Show what was worked out aside."""

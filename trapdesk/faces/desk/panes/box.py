@@ -43,7 +43,7 @@ def box_lines(sight: Sight) -> list[Line]:
     aside.place = max(0, min(aside.place, len(aside.found(RUMMAGE.name).found.rows) - 1))
     lines: list[Line] = []
     if aside.running(RUMMAGE.name):
-        words = f"still looking, {aside.progress}; Esc stops and keeps these"
+        words = f"still looking, {aside.progress(RUMMAGE.name)}; Esc stops and keeps these"
         lines = [[(piece, "watch")] for piece in wrapped(words, sight.width)]
     for line in text_lines(texts, sight.width, sight.left):
         text, style = line[0] if line else ("", "text")
@@ -78,7 +78,7 @@ def box_press(key: str, acting: Acting) -> bool:
     elif key == "enter":
         _take(acting)
     elif key == "escape" and aside.running(RUMMAGE.name):
-        aside.stop()
+        aside.stop(RUMMAGE.name)
         acting.say("stopped; what was found stays")
     elif key == "b":
         acting.ask("rummage in which box", lambda given: _open(given, acting), aside.box or "relief-box")

@@ -126,7 +126,7 @@ class Foot(Lines):
         """Show worst finding, yield, next move, note and keys in as many lines as there are."""
         width, height = self.size.width, self.size.height
         row = None if self.offered else row
-        note = self._note(row, width, 2 if height > 3 else 1)
+        note = self._note(session, row, width, 2 if height > 3 else 1)
         room = height - 1 - len(note)
         chances = self._chances(session, width) if room >= 3 else []
         # The worst finding always has a line; what is left goes to its cure, then to the next move.
@@ -166,7 +166,7 @@ class Foot(Lines):
         style = "quiet" if session.stale else "text"
         return [[(piece, style)] for piece in wrapped(f"{row.label}: {row.value}", width, 2)]
 
-    def _note(self, row: FormRow | None, width: int, most: int) -> list[Line]:
+    def _note(self, session: Session, row: FormRow | None, width: int, most: int) -> list[Line]:
         if self._asking:
             if self._typed is None:
                 return _cut([[(p, "watch")] for p in wrapped(self._asking, width)], most, width)
@@ -177,7 +177,9 @@ class Foot(Lines):
             text = f"! {self.note}" if self.refused else self.note
             return _cut([[(piece, style)] for piece in wrapped(text, width, 2)], most, width)
         if row is None:
-            return [[(padded(self.about, width).rstrip(), "quiet")]]
+            # A short screen has no other line for the yield.
+            text = chances_line(session, width) if most == 1 else self.about
+            return [[(padded(text, width).rstrip(), "quiet")]]
         text = "one of " + ", ".join(row.words) + ". " + row.known.help if row.words else row.known.help
         return _cut([[(piece, "quiet")] for piece in wrapped(text, width)], 1, width)
 

@@ -107,9 +107,22 @@ def _tuner(task: Task) -> Iterator[Fed]:
     )
 
 
+def _for_yield(task: Task) -> Iterator[Any]:
+    """Yield the design chosen for the stage that was asked for, nothing without one."""
+    from ....services.advice import for_yield
+    from ....services.tolerance import SEED
+
+    if task.asked:
+        task.tell("trying other traps and aims")
+        yield for_yield(task.figures, stage=task.asked, seed=SEED)
+    else:
+        yield None
+
+
 TOLERANCE = Job(name="tolerance", work=_quick)
 FULL_TOLERANCE = Job(name="full tolerance", work=_full)
 SHEET_TOLERANCE = Job(name="sheet", work=_for_sheet)
+FOR_YIELD = Job(name="for yield", work=_for_yield, asked=lambda aside: aside.stage, slow=True)
 CHOICES = Job(name="choices", work=_choices, needs_figures=False)
 RUMMAGE = Job(name="rummage", work=_rummage, asked=lambda aside: aside.box, needs_figures=False)
 TUNER = Job(name="tuner", work=_tuner)

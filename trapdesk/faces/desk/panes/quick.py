@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator, Sequence
 
 from ....errors import BadInput, Fault, visible
+from ....services.figures import Figures
 from ..aside import Job, Task
 from ..lines import Line, wrapped
 from ..session import Session
@@ -19,11 +20,13 @@ EXAMPLES = (
     "tank f=10.05MHz C=47pF Q=180",
     "match Z=35-j120 f=7.1MHz",
     "line RG-58/U length=20m f=7.1MHz Z=35-j120",
+    "at 7.05MHz,14.2MHz",
 )
 ABOUT = (
     "tank: a parallel resonator from any few of f L C R RD Q B.",
     "match: a load of your own matched, network by network.",
     "line: what a line does to a load.",
+    "at: this antenna at single frequencies.",
 )
 
 
@@ -45,19 +48,31 @@ def _line(words: Sequence[str]) -> list[str]:
     return list(line_out.lines(line_out.answer_to(words)))
 
 
+def _at(figures: Figures | None, words: Sequence[str]) -> list[str]:
+    """Return the design at single frequencies, as `figures --at` has it."""
+    from ....services.solve import at_frequencies
+    from ...cli import frequencies_of
+    from ...layout import at_lines
+
+    if figures is None:
+        raise BadInput(Fault("at", "there_is_no_answer_for_this_design", help="mend the design first"))
+    return at_lines(figures, at_frequencies(figures, frequencies_of(words)))[1:]
+
+
 SUMS: dict[str, Callable[[Sequence[str]], list[str]]] = {"tank": _tank, "match": _match, "line": _line}
+VERBS = (*SUMS, "at")
 
 
 def _quick(task: Task) -> Iterator[list[str]]:
     verb, *words = task.asked.split() or [""]
-    if verb and verb not in SUMS:
+    if verb and verb not in VERBS:
         raise BadInput(
-            Fault(verb, "unknown_choice", limit=", ".join(SUMS), help=f"for example {EXAMPLES[0]}")
+            Fault(verb, "unknown_choice", limit=", ".join(VERBS), help=f"for example {EXAMPLES[0]}")
         )
     if verb and not words:
         example = next(text for text in EXAMPLES if text.startswith(verb))
         raise BadInput(Fault(verb, "nothing_is_given", help=f"for example {example}"))
-    yield SUMS[verb](words) if verb else []
+    yield [] if not verb else _at(task.figures, words) if verb == "at" else SUMS[verb](words)
 
 
 SUM = Job(name="sum", work=_quick, asked=lambda aside: aside.command, needs_figures=False)

@@ -10,7 +10,7 @@ from ...layout import WIDTH
 from ..aside import Job
 from ..lines import Line, padded, wrapped
 from ..session import Session
-from ..view import Sight, View
+from ..view import Acting, Sight, View
 
 _GAP = re.compile(r"(?<=\S) {2,}(?=\S)")
 _HANG = 4
@@ -69,13 +69,22 @@ def waiting_lines(session: Session, job: Job, width: int) -> list[Line]:
         return [[(piece, "stop")] for piece in wrapped(f"! {words}", width, 2)]
     if session.no_answer and job.needs_figures:
         return [[(piece, "stop")] for piece in wrapped(f"! {session.no_answer}", width, 2)]
-    return [[(padded(aside.progress or "working it out", width).rstrip(), "quiet")]]
+    return [[(padded(aside.progress(job.name) or "working it out", width).rstrip(), "quiet")]]
 
 
 def text_view(
-    name: str, letter: str, told: Callable[[Session], list[str]], jobs: tuple[Job, ...] = (), about: str = ""
+    name: str,
+    letter: str,
+    told: Callable[[Session], list[str]],
+    jobs: tuple[Job, ...] = (),
+    about: str = "",
+    keys: tuple[tuple[str, str], ...] = (),
+    press: Callable[[str, Acting], bool] | None = None,
 ) -> View:
-    """Return the view of a text, which is empty until there is something to tell."""
+    """Return the view of a text, which is empty until there is something to tell.
+
+    `keys` come before those that every text has.
+    """
 
     def lines(sight: Sight) -> list[Line]:
         session = sight.session
@@ -89,7 +98,15 @@ def text_view(
         return [[(piece, "quiet")] for piece in wrapped(visible(words, 400), sight.width)]
 
     return View(
-        name=name, letter=letter, lines=lines, broad=True, jobs=jobs, told=told, about=about, keys=READING
+        name=name,
+        letter=letter,
+        lines=lines,
+        broad=True,
+        jobs=jobs,
+        told=told,
+        about=about,
+        keys=(*keys, *READING),
+        press=press,
     )
 
 

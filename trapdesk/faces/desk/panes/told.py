@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from ..session import Session
-from .jobs import CHOICES, FULL_TOLERANCE, SHEET_TOLERANCE, TUNER
+from .jobs import CHOICES, FOR_YIELD, FULL_TOLERANCE, SHEET_TOLERANCE, TUNER
 
 
 def causes_told(session: Session) -> list[str]:
@@ -15,11 +15,17 @@ def causes_told(session: Session) -> list[str]:
         return []
     tolerance, advice = found
     head, *_ = out.lines(tolerance)
-    parts = (
-        [head], out.helps(advice), out.causes(tolerance), out.cutting(tolerance), out.yields(tolerance),
-        out.scatters(tolerance), out.varies(tolerance),
-    )  # fmt: skip
-    return _apart(*parts)
+    chosen = session.aside.found(FOR_YIELD.name) if session.aside.fresh(FOR_YIELD) else None
+    return _apart(
+        [head],
+        out.choice(chosen) if chosen is not None else [],
+        out.helps(advice),
+        out.causes(tolerance),
+        out.cutting(tolerance),
+        out.yields(tolerance),
+        out.scatters(tolerance),
+        out.varies(tolerance),
+    )
 
 
 def choices_told(session: Session) -> list[str]:
@@ -43,8 +49,11 @@ def down_told(session: Session) -> list[str]:
 
 
 def loads_told(session: Session) -> list[str]:
-    """Return map of reach and settings of the tuner, band by band."""
+    """Return map of reach and settings of the tuner, band by band; a load that was asked for first."""
+    from .... import units
+    from ....services.reach import reading
     from ... import feed_out
+    from ...layout import folded
 
     fed, figures = session.aside.found(TUNER.name), session.figures
     if fed is None or figures is None or set(fed.maps) != set(figures.bands):
@@ -55,6 +64,14 @@ def loads_told(session: Session) -> list[str]:
             list(feed_out.map_lines(figures, fed.maps[role], role)),
             list(feed_out.setting_lines(figures, fed.answers[role])),
         ]
+    if session.aside.load:
+        load = units.read_impedance(session.aside.load)
+        asked = [
+            line
+            for role, band in figures.bands.items()
+            for line in folded(f"  {band.name}: ", feed_out.reading_line(reading(fed.maps[role], load)))
+        ]
+        parts.insert(0, asked)
     return _apart(*parts)
 
 
@@ -96,5 +113,5 @@ def _apart(*parts: list[str]) -> list[str]:
     """Return parts of a text with an empty line between them."""
     lines: list[str] = []
     for part in parts:
-        lines += [*([""] if lines else []), *part]
+        lines += [*([""] if lines and part else []), *part]
     return lines
