@@ -175,7 +175,7 @@ mode = 3
         "site.shape: 'vie' is not one of flat, vee; did you mean vee?",
         'site.height: a date stands where a value is wanted; for example height = "10 m"',
         'station.reference: true or false stands where a value is wanted; for example reference = "50 ohm"',
-        "station.mode: a number stands where a word is wanted; one of carrier, CW, SSB, SSB processed",
+        "station.mode: a number stands where a word is wanted; one of carrier, data, CW, SSB, SSB processed",
         "bands.lower.high: '7.2 kHz' is less than 1.5 MHz; from 1.5 MHz up to 60 MHz",
         "station.swr_limit: '1' is not above 1; above 1 up to 20",
     ]
