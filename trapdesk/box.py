@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass, fields
 from typing import ClassVar
 
+from .engine.cable_types import CABLES
 from .engine.conductors import MATERIALS
 from .fields import choice, quantity, text
 
@@ -70,33 +71,40 @@ class Wire:
         return max(self.diameter + 2 * self.coating, CLOSEST * self.diameter)
 
 
+def _constant(dimension: str, label: str, help: str, **limits: object) -> float | None:
+    help = f"{help} As listed for its type unless set."
+    return quantity(dimension, label, help, default=None, optional=True, **limits)
+
+
+CONSTANTS = ("impedance", "velocity_factor", "outside", "shield", "loss", "loss_at")
+"""What must be known of a cable: given, or listed for its type."""
+
+
 @dataclass(frozen=True, kw_only=True)
 class Cable:
-    """Coaxial cable to wind a trap of."""
+    """Coaxial cable to wind a trap of; its constants are given, or those listed for its type."""
 
     table: ClassVar[str] = "cables"
     name: str = text("cable", "What it is called.")
-    impedance: float = quantity(
+    type: str | None = choice(
+        CABLES, "type", "Type of cable; lists differ, measure yours.", default=None, optional=True
+    )
+    impedance: float | None = _constant(
         "resistance", "impedance", "Characteristic impedance.", low=10, high=300, example="50 ohm"
     )
-    velocity_factor: float = quantity(
+    velocity_factor: float | None = _constant(
         "ratio", "velocity factor", "Speed on it over that of light.", low=0.3, high=1.0, example="0.66"
     )
-    outside: float = quantity(
+    outside: float | None = _constant(
         "length", "outside diameter", "Over the jacket.", low=5e-4, high=0.05, example="5 mm"
     )
-    shield: float = quantity(
-        "length",
-        "shield diameter",
-        "Over the braid, under the jacket.",
-        low=3e-4,
-        high=0.05,
-        example="3.6 mm",
+    shield: float | None = _constant(
+        "length", "shield diameter", "Over the braid.", low=3e-4, high=0.05, example="3.6 mm"
     )
-    loss: float = quantity(
+    loss: float | None = _constant(
         "loss_per_length", "loss", "Matched loss at `loss_at`.", low=0.0, high=10, example="0.073 dB/m"
     )
-    loss_at: float = quantity(
+    loss_at: float | None = _constant(
         "frequency", "loss given at", "Frequency of the loss.", low=1e6, high=3e9, example="30 MHz"
     )
     voltage: float | None = quantity(
@@ -112,6 +120,21 @@ class Cable:
     length: float = quantity(
         "length", "length", "How much of it there is.", low=0.0, high=1e4, example="10 m"
     )
+
+    @property
+    def missing(self) -> tuple[str, ...]:
+        """The constants that neither it nor the list of its type says."""
+        listed = CABLES[self.type] if self.type else None
+        known = {"outside": listed and listed.outside, "shield": listed and listed.shield}
+        names = [n for n in CONSTANTS if getattr(self, n) is None and not known.get(n, listed)]
+        half = self.loss is not None and self.loss_at is None and "loss_at" not in names
+        return tuple(names + ["loss_at"] * half)
+
+    @property
+    def over_jacket(self) -> float:
+        """Outside diameter, its own or the listed one, in m."""
+        listed = CABLES[self.type].outside if self.type else None
+        return self.outside or listed or 0.0
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -160,8 +183,16 @@ class Capacitor:
 
     table: ClassVar[str] = "capacitors"
     name: str = text("capacitor", "What it is called.", default="")
+    print: str = text(
+        "print", "What is printed on it, read for what is not said by itself: 470J 3kV.", default=""
+    )
     capacitance: float = quantity(
-        "capacitance", "capacitance", "What is printed on it.", low=1e-13, high=1e-7, example="47 pF"
+        "capacitance",
+        "capacitance",
+        "Capacitance, when no print says it.",
+        low=1e-13,
+        high=1e-7,
+        example="47 pF",
     )
     tolerance: float = quantity(
         "ratio", "tolerance", "How far it may be off.", default=0.05, low=0.0, high=0.9, example="5 %"

@@ -9,8 +9,9 @@ import unicodedata
 from dataclasses import MISSING, fields
 from typing import Any
 
-from . import units
-from .box import TABLES, Box, Cable, Core
+from . import prints, units
+from .box import TABLES, Box, Cable, Capacitor, Core
+from .engine.cable_types import CABLES
 from .errors import BadInput, Fault, FileFault, visible
 from .fields import Declared, declared
 from .store import BOX_ENDING, read_file, shelf
@@ -112,7 +113,9 @@ class _Reader:
 
     def thin_formers(self, found: dict[str, tuple[Any, ...]]) -> None:
         """Drop formers on which no wire or cable of the box could lie, and name each."""
-        thinnest = min([w.diameter for w in found["wires"]] + [c.outside for c in found["cables"]], default=0)
+        thinnest = min(
+            [w.diameter for w in found["wires"]] + [c.over_jacket for c in found["cables"]], default=0
+        )
         for former in found["formers"]:
             if former.diameter <= thinnest:
                 row = self.places[id(former)]
@@ -147,6 +150,8 @@ class _Reader:
                 self.fault(place, "duplicate", known[names[key]].label, help="keep one of both")
             else:
                 values[names[key]] = self.value(known[names[key]], key, value, place)
+        if kind is Capacitor:
+            self.printed(values, where)
         for field in fields(kind):
             if field.name not in values and field.default is MISSING:
                 spec = known[field.name]
@@ -157,6 +162,25 @@ class _Reader:
         self.places[id(entry)] = where
         self.together(entry, where)
         return entry if len(self.faults) == before else None
+
+    def printed(self, values: dict[str, Any], where: str) -> None:
+        """Take from a capacitor's print what is not said by itself."""
+        if not values.get("print"):
+            return
+        place = f"{where}: print"
+        try:
+            said = prints.read(values["print"], place)
+        except BadInput as refused:
+            self.faults += refused.faults
+            values.setdefault("capacitance", 1e-12)
+            return
+        if "capacitance" in values:
+            self.fault(place, "duplicate", "the capacitance", help="keep one of print and capacitance")
+        values["capacitance"] = said.capacitance
+        if said.tolerance is not None:
+            values.setdefault("tolerance", max(said.tolerance))
+        if said.voltage is not None:
+            values.setdefault("voltage", said.voltage)
 
     def value(self, spec: Declared, key: str, given: Any, where: str) -> Any:
         """Return one value; after a fault anything, for the entry is dropped."""
@@ -212,7 +236,11 @@ class _Reader:
         if isinstance(entry, Core):
             order("inner", entry.inner, "outer", entry.outer)
         if isinstance(entry, Cable):
-            order("shield", entry.shield, "outside", entry.outside)
+            for key in entry.missing:
+                help = f"{_example(key, declared(Cable)[key])}, or type, one of {', '.join(CABLES)}"
+                self.fault(f"{where}: {key}", "missing", help=help)
+            if entry.shield is not None and entry.outside is not None:
+                order("shield", entry.shield, "outside", entry.outside)
 
 
 def _example(key: str, spec: Declared) -> str:

@@ -19,7 +19,7 @@ WORTH_LOSS, WORTH_WIDTH = 0.003, 0.03
 
 def lines(design: Design, found: Choices) -> list[str]:
     """Return both curves as tables, the present choice marked, each with its short answer."""
-    out = folded("", f"{visible(design.title, 40)}: estimates, with the trap's Q held at {found.q:.0f}.")
+    out = folded("", f"{visible(design.title, 40)}: estimates, with the Q of coil and capacitor held.")
     out += ["", *_table("Where the trap resonates", "MHz", found.by_resonance, _frequency)]
     out += ["", *_answer(found.by_resonance, "resonance", lambda p: megahertz(p.resonance, 4))]
     out += ["", *_table("How large L over C, the resonance kept", "pF", found.by_ratio, _capacitance)]
@@ -38,20 +38,20 @@ def _capacitance(point: Point) -> str:
 def _table(title: str, unit: str, points: Sequence[Point], value: Any) -> list[str]:
     bands = next((list(p.bands.values()) for p in points if p.bands), [])
     out = [f"{title}, > marks the present choice"]
-    out += [f"  {'':>9}{'':>8}" + "".join(f"{visible(b.name, 12):>20}" for b in bands)]
-    heads = "".join(f"{'lost':>9}{'usable':>11}" for _ in bands)
-    out += [f"  {unit:>9}{'uH':>8}{heads}{'volts':>9}{'inner':>8}{'end':>7}"]
+    out += [f"  {'':>8}{'':>7}" + "".join(f"{visible(b.name, 12):>18}" for b in bands)]
+    heads = "".join(f"{'lost':>8}{'usable':>10}" for _ in bands)
+    out += [f"  {unit:>8}{'uH':>7}{heads}{'volts':>8}{'inner':>8}{'end':>8}"]
     for point in points:
         mark = "> " if point.present else "  "
-        head = f"{mark}{value(point):>9}{point.inductance * 1e6:>8.2f}"
+        head = f"{mark}{value(point):>8}{point.inductance * 1e6:>7.2f}"
         if not point.bands:
             out += [f"{head}   no wire lengths meet the aims"]
             continue
         cells = "".join(
-            f"{100 * b.loss:>7.1f} %" + (f"{b.width / 1e3:>7.0f} kHz" if b.width else f"{'none':>11}")
+            f"{100 * b.loss:>6.1f} %" + (f"{b.width / 1e3:>6.0f} kHz" if b.width else f"{'none':>10}")
             for b in point.bands.values()
         )
-        out += [f"{head}{cells}{point.volts:>7.0f} V{point.inner:>6.2f} m{point.end:>5.2f} m"]
+        out += [f"{head}{cells}{point.volts:>6.0f} V{point.inner:>6.2f} m{point.end:>6.2f} m"]
     return out
 
 
@@ -115,7 +115,8 @@ def document(design: Design, found: Choices) -> dict[str, Any]:
         "format": FORMAT,
         "kind": "choices",
         "title": design.title,
-        "q": found.q,
+        "coil_q": found.coil_q,
+        "capacitor_q": found.capacitor_q,
         "by_resonance": [_point(p) for p in found.by_resonance],
         "by_ratio": [_point(p) for p in found.by_ratio],
     }

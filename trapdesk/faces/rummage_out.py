@@ -98,6 +98,9 @@ def capacitors_text(row: Row, box: Box) -> str:
 def coil_text(row: Row) -> str:
     """Return what is wound on what."""
     on = f"{visible(row.wire, 30)} on {visible(row.former, 30)}"
+    if row.kind == "cable":
+        low, high = row.wound.turns_range or (row.turns, row.turns)
+        return f"wind {row.wound.wind} turns of {on}, then trim: {low:.1f} to {high:.1f} are needed"
     text = f"{turns_text(row.turns)} turns of {on}"
     pitch = getattr(row.trap.coil, "pitch", None)
     return f"{text}, turn to turn {1e3 * pitch:.2f} mm" if row.kind == "solenoid" and pitch else text
@@ -137,11 +140,21 @@ def _row(place: int, row: Row, first: Row, box: Box) -> list[str]:
 
 
 def _parts(row: Row, box: Box) -> str:
-    with_ = f"with {capacitors_text(row, box)}"
+    if row.kind == "cable":
+        with_ = _TAKEN[str(row.trap.coil.terminals)]
+    else:
+        with_ = f"with {capacitors_text(row, box)}"
     if len(row.pieces) > 1:
         with_ += f", together {about(row.capacitance, 'capacitance', 3)}"
     size = f"{1e3 * row.length:.0f} mm long, {1e3 * row.diameter:.0f} mm wide"
-    return f"{with_}; {size}, {row.wire_length:.2f} m of wire a trap, Q about {about(row.q, 'ratio')}"
+    what = "cable" if row.kind == "cable" else "wire"
+    return f"{with_}; {size}, {row.wire_length:.2f} m of {what} a trap, Q about {about(row.q, 'ratio')}"
+
+
+_TAKEN = {
+    "shield": "the antenna goes on across the shield alone",
+    "series": "the antenna goes on across shield and inner conductor in series",
+}
 
 
 def _band(band: BandSummary) -> str:
@@ -163,7 +176,7 @@ def adjustment(row: Row) -> str:
         "toroid": ("turns bunched", "spread"),
     }
     if row.kind not in how:
-        return "nothing to move once joined but its ends trimmed: build it low"
+        return "built low and trimmed: cutting cable raises it, nothing lowers it again"
     down, up = (
         f"{100 * part:.1f}" if part < MUCH else f"over {100 * MUCH:.0f}" for part in (row.down, row.up)
     )
@@ -173,6 +186,8 @@ def adjustment(row: Row) -> str:
 
 
 def _stock(row: Row) -> str:
+    if row.kind == "cable":
+        return "no capacitors"
     left = int(row.spare)
     return "no capacitor left over" if left < 1 else f"{left} capacitor{'s' * (left > 1)} left over"
 
@@ -191,7 +206,7 @@ def _shortage(box: Box, short: Shortage | None) -> list[str]:
             out += folded("  short: ", LACKS[name])
     if short.nearest is not None:
         row = short.nearest
-        near = f"{coil_text(row)}, with {capacitors_text(row, box)}"
+        near = coil_text(row) + (f", with {capacitors_text(row, box)}" if row.pieces else "")
         out += folded("  nearest: ", f"{near}; it would bear {about(row.volts, 'voltage')} peak")
     for table, part in short.parts:
         out += folded("  enough: ", part_text(table, part))
@@ -248,6 +263,9 @@ def _document_row(place: int, row: Row, first: Row, box: Box) -> dict[str, Any]:
             {"row": i + 1, "capacitance" + SUFFIXES["capacitance"]: box.capacitors[i].capacitance}
             for i in row.pieces
         ],
+        "terminals": str(row.trap.coil.terminals) if row.kind == "cable" else None,
+        "turns_range": row.wound.turns_range,
+        "wind_turns": row.wound.wind,
         "joined": row.way.format(*(f"#{i + 1}" for i in row.pieces)),
         "capacitance_f": row.capacitance,
         "tolerance": row.tolerance,
@@ -268,7 +286,6 @@ def _document_row(place: int, row: Row, first: Row, box: Box) -> dict[str, Any]:
         "cost": {f.name: float(getattr(row.cost, f.name)) for f in fields(row.cost)}
         | {"total": float(row.cost.total)},
         "reason": reason(row, first),
-        "trap": inputs_of(row.trap),
     }
 
 

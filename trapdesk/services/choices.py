@@ -11,10 +11,9 @@ from ..engine.resonator import impedance
 from ..engine.stress import Stress, stress
 from ..errors import NoAnswer
 from .port_grid import BandSummary, summary
-from .response import Response
 from .rummage import wanted_resonance
 from .solve import hang
-from .trap import build
+from .trap import BuiltTrap, build
 
 BELOW, ABOVE, PLACES = 0.05, 0.02, 12
 """How far from the upper aim the trap's resonance is tried, relative, and at how many places."""
@@ -24,20 +23,27 @@ RATIOS = np.geomspace(1 / 4, 4, 9)
 
 @dataclass(frozen=True, kw_only=True)
 class Tank:
-    """A trap of which only resonance, capacitance and Q matter; its resistance goes with the root of f."""
+    """A trap of which only resonance, capacitance and both Q matter; the coil's goes with the root of f."""
 
     resonance: float
     capacitance: float
-    q: float
+    coil_q: float
+    capacitor_q: float
 
     @property
     def inductance(self) -> float:
         """Inductance, in H."""
         return 1 / ((2 * np.pi * self.resonance) ** 2 * self.capacitance)
 
-    def _circuit(self, frequency: np.ndarray) -> tuple[float, float, np.ndarray]:
+    def _circuit(self, frequency: np.ndarray) -> tuple[float, float, np.ndarray, np.ndarray]:
         reactance = 2 * np.pi * self.resonance * self.inductance
-        return self.inductance, self.capacitance, reactance / self.q * np.sqrt(frequency / self.resonance)
+        coil = reactance / self.coil_q * np.sqrt(frequency / self.resonance)
+        return (
+            self.inductance,
+            self.capacitance,
+            coil,
+            1 / (2 * np.pi * frequency * self.capacitance * self.capacitor_q),
+        )
 
     def impedance(self, frequency: np.ndarray) -> np.ndarray:
         """Return the impedance at frequencies, in ohm."""
@@ -74,11 +80,12 @@ class Point:
 
 @dataclass(frozen=True, kw_only=True)
 class Choices:
-    """Both curves, each with the present choice in it; the trap's Q is held at the present `q`."""
+    """Both curves, each with the present choice in it; the Q of coil and capacitor are held as they are."""
 
     by_resonance: tuple[Point, ...]
     by_ratio: tuple[Point, ...]
-    q: float
+    coil_q: float
+    capacitor_q: float
 
 
 def choices(design: Design) -> Choices:
@@ -93,22 +100,29 @@ def choices(design: Design) -> Choices:
     places = np.linspace(aim * (1 - BELOW), aim * (1 + ABOVE), PLACES)
     # A place as good as the present one only repeats it.
     places = [f for f in places if abs(f / present - 1) > 1e-3]
-    c = built.capacitance
+    inductance, c, coil, capacitor = (float(x) for x in built.circuit(np.float64(present)))
+    w = 2 * np.pi * present
+    coil_q = w * inductance / coil if coil else np.inf
+    capacitor_q = 1 / (w * c * capacitor) if capacitor else np.inf
+
+    def other(resonance: float, capacitance: float) -> Point:
+        here = Tank(
+            resonance=float(resonance), capacitance=float(capacitance), coil_q=coil_q, capacitor_q=capacitor_q
+        )
+        return _point(design, here, here)
+
+    now = Tank(resonance=present, capacitance=c, coil_q=coil_q, capacitor_q=capacitor_q)
+    as_is = _point(design, now, built, present=True)
     return Choices(
-        by_resonance=tuple(
-            _point(design, Tank(resonance=float(f), capacitance=c, q=built.q), f == present)
-            for f in sorted([*places, present])
-        ),
-        by_ratio=tuple(
-            _point(design, Tank(resonance=present, capacitance=float(c / np.sqrt(r)), q=built.q), r == 1.0)
-            for r in RATIOS
-        ),
-        q=built.q,
+        by_resonance=tuple(as_is if f == present else other(f, c) for f in sorted([*places, present])),
+        by_ratio=tuple(as_is if r == 1.0 else other(present, c / np.sqrt(r)) for r in RATIOS),
+        coil_q=coil_q,
+        capacitor_q=capacitor_q,
     )
 
 
-def _point(design: Design, tank: Tank, present: bool) -> Point:
-    """Return one choice: wires solved, both bands looked at."""
+def _point(design: Design, tank: Tank, trap: Tank | BuiltTrap, *, present: bool = False) -> Point:
+    """Return one choice: wires solved with its trap, both bands looked at."""
     of = {
         "resonance": tank.resonance,
         "inductance": tank.inductance,
@@ -116,15 +130,12 @@ def _point(design: Design, tank: Tank, present: bool) -> Point:
         "present": present,
     }
     try:
-        wire = hang(design, tank)
+        wire = hang(design, trap)
     except NoAnswer as error:
         return Point(**of, bands={}, why=error.code)
     return Point(
         **of,
         inner=wire.inner,
         end=wire.end,
-        bands={
-            role: summary(design, role, Response(wire, band, tank, design.station.reference))
-            for role, band in design.bands.items()
-        },
+        bands={role: summary(design, role, wire, trap) for role, _ in design.bands.items()},
     )

@@ -16,8 +16,9 @@ from ..engine.ports import Ports, chebyshev_nodes, polynomial_weights, terminate
 from ..engine.wire import Wire, plan, solve_ports
 from ..errors import NoAnswer
 from ..fields import SOLVE
+from .feed import Feeding, View, path_of
 from .response import MARGIN, Response, behave
-from .solve import WANTED_POINTS, hang
+from .solve import hang, wanted_frequencies
 
 NODES_INNER, NODES_END, NODES_BAND = 3, 4, 3
 STEPS = 20
@@ -155,25 +156,25 @@ class PortGrid:
             inner=inner,
             end=end,
             bands={
-                role: summary(self.design, role, Response(wire, band, trap, self._reference, ports))
-                for role, band in self.bands.items()
-                for ports in (self.ports(role, inner, end),)
+                role: summary(self.design, role, wire, trap, self.ports(role, inner, end))
+                for role in self.bands
             },
         )
 
-    @property
-    def _reference(self) -> float:
-        return self.design.station.reference
 
-
-def summary(design: Design, role: str, response: Response) -> BandSummary:
-    """Return a band in a few numbers, by the same rules as the full figures."""
-    band, station = response.band, design.station
+def summary(design: Design, role: str, wire: Wire, trap: Any, ports: Ports | None = None) -> BandSummary:
+    """Return a band in a few numbers, by the rules of the full figures; its ports are solved if need be."""
+    band, station = dict(design.bands.items())[role], design.station
+    path = path_of(station)
+    looking = None if path is None else lambda aim, z: View(path=path, setting=path.set_at(aim, z))
+    response = Response(wire, band, trap, station.reference, ports, looking)
+    frequency = wanted_frequencies(band)
     wanted = behave(
-        response.ports.at(np.append(np.linspace(*band.wanted, WANTED_POINTS), band.target)),
-        response.trap,
+        response.ports.at(np.append(frequency, band.target)),
+        trap,
         station.reference,
         station.power,
+        None if path is None else Feeding(path, response.look),
     )
     usable = response.usable(station.swr_limit)
     return BandSummary(
@@ -181,7 +182,7 @@ def summary(design: Design, role: str, response: Response) -> BandSummary:
         name=band.name,
         loss=float(wanted.trap[-1]),
         width=None if usable is None else usable[1] - usable[0],
-        wanted=band.wanted[1] - band.wanted[0],
+        wanted=float(np.ptp(frequency)),
         worst_swr=float(wanted.swr[:-1].max()),
         dip=response.dip[0],
         resonance=response.resonance,

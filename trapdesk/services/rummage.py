@@ -10,15 +10,18 @@ from typing import Any
 import numpy as np
 
 from ..box import Box
+from ..capacitor_kinds import GivenCapacitor
+from ..coil_kinds import GivenCoil
 from ..design import Design
 from ..errors import NoAnswer
 from ..fields import SOLVE
-from ..parts import GivenCapacitor, GivenCoil, Trap
+from ..parts import Trap
+from .coils import Wound
 from .combos import PIECES, WAYS, Combos, combos
 from .port_grid import Outcome, PortGrid
 from .scoring import Cost, Surface, cost
 from .trap import BuiltTrap, build
-from .winders import Offer, solenoid_offers, toroid_offers
+from .winders import Offer, cable_offers, solenoid_offers, toroid_offers
 
 REACTANCE = (70.0, 240.0, 640.0)
 """Coil reactance at resonance within which traps are sought: least, middle, most. [ohm]"""
@@ -27,8 +30,8 @@ SURFACE_SIZES = 7
 BIN = 0.005
 """Of combinations this near each other in capacitance only the best two are tried with every coil."""
 BEST_OF_PAIR = 4
-NEAR = 0.5
-"""How many points the coarse cost may be off between traps of one pair."""
+NEAR = 0.2
+"""How many points the coarse cost may be off."""
 FIRST_LOOK, FIRST_ROWS = 24, 3
 """After so many pairs a few rows are shown, before all the others are looked into."""
 BODY_ROOM = 0.02
@@ -41,6 +44,7 @@ class Row:
 
     `pieces` are places in the box's list of capacitors, joined as `way` says. `down` and `up` are how far the
     finished trap's resonance can still be moved each way, `off` how far it may be off as built: parts of it.
+    `voltage` is what may lie across the trap, None where no rating is known.
     """
 
     trap: Trap
@@ -63,6 +67,7 @@ class Row:
     resonance: float
     inductance: float
     q: float
+    wound: Wound
     outcome: Outcome
     cost: Cost
 
@@ -133,13 +138,13 @@ def take(design: Design, row: Row) -> Design:
     return replace(design, antenna=replace(design.antenna, trap=row.trap))
 
 
-def tank(resonance: float, capacitance: float, q: float, body: float = 0.0) -> Trap:
-    """Return a trap known by its resonance, capacitance and Q."""
-    capacitor = GivenCapacitor(capacitance=capacitance)
+def tank(resonance: float, capacitance: float, q: float, body: float = 0.0, loss: float = 0.0) -> Trap:
+    """Return a trap known by its resonance, capacitance, coil Q and capacitor loss, 1/Q."""
+    capacitor = GivenCapacitor(capacitance=capacitance, q=1 / loss if loss else None)
     return Trap(resonance=resonance, body=body, coil=GivenCoil(q=q), capacitor=capacitor)
 
 
-MAKERS = {"solenoid": solenoid_offers, "toroid": toroid_offers}
+MAKERS = {"solenoid": solenoid_offers, "cable": cable_offers, "toroid": toroid_offers}
 """Who winds what: each takes the box, two places in it, the combinations, and what ranks them."""
 
 
@@ -154,13 +159,18 @@ class Search:
         self.range = [1 / (2 * math.pi * self.wanted * x) for x in REACTANCE]
         self.grid = self._grid()
         most, least = self.range[0], self.range[-1]
-        sizes = np.geomspace(least, most, SURFACE_SIZES)
+        # Chebyshev's places in the logarithm, the polynomial through them is true to the ends.
+        ends = np.log([least, most])
+        sizes = np.exp(
+            ends.mean() - np.cos(np.pi * np.arange(SURFACE_SIZES) / (SURFACE_SIZES - 1)) * np.ptp(ends) / 2
+        )
         losses = np.array(SURFACE_LOSSES)
         outcomes = [[self.grid.outcome(self._tank(c, 1 / q)) for q in losses] for c in sizes]
-        self.surface = Surface(sizes, losses, outcomes)
+        places = {role: band.target / self.wanted for role, band in design.bands.items()}
+        self.surface = Surface(sizes, losses, outcomes, places)
 
-    def _tank(self, capacitance: float, q: float) -> BuiltTrap:
-        return build(tank(self.wanted, float(capacitance), float(q), self.body))
+    def _tank(self, capacitance: float, q: float, loss: float = 0.0) -> BuiltTrap:
+        return build(tank(self.wanted, float(capacitance), float(q), self.body, loss))
 
     def _grid(self) -> PortGrid:
         """Return the wires of every trap in range, the range made narrower where a trap has no wires."""
@@ -180,7 +190,7 @@ class Search:
         if not len(every):
             return every
         inside = np.clip(every.capacitance, self.range[-1], self.range[0])
-        losses, fillings, volts = self.surface.at(inside, 1 / 200 + every.loss)
+        losses, fillings, volts = self.surface.at(inside, np.array(1 / 200), every.loss)
         points = cost(
             losses=losses,
             fillings=fillings,
@@ -204,13 +214,17 @@ class Search:
         """Return every former or core with every wire, the thickest wires and the largest formers first."""
         wires = sorted(range(len(box.wires)), key=lambda j: -box.wires[j].diameter)
         formers = sorted(range(len(box.formers)), key=lambda i: -box.formers[i].diameter)
-        return [("solenoid", i, j) for j in wires for i in formers] + [
-            ("toroid", i, j) for j in wires for i in range(len(box.cores))
+        return [
+            *(("solenoid", i, j) for j in wires for i in formers),
+            *(("cable", i, j) for j in range(len(box.cables)) for i in formers),
+            *(("toroid", i, j) for j in wires for i in range(len(box.cores))),
         ]
 
     def offers(self, box: Box, pair: tuple[str, int, int], joined: Combos) -> list[Offer]:
         """Return the best few traps of a pair, by rising coarse cost."""
         kind, i, j = pair
+        if kind != "cable" and not len(joined):
+            return []
         limits = (self.range[-1], self.range[0])
         found = list(MAKERS[kind](box, i, j, joined, self.wanted, self.surface, limits))
         self.tried += sum(offer.tried for offer in found)
@@ -219,8 +233,6 @@ class Search:
     def run(self, rows: int) -> Iterator[Found]:
         """Look into every pair, then into the most promising ones closely, and yield after each row found."""
         joined = self.combos(self.box)
-        if not len(joined):
-            return
         waiting: list[list[Offer]] = []
         found: list[Row] = []
         total = done = 0
@@ -246,8 +258,8 @@ class Search:
                         yield self._so_far(done, len(pairs), found[:rows], False)
                 del waiting[:FIRST_ROWS]
         for offers in waiting:
-            # Coarse costs are good to a small part of a point: what is a whole one behind cannot come in.
-            if len(found) >= rows and offers[0].points > found[rows - 1].cost.total + 1.0:
+            # What is further behind than coarse costs may be off cannot come in.
+            if len(found) >= rows and offers[0].points > found[rows - 1].cost.total + 2 * NEAR:
                 break
             done += 1
             if closely(offers):
@@ -272,22 +284,15 @@ class Search:
         )  # fmt: skip
 
     def best(self, offers: list[Offer], box: Box) -> Row | None:
-        """Return the best of a pair's offers, its coil solved exactly."""
-        close = []
+        """Return the best of a pair's offers, by coils solved exactly."""
+        found = None
         for offer in offers:
-            if offer.points > offers[0].points + NEAR:
+            if found is not None and offer.points > float(found.cost.total) + NEAR:
                 break
-            quick = self._tank(offer.total_capacitance, 1 / offer.loss)
-            try:
-                outcome = self.grid.outcome(quick)
-            except NoAnswer:
-                continue
-            close.append((float(self._cost(offer, outcome).total), offer))
-        for _, offer in sorted(close, key=lambda pair: pair[0]):
             row = self.row(offer, box)
-            if row is not None:
-                return row
-        return None
+            if row is not None and (found is None or row.cost.total < found.cost.total):
+                found = row
+        return found
 
     def _cost(self, offer: Offer, outcome: Outcome) -> Cost:
         bands = outcome.bands.values()
@@ -310,15 +315,9 @@ class Search:
         made = offer.make(box, self.wanted)
         if made is None:
             return None
-        coil, offer = made
+        trap, built, offer = made
         body = max(self.body, math.ceil((offer.length + BODY_ROOM) * 100 - 1e-9) / 100)
-        capacitor = GivenCapacitor(
-            capacitance=offer.capacitance,
-            q=1 / offer.capacitor_loss,
-            voltage=offer.voltage if offer.rated else None,
-        )
-        trap = Trap(resonance=SOLVE, body=body, coil=coil, capacitor=capacitor)
-        built = build(trap)
+        trap = replace(trap, body=body, weather=self.design.antenna.trap.weather)
         try:
             outcome = self.grid.outcome(built)
         except NoAnswer:
@@ -329,9 +328,9 @@ class Search:
             trap=trap,
             kind=offer.kind,
             former=offer.former_name(box),
-            wire=box.wires[offer.pair[2]].name,
+            wire=offer.wire_name(box),
             turns=offer.turns,
-            way=WAYS[offer.way],
+            way=WAYS[offer.way] if offer.pieces else "",
             pieces=offer.pieces,
             capacitance=offer.capacitance,
             tolerance=offer.tolerance,
@@ -346,10 +345,11 @@ class Search:
             resonance=built.resonance,
             inductance=built.inductance,
             q=built.q,
+            wound=built.wound,
             outcome=outcome,
             cost=self._cost(offer, outcome),
         )
 
     def volts(self, capacitance: float) -> float:
         """Return about how many volts a trap of this capacitance bears at its worst."""
-        return float(self.surface.at(np.array([capacitance]), np.array([1 / 200]))[2][0])
+        return float(self.surface.at(np.array([capacitance]), np.array([1 / 200]), np.zeros(1))[2][0])

@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, fields
 from typing import Any
 
 import numpy as np
+
+from ..engine.ports import polynomial_weights
 
 WIDTH_FROM, WIDTH_COST = 0.75, 10.0
 VOLTS_FROM, VOLTS_COST, UNRATED_COST = 0.6, 20.0, 4.0
@@ -74,35 +77,70 @@ def cost(
 
 
 class Surface:
-    """Loss, filling and volts of traps of one resonance over capacitance and loss, from a few outcomes."""
+    """Loss, filling and volts of traps of one resonance over capacitance and coil loss, from a few outcomes.
 
-    def __init__(self, capacitance: np.ndarray, loss: np.ndarray, outcomes: list[list[Any]]) -> None:
+    A capacitor's loss counts on each band as the coil's, but by the square of how far below resonance it is:
+    so much less of the current goes through it.
+    """
+
+    def __init__(
+        self, capacitance: np.ndarray, loss: np.ndarray, outcomes: list[list[Any]], places: dict[str, float]
+    ) -> None:
+        """Take outcomes of every capacitance and coil loss; `places` are the aims over the resonance."""
         self._c, self._loss = np.log(capacitance), loss
-        roles = list(outcomes[0][0].bands)
-        self._tables = {
-            name: [np.array([[pick(o.bands[r]) for o in row] for row in outcomes]) for r in roles]
-            for name, pick in (
-                ("loss", lambda b: b.loss / (1 - b.loss)),
-                ("filling", lambda b: 10.0 if b.width is None else min(b.wanted / b.width, 10.0)),
-                ("volts", lambda b: np.log(b.peak_voltage)),
-            )
-        }
+        self._weights = [places[role] ** 2 for role in outcomes[0][0].bands]
+        self._bands = []
+        for role in outcomes[0][0].bands:
+            table = [[o.bands[role] for o in row] for row in outcomes]
 
-    def at(self, capacitance: np.ndarray, loss: np.ndarray) -> tuple[list[np.ndarray], list[Any], np.ndarray]:
-        """Return losses and fillings, one each a band, and the worst voltage, linear between the outcomes."""
-        rows, down = _place(self._c, np.log(capacitance))
-        columns, right = _place(self._loss, loss)
+            def of(pick: Callable[[Any], float], table: list[list[Any]] = table) -> np.ndarray:
+                return np.array([[pick(b) for b in row] for row in table])
 
-        def between(t: np.ndarray) -> np.ndarray:
-            left = (1 - down) * t[rows, columns] + down * t[rows + 1, columns]
-            return (1 - right) * left + right * (
-                (1 - down) * t[rows, columns + 1] + down * t[rows + 1, columns + 1]
+            self._bands.append(
+                (
+                    np.log(of(lambda b: b.loss / (1 - b.loss)) / loss),
+                    np.log(of(lambda b: b.peak_voltage)),
+                    of(lambda b: b.width or 0.0),
+                    table[0][0].wanted,
+                )
             )
 
-        odds = [np.maximum(between(t), 0.0) for t in self._tables["loss"]]
-        fillings = [between(t) for t in self._tables["filling"]]
-        volts = np.exp(np.max([between(t) for t in self._tables["volts"]], axis=0))
-        return [o / (1 + o) for o in odds], fillings, volts
+    def at(
+        self, capacitance: np.ndarray, coil: np.ndarray, capacitor: np.ndarray
+    ) -> tuple[list[np.ndarray], list[np.ndarray], np.ndarray]:
+        """Return losses and fillings, one each a band, and the worst voltage; both losses as 1/Q."""
+        across = polynomial_weights(self._c, np.log(capacitance))
+        losses, fillings, volts = [], [], []
+        for weight, (odds, voltage, width, wanted) in zip(self._weights, self._bands, strict=True):
+            loss = np.broadcast_to(coil + weight * capacitor, across.shape[:1])
+            column, part = _place(self._loss, loss)
+
+            def between(
+                table: np.ndarray,
+                weights: np.ndarray = across,
+                column: np.ndarray = column,
+                part: np.ndarray = part,
+            ) -> np.ndarray:
+                rows = np.arange(column.size)
+                found = weights @ table
+                return (1 - part) * found[rows, column] + part * found[rows, column + 1]
+
+            odd = np.exp(between(odds)) * loss
+            losses.append(odd / (1 + odd))
+            volts.append(np.exp(between(voltage)))
+            # Where some have no width at all a polynomial would swing: there it goes straight.
+            wide = between(width) if width.all() else between(width, _straight(self._c, np.log(capacitance)))
+            fillings.append(wanted / np.maximum(wide, 0.1 * wanted))
+        return losses, fillings, np.max(volts, axis=0)
+
+
+def _straight(nodes: np.ndarray, at: np.ndarray) -> np.ndarray:
+    """Return the weights (at, nodes) of values that go straight from node to node."""
+    index, part = _place(nodes, at)
+    weights = np.zeros((index.size, nodes.size))
+    weights[np.arange(index.size), index] = 1 - part
+    weights[np.arange(index.size), index + 1] = part
+    return weights
 
 
 def _place(nodes: np.ndarray, at: np.ndarray) -> tuple[np.ndarray, np.ndarray]:

@@ -64,13 +64,13 @@ def shortage(search: Search) -> Shortage:
 def _first(search: Search, box: Box, only: tuple[int | None, int | None] = (None, None)) -> Any:
     """Return the best row of a box, of one former or wire alone when so asked; None without any."""
     joined = search.combos(box)
-    if not len(joined):
-        return None
     former, wire = only
     offers = []
     for pair in search.pairs(box):
         kind, i, j = pair
-        if (former is not None and (kind != "solenoid" or i != former)) or (wire is not None and j != wire):
+        if (former is not None and (kind == "toroid" or i != former)) or (
+            wire is not None and (kind == "cable" or j != wire)
+        ):
             continue
         if of_pair := search.offers(box, pair, joined):
             offers.append(of_pair)
