@@ -1,0 +1,517 @@
+"""Rummage: combinations by hand, rows against the full solve, ranking against trying everything by force."""
+
+import json
+import math
+from dataclasses import replace
+from itertools import combinations_with_replacement
+
+import numpy as np
+import pytest
+from scipy.optimize import brentq
+
+from trapdesk import store
+from trapdesk.box import Box, Capacitor, Core, Former, Wire
+from trapdesk.box_read import find_box
+from trapdesk.capacitor_kinds import GivenCapacitor
+from trapdesk.errors import NoAnswer
+from trapdesk.faces import cli, rummage_out
+from trapdesk.fields import SOLVE
+from trapdesk.parts import Trap
+from trapdesk.services.box_parts import capacitor_part, solenoid_part
+from trapdesk.services.coils import COIL_DOUBT
+from trapdesk.services.combos import PIECES, WAYS, combos
+from trapdesk.services.port_grid import PortGrid
+from trapdesk.services.rummage import rummage, take, tank, wanted_resonance
+from trapdesk.services.scoring import cost
+from trapdesk.services.solve import solve
+from trapdesk.services.trap import build
+from trapdesk.services.winders import END_ROOM, SPACINGS, SPREAD, TAIL
+
+
+def preset(name="40-20-vee"):
+    return store.preset(name)[0]
+
+
+def finished(design, box, rows=20):
+    return list(rummage(design, box, rows))[-1]
+
+
+PIPE = Former(name="pipe", diameter=0.04, length=0.08, count=2)
+ENAMELLED = Wire(name="enamelled", diameter=1.6e-3, coating=5e-5, length=20.0)
+DISC = Capacitor(capacitance=47e-12, voltage=3e3, count=2)
+SMALL = Box(formers=(PIPE,), wires=(ENAMELLED,), capacitors=(DISC,))
+
+
+# Combinations ---------------------------------------------------------------------------------------------
+
+
+def by_hand(kinds):
+    """Return every combination as (way, pieces sorted): C, loss, tolerance, volts; by plain circuit rules."""
+
+    def beside(a, b):
+        c = a[0] + b[0]
+        mixed = [(a[0] * x + b[0] * y) / c for x, y in zip(a[1:3], b[1:3], strict=True)]
+        return (c, *mixed, min(a[3], b[3]))
+
+    def after(a, b):
+        c = 1 / (1 / a[0] + 1 / b[0])
+        mixed = [c * (x / a[0] + y / b[0]) for x, y in zip(a[1:3], b[1:3], strict=True)]
+        # The charge is the same on both: the volts of each go with 1/C.
+        return (c, *mixed, min(a[3] * a[0] / c, b[3] * b[0] / c))
+
+    one = [(k.capacitance, 1 / k.q, k.tolerance, k.voltage) for k in kinds]
+    held = [int(k.count) for k in kinds]
+    found = {(0, (i,)): one[i] for i in range(len(kinds))}
+    for i, j in combinations_with_replacement(range(len(kinds)), 2):
+        found[1, (i, j)] = beside(one[i], one[j])
+        found[2, (i, j)] = after(one[i], one[j])
+        for k in range(len(kinds)):
+            found[5, (i, j, k)] = beside(after(one[i], one[j]), one[k])
+            found[6, (i, j, k)] = after(beside(one[i], one[j]), one[k])
+    for i, j, k in combinations_with_replacement(range(len(kinds)), 3):
+        found[3, (i, j, k)] = beside(beside(one[i], one[j]), one[k])
+        found[4, (i, j, k)] = after(after(one[i], one[j]), one[k])
+    return {
+        key: value for key, value in found.items() if all(2 * key[1].count(i) <= held[i] for i in set(key[1]))
+    }
+
+
+KINDS = (
+    Capacitor(capacitance=22e-12, tolerance=0.05, voltage=1e3, q=800, count=6),
+    Capacitor(capacitance=47e-12, tolerance=0.1, voltage=3e3, q=2000, count=2),
+    Capacitor(capacitance=100e-12, tolerance=0.02, voltage=500.0, q=300, count=4),
+    Capacitor(capacitance=68e-12, tolerance=0.02, voltage=500.0, q=300, count=1),
+)
+
+
+def test_combinations_are_those_by_hand():
+    found, expected = combos(KINDS, 0.0, 1.0), by_hand(KINDS)
+    assert len(found) == len(expected)
+    for n in range(len(found)):
+        pieces = tuple(int(m) for m in found.members[n] if m >= 0)
+        c, loss, tolerance, volts = expected[int(found.way[n]), pieces]
+        assert len(pieces) == PIECES[found.way[n]]
+        assert found.capacitance[n] == pytest.approx(c, rel=1e-12)
+        assert found.loss[n] == pytest.approx(loss, rel=1e-12)
+        assert found.tolerance[n] == pytest.approx(tolerance, rel=1e-12)
+        assert found.voltage[n] == pytest.approx(volts, rel=1e-12)
+        assert found.spare[n] == min(KINDS[i].count - 2 * pieces.count(i) for i in pieces)
+
+
+def test_a_single_piece_is_not_enough_for_two_traps():
+    assert not len(combos(KINDS[3:], 0.0, 1.0))
+    assert not len(combos((), 0.0, 1.0))
+
+
+def test_worst_case_tolerance_is_that_of_the_corners():
+    way = WAYS.index("({0} - {1}) + {2}")
+    found = combos(KINDS[:3], 0.0, 1.0)
+    a, b, c = KINDS[:3]
+    n = next(n for n in range(len(found)) if found.way[n] == way and list(found.members[n]) == [0, 1, 2])
+
+    def value(sign):
+        one, two, three = (k.capacitance * (1 + 1e-3 * sign * k.tolerance) for k in (a, b, c))
+        return one * two / (one + two) + three
+
+    slope = (value(1) - value(-1)) / 2e-3 / value(0)
+    assert found.tolerance[n] == pytest.approx(slope, rel=1e-4)
+
+
+# Figures of a row -----------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("name", store.presets())
+def test_interpolated_wires_are_the_solved_ones(name):
+    design = preset(name)
+    wanted = wanted_resonance(design)
+    traps = [
+        build(tank(wanted, 1 / (2 * math.pi * wanted * x), 200.0, design.antenna.trap.body))
+        for x in (70.0, 640.0)
+    ]
+    grid = PortGrid(design, traps)
+    for x, q in ((100.0, 120.0), (260.0, 300.0), (550.0, 80.0)):
+        trap = tank(wanted, 1 / (2 * math.pi * wanted * x), q, design.antenna.trap.body)
+        quick = grid.outcome(build(trap))
+        full = solve(replace(design, antenna=replace(design.antenna, trap=trap)))
+        # Between solved wires the matrices are a polynomial; what is left is far below any doubt.
+        assert quick.inner == pytest.approx(full.lengths.inner, abs=2e-3)
+        assert quick.end == pytest.approx(full.lengths.end, abs=4e-3)
+        for role, band in full.bands.items():
+            of = quick.bands[role]
+            assert of.loss == pytest.approx(band.shares.trap, rel=2e-3)
+            assert of.peak_voltage == pytest.approx(band.worst_stress.peak_voltage, rel=2e-3)
+            assert of.worst_swr == pytest.approx(band.worst_swr, rel=3e-3)
+            assert (of.width is None) == (band.width is None)
+            if band.width:
+                assert of.width == pytest.approx(band.width, rel=6e-3)
+
+
+def test_rows_are_confirmed_by_the_full_solve():
+    design = preset()
+    found = finished(design, find_box(), 6)
+    assert [row.kind for row in found.rows][:6] == ["solenoid"] * 6
+    costs = [float(row.cost.total) for row in found.rows[:6]]
+    assert costs == sorted(costs)
+    for row in found.rows[:6:2]:
+        full = solve(take(design, row))
+        assert full.trap.resonance == pytest.approx(found.resonance, rel=2e-6)
+        assert full.design.antenna.trap.body >= full.trap.coil.length
+        for role, band in full.bands.items():
+            assert row.outcome.bands[role].loss == pytest.approx(band.shares.trap, rel=4e-3)
+            assert row.outcome.bands[role].peak_voltage == pytest.approx(
+                band.worst_stress.peak_voltage, rel=3e-3
+            )
+            assert row.outcome.bands[role].width == pytest.approx(band.width, rel=6e-3)
+
+
+def test_a_row_holds_to_the_box():
+    design, box = preset(), find_box()
+    for row in finished(design, box).rows:
+        held = {f.name: f for f in (*box.formers, *box.cores)}[row.former]
+        wire = {w.name: w for w in (*box.wires, *box.cables)}[row.wire]
+        assert 2 * row.wire_length <= wire.length
+        for i in set(row.pieces):
+            assert 2 * row.pieces.count(i) <= box.capacitors[i].count
+        assert row.voltage is None or row.volts <= row.voltage
+        if row.kind == "solenoid":
+            assert row.length + 2 * END_ROOM <= held.length
+            assert row.trap.coil.pitch >= wire.closest * (1 - 1e-6)
+            assert 2 * row.turns == int(2 * row.turns)
+
+
+def test_taking_a_row_changes_the_trap_alone():
+    design = preset()
+    row = finished(design, SMALL).rows[0]
+    taken = take(design, row)
+    assert taken.antenna.trap == row.trap
+    assert replace(taken, antenna=design.antenna) == design
+    assert wanted_resonance(taken) == pytest.approx(wanted_resonance(design), rel=2e-6)
+
+
+def test_a_set_length_stays():
+    design = preset()
+    fixed = replace(
+        design, antenna=replace(design.antenna, lengths=replace(design.antenna.lengths, inner=5.1))
+    )
+    row = finished(fixed, SMALL).rows[0]
+    full = solve(take(fixed, row))
+    assert row.outcome.inner == 5.1
+    assert row.outcome.end == pytest.approx(full.lengths.end, abs=4e-3)
+
+
+# Ranking by force -----------------------------------------------------------------------------------------
+
+
+def small_box(seed):
+    random = np.random.default_rng(seed)
+    diameters = random.choice([0.04, 0.05, 0.063, 0.075, 0.09], 3, replace=False)
+    wires = random.choice([1.25e-3, 1.4e-3, 1.6e-3, 1.8e-3, 2e-3], 3, replace=False)
+    values = random.choice([15, 22, 27, 33, 39, 47, 56, 68, 82, 100], 6, replace=False)
+    counts = random.permutation([2, 2, 2, 1, 1, 1])
+    return Box(
+        formers=tuple(
+            Former(name=f"f{i}", diameter=float(d), length=float(random.uniform(0.032, 0.042)), count=2)
+            for i, d in enumerate(diameters)
+        ),
+        wires=tuple(
+            Wire(
+                name=f"w{i}", diameter=float(d), coating=float(0.03 * d), length=float(random.uniform(4, 12))
+            )
+            for i, d in enumerate(wires)
+        ),
+        capacitors=tuple(
+            Capacitor(
+                capacitance=float(c) * 1e-12,
+                tolerance=float(random.choice([0.02, 0.05, 0.1])),
+                voltage=float(random.choice([500, 1000, 2000, 3000])),
+                q=float(random.choice([500, 1000, 2000])),
+                count=float(n),
+            )
+            for c, n in zip(values, counts, strict=True)
+        ),
+    )
+
+
+def force(design, box):
+    """Return the best of each former and wire as (cost, former, wire, turns, pieces), all by full solves."""
+    wanted, found, seen = wanted_resonance(design), {}, set()
+    joined = {key: value for key, value in by_hand(box.capacitors).items() if 6e-12 < value[0] < 400e-12}
+    for former in box.formers:
+        for wire in box.wires:
+            for spacing in SPACINGS:
+                needed = asked(wanted, former, wire, spacing * wire.closest)
+                for (way, pieces), (c, _, tolerance, volts) in joined.items():
+                    turns = next((n for n, least in needed.items() if least <= c), None)
+                    key = (former.name, wire.name, turns, way, pieces)
+                    # Two turns that are enough already are none; another spacing may come to the same coil.
+                    if turns in (None, 2.0) or key in seen:
+                        continue
+                    seen.add(key)
+                    one = forced(design, box, wanted, former, wire, turns, way, pieces, tolerance, volts)
+                    if one is not None:
+                        key = (former.name, wire.name)
+                        found[key] = min(found.get(key, one), one)
+    return sorted(found.values())
+
+
+def asked(wanted, former, wire, pitch):
+    """Return what capacitance each number of half turns asks for, by the solved coil."""
+    found = {}
+    for turns in np.arange(2.0, (former.length - 2 * END_ROOM) / pitch, 0.5):
+        coil = solenoid_part(former, wire, pitch, float(turns))
+        try:
+            found[float(turns)] = build(
+                Trap(resonance=wanted, coil=coil, capacitor=GivenCapacitor(capacitance=SOLVE))
+            ).fitted
+        except NoAnswer:
+            break
+    return found
+
+
+def forced(design, box, wanted, former, wire, up, way, pieces, tolerance, volts):
+    room = former.length - 2 * END_ROOM
+    capacitor = capacitor_part(box.capacitors, way, pieces)
+
+    def trap(turns, pitch):
+        return Trap(resonance=SOLVE, coil=solenoid_part(former, wire, pitch, turns), capacitor=capacitor)
+
+    def high(turns, pitch):
+        return math.log(build(trap(turns, pitch)).resonance / wanted)
+
+    if high(up, room / up) < 0 or high(up, wire.closest) > 0:
+        return None
+    pitch = brentq(lambda p: high(up, p), wire.closest, room / up, xtol=1e-7)
+    made = trap(up, pitch)
+    coil = build(made).wound
+    if 2 * (coil.wire_length + 2 * TAIL) > wire.length:
+        return None
+    body = max(design.antenna.trap.body, math.ceil((coil.length + 0.02) * 100) / 100)
+    taken = replace(design, antenna=replace(design.antenna, trap=replace(made, body=body)))
+    try:
+        full = solve(taken)
+    except NoAnswer:
+        return None
+    reactance = 2 * math.pi * wanted * full.trap.inductance
+    worst = max(b.worst_stress.peak_voltage for b in full.bands.values())
+    if worst > volts or not 70 <= reactance <= 640:
+        return None
+    # How far the resonance moves with the pitch, by the solved coil itself.
+    slope = (
+        (high(up, pitch * 1.005) - high(up, pitch / 1.005)) / (2 * math.log(1.005))
+        if pitch > 1.005 * wire.closest
+        else (high(up, pitch * 1.01) - high(up, pitch)) / math.log(1.01)
+    )
+    off = tolerance / 2 + COIL_DOUBT / 2
+    down = slope * math.log(pitch / wire.closest)
+    rise = slope * math.log(max(min(SPREAD, room / coil.length), 1.0))
+    points = cost(
+        losses=[b.shares.trap for b in full.bands.values()],
+        fillings=[
+            math.inf if b.width is None else (w[1] - w[0]) / b.width
+            for b, w in ((b, dict(design.bands.items())[r].wanted_edges) for r, b in full.bands.items())
+        ],
+        volts_share=worst / volts,
+        rated=True,
+        length=coil.length,
+        diameter=coil.diameter,
+        pieces=len(pieces),
+        uncovered=max(off - down, 0) + max(off - rise, 0),
+        spare=min(box.capacitors[i].count - 2 * pieces.count(i) for i in pieces),
+    )
+    return float(points.total), former.name, wire.name, up, pieces
+
+
+@pytest.mark.parametrize(("name", "seed"), [("40-20-vee", 11), ("20-10-flat", 12), ("80-40-flat", 13)])
+def test_ranking_is_that_of_trying_everything(name, seed):
+    design, box = preset(name), small_box(seed)
+    expected = force(design, box)[:5]
+    rows = finished(design, box).rows[:5]
+    assert len(expected) >= 3
+    assert [(r.former, r.wire, r.turns, r.pieces) for r in rows] == [one[1:] for one in expected]
+    for row, one in zip(rows, expected, strict=True):
+        assert float(row.cost.total) == pytest.approx(one[0], abs=0.1)
+
+
+# Progress and shortage ------------------------------------------------------------------------------------
+
+
+def test_rows_appear_as_they_are_found_and_stopping_keeps_them():
+    progress = rummage(preset(), find_box(), 20)
+    first = next(progress)
+    assert len(first.rows) == 1
+    assert not first.finished
+    second = next(progress)
+    progress.close()
+    assert len(second.rows) == 2
+    assert first.rows[0] in second.rows
+    assert solve(take(preset(), second.rows[0])).trap is not None
+
+
+def test_an_interrupt_keeps_what_was_found():
+    progress = rummage(preset(), find_box(), 20)
+
+    def interrupted():
+        yield next(progress)
+        yield next(progress)
+        raise KeyboardInterrupt
+
+    found = rummage_out.last(interrupted())
+    assert len(found.rows) == 2
+    assert "Stopped early" in "\n".join(rummage_out.lines(preset(), find_box(), found))
+
+
+def short(box, name="40-20-vee"):
+    found = finished(preset(name), box)
+    assert not found.rows
+    assert found.finished
+    return found.shortage
+
+
+def test_small_box_is_enough():
+    assert finished(preset(), SMALL).rows
+
+
+def enough(box, part):
+    """Return whether a box becomes enough with one part more, put into its list."""
+    table, entry = part
+    return bool(finished(preset(), replace(box, **{table: (*getattr(box, table), entry)})).rows)
+
+
+@pytest.mark.parametrize(
+    ("changes", "lacks"),
+    [
+        ({"capacitors": (replace(DISC, count=1),)}, "pieces"),
+        ({"capacitors": (replace(DISC, voltage=300.0),)}, "rating"),
+        ({"formers": (replace(PIPE, length=0.024),)}, "former"),
+        ({"wires": (replace(ENAMELLED, length=1.0),)}, "wire"),
+    ],
+)
+def test_what_is_short_is_named_and_one_part_mends_it(changes, lacks):
+    box = replace(SMALL, **changes)
+    found = short(box)
+    assert lacks in found.lacks
+    assert found.nearest is not None
+    assert found.parts
+    for part in found.parts:
+        assert enough(box, part)
+    words = "\n".join(rummage_out.lines(preset(), box, finished(preset(), box)))
+    assert rummage_out.LACKS[lacks].split()[1] in words
+    assert "enough:" in words
+
+
+@pytest.mark.parametrize("missing", ["formers", "wires", "capacitors"])
+def test_a_list_with_nothing_in_it_is_named(missing):
+    box = replace(SMALL, **{missing: ()})
+    found = short(box)
+    assert found.missing == (missing,)
+    assert found.parts
+    assert all(enough(box, part) for part in found.parts)
+
+
+def test_a_former_thinner_than_the_wire_is_left_alone():
+    box = replace(SMALL, formers=(PIPE, Former(name="straw", diameter=1.5e-3 + 2e-3, length=0.2, count=2)))
+    rows = finished(preset(), replace(box, wires=(replace(ENAMELLED, diameter=4e-3), ENAMELLED))).rows
+    assert rows
+    assert all(row.former != "straw" or row.wire == "enamelled" for row in rows)
+
+
+def test_a_ring_core_is_wound_with_whole_turns():
+    core = Core(name="ring", inductance_index=4.9e-9, outer=0.05, inner=0.032, height=0.014, q=200, count=2)
+    kinds = tuple(Capacitor(capacitance=c * 1e-12, voltage=3e3, count=4) for c in (22, 33, 47, 56))
+    box = Box(wires=(replace(ENAMELLED, diameter=0.8e-3),), cores=(core,), capacitors=kinds)
+    row = finished(preset(), box).rows[0]
+    assert row.kind == "toroid"
+    assert row.turns == int(row.turns)
+    # The default of 1.5 pF that the winding adds lies beside the capacitor.
+    total = row.capacitance + 1.5e-12
+    wanted = 1 / ((2 * math.pi * wanted_resonance(preset())) ** 2 * total)
+    assert row.turns**2 * core.inductance_index == pytest.approx(wanted, rel=0.052)
+    assert row.resonance == pytest.approx(wanted_resonance(preset()), rel=1e-6)
+
+
+def test_a_design_without_a_trap_has_nothing_to_look_for():
+    design = preset()
+    bare = replace(
+        design, antenna=replace(design.antenna, trap=None, lengths=replace(design.antenna.lengths, end=None))
+    )
+    with pytest.raises(NoAnswer, match="no trap to build"):
+        next(rummage(bare, SMALL))
+
+
+# Command line ---------------------------------------------------------------------------------------------
+
+
+def run(capsys, *arguments):
+    code = cli.main(["rummage", *arguments])
+    out = capsys.readouterr()
+    return code, out.out, out.err
+
+
+BOX = """format = 1
+kind = "box"
+[[formers]]
+name = "pipe"
+diameter = "40 mm"
+length = "8 cm"
+count = 2
+[[wires]]
+name = "enamelled"
+diameter = "1.6 mm"
+coating = "0.05 mm"
+length = "20 m"
+[[capacitors]]
+capacitance = "47 pF"
+voltage = "3 kV"
+count = 2
+"""
+
+
+def test_command_line_prints_rows_with_reasons(capsys, tmp_path):
+    path = tmp_path / "box.toml"
+    path.write_text(BOX, "utf-8")
+    code, out, err = run(capsys, "40-20-vee", "--box", str(path))
+    assert (code, err) == (0, "")
+    assert out.isascii()
+    assert max(map(len, out.splitlines())) <= 79
+    assert "turns of enamelled on pipe" in " ".join(out.split())
+    assert "first: least cost of all" in out
+
+
+def test_command_line_json(capsys, tmp_path):
+    path = tmp_path / "box.toml"
+    path.write_text(BOX, "utf-8")
+    code, out, _ = run(capsys, "40-20-vee", "--box", str(path), "--json")
+    found = json.loads(out)
+    assert code == 0
+    row = found["rows"][0]
+    assert (row["rank"], row["kind"], row["former"]) == (1, "solenoid", "pipe")
+    assert row["resonance_hz"] == pytest.approx(14.05e6, rel=1e-5)
+    assert set(row["bands"]) == {"upper", "lower"}
+    assert found["shortage"] is None
+
+
+def test_a_bad_entry_does_not_lose_the_rest(capsys, tmp_path):
+    path = tmp_path / "box.toml"
+    path.write_text(BOX + '[[capacitors]]\ncapacitance = "4x7"\n', "utf-8")
+    code, out, err = run(capsys, "40-20-vee", "--box", str(path))
+    assert code == 2
+    assert "turns of enamelled" in out
+    assert "capacitors, row 2: capacitance" in err
+
+
+def test_nothing_buildable_is_no_answer(capsys, tmp_path):
+    path = tmp_path / "box.toml"
+    path.write_text(
+        BOX.replace('"47 pF"\nvoltage = "3 kV"\ncount = 2', '"47 pF"\nvoltage = "300 V"'), "utf-8"
+    )
+    code, out, err = run(capsys, "40-20-vee", "--box", str(path))
+    assert code == 1
+    assert "enough:" in out
+    assert "no two equal traps" in err
+
+
+@pytest.mark.parametrize("rows", ["0", "1000"])
+def test_rows_outside_are_refused(capsys, rows):
+    code, out, err = run(capsys, "40-20-vee", "--rows", rows)
+    assert (code, out) == (2, "")
+    assert "1 to 200" in err
