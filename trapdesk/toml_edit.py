@@ -216,19 +216,24 @@ def header(table: Path) -> str:
 
 def _after_siblings(scan: _Scan, table: Path, gone: list[tuple[int, int]]) -> int | None:
     """Return where a new table of a list goes: after the tables before it in that list; None for no list."""
-    place = next((n for n in reversed(range(len(table))) if table[n].isdecimal()), None)
-    if place is None:
+    first = next((n for n, name in enumerate(table) if name.isdecimal()), None)
+    if first is None:
         return None
-    above = table[:place]
-    ends = [
-        end
-        for path, start, end in (
-            *((h.path, h.start, h.end) for h in scan.headers),
-            *((e.path, e.start, e.end) for e in scan.entries if not e.inline),
-        )
-        if path[: len(above)] == above and not any(s <= start < e for s, e in gone)
+    spans = [
+        *((h.path, h.start, h.end) for h in scan.headers),
+        *((e.path, e.start, e.end) for e in scan.entries if not e.inline),
     ]
-    return max(ends, default=None)
+    # The list itself, else the part it is in: what comes last of it.
+    for length in range(len(table) - 1, max(first - 2, 0), -1):
+        above = table[:length]
+        ends = [
+            end
+            for path, start, end in spans
+            if path[:length] == above and not any(s <= start < e for s, e in gone)
+        ]
+        if ends:
+            return max(ends)
+    return None
 
 
 def _gone(scan: _Scan, prefixes: Set[Path]) -> list[tuple[int, int]]:
