@@ -13,7 +13,7 @@ from trapdesk.faces.desk.session import Session
 from trapdesk.faces.desk.terminal import Glyphs, Look
 from trapdesk.services.solve import solve
 
-CHARACTERS = {"space": " ", "plus": "+", "minus": "-", "question_mark": "?"}
+CHARACTERS = {"space": " ", "plus": "+", "minus": "-", "question_mark": "?", "slash": "/"}
 PLAIN = Look(glyphs=Glyphs.ASCII, theme="plain")
 LONGEST = 20
 """Seconds after which a test gives up waiting."""
@@ -21,8 +21,8 @@ BRAILLE = Look(glyphs=Glyphs.BRAILLE, theme="dark")
 
 
 @asynccontextmanager
-async def opened(size=(80, 24), *, document=None, look=PLAIN, solver=solve, wait=True):
-    desk = Desk(Session(document or store.find()), look, solver)
+async def opened(size=(80, 24), *, document=None, look=PLAIN, solver=solve, wait=True, kept=None, **more):
+    desk = Desk(Session(document or store.find()), look, solver, kept=kept, **more)
     async with desk.run_test(size=size) as pilot:
         if wait:
             await asyncio.wait_for(desk.settled(), LONGEST)

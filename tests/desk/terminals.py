@@ -9,6 +9,7 @@ import struct
 import sys
 import termios
 import time
+from codecs import getincrementaldecoder
 from fcntl import ioctl
 from pathlib import Path
 
@@ -50,6 +51,7 @@ class Terminal:
         self._stream = pyte.Stream(self.screen)
         self.sent = b""
         self._pending = ""
+        self._decode = getincrementaldecoder("utf-8")("replace").decode
         self.times: list[float] = []
         self.began = time.monotonic()
         self.pid, self.end = pty.fork()
@@ -85,7 +87,7 @@ class Terminal:
             got += len(data)
             self.sent += data
             self.times.append(time.monotonic())
-            text = self._pending + data.decode("utf-8", errors="replace")
+            text = self._pending + self._decode(data)
             cut = _UNFINISHED.search(text)
             self._pending = text[cut.start() :] if cut else ""
             self._stream.feed(_PRIVATE.sub("", text[: cut.start()] if cut else text))

@@ -28,7 +28,7 @@ from .panes.drawers import DrawersPane
 from .panes.frame import Foot, Heading
 from .session import Session
 from .solving import Solved, Solver, Solving
-from .terminal import Look, look
+from .terminal import Glyphs, Look, as_started, look
 from .themes import THEMES
 from .thin import Thin
 
@@ -90,7 +90,7 @@ class Desk(App[None]):
 
     def on_mount(self) -> None:
         """Paint, then begin to solve and to journal."""
-        self.app_resume_signal.subscribe(self, lambda app: self.thin.forget())
+        self.app_resume_signal.subscribe(self, lambda app: self._deeds.redraw())
         if not self.is_headless:
             end_by_signals(self)
         self.call_after_refresh(self._begin)
@@ -105,7 +105,7 @@ class Desk(App[None]):
         """Give a key to whom it is for: nothing has the focus, so that keys are dealt with in their order."""
         if self.foot.asking:
             self.foot.key(event)
-            self._repaint_foot()
+            self.repaint_foot()
         elif not (self.middle.key(event) or self.drawers.key(event)):
             return
         event.stop()
@@ -115,13 +115,18 @@ class Desk(App[None]):
         """Give what is pasted to whom it is for."""
         if self.foot.asking:
             self.foot.paste(event.text)
-            self._repaint_foot()
+            self.repaint_foot()
         else:
             self.drawers.paste(event.text)
 
     def action_do(self, deed: str) -> None:
         """Do what a key stands for."""
         getattr(self._deeds, deed)()
+
+    @property
+    def bare(self) -> bool:
+        """Whether the terminal shows nothing but ASCII for certain."""
+        return self.drawn.glyphs is Glyphs.ASCII
 
     @property
     def middle(self) -> Middle:
@@ -175,9 +180,10 @@ class Desk(App[None]):
         """Hand the session to every pane."""
         self.query_one(Heading).repaint(self.session)
         self.middle.repaint()
-        self._repaint_foot()
+        self.repaint_foot()
 
-    def _repaint_foot(self) -> None:
+    def repaint_foot(self) -> None:
+        """Fit the foot to the row and the view in sight."""
         self.foot.plotting = self.middle.plotting
         self.foot.repaint(self.session, self.drawers.row, self.drawers.editing)
 
@@ -190,7 +196,7 @@ class Desk(App[None]):
     def on_drawers_pane_moved(self) -> None:
         """Tell of the row the cursor came to."""
         self.foot.say("")
-        self.repaint() if self.middle.helping else self._repaint_foot()
+        self.repaint() if self.middle.helping else self.repaint_foot()
 
     def on_drawers_pane_said(self, message: DrawersPane.Said) -> None:
         """Show what the inputs have to tell."""
@@ -200,7 +206,7 @@ class Desk(App[None]):
         """Show a note."""
         self.foot.say(text, refused)
         self.query_one(Heading).repaint(self.session)
-        self._repaint_foot()
+        self.repaint_foot()
 
     def ask(
         self,
@@ -211,7 +217,7 @@ class Desk(App[None]):
     ) -> None:
         """Ask in the foot for a line, or for a single key when there is no text to start from."""
         self.foot.ask(question, answer, text, live)
-        self._repaint_foot()
+        self.repaint_foot()
 
     def close(self) -> None:
         """End the desk."""
@@ -230,7 +236,9 @@ def run(argument: str | None) -> int:
         print("the desk needs a terminal; trapdesk figures FILE prints the figures", file=sys.stderr)
         return 2
     kept = journal.Journal(folder=journal.folder(os.environ))
-    drawn = look(os.environ, chosen.theme)
+    drawn = look(as_started(os.environ), chosen.theme)
+    # The library would answer this by turning even the terminal's own colours to black.
+    os.environ.pop("NO_COLOR", None)
     desk = Desk(Session(document), drawn, chosen=chosen, kept=kept, trouble=trouble)
     desk.run()
     return desk.return_code or 0

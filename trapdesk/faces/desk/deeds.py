@@ -78,10 +78,12 @@ class Deeds:
     def next_view(self) -> None:
         """Show the next view."""
         self._desk.middle.turn(1)
+        self._desk.repaint_foot()
 
     def view_before(self) -> None:
         """Show the view before."""
         self._desk.middle.turn(-1)
+        self._desk.repaint_foot()
 
     def help(self) -> None:
         """Show help, or take it away."""

@@ -26,6 +26,13 @@ def width_of(line: Line) -> int:
     return sum(cell_len(text) for text, _ in line)
 
 
+def shown_on(text: str, bare: bool) -> str:
+    """Return text as a terminal can show it: a bare one gets a question mark for what is not ASCII."""
+    if not bare or text.isascii():
+        return text
+    return "".join(c if c.isascii() else "?" * cell_len(c) for c in text)
+
+
 def padded(text: str, width: int) -> str:
     """Return text cut or filled to so many cells; what is cut ends in a tilde."""
     length = cell_len(text)
@@ -90,6 +97,11 @@ class Lines(Widget):
         """Cells a line may take."""
         return max(0, self.size.width - len(self.edge))
 
+    @property
+    def bare(self) -> bool:
+        """Whether the terminal shows nothing but ASCII for certain."""
+        return getattr(self.app, "bare", False)
+
     def on_resize(self, event: Resize) -> None:
         """Tell of the new size."""
         self.post_message(self.Resized())
@@ -145,7 +157,7 @@ class Lines(Widget):
             named = self.get_component_rich_style(f"lines--{name}", partial=True)
             if self.stale and name not in ("cursor", "edit"):
                 named = self.get_component_rich_style("lines--quiet", partial=True)
-            segments.append(Segment(text, base + named))
+            segments.append(Segment(shown_on(text, self.bare), base + named))
         width = self.size.width
         strip = Strip(segments).adjust_cell_length(width, base)
         if more and width > 2:

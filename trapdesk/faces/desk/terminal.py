@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from enum import StrEnum
+from pathlib import Path
 
 
 class Glyphs(StrEnum):
@@ -52,6 +53,20 @@ def look(environment: Mapping[str, str], theme: str = "") -> Look:
     colourless = bool(environment.get("NO_COLOR")) or name.startswith(_COLOURLESS)
     glyphs = Glyphs.ASCII if bare or not _speaks_unicode(environment) else Glyphs.BRAILLE
     return Look(glyphs=glyphs, theme="plain" if colourless else theme or "own")
+
+
+def as_started(environment: Mapping[str, str]) -> dict[str, str]:
+    """Return an environment with the locale this process was started in.
+
+    In the plain C locale Python sets LC_CTYPE to UTF-8 for itself, whatever the terminal shows: PEP 538.
+    """
+    try:
+        started = Path("/proc/self/environ").read_bytes().split(b"\0")
+    except OSError:
+        return dict(environment)
+    was = [pair for pair in started if pair.startswith(b"LC_CTYPE=")]
+    given = {"LC_CTYPE": was[0].partition(b"=")[2].decode("ascii", "replace")} if was else {"LC_CTYPE": ""}
+    return dict(environment) | given
 
 
 def _speaks_unicode(environment: Mapping[str, str]) -> bool:
