@@ -19,7 +19,7 @@ _HANG = 4
 def text_lines(texts: Sequence[str], width: int, left: int = 0) -> list[Line]:
     """Return plain lines as lines of a pane, in so many columns; tables start at the column `left`."""
     lines: list[Line] = []
-    shown = ((text, True) for text in texts) if width >= WIDTH else _paragraphs(texts)
+    shown = ((t, _is_table(t)) for t in texts) if width >= WIDTH else _paragraphs(texts)
     for paragraph, table in shown:
         head = not paragraph.startswith(" ") and (not lines or not any(text for text, _ in lines[-1]))
         style = "head" if head else "text"

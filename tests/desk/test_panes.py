@@ -1,0 +1,483 @@
+"""The views that are worked out aside, by keyboard: the desk answers as the command line does."""
+
+import asyncio
+import io
+import threading
+from contextlib import redirect_stdout
+from dataclasses import replace
+
+import pytest
+
+from tests.desk.screens import LONGEST, go_to, opened, pressed, screen, settled, text, typed
+from trapdesk import store
+from trapdesk.faces.cli import main
+from trapdesk.faces.desk import form
+from trapdesk.faces.desk.arrange import LETTERS, VIEWS, arrangement, names
+from trapdesk.faces.desk.aside import Job
+from trapdesk.faces.desk.lines import width_of
+from trapdesk.faces.desk.optional import PARTS
+from trapdesk.faces.desk.panes.jobs import FOR_YIELD, FULL_TOLERANCE, RUMMAGE, TOLERANCE
+from trapdesk.faces.desk.panes.texts import text_lines
+
+PRESET = "40-20-vee"
+HEIGHT = "site.height"
+
+
+async def worked_out(desk, pilot):
+    """Wait until all that the views on the screen want is there."""
+    await settled(desk, pilot)
+    await asyncio.wait_for(desk.session.aside.settled(), LONGEST)
+    await pilot.pause()
+
+
+async def shown(desk, pilot, letter):
+    await pressed(desk, pilot, letter)
+    await worked_out(desk, pilot)
+
+
+def pane(desk):
+    """Return the whole text of the pane that turns, also what is scrolled out of sight."""
+    return desk.query_one("#below" if desk.screen.has_class("tall") else "#answer").plain()
+
+
+def said(*words):
+    """Return what a verb prints; the desk, where it runs, has a standard output of its own."""
+    with redirect_stdout(io.StringIO()) as printed:
+        assert main(list(words)) == 0
+    assert len(lines_of(printed.getvalue())) > 5
+    return printed.getvalue()
+
+
+def lines_of(whole):
+    """Return the lines of a text without their indentation, marks and gaps; layout aside."""
+    return [" ".join(line.replace(">", " ").split()) for line in whole.splitlines() if line.strip()]
+
+
+def missing(whole, within):
+    """Return the lines of a text that are not in another, however that breaks them."""
+    there = " ".join(lines_of(within))
+    return [line for line in lines_of(whole) if line not in there]
+
+
+BOX = """
+format = 1
+kind = "box"
+title = "[red]small[/red] box"
+
+[[formers]]
+name = "pipe"
+diameter = "40 mm"
+length = "30 cm"
+count = 2
+
+[[wires]]
+name = "copper"
+diameter = "1.6 mm"
+length = "20 m"
+
+[[wires]]
+name = "thin copper"
+diameter = "1 mm"
+length = "20 m"
+
+[[capacitors]]
+capacitance = "47 pF"
+voltage = "3 kV"
+count = 4
+
+[[capacitors]]
+capacitance = "22 pF"
+voltage = "3 kV"
+count = 4
+"""
+
+
+@pytest.fixture
+def small_box(tmp_path):
+    """Return a box in which is little to look through."""
+    file = tmp_path / "small.toml"
+    file.write_text(BOX)
+    return file
+
+
+async def rummaged(desk, pilot, box):
+    """Show what a box can build, asked for by keys."""
+    await pressed(desk, pilot, "B", "b", "ctrl+u")
+    await typed(desk, pilot, str(box), "enter")
+    await worked_out(desk, pilot)
+
+
+VERBS = [
+    ("R", ("tolerance", PRESET)),
+    ("C", ("choices", PRESET)),
+    ("D", ("tuner", PRESET)),
+    ("P", ("sheet", PRESET)),
+    ("M", ("readings", PRESET)),
+]
+
+
+@pytest.mark.parametrize(("letter", "words"), VERBS)
+async def test_a_view_says_what_its_verb_prints(letter, words):
+    printed = said(*words)
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, letter)
+        assert missing(printed, pane(desk)) == []
+
+
+async def test_an_edited_design_is_told_of_as_its_file_is(tmp_path):
+    async with opened() as (desk, pilot):
+        await go_to(desk, pilot, HEIGHT)
+        await typed(desk, pilot, "8 m", "enter")
+        await worked_out(desk, pilot)
+        file = tmp_path / "lower.toml"
+        store.save(desk.session.design, file, "")
+        for letter, verb in (("R", "tolerance"), ("D", "tuner"), ("P", "sheet")):
+            printed = said(verb, str(file))
+            await shown(desk, pilot, letter)
+            assert missing(printed, pane(desk)) == []
+
+
+async def test_the_hill_card_is_that_of_the_sheet():
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, "P")
+        sheet = pane(desk)
+        await shown(desk, pilot, "H")
+        card = "\n".join(pane(desk).splitlines()[1:])
+        assert card.startswith("HILL CARD")
+        assert missing(card, sheet) == []
+
+
+async def test_every_view_is_reached_by_its_letter_and_fits_at_every_size(small_box):
+    async with opened() as (desk, pilot):
+        desk.session.aside.box = str(small_box)
+        for letter, view in LETTERS.items():
+            await shown(desk, pilot, letter)
+            for size in ((120, 40), (40, 12), (80, 24)):
+                await pilot.resize_terminal(*size)
+                await pressed(desk, pilot, letter, "pagedown", "down")
+                lines = screen(desk)
+                whole = "\n".join(lines)
+                assert whole.isascii()
+                assert "estimate" in lines[0]
+                assert any(f"{level}:" in whole for level in ("watch", "fine", "STOP"))
+                assert lines[-1].strip()
+                assert "working it out" not in whole
+                if letter not in "IAFY":
+                    assert f"[{view.name}]" in whole
+                if size[0] >= 80:
+                    assert "yield: as cut" in whole
+                    assert "next: " in whole
+        assert not desk.drawers.editing
+
+
+def test_the_names_of_the_views_fit_at_every_width():
+    for width in range(20, 200):
+        cycle = arrangement(width, 24).cycle
+        for view in cycle:
+            for busy in ("", "200 of 1000 trials"):
+                line = names(cycle, view, width, busy)
+                assert width_of(line) <= width
+                assert (f"[{view.name}]", "picked") in line
+    assert len({view.letter for view in VIEWS}) == len(VIEWS)
+
+
+async def test_the_yield_comes_by_itself_large_and_follows_an_edit():
+    async with opened() as (desk, pilot):
+        await worked_out(desk, pilot)
+        before = desk.session.aside.found(TOLERANCE.name)
+        assert before.trials == 1000
+        share = f"as cut {100 * before.stages['as_cut'].within.share:.0f} %"
+        assert share in text(desk)
+        await shown(desk, pilot, "Y")
+        figures = [line.partition("|")[2].strip() for line in screen(desk)]
+        assert "|_||_|  _| 99.3 % (98.6-99.7)" in " ".join(figures)
+        await go_to(desk, pilot, "station.swr_limit")
+        await typed(desk, pilot, "3", "enter")
+        await worked_out(desk, pilot)
+        after = desk.session.aside.found(TOLERANCE.name)
+        assert after.design.station.swr_limit == 3.0
+        assert after.stages["as_cut"].within.share > before.stages["as_cut"].within.share
+        assert "keep SWR 3" in text(desk)
+
+
+async def test_at_120_columns_the_yield_stands_beside_plot_and_findings():
+    async with opened((120, 40)) as (desk, pilot):
+        await worked_out(desk, pilot)
+        whole = text(desk)
+        for word in ("[Site]", "answer", "findings", "[SWR]", "yield", "of 100 antennas", "brought to aim"):
+            assert word in whole
+
+
+async def test_work_aside_holds_nothing_up_and_what_is_stale_is_dropped(monkeypatch):
+    gate, begun = threading.Event(), []
+
+    def slow(task):
+        begun.append(task.design.site.height)
+        assert gate.wait(20)
+        yield task.design.site.height
+
+    monkeypatch.setattr("trapdesk.faces.desk.middle.TOLERANCE", Job(name=TOLERANCE.name + " slow", work=slow))
+    async with opened() as (desk, pilot):
+        await go_to(desk, pilot, HEIGHT)
+        for height in ("11", "12", "13"):
+            await typed(desk, pilot, f"{height} m", "enter")
+            assert f"height            {height} m" in text(desk)
+            await settled(desk, pilot)
+        assert begun == [10.0]
+        assert desk.session.aside.found(TOLERANCE.name + " slow") is None
+        gate.set()
+        await worked_out(desk, pilot)
+        assert begun == [10.0, 13.0]
+        assert desk.session.aside.found(TOLERANCE.name + " slow") == 13.0
+
+
+async def test_the_box_says_what_its_verb_prints(small_box):
+    printed = said("rummage", PRESET, "--box", str(small_box))
+    async with opened() as (desk, pilot):
+        await rummaged(desk, pilot, small_box)
+        assert missing(printed, pane(desk)) == []
+        assert "[red]small[/red] box" in pane(desk)
+
+
+async def test_a_trap_of_the_box_is_taken_with_one_key_and_undone(small_box):
+    async with opened() as (desk, pilot):
+        await rummaged(desk, pilot, small_box)
+        found = desk.session.aside.found(RUMMAGE.name).found
+        before = desk.session.design
+        assert " 1> " in text(desk)
+        await pressed(desk, pilot, "down", "down", "up", "down")
+        assert " 2> " in text(desk)
+        await pressed(desk, pilot, "enter")
+        assert desk.session.design.antenna.trap == found.rows[1].trap
+        assert "taken: " in text(desk)
+        await worked_out(desk, pilot)
+        assert desk.session.figures.trap.resonance == pytest.approx(found.rows[1].resonance, rel=1e-3)
+        await pressed(desk, pilot, "u")
+        assert desk.session.design is before
+        await settled(desk, pilot)
+
+
+async def test_rows_appear_as_they_are_found_and_escape_stops():
+    async with opened() as (desk, pilot):
+        await settled(desk, pilot)
+        await pressed(desk, pilot, "B")
+        aside = desk.session.aside
+        for _ in range(2000):
+            if aside.found(RUMMAGE.name) is not None:
+                break
+            await asyncio.sleep(0.005)
+        first = len(aside.found(RUMMAGE.name).found.rows)
+        assert aside.running(RUMMAGE.name)
+        assert "still looking" in pane(desk)
+        await pressed(desk, pilot, "escape")
+        await worked_out(desk, pilot)
+        found = aside.found(RUMMAGE.name).found
+        assert not found.finished
+        assert first <= len(found.rows) < 20
+        assert "Stopped early" in pane(desk)
+        await pressed(desk, pilot, "escape")
+        assert "[answer]" in text(desk)
+
+
+async def test_a_box_that_is_not_there_is_told_in_a_line():
+    async with opened() as (desk, pilot):
+        await rummaged(desk, pilot, "none.toml")
+        assert "! " in pane(desk)
+        assert "none.toml" in pane(desk)
+        assert "there is no such file" in pane(desk)
+
+
+READINGS = "trap.f0=13.98MHz trap.f0_with=11.6MHz,added=22pF"
+
+
+async def test_readings_come_to_what_the_verb_says_and_are_kept():
+    printed = said("readings", PRESET, *READINGS.split())
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, "M")
+        for reading in READINGS.split():
+            await pressed(desk, pilot, "enter")
+            await typed(desk, pilot, reading, "enter")
+            await worked_out(desk, pilot)
+        assert missing(printed, pane(desk)) == []
+        before = desk.session.design
+        await pressed(desk, pilot, "a")
+        await worked_out(desk, pilot)
+        assert desk.session.design.antenna.trap.measured.resonance == pytest.approx(13.98e6, rel=1e-3)
+        await pressed(desk, pilot, "u")
+        assert desk.session.design is before
+        await pressed(desk, pilot, "backspace")
+        assert desk.session.aside.readings == (READINGS.split()[0],)
+        await worked_out(desk, pilot)
+
+
+@pytest.mark.parametrize("wrong", ["trap.f0=13 parsnips", "nonsense", "trap.f0=", "x" * 150, "[red]=1MHz"])
+async def test_a_reading_that_cannot_be_read_is_refused_and_can_be_mended(wrong):
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, "M")
+        await pressed(desk, pilot, "enter")
+        await typed(desk, pilot, wrong, "enter")
+        assert desk.session.aside.readings == ()
+        assert desk.foot.asking
+        await pressed(desk, pilot, "escape")
+        assert not desk.foot.asking
+
+
+SUMS = [
+    "tank f=10.05MHz C=47pF Q=180",
+    "match Z=35-j120 f=7.1MHz",
+    "line RG-58/U length=20m f=7.1MHz Z=35-j120",
+]
+
+
+async def test_sums_are_those_of_their_verbs():
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, "Q")
+        for words in SUMS:
+            printed = said(*words.split())
+            await pressed(desk, pilot, "enter", "ctrl+u")
+            await typed(desk, pilot, words, "enter")
+            await worked_out(desk, pilot)
+            assert missing(printed, pane(desk)) == []
+        printed = said("figures", PRESET, "--at", "7.05MHz,14.2MHz")
+        await pressed(desk, pilot, "enter", "ctrl+u")
+        await typed(desk, pilot, "at 7.05MHz,14.2MHz", "enter")
+        await worked_out(desk, pilot)
+        asked = [line for line in lines_of(pane(desk))[2:] if line]
+        assert len(asked) == 4
+        assert missing("\n".join(asked), printed) == []
+
+
+@pytest.mark.parametrize("wrong", ["parsnips", "tank", "tank f=1 parsnip", "line", "match Z=0", "at 7"])
+async def test_a_sum_that_cannot_be_done_is_answered_in_words(wrong):
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, "Q")
+        await pressed(desk, pilot, "enter", "ctrl+u")
+        await typed(desk, pilot, wrong, "enter")
+        await worked_out(desk, pilot)
+        assert any(line.startswith("! ") for line in pane(desk).splitlines())
+        assert "Traceback" not in text(desk)
+
+
+async def test_a_load_is_read_off_the_map_as_the_verb_does():
+    printed = said("tuner", PRESET, "--load", "35-j120")
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, "L")
+        await pressed(desk, pilot, "enter", "ctrl+u")
+        await typed(desk, pilot, "-5+j0", "enter")
+        assert any(line.startswith("! ") for line in screen(desk)[-4:-1])
+        await pressed(desk, pilot, "enter", "ctrl+u")
+        await typed(desk, pilot, "35-j120", "enter")
+        told = [line for line in lines_of(printed) if "35 - j120" in line]
+        assert len(told) == 2
+        assert missing("\n".join(told), pane(desk)) == []
+
+
+async def test_a_design_chosen_for_its_yield_can_be_accepted(monkeypatch):
+    """The search itself has its tests; here another design stands for what it found."""
+    other = replace(store.find().design.station, swr_limit=2.5)
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, "R")
+        assert desk.session.aside.found(FULL_TOLERANCE.name)[0].trials == 10_000
+        await pressed(desk, pilot, "a")
+        assert "no design was chosen yet" in text(desk)
+        chosen = type("Chosen", (), {"design": replace(desk.session.design, station=other)})
+        monkeypatch.setattr(
+            desk.session.aside, "found", lambda name: chosen if name == FOR_YIELD.name else None
+        )
+        monkeypatch.setattr(desk.session.aside, "fresh", lambda job: job is FOR_YIELD)
+        before = desk.session.design
+        await pressed(desk, pilot, "a")
+        assert desk.session.design.station.swr_limit == 2.5
+        monkeypatch.undo()
+        await pressed(desk, pilot, "u")
+        assert desk.session.design is before
+        await worked_out(desk, pilot)
+
+
+@pytest.mark.parametrize(("letter", "name"), [("P", "sheet.txt"), ("H", "card.txt"), ("S", "feed.s1p")])
+async def test_a_text_is_written_to_a_file_never_over_one(letter, name, tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, letter)
+        for _ in range(2):
+            await pressed(desk, pilot, "x", "ctrl+u")
+            await typed(desk, pilot, name, "enter")
+        assert "already" in text(desk)
+    written = (tmp_path / name).read_text("ascii")
+    if letter == "P":
+        assert written == said("sheet", PRESET)
+    elif letter == "S":
+        assert written == said("touchstone", PRESET)
+    else:
+        assert written.startswith("HILL CARD")
+
+
+async def test_keys_for_the_inputs_do_nothing_while_a_text_hides_them():
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, "C")
+        before = desk.session.design
+        await pressed(desk, pilot, "9", "enter", "s", "plus", "minus", "e", "space")
+        assert desk.session.design is before
+        assert not desk.drawers.editing
+        assert "Tab goes to the inputs" in text(desk)
+        await pressed(desk, pilot, "tab")
+        assert "[answer]" in text(desk)
+        await go_to(desk, pilot, HEIGHT)
+        await typed(desk, pilot, "9 m", "enter")
+        assert desk.session.design.site.height == 9.0
+        await settled(desk, pilot)
+
+
+async def test_beside_a_text_the_inputs_can_be_edited_where_there_is_room():
+    async with opened((120, 40)) as (desk, pilot):
+        await shown(desk, pilot, "C")
+        assert "[Site]" in text(desk)
+        await pressed(desk, pilot, "tab")
+        await go_to(desk, pilot, HEIGHT)
+        await typed(desk, pilot, "9 m", "enter")
+        assert desk.session.design.site.height == 9.0
+        assert "[choices]" in text(desk)
+        await worked_out(desk, pilot)
+
+
+@pytest.mark.parametrize("key", ["station.line", "station.choke", "station.tuner", "station.transmitter"])
+async def test_what_may_be_absent_is_added_with_a_key_and_comes_back_as_it_was(key):
+    async with opened() as (desk, pilot):
+        await go_to(desk, pilot, key)
+        assert desk.drawers.row.text == "none"
+        assert "add it" in screen(desk)[-1]
+        for part in (PARTS[key], None, PARTS[key]):
+            await pressed(desk, pilot, "enter")
+            await settled(desk, pilot)
+            assert getattr(desk.session.design.station, key.partition(".")[2]) == part
+            assert not desk.session.no_answer
+
+
+def test_every_row_has_a_drawer_of_its_own():
+    document = store.find()
+    design = document.design
+    for key in PARTS:
+        design = form.put(design, key, "added", None, iter([design]))
+    drawers = form.rows(design, None)
+    keys = [row.key for rows in drawers.values() for row in rows if row.key]
+    assert len(keys) == len(set(keys))
+    assert {"station.tuner.coil.q", "station.transmitter.table"} <= {row.key for row in drawers["Tuner"]}
+    assert {"station.line.length", "station.choke.ratio"} <= {row.key for row in drawers["Feed"]}
+    assert "doubts.capacitor" in {row.key for row in drawers["Doubts"]}
+    assert "antenna.trap.measured.resonance" in {row.key for row in drawers["Trap"]}
+
+
+def test_a_text_is_folded_anew_where_there_is_no_room_for_it():
+    texts = [
+        "A sentence that was folded at the seventy-ninth column, as all sentences of the",
+        "command line are, and that goes on here.",
+        "",
+        "  left         middle                                                  right",
+    ]
+    for width in range(12, 90):
+        lines = text_lines(texts, width)
+        assert all(width_of(line) <= max(width, 79 if width >= 79 else 0) for line in lines)
+    narrow = [line[0][0] for line in text_lines(texts, 40)]
+    assert " ".join(" ".join(narrow[:-2]).split()) == f"{texts[0]} {texts[1]}"
+    assert narrow[-1] == "  left         middle                  ~"[:40]
+    assert [line[0][0] for line in text_lines(texts, 40, 40)][-1].strip().endswith("right")
