@@ -47,7 +47,7 @@ def honest(ensemble, number, seed, read="dips"):
 
 
 def truths(ensemble, hung, view, prospects, after):
-    """Return true values and what trials say of them: traps, site, each wire's need, dips and SWR after a move."""
+    """Return true values and what trials say of them: traps, site, dips and SWR after a move."""
     truth, believed = {}, {}
     draws = hung.draws()
     believed["site"], truth["site"] = prospects.draws["site"], draws["site"][0]

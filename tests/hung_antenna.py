@@ -1,7 +1,7 @@
-"""An antenna as it came out and hangs, solved from scratch each time: what closed-loop tests hold advice against.
+"""An antenna as it came out and hangs, solved from scratch each time: what advice is held against.
 
-Nothing here goes through the ensemble's nearby ports: every wire is solved whole, both sides as they are. Where
-a side sags, it is a chain of straight pieces along a parabola, which no belief knows of.
+Nothing here goes through the ensemble's nearby ports: every wire is solved whole, both sides as they are.
+Where a side sags, it is a chain of straight pieces along a parabola, which no belief knows of.
 """
 
 from __future__ import annotations

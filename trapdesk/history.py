@@ -1,4 +1,4 @@
-"""What was read of the hung antenna and what was done to it since, kept with the design; the last can be undone."""
+"""What was read of the hung antenna and what was done to it since, kept with the design."""
 
 from __future__ import annotations
 

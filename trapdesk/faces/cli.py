@@ -150,6 +150,14 @@ def _parser_of(verb: str) -> Parser:
     if verb == "readings":
         parser.add_argument("values", nargs="*", metavar="NAME=VALUE", help="readings; none lists all kinds")
         parser.add_argument("--keep", action="store_true", help="keep the result in the design's file")
+    if verb == "next":
+        parser.add_argument("values", nargs="*", metavar="NAME=VALUE", help="readings of the antenna")
+        parser.add_argument("--keep", action="store_true", help="keep readings and move in the design")
+        parser.add_argument(
+            "--moved", action="append", metavar="WIRE=LENGTH", help="what was really done last"
+        )
+        parser.add_argument("--undo", action="store_true", help="take the last readings and move out again")
+        parser.add_argument("--site", metavar="FILE", help="the same antenna at the site of this design")
     if verb == "touchstone":
         parser.add_argument("--band", choices=("lower", "upper"), help="this band alone; both unless said")
         parser.add_argument("--out", metavar="NAME", help="write a file that is not there yet")
@@ -262,6 +270,13 @@ def readings(options: argparse.Namespace) -> str:
         return json_out.text(readings_out.document(found, given, notes, options.keep))
     kept = ["", f"Kept in {visible(options.file, 60)}."] if options.keep else []
     return "\n".join([*readings_out.lines(found, given, notes), *kept]) + "\n"
+
+
+def next_move(options: argparse.Namespace) -> str:
+    """Return what to do next by what was read of the hung antenna, as text or JSON."""
+    from . import next_run
+
+    return next_run.run(options)
 
 
 def touchstone(options: argparse.Namespace) -> str:
@@ -434,6 +449,15 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
         "trapdesk readings 40-20-vee trap.f0=13.98MHz trap.f0_with=11.6MHz,added=22pF",
         "\n\nWhat is to be said of a reading follows it behind commas: doubt=, how=, ...\n"
         "--keep puts the result into the design, where it replaces what is computed.",
+    ),
+    "next": (
+        "Print what to do next with the antenna as it hangs, by what was read of it:\n"
+        "fold, let out, cut or add wire, mend the traps, or stop; or what is broken.",
+        next_move,
+        "trapdesk next 40-20-vee upper.dip=14.02MHz lower.dip=7.02MHz",
+        "\n\n  upper.swr@7.05MHz=1.8  lower.swr@3.6MHz=2..3  lower.z@3.6MHz=42-j12\n"
+        "  upper.sweep=FILE; each takes ,doubt=... and ,at=feed behind a comma. What was\n"
+        "kept is in the design's table [history].",
     ),
     "touchstone": (
         "Print the computed impedance at the feed point as a Touchstone 1 file, .s1p.",

@@ -60,7 +60,7 @@ def _card(band: BandFigures, wire: str, other: BandFigures | None) -> Card | Non
     if not slope:
         return None
     beside = getattr(other.effects, wire, None) if other is not None else None
-    step = _even(band.frequency_doubt / 2)
+    step = even(band.frequency_doubt / 2)
     moves = (
         Move(
             off=n * step,
@@ -72,7 +72,7 @@ def _card(band: BandFigures, wire: str, other: BandFigures | None) -> Card | Non
     return Card(band=band, wire=wire, shorten_when_low=slope < 0, other=other, moves=tuple(moves))
 
 
-def _even(size: float) -> float:
+def even(size: float) -> float:
     """Return the nearest 1, 2 or 5 times a power of ten at or below a size."""
     power = 10.0 ** math.floor(math.log10(size))
     return next(n * power for n in (5, 2, 1) if n * power <= size * (1 + 1e-9))

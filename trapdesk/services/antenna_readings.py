@@ -1,12 +1,12 @@
-"""What readings of the hung antenna should be for trials of it, and how likely those read are for each trial."""
+"""What readings of the hung antenna should be for trials of it, and how likely each trial makes them."""
 
 from __future__ import annotations
 
 import math
 from collections.abc import Callable, Mapping, Sequence
-from weakref import WeakKeyDictionary
 from dataclasses import dataclass, field, replace
 from types import MappingProxyType
+from weakref import WeakKeyDictionary
 
 import numpy as np
 
@@ -25,7 +25,7 @@ SWEPT = 9
 SWEEP_SIGMA, LINE_SIGMA = 0.02, 0.01
 """How far a swept reflection of the antenna and of a bare line may be off. [1], an estimate, no source"""
 MODEL_DIP, MODEL_SWR, MODEL_Z = 1.5e-4, 0.02, 0.02
-"""What the nearby wires themselves may be off in a dip, an SWR and an impedance, relative. [1], an estimate"""
+"""What the nearby wires may be off in a dip, an SWR and an impedance, relative. [1], an estimate"""
 WINDOW, WINDOW_POINTS = 0.012, 17
 """How far around a dip that was read trials near it are looked at, relative, and how closely."""
 FAR_POINTS = 15
@@ -355,7 +355,7 @@ def squared(impedance: np.ndarray, reference: float) -> np.ndarray:
 
 
 def dips(frequency: np.ndarray, reflection: np.ndarray) -> np.ndarray:
-    """Return where squared reflections (trials, frequencies) are least, by a parabola through three points."""
+    """Return where squared reflections (trials, frequencies) are least, by a parabola through three."""
     trial = np.arange(reflection.shape[0])
     at = np.clip(np.argmin(reflection, axis=1), 1, frequency.size - 2)
     f0, f1, f2 = (frequency[at + k] for k in (-1, 0, 1))
@@ -371,7 +371,7 @@ def dips(frequency: np.ndarray, reflection: np.ndarray) -> np.ndarray:
 
 _TABLES: WeakKeyDictionary[Nearby, dict] = WeakKeyDictionary()
 MOST_KEPT = 400
-"""Tables that are kept with a wire: the same frequencies are asked for again by every kind of antenna."""
+"""Tables kept with a wire: the same frequencies are asked for again by every kind of antenna."""
 
 
 def _kept(nearby: Nearby, ranges: Mapping[str, tuple[float, float]], frequency: np.ndarray) -> Table:

@@ -1,8 +1,8 @@
 """What may be broken or mixed up: the same readings held against other antennas than the one that was meant.
 
-Each fault is what the ports are closed with, or a wire solved anew; how likely the readings are under it, over
-all that may vary, stands against how likely they are of a sound antenna. Likelihoods are those around the most
-likely antenna of each kind (Laplace's approximation, from memory).
+Each fault is what the ports are closed with, or a wire solved anew; how likely the readings are under it,
+over all that may vary, stands against how likely they are of a sound antenna. Likelihoods are those around
+the most likely antenna of each kind (Laplace's approximation, from memory).
 """
 
 from __future__ import annotations
@@ -40,13 +40,15 @@ STUB = 0.05
 PIECES = (0.1, 0.25, 0.4, 0.55, 0.7, 0.85)
 """Shares of an end wire that may be left of it. [1]"""
 LOOSE = 0.08
-"""How far the place of a break may be from those that are solved, one sigma, as a share of the end wire. [1]"""
+"""How far the place of a break may be from those solved, one sigma, as a share of the end wire. [1]"""
 SLIPS = (1.0, -1.0, 0.3048, -0.3048)
 """By how much both wires of a kind may be off where a unit was slipped: a metre, a foot. [m]"""
 NAMED = 20.0
 """How many times likelier the readings must be of the faults than of a sound antenna for one to be named."""
 BESIDE = 20.0
 """A fault that is less than this many times less likely than the first is told with it."""
+CLOSE = 0.2
+"""How near a band, by the log of frequency, what is nearer to it than to its own is taken for its own."""
 WELL = 0.3
 """Chance of the readings, of the likeliest sound antenna, above which nothing else is looked for. [1]"""
 UNLIKELY = 1e-3
@@ -412,13 +414,14 @@ def _misfit(
 
 
 def of_other_band(design: Design, reading: Reading) -> str | None:
-    """Return the band a reading is really of, where its frequency lies nearer that one; None where all is well."""
+    """Return the band a reading is really of, where its frequency lies nearer that one; None else."""
     frequency = reading.frequency if reading.frequency is not None else reading.value
     bands = dict(design.bands.items())
     if reading.subject not in bands or not isinstance(frequency, float):
         return None
     near = min(bands, key=lambda role: abs(math.log(bands[role].target / frequency)))
-    return near if near != reading.subject else None
+    close = abs(math.log(bands[near].target / frequency)) < CLOSE
+    return near if near != reading.subject and close else None
 
 
 def _chance_above(square: float, count: int) -> float:

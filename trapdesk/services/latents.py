@@ -66,7 +66,7 @@ class Latents:
         return found
 
     def change(self, z: np.ndarray, meant: Mapping[str, float], moves: int) -> dict[str, np.ndarray]:
-        """Return how much longer each wire is than computed after so many moves, which come out nearly as told."""
+        """Return how much longer than computed each wire is after moves, which come out nearly as told."""
         found = {wire: np.full(z.shape[0], meant.get(wire, 0.0)) for wire in WIRES}
         for move in range(1, moves + 1):
             own = z[:, self.columns[f"fold {move}"]]

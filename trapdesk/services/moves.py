@@ -37,7 +37,7 @@ STREAM = 2048
 
 @dataclass(frozen=True, kw_only=True)
 class Option:
-    """A move: how much longer each wire gets [m], whether the traps are tuned again, and the chances after it.
+    """A move: how much longer each wire gets [m], whether the traps are tuned again, the chances after it.
 
     `chances` by band role and `all_bands` are those of meeting the limit over the whole wanted part.
     """
@@ -64,8 +64,8 @@ class Need:
 class Advice:
     """What to do next. `verdict` is stop, wires, traps or measure.
 
-    `lowerings` are the chances that no, one or two more lowerings do; what is left of 1 is out of reach of any
-    wire length. `cut` is what may be cut off each folded-back wire after the move [m], `spare` what is folded
+    `lowerings` are the chances that no, one or two more lowerings do; what is left of 1 is out of reach of
+    any length. `cut` is what may be cut off each folded-back wire after the move [m], `spare` what is folded
     back then, `lacking` what must be added.
     """
 
@@ -119,7 +119,7 @@ class Prospects:
         return self.ensemble.traps(draws, stage, self.count)
 
     def needs(self, *, tuning: bool = False) -> dict[str, np.ndarray]:
-        """Return how much longer each wire should be in each trial for both aims, in m; NaN where none does."""
+        """Return how much longer each wire should be for both aims, by trial, in m; NaN where none does."""
         draws, stage = dict(self.draws), self.stage
         if tuning:
             belief = self.ensemble.varying.get("tuning")
@@ -273,8 +273,6 @@ def advise(posterior: Posterior, *, can_tune: bool, reserve: float | None = None
         options.append(prospects.option("traps", _rounded(move, again, free), tuning=True))
     best = both
     one = max(singles, key=lambda option: option.all_bands) if singles else None
-    if one is not None and one.all_bands >= both.all_bands - 0.01:
-        best = one
     traps = next((option for option in options if option.tuning), None)
     if traps is not None and traps.all_bands >= best.all_bands + TUNING_WORTH:
         best = traps
@@ -309,7 +307,7 @@ def advise(posterior: Posterior, *, can_tune: bool, reserve: float | None = None
 
 
 def _lowerings(prospects: Prospects, now: Option, best: Option) -> tuple[float, float, float]:
-    """Return chances that no, one or two lowerings do; after the second reading each trial gets its own move."""
+    """Return chances that no, one or two lowerings do; for the second each trial gets its own move."""
     own = {wire: np.nan_to_num(values) for wire, values in prospects.needs(tuning=best.tuning).items()}
     worst = prospects.worst([own], tuning=best.tuning)
     reached = float(np.all([value[0] <= prospects.limit for value in worst.values()], axis=0).mean())

@@ -1,9 +1,9 @@
 """What is believed of an antenna once it was read: trials moved to where the readings are, and weighed.
 
-Before readings every trial is as likely as any other. Where readings leave many of those, they are weighed as
-they are. Else the step of an ensemble Kalman filter, repeated until it rests, leads to the most likely antenna;
-trials are drawn around it and each weighed by how much likelier it is than it was to be drawn, so that the
-answer does not hang on the step having been straight.
+Before readings every trial is as likely as any other. Where readings leave many of those, they are weighed
+as they are. Else the step of an ensemble Kalman filter, repeated until it rests, leads to the most likely
+antenna; trials are drawn around it and each weighed by how much likelier it is than it was to be drawn, so
+that the answer does not hang on the step having been straight.
 """
 
 from __future__ import annotations
@@ -202,8 +202,8 @@ def _around(
 ) -> tuple[np.ndarray, np.ndarray]:
     """Return trials drawn around the most likely one, and the log of what each weighs.
 
-    Across what was read they are drawn as believed before; along it each where a Kalman step of its own leads,
-    `wider` than that step says.
+    Across what was read they are drawn as believed before; along it each where a Kalman step of its own
+    leads, `wider` than that step says.
     """
     _, sizes, along = np.linalg.svd(slopes, full_matrices=False)
     e = _normal(seed, 0, count, peak.size)
