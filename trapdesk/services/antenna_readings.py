@@ -89,6 +89,11 @@ class _Channel:
     high: np.ndarray
     sigma: np.ndarray
 
+    @property
+    def at_places(self) -> bool:
+        """Whether it is read at frequencies of a band that are known beforehand."""
+        return self.kind != "dip" and not self.kind.startswith("line")
+
 
 class Forward:
     """Readings predicted for trials, each a row of standard normal numbers."""
@@ -110,6 +115,7 @@ class Forward:
         self.nearby = self.altered.nearby or ensemble.nearby
         self.readings = [reading for hoist in hoists for reading in hoist.readings]
         self.channels = list(self._channels(sweeps))
+        self._begins = self._places()
         self._tables: dict[tuple, tuple[Table, Circuit | None]] = {}
         self._narrow = False
 
@@ -266,6 +272,7 @@ class Forward:
         z = self.whole(z)
         count = z.shape[0]
         columns, chance = [], np.zeros(count)
+        feeds: dict[tuple[int, str], np.ndarray] = {}
         reference = self.ensemble.design.station.reference
         for number, channel in enumerate(self.channels):
             hoist, f = self.hoists[channel.hoist], channel.frequency
@@ -277,9 +284,12 @@ class Forward:
                 seen = self._seen(self.feed(channel.role, key, grid, hoist, z), grid, channel.at, z)
                 values = np.log(dips(grid, squared(seen, reference)))[:, None]
             else:
-                feed = self.feed(channel.role, ("at", number), f, hoist, z)
-                seen = self._seen(feed, f, channel.at, z)
-                values = _read(channel, seen, reference)
+                group = (channel.hoist, channel.role)
+                if group not in feeds:
+                    feeds[group] = self._together(group, hoist, z)
+                begin = self._begins[number]
+                feed = feeds[group][:, begin : begin + f.size]
+                values = _read(channel, self._seen(feed, f, channel.at, z), reference)
             if channel.kind == "swr":
                 off, log = _of_interval(values, channel)
                 columns.append(off)
@@ -292,6 +302,23 @@ class Forward:
         found = np.concatenate(columns, axis=1) if columns else np.zeros((count, 0))
         # What is nowhere near any number tells nothing finer than that.
         return np.clip(np.nan_to_num(found, nan=1e6), -1e6, 1e6), np.nan_to_num(chance, nan=-1e12)
+
+    def _together(self, group: tuple[int, str], hoist: Hoist, z: np.ndarray) -> np.ndarray:
+        """Return feed impedances at all frequencies read on one band in one hoist, one after the other."""
+        mine = [c for c in self.channels if (c.hoist, c.role) == group and c.at_places]
+        frequency = np.concatenate([channel.frequency for channel in mine])
+        return self.feed(group[1], ("at", *group), frequency, hoist, z)
+
+    def _places(self) -> list[int]:
+        """Return where each channel's frequencies begin among those of its band and hoist."""
+        used: dict[tuple[int, str], int] = {}
+        found = []
+        for channel in self.channels:
+            group = (channel.hoist, channel.role)
+            found.append(used.get(group, 0))
+            if channel.at_places:
+                used[group] = found[-1] + channel.frequency.size
+        return found
 
     def owners(self) -> list[int]:
         """Return which reading each column of the residuals belongs to."""

@@ -18,13 +18,13 @@ from .updating import Posterior
 
 TRIALS, SEARCHED = 400, 120
 """Trials chances are counted over, and those a move is looked for with."""
-SOFT = 0.04
+SOFT = 0.1
 """How far from the limit a trial counts as in doubt while a move is looked for. [1]"""
 STEPS = (0.08, 0.04, 0.02, 0.01, 0.005)
 ROUNDS = 24
-ENOUGH = 0.9
-"""Chance of meeting the limit from which on it is left as it is. [1]"""
-WORTH, TUNING_WORTH = 0.05, 0.15
+SURE, ENOUGH = 0.98, 0.9
+"""Chance of meeting the limit from which on it is left as it is, and where no move makes it much better. [1]"""
+WORTH, TUNING_WORTH = 0.03, 0.15
 """By how much a chance must rise for a lowering, and for taking the traps down as well. [1]"""
 LOWERINGS = 4
 """Lowerings over which the risk of having cut too much is spread. [1], a choice of ours"""
@@ -278,7 +278,7 @@ def advise(posterior: Posterior, *, can_tune: bool, reserve: float | None = None
         best = traps
     verdict = "traps" if best.tuning else "wires"
     still = all(value == 0.0 for value in best.change.values()) and not best.tuning
-    if now.all_bands >= ENOUGH or best.all_bands < now.all_bands + WORTH or still:
+    if now.all_bands >= SURE or best.all_bands < now.all_bands + WORTH or still:
         verdict = "stop" if now.all_bands >= ENOUGH else "measure"
         best = now
     lowerings = _lowerings(prospects, now, best)

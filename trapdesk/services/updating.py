@@ -30,6 +30,8 @@ STEPS, STEP = 12, 0.25
 """Kalman steps at most, and how far apart numbers are put to see what they do. [sigma]"""
 WIDER = 1.25
 """How much wider than computed trials are drawn along what was read. [1]"""
+LEAST = 0.06
+"""Share of the trials drawn that must survive for them not to be drawn once more. [1]"""
 STREAM = 4096
 """First stream of random numbers here: those of the beliefs lie below."""
 BUILT = Stage(name="built", sealed=True)
@@ -119,7 +121,7 @@ def weigh(forward: Forward, trials: int, seed: int) -> Posterior:
     for attempt in range(2):
         z, weights = _around(near, peak, slopes, trials, seed + attempt, WIDER + attempt / 2)
         share = np.exp(weights - weights.max())
-        if share.sum() ** 2 / (share**2).sum() >= 0.1 * trials:
+        if share.sum() ** 2 / (share**2).sum() >= LEAST * trials:
             break
         peak, slopes, off = peak_of(forward, z[int(np.argmax(weights))][None])
     misfit = float(peak @ peak + off @ off)
