@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import asyncio
 import sys
+import threading
 from collections.abc import Callable, Hashable, Iterable, Iterator, Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
@@ -160,7 +161,8 @@ class Aside:
             stopped=stopped,
             tell=lambda text: self._post(self._told, job.name, text),
         )
-        app.run_worker(lambda: self._work(job, token, task), thread=True)
+        # Quitting does not wait for a daemon, and a slow job cannot be stopped.
+        threading.Thread(target=self._work, args=(job, token, task), daemon=True).start()
 
     def _post(self, call: Callable[..., None], *values: Any) -> None:
         if self._app is not None and self._app.is_running:
@@ -179,7 +181,14 @@ class Aside:
                     break
         except TrapdeskError as error:
             refusal = reason(error)
+        except Exception as error:
+            self._post(self._failed, error)
+            return
         self._post(self._ended, job, token, refusal)
+
+    def _failed(self, error: Exception) -> None:
+        """Let what nobody foresaw be seen where it ends the desk."""
+        raise error
 
     def _told(self, name: str, text: str) -> None:
         if self._progress.get(name) != text:

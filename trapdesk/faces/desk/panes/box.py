@@ -43,7 +43,7 @@ def box_lines(sight: Sight) -> list[Line]:
     aside.place = max(0, min(aside.place, len(aside.found(RUMMAGE.name).found.rows) - 1))
     lines: list[Line] = []
     if aside.running(RUMMAGE.name):
-        words = f"still looking, {aside.progress(RUMMAGE.name)}; Esc stops and keeps these"
+        words = f"still looking, {aside.progress(RUMMAGE.name)} pairs done; Esc stops and keeps these"
         lines = [[(piece, "watch")] for piece in wrapped(words, sight.width)]
     for line in text_lines(texts, sight.width, sight.left):
         text, style = line[0] if line else ("", "text")

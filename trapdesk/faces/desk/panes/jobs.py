@@ -81,7 +81,7 @@ def _rummage(task: Task) -> Iterator[Rummaged]:
             raise
         box, fault = error.box, str(error)
     for found in rummage(task.design, box, ROWS):
-        task.tell(f"{found.done} of {found.total} looked into")
+        task.tell(f"{found.done} of {found.total}")
         yield Rummaged(box=box, found=found, fault=fault)
 
 
