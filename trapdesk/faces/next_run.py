@@ -49,6 +49,11 @@ def run(options: argparse.Namespace) -> str:
     return "\n".join(moves_out.lines(found, given, ["", *kept] if kept else [])) + "\n"
 
 
+def card(design: Design) -> list[str]:
+    """Return what was learnt so far as lines for the hill card."""
+    return moves_out.card(_found(design, (), None))
+
+
 def _found(design: Design, given: tuple[Reading, ...], site: str | None) -> service.NextMove:
     past = past_readings(design)
     sweeps, _ = readings_out.sweeps_of([*(r for step in past for r in step), *given])

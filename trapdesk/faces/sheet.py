@@ -31,8 +31,17 @@ def text(figures: Figures, ensemble: Tolerance | None = None) -> str:
     cutting = () if ensemble is None else tolerance_out.sheet_lines(ensemble)
     lines = [line for part in parts for line in (*part(figures), *(cutting if part is _wires else ()), "")]
     rule = "-" * WIDTH
-    lines += [rule, *hill_card.lines(figures, ensemble), rule, "", *_cautions()]
+    lines += [rule, *hill_card.lines(figures, ensemble), *_learned(figures.design), rule, "", *_cautions()]
     return "\n".join(line.rstrip() for line in lines) + "\n"
+
+
+def _learned(design: Design) -> list[str]:
+    """Return where the dips may be next and the moves that go with them, once something was read."""
+    if design.history is None or not design.history.steps:
+        return []
+    from . import next_run
+
+    return ["", *next_run.card(design)]
 
 
 def document(figures: Figures, ensemble: Tolerance | None = None) -> dict[str, Any]:

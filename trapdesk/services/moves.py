@@ -23,7 +23,7 @@ SOFT = 0.1
 STEPS = (0.08, 0.04, 0.02, 0.01, 0.005)
 ROUNDS = 24
 SURE, ENOUGH = 0.98, 0.9
-"""Chance of meeting the limit from which on it is left as it is, and where no move makes it much better. [1]"""
+"""Chance from which on it is left as it is, and that counts as met where traps might be mended. [1]"""
 WORTH, TUNING_WORTH = 0.03, 0.15
 """By how much a chance must rise for a lowering, and for taking the traps down as well. [1]"""
 LOWERINGS = 4
