@@ -246,6 +246,11 @@ async def test_a_trap_of_the_box_is_taken_with_one_key_and_undone(small_box):
         assert " 1> " in text(desk)
         await pressed(desk, pilot, "down", "down", "up", "down")
         assert " 2> " in text(desk)
+        await pilot.resize_terminal(40, 12)
+        await pilot.pause()
+        assert " 2> " in text(desk)
+        await pressed(desk, pilot, "up", "down")
+        assert " 2> " in text(desk)
         await pressed(desk, pilot, "enter")
         assert desk.session.design.antenna.trap == found.rows[1].trap
         assert "taken: " in text(desk)
@@ -472,6 +477,7 @@ def test_a_text_is_folded_anew_where_there_is_no_room_for_it():
     for width in range(12, 90):
         lines = text_lines(texts, width)
         assert all(width_of(line) <= max(width, 79 if width >= 79 else 0) for line in lines)
+    assert text_lines([" 1  " + "coil " * 12], 40)[0][0][0].startswith(" 1  coil coil")
     narrow = [line[0][0] for line in text_lines(texts, 40)]
     assert " ".join(" ".join(narrow[:-2]).split()) == f"{texts[0]} {texts[1]}"
     assert narrow[-1] == "  left         middle                  ~"[:40]

@@ -14,6 +14,8 @@ from ..view import Acting, Sight, View
 
 _GAP = re.compile(r"(?<=\S) {2,}(?=\S)")
 _HANG = 4
+_WIDE = 12
+"""Blanks that stand between columns, not after a label."""
 
 
 def text_lines(texts: Sequence[str], width: int, left: int = 0) -> list[Line]:
@@ -28,7 +30,7 @@ def text_lines(texts: Sequence[str], width: int, left: int = 0) -> list[Line]:
         elif len(paragraph) > width:
             text = _GAP.sub("  ", paragraph.strip())
             indent = min(len(paragraph) - len(paragraph.lstrip()), _HANG)
-            folded = wrapped(" ".join(text.split()), width - indent, 2)
+            folded = wrapped(text, width - indent, 2)
             lines += [[(" " * indent + piece, style)] for piece in folded]
         else:
             lines.append([(paragraph, style)])
@@ -50,7 +52,8 @@ def _paragraphs(texts: Sequence[str]) -> Iterator[tuple[str, bool]]:
 
 
 def _is_table(text: str) -> bool:
-    return len(_GAP.findall(text)) > 1 or "|" in text
+    gaps = _GAP.findall(text)
+    return len(gaps) > 1 or "|" in text or any(len(gap) >= _WIDE for gap in gaps)
 
 
 def _goes_on(first: str, last: str, text: str) -> bool:
