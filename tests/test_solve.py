@@ -659,7 +659,7 @@ def test_presets_are_good_antennas(name):
     assert_aims_met(figures)
     assert not [f for f in figures.findings if f.level == Level.STOP]
     for role, band in figures.bands.items():
-        low, high = get(design, f"bands.{role}").wanted
+        low, high = get(design, f"bands.{role}").wanted_edges
         assert high - low <= 0.75 * band.width
         assert band.usable[0] < low < high < band.usable[1]
         assert band.worst_swr <= design.station.swr_limit
