@@ -301,7 +301,9 @@ def forced(design, box, wanted, former, wire, up, way, pieces, tolerance, volts)
         if pitch > 1.005 * wire.closest
         else (high(up, pitch * 1.01) - high(up, pitch)) / math.log(1.01)
     )
-    off = tolerance / 2 + COIL_DOUBT / 2
+    # What the coil adds of its own is known to a factor of two either way.
+    own = build(made).self_capacitance[1]
+    off = tolerance / 2 + COIL_DOUBT / 2 + math.log(2) / 2 * own / build(made).capacitance
     down = slope * math.log(pitch / wire.closest)
     rise = slope * math.log(max(min(SPREAD, room / coil.length), 1.0))
     points = cost(

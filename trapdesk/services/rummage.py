@@ -175,7 +175,7 @@ class Search:
     def _grid(self) -> PortGrid:
         """Return the wires of every trap in range, the range made narrower where a trap has no wires."""
         for _ in range(6):
-            traps = [self._tank(c, 200.0) for c in self.range]
+            traps = [self._tank(c, 200.0) for c in (self.range[0], self.range[-1])]
             try:
                 return PortGrid(self.design, traps)
             except NoAnswer as error:

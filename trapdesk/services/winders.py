@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 
@@ -13,6 +14,7 @@ from ..engine.cable_trap import Terminals
 from ..engine.cables import propagation
 from ..engine.coil_formulas import medhurst_capacitance
 from ..engine.coil_table import QUICK_RANGE, in_range, quick_coil
+from ..engine.coils import CAPACITANCE_DOUBT
 from ..engine.conductors import MATERIALS, internal_impedance
 from ..engine.ground import C0
 from ..errors import NoAnswer
@@ -38,6 +40,8 @@ TURNS = np.arange(2.0, 60.5, 0.5)
 WIDER = 1.01
 RING_ROOM = 0.05
 """Part of its inductance by which a coil on a ring moves as its turns are bunched or spread; an estimate."""
+CABLE_LEAST = 0.75
+"""What the exact cost of a cable trap may be of the coarse one, so that none is passed over."""
 BEST = 4
 
 
@@ -107,6 +111,7 @@ def _exact_solenoid(offer: Offer, box: Box, wanted: float) -> tuple[Trap, BuiltT
                 offer = replace(
                     offer, turns=turns, pitch=pitch, length=length, down=float(down), up=float(up),
                     wire_length=turns * turn + 2 * TAIL,
+                    off=built_off(offer.tolerance, built.capacitance - built.fitted, built.capacitance),
                 )  # fmt: skip
                 return trap, built, offer
             pitch *= math.exp(-2 * miss / offer.slope)
@@ -156,6 +161,14 @@ def _exact_cable(offer: Offer, box: Box, wanted: float) -> tuple[Trap, BuiltTrap
 
 
 EXACT = {"solenoid": _exact_solenoid, "toroid": _exact_toroid, "cable": _exact_cable}
+
+
+def built_off(tolerance: Any, own: Any, total: Any) -> Any:
+    """Return by what part of itself a wound trap's resonance may be off before it is adjusted.
+
+    By the capacitors' tolerance, the coil's doubt, and its own capacitance, known to a factor either way.
+    """
+    return (tolerance + COIL_DOUBT + math.log(CAPACITANCE_DOUBT) * own / total) / 2
 
 
 def _room(
@@ -272,7 +285,7 @@ def solenoid_offers(
         yield from _picked(
             ("solenoid", i, j), some, surface, good, turns=turns, pitch=wide, total=total, loss=loss,
             length=length, diameter=np.full(turns.size, wound.diameter), wire_length=wire_length, down=down,
-            up=up, off=some.tolerance / 2 + COIL_DOUBT / 2, slope=slope,
+            up=up, off=built_off(some.tolerance, total - some.capacitance, total), slope=slope,
         )  # fmt: skip
 
 
@@ -326,7 +339,8 @@ def cable_offers(
     l_x, phi, s, angle = (float(np.interp(at, turns, y)) for y in (inductance, crowding, length, theta))
     copper = MATERIALS["copper"].resistivity
     shield_loss = float(internal_impedance(wanted, shield, copper).real) * phi * s
-    inner_loss = 2 * float(propagation(line, np.float64(wanted))[0].real) * line.z0 * s
+    # Inside, the current falls straight to nothing at the open end: a third of the loss of an even one.
+    inner_loss = 2 / 3 * float(propagation(line, np.float64(wanted))[0].real) * line.z0 * s
     loss = (shield_loss + inner_loss) / coil.q_share / (w * l_x)
     winding, fits = at * outside, TRAPS * s <= cable.length
     if not fits or math.floor(former.length / (winding + outside + 2 * END_ROOM)) * former.count < TRAPS:
@@ -345,7 +359,8 @@ def cable_offers(
             kind="cable", pair=("cable", i, j), turns=at, pitch=outside, way=way, pieces=(),
             capacitance=total, total_capacitance=total, capacitor_loss=0.0, loss=loss, tolerance=0.0,
             voltage=math.inf, rated=cable_rating(coil) is not None, spare=1, wire_length=s, length=winding,
-            diameter=diameter, down=0.0, up=0.0, off=0.0, points=float(points[0]), slope=1.0, tried=1,
+            diameter=diameter, down=0.0, up=0.0, off=0.0, points=CABLE_LEAST * float(points[0]), slope=1.0,
+            tried=1,
         )  # fmt: skip
 
 
