@@ -125,9 +125,13 @@ def advised(ensemble, hung, random, read, seed):
     return story
 
 
-def plain(ensemble, hung, random, *, together=True):
-    """Scale lengths with frequency: the inner wire by the upper dip, the whole side by the lower one."""
+def plain(ensemble, hung, random, *, learning=False):
+    """Scale lengths with frequency: the inner wire by the upper dip, the whole side by the lower one.
+
+    With `learning` each band's scale is corrected by what the last move really did to its dip.
+    """
     story = Story()
+    scale, before = {"upper": 1.0, "lower": 1.0}, None
     change = {"inner": 0.0, "end": 0.0}
     bands = dict(ensemble.design.bands.items())
     wire = ensemble.wire
@@ -139,12 +143,19 @@ def plain(ensemble, hung, random, *, together=True):
             story.met_after = lowering
             return story
         dips = {reading.subject: reading.value for reading in view.read_dips(random)}
+        misses = {role: value / bands[role].target - 1 for role, value in dips.items()}
+        if learning and before is not None:
+            for role, miss in misses.items():
+                gained = before[role] - miss
+                if abs(gained) > 1e-3:
+                    scale[role] = float(np.clip(scale[role] * before[role] / gained, 0.3, 6.0))
+        before = misses
         inner = wire.inner + change["inner"]
-        more = inner * (dips["upper"] / bands["upper"].target - 1)
+        more = inner * misses["upper"] * scale["upper"]
         side = wire.side + change["inner"] + change["end"]
-        whole = side * (dips["lower"] / bands["lower"].target - 1)
+        whole = side * misses["lower"] * scale["lower"]
         change["inner"] += more
-        change["end"] += whole - more if together else whole
+        change["end"] += whole - more
     story.ended = "too many"
     return story
 
@@ -179,7 +190,7 @@ def study(name, number, seed, *, world=WIDER, read="dips", rule="advice"):
         if rule == "advice":
             story = advised(ensemble, hung, random, read, n + 1)
         else:
-            story = plain(ensemble, hung, random, together=rule == "plain together")
+            story = plain(ensemble, hung, random, learning=rule == "plain learning")
         if story.met_after is None:
             hung.tunings = 0
             story.ended += "" if savable(ensemble, hung) else "; no length"

@@ -26,20 +26,20 @@ def run(options: argparse.Namespace) -> str:
         raise FileFault(options.file, "not_writable", help=help)
     kept = []
     if options.undo:
-        design = _without_last(design)
+        design = without_last(design)
         kept.append(f"The last readings and their move are taken out of {visible(options.file, 60)}.")
     if options.moved:
-        design = _moved(design, options.moved)
+        design = with_moves(design, options.moved)
         kept.append(f"What was really moved is kept in {visible(options.file, 60)}.")
-    given = _antenna_readings(options.values)
+    given = antenna_readings(options.values)
     if options.keep and not given:
         raise BadInput(Fault("--keep", "there are no readings to keep", help="type them behind the design"))
     if options.keep and options.site:
         help = "copy the design, give it the new [site], and keep readings there"
         raise BadInput(Fault("--keep", "a_history_belongs_to_one_site", help=help))
-    found = _found(design, given, options.site)
+    found = found_next(design, given, options.site)
     if options.keep:
-        design = _with_step(design, options.values, found)
+        design = with_step(design, options.values, found)
         kept.append(f"Kept in {visible(options.file, 60)}: these readings, and this move as made.")
         kept.append("Did you move otherwise? Say so with --moved inner=-5cm; --undo takes both back.")
     if writes:
@@ -51,10 +51,10 @@ def run(options: argparse.Namespace) -> str:
 
 def card(design: Design) -> list[str]:
     """Return what was learnt so far as lines for the hill card."""
-    return moves_out.card(_found(design, (), None))
+    return moves_out.card(found_next(design, (), None))
 
 
-def _found(design: Design, given: tuple[Reading, ...], site: str | None) -> service.NextMove:
+def found_next(design: Design, given: tuple[Reading, ...], site: str | None) -> service.NextMove:
     past = past_readings(design)
     sweeps, _ = readings_out.sweeps_of([*(r for step in past for r in step), *given])
     other = None if site is None else store.find(site).design
@@ -72,7 +72,7 @@ def past_readings(design: Design) -> list[tuple[Reading, ...]]:
     found = []
     for place, step in enumerate(steps, start=1):
         try:
-            found.append(_antenna_readings(step.readings.split()))
+            found.append(antenna_readings(step.readings.split()))
         except BadInput as refused:
             where = f"history.steps.{place}.readings"
             raise BadInput(
@@ -81,7 +81,7 @@ def past_readings(design: Design) -> list[tuple[Reading, ...]]:
     return found
 
 
-def _antenna_readings(texts: list[str]) -> tuple[Reading, ...]:
+def antenna_readings(texts: list[str]) -> tuple[Reading, ...]:
     readings = reading_text.parse(texts)
     parts = [r for r in readings if r.subject in PARTS]
     if parts:
@@ -90,7 +90,7 @@ def _antenna_readings(texts: list[str]) -> tuple[Reading, ...]:
     return readings
 
 
-def _with_step(design: Design, texts: list[str], found: service.NextMove) -> Design:
+def with_step(design: Design, texts: list[str], found: service.NextMove) -> Design:
     if found.diagnosis.named or found.cannot_tell or found.diagnosis.misfits:
         help = "mend or read again first; readings of something broken are not kept"
         raise NoAnswer("no_move_to_keep", "history", {}, help)
@@ -100,7 +100,7 @@ def _with_step(design: Design, texts: list[str], found: service.NextMove) -> Des
     return replace(design, history=replace(history, steps=(*history.steps, step)))
 
 
-def _without_last(design: Design) -> Design:
+def without_last(design: Design) -> Design:
     history = design.history
     if history is None or not history.steps:
         raise BadInput(
@@ -109,7 +109,7 @@ def _without_last(design: Design) -> Design:
     return replace(design, history=replace(history, steps=history.steps[:-1]))
 
 
-def _moved(design: Design, texts: list[str]) -> Design:
+def with_moves(design: Design, texts: list[str]) -> Design:
     history = design.history
     if history is None or not history.steps:
         raise BadInput(Fault("--moved", "no move was kept yet", help="keep readings first, with --keep"))
