@@ -7,6 +7,8 @@ The files, each one subject:
 ``special``           Bessel and complete elliptic integrals, round-wire ratio
 ``conductors``        resistivity, gauges, skin effect, AC resistance, insulation
 ``coils``             solenoid: inductance, self-capacitance, loss
+``rings``             the ring solution under it: coaxial rings with the current crowded as it is
+``coil_table``        a quick solenoid for a search, fitted to the rings
 ``toroids``           coils on ring cores: inductance, wire, what fits, flux
 ``coil_formulas``     published formulas for the solenoid: cross-checks of `coils`
 ``cables``            lines, coaxial or parallel: loss, transformation, what stands on them
