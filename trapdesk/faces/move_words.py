@@ -65,5 +65,5 @@ BELONGS: dict[str, str] = {
 }
 AT_THE_HALYARD = (
     "Before anyone goes to the halyard: lock the transmitter out, and look up for power lines.",
-    "Traps and wire ends burn when touched while transmitting, long after they look harmless.",
+    "Traps and wire ends burn whoever touches them while transmitting, however harmless they look.",
 )
