@@ -326,6 +326,37 @@ async def test_a_reading_that_cannot_be_read_is_refused_and_can_be_mended():
             assert not desk.foot.asking
 
 
+HUNG = "upper.dip=14.02MHz lower.dip=7.02MHz"
+
+
+async def test_the_next_move_is_that_of_the_verb_and_is_kept():
+    async with opened() as (desk, pilot):
+        await shown(desk, pilot, "N")
+        assert "Nothing was read yet" in pane(desk)
+        await pressed(desk, pilot, "a")
+        assert "! there are no readings to keep yet" in text(desk)
+        await pressed(desk, pilot, "enter", "ctrl+u")
+        await typed(desk, pilot, "trap.f0=14MHz", "enter")
+        assert desk.foot.asking
+        await pressed(desk, pilot, "ctrl+u")
+        await typed(desk, pilot, HUNG, "enter")
+        await worked_out(desk, pilot)
+        assert missing(said("next", PRESET, *HUNG.split()), pane(desk)) == []
+        assert "next: MOVE Both sides alike: fold" in text(desk)
+        before = desk.session.design
+        await pressed(desk, pilot, "a")
+        kept = desk.session.design
+        assert kept.history.steps[0].readings == HUNG
+        assert kept.history.steps[0].inner < -0.1
+        await pressed(desk, pilot, "d", "ctrl+u")
+        await typed(desk, pilot, "inner=-20cm", "enter")
+        assert desk.session.design.history.steps[0].inner == pytest.approx(-0.2)
+        await pressed(desk, pilot, "u", "u")
+        assert desk.session.design is before
+        await pressed(desk, pilot, "tab")
+        await settled(desk, pilot)
+
+
 SUMS = [
     "tank f=10.05MHz C=47pF Q=180",
     "match Z=35-j120 f=7.1MHz",

@@ -55,6 +55,7 @@ def card(design: Design) -> list[str]:
 
 
 def found_next(design: Design, given: tuple[Reading, ...], site: str | None) -> service.NextMove:
+    """Return what to do next by what was kept and what is given; BadInput in words where that cannot be."""
     past = past_readings(design)
     sweeps, _ = readings_out.sweeps_of([*(r for step in past for r in step), *given])
     other = None if site is None else store.find(site).design
@@ -82,6 +83,7 @@ def past_readings(design: Design) -> list[tuple[Reading, ...]]:
 
 
 def antenna_readings(texts: list[str]) -> tuple[Reading, ...]:
+    """Return the readings of the antenna typed; BadInput for what cannot be read or is of a part."""
     readings = reading_text.parse(texts)
     parts = [r for r in readings if r.subject in PARTS]
     if parts:
@@ -91,6 +93,7 @@ def antenna_readings(texts: list[str]) -> tuple[Reading, ...]:
 
 
 def with_step(design: Design, texts: list[str], found: service.NextMove) -> Design:
+    """Return the design with readings and the move that follows them kept in it."""
     if found.diagnosis.named or found.cannot_tell or found.diagnosis.misfits:
         help = "mend or read again first; readings of something broken are not kept"
         raise NoAnswer("no_move_to_keep", "history", {}, help)
@@ -101,6 +104,7 @@ def with_step(design: Design, texts: list[str], found: service.NextMove) -> Desi
 
 
 def without_last(design: Design) -> Design:
+    """Return the design without the readings and the move that were kept last."""
     history = design.history
     if history is None or not history.steps:
         raise BadInput(
@@ -110,6 +114,7 @@ def without_last(design: Design) -> Design:
 
 
 def with_moves(design: Design, texts: list[str]) -> Design:
+    """Return the design with what was really moved last."""
     history = design.history
     if history is None or not history.steps:
         raise BadInput(Fault("--moved", "no move was kept yet", help="keep readings first, with --keep"))

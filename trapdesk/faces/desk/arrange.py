@@ -13,6 +13,8 @@ from .panes.box import box_lines, box_picked, box_press, box_told
 from .panes.chances import chances_lines
 from .panes.curves import feed_lines, swr_lines, trap_lines
 from .panes.findings import findings_lines
+from .panes.going import KEYS as NEXT_KEYS
+from .panes.going import NEXT, next_lines, next_press, next_told
 from .panes.help import help_lines
 from .panes.jobs import CHOICES, FOR_YIELD, FULL_TOLERANCE, RUMMAGE, SHEET_TOLERANCE, TOLERANCE, TUNER
 from .panes.measured import KEYS as READING_KEYS
@@ -62,7 +64,11 @@ VIEWS = (
     CHANCES,
     FINDINGS,
     View(
-        name="numbers", lines=figures_lines, letter="N", told=told.numbers_told, about="every figure there is"
+        name="every figure",
+        lines=figures_lines,
+        letter="E",
+        told=told.numbers_told,
+        about="all there is, what was given beside what was found",
     ),
     text_view(
         "reasons",
@@ -106,6 +112,17 @@ VIEWS = (
         keys=READING_KEYS,
         about="type what was measured, see what it comes to, keep it",
         press=measured_press,
+    ),
+    View(
+        name="next",
+        letter="N",
+        lines=next_lines,
+        broad=True,
+        jobs=(NEXT,),
+        told=next_told,
+        keys=NEXT_KEYS,
+        about="type what was read of the hung antenna, see what to do, keep it",
+        press=next_press,
     ),
     text_view("paper", "P", told.sheet_told, (SHEET_TOLERANCE,), "the build sheet"),
     text_view("hill", "H", told.card_told, (SHEET_TOLERANCE,), "the card to carry to the halyard"),

@@ -62,7 +62,8 @@ class Aside:
     """What the jobs of a session have found, and those that run: one, and beside it a slow one.
 
     `box` is the box to rummage in, empty for the ready one, `place` the row picked in what was found. `stage`
-    is the one to choose a design for, `readings`, `command` and `load` what was typed.
+    is the one to choose a design for, `readings` of parts, `hung` of the antenna, `command` and `load` what
+    was typed, `other` the design of another site.
     """
 
     def __init__(self, session: Session) -> None:
@@ -78,6 +79,8 @@ class Aside:
         self.box = ""
         self.place = 0
         self.readings: tuple[str, ...] = ()
+        self.hung: tuple[str, ...] = ()
+        self.other = ""
         self.command = ""
         self.load = ""
         self.stage = ""

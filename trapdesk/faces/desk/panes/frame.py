@@ -16,6 +16,7 @@ from ..session import Session
 from ..typed import Typed
 from .answer import MARKS, STYLES
 from .chances import chances_line
+from .going import next_line
 from .jobs import TOLERANCE
 
 # What a key does, the most needed first: the last ones go when there is no room.
@@ -162,6 +163,8 @@ class Foot(Lines):
     def _next(self, session: Session, width: int) -> list[Line]:
         if session.figures is None:
             return []
+        if read := next_line(session):
+            return [[(piece, "text")] for piece in wrapped(f"next: {read}", width, 2)]
         row = _summary(session.figures)["next"]
         style = "quiet" if session.stale else "text"
         return [[(piece, style)] for piece in wrapped(f"{row.label}: {row.value}", width, 2)]
