@@ -41,7 +41,9 @@ def lines(found: NextMove, readings: Sequence[Reading], kept: Sequence[str] = ()
     """Return everything as lines of at most 79 columns."""
     advice = found.advice
     count = len(found.posterior.forward.readings)
-    out = folded("", f"NEXT MOVE: {visible(found.figures.design.title, 48)}; after {count} readings")
+    out = folded(
+        "", f"NEXT MOVE: {visible(found.figures.design.title, 48)}; after {count} reading{'s' * (count != 1)}"
+    )
     out += ["", *_believed(found)] if not found.unread else []
     if found.unread and not found.new_site:
         out += ["", *_nothing_read(found)]
@@ -200,7 +202,7 @@ def _tuning(found: NextMove) -> str:
 
 
 def _option_words(option: Option) -> str:
-    names = {"now": "as it hangs", "both": "both wires", "inner": "inner wires only", "end": "end wires only"}
+    names = {"now": "as it hangs", "both": "the move", "inner": "inner wires only", "end": "end wires only"}
     return names.get(option.name, "traps and both wires")
 
 
@@ -261,7 +263,8 @@ def _cutting(found: NextMove, advice: Advice) -> Iterator[str]:
 
 def card(found: NextMove) -> list[str]:
     """Return what to carry to the halyard: where each dip may be next, and the move that goes with it."""
-    out = [f"{'FOR THE CARD: after this move, dip at':<40}{'each inner wire':>18}{'each end wire':>18}"]
+    heads = ("each inner wire", "each end wire") if found.figures.trap is not None else ("each side", "")
+    out = [f"{'FOR THE CARD: after this move, dip at':<40}{heads[0]:>18}{heads[1]:>18}".rstrip()]
     bands = found.figures.bands
     for role in ROLES:
         band = bands.get(role)

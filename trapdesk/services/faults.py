@@ -51,7 +51,7 @@ CLOSE = 0.2
 """How near a band, by the log of frequency, what is nearer to it than to its own is taken for its own."""
 WELL = 0.3
 """Chance of the readings, of the likeliest sound antenna, above which nothing else is looked for. [1]"""
-UNLIKELY = 1e-3
+UNLIKELY = 1e-7
 """Chance of the readings, of any antenna known here, below which none of them is believed."""
 
 
