@@ -66,7 +66,7 @@ def lines(found: NextMove, readings: Sequence[Reading], kept: Sequence[str] = ()
     if advice.verdict != "stop":
         out += ["", *(line for text in move_words.AT_THE_HALYARD for line in folded("! ", text))]
     out += [line for text in kept for line in folded("", text)]
-    return out
+    return [line.rstrip() for line in out]
 
 
 def _nothing_read(found: NextMove) -> Iterator[str]:
