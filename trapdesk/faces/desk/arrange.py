@@ -205,4 +205,4 @@ def _name(view: View, here: View, most: int) -> list[Piece]:
     """Return a view's name, its letter a capital, cut to so many letters unless it is the present one."""
     if view is here:
         return [(f"[{view.name}]", "picked")]
-    return [(view.letter, "head"), (view.name[1:most] + " ", "quiet")]
+    return [(view.letter, "head"), (view.name[1:most].rstrip() + " ", "quiet")]
