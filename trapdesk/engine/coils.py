@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from .coil_formulas import medhurst_capacitance, rosa_inductance
+from .coil_table import in_range, quick_coil
 from .conductors import internal_impedance
 from .limits import at_least, positive
 from .rings import MOST_TURNS, check_shape, solenoid_rings
@@ -342,6 +343,34 @@ def exponents(wound: Winding) -> tuple[float, float, float]:
     return 1.0 - of_pitch - of_wire, of_pitch, of_wire
 
 
+def quick_exponents(wound: Winding) -> tuple[float, float, float]:
+    """Return what `exponents` does within 0.01 and at once: from the fitted table, from the rings beyond it.
+
+    Parameters
+    ----------
+    wound : Winding
+        The solved winding. [-]
+
+    Returns
+    -------
+    tuple of float
+        Exponents of diameter, pitch and wire diameter, of sum 1. [-]
+
+    Source
+    ------
+    Derived here: central differences of `quick_coil`.
+    """
+    step = min(0.01, 0.2 * (wound.pitch / wound.wire_diameter - 1.0))
+    up, down = 1.0 + step, 1.0 / (1.0 + step)
+    pitches = wound.pitch * np.array([up, down, 1.0, 1.0])
+    wires = wound.wire_diameter * np.array([1.0, 1.0, up, down])
+    if not np.all(in_range(wound.diameter, pitches, wires)):
+        return exponents(wound)
+    logs = np.log(quick_coil(wound.diameter, pitches, wires, wound.turns)[0]) / (2.0 * np.log(up))
+    of_pitch, of_wire = float(logs[0] - logs[1]), float(logs[2] - logs[3])
+    return 1.0 - of_pitch - of_wire, of_pitch, of_wire
+
+
 def temperature_drift(
     wound: Winding,
     frequency: ArrayLike,
@@ -349,6 +378,7 @@ def temperature_drift(
     former_expansion: float,
     wire_expansion: float,
     temperature_coefficient: float,
+    powers: tuple[float, float, float] | None = None,
 ) -> FloatArray:
     """Return the relative change of inductance per kelvin of a coil on a former.
 
@@ -369,6 +399,8 @@ def temperature_drift(
         Linear thermal expansion of the wire. [1/K]
     temperature_coefficient : float
         Relative change of resistivity. [1/K]
+    powers : tuple of float
+        Exponents of diameter, pitch and wire diameter when they are known, as from `quick_exponents`. [-]
 
     Returns
     -------
@@ -384,7 +416,7 @@ def temperature_drift(
     ------
     Derived here: first order, with `exponents`; the internal inductance goes with the root of resistivity.
     """
-    of_diameter, of_pitch, of_wire = exponents(wound)
+    of_diameter, of_pitch, of_wire = exponents(wound) if powers is None else powers
     coil = coil_at(wound, frequency, resistivity)
     inside = (coil.inductance - wound.inductance) / coil.inductance
     size = (of_diameter + of_pitch) * former_expansion + of_wire * wire_expansion

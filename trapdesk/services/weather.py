@@ -8,7 +8,7 @@ import numpy as np
 
 from ..coil_kinds import Solenoid
 from ..design import Design
-from ..engine.coils import temperature_drift
+from ..engine.coils import quick_exponents, temperature_drift
 from ..engine.conductors import MATERIALS
 from ..engine.heat import drifted
 from ..engine.ports import polynomial_weights, terminate
@@ -40,6 +40,7 @@ def drifts(design: Design, trap: BuiltTrap) -> tuple[float, float]:
                 FORMER_MATERIALS[part.former_material].expansion,
                 material.expansion,
                 material.temperature_coefficient,
+                quick_exponents(coil.winding),
             )
         )
     share = trap.fitted / trap.capacitance
