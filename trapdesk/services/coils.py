@@ -12,6 +12,7 @@ import numpy as np
 from ..coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
 from ..engine.cable_winding import straight_inductance
 from ..engine.coil_formulas import rosa_inductance
+from ..engine.coil_table import in_range, quick_coil
 from ..engine.coils import BUILT_Q, MOST_TURNS, Winding, self_capacitance_range, winding
 from ..engine.conductors import MATERIALS, internal_impedance
 from ..engine.toroids import toroid_inductance, toroid_most_turns, toroid_turn_length, toroid_turns
@@ -160,6 +161,11 @@ def _solenoid(coil: Solenoid, frequency: float | None, needed: Needed | None, q_
     )
 
 
+def _rosa(*shape: Any) -> tuple[np.ndarray]:
+    """Return Rosa's inductance where the table of quick coils ends."""
+    return (rosa_inductance(*shape),)
+
+
 def _solved_turns(
     coil: Solenoid,
     diameter: float,
@@ -186,7 +192,8 @@ def _solved_turns(
         )
     guesses = GUESSES[GUESSES <= most]
     pitches = np.array([pitch_of(coil, turns) for turns in guesses])
-    logs = np.log(rosa_inductance(diameter, pitches, coil.wire, guesses) + leads)
+    table = quick_coil if np.all(in_range(diameter, pitches, coil.wire)) else _rosa
+    logs = np.log(table(diameter, pitches, coil.wire, guesses)[0] + leads)
     few, many = 0.0, math.log(most)
     x = float(np.clip(np.interp(math.log(wanted), logs, np.log(guesses)), few, many))
     new = miss(x)
