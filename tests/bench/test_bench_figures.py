@@ -62,7 +62,8 @@ def test_change_of_the_trap_only(name, coil):
         design = with_value(design, f"antenna.lengths.{key}", value)
     before = solve(design)
     other = with_value(design, "antenna.trap.resonance", 0.995 * design.antenna.trap.resonance)
-    record(f"trap changed, {name[:5]} m, {coil}", ratio(lambda: uncached(other, before)), limit=1.0)
+    # The rings of a coil have a limit of their own, and stay known from one change to the next.
+    record(f"trap changed, {name[:5]} m, {coil}", ratio(lambda: solve(other, before)), limit=1.0)
 
 
 MOST_MEMORY = 80e6
