@@ -42,16 +42,39 @@ def environment(home: Path, **changes: str) -> dict[str, str]:
     )
 
 
-class Terminal:
+class Screen:
+    """What a person would see of the bytes that came."""
+
+    def __init__(self, size=(80, 24)):
+        self.screen = pyte.Screen(*size)
+        self._stream = pyte.Stream(self.screen)
+        self._pending = ""
+        self._decode = getincrementaldecoder("utf-8")("replace").decode
+        self.sent = b""
+
+    def take(self, data: bytes) -> None:
+        """Take in what came."""
+        self.sent += data
+        text = self._pending + self._decode(data)
+        cut = _UNFINISHED.search(text)
+        self._pending = text[cut.start() :] if cut else ""
+        self._stream.feed(_PRIVATE.sub("", text[: cut.start()] if cut else text))
+
+    def lines(self) -> list[str]:
+        """Return the screen, line by line."""
+        return [line.rstrip() for line in self.screen.display]
+
+    def text(self) -> str:
+        """Return the screen."""
+        return "\n".join(self.lines())
+
+
+class Terminal(Screen):
     """A pseudo-terminal with a program in it."""
 
     def __init__(self, command, env, size=(80, 24), cwd=None):
+        super().__init__(size)
         columns, rows = size
-        self.screen = pyte.Screen(columns, rows)
-        self._stream = pyte.Stream(self.screen)
-        self.sent = b""
-        self._pending = ""
-        self._decode = getincrementaldecoder("utf-8")("replace").decode
         self.times: list[float] = []
         self.began = time.monotonic()
         self.pid, self.end = pty.fork()
@@ -85,12 +108,8 @@ class Terminal:
             if not data:
                 return got
             got += len(data)
-            self.sent += data
+            self.take(data)
             self.times.append(time.monotonic())
-            text = self._pending + self._decode(data)
-            cut = _UNFINISHED.search(text)
-            self._pending = text[cut.start() :] if cut else ""
-            self._stream.feed(_PRIVATE.sub("", text[: cut.start()] if cut else text))
         return got
 
     def quiet(self, seconds=0.5) -> int:
@@ -99,14 +118,6 @@ class Terminal:
         while more := self.read(seconds):
             got += more
         return got
-
-    def lines(self) -> list[str]:
-        """Return the screen, line by line."""
-        return [line.rstrip() for line in self.screen.display]
-
-    def text(self) -> str:
-        """Return the screen."""
-        return "\n".join(self.lines())
 
     def until(self, wanted, seconds=LONGEST) -> str:
         """Wait until the screen holds a text, or meets a condition, and return the screen."""

@@ -11,7 +11,7 @@ from tests.desk.screens import BRAILLE, go_to, opened, pressed, screen, settled,
 from trapdesk import store
 from trapdesk.design import get
 from trapdesk.faces import rows
-from trapdesk.faces.desk.app import run
+from trapdesk.faces.desk.opening import run
 from trapdesk.fields import SOLVE
 from trapdesk.services.solve import solve
 

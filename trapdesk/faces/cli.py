@@ -105,9 +105,9 @@ def _desk(file: str | None) -> int:
 
             store.find(file)
         raise Misuse("the desk needs a terminal; trapdesk figures FILE prints what it would show")
-    from .desk.app import run
+    from .desk.opening import run
 
-    return run(file) or 0
+    return run(file)
 
 
 TYPED = {

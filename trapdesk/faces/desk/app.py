@@ -13,24 +13,26 @@ from textual.app import App, ComposeResult
 from textual.binding import Binding
 from textual.events import Key, Paste, Resize
 from textual.screen import Screen
+from textual.timer import Timer
 
-from ... import store
-from ...errors import TrapdeskError
 from ...services.solve import solve
 from . import config, journal
 from .arrange import LEAST_HEIGHT, LEAST_WIDTH, arrangement
 from .deeds import KEYS, Deeds
 from .endings import end_by_signals, told
-from .filing import Filing, begun
+from .filing import Filing
 from .lines import Lines, padded
 from .middle import Middle
 from .panes.drawers import DrawersPane
 from .panes.frame import Foot, Heading
 from .session import Session
 from .solving import Solved, Solver, Solving
-from .terminal import Glyphs, Look, as_started, look
+from .terminal import Glyphs, Look
 from .themes import THEMES
 from .thin import Thin
+
+SETTLING = 1.0
+"""Seconds for which old figures stand undimmed: dimming them costs a thin line more than most new ones."""
 
 
 class Desk(App[None]):
@@ -59,6 +61,7 @@ class Desk(App[None]):
         session.units = self.chosen.units
         self._trouble = trouble
         self._fitting = False
+        self._settling: Timer | None = None
         self._solving = Solving(self, session, solver)
         self._filing = Filing(session, self, self.chosen, kept)
         self._deeds = Deeds(self, self._filing)
@@ -149,7 +152,15 @@ class Desk(App[None]):
 
     def solve(self) -> None:
         """Solve and show the present design."""
+        self.session.settling = True
+        if self._settling is not None:
+            self._settling.stop()
+        self._settling = self.set_timer(SETTLING, self._waited)
         self._solving.begin()
+        self.repaint()
+
+    def _waited(self) -> None:
+        self.session.settling = False
         self.repaint()
 
     def on_solved(self, message: Solved) -> None:
@@ -222,23 +233,3 @@ class Desk(App[None]):
     def close(self) -> None:
         """End the desk."""
         self.exit()
-
-
-def run(argument: str | None) -> int:
-    """Open the desk on a file or preset, the first preset without one, and return the exit code."""
-    chosen, trouble = config.load(config.place(os.environ))
-    try:
-        document = store.find(argument) if argument is not None else begun(store.FIRST_PRESET, chosen)
-    except TrapdeskError as error:
-        print(error, file=sys.stderr)
-        return error.exit_code
-    if not (sys.stdin.isatty() and sys.stdout.isatty()):
-        print("the desk needs a terminal; trapdesk figures FILE prints the figures", file=sys.stderr)
-        return 2
-    kept = journal.Journal(folder=journal.folder(os.environ))
-    drawn = look(as_started(os.environ), chosen.theme)
-    # The library would answer this by turning even the terminal's own colours to black.
-    os.environ.pop("NO_COLOR", None)
-    desk = Desk(Session(document), drawn, chosen=chosen, kept=kept, trouble=trouble)
-    desk.run()
-    return desk.return_code or 0

@@ -23,6 +23,7 @@ class Session:
     after each change of the design or of where it is kept, with whether another design was opened. `ghost`
     are figures to compare with; `cursor` is a place along the axes of the plots, from 0 to 1; `zoom` is the
     role of the one band to plot, empty for all. `units` is the system in which lengths are shown.
+    `settling` is true for a moment after a change.
     """
 
     def __init__(self, document: Document) -> None:
@@ -33,6 +34,7 @@ class Session:
         self.zoom = ""
         self.no_answer = ""
         self.unsafe = False
+        self.settling = False
         self.units = "metric"
         self.generation = 0
         self.answered = -1
@@ -73,6 +75,11 @@ class Session:
     def stale(self) -> bool:
         """Whether the figures at hand are not those of the present design."""
         return self.solving or bool(self.no_answer)
+
+    @property
+    def dimmed(self) -> bool:
+        """Whether figures at hand are to be dimmed: old ones, when new ones have been waited for a while."""
+        return (self.stale and not self.settling) or bool(self.no_answer)
 
     @property
     def unsaved(self) -> bool:

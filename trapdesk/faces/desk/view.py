@@ -108,7 +108,8 @@ class ViewPane(Lines):
             words = session.no_answer or "working out the first answer"
             lines = [[(words, "stop" if session.no_answer else "quiet")]]
         old = session.stale or not all(session.aside.fresh(job) for job in view.jobs)
-        self.show([names, *lines], stale=view.dims and old)
+        dimmed = session.dimmed or (old and not session.settling)
+        self.show([names, *lines], stale=view.dims and dimmed)
         if view.picked is not None and (place := view.picked(session, lines)) >= 0:
             self.keep_in_sight(min(place + 5, len(lines)))
             self.keep_in_sight(place + 1)

@@ -129,7 +129,7 @@ class DrawersPane(Lines):
             tail = " *" if tail else ""
         value = padded(row.text, max(1, width - len(tail)))
         style = "quiet" if row.unset else "found" if row.found else "text"
-        if row.found and self.session.stale:
+        if row.found and self.session.dimmed:
             style = "quiet"
         if here:
             return [(f"{front} {name} {value}{tail}", "cursor")]

@@ -45,7 +45,7 @@ class Heading(Lines):
             star += " (no journal)"
         about = _summary(figures) if figures is not None else {}
         room = width - len(state) - 1 if state else width
-        basis = "" if session.stale else f": {words.ESTIMATE}"
+        basis = "" if session.dimmed or session.figures is None else f": {words.ESTIMATE}"
         if width < 2 * len(basis):
             basis = basis.partition(",")[0]
         title = visible(session.design.title, max(8, room - len(basis) - len(star)))
@@ -146,7 +146,7 @@ class Foot(Lines):
         """Return the yield in a line."""
         if session.figures is None:
             return []
-        style = "text" if session.aside.fresh(TOLERANCE) else "quiet"
+        style = "text" if session.aside.fresh(TOLERANCE) or session.settling else "quiet"
         return [[(padded(chances_line(session, width), width).rstrip(), style)]]
 
     def _worst(self, session: Session, width: int) -> list[Line]:
@@ -156,7 +156,7 @@ class Foot(Lines):
             return [[]]
         row = _summary(session.figures)["worst"]
         level = row.finding.level if row.finding is not None else Level.FINE
-        style = "quiet" if session.stale else STYLES[level]
+        style = "quiet" if session.dimmed else STYLES[level]
         text = f"{MARKS[level].lstrip()}{row.label}: {row.value}"
         return [[(piece, style)] for piece in wrapped(text, width, 2)]
 
@@ -166,7 +166,7 @@ class Foot(Lines):
         if read := next_line(session):
             return [[(piece, "text")] for piece in wrapped(f"next: {read}", width, 2)]
         row = _summary(session.figures)["next"]
-        style = "quiet" if session.stale else "text"
+        style = "quiet" if session.dimmed else "text"
         return [[(piece, style)] for piece in wrapped(f"{row.label}: {row.value}", width, 2)]
 
     def _note(self, session: Session, row: FormRow | None, width: int, most: int) -> list[Line]:
