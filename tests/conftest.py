@@ -6,7 +6,22 @@ import os
 for _name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
     os.environ[_name] = "1"
 
+from dataclasses import asdict  # noqa: E402
+
+import pytest  # noqa: E402
+
 from tests.bench import yardstick  # noqa: E402 - numpy comes in here and must find the threads set
+
+
+def pytest_sessionfinish(session):
+    """Hand the records of one of several test processes to the one that prints them."""
+    if hasattr(session.config, "workeroutput"):
+        session.config.workeroutput["bench"] = [asdict(record) for record in yardstick.RECORDS]
+
+
+@pytest.hookimpl(optionalhook=True)
+def pytest_testnodedown(node, error):
+    yardstick.RECORDS.extend(yardstick.Record(**record) for record in node.workeroutput.get("bench", []))
 
 
 def pytest_terminal_summary(terminalreporter):
