@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import asyncio
+import os
 import sys
 import threading
 from collections.abc import Callable, Hashable, Iterable, Iterator, Sequence
@@ -20,6 +21,16 @@ if TYPE_CHECKING:
 
 SWITCHING = 0.0005
 """How long work aside may hold a key up before it is interrupted. [s]"""
+
+RANK = 10
+"""The niceness of work aside: of two threads that want a processor, the one that answers keys has it."""
+
+
+def give_way() -> None:
+    """Have this thread of work wait for those that answer keys, where the system ranks single threads."""
+    if sys.platform == "linux":
+        thread = threading.get_native_id()
+        os.setpriority(os.PRIO_PROCESS, thread, max(RANK, os.getpriority(os.PRIO_PROCESS, thread)))
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -16,6 +16,7 @@ from ...services.solve import solve, with_site_effects
 from ...spoken import spoken
 from .. import words
 from . import plots
+from .aside import give_way
 from .session import Session
 
 Solver = Callable[[Design, Figures | None], Figures]
@@ -55,6 +56,7 @@ class Solving:
         self._app.run_worker(lambda: self._solve(generation, design, figures), thread=True)
 
     def _solve(self, generation: int, design: Design, previous: Figures | None) -> None:
+        give_way()
         plots.ready()
         try:
             outcome: Figures | str = self._solver(design, previous)
