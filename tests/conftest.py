@@ -9,8 +9,13 @@ for _name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
 from dataclasses import asdict  # noqa: E402
 
 import pytest  # noqa: E402
+from hypothesis import settings  # noqa: E402
 
 from tests.bench import yardstick  # noqa: E402 - numpy comes in here and must find the threads set
+
+# The same examples on every machine and in every run.
+settings.register_profile("same", derandomize=True)
+settings.load_profile("same")
 
 
 def pytest_sessionfinish(session):
