@@ -175,8 +175,8 @@ def test_unequal_traps_are_those_of_the_reference(case):
 @pytest.mark.parametrize("case", [c for c in SITES if c["kind"] == "sensitivity"], ids=lambda c: c["id"])
 def test_effects_are_those_of_the_reference(case):
     # Effects are first-order differences on the coarse mesh, 0.4 % off the limit of ever finer ones, and
-    # shown to two digits. What an end wire does to its trap's band is the small rest of two large terms: it is
-    # held against what the inner wire does there.
+    # shown to two digits. What an end wire does to its trap's band is the small rest of two large terms: it
+    # is held against what the inner wire does there.
     figures = solve(site_design(case), site_effects=True)
     wrong = []
     for band in figures.bands.values():
