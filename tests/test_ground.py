@@ -280,7 +280,7 @@ def test_constants():
     assert MU0 * EPS0 * C0**2 == pytest.approx(1.0, rel=1e-9)
 
 
-# ITU-R P.368 curve sets, conductivity [S/m] and relative permittivity, seen in a public transcription.
+# ITU-R P.368 curve sets, conductivity [S/m] and relative permittivity, seen in a public copy.
 P368 = {
     "sea water": (5.0, 70.0),
     "brackish water": (1.0, 80.0),
@@ -300,7 +300,7 @@ def test_soil_classes():
 
 
 def test_unknown_soil_claims_no_source_and_lies_within_its_range():
-    # Seen remark in a public transcription: 5 mS/m and 13 are a textbook average, none of the ITU curves.
+    # Seen remark in a public copy: 5 mS/m and 13 are a textbook average, none of the ITU curves.
     assert (UNKNOWN_SOIL.conductivity, UNKNOWN_SOIL.permittivity) == (5e-3, 13.0)
     assert not UNKNOWN_SOIL.seen
     dry, wet = (SOILS[name] for name in UNKNOWN_SOIL_FROM)

@@ -6,7 +6,7 @@ from trapdesk import store
 from trapdesk.fields import SOLVE
 from trapdesk.parts import Solenoid
 
-# Band edges in Hz of ITU Region 1, from public transcriptions of the band table; national rules decide.
+# Band edges in Hz of ITU Region 1, from public copies of the band table; national rules decide.
 REGION_1 = {
     "80 m": (3.5e6, 3.8e6),
     "40 m": (7.0e6, 7.2e6),
