@@ -195,7 +195,6 @@ class Desk(App[None]):
 
     def repaint_foot(self) -> None:
         """Fit the foot to the row and the view in sight."""
-        self.foot.plotting = self.middle.plotting
         self.foot.repaint(self.session, self.drawers.row, self.drawers.editing)
 
     def on_drawers_pane_changed(self) -> None:

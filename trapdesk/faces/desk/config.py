@@ -62,11 +62,11 @@ def load(file: Path) -> tuple[Config, str]:
         return Config(), ""
     except (OSError, ValueError) as error:
         reason = (error.strerror if isinstance(error, OSError) else "") or "not UTF-8 text"
-        return Config(), f"{visible(file, 60)}: {visible(reason)}"
+        return Config(), f"{visible(file.name)}: {visible(reason)}"
     try:
         table = tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
-        return Config(), f"{visible(file, 60)}: not valid TOML: {visible(error, 100)}"
+        return Config(), f"{visible(file.name)}: not valid TOML: {visible(error, 100)}"
     faults, chosen = [], {}
     for name, value in table.items():
         known = CHOICES.get(name)
@@ -79,7 +79,7 @@ def load(file: Path) -> tuple[Config, str]:
         else:
             chosen[name] = value
     config = Config(**{f.name: chosen.get(f.name, f.default) for f in fields(Config)})
-    return config, f"{visible(file, 60)}: {'; '.join(faults)}" if faults else ""
+    return config, f"{visible(file.name)}: {'; '.join(faults)}" if faults else ""
 
 
 def filled(design: Design, config: Config) -> Design:

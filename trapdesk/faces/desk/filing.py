@@ -9,7 +9,7 @@ from pathlib import Path
 from typing import Protocol
 
 from ... import store
-from ...errors import TrapdeskError, visible
+from ...errors import FileFault, TrapdeskError, visible
 from ...store import Document
 from . import journal
 from .config import Config, filled
@@ -18,7 +18,7 @@ from .session import Session
 
 RECENT = 9
 """Files that are offered to be opened again."""
-FIRST_RUN = "first time here? arrows move, Enter or a digit edits, v turns the views, ? helps, q quits"
+FIRST_RUN = "new here? ? helps; arrows move, Enter or a digit edits, v turns the views, q quits"
 
 
 class Asker(Protocol):
@@ -38,8 +38,11 @@ class Asker(Protocol):
 
 
 def one_line(error: TrapdeskError) -> str:
-    """Return an error of several lines as one."""
-    return "; ".join(str(error).splitlines())
+    """Return an error of several lines as one; of a file that was just named its last name is enough."""
+    text = "; ".join(str(error).splitlines())
+    if isinstance(error, FileFault):
+        text = text.replace(visible(error.path, 200), visible(Path(error.path).name, 30))
+    return text
 
 
 class Filing:

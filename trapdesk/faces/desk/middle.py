@@ -109,6 +109,7 @@ class Middle(Container):
         foot = self.screen.query_one(Foot)
         foot.offered = self.shown.keys or VIEWING if self.held and not helping else ()
         foot.about = self.shown.about
+        foot.plotting = self.plotting
 
     def _busy(self) -> str:
         """Return how far the work for the view is."""
