@@ -110,11 +110,11 @@ def test_a_journal_torn_anywhere_holds_what_was_whole(folder, reboot):
     data = kept.file.read_bytes()
     ends = [index + 1 for index, byte in enumerate(data) if byte == ord("\n")]
     assert len(ends) == 3
-    for length in range(0, len(data) + 1, 7):
+    for length in {*range(0, len(data) + 1, 61), *ends, *(end - 1 for end in ends)}:
         kept.file.write_bytes(data[:length])
         found, whole = journal.read(kept.file), sum(end <= length for end in ends)
         assert (found.design.site.height if found else None) == [None, 10.0, 11.0, 12.0][whole]
-    for place in range(0, ends[0], 11):  # a byte gone wrong
+    for place in range(0, ends[0], 97):  # a byte gone wrong
         kept.file.write_bytes(data[:place] + bytes([data[place] ^ 1]) + data[place + 1 :])
         assert journal.read(kept.file) is None
 
