@@ -38,6 +38,17 @@ async def pressed(desk, pilot, *names):
     await pilot.pause()
 
 
+async def noted(desk, pilot):
+    """Return the lines at the foot once a note that begins with a mark stands there."""
+    for _ in range(100):
+        foot = screen(desk)[-4:-1]
+        if any(line.startswith("! ") for line in foot):
+            return foot
+        # Fitting the foot to a new note comes after the key that brought it.
+        await pilot.pause(0.02)
+    return screen(desk)[-4:-1]
+
+
 async def typed(desk, pilot, text, *names):
     """Type a text, then press keys by name."""
     await pressed(desk, pilot, *text, *names)
