@@ -284,6 +284,18 @@ def test_stale_locks_are_told_from_live_ones(change, alive):
     assert replace(journal.myself(), **change).alive is alive
 
 
+async def test_what_is_unsaved_at_a_desk_that_still_runs_is_told(folder, monkeypatch):
+    session, _, _ = journalled(folder)
+    at_height(session, 11.0)
+    monkeypatch.setattr(journal, "myself", lambda: Owner(pid=1, start="not mine", boot="here"))
+    async with opened(kept=Journal(folder=folder)) as (desk, _):
+        assert f"kill -HUP {os.getpid()} ends it" in " ".join(text(desk).split())
+        assert not desk.foot.asking
+        found = journal.look_through(folder)
+    assert session.design in [held.design for held in found.running]
+    assert not found.left
+
+
 async def test_two_desks_on_a_file_are_noticed(folder, tmp_path, monkeypatch):
     path = tmp_path / "hill.toml"
     store.save(store.find().design, path)

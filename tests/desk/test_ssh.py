@@ -24,7 +24,7 @@ from tests.desk.terminals import LONGEST, Screen, environment
 TMUX = shutil.which("tmux")
 
 
-def serving(command, env):
+def serving(command, env, over):
     """Return what gives each client a terminal with a program in it."""
 
     async def serve(process):
@@ -46,12 +46,13 @@ def serving(command, env):
         else:  # a server hangs up on what ran over a link that is gone
             child.send_signal(signal.SIGHUP)
             await ended
+        over.set()
 
     return serve
 
 
 @asynccontextmanager
-async def server(command, env):
+async def server(command, env, over):
     """Serve on the loopback address; yields a function that connects and returns link and session."""
     host, key = asyncssh.generate_private_key("ssh-ed25519"), asyncssh.generate_private_key("ssh-ed25519")
 
@@ -66,7 +67,12 @@ async def server(command, env):
             return offered == key.convert_to_public()
 
     listening = await asyncssh.create_server(
-        Door, "127.0.0.1", 0, server_host_keys=[host], process_factory=serving(command, env), encoding=None
+        Door,
+        "127.0.0.1",
+        0,
+        server_host_keys=[host],
+        process_factory=serving(command, env, over),
+        encoding=None,
     )
     known = asyncssh.import_known_hosts(f"* {host.export_public_key().decode()}")
 
@@ -114,7 +120,8 @@ async def test_open_edit_drop_the_link_and_come_back(tmp_path, holds):
     desk = [sys.executable, "-m", "trapdesk"]
     socket = str(tmp_path / "tmux")
     held = [TMUX, "-S", socket, "-f", os.devnull, "new-session", "-A", "-s", "hill", *desk]
-    async with server(held if holds == "tmux" else desk, env) as connect:
+    over = asyncio.Event()
+    async with server(held if holds == "tmux" else desk, env, over) as connect:
         try:
             link, remote = await connect()
             await remote.until("next: ")
@@ -123,6 +130,7 @@ async def test_open_edit_drop_the_link_and_come_back(tmp_path, holds):
             await remote.until("feed point at 12 m")
             link.abort()
             await link.wait_closed()
+            await asyncio.wait_for(over.wait(), LONGEST)  # what ran over the link has been hung up on
             link, remote = await connect()
             if holds == "the journal":
                 await remote.until("r resumes")

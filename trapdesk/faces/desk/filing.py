@@ -82,7 +82,7 @@ class Filing:
         trouble = self.trouble()
         if trouble:
             self._asker.say(trouble, refused=True)
-        elif not self._warn_of_others(found.running) and first:
+        elif not (self._warn_of_others(found.running) or self._tell_of_unsaved(found.running)) and first:
             self._asker.say(FIRST_RUN)
         if found.left:
             here = self._here(self._session.path)
@@ -121,6 +121,18 @@ class Filing:
                     f"another desk (process {other.owner.pid}) has this file open: save under another name"
                 )
                 self._asker.say(words, refused=True)
+                return True
+        return False
+
+    def _tell_of_unsaved(self, running: tuple[Left, ...]) -> bool:
+        """Tell of a desk that runs elsewhere with unsaved edits, as over a link that dropped unnoticed."""
+        for other in running:
+            if other.unsaved:
+                pid, title = other.owner.pid, visible(other.design.title, 30)
+                words = (
+                    f"{title} is unsaved at another desk; kill -HUP {pid} ends it, the next start resumes it"
+                )
+                self._asker.say(words)
                 return True
         return False
 
