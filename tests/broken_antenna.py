@@ -9,7 +9,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from tests.hung_antenna import Hung, World
-from trapdesk.reading_kinds import Doubt, Interval, Reading
+from trapdesk.design.reading_kinds import Doubt, Interval, Reading
 
 WIDE = World(wide=0.24)
 STUB = 0.02

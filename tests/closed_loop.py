@@ -7,12 +7,12 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from tests.hung_antenna import HONEST, WIDER, Hung
-from trapdesk import store
 from trapdesk.services.antenna_readings import Hoist
 from trapdesk.services.ensemble import Ensemble
 from trapdesk.services.moves import Prospects, advise
 from trapdesk.services.solve import solve
 from trapdesk.services.updating import update
+from trapdesk.store import store
 
 PRESETS = ("40-20-vee", "80-40-flat", "20-10-flat")
 MOST_LOWERINGS = 6

@@ -11,12 +11,12 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from trapdesk.design import Shape
+from trapdesk.design.design import Shape
+from trapdesk.design.reading_kinds import Doubt, Interval, Reading
 from trapdesk.engine.cables import propagation, transform
 from trapdesk.engine.mesh import Side
 from trapdesk.engine.ports import chebyshev_nodes, polynomial_weights, terminate
 from trapdesk.engine.wire import BentWire, plan, solve_whole
-from trapdesk.reading_kinds import Doubt, Interval, Reading
 from trapdesk.services.antenna_readings import dips, squared
 from trapdesk.services.beliefs import TWO_THIRDS, soil_at
 from trapdesk.services.ensemble import WIRES, Ensemble

@@ -5,11 +5,11 @@ from dataclasses import replace
 
 import numpy as np
 
-from trapdesk.design import Antenna, AntennaWire, Band, Bands, Design, Lengths, Shape, Site, Station
+from trapdesk.design.design import Antenna, AntennaWire, Band, Bands, Design, Lengths, Shape, Site, Station
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.parts import GivenCapacitor, Solenoid, Trap
 from trapdesk.engine.ground import Ground, GroundKind
 from trapdesk.engine.wire import Wire
-from trapdesk.fields import SOLVE
-from trapdesk.parts import GivenCapacitor, Solenoid, Trap
 from trapdesk.services.figures import (
     BandFigures,
     CoilFigures,

@@ -12,14 +12,14 @@ import pytest
 from scipy import stats
 
 from tests.cases import reference
-from trapdesk.design import Antenna, Band, Bands, Design, Lengths
-from trapdesk.doubts import CUT, Doubts, Meaning
+from trapdesk.design.design import Antenna, Band, Bands, Design, Lengths
+from trapdesk.design.doubts import CUT, Doubts, Meaning
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.parts import GivenCapacitor, GivenCoil, Trap
+from trapdesk.design.rules import check
 from trapdesk.engine.ground import SOILS, UNKNOWN_SOIL, Ground, GroundKind
 from trapdesk.engine.resonator import lc_resonance
 from trapdesk.engine.sampling import normal_probability, normal_quantile, uniform
-from trapdesk.fields import SOLVE
-from trapdesk.parts import GivenCapacitor, GivenCoil, Trap
-from trapdesk.rules import check
 from trapdesk.services.beliefs import Belief, beliefs, draw, soil_at
 from trapdesk.services.causes import deviation
 from trapdesk.services.trap import build

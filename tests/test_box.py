@@ -2,10 +2,10 @@
 
 import pytest
 
-from trapdesk import box_read, store
-from trapdesk.box import TABLES
-from trapdesk.box_read import BoxFault, boxes, find_box, load_box, read_box
+from trapdesk.design.box import TABLES
 from trapdesk.errors import FileFault
+from trapdesk.store import box_read, store
+from trapdesk.store.box_read import BoxFault, boxes, find_box, load_box, read_box
 
 HEAD = 'format = 1\nkind = "box"\n'
 FORMER = '[[formers]]\nname = "pipe"\ndiameter = "40 mm"\nlength = "8 cm"\ncount = 2\n'

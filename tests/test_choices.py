@@ -6,14 +6,14 @@ from dataclasses import replace
 
 import pytest
 
-from trapdesk import store
-from trapdesk.capacitor_kinds import GivenCapacitor
-from trapdesk.coil_kinds import GivenCoil
+from trapdesk.design.capacitor_kinds import GivenCapacitor
+from trapdesk.design.coil_kinds import GivenCoil
+from trapdesk.design.parts import Trap
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import choices_out, cli
-from trapdesk.parts import Trap
 from trapdesk.services.choices import ABOVE, BELOW, choices
 from trapdesk.services.solve import solve
+from trapdesk.store import store
 
 
 @pytest.fixture(scope="module", params=store.presets())

@@ -10,8 +10,9 @@ from pathlib import Path
 
 import pytest
 
-from trapdesk import __version__, store
+from trapdesk import __version__
 from trapdesk.faces import cli
+from trapdesk.store import store
 
 ROOT = Path(__file__).resolve().parent.parent
 PRESET = "40-20-vee"

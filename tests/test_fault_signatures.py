@@ -11,7 +11,7 @@ from trapdesk.services.ensemble import Ensemble
 from trapdesk.services.faults import Bench
 from trapdesk.services.solve import solve
 from trapdesk.services.updating import latents_of, stage_of
-from trapdesk.toml_read import read_text
+from trapdesk.store.toml_read import read_text
 
 HERE = Path(__file__).parent / "reference"
 

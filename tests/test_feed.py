@@ -11,13 +11,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from tests.cases import published
-from trapdesk import store
-from trapdesk.engine.cables import propagation
-from trapdesk.faces import cli, feed_out, json_out, layout, rows, words
-from trapdesk.faces.json_out import figures as document_of
-from trapdesk.services.feed import FeedPoint, Path, Step, given_power, line_of, way_down
-from trapdesk.services.solve import at_frequencies, solve
-from trapdesk.station import (
+from trapdesk.design.station import (
     Choke,
     FeedLine,
     Foldback,
@@ -29,6 +23,12 @@ from trapdesk.station import (
     TunerPlace,
     Weather,
 )
+from trapdesk.engine.cables import propagation
+from trapdesk.faces import cli, feed_out, json_out, layout, rows, words
+from trapdesk.faces.json_out import figures as document_of
+from trapdesk.services.feed import FeedPoint, Path, Step, given_power, line_of, way_down
+from trapdesk.services.solve import at_frequencies, solve
+from trapdesk.store import store
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=60)
 DESIGN, _ = store.preset("40-20-vee")

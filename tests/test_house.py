@@ -16,36 +16,6 @@ LINES = 500
 LONG: dict[str, str] = {}
 """Files allowed past the line limit, each with its reason."""
 
-# The design is spread over several files at the top, one room.
-# Rooms at the top that take more than one file.
-ROOM_OF = {
-    "box": "design",
-    "box_read": "store",
-    "doubts": "design",
-    "fields": "design",
-    "capacitor_kinds": "design",
-    "coil_kinds": "design",
-    "former_kinds": "design",
-    "history": "design",
-    "part_rules": "design",
-    "parts": "design",
-    "measured_part": "design",
-    "reading_kinds": "design",
-    "reading_text": "units",
-    "sweep_columns": "store",
-    "sweep_files": "store",
-    "rules": "design",
-    "station": "design",
-    "station_rules": "design",
-    "numerals": "units",
-    "prints": "units",
-    "print_tables": "units",
-    "unit_names": "units",
-    "spoken": "store",
-    "toml_edit": "store",
-    "toml_read": "store",
-}
-
 # The room of a module is its folder, or its own name at the top; a room sees only what stands here.
 SEES = {
     "engine": {"engine"},
@@ -65,7 +35,7 @@ ENGINE_MAY = set(
 )
 SERVICES_MAY_NOT = {"time", "datetime", "random"}
 OUTSIDERS = {
-    "pint": lambda module: module == "trapdesk.units",
+    "pint": lambda module: module == "trapdesk.units.units",
     "textual": lambda module: room(module) == "desk",
     "plotext": lambda module: room(module) == "desk",
     "rich": lambda module: room(module) == "desk",
@@ -85,8 +55,7 @@ def room(module: str) -> str:
     parts = module.split(".")
     if parts[1:3] == ["faces", "desk"]:
         return "desk"
-    name = parts[1] if len(parts) > 1 else "root"
-    return ROOM_OF.get(name, name)
+    return parts[1] if len(parts) > 1 else "root"
 
 
 def imports(source: str, module: str, is_package: bool = False) -> list[tuple[int, str]]:
@@ -152,16 +121,16 @@ def test_imports(module):
         ("trapdesk.engine.coils", "from trapdesk import design"),
         ("trapdesk.engine.coils", "from ..services import solve"),
         ("trapdesk.engine.coils", "def f():\n    import pint"),
-        ("trapdesk.design", "from trapdesk.services.solve import solve"),
-        ("trapdesk.parts", "from trapdesk.units import read, write"),
+        ("trapdesk.design.design", "from trapdesk.services.solve import solve"),
+        ("trapdesk.design.parts", "from trapdesk.units import read, write"),
         ("trapdesk.services.solve", "from trapdesk import units"),
         ("trapdesk.services.solve", "from trapdesk.store import load"),
         ("trapdesk.services.solve", "import trapdesk.faces.rows"),
         ("trapdesk.services.solve", "import scipy"),
         ("trapdesk.services.solve", "import time"),
-        ("trapdesk.units", "import trapdesk.services.solve"),
-        ("trapdesk.store", "import pint"),
-        ("trapdesk.store", "from trapdesk.services import solve"),
+        ("trapdesk.units.units", "import trapdesk.services.solve"),
+        ("trapdesk.store.store", "import pint"),
+        ("trapdesk.store.store", "from trapdesk.services import solve"),
         ("trapdesk.faces.rows", "from rich.text import Text"),
         ("trapdesk.faces.cli", "import importlib\nimportlib.import_module('textual')"),
         ("trapdesk.faces.cli", "import importlib\nimportlib.import_module(name)"),
@@ -180,8 +149,8 @@ def test_imports_catch(module, source):
         ("trapdesk.engine.coils", "from collections.abc import Callable\nimport numpy.typing as npt"),
         ("trapdesk.engine.coils", "from . import special\nfrom trapdesk.engine import special"),
         ("trapdesk.services.solve", "from trapdesk.engine import wire\nfrom ..design import Design"),
-        ("trapdesk.units", "import pint"),
-        ("trapdesk.design", "from trapdesk.fields import a, b"),
+        ("trapdesk.units.units", "import pint"),
+        ("trapdesk.design.design", "from trapdesk.design.fields import a, b"),
         ("trapdesk.faces.cli", "from trapdesk import __version__, store"),
         ("trapdesk.faces.desk.app", "from textual.app import App\nimport plotext"),
     ],

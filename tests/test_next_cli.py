@@ -7,8 +7,8 @@ import pytest
 
 from tests.closed_loop import ensemble_of
 from tests.hung_antenna import Hung
-from trapdesk import store
 from trapdesk.faces import cli
+from trapdesk.store import store
 
 
 @pytest.fixture

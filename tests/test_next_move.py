@@ -14,9 +14,9 @@ import pytest
 from tests.broken_antenna import readings_of
 from tests.closed_loop import ensemble_of, honest, study, table
 from tests.hung_antenna import WIDER, Hung
-from trapdesk import store
-from trapdesk.design import with_value
-from trapdesk.reading_kinds import Doubt, Interval, Reading
+from trapdesk.design.design import with_value
+from trapdesk.design.reading_kinds import Doubt, Interval, Reading
+from trapdesk.design.station import FeedLine
 from trapdesk.services.antenna_readings import Forward, Hoist, ReadingUnusable
 from trapdesk.services.ensemble import Ensemble
 from trapdesk.services.faults import FAULTS, Bench, diagnose, of_other_band
@@ -24,7 +24,7 @@ from trapdesk.services.moves import advise, step_of
 from trapdesk.services.next_move import next_move
 from trapdesk.services.solve import solve
 from trapdesk.services.updating import latents_of, learned, stage_of, update
-from trapdesk.station import FeedLine
+from trapdesk.store import store
 
 LONG = bool(os.environ.get("TRAPDESK_LONG"))
 ALL, FAULTY = (200, 50) if LONG else (6, 2)
@@ -179,7 +179,7 @@ def test_what_belongs_to_the_antenna_goes_along(vee):
 
 
 def _history(readings):
-    from trapdesk.history import History, Step
+    from trapdesk.design.history import History, Step
 
     return History(steps=(Step(readings=" ".join(f"{r.name}={r.typed}" for r in readings)),))
 

@@ -5,17 +5,17 @@ from pathlib import Path
 
 import pytest
 
-from trapdesk import store
-from trapdesk.capacitor_kinds import CAPACITORS
-from trapdesk.coil_kinds import COILS
-from trapdesk.design import get, known_at, with_value
+from trapdesk.design.capacitor_kinds import CAPACITORS
+from trapdesk.design.coil_kinds import COILS
+from trapdesk.design.design import get, known_at, with_value
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.rules import check
 from trapdesk.errors import BadInput, NoAnswer, TrapdeskError
 from trapdesk.faces import cli, coil_out, json_out, layout, rows, sheet
 from trapdesk.faces.desk import form
-from trapdesk.fields import SOLVE
-from trapdesk.rules import check
 from trapdesk.services.solve import at_frequencies, solve
-from trapdesk.toml_read import DesignFault
+from trapdesk.store import store
+from trapdesk.store.toml_read import DesignFault
 
 DESIGNS = sorted((Path(__file__).parent / "designs").glob("*-trap.toml"))
 COMBO = next(path for path in DESIGNS if path.stem == "combo-trap")

@@ -6,15 +6,15 @@ import numpy as np
 import pytest
 
 from tests.cases import HERE, reference
-from trapdesk import store
-from trapdesk.design import with_value
+from trapdesk.design.design import with_value
 from trapdesk.engine.fits import Sweep, loop_impedance
 from trapdesk.engine.resonator import impedance
-from trapdesk.reading_text import parse
 from trapdesk.services.part_readings import find
 from trapdesk.services.part_values import ReadingRefused, ReadingsDisagree
 from trapdesk.services.trap import build
-from trapdesk.sweep_files import read
+from trapdesk.store import store
+from trapdesk.store.sweep_files import read
+from trapdesk.units.reading_text import parse
 
 DESIGN = store.preset("40-20-vee")[0]
 BUILT = build(DESIGN.antenna.trap)

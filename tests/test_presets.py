@@ -2,9 +2,9 @@
 
 import pytest
 
-from trapdesk import store
-from trapdesk.fields import SOLVE
-from trapdesk.parts import Solenoid
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.parts import Solenoid
+from trapdesk.store import store
 
 # Band edges in Hz of ITU Region 1, from public copies of the band table; national rules decide.
 REGION_1 = {

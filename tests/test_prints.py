@@ -8,8 +8,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from trapdesk import print_tables, prints
 from trapdesk.errors import BadInput
+from trapdesk.units import print_tables, prints
 
 PUBLISHED = tomllib.loads((Path(__file__).parent / "published" / "capacitor-codes.toml").read_text("utf-8"))
 E6 = (10, 15, 22, 33, 47, 68)  # IEC 60063, from memory

@@ -6,10 +6,10 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from trapdesk.design.reading_kinds import GROUPS, KINDS, PARTS, Doubt, Interval
 from trapdesk.errors import BadInput
-from trapdesk.reading_kinds import GROUPS, KINDS, PARTS, Doubt, Interval
-from trapdesk.reading_text import parse
-from trapdesk.unit_names import Dimension
+from trapdesk.units.reading_text import parse
+from trapdesk.units.unit_names import Dimension
 
 
 def one(text):

@@ -11,18 +11,18 @@ import pytest
 import skrf
 
 from tests.cases import HERE
-from trapdesk import store
-from trapdesk.coil_kinds import CableCoil
-from trapdesk.design import with_value
+from trapdesk.design.coil_kinds import CableCoil
+from trapdesk.design.design import with_value
+from trapdesk.design.measured_part import Measured
+from trapdesk.design.reading_kinds import KINDS, PARTS
 from trapdesk.faces import cli, readings_out
-from trapdesk.measured_part import Measured
-from trapdesk.reading_kinds import KINDS, PARTS
 from trapdesk.services.beliefs import beliefs, draw
 from trapdesk.services.ensemble import Ensemble
 from trapdesk.services.part_values import ReadingRefused
 from trapdesk.services.solve import solve
 from trapdesk.services.trap import build
 from trapdesk.services.trial_traps import STAGES
+from trapdesk.store import store
 
 LOOP = HERE / "s1p" / "trap_loop_ma_mhz.s1p"
 PRESET = "40-20-vee"

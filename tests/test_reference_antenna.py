@@ -12,11 +12,11 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from trapdesk.design import Antenna, AntennaWire, Band, Bands, Design, Lengths, Site, Station
+from trapdesk.design.design import Antenna, AntennaWire, Band, Bands, Design, Lengths, Site, Station
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.parts import GivenCapacitor, GivenCoil, Trap
 from trapdesk.engine.ports import terminate
 from trapdesk.engine.wire import plan, solve_ports
-from trapdesk.fields import SOLVE
-from trapdesk.parts import GivenCapacitor, GivenCoil, Trap
 from trapdesk.services.solve import at_frequencies, hang, solve
 from trapdesk.services.trap import build
 

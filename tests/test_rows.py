@@ -10,11 +10,11 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from tests.sample_figures import BANDS, DESIGN, FIGURES, FINDINGS, PLAIN, TRAP
-from trapdesk.design import Bands
+from trapdesk.design.design import Bands
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import json_out, layout, rows, shown, words
 from trapdesk.services.figures import AtFrequency, Finding, Level, Shares
-from trapdesk.unit_names import UNITS, Dimension
+from trapdesk.units.unit_names import UNITS, Dimension
 
 EVERY = [FIGURES, PLAIN]
 

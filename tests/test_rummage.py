@@ -9,14 +9,12 @@ import numpy as np
 import pytest
 from scipy.optimize import brentq
 
-from trapdesk import store
-from trapdesk.box import Box, Capacitor, Core, Former, Wire
-from trapdesk.box_read import find_box
-from trapdesk.capacitor_kinds import GivenCapacitor
+from trapdesk.design.box import Box, Capacitor, Core, Former, Wire
+from trapdesk.design.capacitor_kinds import GivenCapacitor
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.parts import Trap
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import cli, rummage_out
-from trapdesk.fields import SOLVE
-from trapdesk.parts import Trap
 from trapdesk.services.box_parts import capacitor_part, solenoid_part
 from trapdesk.services.coils import COIL_DOUBT
 from trapdesk.services.combos import PIECES, WAYS, combos
@@ -26,6 +24,8 @@ from trapdesk.services.scoring import cost
 from trapdesk.services.solve import solve
 from trapdesk.services.trap import build
 from trapdesk.services.winders import END_ROOM, SPACINGS, SPREAD, TAIL
+from trapdesk.store import store
+from trapdesk.store.box_read import find_box
 
 
 def preset(name="40-20-vee"):

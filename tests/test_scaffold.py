@@ -21,7 +21,7 @@ ROOT = Path(__file__).resolve().parent.parent
 PROJECT = tomllib.loads((ROOT / "pyproject.toml").read_text("utf-8"))
 README = (ROOT / "README.md").read_text("utf-8")
 
-# What store.py does to find the presets, once in an installed copy and once in a checkout.
+# What store/store.py does to find the presets, once in an installed copy and once in a checkout.
 FIND_PRESETS = """
 from importlib import resources
 from pathlib import Path

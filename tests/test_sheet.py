@@ -7,9 +7,9 @@ from dataclasses import replace
 import pytest
 
 from tests.sample_figures import BANDS, DESIGN, FIGURES, LENGTHS, PLAIN
-from trapdesk.design import Bands
+from trapdesk.design.design import Bands
+from trapdesk.design.parts import GivenCapacitor, GivenCoil
 from trapdesk.faces import hill_card, json_out, sheet, words
-from trapdesk.parts import GivenCapacitor, GivenCoil
 
 GIVEN_COIL = replace(
     FIGURES,

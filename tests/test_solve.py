@@ -10,8 +10,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from trapdesk import store
-from trapdesk.design import (
+from trapdesk.design.design import (
     MODES,
     UNKNOWN,
     Antenna,
@@ -25,13 +24,14 @@ from trapdesk.design import (
     get,
     with_value,
 )
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.parts import GivenCapacitor, GivenCoil, Solenoid, Trap
+from trapdesk.design.rules import InvalidDesign
 from trapdesk.engine.ground import SOILS
 from trapdesk.errors import NoAnswer, TrapdeskError
-from trapdesk.fields import SOLVE
-from trapdesk.parts import GivenCapacitor, GivenCoil, Solenoid, Trap
-from trapdesk.rules import InvalidDesign
 from trapdesk.services.figures import Level
 from trapdesk.services.solve import at_frequencies, solve, with_site_effects
+from trapdesk.store import store
 
 UPPER = Band(name="40 m", low=7.0e6, high=7.2e6, wanted_low=7.05e6, wanted_high=7.1e6)
 LOWER = Band(name="80 m", low=3.5e6, high=3.8e6, wanted_low=3.6e6, wanted_high=3.67e6)

@@ -6,11 +6,9 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from trapdesk import store
-from trapdesk.design import Band, with_value
-from trapdesk.engine.cable_types import CABLES
-from trapdesk.rules import check
-from trapdesk.station import (
+from trapdesk.design.design import Band, with_value
+from trapdesk.design.rules import check
+from trapdesk.design.station import (
     TUNER_NETWORKS,
     Choke,
     FeedLine,
@@ -25,7 +23,9 @@ from trapdesk.station import (
     TunerPlace,
     Weather,
 )
-from trapdesk.toml_read import DesignFault
+from trapdesk.engine.cable_types import CABLES
+from trapdesk.store import store
+from trapdesk.store.toml_read import DesignFault
 
 TEXT = """\
 [bands.lower]

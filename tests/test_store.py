@@ -9,16 +9,17 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from trapdesk import prints, store
-from trapdesk.capacitor_kinds import CAPACITORS, SingleCapacitor
-from trapdesk.coil_kinds import COILS, CableCoil, GivenCoil, Solenoid, Toroid
-from trapdesk.design import Band, Bands, Design, get, with_value
+from trapdesk.design.capacitor_kinds import CAPACITORS, SingleCapacitor
+from trapdesk.design.coil_kinds import COILS, CableCoil, GivenCoil, Solenoid, Toroid
+from trapdesk.design.design import Band, Bands, Design, get, with_value
+from trapdesk.design.fields import SOLVE, declared
+from trapdesk.design.parts import Trap, Weather
+from trapdesk.design.rules import Breach, check, trap_unknowns
 from trapdesk.errors import FileFault
-from trapdesk.fields import SOLVE, declared
-from trapdesk.parts import Trap, Weather
-from trapdesk.rules import Breach, check, trap_unknowns
-from trapdesk.spoken import declaration, spoken, tables
-from trapdesk.toml_read import LONGEST_TEXT, MOST_FAULTS, DesignFault
+from trapdesk.store import store
+from trapdesk.store.spoken import declaration, spoken, tables
+from trapdesk.store.toml_read import LONGEST_TEXT, MOST_FAULTS, DesignFault
+from trapdesk.units import prints
 
 SMALL = """\
 [bands.lower]

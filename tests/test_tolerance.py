@@ -11,12 +11,12 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from trapdesk import store
-from trapdesk.capacitor_kinds import Printed, SingleCapacitor
-from trapdesk.design import JudgedAt, with_value
+from trapdesk.design.capacitor_kinds import Printed, SingleCapacitor
+from trapdesk.design.design import JudgedAt, with_value
+from trapdesk.design.parts import CableCoil, StubCapacitor, Toroid
+from trapdesk.design.station import FeedLine
 from trapdesk.engine.ports import chebyshev_nodes, terminate
 from trapdesk.engine.wire import plan, solve_whole
-from trapdesk.parts import CableCoil, StubCapacitor, Toroid
 from trapdesk.services import tolerance as service
 from trapdesk.services.advice import advise, for_yield
 from trapdesk.services.beliefs import CAUSES
@@ -26,7 +26,7 @@ from trapdesk.services.response import swr
 from trapdesk.services.solve import solve
 from trapdesk.services.tolerance import allowance_of, quick_yield, tolerance, yield_of
 from trapdesk.services.trial_traps import STAGES
-from trapdesk.station import FeedLine
+from trapdesk.store import store
 
 PRESETS = ("20-10-flat", "40-20-vee", "80-40-flat")
 AS_CUT, TUNED, AIMED, WET = STAGES

@@ -13,7 +13,6 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from trapdesk import store
 from trapdesk.faces import cli, hill_card, json_out, sheet, tolerance_json, tolerance_out, trial_run
 from trapdesk.services.advice import advise
 from trapdesk.services.beliefs import CAUSES, QUANTITIES
@@ -21,6 +20,7 @@ from trapdesk.services.ensemble import Ensemble
 from trapdesk.services.solve import solve
 from trapdesk.services.tolerance import Yield, tolerance
 from trapdesk.services.trial_traps import STAGES
+from trapdesk.store import store
 
 ROOT = Path(__file__).resolve().parent.parent
 FIGURES = solve(store.preset("40-20-vee")[0], site_effects=True)

@@ -7,29 +7,30 @@ import numpy as np
 import pytest
 
 from tests.cases import reference
-from trapdesk import prints, store
-from trapdesk.capacitor_kinds import (
+from trapdesk.design.capacitor_kinds import (
     GivenCapacitor,
     ParallelCapacitors,
     SeriesCapacitors,
     SingleCapacitor,
     StubCapacitor,
 )
-from trapdesk.coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
-from trapdesk.design import with_value
+from trapdesk.design.coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
+from trapdesk.design.design import with_value
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.parts import Sealing, Trap
+from trapdesk.design.rules import check, check_part, trap_unknowns
 from trapdesk.engine import cables
 from trapdesk.engine.cable_trap import Terminals
 from trapdesk.engine.capacitors import DIELECTRICS, stub_end_voltage, stub_impedance, stub_length
 from trapdesk.engine.resonator import impedance
 from trapdesk.errors import NoAnswer
-from trapdesk.fields import SOLVE
-from trapdesk.parts import Sealing, Trap
-from trapdesk.rules import check, check_part, trap_unknowns
 from trapdesk.services.capacitors import build_capacitor, drift_of, line_of, tolerance_of, weights
 from trapdesk.services.figures import Level
 from trapdesk.services.solve import solve
 from trapdesk.services.trap import build
 from trapdesk.services.trap_figures import adjustments
+from trapdesk.store import store
+from trapdesk.units import prints
 
 F = 14.05e6
 W = 2 * math.pi * F

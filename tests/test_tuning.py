@@ -11,7 +11,15 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from tests.cases import published, reference
-from trapdesk import store
+from trapdesk.design.station import (
+    TUNER_NETWORKS,
+    FeedLine,
+    Tap,
+    Tuner,
+    TunerCapacitor,
+    TunerCoil,
+    TunerPlace,
+)
 from trapdesk.engine.arms import Problem
 from trapdesk.engine.ladder import carried, input_impedance
 from trapdesk.engine.networks import NETWORKS, ladder_of
@@ -20,7 +28,7 @@ from trapdesk.services import tuning
 from trapdesk.services.feed import FeedPoint, Path
 from trapdesk.services.reach import reach_map, reading, tuner_answer
 from trapdesk.services.solve import solve
-from trapdesk.station import TUNER_NETWORKS, FeedLine, Tap, Tuner, TunerCapacitor, TunerCoil, TunerPlace
+from trapdesk.store import store
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=40)
 DESIGN, _ = store.preset("40-20-vee")

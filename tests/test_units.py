@@ -13,9 +13,9 @@ from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
 from trapdesk.errors import BadInput, Fault, FileFault, NoAnswer, visible
-from trapdesk.numerals import rounded, shortest_decimal, snapped
-from trapdesk.unit_names import ELEMENTS, IMPERIAL, LETTERS, SHOWN, UNITS
-from trapdesk.units import (
+from trapdesk.units.numerals import rounded, shortest_decimal, snapped
+from trapdesk.units.unit_names import ELEMENTS, IMPERIAL, LETTERS, SHOWN, UNITS
+from trapdesk.units.units import (
     Dimension,
     _ask_pint,
     gauge_diameter,
@@ -723,7 +723,7 @@ def test_text_of_no_number():
 
 def test_everyday_text_needs_no_pint():
     code = (
-        "import sys; from trapdesk.units import Dimension as D, read, show, to_text;"
+        "import sys; from trapdesk.units.units import Dimension as D, read, show, to_text;"
         "read('8.2 uH', D.INDUCTANCE); read('32 ft 6 in', D.LENGTH); read('7.1 mhz', D.FREQUENCY);"
         "read('AWG 14', D.LENGTH); show(to_text(2.0, D.ANGLE) and 2.0, D.ANGLE);"
         "assert not {'pint', 'numpy'} & set(sys.modules);"

@@ -5,15 +5,15 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from trapdesk import store
-from trapdesk.design import MODES, with_value
+from trapdesk.design.design import MODES, with_value
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.station import Choke, FeedLine, Foldback, Segment, Transmitter, Tuner, TunerPlace
 from trapdesk.engine.cables import line_figures, propagation
 from trapdesk.faces import feed_out
-from trapdesk.fields import SOLVE
 from trapdesk.services.feed import FeedPoint, given_power, line_of
 from trapdesk.services.solve import solve
 from trapdesk.services.worth import POINTS, Way, worth
-from trapdesk.station import Choke, FeedLine, Foldback, Segment, Transmitter, Tuner, TunerPlace
+from trapdesk.store import store
 
 DESIGN, _ = store.preset("40-20-vee")
 FED = replace(DESIGN, station=replace(DESIGN.station, line=FeedLine(length=25.0), transmitter=Transmitter()))

@@ -12,12 +12,12 @@ from dataclasses import replace
 import pytest
 
 from tests.bench.yardstick import ratio, record
-from trapdesk import store
-from trapdesk.design import Shape, Site, with_value
+from trapdesk.design.design import Shape, Site, with_value
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.parts import GivenCoil, Solenoid
 from trapdesk.engine import rings
-from trapdesk.fields import SOLVE
-from trapdesk.parts import GivenCoil, Solenoid
 from trapdesk.services.solve import solve
+from trapdesk.store import store
 
 WOUND = Solenoid(former=0.04, wire=1.6e-3, pitch=2.4e-3, turns=SOLVE)
 COILS = {"given coil": GivenCoil(q=200.0), "solenoid": WOUND}

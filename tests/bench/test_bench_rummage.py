@@ -1,12 +1,12 @@
 """How long a look through the ready box takes, in yardsticks."""
 
 from tests.bench.yardstick import ratio, record
-from trapdesk import store
-from trapdesk.box_read import find_box
 from trapdesk.engine.coil_table import quick_coil
 from trapdesk.engine.rings import _whole_rings
 from trapdesk.services.rummage import rummage
 from trapdesk.services.winders import TURNS
+from trapdesk.store import store
+from trapdesk.store.box_read import find_box
 
 DESIGN, BOX = store.preset("40-20-vee")[0], find_box()
 

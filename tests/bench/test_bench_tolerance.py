@@ -3,10 +3,10 @@
 import pytest
 
 from tests.bench.yardstick import ratio, record
-from trapdesk import store
 from trapdesk.services.ensemble import Ensemble
 from trapdesk.services.solve import solve
 from trapdesk.services.tolerance import tolerance
+from trapdesk.store import store
 
 
 @pytest.fixture(scope="module")

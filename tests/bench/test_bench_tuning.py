@@ -5,12 +5,12 @@ from dataclasses import replace
 import pytest
 
 from tests.bench.yardstick import ratio, record
-from trapdesk import store
-from trapdesk.design import with_value
+from trapdesk.design.design import with_value
+from trapdesk.design.station import FeedLine, Transmitter, Tuner, TunerCapacitor, TunerCoil
 from trapdesk.services.reach import reach_map, tuner_answer
 from trapdesk.services.solve import solve
 from trapdesk.services.worth import worth
-from trapdesk.station import FeedLine, Transmitter, Tuner, TunerCapacitor, TunerCoil
+from trapdesk.store import store
 
 
 def fed(name, **tuner):

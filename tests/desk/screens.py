@@ -5,13 +5,13 @@ from contextlib import asynccontextmanager
 
 from textual.events import Key
 
-from trapdesk import store
 from trapdesk.faces.desk import form
 from trapdesk.faces.desk.app import Desk
 from trapdesk.faces.desk.form import DRAWERS
 from trapdesk.faces.desk.session import Session
 from trapdesk.faces.desk.terminal import Glyphs, Look
 from trapdesk.services.solve import solve
+from trapdesk.store import store
 
 CHARACTERS = {"space": " ", "plus": "+", "minus": "-", "question_mark": "?", "slash": "/"}
 PLAIN = Look(glyphs=Glyphs.ASCII, theme="plain")

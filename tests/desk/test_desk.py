@@ -8,12 +8,12 @@ import pytest
 from textual.events import Paste
 
 from tests.desk.screens import BRAILLE, go_to, noted, opened, pressed, screen, settled, text, typed
-from trapdesk import store
-from trapdesk.design import get
+from trapdesk.design.design import get
+from trapdesk.design.fields import SOLVE
 from trapdesk.faces import rows
 from trapdesk.faces.desk.opening import run
-from trapdesk.fields import SOLVE
 from trapdesk.services.solve import solve
+from trapdesk.store import store
 
 HEIGHT = "site.height"
 

@@ -6,13 +6,13 @@ from dataclasses import replace
 import pytest
 
 from tests.desk.screens import go_to, opened, pressed, screen, settled, text, typed
-from trapdesk import store
+from trapdesk.design.rules import check
 from trapdesk.faces.desk import config
 from trapdesk.faces.desk.config import Config
 from trapdesk.faces.desk.filing import FIRST_RUN, begun
 from trapdesk.faces.desk.journal import Journal
 from trapdesk.faces.desk.terminal import look
-from trapdesk.rules import check
+from trapdesk.store import store
 
 HEIGHT = "site.height"
 

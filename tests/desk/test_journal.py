@@ -10,11 +10,11 @@ from dataclasses import replace
 import pytest
 
 from tests.desk.screens import go_to, opened, pressed, screen, settled, text, typed
-from trapdesk import store
-from trapdesk.design import with_value
+from trapdesk.design.design import with_value
 from trapdesk.faces.desk import journal
 from trapdesk.faces.desk.journal import Journal, Owner
 from trapdesk.faces.desk.session import Session
+from trapdesk.store import store
 
 HEIGHT = "site.height"
 

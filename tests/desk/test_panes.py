@@ -9,7 +9,6 @@ from dataclasses import replace
 import pytest
 
 from tests.desk.screens import LONGEST, go_to, noted, opened, pressed, screen, settled, text, typed
-from trapdesk import store
 from trapdesk.faces.cli import main
 from trapdesk.faces.desk import form
 from trapdesk.faces.desk.arrange import LETTERS, VIEWS, arrangement, names
@@ -18,6 +17,7 @@ from trapdesk.faces.desk.lines import width_of
 from trapdesk.faces.desk.optional import PARTS
 from trapdesk.faces.desk.panes.jobs import FOR_YIELD, RUMMAGE, TOLERANCE
 from trapdesk.faces.desk.panes.texts import text_lines
+from trapdesk.store import store
 
 PRESET = "40-20-vee"
 HEIGHT = "site.height"

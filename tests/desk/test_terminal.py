@@ -9,7 +9,7 @@ from dataclasses import replace
 import pytest
 
 from tests.desk.terminals import opened
-from trapdesk import store
+from trapdesk.store import store
 
 READY = "next: "
 

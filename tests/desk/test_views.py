@@ -7,15 +7,15 @@ import numpy as np
 import pytest
 
 from tests.desk.screens import BRAILLE, PLAIN, go_to, opened, pressed, screen, settled, text, typed
-from trapdesk import store
-from trapdesk.design import with_value
+from trapdesk.design.design import with_value
+from trapdesk.design.fields import SOLVE
+from trapdesk.design.rules import check
 from trapdesk.faces import words
 from trapdesk.faces.desk import cures
 from trapdesk.faces.desk.plots import Panel, draw
-from trapdesk.fields import SOLVE
-from trapdesk.rules import check
 from trapdesk.services.figures import Level
 from trapdesk.services.solve import solve
+from trapdesk.store import store
 
 HEIGHT = "site.height"
 

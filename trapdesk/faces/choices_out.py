@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import Any
 
-from ..design import Design
+from ..design.design import Design
 from ..errors import visible
 from ..services.choices import Choices, Point
 from .json_out import FORMAT

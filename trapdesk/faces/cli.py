@@ -53,7 +53,7 @@ def _in_words(error: TrapdeskError) -> str:
     breaches = getattr(error, "breaches", ())
     if not breaches:
         return str(error)
-    from ..spoken import spoken
+    from ..store.spoken import spoken
 
     return "\n".join(str(spoken(breach)) for breach in breaches)
 
@@ -101,7 +101,7 @@ def _refuse_verb(files: list[str]) -> None:
 def _desk(file: str | None) -> int:
     if not (sys.stdin and sys.stdin.isatty() and sys.stdout and sys.stdout.isatty()):
         if file is not None:
-            from .. import store
+            from ..store import store
 
             store.find(file)
         raise Misuse("the desk needs a terminal; trapdesk figures FILE prints what it would show")
@@ -178,8 +178,8 @@ def _parser_of(verb: str) -> Parser:
 
 
 def _figures_of(file: str) -> Any:
-    from .. import store
     from ..services.solve import solve
+    from ..store import store
 
     return solve(store.find(file).design, site_effects=True)
 
@@ -207,7 +207,7 @@ def frequencies_of(texts: Sequence[str]) -> list[float]:
     """Return the frequencies of --at in Hz; commas separate them, so decimals take a point."""
     if not texts:
         return []
-    from .. import units
+    from ..units import units
 
     found, faults = [], []
     for piece in (piece for text in texts for piece in text.split(",")):
@@ -249,7 +249,7 @@ def tank(options: argparse.Namespace) -> str:
 
 def readings(options: argparse.Namespace) -> str:
     """Return what readings of a trap come to, as text or JSON; without any, how each is done."""
-    from .. import store
+    from ..store import store
     from . import json_out, readings_out
 
     opened = store.find(options.file)
@@ -281,7 +281,7 @@ def next_move(options: argparse.Namespace) -> str:
 
 def touchstone(options: argparse.Namespace) -> str:
     """Return the computed feed impedance as a Touchstone file or JSON."""
-    from .. import sweep_files
+    from ..store import sweep_files
     from . import feed_file, json_out
 
     found = _figures_of(options.file)
@@ -304,8 +304,8 @@ def rummage(options: argparse.Namespace) -> str:
     """Return the best traps a box can build for a design; what is wrong in the box is said after them."""
     if not 1 <= options.rows <= MOST_ROWS:
         raise BadInput(Fault("--rows", "outside the range", str(options.rows), f"1 to {MOST_ROWS}"))
-    from .. import box_read, store
     from ..services import rummage as service
+    from ..store import box_read, store
     from . import json_out, rummage_out
 
     design, fault = store.find(options.file).design, None
@@ -329,8 +329,8 @@ def rummage(options: argparse.Namespace) -> str:
 
 def choices(options: argparse.Namespace) -> str:
     """Return what other trap resonances and other ratios of L to C would do, as text or JSON."""
-    from .. import store
     from ..services import choices as service
+    from ..store import store
     from . import choices_out, json_out
 
     design = store.find(options.file).design

@@ -6,11 +6,11 @@ from collections.abc import Iterator, Sequence
 from dataclasses import replace
 from typing import Any
 
-from .. import toml_read
-from ..coil_kinds import COILS
+from ..design.coil_kinds import COILS
+from ..design.fields import SOLVE, declared
 from ..errors import BadInput, Fault
-from ..fields import SOLVE, declared
 from ..services.coil_check import CoilAnswer, check_coil
+from ..store import toml_read
 from . import trap_json
 from .json_out import FORMAT, inputs
 from .layout import WIDTH, folded

@@ -7,7 +7,7 @@ from collections.abc import Iterable, Iterator
 
 import numpy as np
 
-from ..design import MODES
+from ..design.design import MODES
 from ..errors import visible
 from ..services.feed import FeedPoint, Path, Step, way_down
 from ..services.figures import BandFigures, Figures

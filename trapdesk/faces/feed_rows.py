@@ -5,12 +5,12 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 
+from ..design.station import OWN, FeedLine
 from ..errors import visible
 from ..services.feed import voltage_rating
 from ..services.feed_findings import tuner_watts
 from ..services.figures import BandFigures, Figures
 from ..services.tuning import Element, TunerSetting
-from ..station import OWN, FeedLine
 from .shown import about, exact, impedance, known, swr
 
 PARTS = {"coil": "coil", "capacitor": "capacitor"}

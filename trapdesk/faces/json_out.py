@@ -13,9 +13,9 @@ from typing import Any
 
 import numpy as np
 
-from ..capacitor_kinds import Printed
-from ..design import Design
-from ..fields import SOLVE, declared, walk
+from ..design.capacitor_kinds import Printed
+from ..design.design import Design
+from ..design.fields import SOLVE, declared, walk
 from ..services.figures import (
     AtFrequency,
     BandFigures,

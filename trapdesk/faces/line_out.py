@@ -9,14 +9,14 @@ from typing import Any
 
 import numpy as np
 
+from ..design.station import OWN, FeedLine, ListedLoss, Weather
 from ..engine.cable_types import CABLES, LOSS_DOUBT
 from ..engine.cables import line_figures, load_behind, propagation
 from ..engine.reflection import swr
 from ..errors import BadInput, Fault, NoAnswer
 from ..services.feed import LineUse, line_of, voltage_rating
-from ..station import OWN, FeedLine, ListedLoss, Weather
-from ..unit_names import Dimension
-from ..units import read
+from ..units.unit_names import Dimension
+from ..units.units import read
 from . import feed_json, json_out
 from .feed_rows import line_name
 from .layout import folded

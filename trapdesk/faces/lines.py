@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from ..coil_kinds import CableCoil
-from ..design import Design, Shape, get
+from ..design.coil_kinds import CableCoil
+from ..design.design import Design, Shape, get
+from ..design.fields import SOLVE
 from ..engine.ground import GroundKind
 from ..errors import visible
-from ..fields import SOLVE
 from ..services.capacitors import cable_rating
 from ..services.figures import BandFigures, Figures
 from . import words

@@ -7,12 +7,12 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
+from ..design.station import TUNER_NETWORKS, FeedLine, Tuner
 from ..engine.networks import NETWORKS
 from ..errors import BadInput, Fault, NoAnswer
 from ..services.feed import line_of
 from ..services.load_match import MatchedPart, Solution, solutions, with_line
 from ..services.tuning import TunerSetting, tune_at
-from ..station import TUNER_NETWORKS, FeedLine, Tuner
 from . import feed_json, json_out
 from .feed_out import element_lines
 from .feed_rows import DIMENSIONS, PLACES, loss_text, setting_text, short_text
@@ -130,7 +130,7 @@ def _tuner(typed: dict[str, Any]) -> Tuner:
     """Return the tuner of a file, else a common one, with the limits that were typed."""
     tuner = Tuner()
     if "tuner" in typed:
-        from .. import store
+        from ..store import store
 
         tuner = store.find(typed["tuner"]).design.station.tuner
         if tuner is None:

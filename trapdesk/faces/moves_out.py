@@ -5,8 +5,8 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
+from ..design.reading_kinds import KINDS, Reading
 from ..errors import visible
-from ..reading_kinds import KINDS, Reading
 from ..services.moves import Advice, Option
 from ..services.next_move import NextMove
 from ..services.updating import Learned

@@ -5,13 +5,14 @@ from __future__ import annotations
 import argparse
 from dataclasses import replace
 
-from .. import reading_text, store, units
-from ..design import Design
+from ..design.design import Design
+from ..design.history import History
+from ..design.reading_kinds import PARTS, Reading
 from ..errors import BadInput, Fault, FileFault, NoAnswer, visible
-from ..history import History
-from ..reading_kinds import PARTS, Reading
 from ..services import next_move as service
 from ..services.antenna_readings import ReadingUnusable
+from ..store import store
+from ..units import reading_text, units
 from . import json_out, move_words, moves_out, readings_out
 from .shown import megahertz
 

@@ -8,8 +8,8 @@ from dataclasses import dataclass
 from typing import Any
 
 from ..errors import BadInput, Fault
-from ..unit_names import Dimension
-from ..units import read, read_impedance, show
+from ..units.unit_names import Dimension
+from ..units.units import read, read_impedance, show
 
 IMPEDANCE, OHMS, TEXT = "impedance", "ohms", "text"
 

@@ -8,12 +8,11 @@ from typing import Any
 
 import numpy as np
 
-from .. import reading_text, sweep_files
-from ..design import Design
+from ..design.design import Design
+from ..design.reading_kinds import KINDS, PARTS, Doubt, Kind, Reading
 from ..engine.fits import Sweep
 from ..engine.measured import Estimate
 from ..errors import BadInput, Fault, NoAnswer, visible
-from ..reading_kinds import KINDS, PARTS, Doubt, Kind, Reading
 from ..services import measured_trap, part_readings
 from ..services.part_values import (
     PartsFound,
@@ -22,6 +21,8 @@ from ..services.part_values import (
     Remark,
     SweepFit,
 )
+from ..store import sweep_files
+from ..units import reading_text
 from . import reading_words as said
 from .json_out import FORMAT
 from .layout import WIDTH, folded

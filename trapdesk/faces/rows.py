@@ -7,10 +7,10 @@ from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from typing import Any
 
-from ..design import MODES, Design, Shape, get, known_at
+from ..design.design import MODES, Design, Shape, get, known_at
+from ..design.fields import SOLVE
 from ..engine.ground import UNKNOWN_SOIL, GroundKind
 from ..errors import visible
-from ..fields import SOLVE
 from ..services.figures import BandFigures, Figures, Finding
 from . import feed_rows, trap_rows, words
 from .lines import (

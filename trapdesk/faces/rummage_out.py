@@ -7,8 +7,8 @@ from collections.abc import Iterable
 from dataclasses import fields
 from typing import Any
 
-from ..box import Box
-from ..design import Design
+from ..design.box import Box
+from ..design.design import Design
 from ..errors import visible
 from ..services.port_grid import BandSummary
 from ..services.rummage import Found, Row, Shortage

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import Any
 
-from ..design import Design, Shape
+from ..design.design import Design, Shape
 from ..services.figures import Figures
 from ..services.tolerance import Tolerance
 from . import feed_out, hill_card, json_out, tolerance_json, tolerance_out, trap_sheet, words

@@ -5,8 +5,8 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from ..unit_names import UNITS, Dimension
-from ..units import show, show_parts
+from ..units.unit_names import UNITS, Dimension
+from ..units.units import show, show_parts
 
 LARGEST_SWR = 10.0
 """A larger SWR is only said to be larger: nobody can use it, and no estimate of it holds."""

@@ -9,8 +9,8 @@ from ..engine.tank import VALUE_RANGE, TankQuantity, TankStatus
 from ..errors import BadInput, Fault
 from ..services import tank as service
 from ..services.tank import TankAnswer, TankBehaviour
-from ..unit_names import ELEMENTS, Dimension
-from ..units import read_exact, show
+from ..units.unit_names import ELEMENTS, Dimension
+from ..units.units import read_exact, show
 from .layout import folded
 from .shown import exact, known
 

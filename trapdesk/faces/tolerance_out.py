@@ -6,8 +6,8 @@ from collections.abc import Iterator, Mapping
 
 import numpy as np
 
-from ..design import Design
-from ..doubts import Meaning
+from ..design.design import Design
+from ..design.doubts import Meaning
 from ..errors import visible
 from ..services.advice import Advice, Change, ForYield, Step
 from ..services.beliefs import CAUSES, Belief

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator
 from typing import Any
 
-from ..coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
+from ..design.coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
 from ..engine.cable_trap import Terminals
 from ..services.coils import CUT_TAIL
 from ..services.figures import Figures

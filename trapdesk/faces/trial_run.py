@@ -65,11 +65,11 @@ def _stoppable(watch: _Watch) -> Iterator[None]:
 
 def run(file: str, trials: str, seed: str, for_yield: str | None) -> tuple[Any, Any, Any]:
     """Return the ensemble of a design, what would help, and the design chosen for yield if asked for."""
-    from .. import store
     from ..services import advice
     from ..services import tolerance as service
     from ..services.ensemble import Ensemble
     from ..services.solve import solve
+    from ..store import store
 
     count = whole("--trials", trials, service.FEWEST, service.MOST, "10000")
     start = whole("--seed", seed, 0, LARGEST_SEED - 1, "7")

@@ -4,15 +4,15 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from .. import store
-from ..design import Design
+from ..design.design import Design
+from ..design.station import OWN, FeedLine
 from ..errors import BadInput, Fault
 from ..services.reach import reach_map, reading, tuner_answer
 from ..services.solve import solve
 from ..services.worth import worth
-from ..station import OWN, FeedLine
-from ..unit_names import Dimension
-from ..units import read, read_impedance
+from ..store import store
+from ..units.unit_names import Dimension
+from ..units.units import read, read_impedance
 from . import feed_json, feed_out, json_out
 from .layout import folded, summary_lines
 from .line_out import cable_named

@@ -5,11 +5,11 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from ..design import Design, known_at
+from ..design.design import Design, known_at
 from ..errors import NoAnswer, visible
 from ..services.figures import Finding, Level
-from ..unit_names import Dimension
-from ..units import show
+from ..units.unit_names import Dimension
+from ..units.units import show
 from . import shown
 
 ESTIMATE = "an estimate, not measured"

@@ -8,12 +8,12 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from ..design import Design, get, with_value
-from ..doubts import Meaning
+from ..design.design import Design, get, with_value
+from ..design.doubts import Meaning
+from ..design.fields import SOLVE
+from ..design.parts import GivenCapacitor
+from ..design.rules import check, trap_unknowns
 from ..errors import NoAnswer
-from ..fields import SOLVE
-from ..parts import GivenCapacitor
-from ..rules import check, trap_unknowns
 from .beliefs import Belief
 from .ensemble import Ensemble, reflection_of
 from .figures import Figures

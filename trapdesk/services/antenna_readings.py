@@ -10,11 +10,11 @@ from weakref import WeakKeyDictionary
 
 import numpy as np
 
+from ..design.reading_kinds import Interval, Reading
 from ..engine.cables import propagation, transform
 from ..engine.fits import Sweep
 from ..engine.ports import terminate_entries
 from ..engine.sampling import normal_probability
-from ..reading_kinds import Interval, Reading
 from .ensemble import Ensemble
 from .latents import Latents
 from .nearby import Nearby, Table

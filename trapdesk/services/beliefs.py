@@ -9,12 +9,12 @@ from typing import Any
 
 import numpy as np
 
-from ..design import Design, Shape
-from ..doubts import SIGMAS, Meaning, farthest
+from ..design.design import Design, Shape
+from ..design.doubts import SIGMAS, Meaning, farthest
+from ..design.measured_part import Measured
+from ..design.parts import GivenCoil, Solenoid
 from ..engine.ground import SOILS, UNKNOWN_SOIL_FROM, Ground, GroundKind
 from ..engine.sampling import normal_probability, normal_quantile, uniform
-from ..measured_part import Measured
-from ..parts import GivenCoil, Solenoid
 from .capacitors import drift_of, tolerance_of
 from .trap import BuiltTrap
 

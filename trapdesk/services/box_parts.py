@@ -4,11 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from ..box import Cable, Capacitor, Core, Former, Wire
-from ..capacitor_kinds import ParallelCapacitors, Printed, SeriesCapacitors, SingleCapacitor
-from ..coil_kinds import CableCoil, Solenoid, Toroid
+from ..design.box import Cable, Capacitor, Core, Former, Wire
+from ..design.capacitor_kinds import ParallelCapacitors, Printed, SeriesCapacitors, SingleCapacitor
+from ..design.coil_kinds import CableCoil, Solenoid, Toroid
+from ..design.fields import SOLVE, Value
 from ..engine.cable_trap import Terminals
-from ..fields import SOLVE, Value
 
 LIKE = "RG-58/U"
 """Type that a cable of no listed type is told after; all its own constants take the listed ones' place."""

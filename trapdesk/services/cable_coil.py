@@ -9,7 +9,10 @@ from functools import cached_property
 
 import numpy as np
 
-from ..coil_kinds import CableCoil
+from ..design.coil_kinds import CableCoil
+from ..design.fields import SOLVE
+from ..design.former_kinds import FORMER_MATERIALS
+from ..design.part_rules import cable_numbers
 from ..engine.cable_trap import (
     CableTrap,
     cable_trap_impedance,
@@ -29,9 +32,6 @@ from ..engine.coils import self_capacitance_range
 from ..engine.conductors import MATERIALS
 from ..engine.stress import Stress
 from ..errors import NoAnswer
-from ..fields import SOLVE
-from ..former_kinds import FORMER_MATERIALS
-from ..part_rules import cable_numbers
 from .capacitors import line_of
 from .coils import WHERE, Wound
 

@@ -9,19 +9,19 @@ from typing import Any
 
 import numpy as np
 
-from ..capacitor_kinds import (
+from ..design.capacitor_kinds import (
     GivenCapacitor,
     ParallelCapacitors,
     SeriesCapacitors,
     SingleCapacitor,
     StubCapacitor,
 )
+from ..design.fields import SOLVE
+from ..design.parts import solvable
 from ..engine import capacitors as engine
 from ..engine.cable_types import CABLES, cable_line
 from ..engine.cables import Line
 from ..errors import NoAnswer
-from ..fields import SOLVE
-from ..parts import solvable
 
 WHERE = "antenna.trap.capacitor"
 

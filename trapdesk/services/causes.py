@@ -8,8 +8,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..doubts import SIGMAS
-from ..parts import CableCoil
+from ..design.doubts import SIGMAS
+from ..design.parts import CableCoil
 from .beliefs import CAUSES, Belief, Draws
 from .ensemble import Ensemble
 from .trial_traps import Stage

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..design import Design
+from ..design.design import Design
 from ..engine.resonator import impedance
 from ..engine.stress import Stress, stress
 from ..errors import NoAnswer

@@ -8,10 +8,10 @@ from typing import Any
 
 import numpy as np
 
-from ..capacitor_kinds import GivenCapacitor
-from ..coil_kinds import CableCoil
-from ..fields import SOLVE
-from ..parts import Trap
+from ..design.capacitor_kinds import GivenCapacitor
+from ..design.coil_kinds import CableCoil
+from ..design.fields import SOLVE
+from ..design.parts import Trap
 from .coils import build_coil
 from .figures import Adjustment, CoilFigures
 from .trap import BuiltTrap, build

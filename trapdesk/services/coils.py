@@ -9,7 +9,9 @@ from typing import Any
 
 import numpy as np
 
-from ..coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
+from ..design.coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
+from ..design.fields import SOLVE
+from ..design.former_kinds import FORMER_MATERIALS
 from ..engine.cable_winding import straight_inductance
 from ..engine.coil_formulas import rosa_inductance
 from ..engine.coil_table import in_range, quick_coil
@@ -17,8 +19,6 @@ from ..engine.coils import BUILT_Q, MOST_TURNS, Winding, self_capacitance_range,
 from ..engine.conductors import MATERIALS, internal_impedance
 from ..engine.toroids import toroid_inductance, toroid_most_turns, toroid_turn_length, toroid_turns
 from ..errors import NoAnswer
-from ..fields import SOLVE
-from ..former_kinds import FORMER_MATERIALS
 from .capacitors import Limits
 
 WHERE = "antenna.trap.coil"

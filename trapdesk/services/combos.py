@@ -8,7 +8,7 @@ from itertools import combinations_with_replacement
 
 import numpy as np
 
-from ..box import Capacitor
+from ..design.box import Capacitor
 
 TRAPS = 2
 WAYS = ("{0}", "{0} + {1}", "{0} - {1}", "{0} + {1} + {2}", "{0} - {1} - {2}", "({0} - {1}) + {2}")

@@ -9,7 +9,7 @@ from typing import Any
 
 import numpy as np
 
-from ..design import Design
+from ..design.design import Design
 from ..engine.ports import terminate, terminate_entries
 from .aiming import root
 from .beliefs import TWO_THIRDS, Belief, Draws, beliefs, draw

@@ -9,12 +9,21 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from ..design import JudgedAt, Station
+from ..design.design import JudgedAt, Station
+from ..design.station import (
+    OWN,
+    PARALLEL,
+    TYPICAL_FOLDBACK,
+    WET_LOSS,
+    WET_SLOWER,
+    FeedLine,
+    TunerPlace,
+    Weather,
+)
 from ..engine.cable_types import CABLES, cable_line, loss_constants
 from ..engine.cables import Line, LineFigures, line_figures, propagation, transform
 from ..engine.ports import terminate
 from ..engine.reflection import swr
-from ..station import OWN, PARALLEL, TYPICAL_FOLDBACK, WET_LOSS, WET_SLOWER, FeedLine, TunerPlace, Weather
 from .trap import build
 from .tuning import Tuned, TunerSetting, setting_seen, setting_share, tune, tune_at
 

@@ -5,8 +5,8 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 
-from ..design import MODES, JudgedAt, Station
-from ..station import PARALLEL
+from ..design.design import MODES, JudgedAt, Station
+from ..design.station import PARALLEL
 from .feed import LEAST_PARALLEL, line_of, voltage_rating
 from .figures import BandFigures, Figures, Finding, Level
 

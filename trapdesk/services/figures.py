@@ -7,7 +7,7 @@ from enum import StrEnum
 
 import numpy as np
 
-from ..design import Design
+from ..design.design import Design
 from ..engine.ports import Ports
 from ..engine.wire import Wire
 from .feed import FeedFigures

@@ -8,12 +8,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..design import Design
+from ..design.design import Design
+from ..design.fields import SOLVE
 from ..engine.ground import C0, GroundKind
 from ..engine.ports import terminate
 from ..engine.wire import Plan, Wire, plan, solve_ports
 from ..errors import NoAnswer
-from ..fields import SOLVE
 
 LEAST_END_HEIGHT = 0.5
 """The ground kernels are held to be exact down to here. [m]"""

@@ -9,10 +9,10 @@ from typing import Any, Protocol, TypeVar
 
 import numpy as np
 
-from ..design import Design, with_value
+from ..design.design import Design, with_value
+from ..design.measured_part import Measured
 from ..engine.measured import Estimate
 from ..engine.stress import Stress
-from ..measured_part import Measured
 from .part_values import PartsFound
 
 Trap = TypeVar("Trap")

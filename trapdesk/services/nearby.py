@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from ..design import Design
+from ..design.design import Design
 from ..engine.ground import GroundKind
 from ..engine.mesh import Plan, Side
 from ..engine.ports import Ports, chebyshev_nodes, polynomial_weights

@@ -9,10 +9,10 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from ..design import Design
+from ..design.design import Design
+from ..design.history import Again, History, Step, TrapsWere
+from ..design.reading_kinds import Interval, Reading
 from ..engine.fits import Sweep
-from ..history import Again, History, Step, TrapsWere
-from ..reading_kinds import Interval, Reading
 from .antenna_readings import Hoist, ReadingUnusable
 from .ensemble import Ensemble
 from .faults import Bench, Diagnosis, diagnose, of_other_band

@@ -5,8 +5,8 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 
+from ..design.reading_kinds import Reading
 from ..engine.measured import Estimate, half_power_centre, half_power_q, unloaded_q, voltage_ratio_q
-from ..reading_kinds import Reading
 from .part_values import ReadingRefused, ReadingsDisagree, Remark, Strain, SweepFit, unlikely
 
 CENTRE_SLACK = 0.25

@@ -12,11 +12,11 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from ..design import Design
+from ..design.design import Design
+from ..design.reading_kinds import Reading
 from ..engine import fits
 from ..engine.fits import Sweep
 from ..engine.measured import Estimate, half_power_centre
-from ..reading_kinds import Reading
 from . import sweep_suspects
 from .part_quality import half_power, quality
 from .part_values import (

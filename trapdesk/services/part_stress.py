@@ -7,8 +7,8 @@ from collections.abc import Iterable
 
 import numpy as np
 
-from ..coil_kinds import Toroid
-from ..design import MODES, Design
+from ..design.coil_kinds import Toroid
+from ..design.design import MODES, Design
 from ..engine.capacitors import rating
 from ..engine.heat import over_share, temperature_rise
 from ..engine.toroids import toroid_flux

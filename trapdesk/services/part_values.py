@@ -6,10 +6,10 @@ import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
+from ..design.reading_kinds import Reading
 from ..engine.fits import Fitted
 from ..engine.measured import Estimate
 from ..errors import TrapdeskError
-from ..reading_kinds import Reading
 
 
 class ReadingRefused(TrapdeskError):

@@ -11,11 +11,11 @@ from typing import Any
 
 import numpy as np
 
-from ..design import MODES, Design, Lengths
+from ..design.design import MODES, Design, Lengths
+from ..design.fields import SOLVE
 from ..engine.ports import Ports, chebyshev_nodes, polynomial_weights, terminate
 from ..engine.wire import Wire, plan, solve_ports
 from ..errors import NoAnswer
-from ..fields import SOLVE
 from .feed import Feeding, View, path_of
 from .response import MARGIN, Response, behave
 from .solve import hang, wanted_frequencies

@@ -6,10 +6,10 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from ..design.station import TUNER_NETWORKS, Tuner
 from ..engine.matching import reach
 from ..engine.networks import NETWORKS
 from ..engine.reflection import swr
-from ..station import TUNER_NETWORKS, Tuner
 from .feed import FeedPoint, Path
 from .figures import Figures
 from .response import MARGIN

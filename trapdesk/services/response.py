@@ -9,7 +9,7 @@ from functools import cached_property
 
 import numpy as np
 
-from ..design import Band
+from ..design.design import Band
 from ..engine import reflection
 from ..engine.ports import Ports, chebyshev_nodes, polynomial_weights, terminate
 from ..engine.stress import Stress

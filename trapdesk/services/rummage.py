@@ -9,13 +9,13 @@ from typing import Any
 
 import numpy as np
 
-from ..box import Box
-from ..capacitor_kinds import GivenCapacitor
-from ..coil_kinds import GivenCoil
-from ..design import Design
+from ..design.box import Box
+from ..design.capacitor_kinds import GivenCapacitor
+from ..design.coil_kinds import GivenCoil
+from ..design.design import Design
+from ..design.fields import SOLVE
+from ..design.parts import Trap
 from ..errors import NoAnswer
-from ..fields import SOLVE
-from ..parts import Trap
 from .coils import Wound
 from .combos import PIECES, WAYS, Combos, combos
 from .port_grid import Outcome, PortGrid

@@ -7,7 +7,7 @@ from collections.abc import Callable, Iterator
 from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
-from ..box import Box, Capacitor, Former, Wire
+from ..design.box import Box, Capacitor, Former, Wire
 from .combos import TRAPS
 
 if TYPE_CHECKING:

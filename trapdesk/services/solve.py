@@ -8,14 +8,14 @@ from dataclasses import replace
 
 import numpy as np
 
-from ..design import MODES, UNKNOWN, Band, Design
+from ..design.design import MODES, UNKNOWN, Band, Design
+from ..design.fields import SOLVE
+from ..design.rules import Breach, InvalidDesign, check
 from ..engine.conductors import MATERIALS, coating_elastance
 from ..engine.ground import C0, SOILS, UNKNOWN_SOIL, UNKNOWN_SOIL_FROM, Ground, GroundKind
 from ..engine.ports import Ports
 from ..engine.wire import Wire, plan, solve_ports
 from ..errors import NoAnswer
-from ..fields import SOLVE
-from ..rules import Breach, InvalidDesign, check
 from .effects import HEIGHT_STEP, effects, length_moves, site_moves
 from .feed import FeedFigures, Feeding, Passage, Path, View, feed_figures, path_of
 from .figures import (

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..design import Design
+from ..design.design import Design
 from .beliefs import Belief
 from .causes import Regression, Shares, corners, one_at_a_time, trap_first_order
 from .ensemble import Ensemble, Outcome, reflection_of, swr_of

@@ -9,12 +9,12 @@ from functools import cached_property
 
 import numpy as np
 
-from ..coil_kinds import CableCoil
+from ..design.coil_kinds import CableCoil
+from ..design.fields import SOLVE
+from ..design.parts import Trap
 from ..engine import resonator
 from ..engine.stress import Stress, stress
 from ..errors import NoAnswer
-from ..fields import SOLVE
-from ..parts import Trap
 from .cable_coil import BuiltCable, CableNetwork, build_cable
 from .capacitors import BuiltCapacitor, Fitted, Limits, build_capacitor, cable_rating, is_open
 from .coils import NO_SELF_CAPACITANCE, BuiltCoil, Wound, build_coil

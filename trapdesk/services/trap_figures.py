@@ -6,11 +6,11 @@ from collections.abc import Iterable, Iterator
 
 import numpy as np
 
-from ..coil_kinds import Solenoid, Toroid
-from ..design import Design
+from ..design.coil_kinds import Solenoid, Toroid
+from ..design.design import Design
+from ..design.parts import Sealing, Trap
 from ..engine.capacitors import stub_impedance
 from ..engine.resonator import dynamic_resistance, lc_resonance
-from ..parts import Sealing, Trap
 from .capacitors import Fitted, capacitance_of, tolerance_of, weights
 from .coils import Wound
 from .figures import Adjustment, BandFigures, CoilFigures, Curve, PartFigures, TrapFigures

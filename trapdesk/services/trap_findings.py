@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from ..coil_kinds import Solenoid, Toroid
+from ..design.coil_kinds import Solenoid, Toroid
 from ..engine.coils import SOLENOID_RANGE
 from .figures import Figures, Finding, Level, PartStress
 from .figures import Heat as HeatFigures

@@ -9,10 +9,10 @@ from functools import cached_property
 
 import numpy as np
 
-from ..design import Design
+from ..design.design import Design
+from ..design.parts import CableCoil, Toroid
 from ..engine import resonator
 from ..engine.coil_formulas import sheet_inductance
-from ..parts import CableCoil, Toroid
 from .beliefs import Belief, Draws, drifts
 from .trap import BuiltTrap
 

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..design.station import TUNER_NETWORKS, Tuner, TunerCapacitor, TunerCoil
 from ..engine.arms import Kind, Problem
 from ..engine.boxes import Limits
 from ..engine.ladder import Carried, carried
@@ -14,7 +15,6 @@ from ..engine.matching import family
 from ..engine.nearest import best_setting, snap
 from ..engine.networks import NETWORKS, Network, ladder_of, touchiness
 from ..engine.reflection import swr
-from ..station import TUNER_NETWORKS, Tuner, TunerCapacitor, TunerCoil
 
 MOST_COMBINATIONS = 4096
 """Combinations of steps that are tried; with more, only steps near the best setting without steps are."""

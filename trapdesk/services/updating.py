@@ -14,9 +14,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..design.reading_kinds import Reading
 from ..engine.fits import Sweep
 from ..engine.sampling import normal_quantile, uniform
-from ..reading_kinds import Reading
 from .antenna_readings import Altered, Forward, Hoist
 from .ensemble import Ensemble
 from .latents import LINE, Latents

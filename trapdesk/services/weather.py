@@ -6,14 +6,14 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from ..coil_kinds import Solenoid
-from ..design import Design
+from ..design.coil_kinds import Solenoid
+from ..design.design import Design
+from ..design.former_kinds import FORMER_MATERIALS
+from ..design.parts import Sealing
 from ..engine.coils import quick_exponents, temperature_drift
 from ..engine.conductors import MATERIALS
 from ..engine.heat import drifted
 from ..engine.ports import polynomial_weights, terminate
-from ..former_kinds import FORMER_MATERIALS
-from ..parts import Sealing
 from .cable_coil import CableNetwork
 from .capacitors import drift_of, weights
 from .figures import Figures, Heat, Shift

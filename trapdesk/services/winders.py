@@ -9,7 +9,10 @@ from typing import Any
 
 import numpy as np
 
-from ..box import Box, Former, Wire
+from ..design.box import Box, Former, Wire
+from ..design.fields import SOLVE
+from ..design.part_rules import cable_numbers
+from ..design.parts import Trap
 from ..engine.cable_trap import Terminals
 from ..engine.cables import propagation
 from ..engine.coil_formulas import medhurst_capacitance
@@ -18,9 +21,6 @@ from ..engine.coils import CAPACITANCE_DOUBT
 from ..engine.conductors import MATERIALS, internal_impedance
 from ..engine.ground import C0
 from ..errors import NoAnswer
-from ..fields import SOLVE
-from ..part_rules import cable_numbers
-from ..parts import Trap
 from .box_parts import cable_part, capacitor_part, solenoid_part, toroid_part
 from .capacitors import cable_rating, line_of
 from .coils import COIL_DOUBT

@@ -7,10 +7,10 @@ from enum import StrEnum
 
 import numpy as np
 
-from ..design import MODES, Design, with_value
+from ..design.design import MODES, Design, with_value
+from ..design.fields import SOLVE
+from ..design.station import Tuner, TunerPlace
 from ..errors import NoAnswer
-from ..fields import SOLVE
-from ..station import Tuner, TunerPlace
 from .feed import FeedPoint, Passage, Path
 from .figures import Figures
 from .response import Behaviour, behave

@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 from textual.app import App
 
-from ...design import Design
+from ...design.design import Design
 from ...errors import TrapdeskError
 from ...services.figures import Figures
 

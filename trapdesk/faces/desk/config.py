@@ -10,9 +10,9 @@ from dataclasses import dataclass, fields, replace
 from pathlib import Path
 from typing import Any
 
-from ...design import Band, Design
+from ...design.design import Band, Design
+from ...design.rules import check
 from ...errors import quoted, visible
-from ...rules import check
 from .themes import THEMES
 
 MEGA = 1e6

@@ -6,11 +6,11 @@ import math
 from collections.abc import Callable
 from dataclasses import replace
 
-from ...design import Design, Shape, get, with_value
-from ...fields import SOLVE
+from ...design.design import Design, Shape, get, with_value
+from ...design.fields import SOLVE
 from ...services.figures import Figures, Finding
-from ...unit_names import Dimension
-from ...units import show
+from ...units.unit_names import Dimension
+from ...units.units import show
 
 EDGE_STEP = 5e3
 """Edges of a wanted part are tried at whole multiples of this. [Hz]"""

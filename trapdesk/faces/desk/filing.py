@@ -8,9 +8,9 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import Protocol
 
-from ... import store
 from ...errors import FileFault, TrapdeskError, visible
-from ...store import Document
+from ...store import store
+from ...store.store import Document
 from . import journal
 from .config import Config, filled
 from .journal import Journal, Left

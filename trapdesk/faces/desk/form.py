@@ -7,15 +7,15 @@ from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from typing import Any
 
-from ... import prints
-from ...design import UNKNOWN, Band, Design, Shape, get, known_at, with_value
+from ...design.design import UNKNOWN, Band, Design, Shape, get, known_at, with_value
+from ...design.fields import SOLVE, Declared, declared, walk
+from ...design.parts import Trap
+from ...design.rules import trap_unknowns
 from ...engine.ground import UNKNOWN_SOIL
 from ...errors import BadInput, Fault, visible
-from ...fields import SOLVE, Declared, declared, walk
-from ...parts import Trap
-from ...rules import trap_unknowns
 from ...services.figures import Figures
-from ...units import Dimension, read, show, to_text
+from ...units import prints
+from ...units.units import Dimension, read, show, to_text
 from .. import rows as presenter
 from .kinds import begun, mended
 from .optional import ADDED, PARTS, put_part

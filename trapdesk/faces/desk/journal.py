@@ -21,11 +21,11 @@ from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
 
-from ... import store
-from ...design import Design
+from ...design.design import Design
 from ...errors import TrapdeskError
-from ...store import Document
-from ...toml_read import read_text
+from ...store import store
+from ...store.store import Document
+from ...store.toml_read import read_text
 from .session import Session
 
 ENDING = ".journal"

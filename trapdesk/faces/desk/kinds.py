@@ -6,21 +6,21 @@ from collections.abc import Iterator
 from dataclasses import MISSING, fields, replace
 from typing import Any
 
-from ... import prints
-from ...capacitor_kinds import (
+from ...design.capacitor_kinds import (
     CAPACITORS,
     GivenCapacitor,
     ParallelCapacitors,
     SeriesCapacitors,
     SingleCapacitor,
 )
-from ...coil_kinds import CableCoil
-from ...design import Design
+from ...design.coil_kinds import CableCoil
+from ...design.design import Design
+from ...design.fields import SOLVE
+from ...design.parts import Trap, solvable
 from ...errors import BadInput, Fault
-from ...fields import SOLVE
-from ...parts import Trap, solvable
-from ...unit_names import Dimension
-from ...units import show
+from ...units import prints
+from ...units.unit_names import Dimension
+from ...units.units import show
 
 USUAL = 47e-12
 """Capacitance to begin with where none is known. [F]"""

@@ -8,8 +8,8 @@ from textual.app import ComposeResult
 from textual.containers import Container
 from textual.events import Key
 
-from ... import sweep_files
 from ...errors import TrapdeskError, visible
+from ...store import sweep_files
 from .arrange import ANSWER, CHANCES, FINDINGS, HELP, INPUTS, LETTERS, Arrangement, arrangement, names
 from .filing import Asker
 from .panes.drawers import DrawersPane

@@ -12,7 +12,7 @@ def run(argument: str | None) -> int:
     """Open the desk on a file or preset, the first preset without one, and return the exit code."""
     terminal = sys.stdin.isatty() and sys.stdout.isatty()
     said = _sign(argument) if terminal else ""
-    from ... import store
+    from ...store import store
     from . import config, filing, journal
     from .app import Desk
     from .session import Session

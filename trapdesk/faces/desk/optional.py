@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import Any
 
-from ...design import Design, get, with_value
-from ...measured_part import Measured
-from ...station import Choke, FeedLine, Transmitter, Tuner, TunerCapacitor, TunerCoil
+from ...design.design import Design, get, with_value
+from ...design.measured_part import Measured
+from ...design.station import Choke, FeedLine, Transmitter, Tuner, TunerCapacitor, TunerCoil
 
 STARTING_LENGTH = 25.0
 """Length of a line that was just added; the verb tuner takes the same. [m]"""

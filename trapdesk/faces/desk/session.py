@@ -6,12 +6,12 @@ from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
 
-from ...design import Design
+from ...design.design import Design
+from ...design.rules import check
 from ...errors import BadInput
-from ...rules import check
 from ...services.figures import Figures
-from ...spoken import spoken
-from ...store import Document
+from ...store.spoken import spoken
+from ...store.store import Document
 from .aside import Aside
 from .form import FormRow, put
 

@@ -8,12 +8,12 @@ from collections.abc import Callable
 from textual.app import App
 from textual.message import Message
 
-from ...design import Design
+from ...design.design import Design
+from ...design.rules import InvalidDesign
 from ...errors import NoAnswer, TrapdeskError
-from ...rules import InvalidDesign
 from ...services.figures import Figures
 from ...services.solve import solve, with_site_effects
-from ...spoken import spoken
+from ...store.spoken import spoken
 from .. import words
 from . import plots
 from .aside import give_way

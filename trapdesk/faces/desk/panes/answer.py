@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 from ....services.figures import Figures, Level
-from ....unit_names import Dimension
-from ....units import show
+from ....units.unit_names import Dimension
+from ....units.units import show
 from ... import rows as presenter
 from ...layout import GROUPS
 from ..lines import Line, wrapped

@@ -60,7 +60,7 @@ def load_press(key: str, acting: Acting) -> bool:
 
 
 def _load(given: str, acting: Acting) -> None:
-    from .... import units
+    from ....units import units
 
     if given:
         try:

@@ -5,8 +5,8 @@ from __future__ import annotations
 from textual.events import Click, Key, MouseScrollDown, MouseScrollUp
 from textual.message import Message
 
+from ....design.fields import SOLVE
 from ....errors import BadInput, visible
-from ....fields import SOLVE
 from ....services.figures import Level
 from .. import form
 from ..form import DRAWERS, FormRow

@@ -6,7 +6,7 @@ import itertools
 from collections.abc import Callable, Iterator
 from typing import Any
 
-from ....design import Design
+from ....design.design import Design
 from ....errors import TrapdeskError, visible
 from ..aside import Job, Task
 from ..lines import Line, wrapped

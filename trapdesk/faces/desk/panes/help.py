@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
-from ....units import Dimension, show
+from ....units.units import Dimension, show
 from ..form import FormRow
 from ..lines import Line, wrapped
 from ..view import Sight, View

@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
-from ....box import Box
+from ....design.box import Box
 from ..aside import Job, Task
 
 if TYPE_CHECKING:
@@ -70,8 +70,8 @@ class Rummaged:
 
 
 def _rummage(task: Task) -> Iterator[Rummaged]:
-    from .... import box_read
     from ....services.rummage import rummage
+    from ....store import box_read
 
     fault = ""
     try:

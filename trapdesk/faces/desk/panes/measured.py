@@ -81,7 +81,7 @@ def measured_press(key: str, acting: Acting) -> bool:
 
 def _add(given: str, acting: Acting) -> None:
     """Take in a reading that can be read; several may be typed with blanks between them."""
-    from .... import reading_text
+    from ....units import reading_text
 
     if not given:
         acting.say("")

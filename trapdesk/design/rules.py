@@ -6,9 +6,9 @@ import math
 from collections.abc import Iterator
 from typing import Any
 
+from ..errors import TrapdeskError
 from .design import Band, Design, Shape, Site, get
 from .doubts import Doubts, farthest
-from .errors import TrapdeskError
 from .fields import SOLVE, Declared, walk
 from .part_rules import Breach, part_rules, trap_rules
 from .parts import Trap, solvable

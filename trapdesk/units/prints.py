@@ -12,8 +12,8 @@ import re
 from collections.abc import Iterator
 from itertools import pairwise
 
-from .capacitor_kinds import Printed
-from .errors import BadInput, Fault
+from ..design.capacitor_kinds import Printed
+from ..errors import BadInput, Fault
 from .print_tables import (
     ALLOWED,
     COLD,

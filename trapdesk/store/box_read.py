@@ -9,11 +9,11 @@ import unicodedata
 from dataclasses import MISSING, fields
 from typing import Any
 
-from . import prints, units
-from .box import TABLES, Box, Cable, Capacitor, Core
-from .engine.cable_types import CABLES
-from .errors import BadInput, Fault, FileFault, visible
-from .fields import Declared, declared
+from ..design.box import TABLES, Box, Cable, Capacitor, Core
+from ..design.fields import Declared, declared
+from ..engine.cable_types import CABLES
+from ..errors import BadInput, Fault, FileFault, visible
+from ..units import prints, units
 from .store import BOX_ENDING, read_file, shelf
 from .toml_read import FORMAT, LONGEST_TEXT, DesignFault
 

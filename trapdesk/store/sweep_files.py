@@ -20,8 +20,8 @@ from pathlib import Path
 
 import numpy as np
 
-from .engine.fits import LEAST_POINTS, Sweep
-from .errors import Fault, FileFault, visible
+from ..engine.fits import LEAST_POINTS, Sweep
+from ..errors import Fault, FileFault, visible
 
 LARGEST_FILE = 4_000_000
 """No sweep of a wire or trap needs more. [bytes]"""

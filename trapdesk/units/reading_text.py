@@ -9,9 +9,9 @@ from collections.abc import Iterable, Iterator
 from types import MappingProxyType
 from typing import NoReturn
 
+from ..design.reading_kinds import GROUPS, KINDS, Doubt, Interval, Kind, Option, Reading
+from ..errors import BadInput, Fault
 from . import units
-from .errors import BadInput, Fault
-from .reading_kinds import GROUPS, KINDS, Doubt, Interval, Kind, Option, Reading
 from .unit_names import Dimension
 
 LONGEST = 400

@@ -5,8 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from enum import StrEnum
 
-from .engine.cable_types import CABLES
-from .engine.networks import NETWORKS
+from ..engine.cable_types import CABLES
+from ..engine.networks import NETWORKS
 from .fields import choice, part, parts, quantity, text
 
 

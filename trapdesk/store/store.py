@@ -13,11 +13,12 @@ from importlib import resources
 from pathlib import Path
 from typing import Any
 
-from . import toml_edit, units
-from .design import Design
-from .errors import FileFault, TrapdeskError
-from .fields import SOLVE, Declared, walk
-from .rules import check
+from ..design.design import Design
+from ..design.fields import SOLVE, Declared, walk
+from ..design.rules import check
+from ..errors import FileFault, TrapdeskError
+from ..units import units
+from . import toml_edit
 from .spoken import spoken
 from .toml_read import HEAD, DesignFault, read_text
 
@@ -103,7 +104,7 @@ def preset(name: str) -> tuple[Design, str]:
 def shelf() -> Any:
     """Return the folder of the presets: in the installed package, else at the top of the checkout."""
     packaged = resources.files("trapdesk") / "presets"
-    return packaged if packaged.is_dir() else Path(__file__).parents[1] / "presets"
+    return packaged if packaged.is_dir() else Path(__file__).parents[2] / "presets"
 
 
 def _near_presets(name: str) -> str:

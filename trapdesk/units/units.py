@@ -11,7 +11,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from trapdesk.errors import BadInput, Fault
-from trapdesk.numerals import (
+from trapdesk.units.numerals import (
     NUMBER,
     Number,
     Refuse,
@@ -26,7 +26,7 @@ from trapdesk.numerals import (
     snapped,
     to_one,
 )
-from trapdesk.unit_names import (
+from trapdesk.units.unit_names import (
     DESCRIPTIONS,
     FOOT,
     IMPERIAL,
@@ -285,7 +285,7 @@ def _registry() -> tuple[Any, dict[Any, Dimension], type[Exception]]:
 
     registry: Any = pint.UnitRegistry(None, non_int_type=fractions.Fraction)
     registry.load_definitions(
-        resources.files("trapdesk").joinpath("units.txt").read_text("utf-8").splitlines()
+        resources.files("trapdesk.units").joinpath("units.txt").read_text("utf-8").splitlines()
     )
     known = {registry.Quantity(1, name).dimensionality: dimension for dimension, name in SI_NAMES.items()}
     return registry, known, pint.UndefinedUnitError

@@ -6,9 +6,9 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from typing import Any
 
+from ..engine.cable_types import CABLES
 from .capacitor_kinds import MOST_DEEP, ParallelCapacitors, SeriesCapacitors, SingleCapacitor
 from .coil_kinds import CableCoil, Solenoid, Toroid
-from .engine.cable_types import CABLES
 from .parts import Trap
 
 

@@ -7,8 +7,8 @@ from itertools import pairwise
 
 import numpy as np
 
+from ..engine.cable_types import loss_constants
 from .design import Band, Station
-from .engine.cable_types import loss_constants
 from .part_rules import Breach
 from .station import OWN, FeedLine, Transmitter, Tuner
 

@@ -14,8 +14,8 @@ from collections.abc import Callable
 
 import numpy as np
 
-from .engine.fits import Sweep
-from .errors import quoted
+from ..engine.fits import Sweep
+from ..errors import quoted
 from .sweep_files import MOST_POINTS, checked_frequencies, checked_passive, number, refusal
 
 EXAMPLE = "frequency_hz,r_ohm,x_ohm"

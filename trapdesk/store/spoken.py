@@ -7,11 +7,11 @@ import typing
 from dataclasses import MISSING, Field, fields, is_dataclass
 from typing import Any
 
-from . import units
-from .design import Design
-from .errors import Fault
-from .fields import SOLVE, Declared, declared
-from .rules import Breach
+from ..design.design import Design
+from ..design.fields import SOLVE, Declared, declared
+from ..design.rules import Breach
+from ..errors import Fault
+from ..units import units
 
 _PLAIN = ("ratio", "count")
 _WORDS = ("text", "choice", "part", "parts", "print")

@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any, ClassVar
 
-from .engine.cable_trap import Terminals
-from .engine.cable_types import CABLES
-from .engine.conductors import MATERIALS
-from .engine.rings import MOST_TURNS
+from ..engine.cable_trap import Terminals
+from ..engine.cable_types import CABLES
+from ..engine.conductors import MATERIALS
+from ..engine.rings import MOST_TURNS
 from .fields import SOLVE, Value, choice, quantity
 from .former_kinds import FORMER_MATERIALS, UNKNOWN_FORMER
 

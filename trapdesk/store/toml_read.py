@@ -9,13 +9,13 @@ from collections.abc import Iterable
 from dataclasses import MISSING, fields, replace
 from typing import Any
 
-from . import prints, units
-from .capacitor_kinds import MOST_DEEP
-from .coil_kinds import CableCoil
-from .design import Design, with_value
-from .errors import BadInput, Fault, FileFault, visible
-from .fields import SOLVE, Declared, declared
-from .rules import check, check_part
+from ..design.capacitor_kinds import MOST_DEEP
+from ..design.coil_kinds import CableCoil
+from ..design.design import Design, with_value
+from ..design.fields import SOLVE, Declared, declared
+from ..design.rules import check, check_part
+from ..errors import BadInput, Fault, FileFault, visible
+from ..units import prints, units
 from .spoken import bare, example, kinds, of_one_value, spoken, tables
 
 FORMAT = 1
