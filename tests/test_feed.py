@@ -26,7 +26,8 @@ from trapdesk.design.station import (
 from trapdesk.engine.cables import propagation
 from trapdesk.faces import cli, feed_out, json_out, layout, rows, words
 from trapdesk.faces.json_out import figures as document_of
-from trapdesk.services.feed import FeedPoint, Path, Step, given_power, line_of, way_down
+from trapdesk.services.feed import Path, Step, given_power, line_of, way_down
+from trapdesk.services.feed_point import FeedPoint
 from trapdesk.services.solve import at_frequencies, solve
 from trapdesk.store import store
 

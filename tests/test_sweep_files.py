@@ -12,7 +12,9 @@ from hypothesis import strategies as st
 from tests.cases import HERE, reference
 from trapdesk.errors import FileFault
 from trapdesk.store import sweep_files
-from trapdesk.store.sweep_files import SweepFault, read, touchstone, write_new
+from trapdesk.store.sweep_checks import SweepFault
+from trapdesk.store.sweep_files import read, write_new
+from trapdesk.store.touchstone import touchstone
 
 FILES = HERE / "s1p"
 ROWS = [(7.0 + 0.1 * i, 0.9 - 0.01 * i, 170.0 - 5 * i) for i in range(8)]

@@ -25,7 +25,8 @@ from trapdesk.engine.ladder import carried, input_impedance
 from trapdesk.engine.networks import NETWORKS, ladder_of
 from trapdesk.faces import cli, feed_out
 from trapdesk.services import tuning
-from trapdesk.services.feed import FeedPoint, Path
+from trapdesk.services.feed import Path
+from trapdesk.services.feed_point import FeedPoint
 from trapdesk.services.reach import reach_map, reading, tuner_answer
 from trapdesk.services.solve import solve
 from trapdesk.store import store

@@ -8,7 +8,7 @@ import numpy as np
 
 from .. import __version__
 from ..services.figures import Figures
-from ..store.sweep_files import touchstone
+from ..store.touchstone import touchstone
 from .json_out import FORMAT
 
 

@@ -9,7 +9,8 @@ import numpy as np
 
 from ..design.design import MODES
 from ..errors import visible
-from ..services.feed import FeedPoint, Path, Step, way_down
+from ..services.feed import Path, Step, way_down
+from ..services.feed_point import FeedPoint
 from ..services.figures import BandFigures, Figures
 from ..services.reach import ReachMap, TunerAnswer
 from ..services.tuning import TunerSetting

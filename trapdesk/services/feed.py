@@ -5,7 +5,6 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -22,13 +21,8 @@ from ..design.station import (
 )
 from ..engine.cable_types import CABLES, cable_line, loss_constants
 from ..engine.cables import Line, LineFigures, line_figures, propagation, transform
-from ..engine.ports import terminate
 from ..engine.reflection import swr
-from .trap import build
 from .tuning import Tuned, TunerSetting, setting_seen, setting_share, tune, tune_at
-
-if TYPE_CHECKING:
-    from .figures import Figures
 
 
 def line_of(feed_line: FeedLine) -> Line:
@@ -356,19 +350,6 @@ def path_of(station: Station) -> Path | None:
     """Return what lies between feed point and transmitter, None where there is nothing."""
     path = Path(station)
     return None if path.is_bare else path
-
-
-class FeedPoint:
-    """The feed point of a design that has been solved, its trap built once."""
-
-    def __init__(self, figures: Figures) -> None:
-        trap = figures.design.antenna.trap
-        self.ports, self.trap = figures.ports, None if trap is None else build(trap)
-
-    def impedance(self, role: str, frequency: np.ndarray) -> np.ndarray:
-        """Return the feed impedance at frequencies (n,) in or near a band."""
-        loads = () if self.trap is None else (self.trap.impedance(frequency),)
-        return terminate(self.ports[role].at(frequency).impedance, *loads).impedance
 
 
 @dataclass(frozen=True, kw_only=True)

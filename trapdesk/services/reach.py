@@ -10,7 +10,8 @@ from ..design.station import TUNER_NETWORKS, Tuner
 from ..engine.matching import reach
 from ..engine.networks import NETWORKS
 from ..engine.reflection import swr
-from .feed import FeedPoint, Path
+from .feed import Path
+from .feed_point import FeedPoint
 from .figures import Figures
 from .response import MARGIN
 from .solve import wanted_frequencies

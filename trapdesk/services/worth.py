@@ -11,7 +11,8 @@ from ..design.design import MODES, Design, with_value
 from ..design.fields import SOLVE
 from ..design.station import Tuner, TunerPlace
 from ..errors import NoAnswer
-from .feed import FeedPoint, Passage, Path
+from .feed import Passage, Path
+from .feed_point import FeedPoint
 from .figures import Figures
 from .response import Behaviour, behave
 from .solve import solve

@@ -16,7 +16,7 @@ import numpy as np
 
 from ..engine.fits import Sweep
 from ..errors import quoted
-from .sweep_files import MOST_POINTS, checked_frequencies, checked_passive, number, refusal
+from .sweep_checks import MOST_POINTS, checked_frequencies, checked_passive, number, refusal
 
 EXAMPLE = "frequency_hz,r_ohm,x_ohm"
 _TRADE = {"MHz": (1e6, 1.0, 100.0), "kHz": (1e3, 1e3, 1e5), "Hz": (1.0, 1e6, 1e8)}
