@@ -8,7 +8,8 @@ import numpy as np
 from trapdesk.design.design import Antenna, AntennaWire, Band, Bands, Design, Lengths, Shape, Site, Station
 from trapdesk.design.fields import SOLVE
 from trapdesk.design.parts import GivenCapacitor, Solenoid, Trap
-from trapdesk.engine.ground import Ground, GroundKind
+from trapdesk.engine.ground import Ground
+from trapdesk.engine.soils import GroundKind
 from trapdesk.engine.wire import Wire
 from trapdesk.services.figures import (
     BandFigures,

@@ -17,9 +17,10 @@ from trapdesk.design.doubts import CUT, Doubts, Meaning
 from trapdesk.design.fields import SOLVE
 from trapdesk.design.parts import GivenCapacitor, GivenCoil, Trap
 from trapdesk.design.rules import check
-from trapdesk.engine.ground import SOILS, UNKNOWN_SOIL, Ground, GroundKind
+from trapdesk.engine.ground import Ground
 from trapdesk.engine.resonator import lc_resonance
 from trapdesk.engine.sampling import normal_probability, normal_quantile, uniform
+from trapdesk.engine.soils import SOILS, UNKNOWN_SOIL, GroundKind
 from trapdesk.services.beliefs import Belief, beliefs, draw, soil_at
 from trapdesk.services.causes import deviation
 from trapdesk.services.trap import build

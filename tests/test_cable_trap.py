@@ -11,10 +11,11 @@ from scipy.optimize import brentq
 
 from tests.cases import published, reference
 from trapdesk.engine import cable_trap, cable_types, cable_winding, cables, resonator
-from trapdesk.engine.cable_trap import CableTrap, Terminals
-from trapdesk.engine.cable_types import CABLES
+from trapdesk.engine.cable_list import CABLES, Terminals
+from trapdesk.engine.cable_trap import CableTrap
 from trapdesk.engine.cables import Line
-from trapdesk.engine.conductors import MATERIALS, internal_impedance
+from trapdesk.engine.conductors import internal_impedance
+from trapdesk.engine.metals import MATERIALS
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=40)
 COPPER = MATERIALS["copper"].resistivity

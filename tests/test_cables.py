@@ -10,7 +10,7 @@ from scipy.constants import c as light
 
 from tests.cases import published, reference
 from trapdesk.engine import cable_types, cables
-from trapdesk.engine.cable_types import CABLES
+from trapdesk.engine.cable_list import CABLES
 from trapdesk.engine.cables import DECIBELS, Line
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=60)

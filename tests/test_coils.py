@@ -9,9 +9,9 @@ from hypothesis import strategies as st
 from scipy.constants import mu_0
 
 from tests.cases import published, reference
-from trapdesk.engine import coil_formulas, coils, conductors, rings
+from trapdesk.engine import coil_formulas, coils, metals, rings
 
-COPPER = conductors.MATERIALS["copper"]
+COPPER = metals.MATERIALS["copper"]
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=25)
 WIDE = st.tuples(st.floats(0.025, 0.11), st.floats(1.5, 5.0), st.floats(1e-3, 3e-3), st.integers(3, 25)).map(
     lambda x: (x[0], x[1] * x[2], x[2], x[3])

@@ -7,7 +7,7 @@ from scipy.constants import epsilon_0, mu_0
 
 from tests.cases import published, reference
 from trapdesk.engine import conductors
-from trapdesk.engine.conductors import MATERIALS
+from trapdesk.engine.metals import MATERIALS
 
 COPPER = MATERIALS["copper"].resistivity
 

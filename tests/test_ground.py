@@ -12,16 +12,13 @@ from trapdesk.engine.ground import (
     EPS0,
     ETA0,
     MU0,
-    SOILS,
-    UNKNOWN_SOIL,
-    UNKNOWN_SOIL_FROM,
     Ground,
-    GroundKind,
     barycentric,
     fresnel,
     gauss_legendre,
     reflected_kernels,
 )
+from trapdesk.engine.soils import SOILS, UNKNOWN_SOIL, UNKNOWN_SOIL_FROM, GroundKind
 
 SOIL = {
     "sea": (5.0, 70.0),

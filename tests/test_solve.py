@@ -27,7 +27,7 @@ from trapdesk.design.design import (
 from trapdesk.design.fields import SOLVE
 from trapdesk.design.parts import GivenCapacitor, GivenCoil, Solenoid, Trap
 from trapdesk.design.rules import InvalidDesign
-from trapdesk.engine.ground import SOILS
+from trapdesk.engine.soils import SOILS
 from trapdesk.errors import NoAnswer, TrapdeskError
 from trapdesk.services.figures import Level
 from trapdesk.services.solve import at_frequencies, solve, with_site_effects

@@ -23,7 +23,8 @@ from trapdesk.design.station import (
     TunerPlace,
     Weather,
 )
-from trapdesk.engine.cable_types import CABLES
+from trapdesk.engine.cable_list import CABLES
+from trapdesk.engine.networks import NETWORKS
 from trapdesk.store import store
 from trapdesk.store.toml_read import DesignFault
 
@@ -208,3 +209,8 @@ def test_a_line_of_its_own_needs_every_number():
     assert [fault.partition(":")[0] for fault in faults(text)] == [
         f"station.line.{name}" for name in ("z0", "velocity_factor", "losses")
     ]
+
+
+def test_every_circuit_of_a_tuner_is_a_network_of_the_engine():
+    assert {circuit for circuits in TUNER_NETWORKS.values() for circuit in circuits} <= set(NETWORKS)
+    assert set(TUNER_NETWORKS) >= {name for name in NETWORKS if name.startswith("l-")}

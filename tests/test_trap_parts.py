@@ -20,8 +20,9 @@ from trapdesk.design.fields import SOLVE
 from trapdesk.design.parts import Sealing, Trap
 from trapdesk.design.rules import check, check_part, trap_unknowns
 from trapdesk.engine import cables
-from trapdesk.engine.cable_trap import Terminals
-from trapdesk.engine.capacitors import DIELECTRICS, stub_end_voltage, stub_impedance, stub_length
+from trapdesk.engine.cable_list import Terminals
+from trapdesk.engine.capacitors import stub_end_voltage, stub_impedance, stub_length
+from trapdesk.engine.dielectrics import DIELECTRICS
 from trapdesk.engine.resonator import impedance
 from trapdesk.errors import NoAnswer
 from trapdesk.services.capacitors import build_capacitor, drift_of, line_of, tolerance_of, weights

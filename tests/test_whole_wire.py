@@ -14,10 +14,11 @@ import pytest
 
 from trapdesk.engine import mesh
 from trapdesk.engine.conductors import coating_elastance
-from trapdesk.engine.ground import C0, Ground, GroundKind
+from trapdesk.engine.ground import C0, Ground
 from trapdesk.engine.mesh import Side, plan_side
 from trapdesk.engine.ports import terminate
 from trapdesk.engine.resonator import impedance as tank
+from trapdesk.engine.soils import GroundKind
 from trapdesk.engine.wire import BentWire, Wire, plan, solve_ports, solve_whole
 
 CASES = json.loads((Path(__file__).parent / "reference" / "antenna-site-whole.json").read_text())["cases"]

@@ -13,9 +13,10 @@ from scipy.optimize import brentq
 from tests import oracles
 from trapdesk.engine import wire as engine
 from trapdesk.engine.conductors import coating_elastance, internal_impedance
-from trapdesk.engine.ground import C0, Ground, GroundKind
+from trapdesk.engine.ground import C0, Ground
 from trapdesk.engine.mesh import Side, nodes_of, plan_side
 from trapdesk.engine.ports import chebyshev_nodes, polynomial_weights, terminate
+from trapdesk.engine.soils import GroundKind
 from trapdesk.engine.wire import BentWire, Wire, plan, solve_ports, solve_whole
 
 SPACE, MIRROR = Ground(kind=GroundKind.SPACE), Ground(kind=GroundKind.MIRROR)

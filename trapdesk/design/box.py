@@ -5,8 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass, fields
 from typing import ClassVar
 
-from ..engine.cable_types import CABLES
-from ..engine.conductors import MATERIALS
+from ..engine.cable_list import CABLES
+from ..engine.metals import MATERIALS
 from .fields import choice, quantity, text
 
 CLOSEST = 1.05

@@ -5,8 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any, ClassVar
 
-from ..engine.cable_types import CABLES
-from ..engine.capacitors import DIELECTRICS
+from ..engine.cable_list import CABLES
+from ..engine.dielectrics import DIELECTRICS
 from .fields import SOLVE, Value, choice, parts, printed, quantity
 
 

@@ -5,10 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Any, ClassVar
 
-from ..engine.cable_trap import Terminals
-from ..engine.cable_types import CABLES
-from ..engine.conductors import MATERIALS
-from ..engine.rings import MOST_TURNS
+from ..engine.cable_list import CABLES, Terminals
+from ..engine.coil_limits import MOST_TURNS
+from ..engine.metals import MATERIALS
 from .fields import SOLVE, Value, choice, quantity
 from .former_kinds import FORMER_MATERIALS, UNKNOWN_FORMER
 

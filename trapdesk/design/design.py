@@ -12,8 +12,8 @@ from dataclasses import dataclass, is_dataclass, replace
 from enum import StrEnum
 from typing import Any
 
-from ..engine.conductors import MATERIALS
-from ..engine.ground import SOILS, GroundKind
+from ..engine.metals import MATERIALS
+from ..engine.soils import SOILS, GroundKind
 from .doubts import Doubts
 from .fields import SOLVE, Declared, Value, choice, declared, member_of, part, parts, quantity, text
 from .history import History

@@ -6,7 +6,7 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from typing import Any
 
-from ..engine.cable_types import CABLES
+from ..engine.cable_list import CABLES
 from .capacitor_kinds import MOST_DEEP, ParallelCapacitors, SeriesCapacitors, SingleCapacitor
 from .coil_kinds import CableCoil, Solenoid, Toroid
 from .parts import Trap

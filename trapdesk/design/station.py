@@ -5,8 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from enum import StrEnum
 
-from ..engine.cable_types import CABLES
-from ..engine.networks import NETWORKS
+from ..engine.cable_list import CABLES
 from .fields import choice, part, parts, quantity, text
 
 
@@ -41,7 +40,11 @@ TUNER_NETWORKS: dict[str, tuple[str, ...]] = {
     "pi-lcl": ("pi-lcl",),
     "l-low-pass": ("l-source-low-pass", "l-load-low-pass"),
     "l-high-pass": ("l-source-high-pass", "l-load-high-pass"),
-} | {name: (name,) for name in NETWORKS if name.startswith(("l-source", "l-load"))}
+} | {
+    f"l-{end}-{parts}": (f"l-{end}-{parts}",)
+    for end in ("load", "source")
+    for parts in ("low-pass", "high-pass", "coils", "capacitors")
+}
 """Networks a tuner may be, each with the circuits it can be switched to."""
 
 

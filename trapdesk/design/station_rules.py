@@ -5,9 +5,6 @@ from __future__ import annotations
 from collections.abc import Iterator
 from itertools import pairwise
 
-import numpy as np
-
-from ..engine.cable_types import loss_constants
 from .design import Band, Station
 from .part_rules import Breach
 from .station import OWN, FeedLine, Transmitter, Tuner
@@ -68,7 +65,10 @@ def _line(line: FeedLine) -> Iterator[Breach]:
         if not line.losses:
             yield Breach(where="station.line.losses", code="missing")
     if len(line.losses) > 1:
-        frequency, loss = np.array([(row.frequency, row.loss) for row in line.losses]).T
+        # Imported here because no other rule computes: a design opens sooner without.
+        from ..engine.cable_types import loss_constants
+
+        frequency, loss = zip(*((row.frequency, row.loss) for row in line.losses), strict=True)
         try:
             loss_constants(frequency, loss)
         except ValueError as error:

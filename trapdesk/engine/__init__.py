@@ -5,6 +5,11 @@ The files, each one subject:
 ====================  ==================================================================================
 ``limits``            the check of arguments: a value outside its limits is named, never clamped
 ``special``           Bessel and complete elliptic integrals, round-wire ratio
+``metals``            metals by name: plain values, as in the four files below; they need no numpy
+``soils``             what can lie under the wire, soils by name
+``dielectrics``       what capacitors are made of, by name
+``cable_list``        cables by name, with their listed values
+``coil_limits``       how much of a coil the ring solution is asked for
 ``conductors``        resistivity, gauges, skin effect, AC resistance, insulation
 ``coils``             solenoid: inductance, self-capacitance, loss
 ``rings``             the ring solution under it: coaxial rings with the current crowded as it is
@@ -12,7 +17,7 @@ The files, each one subject:
 ``toroids``           coils on ring cores: inductance, wire, what fits, flux
 ``coil_formulas``     published formulas for the solenoid: cross-checks of `coils`
 ``cables``            lines, coaxial or parallel: loss, transformation, what stands on them
-``cable_types``       cables by name, and lines from their listed values or their section
+``cable_types``       lines from the listed values of a cable or from its section
 ``cable_trap``        the trap wound of coaxial cable, as a circuit
 ``cable_winding``     the same as a winding: inductance, resistance, turns for a resonance
 ``capacitors``        loss by Q or dielectric, open stubs, what voltage a capacitor stands

@@ -5,11 +5,11 @@ the shield is a coil; inside, the cable is a line open at its far end, and that 
 """
 
 from dataclasses import dataclass
-from enum import StrEnum
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from .cable_list import Terminals
 from .cables import DECIBELS, Line, propagation
 from .limits import at_least, positive
 
@@ -22,15 +22,6 @@ LEAST_Q, LARGEST_Q = 2.0, 1e6
 """Between which the width to look in is taken. [1]"""
 SETTLED = 1e-6
 """How closely the peak must be met, of the width, and the half-power points, of their level. [1]"""
-
-
-class Terminals(StrEnum):
-    """Between which points the trap is put into the wire; the resonance is the same."""
-
-    SHIELD = "shield"
-    """Across the shield: the joined ends, and the other end of the shield."""
-    SERIES = "series"
-    """Across shield and inner conductor in series: about four times the impedance."""
 
 
 @dataclass(frozen=True, kw_only=True)

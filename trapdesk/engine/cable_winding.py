@@ -8,10 +8,11 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from .cables import Line
+from .coil_limits import MOST_TURNS
 from .coils import wire_length
 from .conductors import VACUUM_PERMEABILITY, internal_impedance
 from .limits import at_least, positive
-from .rings import MOST_TURNS, ring_sum, solenoid_rings
+from .rings import ring_sum, solenoid_rings
 
 FloatArray = NDArray[np.float64]
 

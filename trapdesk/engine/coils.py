@@ -6,10 +6,11 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from .coil_formulas import medhurst_capacitance, rosa_inductance
+from .coil_limits import MOST_TURNS
 from .coil_table import in_range, quick_coil
 from .conductors import internal_impedance
 from .limits import at_least, positive
-from .rings import MOST_TURNS, check_shape, solenoid_rings
+from .rings import check_shape, solenoid_rings
 
 FloatArray = NDArray[np.float64]
 

@@ -10,14 +10,12 @@ from functools import lru_cache
 import numpy as np
 from numpy.typing import NDArray
 
+from .coil_limits import MOST_TURNS
 from .conductors import VACUUM_PERMEABILITY
 from .limits import positive
 from .special import elliptic
 
 FloatArray = NDArray[np.float64]
-
-MOST_TURNS = 80
-"""Beyond it the system of equations outgrows a small board."""
 
 
 def _nodes(pitch: float, wire_diameter: float, turns: float) -> int:

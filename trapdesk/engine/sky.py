@@ -7,8 +7,9 @@ from functools import cache
 
 import numpy as np
 
-from .ground import C0, ETA0, Ground, GroundKind, fresnel, gauss_legendre
+from .ground import C0, ETA0, Ground, fresnel, gauss_legendre
 from .mesh import Samples
+from .soils import GroundKind
 
 
 class Sky:

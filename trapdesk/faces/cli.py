@@ -408,22 +408,14 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
         "",
     ),
     "tolerance": (
-        "Print how many antennas of a design, as built and hung with all their doubts,\n"
-        "keep the SWR limit: as cut, with tuned traps, brought to aim, wet; what that\n"
-        "comes from, what would help, and how much longer to cut the wires.",
+        verb_words.TOLERANCE,
         tolerance,
         "trapdesk tolerance 40-20-vee --trials 2000 --seed 7",
         "\n\nCtrl-C stops a long run and prints what there is. What varies stands in the\n"
         "design's table [doubts].",
     ),
     "tank": (
-        "Print a parallel resonator from any sufficient few of its values:\n"
-        "  f   LC resonance            R   series resistance of the coil\n"
-        "  L   inductance              RD  dynamic resistance, L/(C R)\n"
-        "  C   capacitance             Q   reactance over R\n"
-        "  B   width, f/Q\n"
-        "Capitals or not does not matter. Three values are enough, unless one of them\n"
-        "follows from the others.",
+        verb_words.TANK,
         tank,
         "trapdesk tank f=10.05MHz C=47pF Q=180",
         "",
@@ -443,16 +435,14 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
     "line": (verb_words.LINE, line, "trapdesk line RG-58/U length=20m f=7.1MHz Z=35-j120", ""),
     "tuner": (verb_words.TUNER, tuner, "trapdesk tuner 40-20-vee --line RG-58/U --length 25m", ""),
     "readings": (
-        "Print what was measured of a trap and its parts beside what is computed, with\n"
-        "how sure it is. Without readings: every kind of them and how to do it well.",
+        verb_words.READINGS,
         readings,
         "trapdesk readings 40-20-vee trap.f0=13.98MHz trap.f0_with=11.6MHz,added=22pF",
         "\n\nWhat is to be said of a reading follows it behind commas: doubt=, how=, ...\n"
         "--keep puts the result into the design, where it replaces what is computed.",
     ),
     "next": (
-        "Print what to do next with the antenna as it hangs, by what was read of it:\n"
-        "fold, let out, cut or add wire, mend the traps, or stop; or what is broken.",
+        verb_words.NEXT,
         next_move,
         "trapdesk next 40-20-vee upper.dip=14.02MHz lower.dip=7.02MHz",
         "\n\n  upper.swr@7.05MHz=1.8  lower.swr@3.6MHz=2..3  lower.z@3.6MHz=42-j12\n"

@@ -10,7 +10,8 @@ from typing import Any
 import numpy as np
 
 from ..design.station import OWN, FeedLine, ListedLoss, Weather
-from ..engine.cable_types import CABLES, LOSS_DOUBT
+from ..engine.cable_list import CABLES
+from ..engine.cable_types import LOSS_DOUBT
 from ..engine.cables import line_figures, load_behind, propagation
 from ..engine.reflection import swr
 from ..errors import BadInput, Fault, NoAnswer

@@ -5,7 +5,7 @@ from __future__ import annotations
 from ..design.coil_kinds import CableCoil
 from ..design.design import Design, Shape, get
 from ..design.fields import SOLVE
-from ..engine.ground import GroundKind
+from ..engine.soils import GroundKind
 from ..errors import visible
 from ..services.capacitors import cable_rating
 from ..services.figures import BandFigures, Figures

@@ -9,7 +9,7 @@ from typing import Any
 
 from ..design.design import MODES, Design, Shape, get, known_at
 from ..design.fields import SOLVE
-from ..engine.ground import UNKNOWN_SOIL, GroundKind
+from ..engine.soils import UNKNOWN_SOIL, GroundKind
 from ..errors import visible
 from ..services.figures import BandFigures, Figures, Finding
 from . import feed_rows, trap_rows, words

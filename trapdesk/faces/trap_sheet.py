@@ -6,7 +6,7 @@ from collections.abc import Callable, Iterator
 from typing import Any
 
 from ..design.coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
-from ..engine.cable_trap import Terminals
+from ..engine.cable_list import Terminals
 from ..services.coils import CUT_TAIL
 from ..services.figures import Figures
 from .layout import folded

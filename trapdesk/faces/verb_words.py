@@ -7,6 +7,7 @@ Design, build and tune a two-band trap dipole, in one terminal.
   trapdesk figures FILE         everything computed for a design
   trapdesk sheet FILE           the build sheet, plain text for paper
   trapdesk tank NAME=VALUE ...  a parallel resonator from any few of its values
+  trapdesk coil NAME=VALUE ...  one coil: what it is, what to wind and cut
   trapdesk match Z=... f=...    a load of your own matched, network by network
   trapdesk line TYPE length=... what a line does to a load
   trapdesk tuner FILE           is a tuner worth it; its settings, its reach
@@ -14,6 +15,7 @@ Design, build and tune a two-band trap dipole, in one terminal.
   trapdesk choices FILE         other trap resonances, other L to C
   trapdesk tolerance FILE       will it still cover the bands, built and hung
   trapdesk readings FILE ...    what was measured of a trap; how to measure it
+  trapdesk next FILE ...        what to fold, cut or mend next, by what was read
   trapdesk touchstone FILE      the feed impedance as a Touchstone file
 
 FILE is a design in TOML, or the name of a preset. A file that is called like a
@@ -59,3 +61,25 @@ still be moved afterwards.
   and what it is made from, as in a design's table [antenna.trap.coil]:
   former wire pitch length insulation lead material;
   cable former tail terminals; inductance_index outer inner height wire"""
+
+TOLERANCE = """\
+Print how many antennas of a design, as built and hung with all their doubts,
+keep the SWR limit: as cut, with tuned traps, brought to aim, wet; what that
+comes from, what would help, and how much longer to cut the wires."""
+
+TANK = """\
+Print a parallel resonator from any sufficient few of its values:
+  f   LC resonance            R   series resistance of the coil
+  L   inductance              RD  dynamic resistance, L/(C R)
+  C   capacitance             Q   reactance over R
+  B   width, f/Q
+Capitals or not does not matter. Three values are enough, unless one of them
+follows from the others."""
+
+READINGS = """\
+Print what was measured of a trap and its parts beside what is computed, with
+how sure it is. Without readings: every kind of them and how to do it well."""
+
+NEXT = """\
+Print what to do next with the antenna as it hangs, by what was read of it:
+fold, let out, cut or add wire, mend the traps, or stop; or what is broken."""

@@ -13,8 +13,9 @@ from ..design.design import Design, Shape
 from ..design.doubts import SIGMAS, Meaning, farthest
 from ..design.measured_part import Measured
 from ..design.parts import GivenCoil, Solenoid
-from ..engine.ground import SOILS, UNKNOWN_SOIL_FROM, Ground, GroundKind
+from ..engine.ground import Ground
 from ..engine.sampling import normal_probability, normal_quantile, uniform
+from ..engine.soils import SOILS, UNKNOWN_SOIL_FROM, GroundKind
 from .capacitors import drift_of, tolerance_of
 from .trap import BuiltTrap
 

@@ -8,7 +8,7 @@ from ..design.box import Cable, Capacitor, Core, Former, Wire
 from ..design.capacitor_kinds import ParallelCapacitors, Printed, SeriesCapacitors, SingleCapacitor
 from ..design.coil_kinds import CableCoil, Solenoid, Toroid
 from ..design.fields import SOLVE, Value
-from ..engine.cable_trap import Terminals
+from ..engine.cable_list import Terminals
 
 LIKE = "RG-58/U"
 """Type that a cable of no listed type is told after; all its own constants take the listed ones' place."""

@@ -29,7 +29,7 @@ from ..engine.cable_winding import (
 )
 from ..engine.cables import Line
 from ..engine.coils import self_capacitance_range
-from ..engine.conductors import MATERIALS
+from ..engine.metals import MATERIALS
 from ..engine.stress import Stress
 from ..errors import NoAnswer
 from .capacitors import line_of

@@ -19,8 +19,10 @@ from ..design.capacitor_kinds import (
 from ..design.fields import SOLVE
 from ..design.parts import solvable
 from ..engine import capacitors as engine
-from ..engine.cable_types import CABLES, cable_line
+from ..engine.cable_list import CABLES
+from ..engine.cable_types import cable_line
 from ..engine.cables import Line
+from ..engine.dielectrics import DIELECTRICS
 from ..errors import NoAnswer
 
 WHERE = "antenna.trap.capacitor"
@@ -129,11 +131,11 @@ def _lossy(capacitance: float, loss_tangent: float) -> Callable[[Any], Any]:
 
 def _single(part: SingleCapacitor, key: str, frequency: float | None, reactance: float | None) -> Fitted:
     said, pieces = part.print, int(part.count)
-    dielectric = engine.DIELECTRICS["ceramic, class 2" if said.varies else part.dielectric]
+    dielectric = DIELECTRICS["ceramic, class 2" if said.varies else part.dielectric]
     loss, source = part.loss_tangent, "given"
     if loss is None:
         loss, source = dielectric.loss_tangent, dielectric.source
-        if dielectric is engine.DIELECTRICS["ceramic"]:
+        if dielectric is DIELECTRICS["ceramic"]:
             loss = 1 / float(engine.ceramic_q(said.capacitance))
     voltage, current, heat = part.voltage or said.voltage, part.current, part.heat
     return Fitted(

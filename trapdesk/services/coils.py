@@ -14,9 +14,11 @@ from ..design.fields import SOLVE
 from ..design.former_kinds import FORMER_MATERIALS
 from ..engine.cable_winding import straight_inductance
 from ..engine.coil_formulas import rosa_inductance
+from ..engine.coil_limits import MOST_TURNS
 from ..engine.coil_table import in_range, quick_coil
-from ..engine.coils import BUILT_Q, MOST_TURNS, Winding, self_capacitance_range, winding
-from ..engine.conductors import MATERIALS, internal_impedance
+from ..engine.coils import BUILT_Q, Winding, self_capacitance_range, winding
+from ..engine.conductors import internal_impedance
+from ..engine.metals import MATERIALS
 from ..engine.toroids import toroid_inductance, toroid_most_turns, toroid_turn_length, toroid_turns
 from ..errors import NoAnswer
 from .capacitors import Limits

@@ -17,10 +17,11 @@ import numpy as np
 from ..design.design import Design
 from ..design.reading_kinds import Reading
 from ..engine.fits import Sweep
-from ..engine.ground import C0, GroundKind
+from ..engine.ground import C0
 from ..engine.mesh import Side, plan_side
 from ..engine.ports import Ports, chebyshev_nodes, polynomial_weights
 from ..engine.sampling import normal_probability
+from ..engine.soils import GroundKind
 from ..engine.wire import BentWire, Wire, plan, solve_ports, solve_whole
 from .antenna_readings import Altered, Forward, Hoist
 from .ensemble import Ensemble

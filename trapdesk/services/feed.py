@@ -19,7 +19,8 @@ from ..design.station import (
     TunerPlace,
     Weather,
 )
-from ..engine.cable_types import CABLES, cable_line, loss_constants
+from ..engine.cable_list import CABLES
+from ..engine.cable_types import cable_line, loss_constants
 from ..engine.cables import Line, LineFigures, line_figures, propagation, transform
 from ..engine.reflection import swr
 from .tuning import Tuned, TunerSetting, setting_seen, setting_share, tune, tune_at

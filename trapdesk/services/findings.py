@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from ..engine.ground import GroundKind
+from ..engine.soils import GroundKind
 from .feed_findings import feed_findings
 from .figures import BandFigures, Figures, Finding, Level
 from .lengths import solved_for

@@ -10,8 +10,9 @@ import numpy as np
 
 from ..design.design import Design
 from ..design.fields import SOLVE
-from ..engine.ground import C0, GroundKind
+from ..engine.ground import C0
 from ..engine.ports import terminate
+from ..engine.soils import GroundKind
 from ..engine.wire import Plan, Wire, plan, solve_ports
 from ..errors import NoAnswer
 

@@ -11,9 +11,11 @@ import numpy as np
 from ..design.design import MODES, UNKNOWN, Band, Design
 from ..design.fields import SOLVE
 from ..design.rules import Breach, InvalidDesign, check
-from ..engine.conductors import MATERIALS, coating_elastance
-from ..engine.ground import C0, SOILS, UNKNOWN_SOIL, UNKNOWN_SOIL_FROM, Ground, GroundKind
+from ..engine.conductors import coating_elastance
+from ..engine.ground import C0, Ground
+from ..engine.metals import MATERIALS
 from ..engine.ports import Ports
+from ..engine.soils import SOILS, UNKNOWN_SOIL, UNKNOWN_SOIL_FROM, GroundKind
 from ..engine.wire import Wire, plan, solve_ports
 from ..errors import NoAnswer
 from .effects import HEIGHT_STEP, effects, length_moves, site_moves

@@ -11,8 +11,8 @@ from ..design.design import Design
 from ..design.former_kinds import FORMER_MATERIALS
 from ..design.parts import Sealing
 from ..engine.coils import quick_exponents, temperature_drift
-from ..engine.conductors import MATERIALS
 from ..engine.heat import drifted
+from ..engine.metals import MATERIALS
 from ..engine.ports import polynomial_weights, terminate
 from .cable_coil import CableNetwork
 from .capacitors import drift_of, weights

@@ -3,216 +3,79 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 
-from ..design.box import Box, Former, Wire
-from ..design.fields import SOLVE
+from ..design.box import Box, Former, TurnStep, Wire
 from ..design.part_rules import cable_numbers
-from ..design.parts import Trap
-from ..engine.cable_trap import Terminals
+from ..engine.cable_list import Terminals
 from ..engine.cables import propagation
 from ..engine.coil_formulas import medhurst_capacitance
 from ..engine.coil_table import QUICK_RANGE, in_range, quick_coil
-from ..engine.coils import CAPACITANCE_DOUBT
-from ..engine.conductors import MATERIALS, internal_impedance
+from ..engine.conductors import internal_impedance
 from ..engine.ground import C0
-from ..errors import NoAnswer
-from .box_parts import cable_part, capacitor_part, solenoid_part, toroid_part
+from ..engine.metals import MATERIALS
+from .box_parts import cable_part, solenoid_part, toroid_part
 from .capacitors import cable_rating, line_of
-from .coils import COIL_DOUBT
-from .combos import PIECES, TRAPS, Combos
+from .combos import FREE, TRAPS, Combos
+from .offers import END_ROOM, RING_ROOM, TAIL, Offer, built_off, picked, points_of, room
 from .scoring import Surface, cost
-from .trap import BuiltTrap, build
 
 SPACINGS = (1.0, 1.5, 2.0, 3.0)
 """Pitches that are tried, in closest pitches of the wire."""
-END_ROOM = 0.01
-"""Former beyond the winding at each end. [m], an estimate"""
-TAIL = 0.12
-"""Wire beyond the winding at each end. [m], an estimate"""
-SPREAD = 1.2
-"""How much wider than as wound the turns of an open winding can still be set; an estimate."""
 TURNS = np.arange(2.0, 60.5, 0.5)
 WIDER = 1.01
-RING_ROOM = 0.05
-"""Part of its inductance by which a coil on a ring moves as its turns are bunched or spread; an estimate."""
+CLOSE_BY = 1.5
+"""Points behind the best, by its coil as at the pitch that is tried, within which a trap is looked at closer."""
+FEWEST = 64
+"""So many are looked at closer in any case."""
+NEARLY = 1.02
+"""How much a winding may overrun what there is before it is looked at closer."""
 CABLE_LEAST = 0.75
 """What the exact cost of a cable trap may be of the coarse one, so that none is passed over."""
-BEST = 4
 
-
-@dataclass(frozen=True, kw_only=True)
-class Offer:
-    """A trap that can be wound, its coil from quick formulas; `pair` is kind, former or core, and wire."""
-
-    kind: str
-    pair: tuple[str, int, int]
-    turns: float
-    pitch: float
-    way: int
-    pieces: tuple[int, ...]
-    capacitance: float
-    total_capacitance: float
-    capacitor_loss: float
-    loss: float
-    tolerance: float
-    voltage: float
-    rated: bool
-    spare: int
-    wire_length: float
-    length: float
-    diameter: float
-    down: float
-    up: float
-    off: float
-    points: float
-    slope: float
-    tried: int = 0
-
-    def former_name(self, box: Box) -> str:
-        """Return what it is wound on."""
-        held = box.cores if self.kind == "toroid" else box.formers
-        return held[self.pair[1]].name
-
-    def wire_name(self, box: Box) -> str:
-        """Return what is wound."""
-        held = box.cables if self.kind == "cable" else box.wires
-        return held[self.pair[2]].name
-
-    def make(self, box: Box, wanted: float) -> tuple[Trap, BuiltTrap, Offer] | None:
-        """Return the trap as parts, solved so that it resonates where wanted, and the offer made exact."""
-        return EXACT[self.kind](self, box, wanted)
-
-
-def _exact_solenoid(offer: Offer, box: Box, wanted: float) -> tuple[Trap, BuiltTrap, Offer] | None:
-    """Set the pitch by the solved rings; half a turn more where the turns would have to lie in each other."""
-    former, wire = box.formers[offer.pair[1]], box.wires[offer.pair[2]]
-    capacitor = capacitor_part(box.capacitors, offer.way, offer.pieces)
-    for turns in (offer.turns, offer.turns + 0.5):
-        pitch = offer.pitch
-        for _ in range(8):
-            if pitch < wire.closest * (1 - 1e-6):
-                break
-            coil = solenoid_part(former, wire, pitch, turns)
-            trap = Trap(resonance=SOLVE, coil=coil, capacitor=capacitor)
-            built = build(trap)
-            miss = math.log(built.resonance / wanted)
-            if abs(miss) < 1e-6:
-                length = turns * pitch
-                if length > former.length - 2 * END_ROOM:
-                    return None
-                slope = _slope(trap, built.resonance)
-                down, up = _room(slope, pitch, wire.closest, length, former.length)
-                turn = math.hypot(math.pi * (coil.former + coil.wire), pitch)
-                offer = replace(
-                    offer, turns=turns, pitch=pitch, length=length, down=float(down), up=float(up),
-                    wire_length=turns * turn + 2 * TAIL,
-                    off=built_off(offer.tolerance, built.capacitance - built.fitted, built.capacitance),
-                )  # fmt: skip
-                return trap, built, offer
-            pitch *= math.exp(-2 * miss / offer.slope)
-    return None
-
-
-def _slope(trap: Trap, resonance: float) -> float:
-    """Return by which power of the pitch a trap's inductance falls, by its resonance."""
-    wider = replace(trap, coil=replace(trap.coil, pitch=trap.coil.pitch * WIDER))
-    return 2 * math.log(build(wider).resonance / resonance) / math.log(WIDER)
-
-
-def _exact_toroid(offer: Offer, box: Box, wanted: float) -> tuple[Trap, BuiltTrap, Offer] | None:
-    """Move the inductance by bunching or spreading the turns until it is right."""
-    core, wire = box.cores[offer.pair[1]], box.wires[offer.pair[2]]
-    capacitor = capacitor_part(box.capacitors, offer.way, offer.pieces)
-    shift = 0.0
-    for _ in range(3):
-        coil = toroid_part(core, wire, offer.turns, shift)
-        trap = Trap(resonance=SOLVE, coil=coil, capacitor=capacitor)
-        built = build(trap)
-        shift = (1 + shift) * (built.resonance / wanted) ** 2 - 1
-    return trap, built, offer
-
-
-def _exact_cable(offer: Offer, box: Box, wanted: float) -> tuple[Trap, BuiltTrap, Offer] | None:
-    """Solve turns and cable; it is wound a turn long and trimmed, which mends whatever it may be off."""
-    former, cable = box.formers[offer.pair[1]], box.cables[offer.pair[2]]
-    coil = cable_part(former, cable, list(Terminals)[offer.way])
-    trap = Trap(resonance=wanted, coil=coil, capacitor=None)
-    try:
-        built = build(trap)
-    except NoAnswer:
-        return None
-    wound = built.wound
-    enough = math.floor(former.length / (wound.outer_length + 2 * END_ROOM)) * former.count >= TRAPS
-    if not enough or TRAPS * wound.cut > cable.length:
-        return None
-    reach = float(built.capacitor.limits.reach(np.array([wanted]))[0])
-    rating = cable_rating(coil)
-    return trap, built, replace(
-        offer, turns=wound.turns, pitch=wound.pitch, capacitance=built.capacitance,
-        total_capacitance=built.capacitance, loss=1 / built.q, wire_length=wound.cut, length=wound.length,
-        diameter=wound.diameter, voltage=math.inf if rating is None else rating / reach,
-        off=built.doubt / 2, up=built.doubt / 2, down=built.doubt / 2,
-    )  # fmt: skip
-
-
-EXACT = {"solenoid": _exact_solenoid, "toroid": _exact_toroid, "cable": _exact_cable}
-
-
-def built_off(tolerance: Any, own: Any, total: Any) -> Any:
-    """Return by what part of itself a wound trap's resonance may be off before it is adjusted.
-
-    By the capacitors' tolerance, the coil's doubt, and its own capacitance, known to a factor either way.
-    """
-    return (tolerance + COIL_DOUBT + math.log(CAPACITANCE_DOUBT) * own / total) / 2
-
-
-def _room(
-    slope: float | np.ndarray,
-    pitch: np.ndarray | float,
-    closest: float,
-    length: np.ndarray | float,
-    room: float,
-) -> tuple[np.ndarray, np.ndarray]:
-    """Return how far the resonance moves with the turns pushed together, and with them drawn apart."""
-    apart = np.minimum(SPREAD, (room - 2 * END_ROOM) / length)
-    return 0.5 * slope * np.log(pitch / closest), 0.5 * slope * np.log(np.maximum(apart, 1.0))
+Limits = tuple[float, float]
+"""Least and most capacitance of a trap. [F]"""
+Arrays = dict[str, np.ndarray]
 
 
 @dataclass(frozen=True, kw_only=True)
 class Wound:
-    """Windings of one wire on one former at one pitch, arrays over turns (n,): quick figures."""
+    """Windings of one wire on one former, quick figures: arrays over pitches and turns (p, n).
+
+    `there` is how many of the turns the former has room for at each pitch.
+    """
 
     former: Former
     wire: Wire
-    pitch: float
+    pitches: np.ndarray
     diameter: float
     turns: np.ndarray
     inductance: np.ndarray
     resistance: np.ndarray
     own: np.ndarray
     slope: np.ndarray
+    there: np.ndarray
 
     def drawn_apart(
-        self, turns: np.ndarray, pitch: np.ndarray, fitted: np.ndarray, wanted: float
+        self, turns: np.ndarray, least: np.ndarray, pitch: np.ndarray, fitted: np.ndarray, wanted: float
     ) -> tuple[np.ndarray, np.ndarray, np.ndarray, np.ndarray]:
         """Return pitch, slope, resistance and total capacitance of turns near their pitch, made to resonate.
 
         The slope is by which power of the pitch inductance times capacitance falls.
         """
         wire, w = self.wire, 2 * math.pi * wanted
-        share = solenoid_part(self.former, wire, self.pitch, 1.0).q_share
+        share = solenoid_part(self.former, wire, wire.closest, 1.0).q_share
         inside = internal_impedance(wanted, wire.diameter, MATERIALS[wire.material].resistivity)
         widest = min(
             wire.diameter / QUICK_RANGE["wire_over_pitch"][0],
             self.diameter / QUICK_RANGE["diameter_over_pitch"][0],
         ) / (WIDER * WIDER)
         for _ in range(2):
-            pitch = np.clip(pitch, self.pitch, widest)
+            pitch = np.clip(pitch, least, widest)
             both = np.array([[1.0], [WIDER]]) * pitch
             inductance, crowding = quick_coil(self.diameter, both, wire.diameter, turns)
             along = turns * np.hypot(math.pi * self.diameter, both) * crowding
@@ -227,73 +90,110 @@ class Wound:
         return pitch, slope, inside.real * along[0] / share, total
 
 
-def windings(former: Former, wire: Wire, wanted: float) -> Iterator[Wound]:
-    """Yield what a wire makes on a former at each pitch, as long as the former is."""
+def turn_step(former: Former) -> float:
+    """Return the least by which a winding on a former can be longer, in turns."""
+    return 1.0 if former.turn_step == TurnStep.WHOLE else 0.5
+
+
+def windings(former: Former, wire: Wire, wanted: float) -> Wound | None:
+    """Return what a wire makes on a former at each pitch, as long as the former is; None where it cannot."""
     metal = solenoid_part(former, wire, wire.closest, 1.0)
     diameter, w = metal.former + metal.wire, 2 * math.pi * wanted
+    turns = TURNS[TURNS % turn_step(former) == 0]
     pitches = wire.closest * np.array(SPACINGS)
     covered = in_range(diameter, pitches, wire.diameter) & in_range(diameter, WIDER * pitches, wire.diameter)
-    pitches = pitches[covered & (pitches * TURNS[1] <= former.length - 2 * END_ROOM)]
+    pitches = pitches[covered & (pitches * turns[1] <= former.length - 2 * END_ROOM)]
     if former.diameter <= wire.closest or not pitches.size:
-        return
+        return None
+    turns = turns[turns * pitches[0] <= former.length - 2 * END_ROOM]
     both = np.array([1.0, WIDER])[:, None, None] * pitches[:, None]
-    inductance, crowding = quick_coil(diameter, both, wire.diameter, TURNS)
-    slope = np.log(inductance[0] / inductance[1]) / math.log(WIDER)
+    inductance, crowding = quick_coil(diameter, both, wire.diameter, turns)
     inside = internal_impedance(wanted, wire.diameter, MATERIALS[wire.material].resistivity)
-    along = TURNS * np.hypot(math.pi * diameter, pitches)[:, None] * crowding[0]
-    own = 0.5 * medhurst_capacitance(diameter, TURNS * pitches[:, None])
-    for k, pitch in enumerate(pitches):
-        there = int(np.count_nonzero(TURNS * pitch <= former.length - 2 * END_ROOM))
-        yield Wound(
-            former=former,
-            wire=wire,
-            pitch=float(pitch),
-            diameter=diameter,
-            turns=TURNS[:there],
-            inductance=(inductance[0, k] + inside.imag * along[k] / w)[:there],
-            resistance=(inside.real * along[k] / metal.q_share)[:there],
-            own=own[k, :there],
-            slope=slope[k, :there],
-        )
+    along = turns * np.hypot(math.pi * diameter, pitches)[:, None] * crowding[0]
+    return Wound(
+        former=former,
+        wire=wire,
+        pitches=pitches,
+        diameter=diameter,
+        turns=turns,
+        inductance=inductance[0] + inside.imag * along / w,
+        resistance=inside.real * along / metal.q_share,
+        own=0.5 * medhurst_capacitance(diameter, turns * pitches[:, None]),
+        slope=np.log(inductance[0] / inductance[1]) / math.log(WIDER),
+        there=np.count_nonzero(turns * pitches[:, None] <= former.length - 2 * END_ROOM, axis=1),
+    )
 
 
 def solenoid_offers(
-    box: Box, i: int, j: int, joined: Combos, wanted: float, surface: Surface, limits: tuple[float, float]
+    box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Limits
 ) -> Iterator[Offer]:
-    """Yield the best traps of one former and one wire, a few for every pitch."""
-    w = 2 * math.pi * wanted
-    for wound in windings(box.formers[i], box.wires[j], wanted):
-        former, wire, turns, pitch = wound.former, wound.wire, wound.turns, wound.pitch
-        # The least number of half turns that is enough: then the turns are drawn apart until it is right.
-        needed = 1 / (w * w * wound.inductance) - wound.own
+    """Yield the best traps of one former and one wire."""
+    former, wire = box.formers[pair[1]], box.wires[pair[2]]
+    wound = windings(former, wire, wanted)
+    if wound is None:
+        return
+    w, space = 2 * math.pi * wanted, former.length - 2 * END_ROOM
+    at: list[tuple[np.ndarray, np.ndarray, np.ndarray]] = []
+    for k, there in enumerate(wound.there):
+        # The fewest turns that are enough: then they are drawn apart until it is right.
+        needed = 1 / (w * w * wound.inductance[k, :there]) - wound.own[k, :there]
         n = np.searchsorted(-needed, -joined.capacitance)
-        which = np.flatnonzero((n > 0) & (n < turns.size))
-        if not which.size:
-            continue
-        n, some = n[which], joined.take(which)
-        turns, total = turns[n], some.capacitance + wound.own[n]
-        wide = pitch * np.exp(np.log(wound.inductance[n] * w * w * total) / wound.slope[n])
-        wide = np.minimum(wide, 1.02 * (former.length - 2 * END_ROOM) / turns)
-        wide, slope, resistance, total = wound.drawn_apart(turns, wide, some.capacitance, wanted)
-        length = turns * wide
-        wire_length = turns * np.hypot(math.pi * wound.diameter, wide) + 2 * TAIL
-        loss = resistance * w * total
-        down, up = _room(slope, wide, wire.closest, length, former.length)
-        good = (length <= former.length - 2 * END_ROOM) & (wire_length * TRAPS <= wire.length)
-        good &= np.floor(former.length / (length + 2 * END_ROOM)) * former.count >= TRAPS
-        good &= (total >= limits[0]) & (total <= limits[1]) & (wide > 0)
-        yield from _picked(
-            ("solenoid", i, j), some, surface, good, turns=turns, pitch=wide, total=total, loss=loss,
-            length=length, diameter=np.full(turns.size, wound.diameter), wire_length=wire_length, down=down,
-            up=up, off=built_off(some.tolerance, total - some.capacitance, total), slope=slope,
-        )  # fmt: skip
+        which = np.flatnonzero((n > 0) & (n < there))
+        at.append((np.full(which.size, k), n[which], which))
+    k, n, which = (np.concatenate(part) for part in zip(*at, strict=True))
+    tried = which.size
+
+    def figures(turns: Any, pitch: Any, slope: Any, resistance: Any, total: Any, some: Combos) -> Arrays:
+        length = turns * pitch
+        down, up = room(slope, pitch, wire.closest, length, former.length)
+        return {
+            "turns": turns,
+            "pitch": pitch,
+            "total": total,
+            "loss": resistance * w * total,
+            "length": length,
+            "diameter": np.full(turns.size, wound.diameter),
+            "wire_length": turns * np.hypot(math.pi * wound.diameter, pitch) + 2 * TAIL,
+            "down": down,
+            "up": up,
+            "off": built_off(some.tolerance, total - some.capacitance, total),
+            "slope": slope,
+        }
+
+    some, turns = joined.take(which), wound.turns[n]
+    total, slope = some.capacitance + wound.own[k, n], wound.slope[k, n]
+    wide = wound.pitches[k] * np.exp(np.log(wound.inductance[k, n] * w * w * total) / slope)
+    wide = np.minimum(wide, NEARLY * space / turns)
+    rough = figures(turns, wide, slope, wound.resistance[k, n], total, some)
+    points = np.where(
+        _fits(former, wire, rough, limits, NEARLY), points_of(some, surface, rough), math.inf
+    )
+    order = np.argsort(points, kind="stable")
+    order = order[: max(FEWEST, int(np.searchsorted(points[order], points[order[:1]] + CLOSE_BY)[0]))]
+    near = order[np.isfinite(points[order])]
+    if not near.size:
+        return
+    some, turns = some.take(near), turns[near]
+    drawn = wound.drawn_apart(turns, wound.pitches[k[near]], wide[near], some.capacitance, wanted)
+    of = figures(turns, *drawn, some)
+    good = _fits(former, wire, of, limits)
+    of = {name: array[good] for name, array in of.items()}
+    yield from picked(pair, some.take(np.flatnonzero(good)), surface, of, tried)
+
+
+def _fits(former: Former, wire: Wire, of: Arrays, limits: Limits, nearly: float = 1.0) -> np.ndarray:
+    """Return which windings a former and a wire are enough for, twice, and which are in range; or nearly."""
+    length = of["length"] / nearly
+    fits = (length <= former.length - 2 * END_ROOM) & (of["wire_length"] * TRAPS <= nearly * wire.length)
+    fits &= np.floor(former.length / (length + 2 * END_ROOM)) * former.count >= TRAPS
+    return fits & (of["total"] * nearly >= limits[0]) & (of["total"] <= nearly * limits[1])
 
 
 def toroid_offers(
-    box: Box, i: int, j: int, joined: Combos, wanted: float, surface: Surface, limits: tuple[float, float]
+    box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Limits
 ) -> Iterator[Offer]:
     """Yield the best traps of one core and one wire: whole turns, capacitors near what they ask for."""
-    w, core, wire = 2 * math.pi * wanted, box.cores[i], box.wires[j]
+    w, core, wire = 2 * math.pi * wanted, box.cores[pair[1]], box.wires[pair[2]]
     over = wire.diameter + 2 * wire.coating
     most = int(math.pi * (core.inner - over) / wire.closest)
     if core.count < TRAPS or most < 2:
@@ -306,20 +206,30 @@ def toroid_offers(
     wire_length = turns * (2 * core.height + core.outer - core.inner + 4 * over) + 2 * TAIL
     good = (np.abs(shift) < RING_ROOM) & (wire_length * TRAPS <= wire.length)
     good &= (total >= limits[0]) & (total <= limits[1])
-    size = np.full(turns.size, 1.0)
-    yield from _picked(
-        ("toroid", i, j), joined, surface, good, turns=turns, pitch=0 * size, total=total,
-        loss=size / core.q, length=core.height * size, diameter=core.outer * size,
-        wire_length=wire_length, down=0.5 * np.maximum(RING_ROOM - shift, 0.0),
-        up=0.5 * np.maximum(RING_ROOM + shift, 0.0), off=(joined.tolerance + core.tolerance) / 2, slope=size,
-    )  # fmt: skip
+    some, size = joined.take(np.flatnonzero(good)), np.ones(np.count_nonzero(good))
+    of = {
+        "turns": turns[good],
+        "pitch": 0 * size,
+        "total": total[good],
+        "loss": size / core.q,
+        "length": core.height * size,
+        "diameter": core.outer * size,
+        "wire_length": wire_length[good],
+        "down": 0.5 * np.maximum(RING_ROOM - shift[good], 0.0),
+        "up": 0.5 * np.maximum(RING_ROOM + shift[good], 0.0),
+        "off": (some.tolerance + core.tolerance) / 2,
+        "slope": size,
+    }
+    yield from picked(pair, some, surface, of, len(some))
 
 
 def cable_offers(
-    box: Box, i: int, j: int, joined: Combos, wanted: float, surface: Surface, limits: tuple[float, float]
+    box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Limits
 ) -> Iterator[Offer]:
     """Yield traps of one cable wound close on one former, both ways of taking its terminals."""
-    former, cable = box.formers[i], box.cables[j]
+    former, cable = box.formers[pair[1]], box.cables[pair[2]]
+    if not cable.is_wound:
+        return
     coil = cable_part(former, cable, Terminals.SERIES)
     outside, shield = cable_numbers(coil)
     diameter, w, line = former.diameter + outside, 2 * math.pi * wanted, line_of(coil)
@@ -353,51 +263,22 @@ def cable_offers(
         losses, fillings, _ = surface.at(np.array([total]), np.array([loss]), np.zeros(1))
         points = cost(
             losses=losses, fillings=fillings, volts_share=0.0, rated=cable_rating(coil) is not None,
-            length=winding, diameter=diameter, pieces=0, uncovered=0.0, spare=1,
+            length=winding, diameter=diameter, pieces=0, uncovered=0.0, spare=FREE,
         ).total  # fmt: skip
         yield Offer(
-            kind="cable", pair=("cable", i, j), turns=at, pitch=outside, way=way, pieces=(),
+            kind="cable", pair=pair, turns=at, pitch=outside, way=way, pieces=(),
             capacitance=total, total_capacitance=total, capacitor_loss=0.0, loss=loss, tolerance=0.0,
-            voltage=math.inf, rated=cable_rating(coil) is not None, spare=1, wire_length=s, length=winding,
+            voltage=math.inf, rated=cable_rating(coil) is not None, spare=FREE, wire_length=s, length=winding,
             diameter=diameter, down=0.0, up=0.0, off=0.0, points=CABLE_LEAST * float(points[0]), slope=1.0,
             tried=1,
         )  # fmt: skip
 
 
-def _picked(
-    pair: tuple[str, int, int], some: Combos, surface: Surface, good: np.ndarray, **of: np.ndarray
-) -> Iterator[Offer]:
-    """Yield the best of one coil's traps; what nothing can be built of, with how many were tried."""
-    of = {name: array[good] for name, array in of.items()}
-    some = some.take(np.flatnonzero(good))
-    if not len(some):
-        return
-    losses, fillings, volts = surface.at(of["total"], of["loss"], some.loss * some.capacitance / of["total"])
-    points = cost(
-        losses=losses,
-        fillings=fillings,
-        volts_share=volts / some.voltage,
-        rated=some.rated,
-        length=of["length"],
-        diameter=of["diameter"],
-        pieces=np.array(PIECES)[some.way],
-        uncovered=np.maximum(of["off"] - of["down"], 0.0) + np.maximum(of["off"] - of["up"], 0.0),
-        spare=some.spare,
-    ).total
-    # A rating is held to the figures of the row; up to here they are only near.
-    points = np.where(volts > 1.02 * some.voltage, np.inf, points)
-    losses = some.loss * some.capacitance / of["total"]
-    for k in np.argsort(points, kind="stable")[:BEST]:
-        if not math.isfinite(points[k]):
-            break
-        one = {name: float(array[k]) for name, array in of.items()}
-        members = tuple(int(m) for m in some.members[k] if m >= 0)
-        yield Offer(
-            kind=pair[0], pair=pair, turns=one["turns"], pitch=one["pitch"], way=int(some.way[k]),
-            pieces=members, capacitance=float(some.capacitance[k]), total_capacitance=one["total"],
-            capacitor_loss=float(losses[k]), loss=one["loss"], tolerance=float(some.tolerance[k]),
-            voltage=float(some.voltage[k]), rated=bool(some.rated[k]), spare=int(some.spare[k]),
-            wire_length=one["wire_length"], length=one["length"], diameter=one["diameter"],
-            down=one["down"], up=one["up"], off=one["off"], points=float(points[k]), slope=one["slope"],
-            tried=len(some),
-        )  # fmt: skip
+Maker = Callable[[Box, tuple[str, int, int], Combos, float, Surface, Limits], Iterator[Offer]]
+MAKERS: dict[str, Maker] = {
+    "solenoid": solenoid_offers,
+    "stub": solenoid_offers,
+    "cable": cable_offers,
+    "toroid": toroid_offers,
+}
+"""Who winds what: a coil with capacitors or with a stub of cable, cable alone, a ring core with either."""

@@ -11,7 +11,7 @@ from typing import Any
 
 from ..design.box import TABLES, Box, Cable, Capacitor, Core
 from ..design.fields import Declared, declared
-from ..engine.cable_types import CABLES
+from ..engine.cable_list import CABLES
 from ..errors import BadInput, Fault, FileFault, visible
 from ..units import prints, units
 from .store import BOX_ENDING, read_file, shelf
@@ -114,7 +114,8 @@ class _Reader:
     def thin_formers(self, found: dict[str, tuple[Any, ...]]) -> None:
         """Drop formers on which no wire or cable of the box could lie, and name each."""
         thinnest = min(
-            [w.diameter for w in found["wires"]] + [c.over_jacket for c in found["cables"]], default=0
+            [w.diameter for w in found["wires"]] + [c.over_jacket for c in found["cables"] if c.is_wound],
+            default=0,
         )
         for former in found["formers"]:
             if former.diameter <= thinnest:

@@ -11,7 +11,7 @@ from ...design.design import UNKNOWN, Band, Design, Shape, get, known_at, with_v
 from ...design.fields import SOLVE, Declared, declared, walk
 from ...design.parts import Trap
 from ...design.rules import trap_unknowns
-from ...engine.ground import UNKNOWN_SOIL
+from ...engine.soils import UNKNOWN_SOIL
 from ...errors import BadInput, Fault, visible
 from ...services.figures import Figures
 from ...units import prints
