@@ -1,15 +1,18 @@
 """One trap of each kind from its file to figures, sheet and JSON; combinations in files; the verb coil."""
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
 
 from trapdesk.design.capacitor_kinds import CAPACITORS
 from trapdesk.design.coil_kinds import COILS
-from trapdesk.design.design import get, known_at, with_value
+from trapdesk.design.design import Site, get, known_at, with_value
 from trapdesk.design.fields import SOLVE
+from trapdesk.design.measured_part import Measured
 from trapdesk.design.rules import check
+from trapdesk.engine.soils import GroundKind
 from trapdesk.errors import BadInput, NoAnswer, TrapdeskError
 from trapdesk.faces import cli, coil_out, json_out, layout, rows, sheet
 from trapdesk.faces.desk import form
@@ -49,6 +52,24 @@ def test_carried_through(figures):
     text = " ".join(sheet.text(figures).split())
     assert "build " in text
     assert "14.0" in text
+
+
+def test_a_measured_cable_trap_moves_with_the_weather_like_an_unmeasured_one():
+    bare = store.load(next(p for p in DESIGNS if p.stem == "cable-trap"))
+    told = Measured(resonance=bare.antenna.trap.resonance, resonance_doubt=10e3)
+    plain, measured = (
+        {shift.what: shift.trap for shift in solve(design, site_effects=True).trap.shifts}
+        for design in (bare, with_value(bare, "antenna.trap.measured", told))
+    )
+    assert measured == pytest.approx(plain, rel=0.02)
+
+
+def test_findings_are_told_in_space_as_well():
+    design = store.load(COMBO)
+    space = replace(design, site=Site(ground=GroundKind.SPACE))
+    plain, asked = solve(space), solve(space, site_effects=True)
+    assert plain.findings
+    assert {f.code for f in asked.findings} >= {f.code for f in plain.findings}
 
 
 def test_a_cable_trap_leads_with_the_side_to_build_on():
@@ -224,7 +245,7 @@ def test_a_print_is_typed_on_the_desk():
     design = store.load(COMBO)
     wanted = "antenna.trap.capacitor.members.1.print"
     row = next(row for row in form.rows(design, solve(design))["Trap"] if row.key == wanted)
-    assert (row.text, row.fixed) == ("101K 2kV N150", False)
+    assert row.text == "101K 2kV N150"
     assert form.starting_text(row) == "101K 2kV N150"
     changed = form.put(design, row.key, form.read_row(row, "121J 3kV"), None, iter([]))
     assert get(changed, wanted).capacitance == pytest.approx(120e-12)

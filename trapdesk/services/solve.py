@@ -130,7 +130,7 @@ def with_site_effects(figures: Figures) -> Figures:
         figures = replace(figures, trap=replace(figures.trap, shifts=found))
     there = {role: band for role, band in figures.bands.items() if band.resonance is not None}
     if wire.ground.kind is GroundKind.SPACE or not there:
-        return figures
+        return replace(figures, findings=find(figures))
     soils = []
     if wire.ground.kind is GroundKind.SOIL:
         soils = [ground_of(design, soil) for soil in UNKNOWN_SOIL_FROM]

@@ -14,7 +14,6 @@ from ..engine.coils import quick_exponents, temperature_drift
 from ..engine.heat import drifted
 from ..engine.metals import MATERIALS
 from ..engine.ports import polynomial_weights, terminate
-from .cable_coil import CableNetwork
 from .capacitors import drift_of, weights
 from .figures import Figures, Heat, Shift
 from .response import MARGIN, swr
@@ -25,7 +24,7 @@ POINTS = 121
 
 def drifts(design: Design, trap: BuiltTrap) -> tuple[float, float]:
     """Return the temperature coefficients of inductance and of all capacitance, unknown ones as 0, in 1/K."""
-    if isinstance(trap.network, CableNetwork):
+    if trap.cable is not None:
         # The shield follows the former; of the dielectric nothing is listed.
         return FORMER_MATERIALS[design.antenna.trap.coil.former_material].expansion, 0.0
     coil, part = trap.coil, design.antenna.trap.coil
