@@ -60,6 +60,7 @@ def test_arrays_equal_one_by_one():
         (lambda: toroids.toroid_turn_length(0.02, 0.02, 0.01, 1e-3), "outer"),
         (lambda: toroids.toroid_most_turns(-1.0, 1e-3), "inner"),
         (lambda: toroids.toroid_flux(0.0, 1.0, 5, 0.02, 0.01, 0.01), "frequency"),
+        (lambda: toroids.toroid_flux(7e6, -1.0, 5, 0.02, 0.01, 0.01), "voltage"),
     ],
 )
 def test_refuses(call, name):

@@ -3,7 +3,7 @@
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from .limits import positive
+from .limits import at_least, positive
 
 FloatArray = NDArray[np.float64]
 
@@ -172,6 +172,7 @@ def toroid_flux(
     ------
     Derived here: the law of induction, sqrt(2) V = w N B A.
     """
+    at_least(0.0, voltage=voltage)
     positive(frequency=frequency, turns=turns, outer=outer, inner=inner, height=height)
     _ring(outer, inner)
     section = 0.5 * (np.asarray(outer, float) - np.asarray(inner, float)) * np.asarray(height, float)
