@@ -45,7 +45,7 @@ from trapdesk.units.unit_names import (
 
 
 @dataclass(frozen=True, kw_only=True, slots=True)
-class Reading:
+class Typed:
     """A typed value and how finely it was typed.
 
     Parameters
@@ -106,7 +106,7 @@ def read(text: str, dimension: Dimension, where: str = "") -> float:
     return read_exact(text, dimension, where).value
 
 
-def read_exact(text: str, dimension: Dimension, where: str = "") -> Reading:
+def read_exact(text: str, dimension: Dimension, where: str = "") -> Typed:
     """Return what a person typed, and how finely it was typed.
 
     Parameters
@@ -120,7 +120,7 @@ def read_exact(text: str, dimension: Dimension, where: str = "") -> Reading:
 
     Returns
     -------
-    Reading
+    Typed
         The value, and half a unit of its last typed digit relative to it. [SI, 1]
 
     Raises
@@ -139,9 +139,9 @@ def read_exact(text: str, dimension: Dimension, where: str = "") -> Reading:
     sign = -1 if tidy[0] == "-" else 1
     body = tidy[1:].lstrip(" ") if tidy[0] in "+-" else tidy
     if dimension is Dimension.LENGTH and (number := gauge_number(tidy)) is not None:
-        return Reading(value=gauge_diameter(number), relative_slack=92.0 ** (0.5 / 39) - 1)
+        return Typed(value=gauge_diameter(number), relative_slack=92.0 ** (0.5 / 39) - 1)
     if dimension is Dimension.RATIO and (ratio := to_one(tidy)) is not None:
-        return _reading(ratio.top, ratio.bottom, ratio.step, refuse)
+        return _typed(ratio.top, ratio.bottom, ratio.step, refuse)
     match = NUMBER.match(body)
     if match is not None:
         name = _unit_name(body[match.end() :])
@@ -154,14 +154,14 @@ def read_exact(text: str, dimension: Dimension, where: str = "") -> Reading:
         if unit is not None:
             number = exact_number(match, refuse, tidy[: len(tidy) - len(body)], body[match.end() :])
             top, bottom = number.top * unit.top, number.bottom * unit.bottom
-            return _reading(sign * top + unit.shift * number.bottom, bottom, number.step * unit.top, refuse)
+            return _typed(sign * top + unit.shift * number.bottom, bottom, number.step * unit.top, refuse)
     lettered = _lettered(body, dimension)
     if lettered is not None:
-        return _reading(sign * lettered.top, lettered.bottom, lettered.step, refuse)
+        return _typed(sign * lettered.top, lettered.bottom, lettered.step, refuse)
     if match is not None and dimension in _COMPOUND:
         total = _compound(body, dimension, refuse)
         if total is not None:
-            return _reading(sign * total.top, total.bottom, total.step, refuse)
+            return _typed(sign * total.top, total.bottom, total.step, refuse)
     raise refuse("not_finite" if _NOT_FINITE.fullmatch(tidy) else "unreadable")
 
 
@@ -205,7 +205,7 @@ def read_impedance(text: str, where: str = "") -> complex:
             raise refuse("unreadable")
         number = exact_number(found, refuse, "", "")
         top = -number.top if sign == "-" else number.top
-        parts.append(_reading(top, number.bottom, number.step, refuse).value)
+        parts.append(_typed(top, number.bottom, number.step, refuse).value)
     return complex(*parts)
 
 
@@ -313,7 +313,7 @@ def _ask_pint(name: str) -> tuple[Dimension | None, Unit | None]:
     return dimension, Unit(top=top, bottom=bottom)
 
 
-def _reading(top: int, bottom: int, step: int, refuse: Refuse) -> Reading:
+def _typed(top: int, bottom: int, step: int, refuse: Refuse) -> Typed:
     """Return the nearest float to top / bottom; Python divides whole numbers with a single rounding."""
     try:
         value = top / bottom
@@ -321,14 +321,14 @@ def _reading(top: int, bottom: int, step: int, refuse: Refuse) -> Reading:
         raise refuse("not_finite") from None
     if value == 0.0 and top != 0:
         raise refuse("too_small", limit="the least number that can be held")
-    return Reading(value=value, relative_slack=step / (2 * abs(top)) if top else math.inf)
+    return Typed(value=value, relative_slack=step / (2 * abs(top)) if top else math.inf)
 
 
 def _suggestions(number: Number, body: str, dimension: Dimension, refuse: Refuse) -> str:
     """Return the number with the units it may have lacked."""
     units = DESCRIPTIONS[dimension][2]
     low, high = LIKELY.get(dimension, (0.0, math.inf))
-    value = abs(_reading(number.top, number.bottom, number.step, refuse).value)
+    value = abs(_typed(number.top, number.bottom, number.step, refuse).value)
     own = UNITS[dimension]
     likely = [name for name in units if low <= value * own[name].top / own[name].bottom <= high]
     return " or ".join(f"{body} {name}" for name in (likely or units)[:2]) + "?"
