@@ -223,7 +223,3 @@ def reach(
     load = np.asarray(resistance, dtype=float) + 1j * np.asarray(reactance, dtype=float)[:, None]
     problem = Problem(frequency=frequency, load=load, wanted=wanted, coil_q=coil_q, capacitor_q=capacitor_q)
     return least_loss(network, problem, within, points=MAP_SCAN, refine=False)
-
-
-MAP_SCAN = 17
-"""Points of the search for a map: its edges come from the limits and are exact."""

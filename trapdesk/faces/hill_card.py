@@ -9,13 +9,11 @@ from dataclasses import dataclass
 from ..services.figures import BandFigures, Figures
 from ..services.tolerance import Tolerance
 from . import tolerance_out, words
-from .layout import folded
+from .layout import WIDTH, folded
 from .lines import band_name, title
 from .shown import about, centimetres, megahertz
 
 STEPS = 5
-WIDTH = 79
-LONGEST = 24
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from ..design.design import Design
+from ..engine.capacitors import series_resistance
 from ..engine.resonator import impedance
 from ..engine.stress import Stress, stress
 from ..errors import NoAnswer
@@ -38,12 +39,8 @@ class Tank:
     def _circuit(self, frequency: np.ndarray) -> tuple[float, float, np.ndarray, np.ndarray]:
         reactance = 2 * np.pi * self.resonance * self.inductance
         coil = reactance / self.coil_q * np.sqrt(frequency / self.resonance)
-        return (
-            self.inductance,
-            self.capacitance,
-            coil,
-            1 / (2 * np.pi * frequency * self.capacitance * self.capacitor_q),
-        )
+        capacitor = series_resistance(frequency, self.capacitance, self.capacitor_q)
+        return self.inductance, self.capacitance, coil, capacitor
 
     def impedance(self, frequency: np.ndarray) -> np.ndarray:
         """Return the impedance at frequencies, in ohm."""
@@ -96,7 +93,7 @@ def choices(design: Design) -> Choices:
     present = wanted_resonance(design)
     built = build(design.antenna.trap)
     bands = dict(design.bands.items())
-    aim = bands.get("upper", design.bands.lower).target if "upper" in bands else present
+    aim = bands["upper"].target if "upper" in bands else present
     places = np.linspace(aim * (1 - BELOW), aim * (1 + ABOVE), PLACES)
     # A place as good as the present one only repeats it.
     places = [f for f in places if abs(f / present - 1) > 1e-3]

@@ -15,6 +15,7 @@ from ..units import units
 
 _PLAIN = ("ratio", "count")
 _WORDS = ("text", "choice", "part", "parts", "print")
+"""Kinds of values that are no numbers, and so have no unit."""
 
 
 @functools.cache
@@ -101,11 +102,7 @@ def _shown(value: Any, dimension: str) -> str:
     """Return a value, or a stretch between two, as a person reads it."""
     if isinstance(value, tuple):
         return " to ".join(_shown(end, dimension) for end in value)
-    if (
-        not isinstance(value, float | int)
-        or not dimension
-        or dimension in ("text", "choice", "part", "print")
-    ):
+    if not isinstance(value, float | int) or not dimension or dimension in _WORDS:
         return str(value)
     return units.show(value, units.Dimension(dimension), digits=6)
 

@@ -48,7 +48,6 @@ _NAMES = {
 _MEANING = {word: meaning for meaning, words in _NAMES.items() for word in words}
 _DEGREES = ("deg", "degree", "degrees")
 _RADIANS = ("rad", "radian", "radians")
-_SEPARATORS = {";": ";", "\t": "tab", ",": "comma"}
 
 
 def read(name: str, data: bytes) -> tuple[Sweep, tuple[str, ...]]:
