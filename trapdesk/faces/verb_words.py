@@ -15,7 +15,7 @@ Design, build and tune a two-band trap dipole, in one terminal.
   trapdesk choices FILE         other trap resonances, other L to C
   trapdesk tolerance FILE       will it still cover the bands, built and hung
   trapdesk readings FILE ...    what was measured of a trap; how to measure it
-  trapdesk next FILE ...        what to fold, cut or mend next, by what was read
+  trapdesk next FILE ...        what to fold, cut or mend next, by the readings
   trapdesk touchstone FILE      the feed impedance as a Touchstone file
 
 FILE is a design in TOML, or the name of a preset. A file that is called like a
