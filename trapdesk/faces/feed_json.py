@@ -12,7 +12,7 @@ from ..services.reach import ReachMap, TunerAnswer
 from ..services.tuning import Element, TunerSetting
 from ..services.worth import WayFigures, Worth
 
-_VALUE = {"coil": "inductance_h", "capacitor": "capacitance_f"}
+VALUE_KEYS = {"coil": "inductance_h", "capacitor": "capacitance_f"}
 _UNIT = {"coil": "_h", "capacitor": "_f"}
 
 
@@ -100,7 +100,7 @@ def _element(element: Element, watts: float) -> dict[str, Any]:
     return {
         "kind": element.kind,
         "place": element.place,
-        _VALUE[element.kind]: element.value,
+        VALUE_KEYS[element.kind]: element.value,
         "step": element.step,
         "peak_v": root * element.volts,
         "rms_a": root * element.amps,

@@ -12,7 +12,7 @@ import numpy as np
 from ..design.station import OWN, FeedLine, ListedLoss, Weather
 from ..engine.cable_list import CABLES
 from ..engine.cable_types import LOSS_DOUBT
-from ..engine.cables import line_figures, load_behind, propagation
+from ..engine.cables import DECIBELS, line_figures, load_behind, propagation
 from ..engine.reflection import swr
 from ..errors import BadInput, Fault, NoAnswer
 from ..services.feed import LineUse, line_of, voltage_rating
@@ -123,7 +123,7 @@ def _answer(line: FeedLine, found: dict[str, Any]) -> LineAnswer:
             raise NoAnswer(
                 "no_load_gives_this",
                 "Zin",
-                {"matched_loss_db": float(8.685889638 * gamma.real * length)},
+                {"matched_loss_db": float(DECIBELS * gamma.real * length)},
                 "the line's own loss leaves less room for that: look over length and type",
             )
     z0 = float(of.z0)
@@ -207,7 +207,7 @@ def document(answer: LineAnswer) -> dict[str, Any]:
     """Return the same for scripts."""
     of = line_of(answer.line)
     return {
-        "format": 1,
+        "format": json_out.FORMAT,
         "kind": "line",
         "type": answer.line.type,
         "length_m": answer.line.length,

@@ -232,7 +232,7 @@ def _solution(one: Solution) -> Iterator[str]:
 def document(answer: MatchAnswer) -> dict[str, Any]:
     """Return the same for scripts."""
     return {
-        "format": 1,
+        "format": json_out.FORMAT,
         "kind": "match",
         "z_load_ohm": answer.load,
         "f_hz": answer.frequency,
@@ -243,10 +243,8 @@ def document(answer: MatchAnswer) -> dict[str, Any]:
     }
 
 
-_KEYS = {"coil": "inductance_h", "capacitor": "capacitance_f"}
-
-
 def _json(one: Solution) -> dict[str, Any]:
+    keys = [feed_json.VALUE_KEYS.get(part.kind, "length_m") for part in one.parts]
     return {
         "network": one.network,
         "loss_db": one.loss,
@@ -256,14 +254,14 @@ def _json(one: Solution) -> dict[str, Any]:
             {
                 "kind": part.kind,
                 "place": part.place,
-                _KEYS.get(part.kind, "length_m"): part.value,
-                "lossless_" + _KEYS.get(part.kind, "length_m"): part.lossless,
+                key: part.value,
+                f"lossless_{key}": part.lossless,
                 "peak_v": part.volts,
                 "rms_a": part.amps,
                 "w": part.watts,
                 "swr_rise_per_percent": part.touch,
             }
-            for part in one.parts
+            for part, key in zip(one.parts, keys, strict=True)
         ],
     }
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import difflib
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -25,28 +25,39 @@ class Name:
     high: float | None = None
 
 
-def read_pairs(texts: Sequence[str], names: Mapping[str, Name], example: str) -> dict[str, Any]:
-    """Return the values typed by name; BadInput names every text that cannot be used."""
+def split(texts: Sequence[str], names: Iterable[str], example: str) -> Iterator[tuple[str, str] | Fault]:
+    """Yield each text's name as it stands in `names`, and what was typed for it; or what is wrong with it."""
     known = {name.lower(): name for name in names}
-    found: dict[str, Any] = {}
-    faults: list[Fault] = []
+    seen: set[str] = set()
     for text in texts:
         typed, equals, value = text.partition("=")
         name = known.get(typed.strip().lower(), "")
         if not equals or not typed.strip():
-            faults += [Fault("", "unreadable", text, help=f"write name=value: {example}")]
+            yield Fault("", "unreadable", text, help=f"write name=value: {example}")
         elif not name:
             near = difflib.get_close_matches(typed.strip()[:10].lower(), known, n=1)
-            help = f"did you mean {known[near[0]]}?" if near else f"names are {', '.join(names)}"
-            faults += [Fault("", "unknown_key", typed, help=help)]
-        elif name in found:
-            faults += [Fault("", "duplicate", name, help="keep one of them")]
+            help = f"did you mean {known[near[0]]}?" if near else f"names are {', '.join(known.values())}"
+            yield Fault("", "unknown_key", typed, help=help)
+        elif name in seen:
+            yield Fault("", "duplicate", name, help="keep one of them")
         else:
-            try:
-                found[name] = _value(name, names[name], value)
-            except BadInput as refused:
-                faults += refused.faults
-                found[name] = None
+            seen.add(name)
+            yield name, value
+
+
+def read_pairs(texts: Sequence[str], names: Mapping[str, Name], example: str) -> dict[str, Any]:
+    """Return the values typed by name; BadInput names every text that cannot be used."""
+    found: dict[str, Any] = {}
+    faults: list[Fault] = []
+    for piece in split(texts, names, example):
+        if isinstance(piece, Fault):
+            faults += [piece]
+            continue
+        name, value = piece
+        try:
+            found[name] = _value(name, names[name], value)
+        except BadInput as refused:
+            faults += refused.faults
     if faults:
         raise BadInput(faults)
     return found

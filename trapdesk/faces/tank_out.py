@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import difflib
 from collections.abc import Mapping, Sequence
 
 from ..engine.tank import VALUE_RANGE, TankQuantity, TankStatus
@@ -12,9 +11,9 @@ from ..services.tank import TankAnswer, TankBehaviour
 from ..units.unit_names import ELEMENTS, Dimension
 from ..units.units import read_exact, show
 from .layout import folded
+from .pairs import split
 from .shown import exact, known
 
-NAMES: dict[str, str] = {name.lower(): name for name in ELEMENTS}
 LABELS: dict[TankQuantity, str] = {
     TankQuantity.FREQUENCY: "f, LC resonance",
     TankQuantity.INDUCTANCE: "L, inductance",
@@ -39,26 +38,19 @@ def answer_to(texts: Sequence[str]) -> tuple[dict[str, float], TankAnswer]:
     given: dict[str, float] = {}
     slack: dict[str, float] = {}
     faults: list[Fault] = []
-    for text in texts:
-        name, equals, value = text.partition("=")
-        known_name = NAMES.get(name.strip().lower(), "")
-        if not equals or not name.strip():
-            faults += [Fault("", "unreadable", text, help=f"write name=value: {EXAMPLE}")]
-        elif not known_name:
-            near = difflib.get_close_matches(name.strip()[:10].lower(), NAMES, n=1)
-            help = f"did you mean {NAMES[near[0]]}?" if near else f"names are {', '.join(ELEMENTS)}"
-            faults += [Fault("", "unknown_key", name, help=help)]
-        elif known_name in given:
-            faults += [Fault("", "duplicate", known_name, help="keep one of them")]
-        else:
-            try:
-                reading = read_exact(value, ELEMENTS[known_name], known_name)
-            except BadInput as refused:
-                faults += refused.faults
-                continue
-            given[known_name] = reading.value
-            slack[known_name] = min(reading.relative_slack, MOST_SLACK)
-            faults += _outside(known_name, reading.value, value)
+    for piece in split(texts, ELEMENTS, EXAMPLE):
+        if isinstance(piece, Fault):
+            faults += [piece]
+            continue
+        name, value = piece
+        try:
+            typed = read_exact(value, ELEMENTS[name], name)
+        except BadInput as refused:
+            faults += refused.faults
+            continue
+        given[name] = typed.value
+        slack[name] = min(typed.relative_slack, MOST_SLACK)
+        faults += _outside(name, typed.value, value)
     if faults:
         raise BadInput(faults)
     answer = service.answer(given, slack)
