@@ -6,7 +6,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy import stats
 
-from trapdesk.engine.sampling import normal_probability, normal_quantile, uniform
+from trapdesk.engine.sampling import normal_probability, normal_quantile, quantiles, uniform
 
 
 def test_raw_bits_are_those_of_the_published_generator():
@@ -74,3 +74,17 @@ def test_counts_have_limits_and_nan_has_no_probability():
         uniform(1, 1, 0, -1)
     with pytest.raises(ValueError, match="value"):
         normal_probability(np.nan)
+
+
+@pytest.mark.parametrize("count", [1, 2, 3, 500])
+def test_quantiles_are_those_of_another_implementation(count):
+    values = np.random.default_rng(count).standard_normal((3, 2, count))
+    chances = (0.0, 0.001, 0.05, 0.5, 0.95, 1.0)
+    expect = stats.mstats.mquantiles(values.reshape(6, count), chances, alphap=1, betap=1, axis=1)
+    assert quantiles(values, chances).reshape(6, 6).T == pytest.approx(np.asarray(expect), rel=1e-14)
+
+
+@pytest.mark.parametrize(("values", "chances"), [([], [0.5]), ([1.0], [1.5]), ([1.0], [np.nan])])
+def test_quantiles_of_nothing_are_refused(values, chances):
+    with pytest.raises(ValueError, match="values|chances"):
+        quantiles(values, chances)

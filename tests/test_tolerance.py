@@ -15,7 +15,7 @@ from trapdesk.design.capacitor_kinds import Printed, SingleCapacitor
 from trapdesk.design.design import JudgedAt, with_value
 from trapdesk.design.parts import CableCoil, StubCapacitor, Toroid
 from trapdesk.design.station import FeedLine
-from trapdesk.engine.ports import chebyshev_nodes, terminate
+from trapdesk.engine.ports import chebyshev_nodes, terminate, terminate_entries
 from trapdesk.engine.wire import plan, solve_whole
 from trapdesk.services import tolerance as service
 from trapdesk.services.advice import advise, for_yield
@@ -91,7 +91,7 @@ def test_trials_are_those_of_full_solves(ensemble):
             pieces = ensemble.outcome(role, features, [traps])[0]
             found = swr_of(np.concatenate([piece.reflection for piece in pieces]))
             dips = np.concatenate([piece.dip for piece in pieces])
-            loads = ensemble.of_traps.impedances(grid.circuit, traps)
+            loads = ensemble.of_traps.impedances(ensemble.of_traps.circuit(grid.frequency), traps)
             for i in pick:
                 ports = full_solve(ensemble, place, role, i, grid.frequency)
                 exact = swr(terminate(ports, *(z[i] for z in loads)).impedance, 50.0)
@@ -103,6 +103,19 @@ def test_trials_are_those_of_full_solves(ensemble):
     assert (off < 3e-4).mean() >= 0.95
     assert (np.array(low) < 0.05).mean() >= 0.95
     assert (np.array(high) < 0.03).mean() >= 0.95
+
+
+def test_what_few_frequencies_tell_is_what_all_of_them_do(ensemble):
+    # The traps' impedances and the ports at each of the frequencies, closed there.
+    draws = ensemble.draws(6, 0, 50)
+    traps = ensemble.traps(draws, WET, 50)
+    features = ensemble.features(draws, 50, None)
+    for role, grid in ensemble.grids.items():
+        found = np.concatenate([one.reflection for one in ensemble.outcome(role, features, [traps])[0]])
+        entries = ensemble.nearby.entries(ensemble.nearby.table(role, grid.frequency), features)
+        loads = ensemble.of_traps.impedances(ensemble.of_traps.circuit(grid.frequency), traps)
+        feed = terminate_entries(*(entries[:, k] for k in range(6)), *loads)[0]
+        assert np.abs(found - np.abs((feed - 50) / (feed + 50)) ** 2).max() < 1e-8
 
 
 def test_the_nominal_trial_is_the_design(ensemble):

@@ -25,6 +25,7 @@ The files, each one subject:
 ``mesh``              sides of a wire cut into elements: quadratures, static integrals, sample points
 ``wire``              thin-wire integral equation: a wire with ports to its port matrix and currents
 ``ports``             that wire over frequency: port matrices, traps as terminations, interpolation
+``quotients``         traps and ports as numerators over denominators, which vary slowly
 ``ground``            the half-space: Sommerfeld kernels, reflection coefficients, field in the air
 ``sky``               what a wire sends to the sky: the far field summed over all directions
 ``reflection``        reflection and standing wave ratio of an impedance against the wanted one

@@ -218,3 +218,39 @@ def normal_probability(value: ArrayLike) -> FloatArray:
     for column in _TABLE[0][-2::-1]:
         found = found * away + column[at]
     return found[()]
+
+
+def quantiles(values: ArrayLike, chances: ArrayLike) -> FloatArray:
+    """Return below which values given shares of samples lie.
+
+    Parameters
+    ----------
+    values : array (..., n)
+        Samples. [any unit]
+    chances : array (k,)
+        Shares. [1], 0 to 1
+
+    Returns
+    -------
+    array (k, ...)
+        Quantiles, in a straight line between neighbouring samples. [the same unit]
+
+    Raises
+    ------
+    ValueError
+        If there is no sample, or a share is outside its limits; NaN counts as outside.
+
+    Source
+    ------
+    hyndman-fan-1996, definition 7. Sorting is what processors do quickest, so no part of it is left out.
+    """
+    ranked, share = np.sort(np.asarray(values), axis=-1), np.asarray(chances, float)
+    if ranked.shape[-1] == 0:
+        raise ValueError("values: must be at least one")
+    if not np.all((share >= 0) & (share <= 1)):
+        raise ValueError("chances: must be 0 to 1")
+    place = share * (ranked.shape[-1] - 1)
+    below = np.floor(place).astype(int)
+    above = np.minimum(below + 1, ranked.shape[-1] - 1)
+    lower = ranked[..., below].astype(float)
+    return np.moveaxis(lower + (ranked[..., above] - lower) * (place - below), -1, 0)

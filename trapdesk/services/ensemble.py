@@ -10,7 +10,8 @@ from typing import Any
 import numpy as np
 
 from ..design.design import Design
-from ..engine.ports import terminate, terminate_entries
+from ..engine.ports import chebyshev_nodes, polynomial_weights, terminate
+from ..engine.quotients import terminate_fractions
 from .aiming import root
 from .beliefs import TWO_THIRDS, Belief, Draws, beliefs, draw
 from .feed import Path, path_of
@@ -20,11 +21,14 @@ from .response import MARGIN
 from .trap import BuiltTrap, build
 from .trial_traps import STAGES, Circuit, Stage, Traps, TrialTraps
 from .tuning import TunerSetting
+from .workspace import Workspace
 
 POINTS = 41
 """Frequencies a band is looked at: in its wanted part, and over the band and its margins."""
 WANTED_POINTS = 9
-CHUNK = 200
+MORE_NODES = 3
+"""Frequencies a band is computed at, beyond those its ports are solved at: products vary a little faster."""
+CHUNK = 500
 """Trials that are worked on at once: their arrays stay near the processor."""
 FARTHEST = 0.08
 """How far a wire is changed on the way to the aim, as a share of the side."""
@@ -63,8 +67,9 @@ def reflection_of(swr: float) -> float:
 class _Grid:
     """A band's frequencies, where among them the wanted part and the aim are, and what stands there.
 
-    `aim_wanted` is the aim's place in the wanted part, `watts` what arrives at the feed point over that part
-    of the antenna as designed; `setting` is how a tuner stands.
+    `aim_wanted` is the aim's place in the wanted part, `watts` (wanted, 1) what arrives at the feed point over
+    that part of the antenna as designed; `setting` is how a tuner stands. `table` and `circuit` are at the
+    nodes, and `weights` (frequencies, nodes) lead from there to all frequencies.
     """
 
     frequency: np.ndarray
@@ -72,7 +77,9 @@ class _Grid:
     aim: int
     aim_wanted: int
     table: Table
+    weights: np.ndarray
     circuit: Circuit | None
+    aim_circuit: Circuit | None
     watts: np.ndarray | float
     setting: TunerSetting | None
 
@@ -140,13 +147,16 @@ class Ensemble:
         picked = np.unique(judged)
         # A slice where one does: it takes no copy.
         one_piece = picked[-1] - picked[0] + 1 == picked.size
+        nodes = chebyshev_nodes(low, high, self.figures.ports[role].frequency.size + MORE_NODES)
         return _Grid(
             frequency=frequency,
             wanted=slice(picked[0], picked[-1] + 1) if one_piece else picked,
             aim=aim,
             aim_wanted=int(np.searchsorted(picked, aim)),
-            table=self.nearby.table(role, frequency),
-            circuit=self._circuit(frequency),
+            table=self.nearby.table(role, nodes),
+            weights=polynomial_weights(nodes, frequency),
+            circuit=self._circuit(nodes),
+            aim_circuit=self._circuit(frequency[[aim]]),
             **self._fed(role, frequency[picked]),
         )
 
@@ -158,7 +168,7 @@ class Ensemble:
         loads = () if self.trap is None else (self.trap.impedance(frequency),)
         feed = terminate(ports.impedance, *loads).impedance
         setting = self.path.set_at(self._bands[role].target, self.figures.bands[role].aim_impedance)
-        return {"watts": self.path.passage(frequency, feed).arriving, "setting": setting}
+        return {"watts": self.path.passage(frequency, feed).arriving[:, None], "setting": setting}
 
     def _circuit(self, frequency: np.ndarray) -> Circuit | None:
         return None if self.of_traps is None else self.of_traps.circuit(frequency)
@@ -236,13 +246,14 @@ class Ensemble:
             off = draws.get(f"aim_{role}", np.zeros(count))
             # The wire at another frequency is the wire with another scale of frequency.
             there = {**places, "site": (1 + places["site"]) / (1 + off) - 1}
-            entries = Nearby.entries(self._aim_tables[role], self.nearby.features(there, count))[:, :, 0]
+            entries = Nearby.planes(self._aim_tables[role], self.nearby.features(there, count), Workspace())
             if traps is None:
-                found += [entries[:, 0].imag]
+                found += [entries[0, 0].imag]
                 continue
-            frequency = aim * (1 + off[:, None])
-            loads = self.of_traps.impedances(self._aim_circuits[role], traps, frequency=frequency)
-            found += [terminate_entries(*entries.T, *(load[:, 0] for load in loads))[0].imag]
+            frequency = aim * (1 + off)
+            loads = self.of_traps.fractions(self._aim_circuits[role], traps, frequency=frequency)
+            top, bottom, *_ = terminate_fractions(*entries, *loads)
+            found += [(top / bottom)[0].imag]
         return np.column_stack(found)
 
     def to_aim(
@@ -330,53 +341,84 @@ class Ensemble:
     def outcome(self, role: str, features: np.ndarray, traps: list[Traps | None]) -> list[list[Outcome]]:
         """Return what a band does with each set of traps in the same wires, in pieces of a chunk each."""
         found: list[list[Outcome]] = [[] for _ in traps]
+        space = Workspace()
         for begin in range(0, features.shape[0], CHUNK):
             pick = slice(begin, begin + CHUNK)
-            entries = Nearby.entries(self.grids[role].table, features[pick])
+            entries = Nearby.planes(self.grids[role].table, features[pick], space)
             for pieces, own in zip(found, traps, strict=True):
-                pieces.append(self._closed(role, entries, own, pick))
+                pieces.append(self._closed(role, entries, own, pick, space))
         return found
 
-    def _closed(self, role: str, entries: np.ndarray, traps: Traps | None, pick: slice) -> Outcome:
+    def _closed(
+        self, role: str, entries: np.ndarray, traps: Traps | None, pick: slice, space: Workspace
+    ) -> Outcome:
         grid, reference = self.grids[role], self.design.station.reference
-        if traps is None or grid.circuit is None:
-            feed = entries[:, 0]
-            volts = loss = np.zeros(feed.shape[0])
+        if traps is None or grid.circuit is None or grid.aim_circuit is None:
+            top, bottom = entries[0], np.ones_like(entries[0])
+            volts = loss = np.zeros(top.shape[1])
         else:
-            loads = self.of_traps.impedances(grid.circuit, traps, pick)
-            feed, *currents = terminate_entries(*(entries[:, k] for k in range(6)), *loads)
-            resistance = feed[:, grid.wanted].real
-            squares = [_square(current[:, grid.wanted]) for current in currents]
-            across = [s * _square(z[:, grid.wanted]) for s, z in zip(squares, loads, strict=True)]
-            volts = np.sqrt((2 * grid.watts * np.maximum(*across) / resistance).max(axis=1))
+            loads = self.of_traps.fractions(grid.circuit, traps, pick)
+            top, bottom, *across = terminate_fractions(*entries, *loads)
+            spread = _spread(space, grid.weights[grid.wanted], top, bottom, *across)
+            resistance = (spread[:, :2] * spread[:, 2:4]).sum(axis=1)
+            # Voltages and the feed's resistance have the square of the denominator in common.
+            squares = _squares(spread[:, 4:])
+            volts = np.sqrt((2 * grid.watts * squares.max(axis=1) / resistance).max(axis=0))
+            conductances = self.of_traps.conductances(grid.aim_circuit, traps, pick)
             aim = grid.aim_wanted
-            heat = sum(s[:, aim] * z[:, grid.aim].real for s, z in zip(squares, loads, strict=True))
-            loss = heat / resistance[:, aim]
-        judged = feed if self.path is None else self.path.judged(grid.frequency, feed, grid.setting)
-        real, square = np.maximum(judged.real, 0.0), judged.imag * judged.imag
-        reflection = ((real - reference) ** 2 + square) / ((real + reference) ** 2 + square)
+            loss = (conductances * squares[aim]).sum(axis=0) / resistance[aim]
+        if self.path is None:
+            shift = bottom * reference
+            squares = _squares(_spread(space, grid.weights, top - shift, top + shift))
+            reflection = np.divide(squares[:, 0], squares[:, 1])
+            # A resistance below nothing, as a polynomial may have it, takes no power and reflects all.
+            np.minimum(reflection, 1.0, out=reflection)
+        else:
+            parts = _spread(space, grid.weights, top, bottom)
+            feed = (parts[:, 0] + 1j * parts[:, 1]) / (parts[:, 2] + 1j * parts[:, 3])
+            judged = self.path.judged(grid.frequency, feed.T, grid.setting).T
+            real, square = np.maximum(judged.real, 0.0), judged.imag * judged.imag
+            reflection = ((real - reference) ** 2 + square) / ((real + reference) ** 2 + square)
         dip, least = _dips(grid.frequency, reflection)
         return Outcome(
             dip=dip,
             dip_reflection=least,
-            aim=reflection[:, grid.aim],
-            worst=reflection[:, grid.wanted].max(axis=1),
+            aim=reflection[grid.aim],
+            worst=reflection[grid.wanted].max(axis=0),
             volts=volts,
             loss=loss,
-            reflection=reflection,
+            reflection=reflection.T,
         )
 
 
-def _square(value: np.ndarray) -> np.ndarray:
-    return value.real * value.real + value.imag * value.imag
+def _spread(space: Workspace, weights: np.ndarray, *values: np.ndarray) -> np.ndarray:
+    """Return complex values (nodes, trials) at all frequencies that weights lead to.
+
+    Real and imaginary parts are planes of their own, (frequencies, 2 x values, trials): one real product
+    serves. They stand in the workspace until the next ones.
+    """
+    nodes, count = values[0].shape
+    planes = space.array("planes", nodes, 2 * len(values), count)
+    for i, value in enumerate(values):
+        planes[:, 2 * i], planes[:, 2 * i + 1] = value.real, value.imag
+    found = space.array("spread", weights.shape[0], 2 * len(values) * count)
+    np.matmul(weights, planes.reshape(nodes, -1), out=found)
+    return found.reshape(weights.shape[0], -1, count)
+
+
+def _squares(planes: np.ndarray) -> np.ndarray:
+    """Return the squares of magnitudes (frequencies, values, trials), in the place of the planes."""
+    planes *= planes
+    planes[:, 0::2] += planes[:, 1::2]
+    return planes[:, 0::2]
 
 
 def _dips(frequency: np.ndarray, reflection: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
-    """Return where each row of squared reflections is least, and how much, by a parabola."""
-    trial = np.arange(reflection.shape[0])
-    at = np.clip(np.argmin(reflection, axis=1), 1, frequency.size - 2)
+    """Return where each column of squared reflections is least, and how much, by a parabola."""
+    trial = np.arange(reflection.shape[1])
+    at = np.clip(np.argmin(reflection, axis=0), 1, frequency.size - 2)
     f0, f1, f2 = (frequency[at + k] for k in (-1, 0, 1))
-    g0, g1, g2 = (reflection[trial, at + k] for k in (-1, 0, 1))
+    g0, g1, g2 = (reflection[at + k, trial] for k in (-1, 0, 1))
     down, up = (g1 - g0) / (f1 - f0), (g2 - g1) / (f2 - f1)
     bend = (up - down) / (f2 - f0)
     bent = bend > 0

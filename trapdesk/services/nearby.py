@@ -6,9 +6,11 @@ mesh's error is the same before and after. Places and terms are as many, so the 
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 
@@ -19,6 +21,7 @@ from ..engine.ports import Ports, chebyshev_nodes, polynomial_weights
 from ..engine.wire import BentWire, Wire, plan, solve_ports, solve_whole
 from .beliefs import soil_at
 from .lengths import slope_of
+from .workspace import Workspace
 
 NODES = 3
 LENGTH_STEPS = (0.02, 0.04)
@@ -81,6 +84,11 @@ class Table:
     frequency: np.ndarray
     coefficients: np.ndarray
 
+    @cached_property
+    def rows(self) -> np.ndarray:
+        """The same by entry and frequency, all real parts before all imaginary ones."""
+        return np.concatenate([self.coefficients[:, 0::2], self.coefficients[:, 1::2]], axis=1).T.copy()
+
 
 class Nearby:
     """Ports of every wire near a solved one, for each band."""
@@ -102,6 +110,9 @@ class Nearby:
             ((name, power),) for name in self.step if name not in even for power in (1, 2)
         ]
         self.terms: list[Term] = [(), *self._even, *self._odd]
+        self._highest: dict[str, int] = {}
+        for name, power in itertools.chain(*self.terms):
+            self._highest[name] = max(power, self._highest.get(name, 1))
         self._solve()
 
     def _steps(self, reach: Mapping[str, float]) -> dict[str, float]:
@@ -225,11 +236,19 @@ class Nearby:
         for name, step in self.step.items():
             if name in place:
                 x = powers[name, 1] = place[name] / step
-                for power in range(2, 5):
+                for power in range(2, self._highest.get(name, 1) + 1):
                     powers[name, power] = powers[name, power - 1] * x
         found = np.empty((len(self.terms), count))
-        for row, term in zip(found, self.terms, strict=True):
-            row[:] = math.prod((powers[pair] for pair in term), start=1.0) if _known(term, place) else 0.0
+        found[0] = 1.0
+        for row, term in zip(found[1:], self.terms[1:], strict=True):
+            there = [powers.get(pair) for pair in term]
+            # What a place does not say is nothing.
+            if any(value is None for value in there):
+                row[:] = 0.0
+            elif len(there) == 1:
+                row[:] = there[0]
+            else:
+                np.multiply(*there, out=row)
         return found.T
 
     @staticmethod
@@ -239,15 +258,22 @@ class Nearby:
             (features @ table.coefficients).view(complex).reshape(features.shape[0], -1, table.frequency.size)
         )
 
+    @staticmethod
+    def planes(table: Table, features: np.ndarray, space: Workspace) -> np.ndarray:
+        """Return the matrix entries (6, frequencies, trials): trials that lie together are quick to work on.
+
+        They stand in the workspace, and only until it is asked for others.
+        """
+        rows, count = table.rows.shape[0], features.shape[0]
+        found = np.matmul(table.rows, features.T, out=space.array("parts", rows, count))
+        entries = space.array("entries", rows // 2, count, dtype=complex)
+        entries.real, entries.imag = found[: rows // 2], found[rows // 2 :]
+        return entries.reshape(-1, table.frequency.size, count)
+
 
 def _geometry(place: Place) -> Place:
     """Return a place without the part of it that only scales frequency."""
     return tuple(pair for pair in place if pair[0] != "site")
-
-
-def _known(term: Term, place: Mapping[str, np.ndarray]) -> bool:
-    """Return whether a place says all that a term asks for; what it does not say is nothing."""
-    return all(name in place for name, _ in term)
 
 
 def _value(term: Term, at: Mapping[str, float]) -> float:

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from ..design.design import Design
+from ..engine.sampling import quantiles
 from .beliefs import Belief
 from .causes import Regression, Shares, corners, one_at_a_time, trap_first_order
 from .ensemble import Ensemble, Outcome, reflection_of, swr_of
@@ -361,7 +362,7 @@ class _Gathered:
         for i, stage in enumerate(STAGES):
             shares, ends = regression.shares(every[i]), extremes[stage.name]
             bands = {}
-            tails = np.quantile(self.values[i, :, :, :kept], (EDGE, *TAILS, 1 - EDGE), axis=2)
+            tails = quantiles(self.values[i, :, :, :kept], (EDGE, *TAILS, 1 - EDGE))
             for j, role in enumerate(ensemble.roles):
                 scatters = {}
                 for k, name in enumerate(RESULTS):
@@ -408,8 +409,8 @@ class _Gathered:
         return found
 
     def _curve(self, i: int, j: int, frequency: np.ndarray, done: int) -> CurveBand:
-        reflection = np.quantile(self.curves[i, j, :, :done], TAILS, axis=1)
-        low, middle, high = swr_of(reflection.astype(float))
+        reflection = quantiles(self.curves[i, j, :, :done], TAILS)
+        low, middle, high = swr_of(reflection)
         return CurveBand(frequency=frequency, low=low, middle=middle, high=high)
 
 

@@ -13,6 +13,7 @@ from ..design.design import Design
 from ..design.parts import CableCoil, Toroid
 from ..engine import resonator
 from ..engine.coil_formulas import sheet_inductance
+from ..engine.quotients import resonator_fraction
 from .beliefs import Belief, Draws, drifts
 from .trap import BuiltTrap
 
@@ -168,3 +169,28 @@ class TrialTraps:
                 )
             ]
         return found
+
+    def fractions(
+        self, circuit: Circuit, traps: Traps, pick: slice = slice(None), frequency: np.ndarray | None = None
+    ) -> list[tuple[np.ndarray, np.ndarray]]:
+        """Return numerator and denominator of the impedance of both traps, each (frequencies, trials)."""
+        at = circuit.frequency[:, None] if frequency is None else frequency
+        found = []
+        for i in range(2):
+            factor = traps.inductance[i, pick]
+            found += [
+                resonator_fraction(
+                    at,
+                    circuit.inductance[:, None] * factor,
+                    traps.capacitance[i, pick],
+                    circuit.resistance[:, None] * (factor / traps.q[i, pick]),
+                )
+            ]
+        return found
+
+    @staticmethod
+    def conductances(circuit: Circuit, traps: Traps, pick: slice = slice(None)) -> np.ndarray:
+        """Return the conductance (2, trials) of both traps at the one frequency of a circuit, in siemens."""
+        reactance = 2 * np.pi * circuit.frequency * circuit.inductance
+        resistance = circuit.resistance / traps.q[:, pick]
+        return resistance / (traps.inductance[:, pick] * (resistance * resistance + reactance * reactance))
