@@ -16,14 +16,16 @@ from trapdesk.design.parts import Trap
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import cli, rummage_out
 from trapdesk.services.box_parts import capacitor_part, solenoid_part
+from trapdesk.services.box_search import tank
 from trapdesk.services.coils import COIL_DOUBT
 from trapdesk.services.combos import PIECES, WAYS, combos
+from trapdesk.services.offers import END_ROOM, SPREAD, TAIL
 from trapdesk.services.port_grid import PortGrid
-from trapdesk.services.rummage import rummage, take, tank, wanted_resonance
+from trapdesk.services.rummage import rummage, take, wanted_resonance
 from trapdesk.services.scoring import cost
 from trapdesk.services.solve import solve
 from trapdesk.services.trap import build
-from trapdesk.services.winders import END_ROOM, SPACINGS, SPREAD, TAIL
+from trapdesk.services.winders import SPACINGS
 from trapdesk.store import store
 from trapdesk.store.box_read import find_box
 
@@ -149,13 +151,14 @@ def test_interpolated_wires_are_the_solved_ones(name):
 def test_rows_are_confirmed_by_the_full_solve():
     design = preset()
     found = finished(design, find_box(), 6)
-    assert [row.kind for row in found.rows][:6] == ["solenoid"] * 6
     costs = [float(row.cost.total) for row in found.rows[:6]]
     assert costs == sorted(costs)
-    for row in found.rows[:6:2]:
+    best = {row.kind: row for row in reversed(found.rows)}
+    assert set(best) == {"solenoid", "stub", "cable", "toroid"}
+    for row in best.values():
         full = solve(take(design, row))
         assert full.trap.resonance == pytest.approx(found.resonance, rel=2e-6)
-        assert full.design.antenna.trap.body >= full.trap.coil.length
+        assert full.design.antenna.trap.body >= row.length
         for role, band in full.bands.items():
             assert row.outcome.bands[role].loss == pytest.approx(band.shares.trap, rel=4e-3)
             assert row.outcome.bands[role].peak_voltage == pytest.approx(
@@ -173,7 +176,11 @@ def test_a_row_holds_to_the_box():
         for i in set(row.pieces):
             assert 2 * row.pieces.count(i) <= box.capacitors[i].count
         assert row.voltage is None or row.volts <= row.voltage
-        if row.kind == "solenoid":
+        if row.stub is not None:
+            cable = {c.name: c for c in box.cables}[row.stub.cable]
+            assert row.stub.left == pytest.approx(cable.length - 2 * (row.stub.length + row.stub.snip))
+            assert row.stub.left >= 0
+        if row.kind in ("solenoid", "stub"):
             assert row.length + 2 * END_ROOM <= held.length
             assert row.trap.coil.pitch >= wire.closest * (1 - 1e-6)
             assert 2 * row.turns == int(2 * row.turns)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, fields
+from enum import StrEnum
 from typing import ClassVar
 
 from ..engine.cable_list import CABLES
@@ -13,6 +14,20 @@ CLOSEST = 1.05
 """Least pitch over wire diameter for which windings are computed."""
 BARE_PITCH = 1.2
 """Least pitch over diameter of bare wire, whose turns must not touch."""
+
+
+class TurnStep(StrEnum):
+    """What turns a former lets its wire lie in: where the leads can leave it."""
+
+    HALF = "half"
+    WHOLE = "whole"
+
+
+class Make(StrEnum):
+    """How a cable is made."""
+
+    COAXIAL = "coaxial"
+    PARALLEL = "parallel"
 
 
 def _count(label: str, help: str) -> float:
@@ -32,6 +47,13 @@ class Former:
         "length", "length", "Length of one piece; pieces are cut from it.", low=0.01, high=20, example="30 cm"
     )
     count: float = _count("pieces", "How many pieces of that length there are.")
+    turn_step: TurnStep = choice(
+        TurnStep,
+        "turn step",
+        "half: leads may leave on opposite sides. whole: both leave on the same side, as where holes are"
+        " drilled.",
+        default=TurnStep.HALF,
+    )
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -82,15 +104,19 @@ CONSTANTS = ("impedance", "velocity_factor", "outside", "shield", "loss", "loss_
 
 @dataclass(frozen=True, kw_only=True)
 class Cable:
-    """Coaxial cable to wind a trap of; its constants are given, or those listed for its type."""
+    """Cable to wind a trap of, or for a stub across a coil; its constants are given, or those of its type.
+
+    Nothing is wound of parallel line.
+    """
 
     table: ClassVar[str] = "cables"
     name: str = text("cable", "What it is called.")
     type: str | None = choice(
         CABLES, "type", "Type of cable; lists differ, measure yours.", default=None, optional=True
     )
+    make: Make = choice(Make, "make", "coaxial, or parallel: good for stubs only.", default=Make.COAXIAL)
     impedance: float | None = _constant(
-        "resistance", "impedance", "Characteristic impedance.", low=10, high=300, example="50 ohm"
+        "resistance", "impedance", "Characteristic impedance.", low=10, high=1000, example="50 ohm"
     )
     velocity_factor: float | None = _constant(
         "ratio", "velocity factor", "Speed on it over that of light.", low=0.3, high=1.0, example="0.66"
@@ -122,17 +148,23 @@ class Cable:
     )
 
     @property
+    def is_wound(self) -> bool:
+        """Whether a trap can be wound of it: not of parallel line, said or listed without a shield."""
+        return self.make == Make.COAXIAL and not (self.type and CABLES[self.type].shield is None)
+
+    @property
     def missing(self) -> tuple[str, ...]:
         """The constants that neither it nor the list of its type says."""
         listed = CABLES[self.type] if self.type else None
         known = {"outside": listed and listed.outside, "shield": listed and listed.shield}
-        names = [n for n in CONSTANTS if getattr(self, n) is None and not known.get(n, listed)]
+        wanted = [n for n in CONSTANTS if self.is_wound or n not in known]
+        names = [n for n in wanted if getattr(self, n) is None and not known.get(n, listed)]
         half = self.loss is not None and self.loss_at is None and "loss_at" not in names
         return tuple(names + ["loss_at"] * half)
 
     @property
     def over_jacket(self) -> float:
-        """Outside diameter, its own or the listed one, in m."""
+        """Outside diameter of what is wound, its own or the listed one, in m."""
         listed = CABLES[self.type].outside if self.type else None
         return self.outside or listed or 0.0
 

@@ -10,15 +10,17 @@ from typing import Any
 from ..design.box import Box
 from ..design.design import Design
 from ..errors import visible
+from ..services.box_search import Row, Stub
 from ..services.port_grid import BandSummary
-from ..services.rummage import Found, Row, Shortage
+from ..services.rummage import Found
 from ..services.scoring import WORDS
+from ..services.shortage import Shortage
 from .json_out import FORMAT, SUFFIXES
 from .json_out import inputs as inputs_of
 from .layout import folded
-from .shown import about, exact, megahertz, swr
+from .shown import about, centimetres, exact, kilohertz_per_centimetre, megahertz, swr
 
-KINDS = {"solenoid": "coil", "toroid": "ring core", "cable": "cable trap"}
+KINDS = {"solenoid": "coil", "stub": "coil and stub", "toroid": "ring core", "cable": "cable trap"}
 MORE = {
     "loss": "more loss",
     "width": "less width to spare",
@@ -46,6 +48,7 @@ LACKS = {
     "rating": "the voltage ratings do not stand what a trap bears",
     "former": "the formers are too short or too few for two windings",
     "wire": "there is too little wire for two windings",
+    "cable": "there is too little cable for two windings or stubs",
 }
 
 
@@ -103,7 +106,7 @@ def coil_text(row: Row) -> str:
         return f"wind {row.wound.wind} turns of {on}, then trim: {low:.1f} to {high:.1f} are needed"
     text = f"{turns_text(row.turns)} turns of {on}"
     pitch = getattr(row.trap.coil, "pitch", None)
-    return f"{text}, turn to turn {1e3 * pitch:.2f} mm" if row.kind == "solenoid" and pitch else text
+    return f"{text}, turn to turn {1e3 * pitch:.2f} mm" if pitch else text
 
 
 def reason(row: Row, first: Row) -> str:
@@ -142,6 +145,8 @@ def _row(place: int, row: Row, first: Row, box: Box) -> list[str]:
 def _parts(row: Row, box: Box) -> str:
     if row.kind == "cable":
         with_ = _TAKEN[str(row.trap.coil.terminals)]
+    elif row.stub is not None:
+        with_ = f"with {stub_text(row.stub)}"
     else:
         with_ = f"with {capacitors_text(row, box)}"
     if len(row.pieces) > 1:
@@ -169,8 +174,17 @@ def _volts(row: Row) -> str:
     return f"{volts} of {about(row.voltage, 'voltage')}"
 
 
+def stub_text(stub: Stub) -> str:
+    """Return the stub of one trap and how long to cut it."""
+    whole = centimetres(stub.length + stub.snip)
+    return f"a stub of {visible(stub.cable, 30)} cut {whole} long, {centimetres(stub.length)} in the end"
+
+
 def adjustment(row: Row) -> str:
     """Return what can still be moved after building, and whether that covers what the parts may be off."""
+    if row.stub is not None:
+        step = kilohertz_per_centimetre(row.stub.slope)
+        return f"snip the stub: each cm raises it by {step}, nothing lowers it again; seal its end"
     how = {
         "solenoid": ("turns together", "apart"),
         "toroid": ("turns bunched", "spread"),
@@ -186,6 +200,8 @@ def adjustment(row: Row) -> str:
 
 
 def _stock(row: Row) -> str:
+    if row.stub is not None:
+        return f"{row.stub.left:.1f} m of cable left over"
     if row.kind == "cable":
         return "no capacitors"
     left = int(row.spare)
@@ -263,6 +279,15 @@ def _document_row(place: int, row: Row, first: Row, box: Box) -> dict[str, Any]:
             {"row": i + 1, "capacitance" + SUFFIXES["capacitance"]: box.capacitors[i].capacitance}
             for i in row.pieces
         ],
+        "stub": None
+        if row.stub is None
+        else {
+            "cable": row.stub.cable,
+            "length_m": row.stub.length,
+            "cut_m": row.stub.length + row.stub.snip,
+            "left_m": row.stub.left,
+            "raises_hz_per_m": row.stub.slope,
+        },
         "terminals": str(row.trap.coil.terminals) if row.kind == "cable" else None,
         "turns_range": row.wound.turns_range,
         "wind_turns": row.wound.wind,

@@ -2,17 +2,33 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 
 from ..design.box import Cable, Capacitor, Core, Former, Wire
-from ..design.capacitor_kinds import ParallelCapacitors, Printed, SeriesCapacitors, SingleCapacitor
+from ..design.capacitor_kinds import (
+    ParallelCapacitors,
+    Printed,
+    SeriesCapacitors,
+    SingleCapacitor,
+    StubCapacitor,
+)
 from ..design.coil_kinds import CableCoil, Solenoid, Toroid
 from ..design.fields import SOLVE, Value
-from ..engine.cable_list import Terminals
+from ..engine.cable_list import CABLES, Terminals
 
-LIKE = "RG-58/U"
-"""Type that a cable of no listed type is told after; all its own constants take the listed ones' place."""
 LOSS_AT = 10e6
+
+
+def type_of(cable: Cable) -> str:
+    """Return the type that a cable is told after: its own, or the one nearest in impedance.
+
+    All its own constants take the listed ones' place; a type with a rating to work by would lend it that.
+    """
+    if cable.type is not None:
+        return cable.type
+    unrated = [name for name, listed in CABLES.items() if listed.working_voltage is None]
+    return min(unrated, key=lambda name: abs(math.log(CABLES[name].z0 / (cable.impedance or 50.0))))
 
 
 def solenoid_part(former: Former, wire: Wire, pitch: float, turns: float) -> Solenoid:
@@ -30,7 +46,7 @@ def solenoid_part(former: Former, wire: Wire, pitch: float, turns: float) -> Sol
 def cable_part(former: Former, cable: Cable, terminals: Terminals, turns: Value = SOLVE) -> CableCoil:
     """Return a trap of a box's cable wound close on its former."""
     return CableCoil(
-        cable=cable.type or LIKE,
+        cable=type_of(cable),
         former=former.diameter,
         turns=turns,
         terminals=terminals,
@@ -38,6 +54,19 @@ def cable_part(former: Former, cable: Cable, terminals: Terminals, turns: Value 
         velocity_factor=cable.velocity_factor,
         outside=cable.outside,
         shield=cable.shield,
+        loss=cable.loss,
+        loss_at=cable.loss_at or LOSS_AT,
+        voltage=cable.voltage,
+    )
+
+
+def stub_part(cable: Cable, length: Value = SOLVE) -> StubCapacitor:
+    """Return a capacitor that is a piece of a box's cable, open at its far end."""
+    return StubCapacitor(
+        cable=type_of(cable),
+        length=length,
+        impedance=cable.impedance,
+        velocity_factor=cable.velocity_factor,
         loss=cable.loss,
         loss_at=cable.loss_at or LOSS_AT,
         voltage=cable.voltage,

@@ -20,8 +20,13 @@ from .feed import Feeding, View, path_of
 from .response import MARGIN, Response, behave
 from .solve import hang, wanted_frequencies
 
-NODES_INNER, NODES_END, NODES_BAND = 3, 4, 3
+NODES = (3, 4)
+FEW_NODES = (2, 3)
+"""Lengths of inner and end wire that are solved: for figures, and for a first look a per mille or two off."""
+NODES_BAND = 3
 STEPS = 20
+BEYOND = 0.15
+"""Part of what is solved by which a length may lie outside it."""
 CLOSE = 1e-6
 """Part of a length to which it is found."""
 
@@ -64,15 +69,25 @@ def with_lengths(design: Design, inner: float | Any, end: float | Any) -> Design
 class PortGrid:
     """Port matrices over inner and end wire for each band of a design."""
 
-    def __init__(self, design: Design, traps: list[Any]) -> None:
+    def __init__(self, design: Design, traps: list[Any], nodes: tuple[int, int] = NODES) -> None:
         """Solve a grid that holds the wires of all these traps; NoAnswer when one of them has none."""
         self.design, self.bands = design, dict(design.bands.items())
-        hung = [hang(design, trap) for trap in traps]
-        lengths = design.antenna.lengths
-        self.inner = _nodes([w.inner for w in hung], lengths.inner is SOLVE, NODES_INNER)
-        self.end = _nodes([w.end for w in hung], lengths.end is SOLVE, NODES_END)
-        self.guess = (float(np.mean(self.inner)), float(np.mean(self.end)))
+        self._hung = [hang(design, trap) for trap in traps]
         self._trap = traps[0]
+        self._place(nodes)
+
+    def finer(self) -> PortGrid:
+        """Return the grid for the same traps on as many lengths as figures want."""
+        other = object.__new__(PortGrid)
+        other.__dict__.update(self.__dict__)
+        other._place(NODES)
+        return other
+
+    def _place(self, nodes: tuple[int, int]) -> None:
+        lengths = self.design.antenna.lengths
+        self.inner = _nodes([w.inner for w in self._hung], lengths.inner is SOLVE, nodes[0])
+        self.end = _nodes([w.end for w in self._hung], lengths.end is SOLVE, nodes[1])
+        self.guess = (float(np.mean(self.inner)), float(np.mean(self.end)))
         self._to_inner, self._to_end = (
             np.linalg.inv(np.array([_powers(n, x) for x in n])) for n in (self.inner, self.end)
         )
@@ -142,9 +157,10 @@ class PortGrid:
             # Broyden's update keeps the slopes right along the step just made.
             slopes = slopes + np.outer(new - now - slopes @ move, move) / (move @ move)
             now = new
-        for n, nodes, name in ((0, self.inner, "inner"), (1, self.end, "end")):
-            room = 0.25 * np.ptp(nodes)
-            if n in unknown and not nodes[0] - room <= x[n] <= nodes[-1] + room:
+        for n, name in enumerate(("inner", "end")):
+            low, high = _reach([getattr(wire, name) for wire in self._hung])
+            room = BEYOND * (high - low)
+            if n in unknown and not low - room <= x[n] <= high + room:
                 raise NoAnswer("aim_not_met", f"antenna.lengths.{name}", {f"{name}_m": float(x[n])})
         return float(x[0]), float(x[1])
 
@@ -202,6 +218,11 @@ def _nodes(lengths: list[float], solved: bool, count: int) -> np.ndarray:
     """Return where to solve over a length, with a little room; a length that is set needs one place."""
     if not solved:
         return np.array(lengths[:1])
+    return chebyshev_nodes(*_reach(lengths), count)
+
+
+def _reach(lengths: list[float]) -> tuple[float, float]:
+    """Return from where to where a length is solved."""
     low, high = min(lengths), max(lengths)
     room = 0.02 * (high - low) + 0.002 * low
-    return chebyshev_nodes(low - room, high + room, count)
+    return low - room, high + room

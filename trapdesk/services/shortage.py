@@ -4,14 +4,28 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Iterator
-from dataclasses import replace
-from typing import TYPE_CHECKING, Any
+from dataclasses import dataclass, replace
+from typing import Any
 
 from ..design.box import Box, Capacitor, Former, Wire
+from .box_search import Row, Search
 from .combos import TRAPS
 
-if TYPE_CHECKING:
-    from .rummage import Search, Shortage
+
+@dataclass(frozen=True, kw_only=True)
+class Shortage:
+    """Why nothing can be built: what is nearest, what it lacks, and which single part would do.
+
+    `lacks` names what would each be enough to have more of: pieces, rating, former, wire, cable; all of
+    them when only all together would do. `missing` are lists of the box with nothing in them. `parts` are
+    pairs of a list of the box and the entry to add, each alone enough.
+    """
+
+    lacks: tuple[str, ...]
+    missing: tuple[str, ...]
+    nearest: Row | None
+    parts: tuple[tuple[str, Any], ...]
+
 
 E12 = (1.0, 1.2, 1.5, 1.8, 2.2, 2.7, 3.3, 3.9, 4.7, 5.6, 6.8, 8.2)
 """One decade of preferred values. From memory: IEC 60063."""
@@ -35,14 +49,13 @@ RELAXED: dict[str, Callable[[Box], Box]] = {
         box, formers=tuple(replace(f, length=f.length + 1.0, count=max(f.count, TRAPS)) for f in box.formers)
     ),
     "wire": lambda box: replace(box, wires=tuple(replace(w, length=1e4) for w in box.wires)),
+    "cable": lambda box: replace(box, cables=tuple(replace(c, length=1e4) for c in box.cables)),
 }
 """What may be the only thing that is short, each with the box in which it is not."""
 
 
 def shortage(search: Search) -> Shortage:
     """Return what is nearest, what it lacks, and the single parts of which each would be enough."""
-    from .rummage import Shortage
-
     box, nearest, lacks = search.box, None, []
     for name, relax in RELAXED.items():
         row = _first(search, relax(box))
@@ -63,7 +76,7 @@ def shortage(search: Search) -> Shortage:
 
 def _first(search: Search, box: Box, only: tuple[int | None, int | None] = (None, None)) -> Any:
     """Return the best row of a box, of one former or wire alone when so asked; None without any."""
-    joined = search.combos(box)
+    joined = search.capacitors(box)
     former, wire = only
     offers = []
     for pair in search.pairs(box):

@@ -29,7 +29,7 @@ SPACINGS = (1.0, 1.5, 2.0, 3.0)
 TURNS = np.arange(2.0, 60.5, 0.5)
 WIDER = 1.01
 CLOSE_BY = 1.5
-"""Points behind the best, by its coil as at the pitch that is tried, within which a trap is looked at closer."""
+"""Points behind the best, by coils not yet drawn apart, within which a trap is looked at closer."""
 FEWEST = 64
 """So many are looked at closer in any case."""
 NEARLY = 1.02
@@ -141,7 +141,8 @@ def solenoid_offers(
         which = np.flatnonzero((n > 0) & (n < there))
         at.append((np.full(which.size, k), n[which], which))
     k, n, which = (np.concatenate(part) for part in zip(*at, strict=True))
-    tried = which.size
+    if not which.size:
+        return
 
     def figures(turns: Any, pitch: Any, slope: Any, resistance: Any, total: Any, some: Combos) -> Arrays:
         length = turns * pitch
@@ -165,9 +166,7 @@ def solenoid_offers(
     wide = wound.pitches[k] * np.exp(np.log(wound.inductance[k, n] * w * w * total) / slope)
     wide = np.minimum(wide, NEARLY * space / turns)
     rough = figures(turns, wide, slope, wound.resistance[k, n], total, some)
-    points = np.where(
-        _fits(former, wire, rough, limits, NEARLY), points_of(some, surface, rough), math.inf
-    )
+    points = np.where(_fits(former, wire, rough, limits, NEARLY), points_of(some, surface, rough), math.inf)
     order = np.argsort(points, kind="stable")
     order = order[: max(FEWEST, int(np.searchsorted(points[order], points[order[:1]] + CLOSE_BY)[0]))]
     near = order[np.isfinite(points[order])]
@@ -178,7 +177,7 @@ def solenoid_offers(
     of = figures(turns, *drawn, some)
     good = _fits(former, wire, of, limits)
     of = {name: array[good] for name, array in of.items()}
-    yield from picked(pair, some.take(np.flatnonzero(good)), surface, of, tried)
+    yield from picked(pair, some.take(np.flatnonzero(good)), surface, of, which.size)
 
 
 def _fits(former: Former, wire: Wire, of: Arrays, limits: Limits, nearly: float = 1.0) -> np.ndarray:
