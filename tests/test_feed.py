@@ -24,10 +24,12 @@ from trapdesk.design.station import (
     Weather,
 )
 from trapdesk.engine.cables import propagation
+from trapdesk.errors import NoAnswer
 from trapdesk.faces import cli, feed_out, json_out, layout, rows, words
 from trapdesk.faces.json_out import figures as document_of
 from trapdesk.services.feed import Path, Step, given_power, line_of, way_down
 from trapdesk.services.feed_point import FeedPoint
+from trapdesk.services.lone_line import to_load, to_seen
 from trapdesk.services.solve import at_frequencies, solve
 from trapdesk.store import store
 
@@ -419,3 +421,12 @@ def test_rows_and_json_show_the_feed():
     lost = sum(step["lost_w"] for step in feed["way_down"] if "step" in step)
     assert lost == pytest.approx(feed["transmitter_w"], rel=1e-12)
     assert json.loads(json_out.text(document_of(BARE)))["bands"]["lower"]["feed"] is None
+
+
+def test_a_lone_line_is_the_same_from_either_end():
+    there = to_load(COAX, 7.1e6, 35 - 120j, 80.0)
+    back = to_seen(COAX, 7.1e6, there.use.input, 80.0)
+    assert back.use.load == pytest.approx(35 - 120j, rel=1e-9)
+    assert there.use.power_load == pytest.approx(80.0 * 10 ** (-there.use.total_loss / 10), rel=1e-9)
+    with pytest.raises(NoAnswer, match="no load gives this"):
+        to_seen(COAX, 7.1e6, 0.5 + 0j, 80.0)

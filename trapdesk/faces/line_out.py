@@ -2,20 +2,15 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import Any
-
-import numpy as np
 
 from ..design.station import OWN, FeedLine, ListedLoss, Weather
 from ..engine.cable_list import CABLES
 from ..engine.cable_types import LOSS_DOUBT
-from ..engine.cables import DECIBELS, line_figures, load_behind, propagation
-from ..engine.reflection import swr
-from ..errors import BadInput, Fault, NoAnswer
-from ..services.feed import LineUse, line_of, voltage_rating
+from ..errors import BadInput, Fault
+from ..services.feed import line_of, voltage_rating
+from ..services.lone_line import LoneLine, to_load, to_seen
 from ..units.unit_names import Dimension
 from ..units.units import read
 from . import feed_json, json_out
@@ -39,17 +34,6 @@ NAMES: dict[str, Name] = {
 }
 
 
-@dataclass(frozen=True, kw_only=True)
-class LineAnswer:
-    """A line as typed, and what it does."""
-
-    line: FeedLine
-    frequency: float
-    load_was_found: bool
-    impedance: complex
-    use: LineUse
-
-
 def cable_named(text: str) -> str:
     """Return the type a person named, with or without dashes and the ending /U; BadInput for none of ours."""
 
@@ -63,7 +47,7 @@ def cable_named(text: str) -> str:
     raise BadInput(Fault("type", "unknown_choice", text, ", ".join((*CABLES, OWN)), help))
 
 
-def answer_to(texts: Sequence[str]) -> LineAnswer:
+def answer_to(texts: Sequence[str]) -> LoneLine:
     """Return the line and what it does to what was typed; BadInput names everything that cannot be used."""
     kinds = [text for text in texts if "=" not in text]
     found = read_pairs([text for text in texts if "=" in text], NAMES, EXAMPLE)
@@ -109,45 +93,13 @@ def losses(text: str) -> tuple[ListedLoss, ...]:
     return tuple(rows)
 
 
-def _answer(line: FeedLine, found: dict[str, Any]) -> LineAnswer:
+def _answer(line: FeedLine, found: dict[str, Any]) -> LoneLine:
     try:
-        of = line_of(line)
+        line_of(line)
     except ValueError as error:
         raise BadInput(Fault("loss", "cannot_be_fitted", help=str(error))) from None
-    frequency, length, watts = found["f"], found["length"], found.get("power", 100.0)
-    gamma, z_line = propagation(of, frequency)
-    load = found.get("Z")
-    if load is None:
-        load = complex(load_behind(gamma, z_line, length, found["Zin"]))
-        if not (math.isfinite(abs(load)) and load.real > 0):
-            raise NoAnswer(
-                "no_load_gives_this",
-                "Zin",
-                {"matched_loss_db": float(DECIBELS * gamma.real * length)},
-                "the line's own loss leaves less room for that: look over length and type",
-            )
-    z0 = float(of.z0)
-    use = line_figures(gamma, z_line, length, load, z0, watts)
-    return LineAnswer(
-        line=line,
-        frequency=frequency,
-        load_was_found="Zin" in found,
-        impedance=complex(z_line),
-        use=LineUse(
-            load=complex(load),
-            input=complex(use.input_impedance),
-            matched_loss=float(use.matched_loss),
-            total_loss=float(use.total_loss),
-            swr_load=float(swr(load, z0)),
-            swr_input=float(use.swr_input),
-            power_load=float(use.power_load),
-            power_input=watts,
-            largest_voltage=float(use.largest_voltage),
-            voltage_at=float(use.voltage_at),
-            largest_current=float(use.largest_current),
-            current_at=float(use.current_at),
-        ),
-    )
+    carried, end = (to_load, found["Z"]) if "Z" in found else (to_seen, found["Zin"])
+    return carried(line, found["f"], end, found.get("power", 100.0))
 
 
 def _ohms(z: complex) -> str:
@@ -160,16 +112,15 @@ def _ratio(value: float) -> str:
     return f"{value:.3g}" if value < 1000 else "over 1000"
 
 
-def lines(answer: LineAnswer) -> list[str]:
+def lines(answer: LoneLine) -> list[str]:
     """Return the line in use as lines: both ends side by side, losses, and what stands along it."""
     use, line = answer.use, answer.line
-    of = line_of(line)
     found = [f"{line_name(line)} at {megahertz(answer.frequency)}"]
     found += [f"  {'':<22}{'at the far end':<26}at the transmitter's end"]
     for label, far, near in (
         ("watts", f"{use.power_load:.4g} W", f"{use.power_input:.4g} W"),
         ("Z", _ohms(use.load), _ohms(use.input)),
-        (f"SWR against {float(of.z0):.4g}", _ratio(use.swr_load), _ratio(use.swr_input)),
+        (f"SWR against {float(answer.constants.z0):.4g}", _ratio(use.swr_load), _ratio(use.swr_input)),
     ):
         found += [f"  {label:<22}{far:<26}{near}"]
     rated, carries = voltage_rating(line), line.current
@@ -183,8 +134,8 @@ def lines(answer: LineAnswer) -> list[str]:
         f"  {'highest amps, rms':<22}{about(use.largest_current, 'current', 3)}"
         f" at {exact(use.current_at, 'length', digits=3)} from the far end{amps}",
         f"  {'line impedance':<22}{_ohms(answer.impedance)}",
-        f"  {'velocity factor':<22}{float(of.velocity_factor):.3g}",
-        f"  {'electrical length':<22}{_wavelengths(answer):.3g} wavelengths",
+        f"  {'velocity factor':<22}{float(answer.constants.velocity_factor):.3g}",
+        f"  {'electrical length':<22}{answer.wavelengths:.3g} wavelengths",
     ]
     if line.type != OWN:
         cable = CABLES[line.type]
@@ -198,22 +149,16 @@ def lines(answer: LineAnswer) -> list[str]:
     return found
 
 
-def _wavelengths(answer: LineAnswer) -> float:
-    gamma, _ = propagation(line_of(answer.line), answer.frequency)
-    return float(gamma.imag * answer.line.length / (2 * np.pi))
-
-
-def document(answer: LineAnswer) -> dict[str, Any]:
+def document(answer: LoneLine) -> dict[str, Any]:
     """Return the same for scripts."""
-    of = line_of(answer.line)
     return {
         "format": json_out.FORMAT,
         "kind": "line",
         "type": answer.line.type,
         "length_m": answer.line.length,
         "f_hz": answer.frequency,
-        "z0_ohm": float(of.z0),
-        "velocity_factor": float(of.velocity_factor),
+        "z0_ohm": float(answer.constants.z0),
+        "velocity_factor": float(answer.constants.velocity_factor),
         "z_line_ohm": answer.impedance,
     } | feed_json.line(answer.use)
 

@@ -283,15 +283,11 @@ class Path:
         return tune(self.tuner, frequency, load, self.wanted)
 
 
-def line_use(path: Path, passage: Passage, i: int) -> LineUse | None:
-    """Return one frequency of what the line does and bears."""
-    found = passage.line
-    if found is None:
-        return None
-    watts = float(passage.in_line[i])
+def line_use(found: LineFigures, load: complex, watts: float, i: int | tuple[()] = ()) -> LineUse:
+    """Return what a line does and bears for watts into it; `i` is which of the figures, each for one watt."""
     root = math.sqrt(watts)
     return LineUse(
-        load=complex(passage.line_load[i]),
+        load=complex(load),
         input=complex(found.input_impedance[i]),
         matched_loss=float(found.matched_loss[i]),
         total_loss=float(found.total_loss[i]),
@@ -403,7 +399,7 @@ def feed_figures(
         transmitter_impedance=complex(aim.transmitter_impedance[i]),
         transmitter_swr=float(aim.transmitter_swr[i]),
         share=arriving / given if given else 0.0,
-        line=line_use(path, aim, i),
+        line=None if aim.line is None else line_use(aim.line, aim.line_load[i], float(aim.in_line[i]), i),
         transformer_watts=float(aim.transformer[i]),
         tuner=setting,
         worst_voltage=None if over.line is None else float(np.max(root * over.line.largest_voltage)),
