@@ -29,7 +29,7 @@ from trapdesk.design.parts import GivenCapacitor, GivenCoil, Solenoid, Trap
 from trapdesk.design.rules import InvalidDesign
 from trapdesk.engine.soils import SOILS
 from trapdesk.errors import NoAnswer, TrapdeskError
-from trapdesk.services.figures import Level
+from trapdesk.services.levels import Level
 from trapdesk.services.solve import at_frequencies, solve, with_site_effects
 from trapdesk.store import store
 

@@ -26,7 +26,7 @@ from trapdesk.engine.dielectrics import DIELECTRICS
 from trapdesk.engine.resonator import impedance
 from trapdesk.errors import NoAnswer
 from trapdesk.services.capacitors import build_capacitor, drift_of, line_of, tolerance_of, weights
-from trapdesk.services.figures import Level
+from trapdesk.services.levels import Level
 from trapdesk.services.solve import solve
 from trapdesk.services.trap import build
 from trapdesk.services.trap_figures import adjustments

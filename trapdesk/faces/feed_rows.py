@@ -4,14 +4,15 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator
+from typing import TYPE_CHECKING
 
 from ..design.station import OWN, FeedLine
 from ..errors import visible
-from ..services.feed import voltage_rating
-from ..services.feed_findings import tuner_watts
-from ..services.figures import BandFigures, Figures
-from ..services.tuning import Element, TunerSetting
 from .shown import about, exact, impedance, known, swr
+
+if TYPE_CHECKING:
+    from ..services.figures import BandFigures, Figures
+    from ..services.tuning import Element, TunerSetting
 
 PARTS = {"coil": "coil", "capacitor": "capacitor"}
 DIMENSIONS = {"coil": "inductance", "capacitor": "capacitance"}
@@ -110,6 +111,8 @@ def rows(figures: Figures, band: BandFigures) -> Iterator[dict[str, str]]:
             f"{feed.line.matched_loss:.2g} dB matched",
             line_name(station.line),
         )
+        from ..services.feed import voltage_rating
+
         rated = voltage_rating(station.line)
         volts = known(feed.worst_voltage, feed.worst_voltage * band.stress_doubt, "voltage")
         limit = f"rated {about(rated, 'voltage', 3)}" if rated else "no rating"
@@ -121,6 +124,8 @@ def rows(figures: Figures, band: BandFigures) -> Iterator[dict[str, str]]:
         yield row("transformer_w", "transformer", watts(feed.transformer_watts), why="lost in it at the aim")
     if feed.tuner is not None:
         yield row("tuner", "tuner", loss_text(feed.tuner), feed.tuner.network, "set for the aim, least loss")
+        from ..services.feed_findings import tuner_watts
+
         root = math.sqrt(tuner_watts(band))
         for number, element in enumerate(feed.tuner.elements, start=1):
             bears = f"{about(root * element.volts, 'voltage')} peak"

@@ -6,12 +6,15 @@ import math
 import re
 import textwrap
 from collections.abc import Iterable
+from typing import TYPE_CHECKING
 
-from ..services.figures import AtFrequency, BandFigures, Figures, Stress
 from . import words
 from .lines import swr_text
 from .rows import Row, summary
 from .shown import impedance, known, percent
+
+if TYPE_CHECKING:
+    from ..services.figures import AtFrequency, BandFigures, Figures, Stress
 
 WIDTH = 79
 GROUPS: dict[str, str] = {

@@ -2,16 +2,19 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 from ..design.coil_kinds import CableCoil
 from ..design.design import Design, Shape, get
 from ..design.fields import SOLVE
 from ..engine.soils import GroundKind
 from ..errors import visible
-from ..services.capacitors import cable_rating
-from ..services.figures import BandFigures, Figures
 from . import words
 from .feed_rows import line_name
 from .shown import Shown, about, centimetres, exact, kilohertz_per_centimetre, known, megahertz, swr
+
+if TYPE_CHECKING:
+    from ..services.figures import BandFigures, Figures
 
 
 def title(design: Design, longest: int = 60) -> str:
@@ -47,6 +50,8 @@ def rating(design: Design) -> float | None:
     if trap is None:
         return None
     if isinstance(trap.coil, CableCoil):
+        from ..services.capacitors import cable_rating
+
         return cable_rating(trap.coil)
     part = trap.capacitor
     printed = getattr(part, "print", None)

@@ -5,13 +5,12 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from ..design.design import MODES, Design, Shape, get, known_at
 from ..design.fields import SOLVE
 from ..engine.soils import UNKNOWN_SOIL, GroundKind
 from ..errors import visible
-from ..services.figures import BandFigures, Figures, Finding
 from . import feed_rows, trap_rows, words
 from .lines import (
     band_line,
@@ -37,6 +36,9 @@ from .shown import (
     megahertz,
     percent,
 )
+
+if TYPE_CHECKING:
+    from ..services.figures import BandFigures, Figures, Finding
 
 # Which row of a band or a trap a finding belongs to, where its place alone does not tell.
 _FINDING_ROWS = {

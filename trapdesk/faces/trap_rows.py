@@ -4,14 +4,17 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator
 from dataclasses import replace
+from typing import TYPE_CHECKING
 
 from ..design.coil_kinds import CableCoil
 from ..design.design import get
 from ..design.fields import SOLVE
 from ..errors import visible
-from ..services.figures import Adjustment, BandFigures, Figures, PartFigures, PartStress, TrapFigures
 from .lines import band_name, inductance_text, turns_doubt
 from .shown import Shown, about, exact, impedance_range, known, megahertz, percent, swr
+
+if TYPE_CHECKING:
+    from ..services.figures import Adjustment, BandFigures, Figures, PartFigures, PartStress, TrapFigures
 
 Cells = dict[str, str]
 

@@ -4,13 +4,17 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from ..design.design import Design, known_at
 from ..errors import NoAnswer, visible
-from ..services.figures import Finding, Level
+from ..services.levels import Level
 from ..units.unit_names import Dimension
 from ..units.units import show
 from . import shown
+
+if TYPE_CHECKING:
+    from ..services.figures import Finding
 
 ESTIMATE = "an estimate, not measured"
 

@@ -8,7 +8,8 @@ from collections.abc import Iterator
 from ..design.design import MODES, JudgedAt, Station
 from ..design.station import PARALLEL
 from .feed import LEAST_PARALLEL, line_of, voltage_rating
-from .figures import BandFigures, Figures, Finding, Level
+from .figures import BandFigures, Figures, Finding
+from .levels import Level
 
 LEAST_CHOKE = 1000.0
 """A choke of less leaves the line's shield part of the antenna. [ohm], common practice, no source"""

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from enum import StrEnum
 
 import numpy as np
 
@@ -11,15 +10,8 @@ from ..design.design import Design
 from ..engine.ports import Ports
 from ..engine.wire import Wire
 from .feed import FeedFigures
+from .levels import Level
 from .moved import Moved
-
-
-class Level(StrEnum):
-    """How serious a finding is."""
-
-    FINE = "fine"
-    WATCH = "watch"
-    STOP = "stop"
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -6,8 +6,9 @@ from collections.abc import Iterator
 
 from ..engine.soils import GroundKind
 from .feed_findings import feed_findings
-from .figures import BandFigures, Figures, Finding, Level
+from .figures import BandFigures, Figures, Finding
 from .lengths import solved_for
+from .levels import Level
 from .trap_findings import trap_findings
 
 WITHIN_REACH = 3.0

@@ -6,8 +6,9 @@ from collections.abc import Iterator
 
 from ..design.coil_kinds import Solenoid, Toroid
 from ..engine.coils import SOLENOID_RANGE
-from .figures import Figures, Finding, Level, PartStress
+from .figures import Figures, Finding, PartStress
 from .figures import Heat as HeatFigures
+from .levels import Level
 
 TRAP_VOLTAGE_MARGIN = 0.7
 """Share of a part's limit from which on it is worth a remark; an estimate, no source."""

@@ -15,7 +15,6 @@ from textual.events import Key, Paste, Resize
 from textual.screen import Screen
 from textual.timer import Timer
 
-from ...services.solve import solve
 from . import config, journal
 from .arrange import LEAST_HEIGHT, LEAST_WIDTH, arrangement
 from .deeds import KEYS, Deeds
@@ -47,7 +46,7 @@ class Desk(App[None]):
         self,
         session: Session,
         drawn: Look,
-        solver: Solver = solve,
+        solver: Solver | None = None,
         *,
         chosen: config.Config | None = None,
         kept: journal.Journal | None = None,

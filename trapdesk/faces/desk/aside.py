@@ -14,9 +14,9 @@ from textual.app import App
 
 from ...design.design import Design
 from ...errors import TrapdeskError
-from ...services.figures import Figures
 
 if TYPE_CHECKING:
+    from ...services.figures import Figures
     from .session import Session
 
 SWITCHING = 0.0005

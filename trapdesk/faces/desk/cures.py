@@ -5,12 +5,15 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import replace
+from typing import TYPE_CHECKING
 
 from ...design.design import Design, Shape, get, with_value
 from ...design.fields import SOLVE
-from ...services.figures import Figures, Finding
 from ...units.unit_names import Dimension
 from ...units.units import show
+
+if TYPE_CHECKING:
+    from ...services.figures import Figures, Finding
 
 EDGE_STEP = 5e3
 """Edges of a wanted part are tried at whole multiples of this. [Hz]"""
@@ -19,7 +22,7 @@ CLEARANCE = 0.1
 TRAP_VOLTAGE_SHARE = 0.7
 """Part of a rating up to which a trap's voltage is brought by less power; an estimate, no source."""
 
-Cure = Callable[[Figures, Finding], tuple[Design, str] | None]
+Cure = Callable[["Figures", "Finding"], tuple[Design, str] | None]
 """Returns the design to try and what was changed in a few words; None where no edit would help."""
 
 

@@ -5,13 +5,13 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from ...errors import BadInput
-from ...services.figures import Finding
 from .. import words
 from . import cures
 from .filing import Filing
 from .themes import THEMES
 
 if TYPE_CHECKING:
+    from ...services.figures import Finding
     from .app import Desk
 
 KEYS: dict[str, str] = {

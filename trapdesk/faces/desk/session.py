@@ -4,16 +4,18 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from ...design.design import Design
 from ...design.rules import check
 from ...errors import BadInput
-from ...services.figures import Figures
 from ...store.spoken import spoken
 from ...store.store import Document
 from .aside import Aside
 from .form import FormRow, put
+
+if TYPE_CHECKING:
+    from ...services.figures import Figures
 
 
 class Session:
@@ -127,9 +129,10 @@ class Session:
         if generation != self.generation:
             return False
         self.answered = generation
-        self.no_answer = outcome if isinstance(outcome, str) else ""
-        if isinstance(outcome, Figures):
-            self.figures = outcome
+        if isinstance(outcome, str):
+            self.no_answer = outcome
+        else:
+            self.figures, self.no_answer = outcome, ""
         return True
 
     def saved_as(self, path: Path, text: str) -> None:

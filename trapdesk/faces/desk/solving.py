@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import asyncio
 from collections.abc import Callable
+from typing import TYPE_CHECKING
 
 from textual.app import App
 from textual.message import Message
@@ -11,15 +12,15 @@ from textual.message import Message
 from ...design.design import Design
 from ...design.rules import InvalidDesign
 from ...errors import NoAnswer, TrapdeskError
-from ...services.figures import Figures
-from ...services.solve import solve, with_site_effects
 from ...store.spoken import spoken
 from .. import words
-from . import plots
 from .aside import give_way
 from .session import Session
 
-Solver = Callable[[Design, Figures | None], Figures]
+if TYPE_CHECKING:
+    from ...services.figures import Figures
+
+Solver = Callable[[Design, "Figures | None"], "Figures"]
 
 
 class Solved(Message):
@@ -38,7 +39,7 @@ class Solving:
     A thread cannot be stopped, so only one solves at a time; a newer design waits for it to end.
     """
 
-    def __init__(self, app: App, session: Session, solver: Solver = solve) -> None:
+    def __init__(self, app: App, session: Session, solver: Solver | None = None) -> None:
         self._app = app
         self._session = session
         self._solver = solver
@@ -56,15 +57,21 @@ class Solving:
         self._app.run_worker(lambda: self._solve(generation, design, figures), thread=True)
 
     def _solve(self, generation: int, design: Design, previous: Figures | None) -> None:
+        # What computes and draws is imported here, aside: the inputs are on the screen before it.
+        from ...services.solve import solve
+        from . import plots
+
         give_way()
         plots.ready()
         try:
-            outcome: Figures | str = self._solver(design, previous)
+            outcome: Figures | str = (self._solver or solve)(design, previous)
         except TrapdeskError as error:
             outcome = reason(error)
         self._app.post_message(Solved(generation, outcome, complete=isinstance(outcome, str)))
 
     def _complete(self, generation: int, figures: Figures) -> None:
+        from ...services.solve import with_site_effects
+
         self._app.post_message(Solved(generation, with_site_effects(figures), complete=True))
 
     def take(self, message: Solved) -> bool:

@@ -2,13 +2,18 @@
 
 from __future__ import annotations
 
-from ....services.figures import Figures, Level
+from typing import TYPE_CHECKING
+
+from ....services.levels import Level
 from ....units.unit_names import Dimension
 from ....units.units import show
 from ... import rows as presenter
 from ...layout import GROUPS
 from ..lines import Line, wrapped
 from ..view import Sight
+
+if TYPE_CHECKING:
+    from ....services.figures import Figures
 
 MARKS = {Level.FINE: "  ", Level.WATCH: "* ", Level.STOP: "! "}
 STYLES = {Level.FINE: "text", Level.WATCH: "watch", Level.STOP: "stop"}

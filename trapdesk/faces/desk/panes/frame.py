@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from typing import TYPE_CHECKING
 
 from textual.events import Key
 
 from ....errors import visible
-from ....services.figures import Figures, Level
+from ....services.levels import Level
 from ... import rows as presenter
 from ... import words
 from ..form import NONE, FormRow
@@ -18,6 +19,9 @@ from .answer import MARKS, STYLES
 from .chances import chances_line
 from .going import next_line
 from .jobs import TOLERANCE
+
+if TYPE_CHECKING:
+    from ....services.figures import Figures
 
 # What a key does, the most needed first: the last ones go when there is no room.
 BROWSING = (

@@ -6,10 +6,10 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
-from ....design.box import Box
 from ..aside import Job, Task
 
 if TYPE_CHECKING:
+    from ....design.box import Box
     from ....services.advice import Advice
     from ....services.rummage import Found
     from ....services.tolerance import Tolerance

@@ -3,14 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
+from typing import TYPE_CHECKING
 
 from ....errors import BadInput, Fault, visible
-from ....services.figures import Figures
 from ..aside import Job, Task
 from ..lines import Line, wrapped
 from ..session import Session
 from ..view import Acting, Sight
 from .texts import text_lines, waiting_lines
+
+if TYPE_CHECKING:
+    from ....services.figures import Figures
 
 KEYS = (
     ("Enter", "type one"), ("arrows", "scroll"), ("x", "write to a file"), ("Tab", "inputs"), ("v", "view"),
