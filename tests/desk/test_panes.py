@@ -492,7 +492,7 @@ def test_every_row_has_a_drawer_of_its_own():
     assert {"station.tuner.coil.q", "station.transmitter.table"} <= {row.key for row in drawers["Tuner"]}
     assert {"station.line.length", "station.choke.ratio"} <= {row.key for row in drawers["Feed"]}
     assert "doubts.capacitor" in {row.key for row in drawers["Doubts"]}
-    assert "antenna.trap.measured.resonance" in {row.key for row in drawers["Trap"]}
+    assert {"antenna.trap.measured.resonance", "history.traps"} <= {row.key for row in drawers["Parts"]}
 
 
 def test_a_text_is_folded_anew_where_there_is_no_room_for_it():

@@ -110,7 +110,7 @@ async def test_zoom_plots_one_band_and_then_both_again():
 @pytest.mark.parametrize("size", [(80, 24), (120, 40), (40, 12)])
 async def test_r_and_x_at_the_feed_point_are_plotted(size):
     async with opened(size, look=BRAILLE) as (desk, pilot):
-        await show(desk, pilot, "z")
+        await show(desk, pilot, "z at feed")
         await pressed(desk, pilot, "z")
         band = desk.session.figures.bands["upper"]
         if size != (40, 12):

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 from .lines import Line, Piece, padded, width_of
@@ -11,7 +12,6 @@ from .panes.asking import LOAD_KEYS, YIELD_KEYS, load_press, yield_press
 from .panes.box import KEYS as BOX_KEYS
 from .panes.box import box_lines, box_picked, box_press, box_told
 from .panes.chances import chances_lines
-from .panes.curves import feed_lines, swr_lines, trap_lines
 from .panes.findings import findings_lines
 from .panes.going import KEYS as NEXT_KEYS
 from .panes.going import NEXT, next_lines, next_press, next_told
@@ -22,11 +22,24 @@ from .panes.measured import READINGS, measured_lines, measured_press, measured_t
 from .panes.quick import KEYS as SUM_KEYS
 from .panes.quick import SUM, quick_lines, quick_press, quick_told
 from .panes.texts import text_view
-from .view import TALL, View
+from .titles import in_sight
+from .view import TALL, Sight, View
 
 LEAST_WIDTH, LEAST_HEIGHT = 40, 12
 ROOMY = 117
 """Width from which a text of the command line stands whole beside the inputs."""
+
+
+def _curves(name: str) -> Callable[[Sight], list[Line]]:
+    """Return a view of curves, which is imported with its numpy when there is one to draw."""
+
+    def lines(sight: Sight) -> list[Line]:
+        from .panes import curves
+
+        return getattr(curves, name)(sight) if sight.session.figures is not None else []
+
+    return lines
+
 
 INPUTS = View(name="inputs", lines=lambda sight: [], letter="I", about="what is given")
 ANSWER = View(
@@ -44,7 +57,7 @@ VIEWS = (
     ANSWER,
     View(
         name="SWR",
-        lines=swr_lines,
+        lines=_curves("swr_lines"),
         letter="S",
         plot=True,
         told=told.feed_told,
@@ -52,15 +65,21 @@ VIEWS = (
         about="SWR over both bands",
     ),
     View(
-        name="z",
-        lines=feed_lines,
+        name="z at feed",
+        lines=_curves("feed_lines"),
         letter="Z",
         plot=True,
         told=told.feed_told,
         ending=".s1p",
         about="R and X at the feed point",
     ),
-    View(name="trap", lines=trap_lines, letter="T", plot=True, about="size and phase of its impedance"),
+    View(
+        name="trap",
+        lines=_curves("trap_lines"),
+        letter="T",
+        plot=True,
+        about="size and phase of its impedance",
+    ),
     CHANCES,
     FINDINGS,
     View(
@@ -183,26 +202,28 @@ def arrangement(width: int, height: int) -> Arrangement:
 
 
 def names(cycle: tuple[View, ...], here: View, width: int, busy: str = "") -> Line:
-    """Return the names of the views by their letters, the present one in brackets, and what is being done.
+    """Return the names of the views, as many as fit around the present one, and what is being done.
 
-    Where there is no room for all, the others are letters alone.
+    The letter that shows a view begins its name. What is being done stands at the right where there is room.
     """
     shown = cycle if here in cycle else (here,)
-    rooms = (width - _LEAST_BUSY - 1, width) if busy else (width,)
-    ways = [[piece for view in shown for piece in _name(view, here, most)] for most in (20, *range(6, 0, -1))]
-    fitting = (way for room in rooms for way in ways if width_of(way) <= room)
-    line = next(fitting, _name(here, here, 20))
+    keys = [view.letter for view in shown]
+    texts = [f"{view.letter}{view.name[1:]} " for view in shown]
+    room = (
+        max(0, min(width, width - min(len(busy), _MOST_BUSY) - 1)) if busy and width >= _ROOM_BUSY else width
+    )
+    line: list[Piece] = []
+    for letter, text in in_sight(keys, texts, shown.index(here), room):
+        if text.startswith("["):
+            line.append((f"[{here.name}]", "picked"))
+        elif text in "<>":
+            line.append((text, "head"))
+        else:
+            line += [(letter, "head"), (text[1:], "quiet")]
     free = width - width_of(line) - 1
     if busy and free >= _LEAST_BUSY:
         line.append((" " + padded(busy, free).rstrip(), "watch"))
     return line
 
 
-_LEAST_BUSY = 12
-
-
-def _name(view: View, here: View, most: int) -> list[Piece]:
-    """Return a view's name, its letter a capital, cut to so many letters unless it is the present one."""
-    if view is here:
-        return [(f"[{view.name}]", "picked")]
-    return [(view.letter, "head"), (view.name[1:most].rstrip() + " ", "quiet")]
+_LEAST_BUSY, _MOST_BUSY, _ROOM_BUSY = 12, 24, 44

@@ -4,21 +4,25 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
-from typing import Any
+from dataclasses import dataclass, fields, replace
+from typing import TYPE_CHECKING, Any
 
 from ...design.design import UNKNOWN, Band, Design, Shape, get, known_at, with_value
 from ...design.fields import SOLVE, Declared, declared, walk
 from ...design.parts import Trap
 from ...design.rules import trap_unknowns
+from ...design.station import OWN
 from ...engine.soils import UNKNOWN_SOIL
 from ...errors import BadInput, Fault, visible
-from ...services.figures import Figures
 from ...units import prints
 from ...units.units import Dimension, read, show, to_text
 from .. import rows as presenter
 from .kinds import begun, mended
-from .optional import ADDED, PARTS, put_part
+from .lists import list_of, read_count, with_count
+from .optional import ADDED, PARTS, own_line, put_part
+
+if TYPE_CHECKING:
+    from ...services.figures import Figures
 
 DRAWERS: dict[str, tuple[str, ...]] = {
     "Site": ("title", "site."),
@@ -27,9 +31,13 @@ DRAWERS: dict[str, tuple[str, ...]] = {
     "Wire": ("antenna.wire.", "antenna.lengths."),
     "Feed": ("station.",),
     "Tuner": ("station.tuner", "station.transmitter"),
+    "Parts": ("antenna.trap.measured", "history"),
     "Doubts": ("doubts.",),
 }
-"""Drawers and the beginnings of the keys that lie in them."""
+"""Drawers and the beginnings of the keys that lie in them.
+
+Parts holds what was read of the parts as they were built and hung; what they are made of is in Trap and Wire.
+"""
 
 # Where nothing is set: what then holds, in a word.
 UNSET = {
@@ -53,8 +61,6 @@ UNSET = {
     "site.permittivity": "by class",
 }
 NONE = "none"
-_ONLY_WORDS = ("text", "choice", "print")
-_MEASURED = frozenset(str(dimension) for dimension in Dimension)
 _YES = {"antenna.trap": "fitted", "bands.upper": "wanted"} | dict.fromkeys(PARTS, ADDED)
 _STARTING_ANGLE = math.radians(120)
 _UPPER = Band(name="20 m", low=14.0e6, high=14.35e6)
@@ -64,8 +70,8 @@ _UPPER = Band(name="20 m", low=14.0e6, high=14.35e6)
 class FormRow:
     """One input: its key, what is declared of it, how its value reads, and whether that was found, not set.
 
-    A `fixed` value is changed in the file only. `words` are the words it may be, when it is a choice. A row
-    without a key is a heading.
+    `words` are the words it may be, when it is a choice. Of a list the value is how many members it has. A
+    row without a key is a heading. `listed` is the key of the innermost list the row lies in, if any.
     """
 
     key: str
@@ -74,13 +80,26 @@ class FormRow:
     text: str
     found: bool = False
     unset: bool = False
-    fixed: bool = False
     words: tuple[str, ...] = ()
+    listed: str = ""
 
     @property
     def solvable(self) -> bool:
         """Whether the desk can find this value."""
         return self.known.solvable
+
+    @property
+    def name(self) -> str:
+        """The label as it stands below the row it belongs to, where it belongs to one."""
+        label = self.known.label
+        if ": " in label:
+            return "  " + label.partition(": ")[2]
+        return "  doubt" if label.startswith("doubt of ") else label
+
+    @property
+    def counts(self) -> bool:
+        """Whether the row says how many members a list has."""
+        return self.known.dimension == "parts"
 
 
 def drawer_of(key: str) -> str:
@@ -97,11 +116,15 @@ def rows(design: Design, figures: Figures | None, units: str = "metric") -> dict
         drawer = drawer_of(key)
         if not drawer or (key == "antenna.lengths.end" and design.antenna.trap is None):
             continue
-        if known.dimension not in ("part", *_ONLY_WORDS, *_MEASURED):
-            drawers[drawer].append(_fixed(key, known, value))
+        if known.dimension == "parts":
+            drawers[drawer].append(_count(key, known, value))
             continue
+        listed = list_of(design, key)
+        if listed is not None and known.dimension == "part" and len(fields(value)) > 1:
+            drawers[drawer].append(_heading(known.label))
         if known.dimension != "part":
-            drawers[drawer].append(_row(design, key, known, value, answers.get(key, "")))
+            row = _row(design, key, known, value, answers.get(key, ""))
+            drawers[drawer].append(row if listed is None else _member(design, row, *listed))
             continue
         if key in _YES:
             drawers[drawer].append(_presence(key, known, value))
@@ -114,9 +137,10 @@ def rows(design: Design, figures: Figures | None, units: str = "metric") -> dict
             and value is not None
         ):
             kinds = tuple(known.choices)
-            drawers[drawer].append(
-                FormRow(key=f"{key}.kind", known=known, value=value.kind, text=value.kind, words=kinds)
-            )
+            row = FormRow(key=f"{key}.kind", known=known, value=value.kind, text=value.kind, words=kinds)
+            if listed is not None:
+                row = replace(row, known=replace(known, label="kind"), listed=key.rpartition(".")[0])
+            drawers[drawer].append(row)
     # The upper band comes first wherever bands are shown; its row of presence divides the two.
     if units != "metric":
         drawers = {name: [in_units(row, figures, units) for row in made] for name, made in drawers.items()}
@@ -129,7 +153,7 @@ def rows(design: Design, figures: Figures | None, units: str = "metric") -> dict
 def in_units(row: FormRow, figures: Figures | None, units: str) -> FormRow:
     """Return a row with its length, set or found, in a system of units; any other row as it is."""
     value = found(figures, row.key) if row.value in (None, SOLVE) else row.value
-    if row.known.dimension != Dimension.LENGTH or not isinstance(value, float) or row.fixed:
+    if row.known.dimension != Dimension.LENGTH or not isinstance(value, float):
         return row
     digits = 4 if row.value is value else 3
     return replace(row, text=show(value, Dimension.LENGTH, units, digits=digits))
@@ -139,14 +163,17 @@ def _heading(text: str) -> FormRow:
     return FormRow(key="", known=Declared(label=text, help="", dimension="part"), value=None, text="")
 
 
-def _fixed(key: str, known: Declared, value: Any) -> FormRow:
-    """Return the row of a value that the desk can show but not change."""
-    text = (
-        f"{len(value)} of them"
-        if isinstance(value, tuple)
-        else visible("not set" if value is None else value)
-    )
-    return FormRow(key=key, known=known, value=value, text=text, unset=value is None, fixed=True)
+def _count(key: str, known: Declared, members: tuple[Any, ...]) -> FormRow:
+    """Return the row that says how many members a list has."""
+    count = len(members)
+    return FormRow(key=key, known=known, value=count, text=str(count or NONE), unset=not count)
+
+
+def _member(design: Design, row: FormRow, above: str, place: int) -> FormRow:
+    """Return a row of a member of a list; where that is all there is of it, it tells its place."""
+    alone = len(fields(get(design, f"{above}.{place}"))) == 1
+    known = replace(row.known, label=f"{row.known.label} {place}") if alone else row.known
+    return replace(row, known=known, listed=above)
 
 
 def _presence(key: str, known: Declared, value: Any) -> FormRow:
@@ -159,10 +186,15 @@ def _row(design: Design, key: str, known: Declared, value: Any, answer: str) -> 
     if value is SOLVE:
         return FormRow(key=key, known=known, value=value, text=answer or "...", found=True)
     if value is not None:
-        text = presenter.given(design, key)
+        text = _percent(known, value) or presenter.given(design, key)
         return FormRow(key=key, known=known, value=value, text=text, words=words)
     text = answer or UNSET.get(key) or UNSET.get(key.rpartition(".")[2], _unset(key))
     return FormRow(key=key, known=known, value=value, text=text, unset=True, found=bool(answer), words=words)
+
+
+def _percent(known: Declared, value: Any) -> str:
+    """Return a share in per cent where people write it so; nothing for any other value."""
+    return f"{100 * value:.6g} %" if known.dimension == "ratio" and known.example.endswith("%") else ""
 
 
 def _unset(key: str) -> str:
@@ -209,19 +241,22 @@ def found(figures: Figures | None, key: str) -> float | None:
 
 def starting_text(row: FormRow) -> str:
     """Return the text an edit of a row starts with."""
-    if row.fixed:
-        return row.text
+    if row.counts:
+        return str(row.value)
     if row.words or row.known.dimension in ("text", "print"):
         return "" if row.value is None else str(row.value)
     if row.value is SOLVE:
         return "solve"
-    return "" if row.value is None else to_text(row.value, Dimension(row.known.dimension))
+    if row.value is None:
+        return ""
+    return _percent(row.known, row.value) or to_text(row.value, Dimension(row.known.dimension))
 
 
 def read_row(row: FormRow, typed: str) -> Any:
     """Return the value a person typed into a row; BadInput says what would be right."""
     text = typed.strip()
-    _refuse_fixed(row)
+    if row.counts:
+        return read_count(text)
     if row.known.dimension == "text":
         if not text:
             raise BadInput(Fault(where="", code="empty", help="a few words"))
@@ -237,13 +272,6 @@ def read_row(row: FormRow, typed: str) -> Any:
             return SOLVE
         raise BadInput(Fault(where="", code="cannot_be_solved", value=text, help=_example(row)))
     return read(text, Dimension(row.known.dimension))
-
-
-def _refuse_fixed(row: FormRow) -> None:
-    if row.fixed:
-        raise BadInput(
-            Fault(where="", code="this_is_set_in_the_file", help="write it there and open it again")
-        )
 
 
 def _example(row: FormRow) -> str:
@@ -284,6 +312,8 @@ def put(design: Design, key: str, value: Any, figures: Figures | None, past: Ite
         return _with_kind(design, key.removesuffix(".kind"), value, figures, past)
     if key == "antenna.trap":
         return _with_trap(design, value != NONE, past)
+    if known_at(design, key).dimension == "parts":
+        return with_count(design, key, value)
     if key in PARTS:
         return put_part(design, key, value != NONE, past)
     if key == "bands.upper":
@@ -304,6 +334,8 @@ def put(design: Design, key: str, value: Any, figures: Figures | None, past: Ite
         changed = replace(changed, site=replace(site, conductivity=None, permittivity=None))
     elif key in ("site.conductivity", "site.permittivity"):
         changed = _with_soil_numbers(changed, value)
+    elif key == "station.line.type" and value == OWN:
+        changed = replace(changed, station=replace(changed.station, line=own_line(design.station.line)))
     elif changed.antenna.trap is not None and key in trap_unknowns(changed.antenna.trap):
         changed = _one_solved(changed, key, figures)
     return changed
@@ -416,10 +448,11 @@ _STEPS = {
 
 
 def nudged(row: FormRow, direction: int) -> float:
-    """Return a row's value one step further: half a turn, a centimetre, else its second digit."""
+    """Return a row's value one step further: one member, half a turn, a centimetre, else its second digit."""
     dimension = row.known.dimension
-    _refuse_fixed(row)
-    if row.words or dimension in ("text", "part"):
+    if row.counts:
+        return max(0, row.value + direction)
+    if row.words or dimension in ("text", "print"):
         raise BadInput(Fault(where="", code="there_is_nothing_to_step", help="Enter changes it"))
     if row.value is None or row.value is SOLVE:
         raise BadInput(Fault(where="", code="only_a_set_value_can_be_stepped", help="Enter sets it"))

@@ -3,11 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
 from typing import Any
 
 from ...design.design import Design, get, with_value
+from ...design.history import History
 from ...design.measured_part import Measured
-from ...design.station import Choke, FeedLine, Transmitter, Tuner, TunerCapacitor, TunerCoil
+from ...design.station import (
+    OWN,
+    Choke,
+    FeedLine,
+    ListedLoss,
+    Transmitter,
+    Tuner,
+    TunerCapacitor,
+    TunerCoil,
+)
+from ...engine.cable_list import CABLES
 
 STARTING_LENGTH = 25.0
 """Length of a line that was just added; the verb tuner takes the same. [m]"""
@@ -19,6 +31,7 @@ PARTS: dict[str, Any] = {
     "station.tuner.load_capacitor": TunerCapacitor(),
     "station.transmitter": Transmitter(),
     "antenna.trap.measured": Measured(),
+    "history": History(),
 }
 """Keys of the parts, and what each begins with."""
 ADDED = "added"
@@ -41,3 +54,17 @@ def _last(key: str, past: Iterator[Design]) -> Any:
         if part is not None:
             return part
     return None
+
+
+def own_line(line: FeedLine) -> FeedLine:
+    """Return a line of one's own, its numbers those of the type it was, where none were given."""
+    cable = CABLES.get(line.type)
+    if cable is None:
+        return line
+    return replace(
+        line,
+        type=OWN,
+        z0=line.z0 or cable.z0,
+        velocity_factor=line.velocity_factor or cable.velocity_factor,
+        losses=line.losses or tuple(ListedLoss(frequency=f, loss=loss) for f, loss in cable.losses),
+    )

@@ -6,7 +6,9 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 from typing import Protocol
 
-from textual.events import MouseScrollDown, MouseScrollUp
+from rich.cells import cell_len
+from textual.events import Click, MouseScrollDown, MouseScrollUp
+from textual.message import Message
 
 from .aside import Job
 from .form import FormRow
@@ -79,6 +81,13 @@ class View:
 class ViewPane(Lines):
     """A pane that shows one view at a time, its name in the first line."""
 
+    class Named(Message):
+        """A view was pointed at by its letter, or the next one or the one before by > or <."""
+
+        def __init__(self, letter: str) -> None:
+            super().__init__()
+            self.letter = letter
+
     def __init__(self, *, id: str) -> None:
         super().__init__(id=id)
         self.pinned = 1
@@ -113,6 +122,17 @@ class ViewPane(Lines):
         if view.picked is not None and (place := view.picked(session, lines)) >= 0:
             self.keep_in_sight(min(place + 5, len(lines)))
             self.keep_in_sight(place + 1)
+
+    def on_click(self, event: Click) -> None:
+        """Ask for the view whose name the mouse points at in the first line."""
+        left, letter = len(self.edge), ""
+        for text, style in self._lines[0] if event.y == 0 and self._lines else ():
+            letter = text if style == "head" else letter if style == "quiet" else ""
+            if left <= event.x < left + cell_len(text):
+                if letter:
+                    self.post_message(self.Named(letter))
+                return
+            left += cell_len(text)
 
     def slide(self, columns: int) -> None:
         """Go past columns of a text too wide for the room, or back."""

@@ -2,22 +2,28 @@
 
 from __future__ import annotations
 
+import re
+
 from textual.events import Click, Key, MouseScrollDown, MouseScrollUp
 from textual.message import Message
 
 from ....design.fields import SOLVE
-from ....errors import BadInput, visible
-from ....services.figures import Level
+from ....errors import BadInput, Fault, visible
+from ....services.levels import Level
 from .. import form
 from ..form import DRAWERS, FormRow
 from ..lines import Line, Lines, padded
+from ..lists import list_of, without
 from ..session import Session
+from ..titles import in_sight
 from ..typed import Typed
 from .answer import MARKS, STYLES
 
 ALL_AT_ONCE = 26
 """Height from which all drawers stand one below the other."""
 _LONGEST_LABEL = 20
+_KEY = re.compile(r"\b[a-z]+(?:\.[a-z0-9_]+)+\b|\b[a-z]+_[a-z_]+\b")
+"""A dotted key of a design, or a name in it with an underscore."""
 
 
 class DrawersPane(Lines):
@@ -80,7 +86,7 @@ class DrawersPane(Lines):
             if len(shown) > 1:
                 lines += [*([[]] if len(lines) > 1 else []), [(name, "head")]]
                 self._places += [None] * (len(lines) - len(self._places))
-            label = max(len(r.known.label) for r in drawers[name])
+            label = max((len(r.name) for r in drawers[name]), default=0)
             for row in drawers[name]:
                 if row.key == self._key:
                     cursor = len(lines)
@@ -91,18 +97,13 @@ class DrawersPane(Lines):
         self.keep_in_sight(cursor if cursor > 3 else 1)
 
     def _names(self) -> Line:
-        return [(text, "picked" if name == self.drawer else "quiet") for name, text in self._titles()]
+        here = self.drawer
+        return [(text, "picked" if name == here else "quiet") for name, text in self._titles()]
 
     def _titles(self) -> list[tuple[str, str]]:
-        """Return each drawer's name and how it reads; all but the present one cut short for want of room."""
-        for most in (_LONGEST_LABEL, *range(6, 0, -1)):
-            titles = [(name, f"[{name}]" if name == self.drawer else f" {name[:most]} ") for name in DRAWERS]
-            if sum(len(text) for _, text in titles) <= self.room:
-                break
-            titles = [(name, text if name == self.drawer else text[1:]) for name, text in titles]
-            if sum(len(text) for _, text in titles) <= self.room:
-                break
-        return titles
+        """Return the names of the drawers as they read, those near the present one where not all fit."""
+        names = list(DRAWERS)
+        return in_sight(names, [f" {name} " for name in names], names.index(self.drawer), self.room)
 
     def _marks(self) -> dict[str, Level]:
         """Return the most serious level of the findings on each key."""
@@ -121,7 +122,10 @@ class DrawersPane(Lines):
         level = marks.get(row.key, Level.FINE)
         front = MARKS[level].strip() or (">" if here else " ")
         width = self.room - label - 3 - self._spare
-        name = padded(row.known.label, label)
+        # A long name takes of the room that a short value leaves.
+        longer = max(label, min(len(row.name), self.room - 3 - self._spare - max(4, len(row.text))))
+        width, label = width - (longer - label), longer
+        name = padded(row.name, label)
         if here and self.typed is not None:
             return [(front, "cursor"), (f" {name} ", "head"), *self.typed.pieces(width)]
         tail = " found" if row.found and not row.unset else ""
@@ -174,6 +178,12 @@ class DrawersPane(Lines):
             self._try(row, lambda: form.toggled(self.session.design, row, self.session.figures))
         elif event.character in ("+", "=", "-"):
             self._try(row, lambda: form.nudged(row, -1 if event.character == "-" else 1))
+        elif name in ("delete", "backspace") and row.listed:
+            self._take_out(row)
+        elif row.words and event.character and event.character in "0123456789.":
+            self._refuse(
+                row, BadInput(Fault("", "this_is_a_choice", help="Enter takes its next word, e types"))
+            )
         else:
             return False
         return True
@@ -208,6 +218,18 @@ class DrawersPane(Lines):
         except BadInput as refusal:
             self._refuse(row, refusal)
 
+    def _take_out(self, row: FormRow) -> None:
+        """Take the member of a list that a row belongs to out of the list."""
+        _, place = list_of(self.session.design, row.key) or ("", 0)
+        try:
+            self.session.take(without(self.session.design, row.listed, place))
+        except BadInput as refusal:
+            self._refuse(row, refusal)
+            return
+        self.go(row.listed)
+        self._tell("taken out of its list; u puts it back")
+        self.post_message(self.Changed())
+
     def _set(self, row: FormRow, value: object) -> None:
         """Set a row; what a rule forbids is told, and the old value stays."""
         before = row.text
@@ -234,16 +256,24 @@ class DrawersPane(Lines):
         fault = refusal.faults[0]
         words = str(fault)
         if fault.where:
-            label = (
-                row.known.label
-                if fault.where == row.key
-                else fault.where.rpartition(".")[2].replace("_", " ")
-            )
-            words = label + words[len(visible(fault.where, 120)) :]
+            name = fault.where.rpartition(".")[2].replace("_", " ")
+            words = self._label(fault.where, row, name) + words[len(visible(fault.where, 120)) :]
         else:
             words = f"{row.known.label}: {words}"
+        # The rules speak of keys of the file; here their rows have names.
+        words = _KEY.sub(lambda found: self._label(found[0], row, found[0]), words)
         self.post_message(self.Said(words, refused=True))
         self.repaint()
+
+    def _label(self, key: str, row: FormRow, unknown: str) -> str:
+        """Return what a key, or the last word of one, is called on the desk, the nearest row first."""
+        rows = [one for drawer in self._form().values() for one in drawer]
+        near = row.key.rpartition(".")[0]
+        wanted = (key, f"{near}.{key}")
+        found = next((one for one in rows if one.key in wanted), None) or next(
+            (one for one in rows if one.key.endswith(f".{key}")), None
+        )
+        return found.known.label if found is not None else unknown
 
     def _tell(self, words: str) -> None:
         self.post_message(self.Said(words))
@@ -312,10 +342,11 @@ class DrawersPane(Lines):
 
     def _pick(self, x: int) -> None:
         """Open the drawer whose name is at a column of the first line."""
-        left = len(self.edge) + 1 if self.edge else 0
-        for number, (_, text) in enumerate(self._titles()):
+        left = len(self.edge)
+        names = list(DRAWERS)
+        for name, text in self._titles():
             if left <= x < left + len(text):
-                self.turn(number - list(DRAWERS).index(self.drawer))
+                self.turn(names.index(name) - names.index(self.drawer))
                 return
             left += len(text)
 

@@ -7,6 +7,7 @@ from collections.abc import Mapping
 from ....units.units import Dimension, show
 from ..form import FormRow
 from ..lines import Line, wrapped
+from ..lists import MOST
 from ..view import Sight, View
 
 KEYS: tuple[tuple[str, str], ...] = (
@@ -78,7 +79,9 @@ def _about(row: FormRow, width: int) -> list[Line]:
 def _limits(row: FormRow) -> str:
     """Return the limits of a quantity in words."""
     known = row.known
-    if row.fixed or known.dimension in ("text", "choice", "part", "print"):
+    if row.counts:
+        return f"from 0 up to {MOST}; + adds one, - takes the last away"
+    if known.dimension in ("text", "choice", "part", "print"):
         return ""
     kind = Dimension(known.dimension)
     pieces = []
