@@ -93,9 +93,14 @@ class Desk(App[None]):
     def on_mount(self) -> None:
         """Paint, then begin to solve and to journal."""
         self.app_resume_signal.subscribe(self, lambda app: self._deeds.redraw())
+        self.theme_changed_signal.subscribe(self, lambda theme: self._recolour())
         if not self.is_headless:
             end_by_signals(self)
         self.call_after_refresh(self._begin)
+
+    def _recolour(self) -> None:
+        for pane in self.query(Lines):
+            pane.refresh()
 
     def _begin(self) -> None:
         self.solve()
@@ -105,13 +110,28 @@ class Desk(App[None]):
 
     def on_key(self, event: Key) -> None:
         """Give a key to whom it is for: nothing has the focus, so that keys are dealt with in their order."""
-        if self.foot.asking:
-            self.foot.key(event)
-            self.repaint_foot()
-        elif not (self.middle.key(event) or self.drawers.key(event)):
+        if event.key.startswith("alt+") and event.character:
+            # A thin line brings Esc and the letter behind it at once.
+            self._press(Key("escape", None))
+            self._press(Key(event.character, event.character))
+        elif not self._given(event):
             return
         event.stop()
         event.prevent_default()
+
+    def _given(self, event: Key) -> bool:
+        """Give a key to a question, the view or the inputs; return whether it was for any of them."""
+        if self.foot.asking:
+            self.foot.key(event)
+            self.repaint_foot()
+            return True
+        return self.middle.key(event) or self.drawers.key(event)
+
+    def _press(self, event: Key) -> None:
+        """Deal with a key at once."""
+        deed = next((deed for deed, keys in KEYS.items() if event.key in keys.split(",")), "")
+        if not self._given(event) and deed:
+            self.action_do(deed)
 
     def on_paste(self, event: Paste) -> None:
         """Give what is pasted to whom it is for."""

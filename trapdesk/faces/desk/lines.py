@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import ClassVar
 
 from rich.cells import cell_len
 from rich.segment import Segment
@@ -14,11 +13,11 @@ from textual.selection import Selection
 from textual.strip import Strip
 from textual.widget import Widget
 
-Piece = tuple[str, str]
-"""Text and the name of its style, one of `STYLES`."""
-Line = Sequence[Piece]
+from .themes import styles_of
 
-STYLES = ("text", "quiet", "head", "found", "watch", "stop", "cursor", "edit", "curve", "limit", "picked")
+Piece = tuple[str, str]
+"""Text and the name of its style, one of those in `themes`."""
+Line = Sequence[Piece]
 
 
 def width_of(line: Line) -> int:
@@ -78,7 +77,6 @@ def wrapped(text: str, width: int, indent: int = 0) -> list[str]:
 class Lines(Widget):
     """Lines of text in named styles, with an upright line at the left when there is a pane beside it."""
 
-    COMPONENT_CLASSES: ClassVar[set[str]] = {f"lines--{name}" for name in STYLES}
     can_focus = False
 
     class Resized(Message):
@@ -151,18 +149,15 @@ class Lines(Widget):
         more = (
             "v" if y == self.size.height - 1 and below > 0 else "^" if y == self.pinned and above > 0 else ""
         )
-        base = self.rich_style
+        base, styles = self.rich_style, styles_of(self.app.theme)
         segments = []
         for text, name in pieces:
-            named = self.get_component_rich_style(f"lines--{name}", partial=True)
-            if self.stale and name not in ("cursor", "edit"):
-                named = self.get_component_rich_style("lines--quiet", partial=True)
+            named = styles["quiet" if self.stale and name not in ("cursor", "edit") else name]
             segments.append(Segment(shown_on(text, self.bare), base + named))
         width = self.size.width
         strip = Strip(segments).adjust_cell_length(width, base)
         if more and width > 2:
-            quiet = base + self.get_component_rich_style("lines--quiet", partial=True)
-            strip = Strip.join([strip.crop(0, width - 1), Strip([Segment(more, quiet)])])
+            strip = Strip.join([strip.crop(0, width - 1), Strip([Segment(more, base + styles["quiet"])])])
         selection = self.text_selection
         if selection is not None and (span := selection.get_span(index)) is not None:
             start, end = span[0], width if span[1] == -1 else span[1]

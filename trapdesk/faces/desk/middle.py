@@ -9,7 +9,6 @@ from textual.containers import Container
 from textual.events import Key
 
 from ...errors import TrapdeskError, visible
-from ...store import sweep_files
 from .arrange import ANSWER, CHANCES, FINDINGS, HELP, INPUTS, LETTERS, Arrangement, arrangement, names
 from .filing import Asker
 from .panes.drawers import DrawersPane
@@ -189,6 +188,8 @@ class Middle(Container):
 
     def _export(self, view: View) -> None:
         """Ask for the name of a file and write there what a view tells."""
+        from ...store import sweep_files
+
         assert view.told is not None
         texts = view.told(self.session)
         if not texts:
@@ -253,6 +254,15 @@ class Middle(Container):
         here = self.session.cursor
         self.session.cursor = 0.5 if here is None else min(1.0, max(0.0, here + steps * step))
         self.repaint()
+
+    def on_view_pane_named(self, message: ViewPane.Named) -> None:
+        """Show the view that the mouse pointed at."""
+        if self._drawers.editing or self.screen.query_one(Foot).asking:
+            return
+        if view := LETTERS.get(message.letter):
+            self._show(view)
+        else:
+            self.turn(1 if message.letter == ">" else -1)
 
     def scroll_view(self, pages: int) -> None:
         """Scroll the view, or help where that has a pane of its own."""

@@ -2,6 +2,10 @@
 
 from __future__ import annotations
 
+from functools import cache
+
+from rich.style import Style
+from textual.color import Color
 from textual.theme import Theme
 
 NAMES = ("ground", "text", "quiet", "found", "watch", "stop", "pick")
@@ -46,3 +50,38 @@ THEMES = {
     )
 }
 """Themes by name, in the order in which a key goes through them."""
+
+PIECES: dict[str, tuple[str, str]] = {
+    "text": ("text", ""),
+    "quiet": ("quiet", "faint"),
+    "head": ("text", "bold"),
+    "found": ("found", ""),
+    "watch": ("watch", ""),
+    "stop": ("stop", "bold"),
+    "cursor": ("text", "reverse"),
+    "edit": ("text", "underline"),
+    "curve": ("found", ""),
+    "limit": ("watch", ""),
+    "picked": ("text", "bold"),
+}
+"""Styles of pieces of text by name: the colour of the theme, and what meaning rests on beside it."""
+
+
+@cache
+def styles_of(theme: str) -> dict[str, Style]:
+    """Return the style of each kind of piece in a theme; in one not of ours that of no colours.
+
+    They are no part of the style sheet, which would be matched anew for each kind in each pane.
+    """
+    colours = THEMES.get(theme, THEMES["plain"]).variables
+    faint = colours["desk-faint"] == "dim"
+    return {
+        name: Style(
+            color=Color.parse(colours[f"desk-{colour}"]).rich_color,
+            bold="bold" in how or None,
+            dim=(how == "faint" and faint) or None,
+            reverse=how == "reverse" or None,
+            underline=how == "underline" or None,
+        )
+        for name, (colour, how) in PIECES.items()
+    }
