@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import sys
 from collections.abc import Iterable
-from dataclasses import fields
+from dataclasses import asdict, fields
 from typing import Any
 
 from ..design.box import Box
@@ -19,6 +19,7 @@ from .json_out import FORMAT, SUFFIXES
 from .json_out import inputs as inputs_of
 from .layout import folded
 from .shown import about, centimetres, exact, kilohertz_per_centimetre, megahertz, swr
+from .tolerance_out import STAGES, chance
 
 KINDS = {"solenoid": "coil", "stub": "coil and stub", "toroid": "ring core", "cable": "cable trap"}
 MORE = {
@@ -60,7 +61,8 @@ def last(progress: Iterable[Found]) -> Found | None:
         for found in progress:
             if shows and found.rows and not found.finished:
                 best = visible(found.rows[0].former, 20)
-                line = f"looked into {found.done} of {found.total}; best so far: {best}; Ctrl-C keeps these"
+                doing = "yield of" if found.stage else "looked into"
+                line = f"{doing} {found.done} of {found.total}; best so far: {best}; Ctrl-C keeps these"
                 print(f"\r{line:<78}", end="", file=sys.stderr, flush=True)
     except KeyboardInterrupt:
         if found is None:
@@ -77,9 +79,22 @@ def lines(design: Design, box: Box, found: Found) -> list[str]:
     if not found.rows:
         return [*out, "", *_shortage(box, found.shortage)]
     out += folded("", f"{thousands(found.tried)} ways tried." + ("" if found.finished else " Stopped early."))
+    out += folded("", by_yield(found)) if found.stage else []
     for place, row in enumerate(found.rows, start=1):
         out += ["", *_row(place, row, found.rows[0], box)]
     return [*out, "", *folded("", WORDS)]
+
+
+def by_yield(found: Found) -> str:
+    """Return what a ranking by yield goes by, and whether it tells the rows apart."""
+    known = [row.within for row in found.rows if row.within is not None]
+    text = f"Ordered by yield, {STAGES[found.stage]}: antennas within the SWR limit on every band"
+    if not known:
+        return f"{text}. None of the rows has any."
+    text += f", {known[0].trials} trials each, the same for all. What they cannot tell apart goes by cost"
+    if len(known) == len(found.rows) > 1 and min(y.high for y in known) >= max(y.low for y in known):
+        return f"{text}: that is every row; another stage may tell more."
+    return f"{text}."
 
 
 def thousands(number: int) -> str:
@@ -111,14 +126,21 @@ def coil_text(row: Row) -> str:
 
 def reason(row: Row, first: Row) -> str:
     """Return why a row stands where it stands: what sets it behind the first, and what it has over it."""
+    if row is first and row.within is not None:
+        return f"first by its yield; most of its cost is {_PLAIN[_heaviest(row)]}"
     if row is first:
-        heaviest = max(fields(row.cost), key=lambda f: float(getattr(row.cost, f.name))).name
-        return f"first: least cost of all; most of its cost is {_PLAIN[heaviest]}"
+        return f"first: least cost of all; most of its cost is {_PLAIN[_heaviest(row)]}"
     gaps = {f.name: float(getattr(row.cost, f.name) - getattr(first.cost, f.name)) for f in fields(row.cost)}
     worse = [MORE[n] for n, g in sorted(gaps.items(), key=lambda item: -item[1]) if g > WORTH]
+    if row.within is not None and first.within is not None and row.within.share < first.within.low:
+        worse.insert(0, "less yield")
     better = [LESS[n] for n, g in sorted(gaps.items(), key=lambda item: item[1]) if g < -WORTH]
     text = f"against the first: {' and '.join(worse[:2])}" if worse else "as good as the first"
     return f"{text}, but {' and '.join(better[:2])}" if better else text
+
+
+def _heaviest(row: Row) -> str:
+    return max(fields(row.cost), key=lambda f: float(getattr(row.cost, f.name))).name
 
 
 _PLAIN = {
@@ -135,6 +157,8 @@ _PLAIN = {
 def _row(place: int, row: Row, first: Row, box: Box) -> list[str]:
     head = f"{place:>2}  "
     cost = f"cost {float(row.cost.total):.1f}"
+    if row.within is not None:
+        cost = f"yield {chance(row.within)}, {cost}"
     out = folded(head, f"{KINDS[row.kind]}, {cost}: {coil_text(row)}")
     out += folded("    ", _parts(row, box))
     out += folded("    ", "; ".join(_band(b) for b in row.outcome.bands.values()) + f"; {_volts(row)}")
@@ -253,6 +277,7 @@ def document(design: Design, box: Box, found: Found) -> dict[str, Any]:
         "tried": found.tried,
         "finished": found.finished,
         "ranking": WORDS,
+        "for_yield": found.stage or None,
         "rows": [_document_row(place, row, found.rows[0], box) for place, row in enumerate(found.rows, 1)],
         "shortage": None
         if short is None
@@ -310,6 +335,7 @@ def _document_row(place: int, row: Row, first: Row, box: Box) -> dict[str, Any]:
         "bands": {role: document_band(band) for role, band in row.outcome.bands.items()},
         "cost": {f.name: float(getattr(row.cost, f.name)) for f in fields(row.cost)}
         | {"total": float(row.cost.total)},
+        "yield": None if row.within is None else asdict(row.within),
         "reason": reason(row, first),
     }
 

@@ -6,7 +6,7 @@ import math
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from itertools import islice
-from typing import NamedTuple
+from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 
@@ -24,6 +24,9 @@ from .port_grid import FEW_NODES, Outcome, PortGrid
 from .scoring import Cost, Surface, cost
 from .trap import BuiltTrap, build
 from .winders import MAKERS
+
+if TYPE_CHECKING:
+    from .tolerance import Yield
 
 REACTANCE = (70.0, 240.0, 640.0)
 """Coil reactance at resonance within which traps are sought: least, middle, most. [ohm]"""
@@ -65,6 +68,7 @@ class Row:
     `pieces` are places in the box's list of capacitors, joined as `way` says. `down` and `up` are how far the
     finished trap's resonance can still be moved each way, `off` how far it may be off as built: parts of it.
     `voltage` is what may lie across the trap, None where no rating is known; `stub` stands in for pieces.
+    `within` is the share of antennas with it that keep the SWR limit, once that was asked for.
     """
 
     trap: Trap
@@ -91,6 +95,7 @@ class Row:
     outcome: Outcome
     cost: Cost
     stub: Stub | None = None
+    within: Yield | None = None
 
     @property
     def volts(self) -> float:

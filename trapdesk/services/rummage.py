@@ -16,7 +16,10 @@ from .trap import build
 
 @dataclass(frozen=True, kw_only=True)
 class Found:
-    """What has been found so far: `done` of `total` pairs of former and wire looked into."""
+    """What has been found so far: `done` of `total` pairs of former and wire looked into.
+
+    With a `stage` the rows are ordered by their yield at it, and `done` of `total` rows have theirs.
+    """
 
     done: int
     total: int
@@ -25,6 +28,7 @@ class Found:
     resonance: float
     finished: bool = False
     shortage: Shortage | None = None
+    stage: str = ""
 
 
 def wanted_resonance(design: Design) -> float:
