@@ -7,17 +7,9 @@ import pytest
 from scipy.interpolate import BarycentricInterpolator
 
 from tests import oracles
-from trapdesk.engine.ground import (
-    C0,
-    EPS0,
-    ETA0,
-    MU0,
-    Ground,
-    barycentric,
-    fresnel,
-    gauss_legendre,
-    reflected_kernels,
-)
+from trapdesk.engine.constants import C0, EPS0, ETA0, MU0
+from trapdesk.engine.ground import Ground, fresnel, reflected_kernels
+from trapdesk.engine.quadrature import barycentric, gauss_legendre
 from trapdesk.engine.soils import SOILS, UNKNOWN_SOIL, UNKNOWN_SOIL_FROM, GroundKind
 
 SOIL = {

@@ -14,7 +14,8 @@ import pytest
 
 from trapdesk.engine import mesh
 from trapdesk.engine.conductors import coating_elastance
-from trapdesk.engine.ground import C0, Ground
+from trapdesk.engine.constants import C0
+from trapdesk.engine.ground import Ground
 from trapdesk.engine.mesh import Side, plan_side
 from trapdesk.engine.ports import terminate
 from trapdesk.engine.resonator import impedance as tank

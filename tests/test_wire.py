@@ -13,7 +13,8 @@ from scipy.optimize import brentq
 from tests import oracles
 from trapdesk.engine import wire as engine
 from trapdesk.engine.conductors import coating_elastance, internal_impedance
-from trapdesk.engine.ground import C0, Ground
+from trapdesk.engine.constants import C0
+from trapdesk.engine.ground import Ground
 from trapdesk.engine.mesh import Side, nodes_of, plan_side
 from trapdesk.engine.ports import chebyshev_nodes, polynomial_weights, terminate
 from trapdesk.engine.soils import GroundKind

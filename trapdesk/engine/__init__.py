@@ -4,6 +4,8 @@ The files, each one subject:
 
 ====================  ==================================================================================
 ``limits``            the check of arguments: a value outside its limits is named, never clamped
+``constants``         constants of nature
+``quadrature``        integrals by nodes and weights, values between Chebyshev nodes
 ``special``           Bessel and complete elliptic integrals, round-wire ratio
 ``metals``            metals by name: plain values, as in the four files below; they need no numpy
 ``soils``             what can lie under the wire, soils by name

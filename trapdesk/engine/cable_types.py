@@ -5,7 +5,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from .cable_list import Cable
 from .cables import Line
-from .ground import ETA0
+from .constants import ETA0
 from .limits import at_least, positive
 
 FloatArray = NDArray[np.float64]

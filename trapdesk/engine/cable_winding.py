@@ -10,7 +10,8 @@ from numpy.typing import ArrayLike, NDArray
 from .cables import Line
 from .coil_limits import MOST_TURNS
 from .coils import wire_length
-from .conductors import VACUUM_PERMEABILITY, internal_impedance
+from .conductors import internal_impedance
+from .constants import MU0
 from .limits import at_least, positive
 from .rings import ring_sum, solenoid_rings
 
@@ -123,7 +124,7 @@ def straight_inductance(length: float, diameter: float) -> float:
     positive(diameter=diameter)
     a = 0.5 * diameter
     far = np.hypot(length, a)
-    return float(VACUUM_PERMEABILITY / (2.0 * np.pi) * (length * np.arcsinh(length / a) - far + a))
+    return float(MU0 / (2.0 * np.pi) * (length * np.arcsinh(length / a) - far + a))
 
 
 def _shape(former: float, outside: float, shield: float, pitch: float | None) -> tuple[float, float, float]:

@@ -9,7 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from .ground import C0
+from .constants import C0
 from .limits import at_least, positive
 from .reflection import swr
 

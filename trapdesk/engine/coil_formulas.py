@@ -7,7 +7,7 @@ of the winding, so that they read 1 to 12 % high for close windings.
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from .conductors import VACUUM_PERMEABILITY
+from .constants import MU0
 from .limits import at_least, positive
 from .special import elliptic_complement
 
@@ -154,7 +154,7 @@ def sheet_inductance(diameter: ArrayLike, length: ArrayLike, turns: ArrayLike) -
     positive(turns=turns)
     factor = sheet_factor(diameter, length)
     area = 0.25 * np.pi * np.asarray(diameter, float) ** 2
-    return VACUUM_PERMEABILITY * np.asarray(turns, float) ** 2 * area / np.asarray(length, float) * factor
+    return MU0 * np.asarray(turns, float) ** 2 * area / np.asarray(length, float) * factor
 
 
 def rosa_self_correction(pitch: ArrayLike, wire_diameter: ArrayLike, surface: bool = True) -> FloatArray:
@@ -267,7 +267,7 @@ def rosa_inductance(
     correction = rosa_self_correction(pitch, wire_diameter) + rosa_mutual_correction(turns)
     n, radius = np.asarray(turns, float), 0.5 * np.asarray(diameter, float)
     sheet = sheet_inductance(diameter, n * np.asarray(pitch, float), n)
-    return sheet - VACUUM_PERMEABILITY * radius * n * correction
+    return sheet - MU0 * radius * n * correction
 
 
 def wheeler_inductance(diameter: ArrayLike, length: ArrayLike, turns: ArrayLike) -> FloatArray:

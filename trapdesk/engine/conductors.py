@@ -3,16 +3,12 @@
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from .constants import EPS0, MU0
 from .limits import at_least, positive
 from .metals import Material
 from .special import round_wire_ratio
 
 FloatArray = NDArray[np.float64]
-
-VACUUM_PERMEABILITY = 1.25663706212e-6
-"""CODATA 2018. [H/m]"""
-VACUUM_PERMITTIVITY = 8.8541878128e-12
-"""CODATA 2018. [F/m]"""
 
 GAUGE_RANGE = {"gauge": (-3, 56)}
 """Gauges the law of ASTM B258 is printed for: 0000 (as -3) to 56."""
@@ -103,7 +99,7 @@ def skin_depth(frequency: ArrayLike, resistivity: ArrayLike) -> FloatArray:
     """
     positive(frequency=frequency)
     at_least(0.0, resistivity=resistivity)
-    return np.sqrt(np.asarray(resistivity) / (np.pi * VACUUM_PERMEABILITY * np.asarray(frequency)))
+    return np.sqrt(np.asarray(resistivity) / (np.pi * MU0 * np.asarray(frequency)))
 
 
 def dc_resistance(diameter: ArrayLike, resistivity: ArrayLike) -> FloatArray:
@@ -172,7 +168,7 @@ def internal_impedance(
         np.asarray(frequency, float), np.asarray(diameter, float), np.asarray(resistivity, float)
     )
     lossy = rho > 0.0
-    depth = np.sqrt(np.where(lossy, rho, 1.0) / (np.pi * VACUUM_PERMEABILITY * frequency))
+    depth = np.sqrt(np.where(lossy, rho, 1.0) / (np.pi * MU0 * frequency))
     ratio = round_wire_ratio((0.5 + 0.5j) * diameter / depth)
     return rho / (0.25 * np.pi * diameter**2) * ratio
 
@@ -210,4 +206,4 @@ def coating_elastance(
     at_least(0.0, coating_thickness=coating_thickness)
     at_least(1.0, permittivity=permittivity)
     ratio = 1.0 + 2.0 * np.asarray(coating_thickness) / np.asarray(conductor_diameter)
-    return (1.0 - 1.0 / np.asarray(permittivity)) * np.log(ratio) / (2.0 * np.pi * VACUUM_PERMITTIVITY)
+    return (1.0 - 1.0 / np.asarray(permittivity)) * np.log(ratio) / (2.0 * np.pi * EPS0)

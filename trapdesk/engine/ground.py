@@ -8,15 +8,13 @@ from itertools import pairwise
 
 import numpy as np
 
-from .conductors import VACUUM_PERMEABILITY, VACUUM_PERMITTIVITY
+from .constants import C0, EPS0
+from .quadrature import barycentric, gauss_legendre
 from .soils import GroundKind
 from .special import bessel_j01
 
 TAIL = 16.0
 """The spectra are followed until their decay e^-kZ has come to e^-16."""
-C0 = 299_792_458.0
-EPS0, MU0 = VACUUM_PERMITTIVITY, VACUUM_PERMEABILITY
-ETA0 = MU0 * C0
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -147,66 +145,6 @@ def _soil_kernels(
         kernels = kernels @ spread.T
     along, upright, charge, cross = kernels
     return Reflected(along, upright, cross, charge)
-
-
-def barycentric(nodes: np.ndarray, weights: np.ndarray, position: np.ndarray) -> np.ndarray:
-    """Return the values (positions, nodes) of each Chebyshev node's polynomial at positions.
-
-    Parameters
-    ----------
-    nodes : array (n,)
-        Chebyshev nodes of the first kind, any scale. [any unit]
-    weights : array (n,)
-        Sizes of their barycentric weights; the signs alternate. [1]
-    position : array (m,)
-        Where the polynomials are wanted. [the unit of the nodes]
-
-    Returns
-    -------
-    array (m, n)
-        Rows of sum 1. [1]
-
-    Source
-    ------
-    Definition: barycentric form of Lagrange's polynomial (`berrut-trefethen-2004`).
-    """
-    gap = position[:, None] - nodes
-    gap[gap == 0] = 1e-300
-    terms = weights * (-1.0) ** np.arange(nodes.size) / gap
-    return terms / terms.sum(axis=1, keepdims=True)
-
-
-_RULES: dict[int, tuple[np.ndarray, np.ndarray]] = {}
-
-
-def gauss_legendre(count: int) -> tuple[np.ndarray, np.ndarray]:
-    """Return nodes and weights of the Gauss-Legendre rule on (0, 1), remembered.
-
-    Parameters
-    ----------
-    count : int
-        Number of nodes. [1], >= 1
-
-    Returns
-    -------
-    tuple of array (count,)
-        Nodes and weights. [1]
-
-    Raises
-    ------
-    ValueError
-        If count is below 1.
-
-    Source
-    ------
-    Definition: numpy's rule on (-1, 1), mapped.
-    """
-    if count < 1:
-        raise ValueError("count: must be >= 1")
-    if count not in _RULES:
-        x, w = np.polynomial.legendre.leggauss(count)
-        _RULES[count] = ((x + 1) / 2, w / 2)
-    return _RULES[count]
 
 
 def _path(

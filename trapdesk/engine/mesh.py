@@ -13,7 +13,7 @@ from functools import cached_property
 
 import numpy as np
 
-from .ground import barycentric, gauss_legendre
+from .quadrature import barycentric, gauss_legendre
 
 GAP = 0.05
 """Length of the mesh elements at the feed point, the trap and the end. [m]"""
@@ -207,7 +207,7 @@ class Samples:
 
         Source
         ------
-        Definition: see `ground.barycentric`.
+        Definition: see `quadrature.barycentric`.
         """
         values, begin = np.zeros((distance.size, self.count)), 0
         for i, (along, weights) in enumerate(self._local):

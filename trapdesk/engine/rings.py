@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .coil_limits import MOST_TURNS
-from .conductors import VACUUM_PERMEABILITY
+from .constants import MU0
 from .limits import positive
 from .special import elliptic
 
@@ -39,7 +39,7 @@ def _circles(near: FloatArray, far: FloatArray) -> FloatArray:
         weight *= 2.0
         if half_gap.max() * weight < 1e-16 * total.max():
             break
-    return (0.25 * np.pi * VACUUM_PERMEABILITY) * total / mean
+    return (0.25 * np.pi * MU0) * total / mean
 
 
 def _ring_blocks(diameter: float, pitch: float, wire_diameter: float, count: int, nodes: int) -> FloatArray:
@@ -68,11 +68,11 @@ def _own_block(smooth: FloatArray, r: FloatArray, radius: float, angle: FloatArr
     far2 = near2 + 4.0 * r * r[:, None]  # (r + r')^2 + (z - z')^2
     k, e = elliptic(near2 / far2)
     # factor of ln(chord^2) in the mutual inductance of two circles
-    log_part = VACUUM_PERMEABILITY * np.sqrt(far2) / (2.0 * np.pi) * ((1.0 - near2 / far2) * k - 2.0 * e)
+    log_part = MU0 * np.sqrt(far2) / (2.0 * np.pi) * ((1.0 - near2 / far2) * k - 2.0 * e)
     diagonal = np.arange(nodes)
     chord2[diagonal, diagonal] = 1.0
     rest = smooth - log_part * np.log(chord2)
-    rest[diagonal, diagonal] = VACUUM_PERMEABILITY * r * (np.log(8.0 * r / radius) - 2.0)
+    rest[diagonal, diagonal] = MU0 * r * (np.log(8.0 * r / radius) - 2.0)
     # weights that integrate ln(4 sin^2) times a trigonometric polynomial exactly, over those of a plain sum
     order = np.arange(1, nodes // 2)
     weight = -2.0 * (np.cos(np.outer(angle, order)) @ (1.0 / order))
@@ -235,6 +235,6 @@ def ring_sum(
         near = pitch * apart
         far = np.hypot(near, diameter)
         pairs = np.sum((count - apart) * _circles(near, far))
-        return float(VACUUM_PERMEABILITY * count * radius * own + 2.0 * pairs), 1.0
+        return float(MU0 * count * radius * own + 2.0 * pairs), 1.0
 
     return _between(turns, whole)[0]

@@ -7,8 +7,10 @@ from functools import cache
 
 import numpy as np
 
-from .ground import C0, ETA0, Ground, fresnel, gauss_legendre
+from .constants import C0, ETA0
+from .ground import Ground, fresnel
 from .mesh import Samples
+from .quadrature import gauss_legendre
 from .soils import GroundKind
 
 

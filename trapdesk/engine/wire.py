@@ -13,7 +13,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from .conductors import internal_impedance
-from .ground import C0, EPS0, MU0, Ground, reflected_kernels
+from .constants import C0, EPS0, MU0
+from .ground import Ground, reflected_kernels
 from .mesh import Pair, Plan, Samples, Side, SideMesh, nodes_of, plan_side
 from .ports import Ports
 from .sky import Sky

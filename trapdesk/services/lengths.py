@@ -10,7 +10,7 @@ import numpy as np
 
 from ..design.design import Design
 from ..design.fields import SOLVE
-from ..engine.ground import C0
+from ..engine.constants import C0
 from ..engine.ports import terminate
 from ..engine.soils import GroundKind
 from ..engine.wire import Plan, Wire, plan, solve_ports

@@ -12,7 +12,8 @@ from ..design.design import MODES, UNKNOWN, Band, Design
 from ..design.fields import SOLVE
 from ..design.rules import Breach, InvalidDesign, check
 from ..engine.conductors import coating_elastance
-from ..engine.ground import C0, Ground
+from ..engine.constants import C0
+from ..engine.ground import Ground
 from ..engine.metals import MATERIALS
 from ..engine.ports import Ports
 from ..engine.soils import SOILS, UNKNOWN_SOIL, UNKNOWN_SOIL_FROM, GroundKind

@@ -10,6 +10,7 @@ from types import MappingProxyType
 from typing import NoReturn
 
 from ..design.reading_kinds import GROUPS, KINDS, Doubt, Interval, Kind, Option, Reading
+from ..engine.constants import C0
 from ..errors import BadInput, Fault
 from . import units
 from .unit_names import Dimension
@@ -165,8 +166,6 @@ def _word(where: str, value: str, words: Iterable[str]) -> str:
     _refuse(where, "unknown_choice", value, f"did you mean {near[0]}?" if near else "", ", ".join(words))
 
 
-LIGHT = 299_792_458.0
-"""Speed of light. [m/s]"""
 LEAD_INDUCTANCE = 0.8e-6
 """Of a straight lead, per length. Common practice, no source: 0.6 to 1 nH per mm. [H/m]"""
 
@@ -184,7 +183,7 @@ def _number(where: str, text: str, option: Option) -> float:
             _refuse(where, "negative", text, "from 0 up")
         per_metre = 1.0
         if name == "length":
-            per_metre = LEAD_INDUCTANCE if "inductance" in option.dimensions else 1.0 / LIGHT
+            per_metre = LEAD_INDUCTANCE if "inductance" in option.dimensions else 1.0 / C0
         return value * per_metre
     assert refused is not None
     raise refused
