@@ -9,7 +9,8 @@ from tests.desk.screens import go_to, opened, pressed, screen, settled, text, ty
 from trapdesk.design.rules import check
 from trapdesk.faces.desk import config
 from trapdesk.faces.desk.config import Config
-from trapdesk.faces.desk.filing import FIRST_RUN, begun
+from trapdesk.faces.desk.filing import FIRST_RUN
+from trapdesk.faces.desk.fresh import begun
 from trapdesk.faces.desk.journal import Journal
 from trapdesk.faces.desk.terminal import look
 from trapdesk.store import store

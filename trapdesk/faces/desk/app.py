@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 import os
 import sys
 from collections.abc import Callable
@@ -88,7 +89,6 @@ class Desk(App[None]):
         yield Heading(id="heading")
         yield Middle(self.session, self.drawn, id="middle")
         yield Foot(id="foot")
-        yield Lines(id="small")
 
     def on_mount(self) -> None:
         """Paint, then begin to solve and to journal."""
@@ -103,6 +103,8 @@ class Desk(App[None]):
             pane.refresh()
 
     def _begin(self) -> None:
+        gc.freeze()
+        gc.enable()
         self.solve()
         self._filing.begin()
         if self._trouble:
@@ -192,9 +194,19 @@ class Desk(App[None]):
         width, height = event.size
         self.thin.forget()
         self.middle.arranged = arrangement(width, height)
-        text = f"{width}x{height} is too small: the desk needs {LEAST_WIDTH}x{LEAST_HEIGHT}"
-        self.query_one("#small", Lines).show([[(padded(text, width), "text")]])
+        self.middle.furnish()
+        if self.middle.arranged.small:
+            self._say_small(width, height)
         self.repaint()
+
+    def _say_small(self, width: int, height: int) -> None:
+        """Say in the one line there is that nothing else fits."""
+        found = self.query("#small").results(Lines)
+        small = next(iter(found), None) or Lines(id="small")
+        if not small.is_attached:
+            self.mount(small)
+        text = f"{width}x{height} is too small: the desk needs {LEAST_WIDTH}x{LEAST_HEIGHT}"
+        small.show([[(padded(text, width), "text")]])
 
     def on_lines_resized(self) -> None:
         """Fit the panes to their new sizes, once for all of them."""

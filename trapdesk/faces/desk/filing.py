@@ -12,7 +12,8 @@ from ...errors import FileFault, TrapdeskError, visible
 from ...store import store
 from ...store.store import Document
 from . import journal
-from .config import Config, filled
+from .config import Config
+from .fresh import begun
 from .journal import Journal, Left
 from .session import Session
 
@@ -160,11 +161,9 @@ class Filing:
         self._begin_with(document, f"{visible(document.name, 50)} is open")
 
     def new(self) -> None:
-        """Ask for the preset to begin with."""
-        presets = store.presets()
-        self._unless_unsaved(
-            lambda: self._asker.ask(f"new from ({', '.join(presets)})", self._new, store.FIRST_PRESET)
-        )
+        """Ask for the bands, or the preset, to begin with."""
+        question = f"new: bands such as 40 20, or one of {', '.join(store.presets())}"
+        self._unless_unsaved(lambda: self._asker.ask(question, self._new, store.FIRST_PRESET))
 
     def _new(self, name: str) -> None:
         if not name:
@@ -175,7 +174,7 @@ class Filing:
         except TrapdeskError as error:
             self._asker.say(one_line(error), refused=True)
             return
-        self._begin_with(document, f"a new design from {visible(document.name, 40)}")
+        self._begin_with(document, f"a new design, {visible(document.name, 40)}; w gives it a file")
 
     def _begin_with(self, document: Document, words: str) -> None:
         self._session.open(document)
@@ -315,10 +314,3 @@ class Filing:
 
 def _print_of(text: str) -> bytes:
     return hashlib.sha256(text.encode("utf-8", "surrogatepass")).digest()
-
-
-def begun(name: str, config: Config) -> Document:
-    """Return a new design from a preset, with the band edges of the region that was chosen."""
-    design, text = store.preset(name)
-    design = filled(design, config)
-    return Document(design=design, text=store.to_text(design, text), name=name.removesuffix(".toml"))

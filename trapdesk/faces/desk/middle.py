@@ -36,14 +36,16 @@ class Middle(Container):
         self._hold = False
 
     def compose(self) -> ComposeResult:
-        """Lay the panes out; the style sheet hides those a size has no room for."""
+        """Lay out the panes that every size has; `furnish` adds those of the present one."""
         yield DrawersPane(self.session, id="drawers")
-        with Container(id="centre"):
-            yield ViewPane(id="answer")
-            yield ViewPane(id="below")
-        with Container(id="right"):
-            yield ViewPane(id="side")
-            yield ViewPane(id="chances")
+        yield Container(ViewPane(id="answer"), id="centre")
+
+    def furnish(self) -> None:
+        """Add the panes the arrangement has room for; the style sheet hides those a later one has not."""
+        if self.arranged.tall and not self.query("#below"):
+            self.query_one("#centre").mount(ViewPane(id="below"))
+        if self.arranged.wide and not self.query("#right"):
+            self.mount(Container(ViewPane(id="side"), ViewPane(id="chances"), id="right"))
 
     def _pane(self, name: str) -> ViewPane:
         return self.query_one(f"#{name}", ViewPane)
@@ -91,8 +93,8 @@ class Middle(Container):
         self.screen.set_class(self._covering and not arranged.thin, "cover")
         drawers = self._drawers
         drawers.repaint()
-        for name in ("answer", "below", "side", "chances"):
-            self._pane(name).edge = "" if arranged.thin or self._covering else self._drawn.upright
+        for pane in self.query(ViewPane):
+            pane.edge = "" if arranged.thin or self._covering else self._drawn.upright
         self.session.aside.want(self.app, dict.fromkeys((TOLERANCE, *self.shown.jobs)), self._found)
         given = (self.session, drawers.row, self._drawn)
         if arranged.tall and not self._broad:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 import os
 import sys
 
@@ -10,17 +11,19 @@ from ...errors import TrapdeskError, visible
 
 def run(argument: str | None) -> int:
     """Open the desk on a file or preset, the first preset without one, and return the exit code."""
+    # All that is made up to the first paint stays: looking for garbage among it only delays that.
+    gc.disable()
     terminal = sys.stdin.isatty() and sys.stdout.isatty()
     said = _sign(argument) if terminal else ""
     from ...store import store
-    from . import config, filing, journal
+    from . import config, fresh, journal
     from .app import Desk
     from .session import Session
     from .terminal import as_started, look
 
     chosen, trouble = config.load(config.place(os.environ))
     try:
-        document = store.find(argument) if argument is not None else filing.begun(store.FIRST_PRESET, chosen)
+        document = store.find(argument) if argument is not None else fresh.begun(store.FIRST_PRESET, chosen)
     except TrapdeskError as error:
         _wipe(said)
         print(error, file=sys.stderr)

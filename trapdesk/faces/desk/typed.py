@@ -12,7 +12,10 @@ LONGEST = 200
 
 
 class Typed:
-    """Text with a caret. Control characters never get in."""
+    """Text with a caret. Control characters never get in.
+
+    A `fresh` text is one to start from: what is typed first takes its place, what moves the caret keeps it.
+    """
 
     def __init__(self, text: str = "", *, fresh: bool = False) -> None:
         self.text = "".join(character for character in text if character.isprintable())[:LONGEST]
@@ -65,6 +68,8 @@ class Typed:
         """Return the text with its caret in so many cells, scrolled so that the caret is in sight."""
         width = max(2, width)
         text, caret = self.text, self.caret
+        if self.fresh and text and cell_len(text) < width:
+            return [(text, "cursor"), (" " * (width - cell_len(text)), "edit")]
         start = 0
         while cell_len(text[start:caret]) > width - 1:
             start += 1

@@ -35,6 +35,8 @@ ANSWERING = (("Enter", "answers"), ("Esc", "leaves it"))
 PLOTTING = (("left right", "readout"), ("z", "zoom"))
 """What the keys also do while a plot is in sight."""
 SOLVE_ROOM = len("s solve it")
+_LEAST_ANSWER = 16
+"""Cells to type in, without which a question stands above its answer."""
 
 
 class Heading(Lines):
@@ -56,7 +58,7 @@ class Heading(Lines):
         text = padded(title + basis + star, room)
         lines: list[Line] = [[(text, "head"), (f" {state}" if state else "", "watch")]]
         below = [about[key].value for key in ("site", "station") if key in about]
-        lines += [[(padded(text, width), "text")] for text in below]
+        lines += [[(as_fits(text, width), "text")] for text in below]
         self.show(lines[:height], stale=False)
 
 
@@ -94,7 +96,8 @@ class Foot(Lines):
         `live` is told the text whenever it changes.
         """
         self._asking, self._answer, self._live = question, answer, live
-        self._typed = None if text is None else Typed(text)
+        # A beginning that waits for the rest of it stays when typing goes on.
+        self._typed = None if text is None else Typed(text, fresh=not text.endswith("="))
 
     @property
     def asking(self) -> bool:
@@ -136,7 +139,7 @@ class Foot(Lines):
         chances = self._chances(session, width) if room >= 3 else []
         # The worst finding always has a line; what is left goes to its cure, then to the next move.
         share = max(1, room - len(chances) - (1 if height > 3 else 0))
-        worst = _cut(self._worst(session, width), min(share, 2), width)
+        worst = _cut(self._worst(session, width), min(share, 2, room), width)
         left = room - len(worst) - len(chances)
         following = _cut(self._next(session, width), left, width) if left > 0 else []
         blank: list[Line] = [[] for _ in range(left - len(following))]
@@ -177,8 +180,11 @@ class Foot(Lines):
         if self._asking:
             if self._typed is None:
                 return _cut([[(p, "watch")] for p in wrapped(self._asking, width)], most, width)
-            question = padded(self._asking, min(len(self._asking), max(0, width - 12))) + " "
-            return [[(question, "watch"), *self._typed.pieces(width - len(question))]]
+            if len(self._asking) + 1 + _LEAST_ANSWER <= width:
+                question = self._asking + " "
+                return [[(question, "watch"), *self._typed.pieces(width - len(question))]]
+            above = _cut([[(p, "watch")] for p in wrapped(self._asking, width)], most, width)
+            return [*above, self._typed.pieces(width)]
         if self.note:
             style = "stop" if self.refused else "found"
             text = f"! {self.note}" if self.refused else self.note
@@ -189,6 +195,16 @@ class Foot(Lines):
             return [[(padded(text, width).rstrip(), "quiet")]]
         text = "one of " + ", ".join(row.words) + ". " + row.known.help if row.words else row.known.help
         return _cut([[(piece, "quiet")] for piece in wrapped(text, width)], 1, width)
+
+
+def as_fits(text: str, width: int) -> str:
+    """Return what is told between commas, as much of it as fits; dots stand for the rest."""
+    if len(text) <= width:
+        return padded(text, width)
+    pieces = text.split(", ")
+    while len(pieces) > 1 and len(", ".join(pieces)) + 5 > width:
+        pieces.pop()
+    return padded(f"{', '.join(pieces)}, ...", width)
 
 
 def _summary(figures: Figures) -> dict[str, presenter.Row]:
@@ -211,7 +227,10 @@ def keys_line(keys: tuple[tuple[str, str], ...], row: FormRow | None, busy: bool
     solve = ""
     if not busy and row is not None:
         does = "edit     " if not row.words else "add it   " if row.value == NONE else "next word"
-        keys = (("Enter", does), *keys[1:])
+        of_list = (
+            (("+-", "one more, one less"),) if row.counts else (("Del", "take it out"),) if row.listed else ()
+        )
+        keys = (("Enter", "how many " if row.counts else does), *of_list, *keys[1:])
         solve = f"s {'set it' if row.found and not row.unset else 'solve it'}" if row.solvable else ""
     room = width if busy else width - SOLVE_ROOM
     line: list[tuple[str, str]] = []

@@ -56,6 +56,15 @@ def next_line(session: Session) -> str:
     return " ".join(" ".join([first, *rest]).split())
 
 
+def _verdict_first(texts: list[str]) -> list[str]:
+    """Return the lines with what to do moved up, right below the title: it is what is looked for."""
+    at = next((place for place, text in enumerate(texts) if text.startswith(_VERDICTS)), 0)
+    if not at:
+        return texts
+    end = next((place for place in range(at, len(texts)) if not texts[place].strip()), len(texts))
+    return [*texts[:1], "", *texts[at:end], *texts[1:at], *texts[end + 1 :]]
+
+
 _VERDICTS = ("MOVE ", "STOP ", "TRAPS ", "LEAVE IT ", "HANG IT ", "SOMETHING IS WRONG ", "CANNOT TELL ")
 _HANGING = " " * 6
 
@@ -68,6 +77,7 @@ def next_lines(sight: Sight) -> list[Line]:
         lines += [[(piece, "found")] for piece in wrapped(visible(text, 200), sight.width, 2)]
     lines += [[]] if lines else []
     texts = next_told(session)
+    texts = _verdict_first(texts)
     return lines + (
         text_lines(texts, sight.width, sight.left) if texts else waiting_lines(session, NEXT, sight.width)
     )

@@ -1,0 +1,65 @@
+"""New designs: from a preset, or for bands that were only named."""
+
+from __future__ import annotations
+
+import math
+import re
+from dataclasses import replace
+
+from ...design.capacitor_kinds import GivenCapacitor
+from ...design.design import Antenna, Band, Bands, Design, Lengths
+from ...design.fields import SOLVE
+from ...design.parts import Trap
+from ...errors import BadInput, Fault
+from ...store import store
+from ...store.store import Document
+from .config import EDGES, MEGA, Config, filled
+
+REACTANCE = 250.0
+"""Reactance of the capacitor a new trap begins with. Common practice, no source. [ohm]"""
+_E12 = (1.0, 1.2, 1.5, 1.8, 2.2, 2.7, 3.3, 3.9, 4.7, 5.6, 6.8, 8.2, 10.0)
+_BANDS = re.compile(r"\s*(\d+)\s*m?(?:\s*[ ,/+-]\s*(\d+)\s*m?)?\s*", re.IGNORECASE)
+USUAL_REGION = 1
+
+
+def begun(name: str, config: Config) -> Document:
+    """Return a new design for bands such as "40 20", else from a preset; BadInput or FileFault for neither.
+
+    Band edges are those of the region that was chosen.
+    """
+    if found := _BANDS.fullmatch(name):
+        names = [f"{int(number)} m" for number in found.groups() if number]
+        return _for_bands(names, config.region or USUAL_REGION)
+    design, text = store.preset(name)
+    design = filled(design, config)
+    return Document(design=design, text=store.to_text(design, text), name=name.removesuffix(".toml"))
+
+
+def _for_bands(names: list[str], region: int) -> Document:
+    unknown = [name for name in names if name not in EDGES]
+    if unknown or len(set(names)) < len(names):
+        known = ", ".join(name.removesuffix(" m") for name in EDGES)
+        limit = f"known are {known}"
+        raise BadInput(Fault("bands", "not_one_or_two_bands", " ".join(names), limit, "for example 40 20"))
+    bands = sorted((_band(name, region) for name in names), key=lambda band: band.low)
+    short = "/".join(name.removesuffix(" m") for name in (band.name for band in bands))
+    design = Design(
+        title=f"{short} m, new",
+        bands=Bands(lower=bands[0], upper=bands[1] if len(bands) > 1 else None),
+        antenna=Antenna(lengths=Lengths(end=SOLVE), trap=_trap(bands[1])) if len(bands) > 1 else Antenna(),
+    )
+    return Document(design=design, text=store.to_text(design), name=short.replace("/", "-"))
+
+
+def _band(name: str, region: int) -> Band:
+    low, high = (float(round(edge * MEGA)) for edge in EDGES[name][region])
+    return Band(name=name, low=low, high=high)
+
+
+def _trap(upper: Band) -> Trap:
+    """Return a trap at the lower edge of a band, its capacitor a value that is easy to find."""
+    farads = 1.0 / (math.tau * upper.low * REACTANCE)
+    decade = 10.0 ** math.floor(math.log10(farads))
+    size = min(_E12, key=lambda step: abs(math.log(step * decade / farads))) * decade
+    capacitor = GivenCapacitor(capacitance=float(f"{size:.3g}"))
+    return replace(Trap(), resonance=upper.low, capacitor=capacitor)
