@@ -24,6 +24,7 @@ from trapdesk.services.causes import Regression, trap_first_order
 from trapdesk.services.ensemble import Ensemble, swr_of
 from trapdesk.services.response import swr
 from trapdesk.services.solve import solve
+from trapdesk.services.stages import run_stage
 from trapdesk.services.tolerance import allowance_of, quick_yield, tolerance, yield_of
 from trapdesk.services.trial_traps import STAGES
 from trapdesk.store import store
@@ -48,7 +49,7 @@ def vee():
 
 def outcome_of(ensemble, stage, draws, count):
     """Return joined outcomes of one stage by band."""
-    return service.run_stage(ensemble, (stage,), draws, count, None)[0][stage.name]
+    return run_stage(ensemble, (stage,), draws, count, None)[0][stage.name]
 
 
 # What a trial does, against a full solve of its wire.
@@ -410,7 +411,15 @@ def test_a_number_of_trials_that_tells_nothing_is_refused(vee, trials):
 
 def test_two_trials_are_numbers_too(vee):
     found = tolerance(vee.figures, trials=2, ensemble=vee)
-    assert found.trials == 2
+    assert found.trials == 2 and not found.tells_causes
+    # What two trials cannot tell comes from more of them: the allowance, and the worst case.
+    many = tolerance(vee.figures, trials=2000, ensemble=vee)
+    for name, allowance in found.allowances.items():
+        assert allowance.length == pytest.approx(many.allowances[name].length, abs=0.02)
+    for role, band in found.stages["as_cut"].bands.items():
+        dip = many.stages["as_cut"].bands[role].results["dip"]
+        assert band.results["dip"].least == pytest.approx(dip.least, rel=2e-3)
+        assert band.results["dip"].most == pytest.approx(dip.most, rel=2e-3)
     result = found.stages["aimed"].bands["lower"].results["worst_swr"]
     assert math.isfinite(result.mean) and result.causes is None
 

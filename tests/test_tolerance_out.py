@@ -18,7 +18,7 @@ from trapdesk.services.advice import advise
 from trapdesk.services.beliefs import CAUSES, QUANTITIES
 from trapdesk.services.ensemble import Ensemble
 from trapdesk.services.solve import solve
-from trapdesk.services.tolerance import Yield, tolerance
+from trapdesk.services.tolerance import Yield, tolerance, yield_of
 from trapdesk.services.trial_traps import STAGES
 from trapdesk.store import store
 
@@ -34,6 +34,31 @@ NOT_A_NUMBER = re.compile(r"\bnan\b", re.IGNORECASE)
 def test_fits_a_terminal():
     assert max(map(len, TEXT)) <= 79
     assert all(line.isascii() and line == line.rstrip() for line in TEXT)
+
+
+@pytest.mark.parametrize("name", store.presets())
+@pytest.mark.parametrize("trials", [2, 100])
+def test_few_trials_of_any_preset_read_well(name, trials):
+    figures = solve(store.preset(name)[0])
+    ensemble = Ensemble(figures)
+    text = tolerance_out.lines(
+        tolerance(figures, trials=trials, ensemble=ensemble), advise(ensemble, trials=2)
+    )
+    assert max(map(len, text)) <= 79
+    # A column never touches the one before it.
+    assert not [line for line in text if re.search(r"[)%][0-9>]", line)]
+    assert text == [line.rstrip() for line in text]
+
+
+@pytest.mark.parametrize("trials", [2, 10, 400, 1000, 10_000, 10_000_000])
+def test_no_share_of_any_run_fills_its_column(trials):
+    for passed in {0, 1, 3, trials // 10, trials // 2, trials - 3, trials - 1, trials}:
+        if 0 <= passed <= trials:
+            cell = tolerance_out.chance(yield_of(passed, trials)).replace(" %", "")
+            share, low, high = (float(text) for text in re.split(r"[ (-]+", cell.rstrip(")")))
+            assert len(cell) <= 19 and low <= share <= high
+            # All and none only where they are.
+            assert (share == 100) == (passed == trials) and (share == 0) == (passed == 0)
 
 
 def test_bands_go_by_their_names():
@@ -71,6 +96,9 @@ def test_a_share_is_never_all_when_some_are_missing(share, text):
 
 
 def test_an_interval_near_an_end_is_finer():
+    few = Yield(share=0.0, low=0.0, high=0.842, passed=0, trials=2)
+    assert tolerance_out.chance(few) == "0 % (0-85)"  # outward: the interval is never told narrower
+    assert tolerance_out.chance(yield_of(9998, 10_000)) == "99.98 % (99.93-99.99)"
     assert tolerance_out.chance(Yield(share=0.5, low=0.47, high=0.53, passed=5, trials=10)) == "50 % (47-53)"
     assert (
         tolerance_out.chance(Yield(share=1.0, low=0.9963, high=1.0, passed=1, trials=1)) == "100 % (99.6-100)"
@@ -99,7 +127,8 @@ def test_all_off_is_said():
 
 def test_few_trials_say_that_they_are_few():
     text = " ".join(tolerance_out.lines(tolerance(FIGURES, trials=2, ensemble=ENSEMBLE)))
-    assert "Too few trials" in text and not NOT_A_NUMBER.search(text)
+    assert text.count("Too few trials") == 1 and not NOT_A_NUMBER.search(text)
+    assert "does not scatter" not in text
 
 
 def test_json_is_si_and_whole():

@@ -1,7 +1,7 @@
 """Traps and what they close as numerators over denominators, none of which resonates.
 
-Where an impedance runs through a resonance neither part of its fraction does, so both are told everywhere in a
-band by a few frequencies of it; see `resonator.impedance` and `ports.terminate` for the quotients themselves.
+Where an impedance runs through a resonance neither part of its fraction does, so a few frequencies of a band
+tell both everywhere in it; see `resonator.impedance` and `ports.terminate` for the quotients themselves.
 """
 
 from __future__ import annotations

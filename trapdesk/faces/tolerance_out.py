@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+import math
+from collections.abc import Callable, Iterator, Mapping
 
 import numpy as np
 
@@ -88,20 +89,24 @@ def percent(share: float) -> str:
 
 
 def chance(within: Yield) -> str:
-    """Return a yield with its 95 % interval."""
+    """Return a yield with its 95 % interval, as fine as that is narrow."""
     low, high = 100 * within.low, 100 * within.high
-    digits = 0 if high - low >= 1 and 2 <= low and high <= 98 else 1
-    if high < 0.1 or low > 99.9:
+    wide = high - low
+    digits = 0 if wide >= 10 or (wide >= 1 and 2 <= low and high <= 98) else 1
+    if digits and (high < 0.1 or low > 99.9 or 0 < low < 0.05 or 99.95 < high < 100):
         digits = 2
-    return f"{percent(within.share)} ({_end(low, digits)}-{_end(high, digits)})"
+    share = percent(within.share)
+    if digits == 2 and 0 < within.share < 1:
+        share = f"{min(max(100 * within.share, 0.01), 99.99):.2f} %"
+    return f"{share} ({_end(low, digits, math.floor)}-{_end(high, digits, math.ceil)})"
 
 
-def _end(value: float, digits: int) -> str:
-    """Return an end of an interval; nothing and all only where they are meant."""
+def _end(value: float, digits: int, outward: Callable[[float], int]) -> str:
+    """Return an end of an interval, rounded outward; nothing and all only where they are meant."""
     if value in (0.0, 100.0):
         return f"{value:.0f}"
     step = 10.0**-digits
-    return f"{min(max(value, 0.0), 100.0 - step) if value > 99 else value:.{digits}f}"
+    return f"{min(outward(round(value / step, 6)) * step, 100.0 - step):.{digits}f}"
 
 
 def trials_line(found: Tolerance) -> str:
@@ -163,8 +168,10 @@ def yields(found: Tolerance) -> list[str]:
     all_bands = "" if len(bands) == 1 else f"{'both':>21}"
     out += [f"  {'':<14}{all_bands}{names}"]
     for name, stage in found.stages.items():
-        cells = [] if len(bands) == 1 else [chance(stage.within)]
-        cells += [chance(band.within) for band in stage.bands.values()]
+        shares = [] if len(bands) == 1 else [stage.within]
+        shares += [band.within for band in stage.bands.values()]
+        # They are so many of 100: without the sign there is room between them.
+        cells = (chance(share).replace(" %", "") for share in shares)
         out += [f"  {STAGES[name]:<14}" + "".join(f"{cell:>21}" for cell in cells)]
     out += folded("  ", "In brackets: between these it lies 95 times of 100; more trials narrow it.")
     for name, text in STAGE_HELP.items():
@@ -261,18 +268,14 @@ def causes(found: Tolerance) -> list[str]:
     out = ["What it comes from: share of the scatter by cause"]
     if not found.varying:
         return [*out, "  nothing varies: every cause is switched off, all antennas are the computed one"]
-    for name in ("as_cut", "aimed"):
-        stage = found.stages[name]
-        for band in stage.bands.values():
+    if not found.tells_causes:
+        out += folded("  ", "Too few trials to tell causes apart; some hundred are needed.")
+    for name in ("as_cut", "aimed") if found.tells_causes else ():
+        out += [f"  {STAGES[name]}"]
+        for band in found.stages[name].bands.values():
             for key, label in (("dip", "dip"), ("worst_swr", "worst SWR")):
                 told = shares_text(band.results[key].causes)
-                out += folded(
-                    f"  {STAGES[name] + ',':<16}{visible(band.name, 12) + ',':<6}{label:<10} ", told
-                )
-    if found.trials < found.wanted_trials or all(
-        band.results["dip"].causes is None for band in found.stages["as_cut"].bands.values()
-    ):
-        out += folded("  ", "Too few trials to tell causes apart; some hundred are needed.")
+                out += folded(f"    {f'{visible(band.name, 12)}, {label}':<16} ", told)
     check = found.check
     if check.trap is not None:
         first, seen = check.trap
@@ -322,7 +325,7 @@ def wire_name(allowance: Allowance, alone: bool) -> str:
 def allowance_text(found: Tolerance, allowance: Allowance) -> str:
     """Return one wire's allowance, why, and whether the design's own reserve does."""
     name = wire_name(allowance, len(found.allowances) == 1)
-    short = percent(allowance.reserve_risk)
+    short = percent(allowance.reserve_risk) if allowance.reserve_risk else "none"
     return (
         f"{name}: {centimetres(allowance.length)} longer, and the chance of having to add wire stays below"
         f" {percent(found.risk)}; 5 to 95 of 100 end {_signed(allowance.shortest)} to"
@@ -332,6 +335,8 @@ def allowance_text(found: Tolerance, allowance: Allowance) -> str:
 
 
 def _signed(length: float) -> str:
+    if abs(length) < 5e-4:
+        return "at the mark"
     return f"{centimetres(length)} {'shorter' if length < 0 else 'longer'}"
 
 

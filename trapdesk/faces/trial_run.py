@@ -78,7 +78,8 @@ def run(file: str, trials: str, seed: str, for_yield: str | None) -> tuple[Any, 
     watch = _Watch(count)
     with _stoppable(watch):
         found = service.tolerance(figures, trials=count, seed=start, progress=watch, ensemble=ensemble)
-    helps = advice.advise(ensemble, trials=min(found.trials, advice.TRIALS), seed=start)
+    few = max(min(found.trials, advice.TRIALS), advice.FEWEST)
+    helps = advice.advise(ensemble, trials=few, seed=start)
     chosen = None
     if for_yield is not None:
         chosen = advice.for_yield(figures, stage=for_yield, seed=start)

@@ -67,9 +67,9 @@ def reflection_of(swr: float) -> float:
 class _Grid:
     """A band's frequencies, where among them the wanted part and the aim are, and what stands there.
 
-    `aim_wanted` is the aim's place in the wanted part, `watts` (wanted, 1) what arrives at the feed point over
-    that part of the antenna as designed; `setting` is how a tuner stands. `table` and `circuit` are at the
-    nodes, and `weights` (frequencies, nodes) lead from there to all frequencies.
+    `aim_wanted` is the aim's place in the wanted part, `watts` (wanted, 1) what arrives at the feed point
+    over that part of the antenna as designed; `setting` is how a tuner stands. `table` and `circuit` are at
+    the nodes, and `weights` (frequencies, nodes) lead from there to all frequencies.
     """
 
     frequency: np.ndarray

@@ -15,7 +15,8 @@ from .causes import Regression, Shares, corners, one_at_a_time, trap_first_order
 from .ensemble import Ensemble, Outcome, reflection_of, swr_of
 from .figures import Figures
 from .solve import solve
-from .trial_traps import STAGES, Stage, Traps
+from .stages import run_stage
+from .trial_traps import STAGES, Stage
 
 TRIALS, SEED = 10_000, 1
 FEWEST, MOST = 2, 10_000_000
@@ -25,8 +26,9 @@ KEPT = 10_000
 """Trials whose results are kept for scatter; all of them count for the yield."""
 CURVES = 500
 """Trials whose whole curve is kept."""
-PILOT = 4000
-"""Trials by which the cutting allowance is set, and shares of variance are told."""
+PILOT, LEAST_PILOT = 4000, 400
+"""Trials by which the cutting allowance is set and shares of variance are told; the allowance and the worst
+case take the least of them even where fewer are asked for."""
 TAILS = (0.05, 0.5, 0.95)
 EDGE = 0.001
 """Share of trials on either side that would leave the rest of a histogram in one bin."""
@@ -140,6 +142,7 @@ class Tolerance:
     allowances: Mapping[str, Allowance]
     risk: float
     check: Check
+    tells_causes: bool
 
     @property
     def stopped(self) -> bool:
@@ -183,57 +186,6 @@ def allowance_of(needs: Mapping[str, np.ndarray], risk: float) -> dict[str, floa
         short = (values > lengths(each)[:, None]).any(axis=0).mean()
         low, high = (each, high) if short <= risk else (low, each)
     return {name: max(0.0, float(length)) for name, length in zip(names, lengths(low), strict=True)}
-
-
-def run_stage(
-    ensemble: Ensemble,
-    stages: tuple[Stage, ...],
-    draws: Mapping[str, np.ndarray],
-    count: int,
-    most: Mapping[str, float] | None,
-    free: Mapping[str, np.ndarray] | None = None,
-    cut: Mapping[str, float] | None = None,
-) -> tuple[dict[str, dict[str, Outcome]], dict[str, np.ndarray]]:
-    """Return what every band does at each stage, and which trials no wire brought to aim, by stage.
-
-    Stages that share their wires share their ports. `free` is what brings tuned traps to the aims,
-    `cut` how much longer than computed the wires were cut.
-    """
-    groups: list[tuple[list[Stage], Mapping[str, np.ndarray] | None]] = []
-    as_cut = [stage for stage in stages if not stage.aimed]
-    longer = None if cut is None else {name: np.full(count, extra) for name, extra in cut.items()}
-    groups += [(as_cut, longer)] if as_cut else []
-    unreached = {stage.name: np.zeros(count, bool) for stage in stages}
-    for tuned in (True, False):
-        aimed = [stage for stage in stages if stage.aimed and stage.tuned is tuned]
-        if aimed:
-            dry = next((stage for stage in aimed if not stage.wet), aimed[0])
-            known = free if dry == STAGES[2] else None
-            change = ensemble.to_aim(draws, _dry(dry), count, most, known)
-            lost = np.any([np.isnan(value) for value in change.values()], axis=0)
-            for stage in aimed:
-                unreached[stage.name] = lost
-            groups += [(aimed, {name: np.nan_to_num(value) for name, value in change.items()})]
-    found: dict[str, dict[str, Outcome]] = {}
-    for members, change in groups:
-        features = ensemble.features(draws, count, change)
-        traps: list[Traps | None] = [ensemble.traps(draws, stage, count) for stage in members]
-        for role in ensemble.roles:
-            for stage, pieces in zip(members, ensemble.outcome(role, features, traps), strict=True):
-                found.setdefault(stage.name, {})[role] = _joined(pieces)
-    return found, unreached
-
-
-def _dry(stage: Stage) -> Stage:
-    """Return the stage on the day the wires are adjusted: dry, and as warm as it then is."""
-    return Stage(
-        name=stage.name, tuned=stage.tuned, sealed=stage.sealed, sealed_first=stage.sealed_first, aimed=True
-    )
-
-
-def _joined(pieces: list[Outcome]) -> Outcome:
-    names = ("dip", "dip_reflection", "aim", "worst", "volts", "loss", "reflection")
-    return Outcome(**{n: np.concatenate([getattr(piece, n) for piece in pieces]) for n in names})
 
 
 def pilot_change(ensemble: Ensemble, draws: Mapping[str, np.ndarray], count: int) -> dict[str, np.ndarray]:
@@ -283,7 +235,7 @@ def tolerance(
         raise ValueError(f"trials: must be {FEWEST} to {MOST}")
     ensemble = Ensemble(figures) if ensemble is None else ensemble
     risk = figures.design.doubts.risk
-    pilot = min(trials, PILOT)
+    pilot = min(max(trials, LEAST_PILOT), PILOT)
     early = ensemble.draws(seed, 0, pilot)
     first = pilot_change(ensemble, early, pilot)
     allowed = allowances(ensemble, first, risk)
@@ -301,16 +253,18 @@ def tolerance(
             break
     pilot = min(done, PILOT)
     draws = part_of(early, 0, pilot)
+    regression = Regression(ensemble.varying, draws, pilot)
     return Tolerance(
         design=figures.design,
         seed=seed,
         trials=done,
         wanted_trials=trials,
         varying=ensemble.varying,
-        stages=gathered.stages(draws, pilot, done, most),
+        stages=gathered.stages(regression, early, pilot, done, most),
         allowances=allowed,
         risk=risk,
         check=_check(ensemble, draws, pilot, gathered),
+        tells_causes=regression.enough,
     )
 
 
@@ -350,12 +304,16 @@ class _Gathered:
             self.unreached[i] += int(unreached[stage.name].sum())
 
     def stages(
-        self, draws: Mapping[str, np.ndarray], pilot: int, done: int, most: Mapping[str, float]
+        self,
+        regression: Regression,
+        draws: Mapping[str, np.ndarray],
+        pilot: int,
+        done: int,
+        most: Mapping[str, float],
     ) -> dict[str, StageScatter]:
         """Return everything gathered, with causes by the first trials."""
         kept = min(self.kept, done)
         ensemble = self.ensemble
-        regression = Regression(ensemble.varying, draws, pilot)
         every = [self.values[i, :, :, :pilot].reshape(-1, pilot).T for i in range(len(STAGES))]
         extremes = self._ends(draws, every, most)
         found = {}
@@ -394,6 +352,13 @@ class _Gathered:
         """Return the least and most of each result with every doubt at its end at once, by stage."""
         if not self.ensemble.varying:
             return {s.name: (r[0], r[0]) for s, r in zip(STAGES, results, strict=True)}
+        pilot = results[0].shape[0]
+        if pilot < LEAST_PILOT:
+            # Too few tell which way a result goes with each doubt: more are made for that alone.
+            pilot = LEAST_PILOT
+            outcomes, _ = run_stage(self.ensemble, STAGES, part_of(draws, 0, pilot), pilot, most)
+            results = [self._results(outcomes[stage.name]).T for stage in STAGES]
+        draws = part_of(draws, 0, pilot)
         found = {}
         for aimed in (False, True):
             members = [i for i, stage in enumerate(STAGES) if stage.aimed is aimed]
@@ -404,9 +369,12 @@ class _Gathered:
             stages = tuple(STAGES[i] for i in members)
             outcomes, _ = run_stage(self.ensemble, stages, trials, count, most)
             for stage in stages:
-                values = np.concatenate([_values(outcomes[stage.name][role]) for role in self.ensemble.roles])
+                values = self._results(outcomes[stage.name])
                 found[stage.name] = values.min(axis=1), values.max(axis=1)
         return found
+
+    def _results(self, outcomes: Mapping[str, Outcome]) -> np.ndarray:
+        return np.concatenate([_values(outcomes[role]) for role in self.ensemble.roles])
 
     def _curve(self, i: int, j: int, frequency: np.ndarray, done: int) -> CurveBand:
         reflection = quantiles(self.curves[i, j, :, :done], TAILS)
@@ -474,17 +442,19 @@ def quick_yield(
 
 def stage_yield(ensemble: Ensemble, stage: Stage, trials: int, seed: int) -> Yield:
     """Return the yield of an ensemble at a stage of any kind."""
-    most = None
+    most = change = None
+    pilot = min(max(trials, LEAST_PILOT), PILOT)
     if stage.aimed:
-        count = min(trials, PILOT)
-        change = pilot_change(ensemble, ensemble.draws(seed, 0, count), count)
+        change = pilot_change(ensemble, ensemble.draws(seed, 0, pilot), pilot)
         allowed = allowances(ensemble, change, ensemble.design.doubts.risk)
         most = {name: allowance.length for name, allowance in allowed.items()}
     limit = reflection_of(ensemble.design.station.swr_limit)
     passed = 0
     for begin in range(0, trials, BLOCK):
-        count = min(BLOCK, trials - begin)
-        outcomes, _ = run_stage(ensemble, (stage,), ensemble.draws(seed, begin, count), count, most)
+        end = min(begin + BLOCK, trials)
+        known = part_of(change, begin, end) if change is not None and end <= pilot else None
+        draws = ensemble.draws(seed, begin, end - begin)
+        outcomes, _ = run_stage(ensemble, (stage,), draws, end - begin, most, known)
         worst = [outcomes[stage.name][role].worst for role in ensemble.roles]
         passed += int(np.all(np.array(worst) <= limit, axis=0).sum())
     return yield_of(passed, trials)

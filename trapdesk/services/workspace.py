@@ -1,4 +1,4 @@
-"""Memory that is used again: large arrays asked for anew each time cost more than what is computed in them."""
+"""Memory that is used again: large arrays asked for anew cost more than what is computed in them."""
 
 from __future__ import annotations
 
