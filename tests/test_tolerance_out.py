@@ -98,7 +98,7 @@ def test_a_share_is_never_all_when_some_are_missing(share, text):
 def test_an_interval_near_an_end_is_finer():
     few = Yield(share=0.0, low=0.0, high=0.842, passed=0, trials=2)
     assert tolerance_out.chance(few) == "0 % (0-85)"  # outward: the interval is never told narrower
-    assert tolerance_out.chance(yield_of(9998, 10_000)) == "99.98 % (99.93-99.99)"
+    assert tolerance_out.chance(yield_of(9998, 10_000)) == "99.98 % (99.92-99.99)"
     assert tolerance_out.chance(Yield(share=0.5, low=0.47, high=0.53, passed=5, trials=10)) == "50 % (47-53)"
     assert (
         tolerance_out.chance(Yield(share=1.0, low=0.9963, high=1.0, passed=1, trials=1)) == "100 % (99.6-100)"
