@@ -8,12 +8,13 @@ from ....errors import BadInput, visible
 from ..lines import Line, wrapped
 from ..session import Session
 from ..view import Acting, Sight
+from .asking import STAGES
 from .jobs import RUMMAGE
 from .texts import text_lines, waiting_lines
 
 KEYS = (
     ("Enter", "take the trap"), ("arrows", "pick"), ("Esc", "stop, then back"), ("b", "other box"),
-    ("x", "write to a file"), ("Tab", "inputs"),
+    ("y", "order by yield"), ("x", "write to a file"), ("Tab", "inputs"),
 )  # fmt: skip
 _MARK = 2
 
@@ -43,7 +44,7 @@ def box_lines(sight: Sight) -> list[Line]:
     aside.place = max(0, min(aside.place, len(aside.found(RUMMAGE.name).found.rows) - 1))
     lines: list[Line] = []
     if aside.running(RUMMAGE.name):
-        words = f"still looking, {aside.progress(RUMMAGE.name)} pairs done; Esc stops and keeps these"
+        words = f"still looking, {aside.progress(RUMMAGE.name)} done; Esc stops and keeps these"
         lines = [[(piece, "watch")] for piece in wrapped(words, sight.width)]
     for line in text_lines(texts, sight.width, sight.left):
         text, style = line[0] if line else ("", "text")
@@ -82,9 +83,23 @@ def box_press(key: str, acting: Acting) -> bool:
         acting.say("stopped; what was found stays")
     elif key == "b":
         acting.ask("rummage in which box", lambda given: _open(given, acting), aside.box or "relief-box")
+    elif key == "y":
+        words = f"order by yield at ({', '.join(STAGES)}; nothing: by cost)"
+        acting.ask(words, lambda given: _order(given, acting), aside.order or STAGES[-1])
     else:
         return False
     return True
+
+
+def _order(given: str, acting: Acting) -> None:
+    """Have the rows ordered by their yield at a stage, or by cost again."""
+    if given and given not in STAGES:
+        acting.say(f"{visible(given, 30)} is no stage: {', '.join(STAGES)}", refused=True)
+        return
+    acting.session.aside.order = given
+    acting.session.aside.place = 0
+    acting.say("")
+    acting.show_again()
 
 
 def _open(given: str, acting: Acting) -> None:

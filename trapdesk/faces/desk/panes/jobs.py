@@ -70,19 +70,25 @@ class Rummaged:
 
 
 def _rummage(task: Task) -> Iterator[Rummaged]:
+    from ....services.by_yield import by_yield
     from ....services.rummage import rummage
     from ....store import box_read
 
     fault = ""
+    name, order = task.asked
     try:
-        box = box_read.find_box(task.asked or box_read.READY_BOX)
+        box = box_read.find_box(name or box_read.READY_BOX)
     except box_read.BoxFault as error:
         if error.box.is_empty:
             raise
         box, fault = error.box, str(error)
     for found in rummage(task.design, box, ROWS):
-        task.tell(f"{found.done} of {found.total}")
+        task.tell(f"{found.done} of {found.total} pairs")
         yield Rummaged(box=box, found=found, fault=fault)
+    if order and found.rows:
+        for ordered in by_yield(task.design, found, order):
+            task.tell(f"{ordered.done} of {ordered.total} yields")
+            yield Rummaged(box=box, found=ordered, fault=fault)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -124,5 +130,7 @@ FULL_TOLERANCE = Job(name="full tolerance", work=_full)
 SHEET_TOLERANCE = Job(name="sheet", work=_for_sheet)
 FOR_YIELD = Job(name="for yield", work=_for_yield, asked=lambda aside: aside.stage, slow=True)
 CHOICES = Job(name="choices", work=_choices, needs_figures=False)
-RUMMAGE = Job(name="rummage", work=_rummage, asked=lambda aside: aside.box, needs_figures=False)
+RUMMAGE = Job(
+    name="rummage", work=_rummage, asked=lambda aside: (aside.box, aside.order), needs_figures=False
+)
 TUNER = Job(name="tuner", work=_tuner)
