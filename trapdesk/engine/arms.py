@@ -118,6 +118,10 @@ class Problem:
         -------
         Problem
             The same load at the same frequency.
+
+        Source
+        ------
+        Definition: infinite Q, and the phase constant and real impedance of the line kept.
         """
         line = self.line
         if line is not None:
@@ -165,6 +169,10 @@ def chain(arms: tuple[Arm, ...], problem: Problem) -> Chain:
     -------
     Chain
         The same, arms counted from the load.
+
+    Source
+    ------
+    Definition: a coil in series adds x (1/Q + j), a capacitor x (1/Q - j); in shunt the signs change.
     """
     arms, shape = arms[::-1], problem.shape
     load, wanted = (np.broadcast_to(np.asarray(z, complex), shape) for z in (problem.load, problem.wanted))
@@ -230,6 +238,10 @@ def values_to_sizes(links: Chain, arm: int, value: ArrayLike) -> FloatArray:
     -------
     array
         Magnitude of what the arm adds, but for its loss. [ohm] in series, [S] in shunt
+
+    Source
+    ------
+    Derived here: the inverse of `sizes_to_values`.
     """
     this = links.arms[arm]
     straight = (this.kind is Kind.COIL) == (this.place is Place.SERIES)
@@ -284,6 +296,10 @@ def two_arms(links: Chain, first: int, start: ComplexArray, goal: ComplexArray) 
     -------
     float array
         (2 roots, 2 arms, ...), of either sign, NaN without a solution. [ohm], [S]
+
+    Source
+    ------
+    Derived here: (start + a k1)(goal - b k2) = 1, a and b the two sizes.
     """
     one, two = links.direction[first], links.direction[first + 1]
     p, q, r, s = np.broadcast_arrays(start * goal - 1.0, goal * one, -start * two, -one * two)
@@ -309,6 +325,10 @@ def pinned(links: Chain, arm: int, size: ArrayLike) -> FloatArray:
     -------
     float array
         (2 roots, 3 arms, ...), of either sign, NaN without a solution. [ohm], [S]
+
+    Source
+    ------
+    Derived here: the given arm added to load or goal leaves two arms; in the middle as the comment says.
     """
     k, size = links.direction, np.asarray(size, dtype=float)
     added = size * k[arm]

@@ -206,6 +206,10 @@ def decibels(passed: FloatArray) -> FloatArray:
     -------
     float array
         Loss. [dB]
+
+    Source
+    ------
+    Definition: -10 lg of the efficiency.
     """
     return np.maximum(-10.0 * np.log10(passed), 0.0)
 
@@ -222,6 +226,10 @@ def scales(links: Chain) -> FloatArray:
     -------
     float array
         (arms, n), counted from the load. [ohm] in series, [S] in shunt
+
+    Source
+    ------
+    Derived here: the geometric mean of load and goal, both as the arm sees them.
     """
     count = len(links.arms)
     # From arm to arm immittances are inverted; of two arms the goal is of the other kind than the load.

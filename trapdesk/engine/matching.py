@@ -82,6 +82,10 @@ def least_sizes(box: Box, points: int = SCAN, refine: bool = True) -> tuple[Floa
     -------
     tuple of two float arrays
         Sizes (arms, n) from the load; share of the power lost (n,), infinite without a match. [ohm], [S]; [-]
+
+    Source
+    ------
+    Derived here: every match with an arm at a limit in closed form, then the curve of matches.
     """
     sizes = at_limits(box)
     best, cost = pick(sizes, _losses(box, sizes))
@@ -174,6 +178,15 @@ def family(network: Network, problem: Problem, held: ArrayLike) -> tuple[FloatAr
     tuple of two float arrays
         Values (2, arms, points, ...) from the source to the load, for both roots; loss (2, points, ...). NaN
         where that value leaves no match. [H], [F]; [dB]
+
+    Raises
+    ------
+    ValueError
+        If a held value is not above 0, or the network has not three arms of coils and capacitors.
+
+    Source
+    ------
+    Derived here: see `arms.pinned`.
     """
     positive(held=held)
     if len(network.arms) != 3:
@@ -219,6 +232,10 @@ def reach(
     -------
     LeastLoss
         (x, r) maps; the loss of a match between limits is that of the nearest point searched, a little high.
+
+    Source
+    ------
+    Derived here: see `least_loss`.
     """
     load = np.asarray(resistance, dtype=float) + 1j * np.asarray(reactance, dtype=float)[:, None]
     problem = Problem(frequency=frequency, load=load, wanted=wanted, coil_q=coil_q, capacitor_q=capacitor_q)

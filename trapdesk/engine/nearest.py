@@ -253,6 +253,15 @@ def snap(
     -------
     tuple of two float arrays
         Values (arms,) from the source to the load; SWR. [H], [F]; [-]
+
+    Raises
+    ------
+    ValueError
+        If there is more than one load, a list of steps is missing, or a step is not above 0.
+
+    Source
+    ------
+    Derived here: every combination of steps, the arms between by closed form or search.
     """
     if problem.shape != () or len(steps) != len(network.arms):
         raise ValueError(

@@ -294,6 +294,10 @@ def ladder_of(network: Network, values: ArrayLike, problem: Problem) -> Ladder:
     -------
     Ladder
         For `carried` and `input_impedance`.
+
+    Source
+    ------
+    Definition: a coil is wL (1/Q + j), a capacitor (1/Q - j)/(wC), a stub Z coth or Z tanh of gamma l.
     """
     w = 2.0 * np.pi * np.asarray(problem.frequency, dtype=float)
     values = np.asarray(values, dtype=float)
@@ -349,6 +353,10 @@ def width(
     ------
     ValueError
         If limit or span is not above 1.
+
+    Source
+    ------
+    Definition: the nearest crossing of the limit on a grid even in log f, closed in on.
     """
     positive(frequency=frequency, **{"limit - 1": limit - 1.0, "span - 1": span - 1.0})
     edges = []
@@ -380,6 +388,10 @@ def touchiness(network: Network, values: ArrayLike, problem: Problem) -> FloatAr
     -------
     float array
         (arms, ...): SWR with that arm 1 % off over the SWR as it is, minus 1. [-]
+
+    Source
+    ------
+    Definition: the SWR with one arm 1 % off, over the SWR as it is.
     """
     values = np.asarray(values, dtype=float)
 

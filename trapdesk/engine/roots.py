@@ -113,6 +113,10 @@ def newton(
     -------
     Roots
         Unknowns (u, ...), NaN where not converged; the status has the shape of one unknown. [-]
+
+    Source
+    ------
+    Definition: Newton, the matrix of slopes by central differences, no step over half the scale.
     """
     x = np.array(start, dtype=float)
     scale = np.broadcast_to(np.asarray(scale, dtype=float), x.shape)
