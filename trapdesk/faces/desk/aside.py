@@ -72,9 +72,9 @@ class Known:
 class Aside:
     """What the jobs of a session have found, and those that run: one, and beside it a slow one.
 
-    `box` is the box to rummage in, empty for the ready one, `place` the row picked in what was found, `order` the stage
-    by whose yield its rows go. `stage` is the one to choose a design for, `readings` of parts, `hung` of the antenna, `command` and `load` what
-    was typed, `other` the design of another site.
+    `box` is the box to rummage in, empty for the ready one, `place` the row picked in what was found, `order`
+    the stage by whose yield its rows go. `stage` is the one to choose a design for, `readings` of parts,
+    `hung` of the antenna, `command` and `load` what was typed, `other` the design of another site.
     """
 
     def __init__(self, session: Session) -> None:
