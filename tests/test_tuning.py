@@ -121,13 +121,11 @@ def test_reference_reach_of_an_l_tuner(case):
 
 
 def test_least_loss_is_not_beaten_on_a_fine_grid():
-    """The family along its own arm, and by brute force: the last capacitor and the coil on fine grids."""
+    """By brute force: the last capacitor and the coil on fine grids."""
     tuner = Tuner()
     for frequency, load in ((7.1e6, 35 - 120j), (3.6e6, 300 + 200j), (14.2e6, 15 + 60j)):
         setting = tuning.tune_at(tuner, frequency, load, 50.0)
         assert setting.matched
-        family = tuning.family_of(setting)
-        assert family.loss.min() >= setting.loss - 1e-9
         w, q_l, q_c = 2 * np.pi * frequency, tuner.coil.q, tuner.capacitor.q
         best = np.inf
         for c_load in np.geomspace(15e-12, 250e-12, 400):

@@ -11,7 +11,6 @@ from ..design.station import TUNER_NETWORKS, Tuner, TunerCapacitor, TunerCoil
 from ..engine.arms import Kind, Problem
 from ..engine.boxes import Limits
 from ..engine.ladder import Carried, carried
-from ..engine.matching import family
 from ..engine.nearest import best_setting, snap
 from ..engine.networks import NETWORKS, Network, ladder_of, touchiness
 from ..engine.reflection import swr
@@ -20,9 +19,6 @@ MOST_COMBINATIONS = 4096
 """Combinations of steps that are tried; with more, only steps near the best setting without steps are."""
 LEAST = 1e-15
 """Stands for a part at nothing, which a switch takes out. [H], [F]"""
-FAMILY_POINTS = 121
-FAMILY_SPAN = 1e3
-"""How far a family of matches is followed where the limits do not end it, as a factor."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -313,36 +309,3 @@ def setting_share(setting: TunerSetting, frequency: np.ndarray, load: np.ndarray
     network, bears = _ladder_over(setting, frequency, load)
     ratio = swr(bears.input_impedance, setting.wanted)
     return _tuned(network, bears, ratio <= GOOD_MATCH)
-
-
-@dataclass(frozen=True, kw_only=True)
-class Family:
-    """All matches of a tuner of three elements for one load, over the element beside the antenna.
-
-    Arrays (n,): the value of that element [H] or [F], the loss [dB], the other values (3, n) from the
-    transmitter to the antenna. Only what is within the limits.
-    """
-
-    kind: str
-    values: np.ndarray
-    loss: np.ndarray
-
-
-def family_of(setting: TunerSetting) -> Family | None:
-    """Return the family of matches a setting is the best of; None for two elements, which leave no choice."""
-    tuner, network = setting.tuner, NETWORKS[setting.network]
-    if len(network.arms) != 3:
-        return None
-    within = limits_of(tuner, network)
-    low, high = within.low[-1], within.high[-1]
-    held = np.geomspace(max(low, high / FAMILY_SPAN, LEAST), high, FAMILY_POINTS)
-    problem = problem_of(tuner, setting.frequency, setting.load, setting.wanted)
-    values, loss = family(network, problem, held)
-    values, loss = np.moveaxis(values, 1, 0).reshape(3, -1), loss.reshape(-1)
-    ends = np.array([within.low, within.high])
-    with np.errstate(invalid="ignore"):
-        inside = np.all((values >= ends[0][:, None]) & (values <= ends[1][:, None]), axis=0)
-    order = np.argsort(values[2][inside])
-    return Family(
-        kind=str(network.arms[-1].kind), values=values[:, inside][:, order], loss=loss[inside][order]
-    )
