@@ -15,13 +15,13 @@ from trapdesk.design.station import (
     Choke,
     FeedLine,
     Foldback,
+    LineWeather,
     ListedLoss,
     Transmitter,
     Tuner,
     TunerCapacitor,
     TunerCoil,
     TunerPlace,
-    Weather,
 )
 from trapdesk.engine.cables import propagation
 from trapdesk.errors import NoAnswer
@@ -71,14 +71,14 @@ def test_line_values_of_its_own_come_before_those_of_its_type():
 def test_age_and_rain_raise_the_loss():
     new, old = line_of(COAX), line_of(replace(COAX, age=10.0, yearly_loss=0.03))
     assert old.skin_loss / new.skin_loss == pytest.approx(1.3, rel=1e-12)
-    wet = line_of(replace(COAX, weather=Weather.WET))
+    wet = line_of(replace(COAX, weather=LineWeather.WET))
     assert wet.skin_loss / new.skin_loss == pytest.approx(1.05, rel=1e-12)
     assert wet.velocity_factor == new.velocity_factor
     window = FeedLine(type="window line", length=25.0)
-    dry, wet = line_of(window), line_of(replace(window, weather=Weather.WET))
+    dry, wet = line_of(window), line_of(replace(window, weather=LineWeather.WET))
     assert wet.skin_loss / dry.skin_loss == pytest.approx(2.0, rel=1e-12)
     assert wet.velocity_factor / dry.velocity_factor == pytest.approx(0.97, rel=1e-12)
-    chosen = line_of(replace(window, weather=Weather.WET, wet_loss=3.0, wet_slower=0.1))
+    chosen = line_of(replace(window, weather=LineWeather.WET, wet_loss=3.0, wet_slower=0.1))
     assert chosen.skin_loss / dry.skin_loss == pytest.approx(4.0, rel=1e-12)
 
 

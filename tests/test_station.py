@@ -13,6 +13,7 @@ from trapdesk.design.station import (
     Choke,
     FeedLine,
     Foldback,
+    LineWeather,
     ListedLoss,
     Segment,
     Tap,
@@ -21,7 +22,6 @@ from trapdesk.design.station import (
     TunerCapacitor,
     TunerCoil,
     TunerPlace,
-    Weather,
 )
 from trapdesk.engine.cable_list import CABLES
 from trapdesk.engine.networks import NETWORKS
@@ -115,7 +115,7 @@ LINES = st.builds(
     velocity_factor=st.none() | positive(0.2, 1),
     voltage=st.none() | positive(1, 1e6),
     age=positive(0, 60),
-    weather=st.sampled_from(list(Weather)),
+    weather=st.sampled_from(list(LineWeather)),
     losses=st.just(())
     | st.tuples(st.builds(ListedLoss, frequency=positive(1e5, 1e9), loss=positive(1e-6, 10))),
 )

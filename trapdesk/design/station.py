@@ -16,7 +16,7 @@ class TunerPlace(StrEnum):
     FEED = "feed"
 
 
-class Weather(StrEnum):
+class LineWeather(StrEnum):
     """What the line lies in."""
 
     DRY = "dry"
@@ -151,7 +151,7 @@ class FeedLine:
         high=1.0,
         example="2 %",
     )
-    weather: Weather = choice(Weather, "line lies", "dry or wet.", default=Weather.DRY)
+    weather: LineWeather = choice(LineWeather, "line lies", "dry or wet.", default=LineWeather.DRY)
     wet_loss: float | None = quantity(
         "ratio",
         "loss gained when wet",

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import Any
 
-from ..design.station import OWN, FeedLine, ListedLoss, Weather
+from ..design.station import OWN, FeedLine, LineWeather, ListedLoss
 from ..engine.cable_list import CABLES
 from ..engine.cable_types import LOSS_DOUBT
 from ..errors import BadInput, Fault
@@ -69,10 +69,10 @@ def answer_to(texts: Sequence[str]) -> LoneLine:
     return _answer(line, found)
 
 
-def _weather(text: str) -> Weather:
-    if text.lower() not in tuple(Weather):
-        raise BadInput(Fault("weather", "unknown_choice", text, ", ".join(Weather)))
-    return Weather(text.lower())
+def _weather(text: str) -> LineWeather:
+    if text.lower() not in tuple(LineWeather):
+        raise BadInput(Fault("weather", "unknown_choice", text, ", ".join(LineWeather)))
+    return LineWeather(text.lower())
 
 
 def losses(text: str) -> tuple[ListedLoss, ...]:
@@ -144,7 +144,7 @@ def lines(answer: LoneLine) -> list[str]:
             f"{cable.name} by {cable.source} ({read_there}); lists differ by {100 * LOSS_DOUBT:.0f} % in loss"
         )
         found += folded("  ", f"{text}{'; ' + cable.note if cable.note else ''}.")
-    if line.age or line.weather is Weather.WET:
+    if line.age or line.weather is LineWeather.WET:
         found += folded("  ", "What age and rain do to it is an estimate, no source.")
     return found
 

@@ -16,8 +16,8 @@ from ..design.station import (
     WET_LOSS,
     WET_SLOWER,
     FeedLine,
+    LineWeather,
     TunerPlace,
-    Weather,
 )
 from ..engine.cable_list import CABLES
 from ..engine.cable_types import cable_line, loss_constants
@@ -42,7 +42,7 @@ def line_of(feed_line: FeedLine) -> Line:
     z0 = listed.z0 if feed_line.z0 is None else feed_line.z0
     velocity = listed.velocity_factor if feed_line.velocity_factor is None else feed_line.velocity_factor
     more = 1 + feed_line.age * feed_line.yearly_loss
-    if feed_line.weather is Weather.WET:
+    if feed_line.weather is LineWeather.WET:
         open_to_rain = feed_line.type in PARALLEL or (cable is None and z0 >= LEAST_PARALLEL)
         more *= 1 + (WET_LOSS[open_to_rain] if feed_line.wet_loss is None else feed_line.wet_loss)
         velocity *= 1 - (WET_SLOWER[open_to_rain] if feed_line.wet_slower is None else feed_line.wet_slower)
