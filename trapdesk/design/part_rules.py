@@ -16,9 +16,9 @@ from .parts import Trap
 class Breach:
     """A value that a rule forbids: where, which rule, the value, and the bound or the other key it meets.
 
-    `code` is one of: missing, below, not_above, over, not_a_choice, not_a_number, not_whole, unexpected, needs,
-    needs_one_of, not_both, order, outside, solve_one, ends_too_low, cannot_be_fitted, too_few_members,
-    nested_too_deeply.
+    `code` is one of: missing, below, not_above, over, not_a_choice, not_a_number, not_whole, unexpected,
+    needs, needs_one_of, not_both, order, outside, solve_one, ends_too_low, cannot_be_fitted,
+    too_few_members, nested_too_deeply.
     """
 
     where: str

@@ -168,9 +168,9 @@ def internal_impedance(
         np.asarray(frequency, float), np.asarray(diameter, float), np.asarray(resistivity, float)
     )
     lossy = rho > 0.0
-    depth = np.sqrt(np.where(lossy, rho, 1.0) / (np.pi * MU0 * frequency))
+    depth = skin_depth(frequency, np.where(lossy, rho, 1.0))
     ratio = round_wire_ratio((0.5 + 0.5j) * diameter / depth)
-    return rho / (0.25 * np.pi * diameter**2) * ratio
+    return dc_resistance(diameter, rho) * ratio
 
 
 def coating_elastance(
