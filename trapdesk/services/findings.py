@@ -8,22 +8,23 @@ from ..engine.soils import GroundKind
 from .feed_findings import feed_findings
 from .figures import BandFigures, Figures, Finding
 from .lengths import solved_for
-from .levels import Level
+from .levels import LEVELS, Level
 from .trap_findings import trap_findings
 
 WITHIN_REACH = 3.0
 """Wire ends below this height are within people's reach. [m], common practice, no source"""
 LENGTH_RATIO = (0.45, 1.05)
+"""Whole length over a plain half wave, outside of which it is worth a remark; an estimate, no source."""
 GROUND_SHARE = 0.5
+"""Share of the power the ground takes from which on it is worth a remark; an estimate, no source."""
 AIM_MISSED = (0.1, 0.5)
 """How far resonance may lie from the aim, in parts of the usable width, before it is worth a remark."""
-_ORDER = (Level.STOP, Level.WATCH, Level.FINE)
 
 
 def find(figures: Figures) -> tuple[Finding, ...]:
     """Return every finding, the most serious first, each kind in a fixed order."""
     found = [*_bands(figures), *trap_findings(figures), *feed_findings(figures), *_site(figures)]
-    return tuple(sorted(found, key=lambda finding: _ORDER.index(finding.level)))
+    return tuple(sorted(found, key=lambda finding: -LEVELS.index(finding.level)))
 
 
 def _bands(figures: Figures) -> Iterator[Finding]:
@@ -82,7 +83,7 @@ def _bands(figures: Figures) -> Iterator[Finding]:
 def _aim(band: BandFigures, where: str) -> Iterator[Finding]:
     miss = band.resonance - band.aim
     width = band.width or band.frequency_doubt
-    level = [Level.FINE, Level.WATCH, Level.STOP][sum(abs(miss) > part * width for part in AIM_MISSED)]
+    level = LEVELS[sum(abs(miss) > part * width for part in AIM_MISSED)]
     yield Finding(
         code="aim_missed",
         level=level,

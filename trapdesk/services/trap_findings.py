@@ -8,7 +8,7 @@ from ..design.coil_kinds import Solenoid, Toroid
 from ..engine.coils import SOLENOID_RANGE
 from .figures import Figures, Finding, PartStress
 from .figures import Heat as HeatFigures
-from .levels import Level
+from .levels import LEVELS, Level
 
 TRAP_VOLTAGE_MARGIN = 0.7
 """Share of a part's limit from which on it is worth a remark; an estimate, no source."""
@@ -18,11 +18,10 @@ TRAP_WATTS = (5.0, 20.0)
 """Average watts in one trap from which on it gets warm, and hot; a hand-sized trap, an estimate."""
 SOFT_MARGIN = 10.0
 """Kelvin below softening from which on it is worth a remark; an estimate, no source."""
-TRAP_FAR = 0.03
-TRAP_ABOVE = 0.01
+TRAP_FAR, TRAP_ABOVE = 0.03, 0.01
+"""How far below and above the upper band a trap may resonate unremarked, relative; an estimate, no source."""
 DRIFTING = 0.004
 """Shift of a trap by temperature, of itself, that is worth a remark; an estimate."""
-_ORDER = (Level.STOP, Level.WATCH, Level.FINE)
 
 
 def trap_findings(figures: Figures) -> Iterator[Finding]:
@@ -34,7 +33,7 @@ def trap_findings(figures: Figures) -> Iterator[Finding]:
     watts = max(b.worst_stress.average_watts for b in figures.bands.values())
     yield Finding(
         code="trap_heat",
-        level=_ORDER[2 - sum(watts > limit for limit in TRAP_WATTS)],
+        level=LEVELS[sum(watts > limit for limit in TRAP_WATTS)],
         where="antenna.trap",
         value=watts,
         limit=TRAP_WATTS[0],
