@@ -20,7 +20,7 @@ FloatArray = NDArray[np.float64]
 STEPS = 40
 CLOSE = 1e-10
 """Turns to which a solution is found. [-]"""
-BUILT_Q = (0.5, 0.7, 1.0)
+BUILT_SHIELD_Q = (0.5, 0.7, 1.0)
 """Q of a built cable trap over that of smooth copper: low, typical, high. Common practice, no source."""
 
 
@@ -195,7 +195,7 @@ def cable_winding(
 def shield_resistance(wound: CableWinding, frequency: ArrayLike, resistivity: ArrayLike) -> FloatArray:
     """Return the resistance of the outside of the shield, as if smooth.
 
-    Weave, tinning and jacket add to it, see `BUILT_Q`. The skin is taken as thin against the shield.
+    Weave, tinning and jacket add to it, see `BUILT_SHIELD_Q`. The skin is taken as thin against the shield.
 
     Parameters
     ----------

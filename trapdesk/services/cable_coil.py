@@ -21,14 +21,14 @@ from ..engine.cable_trap import (
     shield_current,
 )
 from ..engine.cable_winding import (
-    BUILT_Q,
+    BUILT_SHIELD_Q,
     CableWinding,
     cable_trap_turns,
     cable_winding,
     shield_resistance,
 )
 from ..engine.cables import Line
-from ..engine.coils import self_capacitance_range
+from ..engine.coils import SOLENOID_ERROR, self_capacitance_range
 from ..engine.metals import MATERIALS
 from ..engine.stress import Stress
 from ..errors import NoAnswer
@@ -197,8 +197,8 @@ def build_cable(coil: CableCoil, resonance: float | None) -> BuiltCable:
             softens=FORMER_MATERIALS[coil.former_material].softens,
         ),
         own=own,
-        doubt=winding.uniform_inductance / winding.inductance - 1 + 0.005,
-        q_factors=(BUILT_Q[0] / BUILT_Q[1], BUILT_Q[2] / BUILT_Q[1]),
+        doubt=winding.uniform_inductance / winding.inductance - 1 + SOLENOID_ERROR,
+        q_factors=(BUILT_SHIELD_Q[0] / BUILT_SHIELD_Q[1], BUILT_SHIELD_Q[2] / BUILT_SHIELD_Q[1]),
     )
 
 

@@ -9,7 +9,7 @@ from typing import Any
 
 import numpy as np
 
-from ..design.coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
+from ..design.coil_kinds import GivenCoil, Solenoid, Toroid
 from ..design.fields import SOLVE
 from ..design.former_kinds import FORMER_MATERIALS
 from ..engine.cable_winding import straight_inductance
@@ -26,6 +26,10 @@ from .capacitors import Limits
 WHERE = "antenna.trap.coil"
 COIL_DOUBT = 0.015
 """How far the inductance of a coil wound by hand may be off, relative; a given one is taken as given."""
+WOUND_Q = (BUILT_Q[0] / BUILT_Q[1], BUILT_Q[2] / BUILT_Q[1])
+"""What a coil of plain wire may reach of the Q computed, low and high."""
+TOROID_Q = (0.7, 1.2)
+"""The same of the Q stated for a coil on a core; an estimate, no source."""
 NO_SELF_CAPACITANCE = (0.0, 0.0, 0.0)
 CUT_TAIL = 0.10
 """Wire to leave at each end of a coil. [m], common practice, no source"""
@@ -116,8 +120,9 @@ def pitch_of(coil: Solenoid, turns: float) -> float:
 
 def _solenoid(coil: Solenoid, frequency: float | None, needed: Needed | None, q_at: float) -> BuiltCoil:
     material = MATERIALS[coil.material]
-    # Wire with its insulation lies on the former.
-    diameter = coil.former + coil.wire + (2 * coil.insulation if coil.pitch is coil.length is None else 0.0)
+    close = coil.pitch is None and coil.length is None
+    # Wound close, wire with its insulation lies on the former.
+    diameter = coil.former + coil.wire + (2 * coil.insulation if close else 0.0)
     leads = 2 * straight_inductance(coil.lead, coil.wire)
 
     def wind(turns: float) -> Winding:
@@ -157,7 +162,7 @@ def _solenoid(coil: Solenoid, frequency: float | None, needed: Needed | None, q_
             softens=FORMER_MATERIALS[coil.former_material].softens,
         ),
         doubt=COIL_DOUBT,
-        q_factors=(BUILT_Q[0] / BUILT_Q[1], BUILT_Q[2] / BUILT_Q[1]),
+        q_factors=WOUND_Q,
         spread=of_pitch,
         together=max(0.0, gap / wound.pitch),
     )
@@ -252,7 +257,7 @@ def _toroid(coil: Toroid, frequency: float | None, needed: Needed | None, q_at: 
             most_turns=most,
         ),
         doubt=coil.tolerance,
-        q_factors=(0.7, 1.2),
+        q_factors=TOROID_Q,
         drift=coil.drift,
         limits=Limits(flux=coil.flux, heat=coil.heat),
     )
@@ -264,4 +269,3 @@ BUILDERS: dict[type, Callable[[Any, float | None, Needed | None, float], BuiltCo
     Toroid: _toroid,
 }
 """Coils that need a capacitor beside them; one of cable is a trap by itself."""
-IS_A_TRAP = (CableCoil,)

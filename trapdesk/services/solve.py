@@ -47,7 +47,7 @@ SHARE_DOUBT, UNKNOWN_SHARE_DOUBT = 0.02, 0.15
 STRESS_DOUBT = 0.1
 AIM_MET = 1e-4
 """How near a solved wire must bring the resonance to its aim, relative."""
-WANTED_POINTS, TRAP_POINTS = 33, 61
+WANTED_POINTS = 33
 
 
 def solve(design: Design, previous: Figures | None = None, *, site_effects: bool = False) -> Figures:
