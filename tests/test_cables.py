@@ -303,10 +303,12 @@ def test_swr():
 
 
 @fixed
-@given(st.floats(0.0, 5.0), st.floats(0.0, 5.0), st.integers(2, 6))
+@given(st.floats(0.0, 5.0), st.floats(0.0, 5.0), st.integers(1, 6))
 def test_loss_constants_come_back(skin, dielectric, rows):
-    if skin + dielectric < 1e-3:
+    if skin + dielectric < 1e-3 or (rows == 1 and skin < 1e-3):
         return
+    if rows == 1:
+        dielectric = 0.0
     frequency = np.geomspace(2e6, 900e6, rows)
     loss = 1e-5 * skin * np.sqrt(frequency) + 1e-9 * dielectric * frequency
     got = cable_types.loss_constants(frequency, loss)
@@ -328,9 +330,8 @@ def test_loss_constants_stay_positive():
         ([10e6, 100e6], [0.2, 0.1], "loss must rise"),
         ([10e6, 100e6], [0.1, 0.1], "loss must rise"),
         ([10e6, 100e6], [0.1, 2.0], "loss must rise"),
-        ([10e6, 50e6, 100e6], [0.1, 0.9, 0.4], "5e\\+07 Hz"),
-        ([10e6], [0.1], "frequency must be at least two"),
-        ([10e6, 10e6], [0.1, 0.1], "frequency must be at least two"),
+        ([10e6, 50e6, 100e6], [0.1, 0.9, 0.4], "50 MHz"),
+        ([10e6, 10e6], [0.1, 0.1], "frequency must have two"),
         ([10e6, 100e6], [0.1], "loss must be as many"),
         ([10e6, 100e6], [0.1, -0.2], "loss must be finite and above"),
         ([0.0, 100e6], [0.1, 0.2], "frequency must be finite"),

@@ -21,8 +21,6 @@ LOSS_DOUBT = 0.25
 def cable_line(cable: Cable) -> Line:
     """Return the line a cable is, its losses fitted to the listed ones.
 
-    A single listed loss counts to the conductors alone.
-
     Parameters
     ----------
     cable : Cable
@@ -40,14 +38,9 @@ def cable_line(cable: Cable) -> Line:
 
     Source
     ------
-    Derived here, see `loss_constants`; at HF the conductors lose far more than the dielectric.
+    Derived here, see `loss_constants`.
     """
-    frequency, loss = np.array(cable.losses).T
-    if frequency.size == 1:
-        positive(frequency=frequency, loss=loss)
-        skin, dielectric = float(loss[0] / np.sqrt(frequency[0])), 0.0
-    else:
-        skin, dielectric = loss_constants(frequency, loss)
+    skin, dielectric = loss_constants(*np.array(cable.losses).T)
     return Line(
         z0=cable.z0, velocity_factor=cable.velocity_factor, skin_loss=skin, dielectric_loss=dielectric
     )
@@ -56,12 +49,13 @@ def cable_line(cable: Cable) -> Line:
 def loss_constants(frequency: ArrayLike, loss: ArrayLike) -> tuple[float, float]:
     """Return the skin and dielectric loss that listed losses of a cable give, neither below zero.
 
-    Least squares of the relative misses. With all loss going to one kind the other is zero.
+    Least squares of the relative misses. With all loss going to one kind the other is zero. A single listed
+    loss counts to the skin alone.
 
     Parameters
     ----------
     frequency : array
-        Frequencies, (rows,), two of them different. [Hz], > 0
+        Frequencies, (rows,); of several, two are different. [Hz], > 0
     loss : array
         Matched loss at each, (rows,). [dB/m], > 0
 
@@ -78,14 +72,17 @@ def loss_constants(frequency: ArrayLike, loss: ArrayLike) -> tuple[float, float]
 
     Source
     ------
-    Derived here: loss in a skin goes with the root of frequency, at a constant loss tangent with frequency.
+    Derived here: loss in a skin goes with the root of frequency, at a constant loss tangent with frequency;
+    at HF the conductors lose far more than the dielectric.
     """
     positive(frequency=frequency, loss=loss)
     f, listed = np.atleast_1d(np.asarray(frequency, float)), np.atleast_1d(np.asarray(loss, float))
     if f.ndim != 1 or f.shape != listed.shape:
         raise ValueError("loss must be as many values as frequency")
+    if f.size == 1:
+        return float(listed[0] / np.sqrt(f[0])), 0.0
     if np.unique(f).size < 2:
-        raise ValueError("frequency must be at least two different values")
+        raise ValueError("frequency must have two different values among several")
     scale = f.max()
     columns = np.stack([np.sqrt(f / scale), f / scale], axis=1) / listed[:, None]
     tries = [np.linalg.lstsq(columns, np.ones_like(f), rcond=None)[0]]
@@ -101,7 +98,7 @@ def loss_constants(frequency: ArrayLike, loss: ArrayLike) -> tuple[float, float]
         side = "above" if miss[worst] > 0.0 else "below"
         raise ValueError(
             "loss must rise with frequency, at least as its root and at most in proportion: the best such "
-            f"curve is {100.0 * abs(miss[worst]):.0f} % {side} the value at {f[worst]:g} Hz, "
+            f"curve is {100.0 * abs(miss[worst]):.0f} % {side} the value at {f[worst] / 1e6:g} MHz, "
             f"limit {100.0 * FIT_LIMIT:.0f} %"
         )
     return float(best[0] / np.sqrt(scale)), float(best[1] / scale)

@@ -20,7 +20,7 @@ from ..design.fields import SOLVE
 from ..design.parts import solvable
 from ..engine import capacitors as engine
 from ..engine.cable_list import CABLES
-from ..engine.cable_types import cable_line
+from ..engine.cable_types import cable_line, loss_constants
 from ..engine.cables import Line
 from ..engine.dielectrics import DIELECTRICS
 from ..errors import NoAnswer
@@ -162,7 +162,7 @@ def line_of(part: Any) -> Line:
     line = cable_line(listed)
     skin, dielectric = line.skin_loss, line.dielectric_loss
     if part.loss is not None:
-        skin, dielectric = part.loss / math.sqrt(part.loss_at), 0.0
+        skin, dielectric = loss_constants(part.loss_at, part.loss)
     return Line(
         z0=part.impedance or listed.z0,
         velocity_factor=part.velocity_factor or listed.velocity_factor,

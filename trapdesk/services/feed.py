@@ -31,12 +31,8 @@ def line_of(feed_line: FeedLine) -> Line:
     cable = None if feed_line.type == OWN else CABLES[feed_line.type]
     listed = cable_line(cable) if cable is not None else None
     if feed_line.losses:
-        frequency = np.array([row.frequency for row in feed_line.losses])
-        loss = np.array([row.loss for row in feed_line.losses])
-        if frequency.size == 1:
-            skin, dielectric = float(loss[0] / math.sqrt(frequency[0])), 0.0
-        else:
-            skin, dielectric = loss_constants(frequency, loss)
+        rows = [(row.frequency, row.loss) for row in feed_line.losses]
+        skin, dielectric = loss_constants(*np.array(rows).T)
     else:
         skin, dielectric = (0.0, 0.0) if listed is None else (listed.skin_loss, listed.dielectric_loss)
     z0 = listed.z0 if feed_line.z0 is None else feed_line.z0
