@@ -12,6 +12,7 @@ from tests.cases import published, reference
 from trapdesk.engine import cable_types, cables
 from trapdesk.engine.cable_list import CABLES
 from trapdesk.engine.cables import DECIBELS, Line
+from trapdesk.engine.reflection import dip_among_three
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=60)
 
@@ -446,3 +447,20 @@ GAMMA, Z = cables.propagation(RG58, 7.1e6)
 def test_refuses(call, name):
     with pytest.raises(ValueError, match=rf"^{name} must be"):
         call()
+
+
+def test_dip_among_three_is_that_of_a_finer_look():
+    # A series resonator: its SWR has a corner where it meets 50 ohm, a round dip where it does not.
+    resistance = np.array([50.0, 40.0, 90.0])[:, None]
+    centre = 7.1e6 + np.array([2e3, -3e3, 4e3])[:, None]
+
+    def ratio(f):
+        return cables.swr(resistance + 2e-5j * 2 * np.pi * (f - centre), 50.0)
+
+    f = np.broadcast_to(7.1e6 + 10e3 * np.array([-1.0, 0.0, 1.0]), (3, 3))
+    found = dip_among_three(f, ratio(f))
+    fine = np.broadcast_to(np.linspace(7.09e6, 7.11e6, 200_001), (3, 200_001))
+    best = fine[0, np.argmin(ratio(fine), axis=1)]
+    assert found == pytest.approx(best, abs=20.0)
+    assert found == pytest.approx([dip_among_three(*row) for row in zip(f, ratio(f), strict=True)], rel=0)
+    assert dip_among_three(f[0], [2.0, 2.0, 2.0]) == f[0, 1]

@@ -87,7 +87,7 @@ def swr_of_reflection(magnitude: ArrayLike) -> FloatArray:
     Parameters
     ----------
     magnitude : float or array
-        Magnitude of the reflection coefficient. [-], 0 to 1
+        Magnitude of the reflection coefficient. [-], 0 to 1, not checked
 
     Returns
     -------
@@ -101,3 +101,32 @@ def swr_of_reflection(magnitude: ArrayLike) -> FloatArray:
     r = np.asarray(magnitude, dtype=float)
     with np.errstate(divide="ignore"):
         return ((1.0 + r) / (1.0 - r))[()]
+
+
+def dip_among_three(frequency: ArrayLike, ratio: ArrayLike) -> FloatArray:
+    """Return where the standing wave ratio is least, from three frequencies the middle one of which is best.
+
+    Parameters
+    ----------
+    frequency : array (..., 3)
+        Frequencies, evenly spaced. [Hz]
+    ratio : array (..., 3)
+        Standing wave ratio at each. [-], >= 1
+
+    Returns
+    -------
+    float array (...)
+        Frequency of the dip, never beyond the three; the middle one where nothing bends up. [Hz]
+
+    Source
+    ------
+    Derived here: the vertex of the parabola of the reflection squared, which is smooth where the ratio has a
+    corner.
+    """
+    f, s = np.asarray(frequency, dtype=float), np.asarray(ratio, dtype=float)
+    square = ((s - 1.0) / (s + 1.0)) ** 2
+    before, middle, after = square[..., 0], square[..., 1], square[..., 2]
+    bend = before - 2.0 * middle + after
+    up = bend > 0.0
+    shift = np.where(up, 0.5 * (before - after) / np.where(up, bend, 1.0), 0.0)
+    return (f[..., 1] + np.clip(shift, -1.0, 1.0) * (f[..., 1] - f[..., 0]))[()]

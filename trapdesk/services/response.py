@@ -192,11 +192,11 @@ class Response:
         last = curve.frequency.size - 1
         i = min(max(i, 1), last - 1)
         f, s = curve.frequency[i - 1 : i + 2], curve.swr[i - 1 : i + 2]
-        at, step = _parabola(f, s), (f[1] - f[0]) / 8
+        at, step = float(reflection.dip_among_three(f, s)), (f[1] - f[0]) / 8
         f = np.clip(at + step * np.array([-1.0, 0.0, 1.0, 0.0]), curve.frequency[0], curve.frequency[-1])
         s = self._curve(ports, f).swr
         if f[0] < f[1] < f[2]:
-            f[3] = _parabola(f[:3], s[:3])
+            f[3] = reflection.dip_among_three(f[:3], s[:3])
         close = self._curve(ports, f[3:])
         return float(close.frequency[0]), float(close.swr[0])
 
@@ -221,14 +221,6 @@ class Response:
         i = above[0]
         f0, s0 = (f[i - 1], s[i - 1]) if i and (f[i - 1] - self.dip[0]) * direction > 0 else self.dip
         return float(f0 + (limit - s0) * (f[i] - f0) / (s[i] - s0))
-
-
-def _parabola(f: np.ndarray, s: np.ndarray) -> float:
-    """Return where the squared reflection is least, by the parabola through three evenly spaced points."""
-    g = ((s - 1) / (s + 1)) ** 2
-    bend = g[0] - 2 * g[1] + g[2]
-    shift = 0.5 * (g[0] - g[2]) / bend if bend > 0 else 0.0
-    return float(f[1] + min(max(shift, -1.0), 1.0) * (f[1] - f[0]))
 
 
 def _rising_zero(curve: Curve, aim: float) -> int | None:

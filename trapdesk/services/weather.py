@@ -14,6 +14,7 @@ from ..engine.coils import quick_exponents, temperature_drift
 from ..engine.heat import drifted
 from ..engine.metals import MATERIALS
 from ..engine.ports import polynomial_weights, terminate
+from ..engine.reflection import dip_among_three
 from .capacitors import drift_of, weights
 from .figures import Figures, Heat, Shift
 from .response import MARGIN, swr
@@ -103,11 +104,8 @@ def shifts(figures: Figures, trap: BuiltTrap, heat: Heat | None) -> tuple[Shift,
 
 
 def _dip(frequency: np.ndarray, ratio: np.ndarray) -> float:
-    """Return where the SWR is least, by the parabola of the squared reflection; NaN at an end."""
+    """Return where the SWR is least; NaN at an end."""
     i = int(np.argmin(ratio))
     if i in (0, frequency.size - 1):
         return float("nan")
-    g = ((ratio[i - 1 : i + 2] - 1) / (ratio[i - 1 : i + 2] + 1)) ** 2
-    bend = g[0] - 2 * g[1] + g[2]
-    shift = 0.5 * (g[0] - g[2]) / bend if bend > 0 else 0.0
-    return float(frequency[i] + shift * (frequency[1] - frequency[0]))
+    return float(dip_among_three(frequency[i - 1 : i + 2], ratio[i - 1 : i + 2]))
