@@ -39,7 +39,7 @@ def line_of(feed_line: FeedLine) -> Line:
     velocity = listed.velocity_factor if feed_line.velocity_factor is None else feed_line.velocity_factor
     more = 1 + feed_line.age * feed_line.yearly_loss
     if feed_line.weather is LineWeather.WET:
-        open_to_rain = feed_line.type in PARALLEL or (cable is None and z0 >= LEAST_PARALLEL)
+        open_to_rain = has_no_shield(feed_line)
         more *= 1 + (WET_LOSS[open_to_rain] if feed_line.wet_loss is None else feed_line.wet_loss)
         velocity *= 1 - (WET_SLOWER[open_to_rain] if feed_line.wet_slower is None else feed_line.wet_slower)
     return Line(z0=z0, velocity_factor=velocity, skin_loss=skin * more, dielectric_loss=dielectric * more)
@@ -47,6 +47,12 @@ def line_of(feed_line: FeedLine) -> Line:
 
 LEAST_PARALLEL = 150.0
 """A line of one's own from this impedance on is taken for two open wires. [ohm], an estimate"""
+
+
+def has_no_shield(feed_line: FeedLine) -> bool:
+    """Return whether a line is two open wires, by its type or by the impedance of a line of one's own."""
+    of_its_own = feed_line.type == OWN and feed_line.z0 is not None and feed_line.z0 >= LEAST_PARALLEL
+    return feed_line.type in PARALLEL or of_its_own
 
 
 def voltage_rating(feed_line: FeedLine) -> float | None:

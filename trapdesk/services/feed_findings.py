@@ -5,9 +5,8 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 
-from ..design.design import MODES, JudgedAt, Station
-from ..design.station import PARALLEL
-from .feed import LEAST_PARALLEL, line_of, voltage_rating
+from ..design.design import MODES, JudgedAt
+from .feed import has_no_shield, voltage_rating
 from .figures import BandFigures, Figures, Finding
 from .levels import Level
 
@@ -22,17 +21,13 @@ TUNER_WATTS = (10.0, 30.0)
 def feed_findings(figures: Figures) -> Iterator[Finding]:
     """Yield what is to be said of the feed, band by band."""
     station = figures.design.station
-    if station.line is not None and not _has_no_shield(station):
+    if station.line is not None and not has_no_shield(station.line):
         yield from _choke(figures)
     for role, band in figures.bands.items():
         if band.feed is not None:
             yield from _line(figures, band, f"bands.{role}")
             yield from _transmitter(figures, band, f"bands.{role}")
             yield from _tuner(figures, band, f"bands.{role}")
-
-
-def _has_no_shield(station: Station) -> bool:
-    return station.line.type in PARALLEL or float(line_of(station.line).z0) >= LEAST_PARALLEL
 
 
 def _choke(figures: Figures) -> Iterator[Finding]:
