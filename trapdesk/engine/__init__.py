@@ -12,7 +12,7 @@ The files, each one subject:
 ``dielectrics``       what capacitors are made of, by name
 ``cable_list``        cables by name, with their listed values
 ``coil_limits``       how much of a coil the ring solution is asked for
-``conductors``        resistivity, gauges, skin effect, AC resistance, insulation
+``conductors``        resistivity, skin effect, AC resistance, insulation
 ``coils``             solenoid: inductance, self-capacitance, loss
 ``rings``             the ring solution under it: coaxial rings with the current crowded as it is
 ``coil_table``        a quick solenoid for a search, fitted to the rings

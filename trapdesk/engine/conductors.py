@@ -1,4 +1,4 @@
-"""Wires as conductors: metals, gauges, skin effect, internal impedance, insulation."""
+"""Wires as conductors: metals, skin effect, internal impedance, insulation."""
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -9,9 +9,6 @@ from .metals import Material
 from .special import round_wire_ratio
 
 FloatArray = NDArray[np.float64]
-
-GAUGE_RANGE = {"gauge": (-3, 56)}
-"""Gauges the law of ASTM B258 is printed for: 0000 (as -3) to 56."""
 
 
 def resistivity_at(material: Material, temperature: ArrayLike) -> FloatArray:
@@ -42,35 +39,6 @@ def resistivity_at(material: Material, temperature: ArrayLike) -> FloatArray:
     if temperature.size and not (temperature.min() > -60.0 and temperature.max() < 250.0):
         raise ValueError("temperature must be above -60 and below 250")
     return material.resistivity * (1.0 + material.temperature_coefficient * (temperature - 20.0))
-
-
-def awg_diameter(gauge: ArrayLike) -> FloatArray:
-    """Return the bare diameter of a wire of American gauge.
-
-    Parameters
-    ----------
-    gauge : float or array
-        Gauge number; 0, 00, 000, 0000 are 0, -1, -2, -3. [AWG], -3 to 56
-
-    Returns
-    -------
-    float or array
-        Diameter. [m]
-
-    Raises
-    ------
-    ValueError
-        If the gauge is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    astm-b258: No. 36 is 0.0050 in, No. 0000 is 0.4600 in, 39 equal ratios between them.
-    """
-    gauge = np.asarray(gauge, dtype=float)
-    low, high = GAUGE_RANGE["gauge"]
-    if gauge.size and not (gauge.min() >= low and gauge.max() <= high):
-        raise ValueError(f"gauge must be between {low} and {high}")
-    return 0.127e-3 * 92.0 ** ((36.0 - gauge) / 39.0)
 
 
 def skin_depth(frequency: ArrayLike, resistivity: ArrayLike) -> FloatArray:

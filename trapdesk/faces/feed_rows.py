@@ -14,7 +14,6 @@ if TYPE_CHECKING:
     from ..services.figures import BandFigures, Figures
     from ..services.tuning import Element, TunerSetting
 
-PARTS = {"coil": "coil", "capacitor": "capacitor"}
 DIMENSIONS = {"coil": "inductance", "capacitor": "capacitance"}
 PLACES = {"series": "in series", "shunt": "across"}
 
