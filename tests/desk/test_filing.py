@@ -1,11 +1,13 @@
 """Files at the desk: open, new, recent, written over by somebody else; lasting choices."""
 
+import asyncio
 import os
+import re
 from dataclasses import replace
 
 import pytest
 
-from tests.desk.screens import go_to, opened, pressed, screen, settled, text, typed
+from tests.desk.screens import LONGEST, go_to, opened, pressed, screen, settled, text, typed
 from trapdesk.design.rules import check
 from trapdesk.faces.desk import config
 from trapdesk.faces.desk.config import Config
@@ -169,14 +171,23 @@ def test_a_region_fills_the_edges_of_new_designs_only(preset, region):
 
 async def test_choices_change_the_display_and_no_figure(hill):
     chosen = Config(units="imperial", region=2)
-    async with opened(document=store.find(hill), chosen=chosen) as (desk, _):
+    async with opened(document=store.find(hill), chosen=chosen) as (desk, pilot):
         feet = desk.session.figures
         # 9 m is 29.5276 ft: 0.3048 m to the foot.
         assert "29 ft 6.3 in" in text(desk)
-        assert "that is inner" in text(desk)
+        # An inch is 2.54 times as far as a centimetre.
+        assert "1 in  inner wires move" in text(desk)
+        for letter in "PHN":
+            await pressed(desk, pilot, letter)
+            await asyncio.wait_for(desk.session.aside.settled(), LONGEST)
+            await pilot.pause()
+            whole = desk.query_one("#answer").plain()
+            assert " ft " in whole or " in " in whole
+            bands = re.compile(r"\b(20|40) m\b")
+            assert not re.search(r"\d (m|cm|mm)\b", bands.sub("", whole)), letter
     async with opened(document=store.find(hill)) as (desk, _):
         metres = desk.session.figures
-        assert "that is inner" not in text(desk)
+        assert "1 cm  inner wires move" in text(desk)
     assert feet.design == metres.design
     assert {role: band.dip for role, band in feet.bands.items()} == {
         role: band.dip for role, band in metres.bands.items()

@@ -11,7 +11,7 @@ from ..services.choices import Choices, Point
 from .json_out import FORMAT
 from .layout import folded
 from .rummage_out import document_band
-from .shown import about, megahertz
+from .shown import about, imperial, measured, megahertz
 
 WORTH_LOSS, WORTH_WIDTH = 0.003, 0.03
 """Least change of a share, and of a width by its whole, that is told."""
@@ -51,8 +51,13 @@ def _table(title: str, unit: str, points: Sequence[Point], value: Any) -> list[s
             f"{100 * b.loss:>6.1f} %" + (f"{b.width / 1e3:>6.0f} kHz" if b.width else f"{'none':>10}")
             for b in point.bands.values()
         )
-        out += [f"{head}{cells}{point.volts:>6.0f} V{point.inner:>6.2f} m{point.end:>6.2f} m"]
+        out += [f"{head}{cells}{point.volts:>6.0f} V{_long(point.inner)}{_long(point.end)}"]
     return out
+
+
+def _long(length: float) -> str:
+    """Return a length as a column has it, feet in tenths where lengths are shown in feet."""
+    return f"{length / 0.3048:>5.1f} ft" if imperial("length") else f"{length:>6.2f} m"
 
 
 def _answer(points: Sequence[Point], what: str, value: Any) -> list[str]:
@@ -102,7 +107,7 @@ def _gain(present: Point, other: Point) -> str:
     shorter = 2 * (present.inner + present.end - other.inner - other.end)
     if abs(shorter) > 0.1:
         where = gains if shorter > 0 else losses
-        where.append(f"{abs(shorter):.1f} m {'less' if shorter > 0 else 'more'} wire")
+        where.append(f"{measured(abs(shorter), 'm', 1)} {'less' if shorter > 0 else 'more'} wire")
     if not gains and not losses:
         return "hardly any difference"
     kept = f"gains {', '.join(gains)}" if gains else "gains nothing"

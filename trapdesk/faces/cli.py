@@ -9,7 +9,8 @@ import argparse
 import difflib
 import os
 import sys
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
 from typing import Any, NoReturn, TextIO
 
 from .. import __version__
@@ -72,7 +73,8 @@ def _say(text: str, code: int) -> int:
 def _run(given: list[str]) -> int:
     if given and given[0] in VERBS:
         options = _parser_of(given[0]).parse_intermixed_args(given[1:])
-        return _write(VERBS[given[0]][1](options))
+        with _units_chosen():
+            return _write(VERBS[given[0]][1](options))
     parser = Parser(
         prog="trapdesk",
         usage="trapdesk [FILE] | VERB ...",
@@ -87,6 +89,22 @@ def _run(given: list[str]) -> int:
     if len(files) > 1 or (files and not os.path.lexists(files[0])):
         _refuse_verb(files)
     return _desk(files[0] if files else None)
+
+
+@contextmanager
+def _units_chosen() -> Iterator[None]:
+    """Show lengths in the units a person chose to last; what is wrong with the choices is told."""
+    from . import shown
+    from .desk import config
+
+    chosen, trouble = config.load(config.place(os.environ))
+    if trouble:
+        _say(trouble, 0)
+    before = shown.show_lengths_in(chosen.units)
+    try:
+        yield
+    finally:
+        shown.show_lengths_in(before)
 
 
 def _refuse_verb(files: list[str]) -> None:

@@ -15,7 +15,7 @@ from . import trap_json
 from .json_out import FORMAT, inputs
 from .layout import WIDTH, folded
 from .pairs import Name, need, read_pairs
-from .shown import about, exact, impedance_range, known, megahertz, percent
+from .shown import about, exact, impedance_range, known, measured, megahertz, percent
 from .trap_rows import adjustment_text, side_text
 
 EXAMPLE = "trapdesk coil former=40mm wire=AWG14 pitch=2.4mm turns=8 f=14.1MHz"
@@ -118,7 +118,7 @@ def _found(answer: CoilAnswer) -> Iterator[tuple[str, str]]:
             yield "then", adjustment_text(adjustment)
         if coil.turns_range is not None:
             yield "turns", f"{coil.turns_range[0]:.2f} to {coil.turns_range[1]:.2f}"
-            yield "wind first", f"{coil.wind} turns, {coil.cut:.2f} m of cable, then trim"
+            yield "wind first", f"{coil.wind} turns, {measured(coil.cut, 'm', 2)} of cable, then trim"
         yield "resonance", megahertz(answer.resonance, 4)
     doubt = answer.inductance_doubt
     at = f" at {megahertz(answer.frequency, 4)}"
@@ -141,10 +141,16 @@ def _found(answer: CoilAnswer) -> Iterator[tuple[str, str]]:
     if coil.most_turns is not None:
         yield "turns that fit", f"{coil.most_turns}"
     else:
-        yield "pitch", f"{coil.pitch * 1e3:.2f} mm"
-        yield "winding length", f"{coil.length * 1e3:.0f} mm, diameter {coil.diameter * 1e3:.1f} mm"
-    yield "cut", f"{coil.cut:.2f} m, {coil.wire_length:.2f} m of it on the coil"
-    yield "size", f"{coil.outer_diameter * 1e3:.0f} mm across, {coil.outer_length * 1e3:.0f} mm long"
+        yield "pitch", measured(coil.pitch, "mm", 2)
+        yield (
+            "winding length",
+            f"{measured(coil.length, 'mm', 0)}, diameter {measured(coil.diameter, 'mm', 1)}",
+        )
+    yield "cut", f"{measured(coil.cut, 'm', 2)}, {measured(coil.wire_length, 'm', 2)} of it on the coil"
+    yield (
+        "size",
+        f"{measured(coil.outer_diameter, 'mm', 0)} across, {measured(coil.outer_length, 'mm', 0)} long",
+    )
     yield "weight", f"about {coil.mass * 1e3:.0f} g without former and core"
     low, middle, high = (c * 1e12 for c in coil.self_capacitance)
     yield "its own capacitance", f"{middle:.1f} ({low:.1f} to {high:.1f}) pF"

@@ -11,7 +11,7 @@ from ..services.tolerance import Tolerance
 from . import tolerance_out, words
 from .layout import WIDTH, folded
 from .lines import band_name, title
-from .shown import about, centimetres, megahertz
+from .shown import about, centimetres, measured, megahertz
 
 STEPS = 5
 
@@ -98,12 +98,13 @@ def lines(figures: Figures, ensemble: Tolerance | None = None) -> list[str]:
 def _marks(figures: Figures) -> Iterator[str]:
     lengths = figures.lengths
     if lengths.end_mark is None:
-        yield f"Tape mark {lengths.inner_mark:.2f} m from the feed point. Both sides alike."
+        yield f"Tape mark {measured(lengths.inner_mark, 'm', 2)} from the feed point. Both sides alike."
         return
     trap = megahertz(figures.trap.resonance) if figures.trap else ""
-    yield (
-        f"Tape marks: inner {lengths.inner_mark:.2f} m, end {lengths.end_mark:.2f} m."
-        f" Traps {trap}. Both sides alike."
+    yield from folded(
+        "",
+        f"Tape marks: inner {measured(lengths.inner_mark, 'm', 2)}, end {measured(lengths.end_mark, 'm', 2)}."
+        f" Traps {trap}. Both sides alike.",
     )
 
 

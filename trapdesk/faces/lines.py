@@ -11,7 +11,7 @@ from ..engine.soils import GroundKind
 from ..errors import visible
 from . import words
 from .feed_rows import line_name
-from .shown import Shown, about, centimetres, exact, kilohertz_per_centimetre, known, megahertz, swr
+from .shown import Shown, about, centimetres, exact, kilohertz_per_step, known, measured, megahertz, swr
 
 if TYPE_CHECKING:
     from ..services.figures import BandFigures, Figures
@@ -87,7 +87,7 @@ def site_line(figures: Figures) -> str:
     site = figures.design.site
     text = f"{site.shape}, feed point at {exact(site.height, 'length')}"
     if site.shape is Shape.VEE and figures.lengths.end_height is not None:
-        text += f", ends at {known(figures.lengths.end_height, 0.1, 'length', 'm').number} m"
+        text += f", ends at {measured(figures.lengths.end_height, 'm', 1)}"
     return f"{text}, {ground_words(figures.design)}"
 
 
@@ -132,14 +132,14 @@ def wire_line(figures: Figures) -> str:
 
 
 def moves_line(figures: Figures) -> str:
-    """Return what a centimetre of each wire does, band by band."""
+    """Return what a centimetre, or an inch, of each wire does, band by band."""
     pieces = []
     for name in ("inner", "end"):
         parts = []
         for band in figures.bands.values():
             slope = getattr(band.effects, name) if band.effects else None
             if slope is not None:
-                parts += [f"{band_name(band)} by {kilohertz_per_centimetre(slope)}"]
+                parts += [f"{band_name(band)} by {kilohertz_per_step(slope)}"]
         if parts:
             pieces += [f"{name} wires move {' and '.join(parts)}"]
     if figures.trap is None:
@@ -172,11 +172,12 @@ def trap_line(figures: Figures) -> str:
 def check_line(figures: Figures) -> str:
     """Return the total length against a plain half wave."""
     lengths = figures.lengths
-    total = known(lengths.total, 2 * lengths.doubt, "length", "m").number
+    total = known(lengths.total, 2 * lengths.doubt, "length", "m")
     lower = figures.bands["lower"]
     return (
-        f"tip to tip {total} m, {100 * lengths.total / lengths.half_wave:.0f} % of a plain half wave at"
-        f" {megahertz(lower.aim)} ({lengths.half_wave:.1f} m)"
+        f"tip to tip {total.number} {total.unit},"
+        f" {100 * lengths.total / lengths.half_wave:.0f} % of a plain half wave at {megahertz(lower.aim)}"
+        f" ({measured(lengths.half_wave, 'm', 1)})"
     )
 
 

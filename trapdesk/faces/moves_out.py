@@ -14,7 +14,7 @@ from . import hill_card, move_words
 from .json_out import FORMAT
 from .layout import WIDTH, folded
 from .lines import band_name
-from .shown import megahertz, rounded, swr
+from .shown import fraction, imperial, megahertz, rounded, small_step, swr
 from .tolerance_out import percent
 
 ROLES = ("upper", "lower")
@@ -22,19 +22,21 @@ FEW = 3
 
 
 def _cm(length: float, *, sign: bool = False) -> str:
-    """Return a length in centimetres, halves where there are some."""
+    """Return a length in centimetres, halves where there are some, or in inches, without the unit."""
     value = 100 * length
-    text = f"{value:.1f}".removesuffix(".0")
+    text = fraction(length).removesuffix(" in") if imperial("length") else f"{value:.1f}".removesuffix(".0")
     return f"+{text}" if sign and value > 0 else text
 
 
 def done(wire: str, change: float, lacking: float) -> str:
     """Return what to do to a wire of both sides, in builder's words."""
     if lacking > 0:
-        return f"add {_cm(lacking)} cm to each {wire} wire after letting out all that is folded"
+        return (
+            f"add {_cm(lacking)} {small_step()[0]} to each {wire} wire after letting out all that is folded"
+        )
     if change < 0:
-        return f"fold {_cm(-change)} cm more of each {wire} wire back along itself"
-    return f"let out {_cm(change)} cm of each {wire} wire"
+        return f"fold {_cm(-change)} {small_step()[0]} more of each {wire} wire back along itself"
+    return f"let out {_cm(change)} {small_step()[0]} of each {wire} wire"
 
 
 def lines(found: NextMove, readings: Sequence[Reading], kept: Sequence[str] = ()) -> list[str]:
@@ -126,6 +128,8 @@ def _span(one: Learned, ends: tuple[float, float, float]) -> str:
     if one.dimension == "frequency":
         return f"{low / 1e3:.0f}-{high / 1e3:.0f} kHz"
     if one.dimension == "length":
+        if imperial("length"):
+            return f"{low / 0.3048:.2f}-{high / 0.3048:.2f} ft"
         return f"{low:.2f}-{high:.2f} m"
     if one.code == "soil":
         return f"{rounded(low, 0.1)} to {rounded(high, 0.1)}"
@@ -184,7 +188,8 @@ def _move(found: NextMove) -> Iterator[str]:
 
 
 def _range(low: float, high: float) -> str:
-    ends = f"{round(100 * low):+d} to {round(100 * high):+d} cm"
+    unit, size = small_step()
+    ends = f"{round(low / size):+d} to {round(high / size):+d} {unit}"
     return f"{ends} (folding is below 0)"
 
 
@@ -211,7 +216,7 @@ def _chances(found: NextMove, options: Sequence[Option]) -> Iterator[str]:
     bands = found.figures.bands
     head = "".join(f"{band_name(band):>8}" for band in bands.values())
     last = f"{'all':>8}" if len(bands) > 1 else ""
-    yield f"{f'Chance of SWR {limit:.3g} over the wanted part, moves in cm':<46}{head}{last}"
+    yield f"{f'Chance of SWR {limit:.3g} over the wanted part, moves in {small_step()[0]}':<46}{head}{last}"
     for option in options:
         cells = "".join(f"{percent(option.chances[role]):>8}" for role in bands)
         both = f"{percent(option.all_bands):>8}" if len(bands) > 1 else ""
@@ -249,9 +254,9 @@ def _cutting(found: NextMove, advice: Advice) -> Iterator[str]:
             continue
         name = _wire(found, wire)
         cut = advice.cut[wire]
-        text = f"{_cm(spare)} cm are folded back on each then. "
+        text = f"{_cm(spare)} {small_step()[0]} are folded back on each then. "
         text += (
-            f"{_cm(cut)} cm may be cut off, for good; keep the rest folded."
+            f"{_cm(cut)} {small_step()[0]} may be cut off, for good; keep the rest folded."
             if cut
             else "Cut nothing yet: a fold can be undone."
         )
@@ -278,14 +283,17 @@ def card(found: NextMove) -> list[str]:
             out.append(
                 f"  {band_name(band):<8}{place:>10.{3 if step < 1e4 else 2}f} MHz{'':<16}{cells}"[:WIDTH]
             )
-    out += folded("  ", "- fold, + let out, centimetres; one band's row at a time, the upper band first.")
+    unit = {"cm": "centimetres", "in": "inches"}[small_step()[0]]
+    out += folded("  ", f"- fold, + let out, {unit}; one band's row at a time, the upper band first.")
     return out
 
 
 def _card_move(move: float | None) -> str:
     if move is None:
         return ""
-    return "leave" if abs(move) < 0.005 else f"{100 * move:+.0f} cm"
+    if abs(move) < 0.005:
+        return "leave"
+    return f"{_cm(move, sign=True)} in" if imperial("length") else f"{100 * move:+.0f} cm"
 
 
 def moves_for(found: NextMove, role: str, off: float) -> tuple[float | None, float | None]:

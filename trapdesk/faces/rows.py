@@ -31,10 +31,12 @@ from .shown import (
     about,
     exact,
     impedance,
-    kilohertz_per_centimetre,
+    kilohertz_per_step,
     known,
+    measured,
     megahertz,
     percent,
+    small_step,
 )
 
 if TYPE_CHECKING:
@@ -263,7 +265,7 @@ def _wires(figures: Figures) -> Iterator[Row]:
         for tail, label in (("mark", "tape mark"), ("reel", "off the reel")):
             yield Row(
                 key=f"antenna.lengths.{name}_{tail}", group="wires", label=f"{name} wire, {label}",
-                value=f"{getattr(lengths, f'{name}_{tail}'):.2f}", unit="m",
+                **_cells(measured(getattr(lengths, f"{name}_{tail}"), "m", 2)),
             )  # fmt: skip
     reserve = design.antenna.lengths.reserve
     yield Row(
@@ -272,11 +274,19 @@ def _wires(figures: Figures) -> Iterator[Row]:
         why="left on when cutting, so that wire can still be let out",
     )  # fmt: skip
     total = known(lengths.total, 2 * lengths.doubt, "length", "m")
-    yield Row(key="antenna.lengths.total", group="wires", label="tip to tip", value=total.number, unit="m")
+    yield Row(
+        key="antenna.lengths.total", group="wires", label="tip to tip", value=total.number, unit=total.unit
+    )
     yield Row(
         key="antenna.lengths.half_wave", group="wires", label="plain half wave",
-        value=f"{lengths.half_wave:.1f}", unit="m", why="in free space at the lower aim, for comparison",
+        **_cells(measured(lengths.half_wave, "m", 1)), why="in free space at the lower aim, for comparison",
     )  # fmt: skip
+
+
+def _cells(text: str) -> dict[str, str]:
+    """Return a value and its unit apart."""
+    value, _, unit = text.rpartition(" ")
+    return {"value": value, "unit": unit}
 
 
 def _trap(figures: Figures) -> Iterator[Row]:
@@ -325,12 +335,13 @@ def _effects(band: BandFigures) -> Iterator[Row]:
     def row(tail: str, label: str, value: str, why: str) -> Row:
         return Row(key=f"{key}.{tail}", group="effects", label=f"{name} {label}", value=value, why=why)
 
-    for tail, label in (("inner", "per cm of inner wire"), ("end", "per cm of end wire")):
+    unit, _ = small_step()
+    for tail, label in (("inner", f"per {unit} of inner wire"), ("end", f"per {unit} of end wire")):
         slope = getattr(effects, tail)
         if slope is not None:
             way = "lower" if slope < 0 else "higher"
             why = f"both sides made longer: the band goes {way}"
-            yield row(tail, label, f"{kilohertz_per_centimetre(slope)} {way}", why)
+            yield row(tail, label, f"{kilohertz_per_step(slope)} {way}", why)
     if effects.trap is not None:
         way = "higher" if effects.trap > 0 else "lower"
         text = f"{about(abs(effects.trap) / 100, 'frequency')} {way}"
@@ -368,7 +379,7 @@ def summary(figures: Figures) -> tuple[Row, ...]:
     found += [row(f"bands.{b.role}", band_name(b), band_line(figures, b)) for b in figures.bands.values()]
     found += [row("antenna.lengths", "wires", wire_line(figures))]
     if moves := moves_line(figures):
-        found += [row("effects", "1 cm", moves)]
+        found += [row("effects", f"1 {small_step()[0]}", moves)]
     if figures.trap is not None:
         found += [row("antenna.trap", "trap", trap_line(figures))]
     found += [row("check", "check", check_line(figures))]

@@ -18,7 +18,7 @@ from ..services.shortage import Shortage
 from .json_out import FORMAT, SUFFIXES
 from .json_out import inputs as inputs_of
 from .layout import folded
-from .shown import about, centimetres, exact, kilohertz_per_centimetre, megahertz, swr
+from .shown import about, centimetres, exact, kilohertz_per_step, measured, megahertz, small_step, swr
 from .tolerance_out import STAGES, chance
 
 KINDS = {"solenoid": "coil", "stub": "coil and stub", "toroid": "ring core", "cable": "cable trap"}
@@ -121,7 +121,7 @@ def coil_text(row: Row) -> str:
         return f"wind {row.wound.wind} turns of {on}, then trim: {low:.1f} to {high:.1f} are needed"
     text = f"{turns_text(row.turns)} turns of {on}"
     pitch = getattr(row.trap.coil, "pitch", None)
-    return f"{text}, turn to turn {1e3 * pitch:.2f} mm" if pitch else text
+    return f"{text}, turn to turn {measured(pitch, 'mm', 2)}" if pitch else text
 
 
 def reason(row: Row, first: Row) -> str:
@@ -175,9 +175,10 @@ def _parts(row: Row, box: Box) -> str:
         with_ = f"with {capacitors_text(row, box)}"
     if len(row.pieces) > 1:
         with_ += f", together {about(row.capacitance, 'capacitance', 3)}"
-    size = f"{1e3 * row.length:.0f} mm long, {1e3 * row.diameter:.0f} mm wide"
+    size = f"{measured(row.length, 'mm', 0)} long, {measured(row.diameter, 'mm', 0)} wide"
     what = "cable" if row.kind == "cable" else "wire"
-    return f"{with_}; {size}, {row.wire_length:.2f} m of {what} a trap, Q about {about(row.q, 'ratio')}"
+    wire = measured(row.wire_length, "m", 2)
+    return f"{with_}; {size}, {wire} of {what} a trap, Q about {about(row.q, 'ratio')}"
 
 
 _TAKEN = {
@@ -207,8 +208,9 @@ def stub_text(stub: Stub) -> str:
 def adjustment(row: Row) -> str:
     """Return what can still be moved after building, and whether that covers what the parts may be off."""
     if row.stub is not None:
-        step = kilohertz_per_centimetre(row.stub.slope)
-        return f"snip the stub: each cm raises it by {step}, nothing lowers it again; seal its end"
+        step = kilohertz_per_step(row.stub.slope)
+        each = f"each {small_step()[0]} raises it by {step}"
+        return f"snip the stub: {each}, nothing lowers it again; seal its end"
     how = {
         "solenoid": ("turns together", "apart"),
         "toroid": ("turns bunched", "spread"),
@@ -225,7 +227,7 @@ def adjustment(row: Row) -> str:
 
 def _stock(row: Row) -> str:
     if row.stub is not None:
-        return f"{row.stub.left:.1f} m of cable left over"
+        return f"{measured(row.stub.left, 'm', 1)} of cable left over"
     if row.kind == "cable":
         return "no capacitors"
     left = int(row.spare)
@@ -261,8 +263,10 @@ def part_text(table: str, part: Any) -> str:
         rating = f", rated {about(part.voltage, 'voltage')}" if part.voltage else ""
         return f"two capacitors of {exact(part.capacitance, 'capacitance')}{rating}"
     if table == "formers":
-        return f"two pieces of tube of {1e3 * part.diameter:.0f} mm, {100 * part.length:.0f} cm long"
-    return f"enamelled wire of {1e3 * part.diameter:.1f} mm, {part.length:.0f} m"
+        return (
+            f"two pieces of tube of {measured(part.diameter, 'mm', 0)}, {measured(part.length, 'cm', 0)} long"
+        )
+    return f"enamelled wire of {measured(part.diameter, 'mm', 1)}, {measured(part.length, 'm', 0)}"
 
 
 def document(design: Design, box: Box, found: Found) -> dict[str, Any]:

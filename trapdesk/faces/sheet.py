@@ -20,7 +20,7 @@ from .lines import (
     station_line,
     title,
 )
-from .shown import about, exact, known
+from .shown import about, exact, imperial, known, measured, small_step
 
 
 def text(figures: Figures, ensemble: Tolerance | None = None) -> str:
@@ -80,16 +80,19 @@ def _wire_words(design: Design) -> str:
 
 def _wires(figures: Figures) -> Iterator[str]:
     lengths, own = figures.lengths, figures.design.antenna.lengths
-    doubt = known(lengths.doubt, lengths.doubt, "length", "cm").doubt
+    doubt = known(lengths.doubt, lengths.doubt, "length", "cm")
+    # Feet and inches take more room.
+    wide = 15 if imperial("length") else 12
     yield f"WIRES: {_wire_words(figures.design)}. Two of each."
-    yield f"  {'':<12}{'electrical':>12}{'tape mark':>12}{'off the reel':>14}"
+    yield f"  {'':<12}{'electrical':>{wide}}{'tape mark':>{wide}}{'off the reel':>{wide + 2}}"
     rows = [
         ("inner wire" if lengths.end else "each side", lengths.inner, lengths.inner_mark, lengths.inner_reel)
     ]
     if lengths.end is not None:
         rows += [("end wire", lengths.end, lengths.end_mark, lengths.end_reel)]
     for name, electrical, mark, reel in rows:
-        yield f"  {name:<12}{electrical:>10.2f} m{mark:>10.2f} m{reel:>12.2f} m"
+        cells = [measured(length, "m", 2) for length in (electrical, mark, reel)]
+        yield f"  {name:<12}{cells[0]:>{wide}}{cells[1]:>{wide}}{cells[2]:>{wide + 2}}"
     if lengths.end is not None:
         yield from folded(
             "  electrical  ", "inner: feed point to trap centre; end: trap centre to the wire's end."
@@ -111,17 +114,17 @@ def _wires(figures: Figures) -> Iterator[str]:
         yield from folded(
             "  stretch     ", f"marks are for slack wire, pulled it gets {100 * stretch:.1f} % longer."
         )
-    yield from folded("  known to    ", f"about {doubt} cm before measuring.")
+    yield from folded("  known to    ", f"about {doubt.doubt} {doubt.unit} before measuring.")
     yield from folded("  check       ", f"{check_line(figures)}.")
     if moves := moves_line(figures):
-        yield from folded("  one cm      ", f"{moves}.")
+        yield from folded(f"  {'one ' + small_step()[0]:<12}", f"{moves}.")
 
 
 def _parts(figures: Figures) -> Iterator[str]:
     lengths, design = figures.lengths, figures.design
     total = 2 * (lengths.inner_reel + (lengths.end_reel or 0.0))
     yield "PARTS"
-    yield from folded("  wire       ", f"{total:.1f} m off the reel in all")
+    yield from folded("  wire       ", f"{measured(total, 'm', 1)} off the reel in all")
     yield from trap_sheet.parts(figures)
     support = "two supports" if design.site.shape is Shape.FLAT else "one support, cords for the ends"
     yield from folded("  also       ", f"feed point insulator, choke, line, 2 end insulators, {support}")

@@ -11,6 +11,10 @@ from ..units.units import show, show_parts
 LARGEST_SWR = 10.0
 """A larger SWR is only said to be larger: nobody can use it, and no estimate of it holds."""
 
+_lengths = "metric"
+# One process serves one person, whose threads all show what that person chose.
+_FRACTION = 0.0254 / 4
+
 PLAIN_UNITS = {"power": "W", "current": "A"}
 """What is compared side by side keeps one unit."""
 
@@ -58,6 +62,10 @@ def known(value: float | None, doubt: float | None, dimension: str, unit: str = 
     kind = Dimension(dimension)
     if not doubt or not math.isfinite(doubt):
         return exact(value, dimension, unit)
+    if imperial(kind):
+        number, name = show_parts(value, kind, "imperial", resolution=resolution(doubt))
+        inches = doubt / 0.0254
+        return Shown(number=number, doubt=rounded(inches, resolution(inches)), unit=name)
     name = unit or PLAIN_UNITS.get(dimension) or show_parts(max(abs(value), resolution(doubt)), kind)[1]
     size = UNITS[kind].get(name)
     factor = size.bottom / size.top if size else 1.0
@@ -70,10 +78,14 @@ def exact(value: float | None, dimension: str, unit: str = "", digits: int = 5) 
     if value is None:
         return NONE
     kind = Dimension(dimension)
-    if unit and math.isfinite(value):
+    if unit and math.isfinite(value) and not imperial(kind):
         size = UNITS[kind][unit]
         return Shown(number=f"{value * size.bottom / size.top:.{digits}g}", unit=unit)
-    number, name = show_parts(value, kind, digits=digits)
+    if imperial(kind):
+        # What was set in metres seldom comes to few digits of an inch.
+        number, name = show_parts(value, kind, "imperial", digits=4 if abs(value) >= 0.3048 else 3)
+    else:
+        number, name = show_parts(value, kind, digits=digits)
     return Shown(number=number, unit=name)
 
 
@@ -81,7 +93,37 @@ def about(value: float, dimension: str, digits: int = 2) -> str:
     """Return a number that is only roughly known, with its unit; watts and amps stay watts and amps."""
     if dimension in ("power", "current") and 0 < abs(value) < 1:
         return f"{value:.{digits}g} {'W' if dimension == 'power' else 'A'}"
-    return show(value, Dimension(dimension), digits=digits)
+    return plain(value, dimension, digits)
+
+
+def plain(value: float, dimension: str, digits: int = 4) -> str:
+    """Return a number with its unit, a length in the units that lengths are shown in."""
+    kind = Dimension(dimension)
+    return show(value, kind, "imperial" if imperial(kind) else "metric", digits=digits)
+
+
+def show_lengths_in(system: str) -> str:
+    """Show lengths in a system of units from now on, metric or imperial; return the one before.
+
+    It is for display alone: no figure hangs on it.
+    """
+    global _lengths
+    before, _lengths = _lengths, system
+    return before
+
+
+def imperial(dimension: str) -> bool:
+    """Return whether what is measured is shown in feet and inches: a length, where that was chosen."""
+    return dimension == Dimension.LENGTH and _lengths == "imperial"
+
+
+def measured(length: float, unit: str, decimals: int) -> str:
+    """Return a length in a metric unit to so many decimals, or about as finely in feet and inches."""
+    size = UNITS[Dimension.LENGTH][unit]
+    if not imperial(Dimension.LENGTH):
+        return f"{length * size.bottom / size.top:.{decimals}f} {unit}"
+    step = 0.5 * 10.0**-decimals * size.top / size.bottom
+    return show(length, Dimension.LENGTH, "imperial", resolution=step)
 
 
 def swr(value: float, doubt: float = 0.05) -> str:
@@ -123,16 +165,34 @@ def impedance_range(value: complex) -> str:
     return impedance(value, step)
 
 
-def kilohertz_per_centimetre(slope: float) -> str:
-    """Return what one centimetre does, from Hz per metre, to two digits and no finer than a tenth."""
-    size = abs(slope) / 1e5
+def small_step() -> tuple[str, float]:
+    """Return the unit that wires are moved by, and how long it is in metres."""
+    return ("in", 0.0254) if imperial(Dimension.LENGTH) else ("cm", 0.01)
+
+
+def kilohertz_per_step(slope: float) -> str:
+    """Return what one centimetre or inch does, from Hz per metre, to two digits and no finer than a tenth."""
+    size = abs(slope) * small_step()[1] / 1e3
     if size < 0.1:
         return "under 0.1 kHz"
     return f"{size:.1f} kHz" if size < 10 else f"{float(f'{size:.2g}'):.0f} kHz"
 
 
 def centimetres(length: float) -> str:
-    """Return a length in whole centimetres, from half a centimetre down in millimetres."""
+    """Return a length in whole centimetres, below one in millimetres; where inches are shown, in quarters."""
+    if imperial(Dimension.LENGTH):
+        return fraction(abs(length)) if abs(length) >= 0.01 else f"{abs(length) / 0.0254:.2f} in"
     if abs(length) < 0.0095:
         return f"{abs(length) * 1e3:.0f} mm"
     return f"{abs(length) * 100:.0f} cm"
+
+
+def fraction(length: float) -> str:
+    """Return a length in inches and quarters of them, feet before them from three feet on."""
+    if abs(length) >= 0.9:
+        return show(length, Dimension.LENGTH, "imperial", resolution=_FRACTION)
+    quarters = round(abs(length) / _FRACTION)
+    whole, rest = divmod(quarters, 4)
+    part = ("", "1/4", "1/2", "3/4")[rest]
+    text = " ".join(piece for piece in (str(whole) if whole or not rest else "", part) if piece)
+    return f"{'-' if length < 0 and quarters else ''}{text} in"

@@ -15,7 +15,7 @@ from ..services.beliefs import CAUSES, Belief
 from ..services.causes import Shares
 from ..services.tolerance import Allowance, Scatter, Tolerance, Yield
 from .layout import WIDTH, folded
-from .shown import LARGEST_SWR, about, centimetres, megahertz, swr
+from .shown import LARGEST_SWR, about, centimetres, measured, megahertz, swr
 
 STAGES: dict[str, str] = {
     "as_cut": "as cut",
@@ -46,6 +46,7 @@ CAUSE_NAMES: dict[str, str] = {
     "coating": "coating",
     "site": "site",
     "aim": "aim reading",
+    "ratio": "coil to capacitor",
 }
 STEPS: dict[str, str] = {
     "tighter_capacitor": "capacitors of 1 %",
@@ -314,7 +315,7 @@ def _cutting(found: Tolerance) -> Iterator[str]:
     for allowance in found.allowances.values():
         yield from folded("", f"{allowance_text(found, allowance)}.", WIDTH - 2)
     wire = sum(2 * allowance.length for allowance in found.allowances.values())
-    yield from folded("", f"That is at most {wire:.1f} m more wire in all.", WIDTH - 2)
+    yield from folded("", f"That is at most {measured(wire, 'm', 1)} more wire in all.", WIDTH - 2)
 
 
 def wire_name(allowance: Allowance, alone: bool) -> str:
@@ -407,9 +408,15 @@ def varies(found: Tolerance) -> list[str]:
 
 def applies(cause: str, design: Design) -> bool:
     """Return whether a cause has anything to move in a design."""
-    of_trap = ("capacitor", "coil", "self_capacitance", "q", "tuning", "sealing", "temperature", "rain")
+    of_trap = ("capacitor", "coil", "q", "tuning", "sealing", "temperature", "rain")
     if cause in of_trap:
-        return design.antenna.trap is not None and cause != "self_capacitance"
+        trap = design.antenna.trap
+        if trap is None:
+            return False
+        # What was measured takes the place of what was believed of the parts.
+        return trap.measured is None or cause not in ("capacitor", "coil", "q")
+    if cause in ("self_capacitance", "ratio"):
+        return False
     if cause == "coating":
         return bool(design.antenna.wire.coating)
     if cause in ("height", "sag"):

@@ -11,7 +11,7 @@ from ..design.design import get
 from ..design.fields import SOLVE
 from ..errors import visible
 from .lines import band_name, inductance_text, turns_doubt
-from .shown import Shown, about, exact, impedance_range, known, megahertz, percent, swr
+from .shown import Shown, about, exact, impedance_range, known, measured, megahertz, percent, small_step, swr
 
 if TYPE_CHECKING:
     from ..services.figures import Adjustment, BandFigures, Figures, PartFigures, PartStress, TrapFigures
@@ -109,7 +109,7 @@ def adjustment_text(adjustment: Adjustment) -> str:
     up, down = WORDS[adjustment.what]
     text = f"{up} raises it"
     if adjustment.rate is not None:
-        text += f" {about(adjustment.rate / 100, 'frequency')} a cm"
+        text += f" {about(adjustment.rate * small_step()[1], 'frequency')} a {small_step()[0]}"
     text += f" by up to {about(adjustment.raises, 'frequency')}"
     if adjustment.lowers > HARDLY:
         text += f", {down} lowers it by up to {about(adjustment.lowers, 'frequency')}"
@@ -143,7 +143,7 @@ def _cable_turns(trap: TrapFigures, given: Callable[[str], str]) -> Iterator[Cel
         why="how the current spreads round the braid is not known: somewhere between",
     )  # fmt: skip
     yield _row(
-        "coil.wind", "wind first", f"{coil.wind} turns, {coil.cut:.2f} m of cable, then trim",
+        "coil.wind", "wind first", f"{coil.wind} turns, {measured(coil.cut, 'm', 2)} of cable, then trim",
         why="the next whole turn up, tails included",
     )  # fmt: skip
 
@@ -171,7 +171,7 @@ def part_text(part: PartFigures) -> str:
     if part.pieces > 1:
         text = f"{part.pieces} x {text}"
     if part.length is not None:
-        text += f", cut {part.length * 100:.1f} cm"
+        text += f", cut {measured(part.length, 'cm', 1)}"
     if part.drift is not None:
         text += f", {part.drift * 1e6:+.0f} ppm/K"
     return text
@@ -234,16 +234,18 @@ def _coil(figures: Figures, given: Callable[[str], str], of_cable: bool) -> Iter
         yield _row(
             "coil.diameter",
             "coil diameter",
-            f"{coil.diameter * 1e3:.1f} mm",
+            measured(coil.diameter, "mm", 1),
             why=f"centre to centre of the {wire}",
         )
-        yield _row("coil.length", "winding length", f"{coil.length * 1e3:.0f} mm", why="turns times pitch")
+        yield _row("coil.length", "winding length", measured(coil.length, "mm", 0), why="turns times pitch")
         if coil.pitch:
-            yield _row("coil.pitch", "pitch", f"{coil.pitch * 1e3:.2f} mm", given=given("coil.pitch"))
+            yield _row("coil.pitch", "pitch", measured(coil.pitch, "mm", 2), given=given("coil.pitch"))
     name = "cable" if of_cable else "wire"
-    yield _row("coil.wire", f"{name} in the coil", f"{coil.wire_length:.2f} m", why="without the tails")
+    yield _row(
+        "coil.wire", f"{name} in the coil", measured(coil.wire_length, "m", 2), why="without the tails"
+    )
     if coil.outer_diameter:
-        size = f"{coil.outer_diameter * 1e3:.0f} mm across, {coil.outer_length * 1e3:.0f} mm long"
+        size = f"{measured(coil.outer_diameter, 'mm', 0)} across, {measured(coil.outer_length, 'mm', 0)} long"
         yield _row("coil.size", "size", size)
         yield _row(
             "coil.mass", "weight", f"{coil.mass * 1e3:.0f} g", why="without former, core and capacitor; about"

@@ -11,7 +11,7 @@ from ..services.coils import CUT_TAIL
 from ..services.figures import Figures
 from .layout import folded
 from .lines import inductance_text, rating, turns_doubt
-from .shown import about, exact, known, megahertz, percent
+from .shown import about, exact, known, measured, megahertz, percent
 from .trap_rows import adjustment_text, part_label, part_text, side_text
 
 ALIKE = 0.005
@@ -37,7 +37,7 @@ def parts(figures: Figures) -> Iterator[str]:
             yield from folded("  capacitors ", f"2 of {fitted}, {volts}")
     if trap.coil is not None:
         name = "cable     " if of_cable else "coil wire "
-        yield from folded(f"  {name} ", f"2 of {_cut(figures):.2f} m")
+        yield from folded(f"  {name} ", f"2 of {measured(_cut(figures), 'm', 2)}")
 
 
 def _cut(figures: Figures) -> float:
@@ -84,9 +84,9 @@ def _solenoid(figures: Figures, made: Solenoid) -> Iterator[str]:
     )
     yield from folded(
         HEAD,
-        f"Mean diameter {coil.diameter * 1e3:.1f} mm (former and one wire), winding length"
-        f" {coil.length * 1e3:.1f} mm (turns times pitch). Cut {_cut(figures):.2f} m:"
-        f" {coil.wire_length:.2f} m in the turns, {CUT_TAIL * 100:.0f} cm for each tail"
+        f"Mean diameter {measured(coil.diameter, 'mm', 1)} (former and one wire), winding length"
+        f" {measured(coil.length, 'mm', 1)} (turns times pitch). Cut {measured(_cut(figures), 'm', 2)}:"
+        f" {measured(coil.wire_length, 'm', 2)} in the turns, {measured(CUT_TAIL, 'cm', 0)} for each tail"
         + (f", {exact(made.lead, 'length')} for each lead." if made.lead else "."),
     )
     yield from folded(
@@ -108,7 +108,8 @@ def _cable(figures: Figures, made: CableCoil) -> Iterator[str]:
     )
     yield from folded(
         HEAD,
-        f"{first} Cut {coil.cut:.2f} m of cable, {exact(made.tail, 'length')} of it for each tail.",
+        f"{first} Cut {measured(coil.cut, 'm', 2)} of cable,"
+        f" {exact(made.tail, 'length')} of it for each tail.",
     )
     where = (
         "the two ends that are left go to the wires"
@@ -131,7 +132,7 @@ def _toroid(figures: Figures, made: Toroid) -> Iterator[str]:
         f" {exact(made.outer, 'length')} x {exact(made.inner, 'length')} x {exact(made.height, 'length')},"
         f" {exact(made.inductance_index, 'inductance')} a turn; {coil.most_turns} would fit.",
     )
-    yield from folded(HEAD, f"Cut {_cut(figures):.2f} m. Wind one turn more and take off.")
+    yield from folded(HEAD, f"Cut {measured(_cut(figures), 'm', 2)}. Wind one turn more and take off.")
 
 
 KINDS: dict[type, Callable[[Figures, Any], Iterator[str]]] = {

@@ -10,7 +10,6 @@ from ..design.design import Design, known_at
 from ..errors import NoAnswer, visible
 from ..services.levels import Level
 from ..units.unit_names import Dimension
-from ..units.units import show
 from . import shown
 
 if TYPE_CHECKING:
@@ -336,10 +335,10 @@ def amount(value: float, dimension: str, as_: str = "") -> str:
     if not math.isfinite(value):
         return "no number"
     if as_ == "miss":
-        return f"{show(abs(value), Dimension(dimension), digits=2)} {'above' if value > 0 else 'below'}"
+        return f"{shown.plain(abs(value), dimension, 2)} {'above' if value > 0 else 'below'}"
     # A frequency is told finely when it is a place on the dial, to two digits when it is a distance.
     if dimension == "frequency":
-        return shown.megahertz(value) if value >= 1e6 else show(value, Dimension(dimension), digits=2)
+        return shown.megahertz(value) if value >= 1e6 else shown.plain(value, dimension, 2)
     return shown.about(value, dimension)
 
 
@@ -372,7 +371,7 @@ def no_answer(error: NoAnswer) -> str:
         if kind is None or not words:
             words, text = name, f"{value:.4g}"
         else:
-            text = show(value, kind)
+            text = shown.plain(value, kind)
         numbers.append(f"{visible(words.replace('_', ' '))} {text}")
     line = f"{visible(error.where, 120)}: {reason}" if error.where else reason
     if numbers:

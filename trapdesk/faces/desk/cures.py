@@ -11,6 +11,7 @@ from ...design.design import Design, Shape, get, with_value
 from ...design.fields import SOLVE
 from ...units.unit_names import Dimension
 from ...units.units import show
+from .. import shown
 
 if TYPE_CHECKING:
     from ...services.figures import Figures, Finding
@@ -74,7 +75,7 @@ def _raise_ends(figures: Figures, finding: Finding) -> tuple[Design, str] | None
     site = replace(design.site, height=round(design.site.height + rise, 6))
     if site.shape is Shape.VEE and site.end_height is not None:
         site = replace(site, end_height=round(site.end_height + rise, 6))
-    return replace(design, site=site), f"height {show(site.height, Dimension.LENGTH)}"
+    return replace(design, site=site), f"height {shown.plain(site.height, 'length')}"
 
 
 def _trap_to_band(figures: Figures, finding: Finding) -> tuple[Design, str] | None:

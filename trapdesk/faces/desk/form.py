@@ -17,6 +17,7 @@ from ...errors import BadInput, Fault, visible
 from ...units import prints
 from ...units.units import Dimension, read, show, to_text
 from .. import rows as presenter
+from .. import shown
 from .kinds import begun, mended
 from .lists import list_of, read_count, with_count
 from .optional import ADDED, PARTS, own_line, put_part
@@ -108,8 +109,8 @@ def drawer_of(key: str) -> str:
     return max(heads)[1] if heads else ""
 
 
-def rows(design: Design, figures: Figures | None, units: str = "metric") -> dict[str, list[FormRow]]:
-    """Return the rows of every drawer, lengths in a system of units; headings are rows without a key."""
+def rows(design: Design, figures: Figures | None) -> dict[str, list[FormRow]]:
+    """Return the rows of every drawer; headings are rows without a key."""
     drawers: dict[str, list[FormRow]] = {name: [] for name in DRAWERS}
     answers = _answers(figures)
     for key, known, value in walk(design):
@@ -142,21 +143,10 @@ def rows(design: Design, figures: Figures | None, units: str = "metric") -> dict
                 row = replace(row, known=replace(known, label="kind"), listed=key.rpartition(".")[0])
             drawers[drawer].append(row)
     # The upper band comes first wherever bands are shown; its row of presence divides the two.
-    if units != "metric":
-        drawers = {name: [in_units(row, figures, units) for row in made] for name, made in drawers.items()}
     bands = drawers["Bands"]
     divide = next(place for place, row in enumerate(bands) if row.key == "bands.upper")
     drawers["Bands"] = bands[divide:] + bands[:divide]
     return drawers
-
-
-def in_units(row: FormRow, figures: Figures | None, units: str) -> FormRow:
-    """Return a row with its length, set or found, in a system of units; any other row as it is."""
-    value = found(figures, row.key) if row.value in (None, SOLVE) else row.value
-    if row.known.dimension != Dimension.LENGTH or not isinstance(value, float):
-        return row
-    digits = 4 if row.value is value else 3
-    return replace(row, text=show(value, Dimension.LENGTH, units, digits=digits))
 
 
 def _heading(text: str) -> FormRow:
@@ -249,6 +239,8 @@ def starting_text(row: FormRow) -> str:
         return "solve"
     if row.value is None:
         return ""
+    if shown.imperial(row.known.dimension):
+        return row.text
     return _percent(row.known, row.value) or to_text(row.value, Dimension(row.known.dimension))
 
 

@@ -10,10 +10,26 @@ from ...design.capacitor_kinds import GivenCapacitor
 from ...design.design import Antenna, Band, Bands, Design, Lengths
 from ...design.fields import SOLVE
 from ...design.parts import Trap
+from ...design.rules import check
 from ...errors import BadInput, Fault
 from ...store import store
 from ...store.store import Document
-from .config import EDGES, MEGA, Config, filled
+from .config import Config
+
+MEGA = 1e6
+EDGES: dict[str, dict[int, tuple[float, float]]] = {
+    "160 m": {1: (1.81, 1.85), 2: (1.8, 2.0), 3: (1.8, 2.0)},
+    "80 m": {1: (3.5, 3.8), 2: (3.5, 4.0), 3: (3.5, 3.9)},
+    "40 m": {1: (7.0, 7.2), 2: (7.0, 7.3), 3: (7.0, 7.2)},
+    "30 m": dict.fromkeys((1, 2, 3), (10.1, 10.15)),
+    "20 m": dict.fromkeys((1, 2, 3), (14.0, 14.35)),
+    "17 m": dict.fromkeys((1, 2, 3), (18.068, 18.168)),
+    "15 m": dict.fromkeys((1, 2, 3), (21.0, 21.45)),
+    "12 m": dict.fromkeys((1, 2, 3), (24.89, 24.99)),
+    "10 m": dict.fromkeys((1, 2, 3), (28.0, 29.7)),
+}
+"""Edges of the amateur bands by ITU region, in MHz: Radio Regulations article 5, from memory; national rules
+decide."""
 
 REACTANCE = 250.0
 """Reactance of the capacitor a new trap begins with. Common practice, no source. [ohm]"""
@@ -63,3 +79,19 @@ def _trap(upper: Band) -> Trap:
     size = min(_E12, key=lambda step: abs(math.log(step * decade / farads))) * decade
     capacitor = GivenCapacitor(capacitance=float(f"{size:.3g}"))
     return replace(Trap(), resonance=upper.low, capacitor=capacitor)
+
+
+def filled(design: Design, config: Config) -> Design:
+    """Return a new design with the band edges of the region that was chosen, where its rules allow them."""
+    for role, band in design.bands.items():
+        edges = EDGES.get(band.name, {}).get(config.region or 0)
+        if edges is not None:
+            design = _with_edges(design, role, band, edges)
+    return design
+
+
+def _with_edges(design: Design, role: str, band: Band, edges: tuple[float, float]) -> Design:
+    low, high = (round(edge * MEGA) for edge in edges)
+    bands = replace(design.bands, **{role: replace(band, low=float(low), high=float(high))})
+    changed = replace(design, bands=bands)
+    return design if check(changed) else changed

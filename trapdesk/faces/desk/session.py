@@ -24,7 +24,7 @@ class Session:
     Every change of the design begins a new generation; an answer of an older one is dropped. `note` is called
     after each change of the design or of where it is kept, with whether another design was opened. `ghost`
     are figures to compare with; `cursor` is a place along the axes of the plots, from 0 to 1; `zoom` is the
-    role of the one band to plot, empty for all. `units` is the system in which lengths are shown.
+    role of the one band to plot, empty for all.
     `settling` is true for a moment after a change.
     """
 
@@ -37,7 +37,6 @@ class Session:
         self.no_answer = ""
         self.unsafe = False
         self.settling = False
-        self.units = "metric"
         self.generation = 0
         self.answered = -1
         self.aside = Aside(self)

@@ -2,18 +2,11 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
-
 from ....services.levels import Level
-from ....units.unit_names import Dimension
-from ....units.units import show
 from ... import rows as presenter
 from ...layout import GROUPS
 from ..lines import Line, wrapped
 from ..view import Sight
-
-if TYPE_CHECKING:
-    from ....services.figures import Figures
 
 MARKS = {Level.FINE: "  ", Level.WATCH: "* ", Level.STOP: "! "}
 STYLES = {Level.FINE: "text", Level.WATCH: "watch", Level.STOP: "stop"}
@@ -32,21 +25,7 @@ def answer_lines(sight: Sight) -> list[Line]:
     for row in presenter.summary(figures):
         if row.key not in skipped:
             lines += labelled(row.label, row.value, sight.width)
-        if row.key == "antenna.lengths" and sight.session.units != "metric":
-            lines += labelled("", _wires_in(figures, sight.session.units), sight.width)
     return lines
-
-
-def _wires_in(figures: Figures, units: str) -> str:
-    """Return the wires of one side in other units."""
-    lengths = figures.lengths
-    pairs = (("inner", lengths.inner), ("end", lengths.end))
-    shown = [
-        f"{name} {show(length, Dimension.LENGTH, units, resolution=max(lengths.doubt, 1e-3))}"
-        for name, length in pairs
-        if length is not None
-    ]
-    return "that is " + ", ".join(shown)
 
 
 def labelled(label: str, text: str, width: int, style: str = "text") -> list[Line]:

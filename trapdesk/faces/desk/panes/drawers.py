@@ -66,7 +66,7 @@ class DrawersPane(Lines):
         return self.typed is not None
 
     def _form(self) -> dict[str, list[FormRow]]:
-        return form.rows(self.session.design, self.session.figures, self.session.units)
+        return form.rows(self.session.design, self.session.figures)
 
     def repaint(self) -> None:
         """Make the rows anew from the session and show them."""

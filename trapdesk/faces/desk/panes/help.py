@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
-from ....units.units import Dimension, show
+from ....units.unit_names import Dimension
+from ...shown import plain
 from ..form import FormRow
 from ..lines import Line, wrapped
 from ..lists import MOST
@@ -86,9 +87,9 @@ def _limits(row: FormRow) -> str:
     kind = Dimension(known.dimension)
     pieces = []
     if known.low is not None:
-        pieces.append(f"from {show(known.low, kind)}")
+        pieces.append(f"from {plain(known.low, kind)}")
     if known.above is not None:
-        pieces.append(f"above {show(known.above, kind)}")
+        pieces.append(f"above {plain(known.above, kind)}")
     if known.high is not None:
-        pieces.append(f"up to {show(known.high, kind)}")
+        pieces.append(f"up to {plain(known.high, kind)}")
     return " ".join(pieces)
