@@ -5,27 +5,18 @@ import math
 from dataclasses import replace
 from itertools import combinations_with_replacement
 
-import numpy as np
 import pytest
-from scipy.optimize import brentq
 
 from trapdesk.design.box import Box, Capacitor, Core, Former, Wire
-from trapdesk.design.capacitor_kinds import GivenCapacitor
-from trapdesk.design.fields import SOLVE
-from trapdesk.design.parts import Trap
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import cli, rummage_out
-from trapdesk.services.box_parts import capacitor_part, solenoid_part
 from trapdesk.services.box_search import tank
-from trapdesk.services.coils import COIL_DOUBT
 from trapdesk.services.combos import PIECES, WAYS, combos
-from trapdesk.services.offers import END_ROOM, SPREAD, TAIL
+from trapdesk.services.offers import END_ROOM
 from trapdesk.services.port_grid import PortGrid
 from trapdesk.services.rummage import rummage, take, wanted_resonance
-from trapdesk.services.scoring import cost
 from trapdesk.services.solve import solve
 from trapdesk.services.trap import build
-from trapdesk.services.winders import SPACINGS
 from trapdesk.store import store
 from trapdesk.store.box_read import find_box
 
@@ -204,141 +195,6 @@ def test_a_set_length_stays():
     full = solve(take(fixed, row))
     assert row.outcome.inner == 5.1
     assert row.outcome.end == pytest.approx(full.lengths.end, abs=4e-3)
-
-
-# Ranking by force -----------------------------------------------------------------------------------------
-
-
-def small_box(seed):
-    random = np.random.default_rng(seed)
-    diameters = random.choice([0.04, 0.05, 0.063, 0.075, 0.09], 3, replace=False)
-    wires = random.choice([1.25e-3, 1.4e-3, 1.6e-3, 1.8e-3, 2e-3], 3, replace=False)
-    values = random.choice([15, 22, 27, 33, 39, 47, 56, 68, 82, 100], 6, replace=False)
-    counts = random.permutation([2, 2, 2, 1, 1, 1])
-    return Box(
-        formers=tuple(
-            Former(name=f"f{i}", diameter=float(d), length=float(random.uniform(0.032, 0.042)), count=2)
-            for i, d in enumerate(diameters)
-        ),
-        wires=tuple(
-            Wire(
-                name=f"w{i}", diameter=float(d), coating=float(0.03 * d), length=float(random.uniform(4, 12))
-            )
-            for i, d in enumerate(wires)
-        ),
-        capacitors=tuple(
-            Capacitor(
-                capacitance=float(c) * 1e-12,
-                tolerance=float(random.choice([0.02, 0.05, 0.1])),
-                voltage=float(random.choice([500, 1000, 2000, 3000])),
-                q=float(random.choice([500, 1000, 2000])),
-                count=float(n),
-            )
-            for c, n in zip(values, counts, strict=True)
-        ),
-    )
-
-
-def force(design, box):
-    """Return the best of each former and wire as (cost, former, wire, turns, pieces), all by full solves."""
-    wanted, found, seen = wanted_resonance(design), {}, set()
-    joined = {key: value for key, value in by_hand(box.capacitors).items() if 6e-12 < value[0] < 400e-12}
-    for former in box.formers:
-        for wire in box.wires:
-            for spacing in SPACINGS:
-                needed = asked(wanted, former, wire, spacing * wire.closest)
-                for (way, pieces), (c, _, tolerance, volts) in joined.items():
-                    turns = next((n for n, least in needed.items() if least <= c), None)
-                    key = (former.name, wire.name, turns, way, pieces)
-                    # Two turns that are enough already are none; another spacing may come to the same coil.
-                    if turns in (None, 2.0) or key in seen:
-                        continue
-                    seen.add(key)
-                    one = forced(design, box, wanted, former, wire, turns, way, pieces, tolerance, volts)
-                    if one is not None:
-                        key = (former.name, wire.name)
-                        found[key] = min(found.get(key, one), one)
-    return sorted(found.values())
-
-
-def asked(wanted, former, wire, pitch):
-    """Return what capacitance each number of half turns asks for, by the solved coil."""
-    found = {}
-    for turns in np.arange(2.0, (former.length - 2 * END_ROOM) / pitch, 0.5):
-        coil = solenoid_part(former, wire, pitch, float(turns))
-        try:
-            found[float(turns)] = build(
-                Trap(resonance=wanted, coil=coil, capacitor=GivenCapacitor(capacitance=SOLVE))
-            ).fitted
-        except NoAnswer:
-            break
-    return found
-
-
-def forced(design, box, wanted, former, wire, up, way, pieces, tolerance, volts):
-    room = former.length - 2 * END_ROOM
-    capacitor = capacitor_part(box.capacitors, way, pieces)
-
-    def trap(turns, pitch):
-        return Trap(resonance=SOLVE, coil=solenoid_part(former, wire, pitch, turns), capacitor=capacitor)
-
-    def high(turns, pitch):
-        return math.log(build(trap(turns, pitch)).resonance / wanted)
-
-    if high(up, room / up) < 0 or high(up, wire.closest) > 0:
-        return None
-    pitch = brentq(lambda p: high(up, p), wire.closest, room / up, xtol=1e-7)
-    made = trap(up, pitch)
-    coil = build(made).wound
-    if 2 * (coil.wire_length + 2 * TAIL) > wire.length:
-        return None
-    body = max(design.antenna.trap.body, math.ceil((coil.length + 0.02) * 100) / 100)
-    taken = replace(design, antenna=replace(design.antenna, trap=replace(made, body=body)))
-    try:
-        full = solve(taken)
-    except NoAnswer:
-        return None
-    reactance = 2 * math.pi * wanted * full.trap.inductance
-    worst = max(b.worst_stress.peak_voltage for b in full.bands.values())
-    if worst > volts or not 70 <= reactance <= 640:
-        return None
-    # How far the resonance moves with the pitch, by the solved coil itself.
-    slope = (
-        (high(up, pitch * 1.005) - high(up, pitch / 1.005)) / (2 * math.log(1.005))
-        if pitch > 1.005 * wire.closest
-        else (high(up, pitch * 1.01) - high(up, pitch)) / math.log(1.01)
-    )
-    # What the coil adds of its own is known to a factor of two either way.
-    own = build(made).self_capacitance[1]
-    off = tolerance / 2 + COIL_DOUBT / 2 + math.log(2) / 2 * own / build(made).capacitance
-    down = slope * math.log(pitch / wire.closest)
-    rise = slope * math.log(max(min(SPREAD, room / coil.length), 1.0))
-    points = cost(
-        losses=[b.shares.trap for b in full.bands.values()],
-        fillings=[
-            math.inf if b.width is None else (w[1] - w[0]) / b.width
-            for b, w in ((b, dict(design.bands.items())[r].wanted_edges) for r, b in full.bands.items())
-        ],
-        volts_share=worst / volts,
-        rated=True,
-        length=coil.length,
-        diameter=coil.diameter,
-        pieces=len(pieces),
-        uncovered=max(off - down, 0) + max(off - rise, 0),
-        spare=min(box.capacitors[i].count - 2 * pieces.count(i) for i in pieces),
-    )
-    return float(points.total), former.name, wire.name, up, pieces
-
-
-@pytest.mark.parametrize(("name", "seed"), [("40-20-vee", 11), ("20-10-flat", 12), ("80-40-flat", 13)])
-def test_ranking_is_that_of_trying_everything(name, seed):
-    design, box = preset(name), small_box(seed)
-    expected = force(design, box)[:5]
-    rows = finished(design, box).rows[:5]
-    assert len(expected) >= 3
-    assert [(r.former, r.wire, r.turns, r.pieces) for r in rows] == [one[1:] for one in expected]
-    for row, one in zip(rows, expected, strict=True):
-        assert float(row.cost.total) == pytest.approx(one[0], abs=0.1)
 
 
 # Progress and shortage ------------------------------------------------------------------------------------

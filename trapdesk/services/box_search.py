@@ -42,6 +42,8 @@ FIRST_LOOK, FIRST_ROWS = 10, 3
 """So many pairs are looked into to show a few rows, before all of them are, in earnest."""
 Joined = dict[str, Combos]
 """Capacitors to try, by kind of trap."""
+MOST_OWN = 0.5
+"""Part of a trap's capacitance that its coil may add itself and still be tried. [1]"""
 BODY_ROOM = 0.02
 """How much longer a trap is than its winding. [m], an estimate"""
 
@@ -161,7 +163,7 @@ class Search:
 
     def capacitors(self, box: Box) -> Joined:
         """Return for each kind of trap the capacitors worth trying with every coil, by rising capacitance."""
-        low, high = self.range[-1] * 0.9, self.range[0]
+        low, high = self.range[-1] * (1 - MOST_OWN), self.range[0]
         pieces = self._best(combos(box.capacitors, low, high))
         cut = stubs(box.cables, self.wanted, low, high)
         return {"solenoid": pieces, "stub": cut, "toroid": together((pieces, cut)), "cable": NO_COMBOS}
