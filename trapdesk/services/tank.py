@@ -6,8 +6,8 @@ from types import MappingProxyType
 
 import numpy as np
 
-from trapdesk.engine import resonator
-from trapdesk.engine.tank import Disagreement, TankQuantity, TankStatus, solve_tank
+from ..engine import resonator
+from ..engine.tank import Disagreement, TankQuantity, TankStatus, solve_tank
 
 
 @dataclass(frozen=True, kw_only=True)

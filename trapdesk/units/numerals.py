@@ -4,7 +4,7 @@ import math
 import re
 from collections.abc import Callable
 
-from trapdesk.errors import BadInput
+from ..errors import BadInput
 
 Refuse = Callable[..., BadInput]
 """Makes the refusal of a text from a code, with limit and help as keywords."""

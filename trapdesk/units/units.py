@@ -10,8 +10,8 @@ import re
 from dataclasses import dataclass
 from typing import Any
 
-from trapdesk.errors import BadInput, Fault
-from trapdesk.units.numerals import (
+from ..errors import BadInput, Fault
+from .numerals import (
     NUMBER,
     Number,
     Refuse,
@@ -26,7 +26,7 @@ from trapdesk.units.numerals import (
     snapped,
     to_one,
 )
-from trapdesk.units.unit_names import (
+from .unit_names import (
     DESCRIPTIONS,
     FOOT,
     IMPERIAL,
