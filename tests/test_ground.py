@@ -316,7 +316,7 @@ def test_gauss_rule_is_exact_for_polynomials(count):
 
 def test_nonsense_is_refused():
     one = np.ones(1)
-    with pytest.raises(ValueError, match="ground: space"):
+    with pytest.raises(ValueError, match="space reflects nothing"):
         reflected_kernels(one, one, one, Ground(kind=GroundKind.SPACE))
     for height in (0.0, -1.0, math.nan):
         for ground in (MIRROR, soil(5e-3, 13.0)):

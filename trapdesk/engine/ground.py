@@ -92,9 +92,9 @@ def reflected_kernels(
     brought to one scalar potential by a change of gauge (`michalski-zheng-1990`, formulation C).
     """
     if ground.kind is GroundKind.SPACE:
-        raise ValueError("ground: space reflects nothing; limit: mirror or soil")
+        raise ValueError("ground must be a mirror or soil: space reflects nothing")
     if not np.all(height_sum > 0):
-        raise ValueError("height_sum: must be > 0 for every pair")
+        raise ValueError("height_sum must be above 0 for every pair")
     if ground.kind is GroundKind.MIRROR:
         image = np.hypot(distance, height_sum)
         wave = np.exp(-2j * np.pi / C0 * frequency[:, None] * image) / image
@@ -218,7 +218,7 @@ def fresnel(cosine: np.ndarray, index_squared: np.ndarray) -> tuple[np.ndarray, 
     Definition: Fresnel's equations.
     """
     if not np.all((cosine >= 0) & (cosine <= 1)):
-        raise ValueError("cosine: must be within 0 and 1")
+        raise ValueError("cosine must be within 0 and 1")
     root = np.sqrt(index_squared - 1 + cosine**2)
     horizontal = (cosine - root) / (cosine + root)
     vertical = (index_squared * cosine - root) / (index_squared * cosine + root)

@@ -83,7 +83,7 @@ def plan_side(side: Side, wavelength: float) -> Plan:
     Derived here: elements grow from `GAP` to a share of the wavelength, as convergence asks.
     """
     if not wavelength > 0:
-        raise ValueError("wavelength: must be > 0")
+        raise ValueError("wavelength must be above 0")
     longest = wavelength / COARSE
     return tuple(max(2, round(2 * _cumulative(length / 2 - GAP, longest))) for length in side.stretches)
 

@@ -103,7 +103,7 @@ def plan(wire: Wire, frequency: float) -> Plan:
     Derived here, see `mesh.plan_side`.
     """
     if not frequency > 0:
-        raise ValueError("frequency: must be > 0")
+        raise ValueError("frequency must be above 0")
     return plan_side(wire.sides()[0], C0 / frequency)
 
 
@@ -234,9 +234,9 @@ def solve_whole(
 def _checked(frequency: np.ndarray, ground: Ground, lowest: float) -> np.ndarray:
     frequency = np.atleast_1d(np.asarray(frequency, float))
     if not np.all(frequency > 0):
-        raise ValueError("frequency: must be > 0")
+        raise ValueError("frequency must be above 0")
     if ground.kind is not GroundKind.SPACE and not lowest > 0:
-        raise ValueError("wire: its ends must be above the ground")
+        raise ValueError("wire must have its ends above the ground")
     return frequency
 
 
