@@ -34,7 +34,7 @@ NAMES: dict[str, Name] = {
 }
 
 
-def cable_named(text: str) -> str:
+def cable_named(text: str, where: str = "type") -> str:
     """Return the type a person named, with or without dashes and the ending /U; BadInput for none of ours."""
 
     def plain(name: str) -> str:
@@ -43,8 +43,11 @@ def cable_named(text: str) -> str:
     for name in (*CABLES, OWN):
         if plain(name) == plain(text):
             return name
-    help = f"with Z0, VF and loss of its own: {OWN}"
-    raise BadInput(Fault("type", "unknown_choice", text, ", ".join((*CABLES, OWN)), help))
+    listed = ", ".join(CABLES)
+    if not text.strip():
+        raise BadInput(Fault(where, "empty", help=f"one of {listed}"))
+    help = f"with Z0, VF and loss of its own: {OWN}" if where == "type" else ""
+    raise BadInput(Fault(where, "unknown_choice", text, f"{listed}, {OWN}", help))
 
 
 def answer_to(texts: Sequence[str]) -> LoneLine:

@@ -73,8 +73,9 @@ def _network(text: str, typed: dict[str, Any]) -> str:
     word = text.lower()
     if word not in known:
         near = difflib.get_close_matches(word[:40], sorted(known), n=1)
-        help = f"did you mean {near[0]}?" if near else ""
-        raise BadInput(Fault("network", "unknown_choice", text, ", ".join(sorted(known)), help))
+        begun = [each for each in sorted(known) if word and each.startswith(word)]
+        help = f"did you mean {near[0]}?" if near else f"one of {', '.join(begun or sorted(known))}"
+        raise BadInput(Fault("network", "unknown_network", text, help=help))
     if with_line(TUNER_NETWORKS.get(word, (word,))) and any(key in typed for key in LIMITS):
         raise BadInput(
             Fault("network", "has_no_coils_and_capacitors_to_set", text, help="take the limits out")
@@ -87,7 +88,7 @@ def _free(typed: dict[str, Any], name: str) -> MatchAnswer:
     parts = Tuner()
     line = None
     if "line" in typed:
-        line = line_of(FeedLine(type=cable_named(typed["line"]), length=1.0))
+        line = line_of(FeedLine(type=cable_named(typed["line"], "line"), length=1.0))
     names = list(TUNER_NETWORKS.get(name, (name,))) if name else list(NETWORKS)
     if line is None:
         stubs = with_line(names)
@@ -223,10 +224,12 @@ def _solution(one: Solution) -> Iterator[str]:
         heat = about(part.watts, "power")
         yield f"  {label:<22}{values[0]:>12}{values[1]:>12}{volts:>9}{amps:>9}{heat:>9}"
     worst = max(one.parts, key=lambda part: part.touch)
-    yield (
-        f"  {one.loss:.3g} dB lost; 1 % off in the {_label(worst)} makes the SWR {1 + worst.touch:.2f};"
-        f" not retuned {swr(one.not_retuned, 0.01)}"
+    # Nothing is added to the power: what is below zero is rounding.
+    text = (
+        f"{max(0.0, one.loss):.3g} dB lost; 1 % off in the {_label(worst)} makes the SWR"
+        f" {1 + worst.touch:.2f}; set as without loss it is {swr(one.not_retuned, 0.01)}"
     )
+    yield from folded("  ", text)
 
 
 def document(answer: MatchAnswer) -> dict[str, Any]:

@@ -11,6 +11,8 @@ from ..errors import BadInput, Fault
 from ..units.unit_names import Dimension
 from ..units.units import read, read_impedance, show
 
+LEAST_OHMS, MOST_OHMS = 1e-3, 1e9
+"""Between these, in ohm, lie the resistance and the size of every load that is worth an answer."""
 IMPEDANCE, OHMS, TEXT = "impedance", "ohms", "text"
 
 
@@ -69,10 +71,8 @@ def _value(name: str, what: Name, text: str) -> Any:
             raise BadInput(Fault(name, "empty", help=f"for example {name}={what.example}"))
         return text.strip()
     if what.dimension in (IMPEDANCE, OHMS):
-        value = read_impedance(text, name)
-        if value.real <= 0:
-            help = f"a load takes power only with a resistance above zero: {name}={what.example}"
-            raise BadInput(Fault(name, "resistance_is_not_above_zero", text, help=help))
+        help = f"a load takes power only with a resistance above zero: {name}={what.example}"
+        value = bounded(read_impedance(text, name), name, text, help)
         if what.dimension == IMPEDANCE:
             return value
         if value.imag:
@@ -89,6 +89,17 @@ def _value(name: str, what: Name, text: str) -> Any:
         if broken:
             raise BadInput(Fault(name, code, text, show(bound, kind), f"for example {name}={what.example}"))
     return number
+
+
+def bounded(value: complex, where: str, text: str, help: str) -> complex:
+    """Return an impedance that takes power and is of this world; BadInput else."""
+    if value.real <= 0:
+        raise BadInput(Fault(where, "resistance_is_not_above_zero", text, help=help))
+    if value.real < LEAST_OHMS:
+        raise BadInput(Fault(where, "too_small", text, show(LEAST_OHMS, Dimension.RESISTANCE), help))
+    if abs(value) > MOST_OHMS:
+        raise BadInput(Fault(where, "too_large", text, show(MOST_OHMS, Dimension.RESISTANCE), help))
+    return value
 
 
 def need(found: Mapping[str, Any], names: Mapping[str, Name], wanted: Sequence[str]) -> None:

@@ -14,8 +14,10 @@ from ..store import store
 from ..units.unit_names import Dimension
 from ..units.units import read, read_impedance
 from . import feed_json, feed_out, json_out
-from .layout import folded, summary_lines
+from .layout import folded
 from .line_out import cable_named
+from .pairs import bounded
+from .rows import summary
 
 USUAL_LENGTH = 25.0
 
@@ -36,7 +38,12 @@ def text(file: str, load: str | None, line: str | None, length: str | None, *, a
             if role in readings:
                 document["bands"][role]["load"] = feed_json.setting(readings[role], design.station.power)
         return json_out.text(document)
-    head = [line for line in summary_lines(figures) if line.startswith(("site", "radio"))]
+    head = [
+        line
+        for row in summary(figures)
+        if row.label in ("site", "radio")
+        for line in folded(f"{row.label:<7}", row.value)
+    ]
     lines = [*head, "", *feed_out.document_lines(figures, answers, maps, table)]
     for role, setting in readings.items():
         lines += folded(f"  {figures.bands[role].name}: ", feed_out.reading_line(setting))
@@ -44,12 +51,7 @@ def text(file: str, load: str | None, line: str | None, length: str | None, *, a
 
 
 def _load(text: str) -> complex:
-    value = read_impedance(text, "--load")
-    if value.real <= 0:
-        raise BadInput(
-            Fault("--load", "resistance_is_not_above_zero", text, help="for example --load 35-j120")
-        )
-    return value
+    return bounded(read_impedance(text, "--load"), "--load", text, "for example --load 35-j120")
 
 
 def _with_line(design: Design, line: str | None, length: str | None) -> Design:
@@ -65,7 +67,7 @@ def _with_line(design: Design, line: str | None, length: str | None) -> Design:
     if line is None:
         new = FeedLine(length=metres) if own is None else replace(own, length=metres)
     else:
-        kind = cable_named(line)
+        kind = cable_named(line, "--line")
         if kind == OWN:
             raise BadInput(
                 Fault("--line", "unknown_choice", line, help="a line of your own goes into the design")

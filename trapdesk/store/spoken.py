@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import functools
 import typing
+from collections.abc import Iterator
 from dataclasses import MISSING, Field, fields, is_dataclass
 from typing import Any
 
@@ -14,6 +15,8 @@ from ..errors import Fault
 from ..units import units
 
 _PLAIN = ("ratio", "count")
+_LIMITS = {"below": "low", "not_above": "above", "over": "high"}
+"""Which limit of a declaration a breach is of."""
 _WORDS = ("text", "choice", "part", "parts", "print")
 """Kinds of values that are no numbers, and so have no unit."""
 
@@ -58,13 +61,19 @@ def bare(key: str) -> str:
     return ".".join(names)
 
 
-def _field(key: str) -> Field[Any]:
-    """Return the field at a dotted key; KeyError for a key no design can have."""
+def _every_field(key: str) -> Iterator[Field[Any]]:
+    """Yield the fields a dotted key may mean, one for each kind of part that has it."""
     table, _, name = bare(key).rpartition(".")
     for kind in tables()[table]:
         for field in fields(kind):
             if name in (field.name, field.metadata["declared"].alias):
-                return field
+                yield field
+
+
+def _field(key: str) -> Field[Any]:
+    """Return the field at a dotted key; KeyError for a key no design can have."""
+    for field in _every_field(key):
+        return field
     raise KeyError(key)
 
 
@@ -115,11 +124,19 @@ def _both(value: Any, bound: Any, dimension: str) -> tuple[str, str]:
     return pair
 
 
+def _broken(breach: Breach) -> Declared:
+    """Return the declaration a breach is of: kinds that share a key have limits of their own."""
+    limit = _LIMITS.get(breach.code)
+    every = [field.metadata["declared"] for field in _every_field(breach.where)]
+    of_it = [known for known in every if limit is not None and getattr(known, limit) == breach.bound]
+    return of_it[0] if of_it else declaration(breach.where)
+
+
 def of_one_value(breach: Breach) -> bool:
     """Return whether a breach is of a value's own declaration, not of several values together."""
-    limit = {"below": "low", "not_above": "above", "over": "high"}.get(breach.code)
+    limit = _LIMITS.get(breach.code)
     if limit is not None:
-        return breach.bound == getattr(declaration(breach.where), limit)
+        return breach.bound == getattr(_broken(breach), limit)
     return breach.code in ("missing", "not_a_number", "not_a_choice")
 
 
@@ -175,7 +192,7 @@ _ENDS = {
 
 def spoken(breach: Breach) -> Fault:
     """Return a broken rule as a fault: the values as a person reads them, and what would be right."""
-    known, where, code = declaration(breach.where), breach.where, breach.code
+    known, where, code = _broken(breach), breach.where, breach.code
     help = _TOGETHER.get((code, where), "")
     if where.startswith("bands.") and code in ("order", "outside") and not help:
         help = _ENDS.get(where.rpartition(".")[2], "")

@@ -23,6 +23,9 @@ KIND = "design"
 HEAD = {"format": str(FORMAT), "kind": f'"{KIND}"'}
 """What a file says of itself before it says anything of the design, as TOML."""
 
+OTHER_WORDS = {"coating": "insulation", "insulation": "coating", "diameter": "wire", "gauge": "wire"}
+"""What one table calls by one name and another by another."""
+
 LONGEST_TEXT = 200
 MOST_FAULTS = 40
 
@@ -50,9 +53,19 @@ def read_text(text: str, name: str = "design") -> Design:
     except RecursionError:
         raise FileFault(name, "not_toml", help="it is nested too deeply") from None
     except ValueError as error:
-        help = f"{error}; text and quantities stand in quotes"
-        raise FileFault(name, "not_toml", help=help) from None
+        raise FileFault(name, "not_toml", help=_in_words(error)) from None
     return _Reader(name).design(table)
+
+
+def _in_words(error: ValueError) -> str:
+    """Return what a parser of TOML refuses, with its line, and what would be right."""
+    if not isinstance(error, tomllib.TOMLDecodeError):
+        # Only a number so long that Python will not turn it into one ends so.
+        return "a number in it has thousands of digits; text and quantities stand in quotes"
+    said = str(error)
+    if said.startswith(("Cannot overwrite", "Cannot declare", "Duplicate")):
+        return f"something is given twice{said[said.rfind(' (at ') :]}; keep one of them"
+    return f"{said}; text and quantities stand in quotes"
 
 
 def _default(field: Any) -> Any:
@@ -166,7 +179,9 @@ class _Reader:
         others = [c for c in tables()[here] if c is not kind and name in declared(c)]
         places = [t for t, kinds in tables().items() if t != here and any(name in declared(c) for c in kinds)]
         near = difflib.get_close_matches(name[:40], names, n=1)
-        if others:
+        if name in OTHER_WORDS and OTHER_WORDS[name] in names:
+            help = f"here it is called {OTHER_WORDS[name]}"
+        elif others:
             help = f'it goes with kind = "{others[0].kind}"'  # type: ignore[attr-defined]
         elif near:
             help = f"did you mean {near[0]}?"
