@@ -265,8 +265,9 @@ def test_doubt_of_what_was_measured_goes_into_the_ensemble():
     _, computed = spread(DESIGN)
     assert set(computed) == {"coil", "capacitor", "turns", "q"}
     trap, known = spread(measured(resonance=13.98e6, resonance_doubt=14e3, q=250.0, q_doubt=25.0))
-    # 0.1 % of the resonance is 0.2 % of the inductance, and nothing of the making is left in doubt beside it.
-    assert set(known) == {"coil", "q"}
+    # 0.1 % of the resonance is 0.2 % of the inductance. The capacitor stays as believed, and the coil makes
+    # up for it.
+    assert set(known) == {"coil", "capacitor", "q"}
     assert known["coil"].size == pytest.approx(2 * 14e3 / 13.98e6)
     assert known["q"].size == pytest.approx(0.1)
     _, parts = spread(
@@ -277,7 +278,8 @@ def test_doubt_of_what_was_measured_goes_into_the_ensemble():
     ensemble = Ensemble(solve(measured(resonance=13.98e6, resonance_doubt=14e3)))
     count = 4000
     # What the day's temperature adds is left out here.
-    draws = {"coil": draw(ensemble.varying, 1, 0, count)["coil"]}
+    draws = draw(ensemble.varying, 1, 0, count)
+    draws = {name: draws[name] for name in ("coil", "capacitor", "self_capacitance") if name in draws}
     found = ensemble.of_traps.resonance(ensemble.traps(draws, STAGES[0], count))
     assert found.std() == pytest.approx(14e3, rel=0.05)
     assert found.mean() == pytest.approx(13.98e6, abs=4 * 14e3 / math.sqrt(2 * count))

@@ -71,7 +71,7 @@ class _Plan:
 
 def _tighter(plan: _Plan) -> _Plan | None:
     belief = plan.varying.get("capacitor")
-    if belief is None or belief.reach <= TIGHT_CAPACITOR:
+    if belief is None or belief.of_logarithm or belief.reach <= TIGHT_CAPACITOR:
         return None
     tight = replace(belief, size=TIGHT_CAPACITOR, between=False)
     return replace(plan, varying={**plan.varying, "capacitor": tight})
@@ -79,7 +79,9 @@ def _tighter(plan: _Plan) -> _Plan | None:
 
 def _matched(plan: _Plan) -> _Plan | None:
     """Measure coils and capacitors, put like to like, and trim the coils to what was measured."""
-    if plan.stage.tuned or "capacitor" not in plan.varying:
+    coil = plan.varying.get("coil")
+    measured = coil is not None and coil.of_logarithm
+    if plan.stage.tuned or measured or "capacitor" not in plan.varying:
         return None
     known = Belief(size=METER, meaning=Meaning.TWO_SIGMA, pair=True, alike=1.0)
     rest = {name: belief for name, belief in plan.varying.items() if name not in WOUND_PARTS}

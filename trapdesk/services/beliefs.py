@@ -17,6 +17,7 @@ from ..engine.ground import Ground
 from ..engine.sampling import normal_probability, normal_quantile, uniform
 from ..engine.soils import SOILS, UNKNOWN_SOIL_FROM, GroundKind
 from .capacitors import drift_of, tolerance_of
+from .measured_trap import doubts_of
 from .trap import BuiltTrap
 
 COIL, WOUND = 0.015, 0.005
@@ -54,6 +55,7 @@ CAUSES: dict[str, tuple[str, ...]] = {
     "coating": ("coating",),
     "site": ("site",),
     "aim": ("aim_upper", "aim_lower"),
+    "ratio": ("ratio",),
 }
 """The causes that are told apart, and the quantities each of them moves."""
 QUANTITIES = tuple(name for names in CAUSES.values() for name in names)
@@ -64,6 +66,7 @@ class Belief:
     """One quantity that varies, about nothing by a size, or anywhere between `low` and `high`.
 
     Of a `pair`, one number for each trap or side, `alike` is the share of variance that both have in common.
+    `of_logarithm` has the size be that of a logarithm, as a measured value has it: no value reaches nothing.
     """
 
     size: float = 0.0
@@ -73,10 +76,13 @@ class Belief:
     between: bool = False
     pair: bool = False
     alike: float = 0.0
+    of_logarithm: bool = False
 
     @property
     def ends(self) -> tuple[float, float]:
         """What is taken for the worst on both sides: the ends of a range, or the size as it is stated."""
+        if self.of_logarithm:
+            return math.expm1(-self.size), math.expm1(self.size)
         return (self.low, self.high) if self.between else (-self.size, self.size)
 
     @property
@@ -99,7 +105,8 @@ class Belief:
         if self.is_normal:
             assert sigmas is not None
             bound = farthest(self.meaning)
-            return self.size * np.clip(sigmas / SIGMAS[self.meaning], -bound, bound)
+            found = self.size * np.clip(sigmas / SIGMAS[self.meaning], -bound, bound)
+            return np.expm1(found) if self.of_logarithm else found
         if chances is None:
             chances = normal_probability(sigmas)
         if self.between:
@@ -178,30 +185,25 @@ def _of_trap(design: Design, trap: BuiltTrap) -> Iterator[tuple[str, Belief]]:
 
 
 def _as_measured(measured: Measured | None, trap: BuiltTrap) -> Iterator[tuple[str, Belief]]:
-    """Yield what a measured trap leaves in doubt, and with a size of 0 what no longer is.
-
-    A measured resonance leaves its own doubt, put into the coil: at a known resonance the rest hardly counts.
-    """
+    """Yield what a measured trap leaves in doubt, and with a size of 0 what no longer is."""
     if measured is None:
         return
 
     def one_sigma(size: float) -> Belief:
-        return Belief(size=size, meaning=Meaning.MEASURED, pair=True, alike=0.0)
+        return Belief(size=size, meaning=Meaning.MEASURED, pair=True, alike=0.0, of_logarithm=True)
 
     settled = one_sigma(0.0)
-    if measured.resonance is not None or measured.inductance is not None:
-        size = 2 * measured.resonance_doubt / trap.resonance
-        if measured.resonance is None:
-            size = measured.inductance_doubt / trap.inductance
-        yield "coil", one_sigma(size)
+    left = doubts_of(measured)
+    if left.coil is not None:
+        yield "coil", one_sigma(left.coil)
         yield from ((name, settled) for name in ("turns", "pitch", "former"))
-    if measured.resonance is not None:
-        yield from ((name, settled) for name in ("capacitor", "self_capacitance"))
-    elif measured.capacitance is not None:
-        yield "capacitor", one_sigma(measured.capacitance_doubt / trap.fitted)
+    if left.capacitor is not None:
+        # The size is that of the fitted part, the doubt that of all the capacitance.
+        yield "capacitor", one_sigma(left.capacitor * trap.capacitance / trap.fitted)
         yield "self_capacitance", settled
+    yield "ratio", one_sigma(left.ratio)
     if measured.q is not None:
-        yield "q", one_sigma(min(measured.q_doubt / measured.q, 0.9))
+        yield "q", one_sigma(measured.q_doubt / measured.q)
 
 
 def _as_built(
@@ -221,7 +223,7 @@ def _as_built(
         if isinstance(coil, Solenoid):
             yield "pitch", about("pitch", doubts.pitch)
             yield "former", about("former", doubts.former)
-        if trap.capacitance > trap.fitted:
+        if trap.own_capacitance:
             yield "self_capacitance", about("self_capacitance", doubts.self_capacitance)
     printed = None
     if doubts.capacitor is None and trap.capacitor is not None:

@@ -12,6 +12,7 @@ from ..design.doubts import SIGMAS
 from ..design.parts import CableCoil
 from .beliefs import CAUSES, Belief, Draws
 from .ensemble import Ensemble
+from .measured_trap import holds_resonance
 from .trial_traps import Stage
 
 FEWEST = 200
@@ -132,7 +133,7 @@ def trap_first_order(ensemble: Ensemble) -> float | None:
     trap = ensemble.of_traps.trap
     by_turns, by_pitch, by_diameter = ensemble.of_traps.exponents
     of_cable = float(isinstance(ensemble.of_traps.part.coil, CableCoil))
-    own = (trap.capacitance - trap.fitted) / trap.capacitance
+    own = trap.own_capacitance / trap.capacitance
     low, _, high = trap.self_capacitance
     rates = {
         "coil": 1.0,
@@ -142,6 +143,8 @@ def trap_first_order(ensemble: Ensemble) -> float | None:
         "capacitor": 1 - own,
         "self_capacitance": own * math.log(high / low) / 2 if own else 0.0,
     }
+    if holds_resonance(ensemble.of_traps.part.measured):
+        rates |= {"capacitor": 0.0, "self_capacitance": 0.0}
     parts = (
         rate * deviation(ensemble.varying[name]) for name, rate in rates.items() if name in ensemble.varying
     )

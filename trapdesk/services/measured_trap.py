@@ -39,6 +39,58 @@ def values_with(
     return 1.0 / (2.0 * math.pi * math.sqrt(l * c)), l, c
 
 
+@dataclass(frozen=True, kw_only=True)
+class Left:
+    """What measurements leave in doubt, as one sigma of logarithms that hang on nothing of each other.
+
+    The coil's and the capacitor's own move the resonance; of the `ratio` the coil gains what the capacitor
+    loses. None stands for a part nothing was measured of.
+    """
+
+    coil: float | None
+    capacitor: float | None
+    ratio: float
+
+
+def holds_resonance(measured: Measured | None) -> bool:
+    """Return whether only the resonance is known: the coil then makes up for whatever the capacitor is."""
+    return measured is not None and (
+        measured.resonance is not None and measured.inductance is None and measured.capacitance is None
+    )
+
+
+def doubts_of(measured: Measured) -> Left:
+    """Return what measured values leave in doubt.
+
+    The doubts of resonance, inductance and capacitance kept together tell how the last two hang together;
+    of two of them the third follows.
+    """
+    resonance, inductance, capacitance = (_relative(measured, name) for name in NAMES)
+    if resonance is None:
+        return Left(coil=inductance, capacitor=capacitance, ratio=0.0)
+    both = 2.0 * resonance
+    if inductance is None:
+        known = capacitance is not None
+        return Left(coil=both, capacitor=0.0 if known else None, ratio=capacitance or 0.0)
+    if not capacitance:
+        return Left(coil=0.0, capacitor=both, ratio=inductance)
+    # With ln L = u + e and ln C = v - e the sum u + v is that of the resonance, twice and turned about.
+    of_coil, of_capacitor = inductance * inductance, capacitance * capacitance
+    shared = min(max((of_coil + of_capacitor - both * both) / 2.0, 0.0), of_coil, of_capacitor)
+    coil, capacitor = math.sqrt(of_coil - shared), math.sqrt(of_capacitor - shared)
+    size = math.hypot(coil, capacitor)
+    if not size:
+        return Left(coil=both, capacitor=0.0, ratio=math.sqrt(shared))
+    # Doubts that do not go together leave the resonance what was said of it.
+    scale = both / size
+    return Left(coil=coil * scale, capacitor=capacitor * scale, ratio=math.sqrt(shared))
+
+
+def _relative(measured: Measured, name: str) -> float | None:
+    value = getattr(measured, name)
+    return None if value is None else getattr(measured, f"{name}_doubt") / value
+
+
 class Network(Protocol):
     """What a trap is over frequency."""
 
@@ -128,6 +180,10 @@ def with_measured(built: Trap, measured: Measured | None) -> Trap:
         changes["doubt"] = 2.0 * measured.resonance_doubt / resonance
     elif measured.inductance is not None:
         changes["doubt"] = measured.inductance_doubt / inductance
+    fitted = built.fitted + capacitance - built.capacitance
+    if fitted <= 0.0:
+        # Less than the coil was thought to add by itself: then both are taken to be less alike.
+        fitted = built.fitted * capacitance / built.capacitance
     network = MeasuredNetwork(
         computed=built.network,
         shift=built.resonance / resonance,
@@ -139,7 +195,7 @@ def with_measured(built: Trap, measured: Measured | None) -> Trap:
         resonance=resonance,
         inductance=inductance,
         capacitance=capacitance,
-        fitted=built.fitted + capacitance - built.capacitance,
+        fitted=fitted,
         network=network,
         **changes,
     )

@@ -279,7 +279,7 @@ class _Gathered:
         self.unreached = np.zeros(count, int)
         self.values = np.empty((count, len(roles), len(RESULTS), kept))
         first = next(iter(ensemble.grids.values())).frequency.size
-        self.curves = np.empty((count, len(roles), first, min(kept, CURVES)), np.float32)
+        self.curves = np.empty((count, len(roles), first, min(kept, CURVES)))
 
     def add(
         self,

@@ -138,6 +138,13 @@ class BuiltTrap:
         return self.network.stress(frequency, current)
 
     @property
+    def own_capacitance(self) -> float:
+        """What the coil adds to the capacitor, in farad; nothing where both come as one."""
+        own = self.capacitance - self.fitted
+        # What was measured leaves rounding between the two.
+        return own if own > 1e-9 * self.capacitance and self.self_capacitance[1] > 0 else 0.0
+
+    @property
     def cable(self) -> CableNetwork | None:
         """The cable it is wound of as it was computed, None for coil and capacitor apart."""
         inner = self.network.computed if isinstance(self.network, MeasuredNetwork) else self.network

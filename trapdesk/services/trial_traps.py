@@ -15,6 +15,7 @@ from ..engine import resonator
 from ..engine.coil_formulas import sheet_inductance
 from ..engine.quotients import resonator_fraction
 from .beliefs import Belief, Draws, drifts
+from .measured_trap import holds_resonance
 from .trap import BuiltTrap
 
 
@@ -119,7 +120,7 @@ class TrialTraps:
         longer = np.log1p(of("turns") / turns)
         log = by_turns * longer + by_pitch * np.log1p(of("pitch")) + by_diameter * np.log1p(of("former"))
         inductance = inductance * np.exp(log)
-        own = trap.capacitance - trap.fitted
+        own = trap.own_capacitance
         capacitance = trap.fitted * (1 + of("capacitor")) + np.zeros((2, count))
         if isinstance(part.coil, CableCoil):
             # More turns of cable are more capacitance as well.
@@ -129,6 +130,10 @@ class TrialTraps:
             x = np.asarray(of("self_capacitance"))
             factor = np.where(x > 0, math.log(high / middle), math.log(middle / low))
             capacitance = capacitance + own * np.exp(x * factor)
+        capacitance = capacitance / (1 + of("ratio"))
+        inductance = inductance * (1 + of("ratio"))
+        if holds_resonance(part.measured):
+            inductance = inductance * (trap.capacitance / capacitance)
         sealing = of("sealing")
         if stage.tuned:
             belief = self.varying.get("sealing")
