@@ -6,7 +6,7 @@ from pathlib import Path
 
 import pytest
 
-from trapdesk.design.capacitor_kinds import CAPACITORS
+from trapdesk.design.capacitor_kinds import CAPACITORS, SingleCapacitor
 from trapdesk.design.coil_kinds import COILS
 from trapdesk.design.design import Site, get, known_at, with_value
 from trapdesk.design.fields import SOLVE
@@ -19,6 +19,7 @@ from trapdesk.faces.desk import form
 from trapdesk.services.solve import at_frequencies, solve
 from trapdesk.store import store
 from trapdesk.store.toml_read import DesignFault
+from trapdesk.units import prints
 
 DESIGNS = sorted((Path(__file__).parent / "designs").glob("*-trap.toml"))
 COMBO = next(path for path in DESIGNS if path.stem == "combo-trap")
@@ -70,6 +71,18 @@ def test_findings_are_told_in_space_as_well():
     plain, asked = solve(space), solve(space, site_effects=True)
     assert plain.findings
     assert {f.code for f in asked.findings} >= {f.code for f in plain.findings}
+
+
+def test_class_2_ceramic_in_a_trap_is_remarked():
+    design = store.load(next(p for p in DESIGNS if p.stem == "close-trap"))
+
+    def remarks(text):
+        capacitor = SingleCapacitor(print=prints.read(text))
+        found = solve(with_value(design, "antenna.trap.capacitor", capacitor)).findings
+        return {f.code: f.value for f in found}
+
+    assert remarks("47pF 10% Y5V")["capacitor_varies"] == pytest.approx(0.82, rel=0.1)
+    assert "capacitor_varies" not in remarks("47pF 10% C0G")
 
 
 def test_a_cable_trap_leads_with_the_side_to_build_on():

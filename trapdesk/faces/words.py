@@ -105,6 +105,12 @@ SAYINGS: dict[str, Saying] = {
         bare="heat or cold moves the trap by {value}",
         helps="a capacitor that drifts less or the other way (C0G, P100), another former, shade",
     ),
+    "capacitor_varies": Saying(
+        says="heat or cold may change the trap's capacitance by {value}; up to {limit} would not matter",
+        bare="heat or cold may change the trap's capacitance by {value}",
+        helps="C0G or mica in place of class 2 ceramic (X7R, Y5V): the shifts shown leave this out",
+        as_="percent",
+    ),
     "trap_heat": Saying(
         says="each trap turns {value} into heat on average; from {limit} on it gets warm",
         bare="each trap turns {value} into heat on average",

@@ -257,3 +257,9 @@ def drift_of(built: BuiltCapacitor, frequency: float) -> tuple[float, float, boo
     drift = sum(weight * (part.drift or 0.0) for part, weight in found)
     doubt = sum(weight * part.drift_doubt for part, weight in found)
     return drift, doubt, all(part.drift is not None for part, _ in found)
+
+
+def varies_of(built: BuiltCapacitor, frequency: float) -> float:
+    """Return how far the whole may go either way over temperature for class 2 ceramics in it, relative."""
+    found = weights(built, frequency)
+    return sum(weight * max(part.varies) for part, weight in found if part.varies is not None)

@@ -236,7 +236,8 @@ class TrapFigures:
     """The trap by itself, at its resonance unless said otherwise; `impedance` by band role, at the aim.
 
     `bring_to` is where to bring it before it is closed, so that it ends at its resonance. `tolerance` is that
-    of the capacitor, down and up.
+    of the capacitor, down and up; `varies` is how far class 2 ceramics in it may go with heat and cold, which
+    `shifts` leave out.
     """
 
     resonance: float
@@ -254,6 +255,7 @@ class TrapFigures:
     bring_to: float | None = None
     parts: tuple[PartFigures, ...] = ()
     tolerance: tuple[float, float] | None = None
+    varies: float = 0.0
     adjustments: tuple[Adjustment, ...] = ()
     heat: Heat | None = None
     shifts: tuple[Shift, ...] = ()

@@ -11,7 +11,7 @@ from ..design.design import Design
 from ..design.parts import Sealing, Trap
 from ..engine.capacitors import stub_impedance
 from ..engine.resonator import dynamic_resistance, lc_resonance
-from .capacitors import Fitted, capacitance_of, tolerance_of, weights
+from .capacitors import Fitted, capacitance_of, tolerance_of, varies_of, weights
 from .coils import Wound
 from .figures import Adjustment, BandFigures, CoilFigures, Curve, PartFigures, TrapFigures
 from .part_stress import heat
@@ -57,6 +57,7 @@ def trap_figures(design: Design, trap: BuiltTrap, bands: Iterable[BandFigures]) 
         bring_to=trap.resonance / (1 - sealed),
         parts=tuple(_part(fitted, trap.resonance) for fitted, _ in weights(trap.capacitor, trap.resonance)),
         tolerance=tolerance_of(trap.capacitor, trap.resonance),
+        varies=varies_of(trap.capacitor, trap.resonance) * trap.fitted / trap.capacitance,
         adjustments=tuple(adjustments(part, trap)),
         heat=heat(design, trap, bands),
     )

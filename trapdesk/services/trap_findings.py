@@ -44,6 +44,15 @@ def trap_findings(figures: Figures) -> Iterator[Finding]:
     yield from _trap_place(figures)
     yield from _coil(figures)
     yield from _drift(figures)
+    # A capacitance moves the resonance by half as much.
+    if trap.varies > 2 * DRIFTING:
+        yield Finding(
+            code="capacitor_varies",
+            level=Level.WATCH,
+            where="antenna.trap.capacitor",
+            value=trap.varies,
+            limit=2 * DRIFTING,
+        )
 
 
 def _parts(figures: Figures) -> Iterator[Finding]:

@@ -15,7 +15,7 @@ from ..engine.heat import drifted
 from ..engine.metals import MATERIALS
 from ..engine.ports import polynomial_weights, terminate
 from ..engine.reflection import dip_among_three
-from .capacitors import drift_of, weights
+from .capacitors import drift_of
 from .figures import Figures, Heat, Shift
 from .response import MARGIN, swr
 from .trap import BuiltTrap
@@ -60,15 +60,6 @@ def _steps(design: Design, trap: BuiltTrap, heat: Heat | None) -> Iterator[tuple
         warmth.append(("heat", heat.over))
     for what, kelvin in warmth:
         yield what, float(drifted(1.0, of_coil * kelvin, of_capacitor * kelvin)) - 1
-
-
-def varies(trap: BuiltTrap) -> float:
-    """Return by how much the capacitance may change over temperature for class 2 ceramics in it, relative."""
-    return sum(
-        weight * max(fitted.varies)
-        for fitted, weight in weights(trap.capacitor, trap.resonance)
-        if fitted.varies is not None
-    )
 
 
 def shifts(figures: Figures, trap: BuiltTrap, heat: Heat | None) -> tuple[Shift, ...]:
