@@ -99,6 +99,23 @@ def test_faults_say_what_is_wrong(text, says):
     assert len(texts[0]) < 250
 
 
+def test_a_former_says_what_turns_it_takes():
+    texts, _ = faults(HEAD + FORMER + 'turn_step = "third"\n')
+    assert "half, whole" in texts[0]
+    box = read_box(HEAD + FORMER + 'turn_step = "whole"\n' + FORMER)
+    assert [former.turn_step for former in box.formers] == ["whole", "half"]
+
+
+def test_parallel_line_needs_no_jacket_and_is_not_wound():
+    own = '[[cables]]\nname = "twin"\nmake = "parallel"\nimpedance = "300 ohm"\nvelocity_factor = 0.8\n'
+    box = read_box(HEAD + own + 'loss = "0.04 dB/m"\nloss_at = "30 MHz"\nlength = "9 m"\n')
+    listed = read_box(HEAD + '[[cables]]\nname = "ladder"\ntype = "window line"\nlength = "9 m"\n')
+    assert not box.cables[0].is_wound
+    assert not listed.cables[0].is_wound
+    texts, _ = faults(HEAD + own + 'length = "9 m"\n')
+    assert [text.split(": ")[1] for text in texts] == ["loss", "loss_at"]
+
+
 def test_a_former_thinner_than_every_wire_is_named():
     thin = '[[formers]]\nname = "needle"\ndiameter = "4 mm"\nlength = "9 cm"\n'
     thick = '[[wires]]\nname = "rod"\ndiameter = "6 mm"\nlength = "9 m"\n'

@@ -7,15 +7,20 @@ from itertools import combinations_with_replacement
 
 import pytest
 
-from trapdesk.design.box import Box, Capacitor, Core, Former, Wire
+from trapdesk.design.box import Box, Cable, Capacitor, Core, Former, TurnStep, Wire
+from trapdesk.design.fields import SOLVE
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import cli, rummage_out
-from trapdesk.services.box_search import tank
+from trapdesk.services import winders
+from trapdesk.services.box_parts import stub_part
+from trapdesk.services.box_search import Search, tank
+from trapdesk.services.by_yield import TRIALS, by_yield, ranked
 from trapdesk.services.combos import PIECES, WAYS, combos
 from trapdesk.services.offers import END_ROOM
 from trapdesk.services.port_grid import PortGrid
 from trapdesk.services.rummage import rummage, take, wanted_resonance
 from trapdesk.services.solve import solve
+from trapdesk.services.tolerance import quick_yield, yield_of
 from trapdesk.services.trap import build
 from trapdesk.store import store
 from trapdesk.store.box_read import find_box
@@ -197,6 +202,93 @@ def test_a_set_length_stays():
     assert row.outcome.end == pytest.approx(full.lengths.end, abs=4e-3)
 
 
+# Stubs, whole turns, yield --------------------------------------------------------------------------------
+
+COAX = Cable(
+    name="coax", impedance=50.0, velocity_factor=0.66, outside=5e-3, shield=3.6e-3, loss=0.05, loss_at=14e6,
+    voltage=2e3, length=3.0,
+)  # fmt: skip
+
+
+def test_a_stub_serves_as_capacitor_and_holds_to_cable_and_rating():
+    box = replace(SMALL, capacitors=(), cables=(COAX,))
+    row = next(row for row in finished(preset(), box).rows if row.kind == "stub")
+    assert row.pieces == ()
+    w = 2 * math.pi * wanted_resonance(preset())
+    # An open line without loss: B = tan(w s / v) / Z0, and 1 / cos(w s / v) the volts at its end.
+    angle = w * row.stub.length / (0.66 * 299792458.0)
+    assert math.tan(angle) / 50.0 == pytest.approx(w * row.capacitance, rel=1e-4)
+    assert row.voltage == pytest.approx(2e3 * math.cos(angle), rel=1e-4)
+    assert row.volts <= row.voltage
+    assert row.stub.left == pytest.approx(3.0 - 2 * (row.stub.length + row.stub.snip))
+    shorter = replace(row.trap, resonance=SOLVE, capacitor=stub_part(COAX, row.stub.length - 0.001))
+    assert build(shorter).resonance - row.resonance == pytest.approx(0.001 * row.stub.slope, rel=0.01)
+    # Cut as long as it is told to be, it is low by all that it and the coil may be off.
+    longer = replace(row.trap, resonance=SOLVE, capacitor=stub_part(COAX, row.stub.length + row.stub.snip))
+    assert build(longer).resonance == pytest.approx(row.resonance * (1 - row.off), rel=0.01)
+    assert not any(r.kind == "stub" for r in finished(preset(), replace(box, cables=(WEAK,))).rows)
+    short = replace(COAX, length=2 * row.stub.length)
+    for other in finished(preset(), replace(box, cables=(short,))).rows:
+        assert other.kind != "stub" or other.stub.left >= 0
+
+
+WEAK = replace(COAX, voltage=300.0)
+
+
+def test_of_parallel_line_only_stubs_are_made():
+    line = Cable(name="ladder", type="window line", length=8.0)
+    rows = finished(preset(), replace(SMALL, capacitors=(), cables=(line,))).rows
+    assert {row.kind for row in rows} == {"stub"}
+    assert rows[0].voltage is None
+
+
+def test_a_former_may_want_whole_turns():
+    kinds = tuple(Capacitor(capacitance=c * 1e-12, voltage=3e3, count=4) for c in (22, 33, 47, 56))
+    pipes = [replace(PIPE, name=f"{d}", diameter=d / 1e3) for d in (32, 40, 50, 63)]
+    box = replace(SMALL, formers=tuple(pipes), capacitors=kinds)
+    free = finished(preset(), box).rows
+    assert any(row.turns != int(row.turns) for row in free)
+    whole = replace(box, formers=tuple(replace(f, turn_step=TurnStep.WHOLE) for f in pipes))
+    rows = finished(preset(), whole).rows
+    assert rows
+    assert all(row.turns == int(row.turns) for row in rows)
+
+
+def test_traps_that_are_looked_at_closer_are_the_best_of_all(monkeypatch):
+    design, box = preset(), find_box()
+    search = Search(design, box, wanted_resonance(design))
+    joined = search.capacitors(box)
+    pairs = [("solenoid", 3, 3), ("solenoid", 5, 4), ("solenoid", 8, 1), ("stub", 9, 2)]
+    few = [search.offers(box, pair, joined) for pair in pairs]
+    monkeypatch.setattr(winders, "FEWEST", 100_000)
+    every = [search.offers(box, pair, joined) for pair in pairs]
+    assert [[(o.turns, o.pieces, o.stub) for o in offers] for offers in few] == [
+        [(o.turns, o.pieces, o.stub) for o in offers] for offers in every
+    ]
+
+
+def test_rows_go_by_yield_as_far_as_the_trials_tell_them_apart():
+    row = finished(preset(), SMALL).rows[0]
+
+    def like(passed, points):
+        priced = replace(row.cost, loss=points, width=0, volts=0, size=0, pieces=0, adjustment=0, spare=0)
+        return replace(row, within=None if passed is None else yield_of(passed, 1000), cost=priced)
+
+    rows = [like(None, 1), like(500, 2), like(900, 9), like(905, 10), like(520, 1), like(300, 0)]
+    # Of 900 and 905 in a thousand, and of 500 and 520, either may be the better one: cost decides.
+    order = [(r.within and r.within.passed, r.cost.loss) for r in ranked(rows)]
+    assert order == [(900, 9), (905, 10), (520, 1), (500, 2), (300, 0), (None, 1)]
+
+
+def test_yield_of_a_row_is_that_of_its_design():
+    design = preset()
+    found = finished(design, SMALL)
+    last = list(by_yield(design, found, "wet"))[-1]
+    assert (last.stage, last.finished) == ("wet", True)
+    expected = quick_yield(take(design, found.rows[0]), trials=TRIALS, stage="wet")
+    assert next(r for r in last.rows if r.former == found.rows[0].former).within == expected
+
+
 # Progress and shortage ------------------------------------------------------------------------------------
 
 
@@ -249,6 +341,7 @@ def enough(box, part):
         ({"capacitors": (replace(DISC, voltage=300.0),)}, "rating"),
         ({"formers": (replace(PIPE, length=0.024),)}, "former"),
         ({"wires": (replace(ENAMELLED, length=1.0),)}, "wire"),
+        ({"capacitors": (), "cables": (replace(COAX, length=0.1),)}, "cable"),
     ],
 )
 def test_what_is_short_is_named_and_one_part_mends_it(changes, lacks):
@@ -353,6 +446,22 @@ def test_command_line_json(capsys, tmp_path):
     assert row["resonance_hz"] == pytest.approx(14.05e6, rel=1e-5)
     assert set(row["bands"]) == {"upper", "lower"}
     assert found["shortage"] is None
+
+
+def test_command_line_orders_by_yield(capsys, tmp_path):
+    path = tmp_path / "box.toml"
+    path.write_text(BOX, "utf-8")
+    code, out, _ = run(capsys, "40-20-vee", "--box", str(path), "--for-yield", "wet")
+    assert code == 0
+    assert "Ordered by yield, wet" in out
+    assert "first by its yield" in out
+    assert max(map(len, out.splitlines())) <= 79
+    code, out, _ = run(capsys, "40-20-vee", "--box", str(path), "--for-yield", "wet", "--json")
+    found = json.loads(out)
+    within = found["rows"][0]["yield"]
+    assert found["for_yield"] == "wet"
+    assert within["low"] <= within["share"] <= within["high"]
+    assert within["share"] == within["passed"] / within["trials"]
 
 
 def test_a_bad_entry_does_not_lose_the_rest(capsys, tmp_path):

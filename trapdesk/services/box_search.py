@@ -334,10 +334,13 @@ def _stub(offer: Offer, built: BuiltTrap, box: Box) -> Stub | None:
     if offer.stub < 0:
         return None
     cable = box.cables[offer.stub]
+    angle = 2 * math.pi * built.resonance * offer.stub_length / built.capacitor.line.velocity
+    # Capacitance goes with the tangent of the angle, frequency with the root of all capacitance.
+    steeper = 2 * angle / math.sin(2 * angle)
     return Stub(
         cable=cable.name,
         length=offer.stub_length,
         snip=offer.snip,
         left=cable.length - TRAPS * (offer.stub_length + offer.snip),
-        slope=built.resonance * built.fitted / built.capacitance / (2 * offer.stub_length),
+        slope=steeper * built.resonance * built.fitted / built.capacitance / (2 * offer.stub_length),
     )
