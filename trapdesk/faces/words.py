@@ -232,11 +232,6 @@ SAYINGS: dict[str, Saying] = {
         bare="{where}: {value} of heat on average in a capacitor of the tuner",
         helps="less power, shorter overs, or a match nearer at the antenna",
     ),
-    "not_converged": Saying(
-        says="{where}: the computation did not settle, {value} is left where {limit} is allowed",
-        bare="{where}: the computation did not settle, {value} is left",
-        helps="do not build from these figures; change the design a little and look again",
-    ),
 }
 
 _SYMPTOMS = ("swr_wanted", "no_width", "wanted_wide", "site_doubt")
@@ -257,6 +252,9 @@ REASONS = {
     "no_capacitor_makes_up_the_rest": "no value of this member makes up what the others leave",
     "stub_is_too_long": "the stub is longer than a quarter wave and is no capacitor",
     "no_such_coil": "no number of turns on this former makes the coil that is needed",
+    "wire_is_set": "a wire of set length leaves no aim to move",
+    "model_does_not_hold": "what was read does not fit such a part",
+    "no_move_to_keep": "the move cannot be kept",
 }
 """Why there is no answer, by the code of `NoAnswer`."""
 POWER_LINES = (
