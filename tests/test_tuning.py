@@ -371,7 +371,7 @@ def test_verb_match_says_what_is_short(call):
         (("Z=-5", "f=7MHz"), 2, "Z: '-5': resistance is not above zero"),
         (("Z=50",), 2, "f: a value is missing"),
         (("Z=5O", "f=7MHz"), 2, "Z: cannot read '5O'"),
-        (("Z=20", "f=7MHz", "network=t-clk"), 2, "network: 't-clk' is not one of"),
+        (("Z=20", "f=7MHz", "network=t-clk"), 2, "network: 't-clk': unknown network; did you mean"),
         (("Z=20", "f=7MHz", "network=stub-open"), 2, "line: a value is missing"),
         (("Z=20", "f=7MHz", "Lmin=3uH", "Lmax=2uH"), 2, "Lmin: leaves nothing to set"),
         (("Z=20", "f=7MHz", "Z=30"), 2, "'Z' is given twice"),
@@ -417,7 +417,7 @@ def test_verb_tuner_in_json(call):
     [
         (("--load", "-5"), "--load: '-5': resistance is not above zero"),
         (("--load", "0+j5"), "--load: '0+j5': resistance is not above zero"),
-        (("--line", "RG-99"), "type: 'RG-99' is not one of"),
+        (("--line", "RG-99"), "--line: 'RG-99' is not one of"),
         (("--length", "0m"), "--length: '0m' is outside"),
     ],
 )
