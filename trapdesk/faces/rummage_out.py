@@ -118,7 +118,8 @@ def coil_text(row: Row) -> str:
     on = f"{visible(row.wire, 30)} on {visible(row.former, 30)}"
     if row.kind == "cable":
         low, high = row.wound.turns_range or (row.turns, row.turns)
-        return f"wind {row.wound.wind} turns of {on}, then trim: {low:.1f} to {high:.1f} are needed"
+        needed = f"{low:.1f}" if f"{low:.1f}" == f"{high:.1f}" else f"{low:.1f} to {high:.1f}"
+        return f"wind {row.wound.wind} turns of {on}, then trim: {needed} are needed"
     text = f"{turns_text(row.turns)} turns of {on}"
     pitch = getattr(row.trap.coil, "pitch", None)
     return f"{text}, turn to turn {measured(pitch, 'mm', 2)}" if pitch else text
@@ -202,7 +203,7 @@ def _volts(row: Row) -> str:
 def stub_text(stub: Stub) -> str:
     """Return the stub of one trap and how long to cut it."""
     whole = centimetres(stub.length + stub.snip)
-    return f"a stub of {visible(stub.cable, 30)} cut {whole} long, {centimetres(stub.length)} in the end"
+    return f"a stub cut to {whole}, {centimetres(stub.length)} once snipped, of {visible(stub.cable, 30)}"
 
 
 def adjustment(row: Row) -> str:

@@ -13,8 +13,8 @@ from .jobs import RUMMAGE
 from .texts import text_lines, waiting_lines
 
 KEYS = (
-    ("Enter", "take the trap"), ("arrows", "pick"), ("Esc", "stop, then back"), ("b", "other box"),
-    ("y", "order by yield"), ("x", "write to a file"), ("Tab", "inputs"),
+    ("Enter", "take the trap"), ("arrows", "pick"), ("y", "by yield"), ("b", "other box"),
+    ("Esc", "stop, back"), ("x", "write to a file"), ("Tab", "inputs"),
 )  # fmt: skip
 _MARK = 2
 
