@@ -130,15 +130,10 @@ def internal_impedance(
     Derived here: Bessel's equation for the current in the wire gives R_dc g I0(g) / (2 I1(g)),
     g = (1 + j) radius / skin depth.
     """
-    positive(frequency=frequency, diameter=diameter)
-    at_least(0.0, resistivity=resistivity)
-    frequency, diameter, rho = np.broadcast_arrays(
-        np.asarray(frequency, float), np.asarray(diameter, float), np.asarray(resistivity, float)
-    )
-    lossy = rho > 0.0
-    depth = skin_depth(frequency, np.where(lossy, rho, 1.0))
-    ratio = round_wire_ratio((0.5 + 0.5j) * diameter / depth)
-    return dc_resistance(diameter, rho) * ratio
+    # Skin depth and resistance refuse what is outside the limits.
+    resistance, rho = dc_resistance(diameter, resistivity), np.asarray(resistivity, float)
+    depth = skin_depth(frequency, np.where(rho > 0.0, rho, 1.0))
+    return resistance * round_wire_ratio((0.5 + 0.5j) * np.asarray(diameter, float) / depth)
 
 
 def coating_elastance(

@@ -11,7 +11,7 @@ TABLE_END = 2000.0
 TABLE_STEP = 0.05
 SERIES_START = 25.0
 AGM_ROUNDS = 40
-RATIO_SERIES_START = 40.0
+RATIO_SERIES_START, RATIO_TERMS = 24.0, 15
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
@@ -128,6 +128,18 @@ def bessel_j01(x: ArrayLike) -> tuple[FloatArray, FloatArray]:
     return j0.reshape(x.shape), j1.reshape(x.shape)
 
 
+@cache
+def _large_ratio_terms() -> list[float]:
+    """Return the terms of the series of I0(z) / I1(z) in 1 / z, the last one first."""
+    top, bottom, terms = [1.0], [1.0], []
+    for k in range(1, RATIO_TERMS):
+        top.append(top[-1] * (2 * k - 1) ** 2 / (8 * k))
+        bottom.append(bottom[-1] * ((2 * k - 1) ** 2 - 4) / (8 * k))
+    for k in range(RATIO_TERMS):
+        terms.append(top[k] - sum(bottom[j] * terms[k - j] for j in range(1, k + 1)))
+    return terms[::-1]
+
+
 def round_wire_ratio(z: ArrayLike) -> ComplexArray:
     """Return z I0(z) / (2 I1(z)): the internal impedance of a round wire over its DC resistance.
 
@@ -148,7 +160,7 @@ def round_wire_ratio(z: ArrayLike) -> ComplexArray:
 
     Source
     ------
-    dlmf, 10.33.1 (continued fraction) and 10.40.1 (large argument).
+    dlmf, 10.33.1 (continued fraction) and 10.40.1 (large argument, one series divided by the other).
     """
     z = np.asarray(z, dtype=complex)
     at_least(0.0, **{"real part of z": z.real})
@@ -165,15 +177,13 @@ def round_wire_ratio(z: ArrayLike) -> ComplexArray:
         out[small] = 0.5 * ratio
     if not small.all():
         big = z[~small]
-        sums = []
-        for mu in (0.0, 4.0):
-            term = np.ones_like(big)
-            total = np.ones_like(big)
-            for k in range(1, 15):
-                term = term * (-(mu - (2 * k - 1) ** 2) / (8.0 * k)) / big
-                total = total + term
-            sums.append(total)
-        out[~small] = 0.5 * big * sums[0] / sums[1]
+        first, *rest = _large_ratio_terms()
+        total = np.full(big.shape, first, dtype=complex)
+        inverse = 1.0 / big
+        for term in rest:
+            total *= inverse
+            total += term
+        out[~small] = 0.5 * big * total
     return out
 
 
