@@ -8,6 +8,7 @@ from ...errors import BadInput
 from .. import words
 from . import cures
 from .filing import Filing
+from .mouse import switch
 from .themes import THEMES
 
 if TYPE_CHECKING:
@@ -38,6 +39,7 @@ KEYS: dict[str, str] = {
     "right": "right,full_stop",
     "far_left": "shift+left,less_than_sign",
     "far_right": "shift+right,greater_than_sign",
+    "mouse": "m",
     "redraw": "ctrl+l",
     "sleep": "ctrl+z",
     "leave": "q,ctrl+q,ctrl+c",
@@ -61,6 +63,7 @@ class Deeds:
             filing.new,
         )
         self._jumped: tuple[Finding, ...] = ()
+        self._mouse = True
 
     def undo(self) -> None:
         """Go back one design."""
@@ -211,6 +214,17 @@ class Deeds:
     def far_right(self) -> None:
         """Move the readout far to the right."""
         self._desk.middle.move_cursor(FAR)
+
+    def mouse(self) -> None:
+        """Leave the mouse to the terminal, so that it selects text as everywhere, or take it again."""
+        wanted = not self._mouse
+        if not switch(self._desk._driver, wanted):
+            self._desk.say("there is no mouse here", refused=True)
+            return
+        self._mouse = wanted
+        self._desk.say(
+            "the mouse is the desk's" if wanted else "the mouse is the terminal's; m takes it back"
+        )
 
     def redraw(self) -> None:
         """Send the whole screen again."""

@@ -10,6 +10,7 @@ import numpy as np
 
 from .lines import Line, Piece, padded
 from .terminal import Glyphs, Look
+from .titles import as_fits
 
 LEAST_WIDTH, LEAST_HEIGHT = 16, 5
 _EMPTY = (" ", "\u2800")
@@ -95,9 +96,11 @@ def _marked(axis: list[Piece], column: int | None) -> list[Piece]:
 
 def _heading(panel: Panel, width: int) -> Line:
     room = width - len(panel.heading) - 2
-    if room < len(panel.readout):
-        return [(padded(f"{panel.heading}  {panel.readout}", width), "text")]
-    return [(panel.heading, "head"), (f"{panel.readout:>{width - len(panel.heading)}}", "text")]
+    readout = panel.readout
+    if room < len(readout):
+        # The last that is told is the least: what stands first has the dip and what it comes to.
+        readout = as_fits(readout, room).rstrip().removesuffix(", ...")
+    return [(panel.heading, "head"), (f"{readout:>{max(0, width - len(panel.heading))}}", "text")]
 
 
 def _cell(place: float, ends: tuple[float, float], cells: int, dots: int) -> int:

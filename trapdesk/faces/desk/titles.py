@@ -1,10 +1,12 @@
-"""A row of names of which one is here: as many as fit, whole, and marks for those that do not."""
+"""As much as fits of what is told in a line: names around the one that is here, pieces between commas."""
 
 from __future__ import annotations
 
 from collections.abc import Sequence
 
 from rich.cells import cell_len
+
+from .lines import padded
 
 
 def in_sight(keys: Sequence[str], texts: Sequence[str], here: int, width: int) -> list[tuple[str, str]]:
@@ -31,3 +33,13 @@ def in_sight(keys: Sequence[str], texts: Sequence[str], here: int, width: int) -
     before = [(keys[first - 1], "<")] if first > 0 else []
     behind = [(keys[last + 1], ">")] if last < len(texts) - 1 else []
     return [*before, *shown, *behind]
+
+
+def as_fits(text: str, width: int) -> str:
+    """Return what is told between commas, as much of it as fits; dots stand for the rest."""
+    if len(text) <= width:
+        return padded(text, width)
+    pieces = text.split(", ")
+    while len(pieces) > 1 and len(", ".join(pieces)) + 5 > width:
+        pieces.pop()
+    return padded(f"{', '.join(pieces)}, ...", width)

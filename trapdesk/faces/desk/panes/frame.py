@@ -14,6 +14,7 @@ from ... import words
 from ..form import NONE, FormRow
 from ..lines import Line, Lines, padded, width_of, wrapped
 from ..session import Session
+from ..titles import as_fits
 from ..typed import Typed
 from .answer import MARKS, STYLES
 from .chances import chances_line
@@ -197,16 +198,6 @@ class Foot(Lines):
         return _cut([[(piece, "quiet")] for piece in wrapped(text, width)], 1, width)
 
 
-def as_fits(text: str, width: int) -> str:
-    """Return what is told between commas, as much of it as fits; dots stand for the rest."""
-    if len(text) <= width:
-        return padded(text, width)
-    pieces = text.split(", ")
-    while len(pieces) > 1 and len(", ".join(pieces)) + 5 > width:
-        pieces.pop()
-    return padded(f"{', '.join(pieces)}, ...", width)
-
-
 def _summary(figures: Figures) -> dict[str, presenter.Row]:
     return {row.key: row for row in presenter.summary(figures)}
 
@@ -216,7 +207,8 @@ def _cut(lines: list[Line], most: int, width: int) -> list[Line]:
     if len(lines) <= most or most < 1:
         return lines[: max(0, most)]
     text, style = lines[most - 1][0]
-    return [*lines[: most - 1], [(text[: max(0, width - 4)].rstrip() + " ...", style)]]
+    kept = text[: max(0, width - 3)].rpartition(" ")[0] or text[: max(0, width - 4)]
+    return [*lines[: most - 1], [(kept.rstrip(" ,;:") + " ...", style)]]
 
 
 def keys_line(keys: tuple[tuple[str, str], ...], row: FormRow | None, busy: bool, width: int) -> Line:

@@ -15,9 +15,8 @@ from ..view import Acting, Sight
 from .texts import text_lines, waiting_lines
 
 KEYS = (
-    ("Enter", "type a reading"), ("a", "accept: keep and move"), ("d", "done otherwise"),
-    ("Backspace", "drop the last"), ("p", "other place"), ("arrows", "scroll"), ("x", "write to a file"),
-    ("Tab", "inputs"),
+    ("Enter", "type a reading"), ("a", "accept"), ("Tab", "inputs"), ("d", "done otherwise"),
+    ("Backspace", "drop the last"), ("p", "other place"), ("x", "write to a file"), ("arrows", "scroll"),
 )  # fmt: skip
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 from ....units.unit_names import Dimension
 from ...shown import plain
@@ -19,11 +19,11 @@ KEYS: tuple[tuple[str, str], ...] = (
     ("Enter or a digit", "edit the row; a choice takes its next word"),
     ("e", "type into the row, also into a choice"),
     ("s", "set or solved: let the desk find the value, or keep what it found"),
-    ("+ -", "nudge: a centimetre, half a turn, one step"),
+    ("+ -", "nudge: a centimetre, half a turn, one step; of a list one more, one less"),
+    ("Del, Backspace", "take a tap, a segment, a lowering out of its list"),
     ("u, U", "undo, redo, as far back as you like"),
     ("g", "go to the row a finding is about, then to the next"),
     ("c", "try the cure of that finding, where it is an edit"),
-    ("a capital letter", "the view of that name, see below"),
     ("v, V", "next view, view before"),
     ("left right , .", "move the readout of a plot; < > move it far"),
     ("z", "plot one band alone, then both again"),
@@ -32,8 +32,9 @@ KEYS: tuple[tuple[str, str], ...] = (
     ("in a text", "arrows scroll, also sideways; Tab or Esc goes back to the inputs"),
     ("x", "write what the view tells to a file; SWR as Touchstone, .s1p"),
     ("w, W", "write the file, write another file"),
-    ("o, n", "open a file, begin a new design from a preset"),
+    ("o, n", "open a file, begin a new design: from a preset, or for bands such as 40 20"),
     ("t", "colours: the terminal's own, dark, daylight, red light, none"),
+    ("m", "leave the mouse to the terminal, to select text with it, and back; Shift does as well"),
     ("Ctrl+L, Ctrl+Z", "draw the screen again; back to the shell for a while"),
     ("h or ?", "this help, and back"),
     ("q", "quit"),
@@ -41,20 +42,23 @@ KEYS: tuple[tuple[str, str], ...] = (
 
 
 def help_lines(sight: Sight, letters: Mapping[str, View]) -> list[Line]:
-    """Return what is known of the row under the cursor, what every key does, and the letters of the views."""
+    """Return what is known of the row under the cursor, the letters of the views, and what every key does."""
     lines: list[Line] = []
     if sight.row is not None and sight.row.key:
         lines += _about(sight.row, sight.width)
-    lines.append([("keys", "head")])
-    for key, does in KEYS:
-        pieces = wrapped(does, max(8, sight.width - 18))
-        lines.append([(f"{key:<17} ", "found"), (pieces[0], "text")])
-        lines += [[(" " * 18 + piece, "text")] for piece in pieces[1:]]
-    lines += [[], [("views", "head")]]
-    for letter, view in letters.items():
-        pieces = wrapped(view.about, max(8, sight.width - 18))
-        lines.append([(f"{letter} {view.name:<15} ", "found"), (pieces[0], "text")])
-        lines += [[(" " * 18 + piece, "text")] for piece in pieces[1:]]
+    lines.append([("views, each by its capital letter", "head")])
+    lines += _listed([(f"{letter} {view.name}", view.about) for letter, view in letters.items()], sight.width)
+    lines += [[], [("keys", "head")], *_listed(KEYS, sight.width)]
+    return lines
+
+
+def _listed(pairs: Sequence[tuple[str, str]], width: int) -> list[Line]:
+    """Return names with what they stand for beside them."""
+    lines: list[Line] = []
+    for name, does in pairs:
+        first, *more = wrapped(does, max(8, width - 18))
+        lines.append([(f"{name:<17} ", "found"), (first, "text")])
+        lines += [[(" " * 18 + piece, "text")] for piece in more]
     return lines
 
 
