@@ -7,11 +7,12 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from tests.hung_antenna import HONEST, WIDER, Hung
-from trapdesk.services.antenna_readings import Hoist
+from trapdesk.services.antenna_readings import Hoist, dips
 from trapdesk.services.ensemble import Ensemble
+from trapdesk.services.faults import Bench, diagnose
 from trapdesk.services.moves import Prospects, advise
 from trapdesk.services.solve import solve
-from trapdesk.services.updating import update
+from trapdesk.services.updating import stage_of, update
 from trapdesk.store import store
 
 PRESETS = ("40-20-vee", "80-40-flat", "20-10-flat")
@@ -21,11 +22,6 @@ MOST_LOWERINGS = 6
 def ensemble_of(name):
     """Return the ensemble of a preset."""
     return Ensemble(solve(store.find(name).design))
-
-
-def weighted(values, weights, share):
-    order = np.argsort(values)
-    return float(np.interp(share, np.cumsum(weights[order]) - weights[order] / 2, values[order]))
 
 
 def honest(ensemble, number, seed, read="dips"):
@@ -77,24 +73,29 @@ def truths(ensemble, hung, view, prospects, after):
 
 
 def refined(frequency, swr):
-    from trapdesk.services.antenna_readings import dips
-
     return float(dips(frequency, (((swr - 1) / (swr + 1)) ** 2)[None])[0])
 
 
 @dataclass
 class Story:
-    """How one antenna went: lowerings until it met the limit (None: never), why it ended, cut too short."""
+    """How one antenna went: lowerings until it met the limit (None: never), why it ended, cut too short.
+
+    `too_short` is needing more wire than there is with nothing cut but what was safe; `cut_short` the same
+    where a plain rule cuts what it shortens. `said` is what the advice says once the limit is met.
+    """
 
     met_after: int | None = None
     ended: str = ""
     worst: list = field(default_factory=list)
     too_short: bool = False
+    cut_short: bool = False
+    called: str = ""
+    said: str = ""
     moves: list = field(default_factory=list)
 
 
-def advised(ensemble, hung, random, read, seed):
-    """Follow the advice until it says stop."""
+def advised(ensemble, bench, hung, random, read, seed):
+    """Follow the advice until the limit is met, or it says stop, or calls the antenna faulty."""
     story = Story()
     hoists, change = [], {"inner": 0.0, "end": 0.0}
     reserve = ensemble.design.antenna.lengths.reserve
@@ -103,13 +104,21 @@ def advised(ensemble, hung, random, read, seed):
         view = hung.hang(change, lowering)
         worst = view.worst()
         story.worst.append(worst)
-        if worst <= ensemble.design.station.swr_limit and story.met_after is None:
+        if worst <= ensemble.design.station.swr_limit:
             story.met_after = lowering
-            return story
         readings = view.read_dips(random) if read == "dips" else view.read_meter(random)
         hoists.append(Hoist(readings=readings, change=dict(change), moves=lowering, tunings=hung.tunings))
+        diagnosis = diagnose(bench, hoists)
+        if diagnosis.named or diagnosis.misfits:
+            story.called = diagnosis.named[0].code if diagnosis.named else "misfits"
+        if story.called and story.met_after is None:
+            story.ended = f"called {story.called}"
+            return story
         posterior = update(ensemble, hoists, seed=seed)
         advice = advise(posterior, can_tune=True)
+        if story.met_after is not None:
+            story.said = advice.verdict
+            return story
         if advice.verdict in ("stop", "measure"):
             story.ended = f"{advice.verdict} {advice.now.all_bands:.2f} {advice.best.all_bands:.2f}"
             return story
@@ -125,14 +134,18 @@ def advised(ensemble, hung, random, read, seed):
     return story
 
 
-def plain(ensemble, hung, random, *, learning=False):
+def plain(ensemble, hung, random, *, learning=False, read="dips"):
     """Scale lengths with frequency: the inner wire by the upper dip, the whole side by the lower one.
 
-    With `learning` each band's scale is corrected by what the last move really did to its dip.
+    With `learning` each band's scale is corrected by what the last move really did to its dip. Where there is
+    only a meter, the dip is where the computed curve fits best what the meter shows. It folds, with as much
+    wire to let out as was left on.
     """
     story = Story()
     scale, before = {"upper": 1.0, "lower": 1.0}, None
     change = {"inner": 0.0, "end": 0.0}
+    reserve = ensemble.design.antenna.lengths.reserve
+    left = {wire: reserve for wire in change}
     bands = dict(ensemble.design.bands.items())
     wire = ensemble.wire
     for lowering in range(MOST_LOWERINGS + 1):
@@ -142,8 +155,12 @@ def plain(ensemble, hung, random, *, learning=False):
         if worst <= ensemble.design.station.swr_limit:
             story.met_after = lowering
             return story
-        dips = {reading.subject: reading.value for reading in view.read_dips(random)}
-        misses = {role: value / bands[role].target - 1 for role, value in dips.items()}
+        if read == "dips":
+            seen = {reading.subject: reading.value for reading in view.read_dips(random)}
+        else:
+            shown = view.read_meter(random)
+            seen = {role: by_meter(ensemble, role, [r for r in shown if r.subject == role]) for role in bands}
+        misses = {role: value / bands[role].target - 1 for role, value in seen.items()}
         if learning and before is not None:
             for role, miss in misses.items():
                 gained = before[role] - miss
@@ -154,43 +171,73 @@ def plain(ensemble, hung, random, *, learning=False):
         more = inner * misses["upper"] * scale["upper"]
         side = wire.side + change["inner"] + change["end"]
         whole = side * misses["lower"] * scale["lower"]
-        change["inner"] += more
-        change["end"] += whole - more
+        for name, value in (("inner", more), ("end", whole - more)):
+            change[name] += value
+            story.too_short |= change[name] > reserve
+            # Who cuts instead of folding has no more than is left; a centimetre is nothing.
+            story.cut_short |= change[name] > left[name] + 0.01
+            left[name] = min(left[name], change[name]) if value < 0 else max(left[name], change[name])
     story.ended = "too many"
     return story
 
 
+def by_meter(ensemble, role, readings):
+    """Return the dip that fits a meter's readings best if the curve is the computed one, moved along."""
+    nothing = ensemble.nominal()
+    features = ensemble.features(nothing, 1, {wire: np.zeros(1) for wire in ("inner", "end")})
+    (outcome,) = ensemble.outcome(role, features, [ensemble.traps(nothing, stage_of(True), 1)])[0]
+    frequency = np.asarray(ensemble.grids[role].frequency)
+    size = np.sqrt(outcome.reflection[0])
+    curve = np.log((1 + size) / (1 - size))
+    moved = np.linspace(-0.06, 0.06, 601)
+    off = 1e-3 * moved**2
+    for reading in readings:
+        value = np.interp(reading.frequency / (1 + moved), frequency, curve)
+        low, high = np.log(reading.value.low), np.log(min(reading.value.high, 30.0))
+        off += np.maximum(np.maximum(low - value, value - high), 0.0) ** 2
+        if np.isfinite(reading.value.high):
+            off += 0.01 * (value - (low + high) / 2) ** 2
+    return float(outcome.dip[0] * (1 + moved[int(np.argmin(off))]))
+
+
 def savable(ensemble, hung):
-    """Return whether any wire length met the limit: a search with full solves."""
-    best, at, step = np.inf, np.zeros(2), 0.16
+    """Return whether any wire length met the limit: a search with full solves from many starts at once."""
+    limit, side = ensemble.design.station.swr_limit, ensemble.wire.side
+    steps = side * np.linspace(-0.04, 0.04, 5)
     seen = {}
-    for _ in range(60):
-        for direction in [(0, 0), (1, 0), (-1, 0), (0, 1), (0, -1), (1, -1), (-1, 1), (1, 1), (-1, -1)]:
-            there = tuple(np.round(at + step * np.array(direction), 4))
-            if there not in seen:
-                seen[there] = hung.hang({"inner": there[0], "end": there[1]}).worst()
-        i = min(seen, key=seen.get)
-        if seen[i] <= ensemble.design.station.swr_limit:
-            return True
-        if seen[i] >= best - 1e-4:
-            step /= 2
-            if step < 0.004:
-                break
-        best, at = seen[i], np.array(i)
-    return False
+
+    def worst(there):
+        if there not in seen:
+            seen[there] = hung.hang({"inner": there[0], "end": there[1]}).worst()
+        return seen[there]
+
+    starts = [(round(a, 4), round(b, 4)) for a in steps for b in steps]
+    for at in sorted(starts, key=worst)[:3]:
+        best, step = worst(at), 0.01 * side
+        while step > 0.004:
+            around = [(a, b) for a in (-1, 0, 1) for b in (-1, 0, 1)]
+            tries = [(round(at[0] + step * a, 4), round(at[1] + step * b, 4)) for a, b in around]
+            at = min(tries, key=worst)
+            if worst(at) <= limit:
+                return True
+            if worst(at) >= best - 1e-4:
+                step /= 2
+            best = min(best, worst(at))
+    return min(seen.values()) <= limit
 
 
 def study(name, number, seed, *, world=WIDER, read="dips", rule="advice"):
     """Return the stories of many antennas."""
     ensemble = ensemble_of(name)
+    bench = Bench(ensemble)
     stories = []
     for n in range(number):
         random = np.random.default_rng((seed, n))
         hung = Hung(ensemble, random, world)
         if rule == "advice":
-            story = advised(ensemble, hung, random, read, n + 1)
+            story = advised(ensemble, bench, hung, random, read, n + 1)
         else:
-            story = plain(ensemble, hung, random, learning=rule == "plain learning")
+            story = plain(ensemble, hung, random, learning=rule == "plain learning", read=read)
         if story.met_after is None:
             hung.tunings = 0
             story.ended += "" if savable(ensemble, hung) else "; no length"
@@ -203,13 +250,12 @@ def table(stories):
     hopeless = [s for s in stories if s.ended.endswith("no length")]
     rest = [s for s in stories if s not in hopeless]
     counts = [99 if s.met_after is None else s.met_after for s in rest]
-    return {
-        "antennas": len(stories),
-        "no length": len(hopeless),
-        "median": float(np.median(counts)),
-        "within 0": float(np.mean([c <= 0 for c in counts])),
-        "within 1": float(np.mean([c <= 1 for c in counts])),
-        "within 2": float(np.mean([c <= 2 for c in counts])),
-        "within 4": float(np.mean([c <= 4 for c in counts])),
+    found = {"antennas": len(stories), "no length": len(hopeless), "median": float(np.median(counts))}
+    found |= {f"within {most}": float(np.mean([c <= most for c in counts])) for most in (0, 1, 2, 4)}
+    met = [s for s in rest if s.met_after is not None and s.said]
+    return found | {
         "too short": float(np.mean([s.too_short for s in stories])),
+        "too short if cut": float(np.mean([s.cut_short for s in stories])),
+        "called faulty": float(np.mean([bool(s.called) for s in stories])),
+        "told to move on": float(np.mean([s.said not in ("stop", "measure") for s in met])) if met else 0.0,
     }

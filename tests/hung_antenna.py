@@ -103,20 +103,9 @@ class Hung:
         sides = []
         for i, each in enumerate(lengths):
             length = sum(each.values())
-            shares = np.linspace(0, 1, PIECES + 1) if self.world.sag and sag > 0 else np.array([0.0, 1.0])
-            low = 4 * sag * shares * (1 - shares) * (0.75 if site.shape is Shape.VEE else 1.0)
-            if site.shape is Shape.FLAT and self.world.sag:
-                # A level wire held in the middle by the line: each side hangs from the feed point outward.
-                low = sag * shares * (2 - shares) * np.where(shares < 1, 1, 1)
-                low = 4 * sag * shares * (1 - shares)
-            along = shares * length
-            points = np.column_stack(
-                [
-                    np.zeros_like(along),
-                    (-1) ** i * along * math.cos(slope),
-                    height - along * math.sin(slope) - low,
-                ]
-            )
+            # A level wire is held in the middle by the line: each side hangs for itself.
+            depth = max(sag, 0.0) * (0.75 if site.shape is Shape.VEE else 1.0) if self.world.sag else 0.0
+            points = hanging(length, depth, slope) * [1.0, (-1) ** i, 1.0] + [0.0, 0.0, height]
             vertices = tuple(map(tuple, points))
             sides.append(
                 Side(vertices=vertices, trap=each["inner"] if wire.end is not None else None, body=wire.body)
@@ -130,6 +119,21 @@ class Hung:
             elastance=wire.elastance * (1 + coating),
         )  # fmt: skip
         return View(self, bent, draws)
+
+
+def hanging(length, depth, slope):
+    """Return points along a side of a length that hangs in a parabola, so deep below its chord's middle.
+
+    The wire keeps its length: what it hangs through brings its end nearer.
+    """
+    shares = np.linspace(0, 1, PIECES + 1) if depth > 0 else np.array([0.0, 1.0])
+    chord = length
+    for _ in range(6):
+        along = shares * chord
+        drop = along * math.sin(slope) + 4 * depth * shares * (1 - shares)
+        points = np.column_stack([np.zeros_like(along), along * math.cos(slope), -drop])
+        chord *= length / np.linalg.norm(np.diff(points, axis=0), axis=1).sum()
+    return points
 
 
 class View:

@@ -44,8 +44,10 @@ LOOSE = 0.08
 """How far the place of a break may be from those solved, one sigma, as a share of the end wire. [1]"""
 SLIPS = (1.0, -1.0, 0.3048, -0.3048)
 """By how much both wires of a kind may be off where a unit was slipped: a metre, a foot. [m]"""
+SPREAD = 1.5
+"""How many times as far off as believed a sound antenna may be: beliefs are estimates, faults are not. [1]"""
 NAMED = 20.0
-"""How many times likelier the readings must be of the faults than of a sound antenna for one to be named."""
+"""How many times likelier the readings must be of a fault than of a sound antenna for it to be named."""
 BESIDE = 20.0
 """A fault that is less than this many times less likely than the first is told with it."""
 CLOSE = 0.2
@@ -364,7 +366,7 @@ def diagnose(
     """Return what fits the readings better than any sound antenna, if anything does."""
     ensemble = bench.ensemble
     if latents is None:
-        latents = latents_of(ensemble, hoists[-1].moves, hoists[-1].tunings)
+        latents = latents_of(ensemble, hoists[-1].moves, hoists[-1].tunings, SPREAD)
     stage, files = stage_of(tuned), sweeps or {}
     count = sum(len(hoist.readings) for hoist in hoists)
     if _chance_above(_misfit(ensemble, latents, hoists, stage, files), max(count, 1)) > WELL:
@@ -388,9 +390,8 @@ def diagnose(
             ratio = math.exp(min(mean - sound, 600.0))
             found.append(Suspect(code=code, ratio=ratio, misfit=min(misfits)))
     found.sort(key=lambda one: -one.ratio)
-    total = sum(one.ratio for one in found) / max(len(found), 1)
     named: tuple[Suspect, ...] = ()
-    if found and total >= NAMED:
+    if found and found[0].ratio >= NAMED:
         named = tuple(one for one in found if one.ratio * BESIDE >= found[0].ratio)
     least = min([healthy_misfit, *(one.misfit for one in found)])
     return Diagnosis(

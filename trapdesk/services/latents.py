@@ -25,11 +25,21 @@ TUNED = ("tuning",)
 
 
 class Latents:
-    """The columns of standard normal numbers of a trial, and the values they stand for."""
+    """The columns of standard normal numbers of a trial, and the values they stand for.
+
+    `spread` is how much farther than believed, about its middle, each quantity may be.
+    """
 
     def __init__(
-        self, varying: Mapping[str, Belief], moves: int, tunings: int, has_line: bool, has_end: bool
+        self,
+        varying: Mapping[str, Belief],
+        moves: int,
+        tunings: int,
+        has_line: bool,
+        has_end: bool,
+        spread: float = 1.0,
     ) -> None:
+        self.spread = spread
         self.varying = {name: belief for name, belief in varying.items() if name not in NOT_NOW}
         self.columns: dict[str, slice] = {}
         self._at = 0
@@ -57,12 +67,12 @@ class Latents:
         for name, belief in self.varying.items():
             column = f"{name} {tunings}" if tunings and name in TUNED else name
             own = z[:, self.columns[column]]
-            if not belief.pair:
-                found[name] = belief.shaped(own[:, 0], None)
-                continue
-            common, each = own[:, :1], own[:, 1:]
-            mixed = math.sqrt(belief.alike) * common + math.sqrt(1 - belief.alike) * each
-            found[name] = belief.shaped(mixed, None)
+            mixed = own[:, 0]
+            if belief.pair:
+                common, each = own[:, :1], own[:, 1:]
+                mixed = math.sqrt(belief.alike) * common + math.sqrt(1 - belief.alike) * each
+            middle = sum(belief.ends) / 2
+            found[name] = middle + self.spread * (belief.shaped(mixed, None) - middle)
         return found
 
     def change(self, z: np.ndarray, meant: Mapping[str, float], moves: int) -> dict[str, np.ndarray]:

@@ -30,6 +30,8 @@ STEPS, STEP = 12, 0.25
 """Kalman steps at most, and how far apart numbers are put to see what they do. [sigma]"""
 WIDER = 1.25
 """How much wider than computed trials are drawn along what was read. [1]"""
+OWN_STEPS = 2
+"""Kalman steps of each trial's own: after one alone, weights hang on the few trials it served well. [1]"""
 LEAST = 0.06
 """Share of the trials drawn that must survive for them not to be drawn once more. [1]"""
 STREAM = 4096
@@ -73,10 +75,10 @@ def stage_of(tuned: bool) -> Stage:
     return STAGES[1] if tuned else BUILT
 
 
-def latents_of(ensemble: Ensemble, moves: int, tunings: int) -> Latents:
-    """Return what a trial is made of after moves and tunings."""
+def latents_of(ensemble: Ensemble, moves: int, tunings: int, spread: float = 1.0) -> Latents:
+    """Return what a trial is made of after moves and tunings, `spread` times as far off as believed."""
     has_line = ensemble.path is not None and ensemble.path.line is not None
-    return Latents(ensemble.varying, moves, tunings, has_line, ensemble.wire.end is not None)
+    return Latents(ensemble.varying, moves, tunings, has_line, ensemble.wire.end is not None, spread)
 
 
 def update(
@@ -204,21 +206,25 @@ def _around(
 ) -> tuple[np.ndarray, np.ndarray]:
     """Return trials drawn around the most likely one, and the log of what each weighs.
 
-    Across what was read they are drawn as believed before; along it each where a Kalman step of its own
-    leads, `wider` than that step says.
+    Across what was read they are drawn as believed before; along it each where Kalman steps of its own lead,
+    `wider` than those steps say.
     """
     _, sizes, along = np.linalg.svd(slopes, full_matrices=False)
     e = _normal(seed, 0, count, peak.size)
     inside = e @ along.T
     start = along @ peak
     z = e + (start - inside) @ along
-    off, _ = near.residuals(z)
     slope = slopes @ along.T
     narrow = 1 / (1 + sizes**2)
-    middle = (start * sizes**2 - off @ slope) * narrow
+    middle = np.broadcast_to(start, inside.shape)
+    for _ in range(OWN_STEPS):
+        off, _ = near.residuals(z)
+        there = (middle * sizes**2 - off @ slope) * narrow
+        z = z + (there - middle) @ along
+        middle = there
     scale = np.minimum(wider * np.sqrt(narrow), 1.0)
     inside = inside * scale
-    z = z + (middle + inside - start) @ along
+    z = z + inside @ along
     _, chance = near.residuals(z)
     away = middle + inside
     drawn = -0.5 * ((inside / scale) ** 2).sum(axis=1) - np.log(scale).sum()
