@@ -22,6 +22,10 @@ __all__ = ["call", "design"]
             ("coil", "kind=toroid", "f=7MHz", "turns=300"),
             "is more than 200 turns; from 1 turns up to 200 turns",
         ),
+        (("tank", "", "C=47pF", "Q=180"), "nothing is given; write name=value"),
+        (("readings", PRESET, ""), "nothing is given; write name=value"),
+        (("readings", PRESET, "trap.f0="), "trap.f0: nothing is given; write name=value"),
+        (("readings", PRESET, "trap.f0=14.02MHz,doubt="), "doubt: nothing is given; write name=value"),
     ],
 )
 def test_refused_in_one_line(call, typed, told):

@@ -35,7 +35,8 @@ def split(texts: Sequence[str], names: Iterable[str], example: str) -> Iterator[
         typed, equals, value = text.partition("=")
         name = known.get(typed.strip().lower(), "")
         if not equals or not typed.strip():
-            yield Fault("", "unreadable", text, help=f"write name=value: {example}")
+            code = "unreadable" if text.strip() else "empty"
+            yield Fault("", code, text, help=f"write name=value: {example}")
         elif not name:
             near = difflib.get_close_matches(typed.strip()[:10].lower(), known, n=1)
             help = f"did you mean {known[near[0]]}?" if near else f"names are {', '.join(known.values())}"

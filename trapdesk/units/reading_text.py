@@ -66,7 +66,9 @@ def _split(text: str, faults: list[Fault]) -> Iterator[tuple[str, str, list[tupl
         name, equals, value = piece.partition("=")
         if not equals or not name.strip() or not value.strip():
             help = f"write name=value: {KINDS['trap.f0'].example} or {KINDS['band.dip'].example}"
-            faults.append(Fault("", "unreadable", piece, help=help))
+            named = name.strip() if equals else ""
+            code = "empty" if named or not piece.strip() else "unreadable"
+            faults.append(Fault(named, code, piece, help=help))
             return
         pairs.append((name.strip(), value.strip()))
     reading: tuple[str, str, list[tuple[str, str]]] | None = None
