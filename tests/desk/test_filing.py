@@ -9,12 +9,15 @@ import pytest
 
 from tests.desk.screens import LONGEST, go_to, opened, pressed, screen, settled, text, typed
 from trapdesk.design.rules import check
+from trapdesk.errors import TrapdeskError
 from trapdesk.faces.desk import config
 from trapdesk.faces.desk.config import Config
 from trapdesk.faces.desk.filing import FIRST_RUN
 from trapdesk.faces.desk.fresh import begun
 from trapdesk.faces.desk.journal import Journal
 from trapdesk.faces.desk.terminal import look
+from trapdesk.faces.desk.themes import THEMES
+from trapdesk.services.solve import solve
 from trapdesk.store import store
 
 HEIGHT = "site.height"
@@ -144,6 +147,54 @@ def test_lasting_choices(tmp_path, written, config_, says):
     assert says in told
     assert bool(told) == bool(says)
     assert told.isprintable()
+
+
+def test_choices_of_theme_are_the_themes():
+    assert config.THEMES == tuple(THEMES)
+
+
+@pytest.mark.parametrize(
+    ("bands", "edges"),
+    [
+        ("40 20", [(14.0e6, 14.35e6), (7.0e6, 7.2e6)]),
+        ("20/40", [(14.0e6, 14.35e6), (7.0e6, 7.2e6)]),
+        (" 80m,40M ", [(7.0e6, 7.2e6), (3.5e6, 3.8e6)]),
+        ("15", [(21.0e6, 21.45e6)]),
+    ],
+)
+def test_a_new_design_for_bands_that_are_named(bands, edges):
+    document = begun(bands, Config())
+    design = document.design
+    # Radio Regulations article 5, Region 1, from memory.
+    assert [(band.low, band.high) for _, band in design.bands.items()] == edges
+    assert not check(design)
+    assert (design.antenna.trap is None) == (len(edges) == 1)
+    assert document.path is None
+    assert document.text == store.to_text(design)
+    figures = solve(design)
+    assert all(abs(band.resonance / band.aim - 1) < 0.01 for band in figures.bands.values())
+
+
+@pytest.mark.parametrize("bands", ["41 20", "40 40", "0", "20 40 80", "40 20 x", "9" * 200])
+def test_no_design_for_bands_that_are_not(bands):
+    with pytest.raises(TrapdeskError) as refused:
+        begun(bands, Config())
+    assert len(str(refused.value).splitlines()) == 1
+
+
+async def test_new_takes_what_is_typed_in_place_of_what_it_suggests(kept, tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    async with opened(kept=kept) as (desk, pilot):
+        await pressed(desk, pilot, "n", *"40 20")
+        await pressed(desk, pilot, "enter")
+        await settled(desk, pilot)
+        assert desk.session.design.title == "40/20 m, new"
+        assert desk.session.figures.design == desk.session.design
+        await pressed(desk, pilot, "w")
+        assert "write to 40-20.toml" in text(desk)
+        # What moves the caret keeps the suggestion, to be mended.
+        await pressed(desk, pilot, "left", "x", "enter")
+        assert desk.session.path.name == "40-20.tomxl"
 
 
 def test_no_file_of_choices_is_fine(tmp_path):
