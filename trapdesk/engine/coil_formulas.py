@@ -372,6 +372,6 @@ def medhurst_capacitance(diameter: ArrayLike, length: ArrayLike) -> FloatArray:
     positive(diameter=diameter, length=length)
     diameter = np.asarray(diameter, float)
     x = np.log(np.asarray(length, float) / diameter)
-    at = np.clip(np.searchsorted(_LOG_H_AT, x) - 1, 0, _LOG_H_AT.size - 2)
+    at = np.searchsorted(_LOG_H_AT[1:-1], x)
     along = (x - _LOG_H_AT[at]) / (_LOG_H_AT[at + 1] - _LOG_H_AT[at])
     return PICOFARAD_PER_CM * diameter * np.exp(_LOG_H[at] + along * (_LOG_H[at + 1] - _LOG_H[at]))

@@ -17,11 +17,15 @@ STEPS = 40
 ZERO_CELSIUS = 273.15
 
 
-def _given_off(rise: FloatArray, diameter: FloatArray, ambient: FloatArray) -> FloatArray:
-    """Return the heat a square metre gives off."""
+def _given_off(rise: FloatArray, diameter: FloatArray, ambient: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Return the heat a square metre gives off, and how much more with every kelvin."""
     kelvin = ambient + ZERO_CELSIUS
-    radiated = EMISSIVITY * STEFAN_BOLTZMANN * ((kelvin + rise) ** 4 - kelvin**4)
-    return CONVECTION * (rise / diameter) ** 0.25 * rise + radiated
+    hot = kelvin + rise
+    cube = hot * hot * hot
+    radiated = EMISSIVITY * STEFAN_BOLTZMANN * (cube * hot - kelvin * kelvin * kelvin * kelvin)
+    # Roots and products alone are rounded alike in arrays and in single numbers.
+    by_air = CONVECTION * np.sqrt(np.sqrt(rise / diameter))
+    return by_air * rise + radiated, 1.25 * by_air + 4.0 * EMISSIVITY * STEFAN_BOLTZMANN * cube
 
 
 def temperature_rise(
@@ -60,14 +64,18 @@ def temperature_rise(
     positive(diameter=diameter, length=length)
     p, d, s, air = np.broadcast_arrays(*(np.asarray(x, float) for x in (power, diameter, length, ambient)))
     wanted = p / (np.pi * d * (s + 0.5 * d))
-    low, high = np.zeros_like(wanted), np.full_like(wanted, 1.0)
-    while np.any(short := _given_off(high, d, air) < wanted):
-        high = np.where(short, 2.0 * high, high)
+    # To radiate all of it at the slope of the beginning it would be warmer; from there Newton's steps come
+    # down to the answer and never past it.
+    kelvin = air + ZERO_CELSIUS
+    rise = wanted / (4.0 * EMISSIVITY * STEFAN_BOLTZMANN * kelvin * kelvin * kelvin)
     for _ in range(STEPS):
-        middle = 0.5 * (low + high)
-        short = _given_off(middle, d, air) < wanted
-        low, high = np.where(short, middle, low), np.where(short, high, middle)
-    return np.where(wanted > 0.0, high, 0.0)[()]
+        off, slope = _given_off(rise, d, air)
+        step = (off - wanted) / slope
+        going = np.abs(step) > 1e-12 * rise
+        if not going.any():
+            break
+        rise = np.where(going, rise - step, rise)
+    return rise[()]
 
 
 def over_share(time_constant: ArrayLike, over: ArrayLike, pause: ArrayLike) -> FloatArray:

@@ -20,6 +20,8 @@ def at_least(bound: float, **values: ArrayLike) -> None:
         Naming the first argument outside the limit.
     """
     for name, value in values.items():
+        if isinstance(value, float) and bound <= value < np.inf:
+            continue
         value = np.asarray(value, dtype=float)
         if value.size and not (value.min() >= bound and value.max() < np.inf):
             raise ValueError(f"{name} must be finite and at least {bound:g}")
@@ -39,6 +41,8 @@ def positive(**values: ArrayLike) -> None:
         Naming the first argument outside the limit.
     """
     for name, value in values.items():
+        if isinstance(value, float) and 0.0 < value < np.inf:
+            continue
         value = np.asarray(value, dtype=float)
         if value.size and not (value.min() > 0.0 and value.max() < np.inf):
             raise ValueError(f"{name} must be finite and above 0")

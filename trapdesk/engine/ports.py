@@ -91,14 +91,19 @@ def polynomial_weights(nodes: np.ndarray, position: np.ndarray) -> np.ndarray:
     ------
     Definition: Lagrange's form of the interpolating polynomial.
     """
-    spread = nodes[:, None] - nodes
-    np.fill_diagonal(spread, 1.0)
-    if np.any(spread == 0):
-        raise ValueError("nodes: must all be different")
     n = nodes.size
-    gaps = np.broadcast_to(position[:, None, None] - nodes, (position.size, n, n)).copy()
-    gaps[:, np.arange(n), np.arange(n)] = 1.0
-    return np.prod(gaps / spread, axis=2)
+    spread = nodes[:, None] - nodes
+    spread.flat[:: n + 1] = 1.0
+    if not spread.all():
+        raise ValueError("nodes: must all be different")
+    gaps = position[:, None] - nodes
+    weights = np.empty((position.size, n))
+    # What lies before a node and what lies after it, each product grown by one factor from node to node.
+    weights[:, 0] = 1.0
+    np.multiply.accumulate(gaps[:, :-1], axis=1, out=weights[:, 1:])
+    weights[:, :-1] *= np.multiply.accumulate(gaps[:, :0:-1], axis=1)[:, ::-1]
+    weights /= spread.prod(axis=1)
+    return weights
 
 
 def chebyshev_nodes(low: float, high: float, count: int) -> np.ndarray:
@@ -173,7 +178,9 @@ def terminate(impedance: np.ndarray, *traps: np.ndarray) -> Terminated:
     z = impedance
     entries = (z11, z[..., 0, 1], z[..., 0, 2], z[..., 1, 1], z[..., 2, 2], z[..., 1, 2])
     shape = np.broadcast_shapes(z11.shape, *(np.shape(trap) for trap in traps))
-    first, second = (np.broadcast_to(trap, shape) for trap in (traps[0], traps[-1]))
+    first, second = (
+        trap if np.shape(trap) == shape else np.broadcast_to(trap, shape) for trap in (traps[0], traps[-1])
+    )
     feed, i2, i3 = terminate_entries(*entries, first, second)
     currents = np.stack([np.ones_like(i2), i2, i3], axis=-1)
     return Terminated(feed.reshape(shape)[()], currents.reshape(*shape, 3))

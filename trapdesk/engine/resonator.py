@@ -148,9 +148,9 @@ def impedance(
     with np.errstate(divide="ignore", invalid="ignore"):
         np.divide(real, bottom, out=result.real)
         np.divide(imag, bottom, out=result.imag)
-    pole = np.broadcast_to(bottom == 0.0, result.shape)
-    if pole.any():
-        result[pole] = complex(np.inf, 0.0)
+    pole = bottom == 0.0
+    if np.any(pole):
+        result[np.broadcast_to(pole, result.shape)] = complex(np.inf, 0.0)
     return result[()]
 
 

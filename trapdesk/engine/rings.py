@@ -4,6 +4,7 @@ The current on each ring's surface crowds to where the field is, so it is unknow
 is a flux line and that all rings carry the same current determines it. Both inductance and loss follow.
 """
 
+import math
 from collections.abc import Callable
 from functools import lru_cache
 
@@ -141,11 +142,15 @@ def _between(turns: float, whole: Callable[[int], tuple[float, float]]) -> tuple
     if float(turns).is_integer():
         return whole(int(turns))
     first = min(max(int(turns) - 1, 1), MOST_TURNS - 3)
-    at = np.log(np.arange(first, first + 4.0))
-    solved = np.array([whole(n) for n in range(first, first + 4)])
-    x = np.log(turns)
-    weight = np.array([np.prod([(x - q) / (p - q) for q in at if q != p]) for p in at])
-    return float(np.exp(weight @ np.log(solved[:, 0]))), float(weight @ solved[:, 1])
+    counts = range(first, first + 4)
+    at, x = [math.log(n) for n in counts], math.log(turns)
+    log_first = second = 0.0
+    for n, p in zip(counts, at, strict=True):
+        weight = math.prod((x - q) / (p - q) for q in at if q != p)
+        pair = whole(n)
+        log_first += weight * math.log(pair[0])
+        second += weight * pair[1]
+    return math.exp(log_first), second
 
 
 def solenoid_rings(

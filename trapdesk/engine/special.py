@@ -12,6 +12,7 @@ TABLE_STEP = 0.05
 SERIES_START = 25.0
 AGM_ROUNDS = 40
 RATIO_SERIES_START, RATIO_TERMS = 24.0, 15
+FEWER_FROM, FEWER_TERMS = 48.0, 10
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
@@ -129,13 +130,13 @@ def bessel_j01(x: ArrayLike) -> tuple[FloatArray, FloatArray]:
 
 
 @cache
-def _large_ratio_terms() -> list[float]:
+def _large_ratio_terms(count: int) -> list[float]:
     """Return the terms of the series of I0(z) / I1(z) in 1 / z, the last one first."""
     top, bottom, terms = [1.0], [1.0], []
-    for k in range(1, RATIO_TERMS):
+    for k in range(1, count):
         top.append(top[-1] * (2 * k - 1) ** 2 / (8 * k))
         bottom.append(bottom[-1] * ((2 * k - 1) ** 2 - 4) / (8 * k))
-    for k in range(RATIO_TERMS):
+    for k in range(count):
         terms.append(top[k] - sum(bottom[j] * terms[k - j] for j in range(1, k + 1)))
     return terms[::-1]
 
@@ -177,7 +178,7 @@ def round_wire_ratio(z: ArrayLike) -> ComplexArray:
         out[small] = 0.5 * ratio
     if not small.all():
         big = z[~small]
-        first, *rest = _large_ratio_terms()
+        first, *rest = _large_ratio_terms(RATIO_TERMS if size[~small].min() < FEWER_FROM else FEWER_TERMS)
         total = np.full(big.shape, first, dtype=complex)
         inverse = 1.0 / big
         for term in rest:

@@ -24,6 +24,10 @@ SETTLED = 1e-13
 LOOKS = 40
 
 
+KEPT = 16
+"""Sets of frequencies at which a trap's circuit is kept."""
+
+
 @dataclass(frozen=True, kw_only=True)
 class Lumped:
     """A coil and a capacitor side by side, and what the coil adds of its own."""
@@ -31,8 +35,24 @@ class Lumped:
     coil: BuiltCoil
     capacitor: BuiltCapacitor
 
+    @cached_property
+    def _kept(self) -> dict[tuple, tuple[np.ndarray, np.ndarray, np.ndarray, np.ndarray]]:
+        return {}
+
     def circuit(self, frequency: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray, np.ndarray]:
-        """Return coil inductance, capacitance, coil and capacitor resistance at frequencies."""
+        """Return coil inductance, capacitance, coil and capacitor resistance at frequencies.
+
+        The last few answers are kept: impedance, stress and their changes are asked for at the same ones.
+        """
+        key = np.shape(frequency), np.asarray(frequency, float).tobytes()
+        found = self._kept.get(key)
+        if found is None:
+            if len(self._kept) >= KEPT:
+                self._kept.clear()
+            found = self._kept[key] = self._circuit(frequency)
+        return found
+
+    def _circuit(self, frequency: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray, np.ndarray]:
         inductance, resistance = self.coil.series(frequency)
         w = 2 * np.pi * np.asarray(frequency)
         z = self.capacitor.impedance(frequency)
