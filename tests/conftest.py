@@ -5,6 +5,8 @@ import os
 # Read by the linear algebra library when numpy is first imported, so set before anything below.
 for _name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
     os.environ[_name] = "1"
+# What a person chose to last, such as feet and inches, is no part of a test.
+os.environ["XDG_CONFIG_HOME"] = os.path.join(os.path.dirname(__file__), "no-choices")
 
 from dataclasses import asdict  # noqa: E402
 

@@ -7,9 +7,11 @@ from typing import Any
 import numpy as np
 
 from .. import __version__
+from ..errors import visible
 from ..services.figures import Figures
 from ..store.touchstone import touchstone
 from .json_out import FORMAT
+from .layout import WIDTH, folded
 
 
 def curve(figures: Figures, roles: tuple[str, ...]) -> tuple[np.ndarray, np.ndarray]:
@@ -27,7 +29,7 @@ def text(figures: Figures, roles: tuple[str, ...]) -> str:
     frequency, impedance = curve(figures, roles)
     names = " and ".join(figures.bands[role].name for role in roles)
     remarks = (
-        f"{figures.design.title}: impedance at the feed point, {names}",
+        *folded("", f"{visible(figures.design.title, 200)}: impedance at the feed point, {names}", WIDTH - 2),
         f"computed by trapdesk {__version__}, an estimate, not measured",
     )
     return touchstone(frequency, impedance, figures.design.station.reference, remarks)

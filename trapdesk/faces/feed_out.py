@@ -211,7 +211,7 @@ def map_lines(figures: Figures, found: ReachMap, role: str) -> Iterator[str]:
     yield f"  {'':>7}  0{half:>{columns // 2}}{full:>{columns - columns // 2 - 1}}"
     legend = "lost: . under 0.3 dB, : under 1 dB, # more; blank: out of reach; o the antenna, X the aim"
     yield from folded("  ", legend)
-    yield f"  {reading_line(found.setting)}"
+    yield from folded("  ", reading_line(found.setting))
 
 
 def reading_line(setting: TunerSetting) -> str:
