@@ -62,9 +62,14 @@ class Ports:
         """
         weights = polynomial_weights(self.frequency, np.atleast_1d(np.asarray(frequency, float)))
         parts = (self.impedance, self.loss, self.sky)
-        return Ports(
-            np.atleast_1d(frequency), *(None if a is None else np.tensordot(weights, a, 1) for a in parts)
-        )
+        return Ports(np.atleast_1d(frequency), *(None if a is None else _sum(weights, a) for a in parts))
+
+
+def _sum(weights: np.ndarray, matrices: np.ndarray) -> np.ndarray:
+    """Return sums of matrices (n, p, p) by weights (m, n), with real arithmetic alone."""
+    flat = np.ascontiguousarray(matrices).reshape(matrices.shape[0], -1)
+    found = (weights @ flat.view(float)).view(flat.dtype)
+    return found.reshape(weights.shape[0], *matrices.shape[1:])
 
 
 def polynomial_weights(nodes: np.ndarray, position: np.ndarray) -> np.ndarray:
@@ -182,8 +187,9 @@ def terminate(impedance: np.ndarray, *traps: np.ndarray) -> Terminated:
         trap if np.shape(trap) == shape else np.broadcast_to(trap, shape) for trap in (traps[0], traps[-1])
     )
     feed, i2, i3 = terminate_entries(*entries, first, second)
-    currents = np.stack([np.ones_like(i2), i2, i3], axis=-1)
-    return Terminated(feed.reshape(shape)[()], currents.reshape(*shape, 3))
+    currents = np.ones((*shape, 3), complex)
+    currents[..., 1], currents[..., 2] = i2.reshape(shape), i3.reshape(shape)
+    return Terminated(feed.reshape(shape)[()], currents)
 
 
 def terminate_entries(

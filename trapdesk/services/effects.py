@@ -42,9 +42,7 @@ def _by_trap(response: Response) -> float | None:
         return None
     at = min(max(response.resonance, response.low), response.high) * ASIDE
     ports = response.ports.at(at).impedance
-    base, up, down = (
-        terminate(ports, load).impedance.imag for load in trap.moved(at, (0.0, TRAP_STEP, -TRAP_STEP))
-    )
+    base, up, down = terminate(ports, trap.moved(at, (0.0, TRAP_STEP, -TRAP_STEP))).impedance.imag
     slope = (base[2] - base[0]) / (at[2] - at[0])
     return float((down[1] - up[1]) / slope / (2 * TRAP_STEP))
 

@@ -38,8 +38,9 @@ class Moved:
             solve_ports(w, nodes, counts, highest, extrapolate=False, odd=False, power=False).impedance
             for w in wires
         ]
+        together = np.stack(solved, axis=1)
         self._ports = {
-            role: [Ports(nodes[i : i + NODES], z[i : i + NODES]) for z in solved]
+            role: Ports(nodes[i : i + NODES], together[i : i + NODES])
             for role, i in zip(ranges, range(0, nodes.size, NODES), strict=True)
         }
 
@@ -47,7 +48,7 @@ class Moved:
         """Return how far a resonance moves when the first wire becomes each other one, in Hz."""
         low, high = self.ranges[role]
         at = min(max(frequency, low), high) * ASIDE
-        loads = () if trap is None else (trap.impedance(at),)
-        base, *others = (terminate(p.at(at).impedance, *loads).impedance.imag for p in self._ports[role])
-        slope = (base[2] - base[0]) / (at[2] - at[0])
-        return np.array([(base[1] - x[1]) / slope for x in others])
+        loads = () if trap is None else (trap.impedance(at)[:, None],)
+        found = terminate(self._ports[role].at(at).impedance, *loads).impedance.imag
+        slope = (found[2, 0] - found[0, 0]) / (at[2] - at[0])
+        return (found[1, 0] - found[1, 1:]) / slope
