@@ -97,6 +97,9 @@ def test_a_share_is_never_all_when_some_are_missing(share, text):
 
 def test_an_interval_near_an_end_is_finer():
     few = Yield(share=0.0, low=0.0, high=0.842, passed=0, trials=2)
+    assert tolerance_out.chance(Yield(share=0.11, low=0.108, high=0.113, passed=11, trials=100)) == (
+        "11.0 % (10.8-11.3)"
+    )
     assert tolerance_out.chance(few) == "0 % (0-85)"  # outward: the interval is never told narrower
     assert tolerance_out.chance(yield_of(9998, 10_000)) == "99.98 % (99.92-99.99)"
     assert tolerance_out.chance(Yield(share=0.5, low=0.47, high=0.53, passed=5, trials=10)) == "50 % (47-53)"
@@ -122,6 +125,7 @@ def test_all_off_is_said():
     still = ENSEMBLE.with_beliefs({})
     text = " ".join(" ".join(tolerance_out.lines(tolerance(FIGURES, trials=50, ensemble=still))).split())
     assert "nothing varies" in text and "capacitor off" in text
+    assert "each inner wire: as computed, for nothing varies" in text and "more wire" not in text
     assert not NOT_A_NUMBER.search(text)
 
 

@@ -97,8 +97,9 @@ def chance(within: Yield) -> str:
     if digits and (high < 0.1 or low > 99.9 or 0 < low < 0.05 or 99.95 < high < 100):
         digits = 2
     share = percent(within.share)
-    if digits == 2 and 0 < within.share < 1:
-        share = f"{min(max(100 * within.share, 0.01), 99.99):.2f} %"
+    if digits and 0 < within.share < 1:
+        step = 10.0**-digits
+        share = f"{min(max(100 * within.share, step), 100 - step):.{digits}f} %"
     return f"{share} ({_end(low, digits, math.floor)}-{_end(high, digits, math.ceil)})"
 
 
@@ -174,7 +175,10 @@ def yields(found: Tolerance) -> list[str]:
         # They are so many of 100: without the sign there is room between them.
         cells = (chance(share).replace(" %", "") for share in shares)
         out += [f"  {STAGES[name]:<14}" + "".join(f"{cell:>21}" for cell in cells)]
-    out += folded("  ", "In brackets: between these it lies 95 times of 100; more trials narrow it.")
+    told = "In brackets: between these it lies 95 times of 100; more trials narrow it."
+    if not found.varying:
+        told = "Nothing varies: all antennas are the computed one, whatever the brackets say."
+    out += folded("  ", told)
     for name, text in STAGE_HELP.items():
         out += folded(f"  {STAGES[name] + ':':<16} ", text)
     lost = {name: stage.unreached for name, stage in found.stages.items() if stage.unreached > 0}
@@ -315,7 +319,8 @@ def _cutting(found: Tolerance) -> Iterator[str]:
     for allowance in found.allowances.values():
         yield from folded("", f"{allowance_text(found, allowance)}.", WIDTH - 2)
     wire = sum(2 * allowance.length for allowance in found.allowances.values())
-    yield from folded("", f"That is at most {measured(wire, 'm', 1)} more wire in all.", WIDTH - 2)
+    if wire > 0:
+        yield from folded("", f"That is at most {measured(wire, 'm', 1)} more wire in all.", WIDTH - 2)
 
 
 def wire_name(allowance: Allowance, alone: bool) -> str:
@@ -326,9 +331,11 @@ def wire_name(allowance: Allowance, alone: bool) -> str:
 def allowance_text(found: Tolerance, allowance: Allowance) -> str:
     """Return one wire's allowance, why, and whether the design's own reserve does."""
     name = wire_name(allowance, len(found.allowances) == 1)
+    if not found.varying:
+        return f"{name}: as computed, for nothing varies"
     short = percent(allowance.reserve_risk) if allowance.reserve_risk else "none"
     return (
-        f"{name}: {centimetres(allowance.length)} longer, and the chance of having to add wire stays below"
+        f"{name}: {_signed(max(allowance.length, 0.0))}, and the chance of having to add wire stays below"
         f" {percent(found.risk)}; 5 to 95 of 100 end {_signed(allowance.shortest)} to"
         f" {_signed(allowance.longest)}. The reserve of {centimetres(allowance.reserve)} is too short in"
         f" {short}"
@@ -337,7 +344,7 @@ def allowance_text(found: Tolerance, allowance: Allowance) -> str:
 
 def _signed(length: float) -> str:
     if abs(length) < 5e-4:
-        return "at the mark"
+        return "as computed"
     return f"{centimetres(length)} {'shorter' if length < 0 else 'longer'}"
 
 
@@ -345,6 +352,8 @@ def helps(advice: Advice) -> list[str]:
     """Return what each improvement buys."""
     trials = advice.base.trials
     out = [f"What would help most, from as cut, now {percent(advice.base.share)} ({trials} trials)"]
+    if advice.base.share == 1.0:
+        return [*out, "  nothing: every one of them keeps the limit already"]
     out += [_step(step) for step in advice.steps]
     if advice.then:
         out += [f"and after the first of these, then {percent(advice.steps[0].within.share)}"]
