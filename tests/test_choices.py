@@ -3,6 +3,7 @@
 import json
 import math
 from dataclasses import replace
+from pathlib import Path
 
 import pytest
 
@@ -67,19 +68,34 @@ def test_more_inductance_shortens_the_wire_and_costs_on_the_lower_band(found):
 
 def test_one_choice_is_what_a_design_of_it_does(found):
     design, both = found
-    point = both.by_ratio[2]
-    trap = Trap(
-        resonance=point.resonance,
-        body=design.antenna.trap.body,
-        coil=GivenCoil(q=both.coil_q),
-        capacitor=GivenCapacitor(
-            capacitance=point.capacitance, q=both.capacitor_q if math.isfinite(both.capacitor_q) else None
-        ),
-    )
-    full = solve(replace(design, antenna=replace(design.antenna, trap=trap)))
-    for role, band in full.bands.items():
-        assert point.bands[role].loss == pytest.approx(band.shares.trap, rel=1e-6)
-    assert point.inner == pytest.approx(full.lengths.inner, rel=1e-9)
+    here = present(both.by_ratio)
+
+    def plain(resonance, capacitance):
+        trap = Trap(
+            resonance=resonance,
+            body=design.antenna.trap.body,
+            coil=GivenCoil(q=200.0),
+            capacitor=GivenCapacitor(capacitance=capacitance, q=1500.0),
+        )
+        return replace(design, antenna=replace(design.antenna, trap=trap))
+
+    curves = choices(plain(here.resonance, here.capacitance))
+    for point in (curves.by_ratio[2], curves.by_resonance[2]):
+        full = solve(plain(point.resonance, point.capacitance))
+        for role, band in full.bands.items():
+            assert point.bands[role].loss == pytest.approx(band.shares.trap, rel=1e-6)
+            assert point.bands[role].peak_voltage == pytest.approx(band.worst_stress.peak_voltage, rel=1e-6)
+        assert point.inner == pytest.approx(full.lengths.inner, rel=1e-9)
+
+
+def test_a_trap_of_cable_has_curves_without_a_step():
+    design = store.find(str(Path(__file__).parent / "designs/cable-trap.toml")).design
+    both = choices(design)
+    for points in (both.by_resonance, both.by_ratio):
+        i = next(n for n, point in enumerate(points) if point.present)
+        for role in points[i].bands:
+            before, here, after = (points[k].bands[role].loss for k in (i - 1, i, i + 1))
+            assert min(before, after) < here < max(before, after)
 
 
 def test_words_say_what_is_given_up(found):

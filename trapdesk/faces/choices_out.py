@@ -16,6 +16,9 @@ from .shown import about, imperial, measured, megahertz
 WORTH_LOSS, WORTH_WIDTH = 0.003, 0.03
 """Least change of a share, and of a width by its whole, that is told."""
 
+SAID_FROM = 0.1
+"""Loss saved that is worth a word. [%]"""
+
 
 def lines(design: Design, found: Choices) -> list[str]:
     """Return both curves as tables, the present choice marked, each with its short answer."""
@@ -75,8 +78,8 @@ def _answer(points: Sequence[Point], what: str, value: Any) -> list[str]:
         noun = "resonance" if what == "resonance" else "capacitance"
         text.append(f"{way.capitalize()} {noun}, as far as {value(end)}: {_gain(present, end)}.")
     least = min(there, key=lambda p: p.loss)
-    if least is not present:
-        saved = 100 * (present.loss - least.loss)
+    saved = 100 * (present.loss - least.loss)
+    if saved >= SAID_FROM:
         text.append(
             f"Both bands together the traps take least at {value(least)}, {saved:.1f} % less than now."
         )

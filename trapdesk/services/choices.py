@@ -2,14 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 
 from ..design.design import Design
-from ..engine.capacitors import series_resistance
-from ..engine.resonator import impedance
-from ..engine.stress import Stress, stress
+from ..engine.stress import Stress
 from ..errors import NoAnswer
 from .port_grid import BandSummary, summary
 from .rummage import wanted_resonance
@@ -23,32 +21,44 @@ RATIOS = np.geomspace(1 / 4, 4, 9)
 
 
 @dataclass(frozen=True, kw_only=True)
-class Tank:
-    """A trap of which only resonance, capacitance and both Q matter; the coil's goes with the root of f."""
+class Alike:
+    """The trap as built, its resonance and the level of its impedance multiplied: the same Q, the same kind.
 
-    resonance: float
-    capacitance: float
-    coil_q: float
-    capacitor_q: float
+    Ohms and reactances scale with the level, so currents stay and volts and watts follow it.
+    """
+
+    built: BuiltTrap
+    pitch: float
+    level: float
+
+    @property
+    def resonance(self) -> float:
+        """Resonance, in Hz."""
+        return self.pitch * self.built.resonance
 
     @property
     def inductance(self) -> float:
         """Inductance, in H."""
-        return 1 / ((2 * np.pi * self.resonance) ** 2 * self.capacitance)
+        return self.built.inductance * self.level / self.pitch
 
-    def _circuit(self, frequency: np.ndarray) -> tuple[float, float, np.ndarray, np.ndarray]:
-        reactance = 2 * np.pi * self.resonance * self.inductance
-        coil = reactance / self.coil_q * np.sqrt(frequency / self.resonance)
-        capacitor = series_resistance(frequency, self.capacitance, self.capacitor_q)
-        return self.inductance, self.capacitance, coil, capacitor
+    @property
+    def capacitance(self) -> float:
+        """Capacitance, in F."""
+        return self.built.capacitance / (self.level * self.pitch)
 
     def impedance(self, frequency: np.ndarray) -> np.ndarray:
         """Return the impedance at frequencies, in ohm."""
-        return impedance(frequency, *self._circuit(frequency))
+        return self.level * self.built.impedance(np.asarray(frequency) / self.pitch)
 
     def stress(self, frequency: np.ndarray, current: np.ndarray) -> Stress:
         """Return what it bears for an rms current through it."""
-        return stress(frequency, *self._circuit(frequency), current=current)
+        plain = self.built.stress(np.asarray(frequency) / self.pitch, current)
+        scaled = {
+            field.name: getattr(plain, field.name) * self.level
+            for field in fields(plain)
+            if not field.name.endswith("_current")
+        }
+        return replace(plain, **scaled)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -102,29 +112,28 @@ def choices(design: Design) -> Choices:
     coil_q = w * inductance / coil if coil else np.inf
     capacitor_q = 1 / (w * c * capacitor) if capacitor else np.inf
 
-    def other(resonance: float, capacitance: float) -> Point:
-        here = Tank(
-            resonance=float(resonance), capacitance=float(capacitance), coil_q=coil_q, capacitor_q=capacitor_q
-        )
-        return _point(design, here, here)
+    def point(pitch: float = 1.0, level: float = 1.0) -> Point:
+        return _point(design, Alike(built=built, pitch=float(pitch), level=float(level)))
 
-    now = Tank(resonance=present, capacitance=c, coil_q=coil_q, capacitor_q=capacitor_q)
-    as_is = _point(design, now, built, present=True)
+    as_is = point()
     return Choices(
-        by_resonance=tuple(as_is if f == present else other(f, c) for f in sorted([*places, present])),
-        by_ratio=tuple(as_is if r == 1.0 else other(present, c / np.sqrt(r)) for r in RATIOS),
+        # The capacitance stays.
+        by_resonance=tuple(
+            as_is if f == present else point(f / present, present / f) for f in sorted([*places, present])
+        ),
+        by_ratio=tuple(as_is if r == 1.0 else point(level=np.sqrt(r)) for r in RATIOS),
         coil_q=coil_q,
         capacitor_q=capacitor_q,
     )
 
 
-def _point(design: Design, tank: Tank, trap: Tank | BuiltTrap, *, present: bool = False) -> Point:
+def _point(design: Design, trap: Alike) -> Point:
     """Return one choice: wires solved with its trap, both bands looked at."""
     of = {
-        "resonance": tank.resonance,
-        "inductance": tank.inductance,
-        "capacitance": tank.capacitance,
-        "present": present,
+        "resonance": trap.resonance,
+        "inductance": trap.inductance,
+        "capacitance": trap.capacitance,
+        "present": trap.pitch == trap.level == 1.0,
     }
     try:
         wire = hang(design, trap)
