@@ -21,6 +21,15 @@ FAULTS: dict[str, tuple[str, str]] = {
     "traps_off": ("both traps far off their frequency", "measure both traps by themselves and mend them"),
     "slipped_inner": ("inner wires a whole metre or foot off", "measure the inner wires again"),
     "slipped_end": ("end wires a whole metre or foot off", "measure the end wires again"),
+    "angles_in_radians": (
+        "a sweep with its angles in radians, read as degrees",
+        "save it with degrees, or as real and imaginary part",
+    ),
+    "real_and_imaginary_swapped": (
+        "a sweep with real and imaginary part in each other's column",
+        "look at the order of its columns",
+    ),
+    "sign_of_reactance": ("a sweep with the sign of X turned over", "look how it was saved"),
 }
 """What fits the readings, in builder's words, and where to look."""
 

@@ -28,8 +28,8 @@ from .ensemble import Ensemble
 from .latents import LINE, Latents
 from .nearby import Nearby
 from .response import MARGIN, WIDE
-from .trial_traps import Stage
-from .updating import latents_of, peak_of, stage_of
+from .sweep_suspects import SLIPS, mended_by
+from .updating import STEPS, latents_of, peak_of, stage_of
 
 NODES, FAR_NODES = 11, 6
 FAR = {"below": (WIDE[0], 1 - MARGIN), "above": (1 + MARGIN, WIDE[1])}
@@ -42,7 +42,7 @@ PIECES = (0.1, 0.25, 0.4, 0.55, 0.7, 0.85)
 """Shares of an end wire that may be left of it. [1]"""
 LOOSE = 0.08
 """How far the place of a break may be from those solved, one sigma, as a share of the end wire. [1]"""
-SLIPS = (1.0, -1.0, 0.3048, -0.3048)
+OFF_BY = (1.0, -1.0, 0.3048, -0.3048)
 """By how much both wires of a kind may be off where a unit was slipped: a metre, a foot. [m]"""
 SPREAD = 1.5
 """How many times as far off as believed a sound antenna may be: beliefs are estimates, faults are not. [1]"""
@@ -52,6 +52,10 @@ BESIDE = 20.0
 """A fault that is less than this many times less likely than the first is told with it."""
 CLOSE = 0.2
 """How near a band, by the log of frequency, what is nearer to it than to its own is taken for its own."""
+ATTEMPTS = 4
+"""Stretches in which the likeliest antenna with a fault is sought; it may be given up after each."""
+RESTS, FALLS = 0.02, 0.3
+"""A search rests once a stretch gains less than this, or this share of what is still missed. [1]"""
 WELL = 0.3
 """Chance of the readings, of the likeliest sound antenna, above which nothing else is looked for. [1]"""
 UNLIKELY = 1e-7
@@ -60,11 +64,16 @@ UNLIKELY = 1e-7
 
 @dataclass(frozen=True, kw_only=True)
 class Suspect:
-    """A fault: how it is known, and how many times likelier than a sound antenna it makes the readings."""
+    """A fault: its code, the log of how many times likelier than a sound antenna it makes the readings."""
 
     code: str
-    ratio: float
+    log_ratio: float
     misfit: float
+
+    @property
+    def ratio(self) -> float:
+        """How many times likelier than a sound antenna; what is beyond every number is told as 1e300."""
+        return math.exp(min(self.log_ratio, 690.0))
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -183,8 +192,8 @@ FAULTS: dict[str, dict[str, Shape]] = {
     "water_both": {"": _shifted(True, -0.06, -0.01, (0.05, 0.6))},
     "unequal_traps": {"low": _shifted(False, -0.08, -0.01), "high": _shifted(False, 0.01, 0.08)},
     "traps_off": {"low": _shifted(True, -0.08, -0.01), "high": _shifted(True, 0.01, 0.08)},
-    "slipped_inner": {f"{by:g}": _slip("inner", by) for by in SLIPS},
-    "slipped_end": {f"{by:g}": _slip("end", by) for by in SLIPS},
+    "slipped_inner": {f"{by:g}": _slip("inner", by) for by in OFF_BY},
+    "slipped_end": {f"{by:g}": _slip("end", by) for by in OFF_BY},
 }
 """Every fault that is looked for, each in one or several shapes."""
 
@@ -341,18 +350,27 @@ class Bench:
         return self._made[code, which]
 
 
-def evidence(forward: Forward) -> tuple[float, float]:
-    """Return the log of how likely the readings are, and how far the most likely antenna misses them."""
+def evidence(forward: Forward, sought: float = -math.inf) -> tuple[float, float]:
+    """Return the log of how likely the readings are, and how far the most likely antenna misses them.
+
+    The search is given up where it neither nears nor has reached the log that is `sought`.
+    """
     starts = np.zeros((1, forward.size))
     extras = forward.altered.extras
     if extras:
         at = np.array(np.meshgrid(*[(-1.2, 0.0, 1.2)] * extras)).reshape(extras, -1).T
         starts = np.concatenate([np.zeros((at.shape[0], forward.size - extras)), at], axis=1)
-    z, slopes, off = peak_of(forward, starts)
-    _, chance = forward.residuals(z[None])
-    inside = np.eye(off.size) + slopes @ slopes.T
-    log = float(chance[0]) - 0.5 * float(z @ z) - 0.5 * float(np.linalg.slogdet(inside)[1])
-    return log, float(z @ z + off @ off)
+    before = math.inf
+    for _ in range(ATTEMPTS):
+        z, slopes, off = peak_of(forward, starts, steps=STEPS // ATTEMPTS)
+        _, chance = forward.residuals(z[None])
+        inside = np.eye(off.size) + slopes @ slopes.T
+        log = float(chance[0]) - 0.5 * float(z @ z) - 0.5 * float(np.linalg.slogdet(inside)[1])
+        misfit = float(z @ z + off @ off)
+        if before - misfit < max(RESTS, FALLS * misfit * (log < sought)):
+            break
+        before, starts = misfit, z[None]
+    return log, misfit
 
 
 def diagnose(
@@ -367,52 +385,45 @@ def diagnose(
     ensemble = bench.ensemble
     if latents is None:
         latents = latents_of(ensemble, hoists[-1].moves, hoists[-1].tunings, SPREAD)
-    stage, files = stage_of(tuned), sweeps or {}
-    count = sum(len(hoist.readings) for hoist in hoists)
-    if _chance_above(_misfit(ensemble, latents, hoists, stage, files), max(count, 1)) > WELL:
+    files = sweeps or {}
+
+    def forward(
+        altered: Altered | None = None, basis: np.ndarray | None = None, files: Mapping[str, Sweep] = files
+    ) -> Forward:
+        return Forward(ensemble, latents, hoists, stage_of(tuned), files, altered, basis)
+
+    whole = forward()
+    count = max(len(whole.owners()), 1)
+    z, _, off = peak_of(whole, np.zeros((1, whole.size)))
+    if _chance_above(float(z @ z + off @ off), count) > WELL:
         return Diagnosis(named=(), looked_at=(), healthy_misfit=0.0, misfits=False)
     basis = bench.basis(latents)
-    sound, healthy_misfit = evidence(Forward(ensemble, latents, hoists, stage, files, basis=basis))
+    sound, healthy_misfit = evidence(forward(basis=basis))
     found = []
-    codes = FAULTS if ensemble.wire.end is not None else ()
-    for code in codes:
-        logs, misfits = [], []
-        for which in FAULTS[code]:
-            altered = bench.shape(code, which)
-            if altered is None:
-                continue
-            log, misfit = evidence(Forward(ensemble, latents, hoists, stage, files, altered, basis))
-            logs.append(log)
-            misfits.append(misfit)
-        if logs:
-            most = max(logs)
-            mean = most + math.log(sum(math.exp(log - most) for log in logs) / len(FAULTS[code]))
-            ratio = math.exp(min(mean - sound, 600.0))
-            found.append(Suspect(code=code, ratio=ratio, misfit=min(misfits)))
-    found.sort(key=lambda one: -one.ratio)
+    for code in FAULTS if ensemble.wire.end is not None else ():
+        shapes = [bench.shape(code, which) for which in FAULTS[code]]
+        tried = [evidence(forward(shape, basis), sound) for shape in shapes if shape is not None]
+        if tried:
+            most = max(log for log, _ in tried)
+            mean = most + math.log(sum(math.exp(log - most) for log, _ in tried) / len(shapes))
+            found.append(Suspect(code=code, log_ratio=mean - sound, misfit=min(miss for _, miss in tried)))
+    swept = {str(r.value) for h in hoists for r in h.readings if r.what == "sweep" and r.subject != "line"}
+    for code, mend in SLIPS.items() if swept else ():
+        mended = {name: mended_by(mend, sweep) if name in swept else sweep for name, sweep in files.items()}
+        log, misfit = evidence(forward(basis=basis, files=mended), sound)
+        found.append(Suspect(code=code, log_ratio=log - sound, misfit=misfit))
+    found.sort(key=lambda one: -one.log_ratio)
     named: tuple[Suspect, ...] = ()
     if found and found[0].ratio >= NAMED:
-        named = tuple(one for one in found if one.ratio * BESIDE >= found[0].ratio)
+        near = found[0].log_ratio - math.log(BESIDE)
+        named = tuple(one for one in found if one.log_ratio >= near)
     least = min([healthy_misfit, *(one.misfit for one in found)])
     return Diagnosis(
         named=named,
         looked_at=tuple(found),
         healthy_misfit=healthy_misfit,
-        misfits=_chance_above(least, max(count, 1)) < UNLIKELY,
+        misfits=_chance_above(least, count) < UNLIKELY,
     )
-
-
-def _misfit(
-    ensemble: Ensemble,
-    latents: Latents,
-    hoists: Sequence[Hoist],
-    stage: Stage,
-    sweeps: Mapping[str, Sweep],
-) -> float:
-    """Return by how much the likeliest sound antenna misses the readings."""
-    forward = Forward(ensemble, latents, hoists, stage, sweeps)
-    z, _, off = peak_of(forward, np.zeros((1, forward.size)))
-    return float(z @ z + off @ off)
 
 
 def of_other_band(design: Design, reading: Reading) -> str | None:

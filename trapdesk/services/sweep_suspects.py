@@ -42,7 +42,7 @@ def suspects(how: str, sweep: Sweep, plain: Fitted | None, delay: float, lead: f
     """
     found: list[tuple[float, str]] = []
     for code, mend in SLIPS.items():
-        _try(found, code, plain, how, _mended(sweep, mend), delay, lead)
+        _try(found, code, plain, how, mended_by(mend, sweep), delay, lead)
     if how != "through":
         other = "direct" if how == "loop" else "loop"
         _try(found, f"how_is_{other}", plain, other, sweep, delay, lead)
@@ -51,7 +51,8 @@ def suspects(how: str, sweep: Sweep, plain: Fitted | None, delay: float, lead: f
     return tuple(code for _, code in sorted(found))
 
 
-def _mended(sweep: Sweep, mend: Callable[[np.ndarray], np.ndarray]) -> Sweep:
+def mended_by(mend: Callable[[np.ndarray], np.ndarray], sweep: Sweep) -> Sweep:
+    """Return a sweep with its numbers put right from a slip."""
     waves = {name: getattr(sweep, name) for name in ("reflection", "transmission")}
     return replace(sweep, **{name: mend(wave) for name, wave in waves.items() if wave is not None})
 

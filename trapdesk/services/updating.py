@@ -175,7 +175,9 @@ def _sloped(forward: Forward, z: np.ndarray) -> tuple[np.ndarray, np.ndarray, np
     return z, slopes, off[0]
 
 
-def peak_of(forward: Forward, starts: np.ndarray) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
+def peak_of(
+    forward: Forward, starts: np.ndarray, steps: int = STEPS
+) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
     """Return the most likely numbers, with slopes and residuals there: Kalman steps until they rest."""
 
     def cost(z: np.ndarray) -> np.ndarray:
@@ -184,7 +186,7 @@ def peak_of(forward: Forward, starts: np.ndarray) -> tuple[np.ndarray, np.ndarra
 
     z = starts[int(np.argmin(cost(starts)))]
     parts = np.array([1.0, 0.6, 0.3, 0.1, 0.03])[:, None]
-    for _ in range(STEPS):
+    for _ in range(steps):
         _, slopes, off = _sloped(forward, z)
         # The gain of a Kalman filter on numbers whose own covariance is the unit matrix.
         inside = np.eye(off.size) + slopes @ slopes.T
