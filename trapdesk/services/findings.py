@@ -19,12 +19,18 @@ GROUND_SHARE = 0.5
 """Share of the power the ground takes from which on it is worth a remark; an estimate, no source."""
 AIM_MISSED = (0.1, 0.5)
 """How far resonance may lie from the aim, in parts of the usable width, before it is worth a remark."""
+FIRST, LAST = ("end_low",), ("site_doubt",)
+"""Within a level: what can hurt somebody leads; what holds for nearly every unmeasured antenna comes last."""
 
 
 def find(figures: Figures) -> tuple[Finding, ...]:
     """Return every finding, the most serious first, each kind in a fixed order."""
+
+    def rank(finding: Finding) -> tuple[int, int]:
+        return -LEVELS.index(finding.level), (finding.code in LAST) - (finding.code in FIRST)
+
     found = [*_bands(figures), *trap_findings(figures), *feed_findings(figures), *_site(figures)]
-    return tuple(sorted(found, key=lambda finding: -LEVELS.index(finding.level)))
+    return tuple(sorted(found, key=rank))
 
 
 def _bands(figures: Figures) -> Iterator[Finding]:
