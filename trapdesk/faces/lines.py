@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from ..design.capacitor_kinds import StubCapacitor
 from ..design.coil_kinds import CableCoil
 from ..design.design import Design, Shape, get
 from ..design.fields import SOLVE
@@ -54,8 +55,21 @@ def rating(design: Design) -> float | None:
 
         return cable_rating(trap.coil)
     part = trap.capacitor
+    if isinstance(part, StubCapacitor):
+        from ..services.capacitors import cable_rating
+
+        return cable_rating(part)
     printed = getattr(part, "print", None)
     return getattr(part, "voltage", None) or (printed.voltage if printed is not None else None)
+
+
+def rating_text(design: Design) -> str:
+    """Return what the trap's capacitor stands, in a few words."""
+    rated = rating(design)
+    if rated:
+        return f"rated {about(rated, 'voltage', 3)}"
+    trap = design.antenna.trap
+    return "by its parts" if trap is not None and hasattr(trap.capacitor, "members") else "no rating given"
 
 
 def inductance_text(figures: Figures) -> Shown:
@@ -160,8 +174,7 @@ def trap_line(figures: Figures) -> str:
     if worst:
         band, stress = max(worst, key=lambda pair: pair[1].peak_voltage)
         volts = known(stress.peak_voltage, stress.peak_voltage * band.stress_doubt, "voltage")
-        rated = rating(figures.design)
-        against = f"rated {about(rated, 'voltage', 3)}" if rated else "no rating given"
+        against = rating_text(figures.design).replace("by its parts", "rated by its parts")
         pieces += [f"{volts.number} {volts.unit} peak on {band_name(band)} ({against})"]
         band, stress = max(worst, key=lambda pair: pair[1].average_watts)
         heat = known(stress.average_watts, stress.average_watts * band.stress_doubt, "power")

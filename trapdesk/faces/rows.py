@@ -20,7 +20,7 @@ from .lines import (
     length_text,
     moves_line,
     next_move,
-    rating,
+    rating_text,
     site_line,
     station_line,
     swr_text,
@@ -300,7 +300,7 @@ def _trap(figures: Figures) -> Iterator[Row]:
 def _stress(figures: Figures, band: BandFigures) -> Iterator[Row]:
     if band.stress is None or band.worst_stress is None:
         return
-    name, rated = band_name(band), rating(figures.design)
+    name = band_name(band)
 
     def row(tail: str, label: str, value: float, dimension: str, **more: str) -> Row:
         text = known(
@@ -313,7 +313,7 @@ def _stress(figures: Figures, band: BandFigures) -> Iterator[Row]:
     yield row("trap_peak", "peak volts at the aim", band.stress.peak_voltage, "voltage", why=at)
     yield row(
         "trap_worst_peak", "worst peak volts", band.worst_stress.peak_voltage, "voltage",
-        given=f"rated {about(rated, 'voltage', 3)}" if rated else "no rating",
+        given=rating_text(figures.design),
         why=f"in the wanted part, at {megahertz(band.worst_stress.frequency)}",
     )  # fmt: skip
     yield row("trap_rms", "current, rms", band.stress.rms_current, "current", why=at)

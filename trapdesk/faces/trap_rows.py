@@ -65,7 +65,7 @@ def _computed(figures: Figures, given: Callable[[str], str]) -> Iterator[Cells]:
     if of_cable:
         yield from _side(trap)
         yield from _cable_turns(trap, given)
-    doubt = trap.resonance_doubt
+    doubt = as_wound(figures)
     yield _row(
         "resonance", "trap resonance", megahertz(trap.resonance), given=given("resonance"),
         why="what to bring it to, by itself, off the wire",
@@ -102,6 +102,22 @@ def _row(tail: str, label: str, value: str | Shown, **more: str) -> Cells:
     return {
         "key": f"antenna.trap.{tail}", "group": "trap", "label": label, "value": text, "unit": unit, **more,
     }  # fmt: skip
+
+
+def as_wound(figures: Figures) -> float:
+    """Return how far the resonance may be off before the trap is brought to it, everything at its worst [Hz].
+
+    Coil and capacitors together; a trap that was measured is known as far as its readings go.
+    """
+    trap, measured = figures.trap, figures.design.antenna.trap.measured
+    if measured is not None and measured.resonance is not None:
+        return trap.resonance_doubt
+    parts = max(trap.tolerance) if trap.tolerance is not None else 0.0
+    if trap.tolerance is None and any(part.length is not None for part in trap.parts):
+        from ..services.combos import STUB_DOUBT
+
+        parts = STUB_DOUBT
+    return trap.resonance_doubt + trap.resonance * parts * trap.fitted_capacitance / trap.capacitance / 2
 
 
 def adjustment_text(adjustment: Adjustment) -> str:
@@ -171,7 +187,7 @@ def part_text(part: PartFigures) -> str:
     if part.pieces > 1:
         text = f"{part.pieces} x {text}"
     if part.length is not None:
-        text += f", cut {measured(part.length, 'cm', 1)}"
+        text += f", {measured(part.length, 'cm', 1)} long"
     if part.drift is not None:
         text += f", {part.drift * 1e6:+.0f} ppm/K"
     return text
@@ -201,7 +217,7 @@ def _parts(figures: Figures, given: Callable[[str], str], of_cable: bool) -> Ite
     if not plain or get(design, key) is SOLVE:
         shown = replace(shown, number=fitted, unit="pF")
     yield _row(
-        "capacitor.capacitance", "capacitance" if of_cable else "capacitor", shown,
+        "capacitor.capacitance", "capacitor" if plain else "capacitance", shown,
         given=given("capacitor.capacitance") if plain else "",
         why="of that circuit" if of_cable else "what is fitted; the coil adds its own",
     )  # fmt: skip
@@ -226,7 +242,8 @@ def _coil(figures: Figures, given: Callable[[str], str], of_cable: bool) -> Iter
         yield _row("coil.turns", "turns", replace(turns, unit=""), given=given("coil.turns"))
         if coil.half_turns is not None and abs(coil.half_turns - coil.turns) > 0.01:
             text = f"{coil.half_turns:g}: trap at {megahertz(coil.half_resonance, 4)}"
-            yield _row("coil.half_turns", "to half a turn", text, why="before it is adjusted")
+            step = "to half a turn" if coil.most_turns is None else "to a whole turn"
+            yield _row("coil.half_turns", step, text, why="before it is adjusted")
     if coil.most_turns is not None:
         yield _row("coil.most_turns", "turns that fit", f"{coil.most_turns}", why="side by side in the core")
     else:

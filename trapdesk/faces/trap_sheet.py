@@ -8,11 +8,11 @@ from typing import Any
 from ..design.coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
 from ..engine.cable_list import Terminals
 from ..services.coils import CUT_TAIL
-from ..services.figures import Figures
+from ..services.figures import Figures, PartFigures
 from .layout import folded
 from .lines import inductance_text, rating, turns_doubt
 from .shown import about, exact, known, measured, megahertz, percent
-from .trap_rows import adjustment_text, part_label, part_text, side_text
+from .trap_rows import HARDLY, adjustment_text, as_wound, part_label, part_text, side_text
 
 ALIKE = 0.005
 """How far the two traps may differ. [1], common practice, no source"""
@@ -31,7 +31,8 @@ def parts(figures: Figures) -> Iterator[str]:
         if len(trap.parts) > 1 or (trap.parts and trap.parts[0].name != "capacitor"):
             for part in trap.parts:
                 place = part_label(part).removeprefix("capacitor").strip()
-                yield from folded("  capacitors ", f"2 of {place and place + ', '}{part_text(part)}")
+                called = f" (capacitor {place})" if place else ""
+                yield from folded("  capacitors ", f"2 of {part_text(part)}{called}")
         else:
             fitted = exact(trap.fitted_capacitance, "capacitance", digits=3)
             yield from folded("  capacitors ", f"2 of {fitted}, {volts}")
@@ -53,7 +54,10 @@ def lines(figures: Figures) -> Iterator[str]:
     yield from KINDS[type(part.coil)](figures, part.coil)
     if not isinstance(part.coil, CableCoil):
         fitted = exact(trap.fitted_capacitance, "capacitance", digits=3)
-        yield from folded("  with     ", f"{fitted} across the coil")
+        how = _joined(part.capacitor)
+        yield from folded("  with     ", f"{fitted} across the coil{how and ': ' + how}")
+        for stub in (part for part in trap.parts if part.length is not None):
+            yield from folded(HEAD, _stub(figures, stub))
     yield from folded("  build    ", f"{side_text(trap.adjustments)}.")
     for adjustment in trap.adjustments:
         yield from folded(HEAD, f"Then {adjustment_text(adjustment)}.")
@@ -61,10 +65,32 @@ def lines(figures: Figures) -> Iterator[str]:
     check = f"{megahertz(target)} by itself, hanging free, before it goes into the wire."
     if target != trap.resonance:
         check += f" Closing it brings it to {megahertz(trap.resonance)}: measure again after that."
-    if trap.resonance_doubt:
-        check += f" As wound it may be {about(trap.resonance_doubt, 'frequency', 1)} off: bring it there."
+    if off := as_wound(figures):
+        check += f" As wound it may be {about(off, 'frequency', 1)} off: bring it there."
     yield from folded("  check    ", f"{check} Both within {ALIKE * 100:.1f} % of each other.")
     yield from folded("  Q        ", f"about {about(trap.q, 'ratio')}")
+
+
+def _joined(part: Any, place: str = "") -> str:
+    """Return how capacitors are joined, by their places; empty for a single one."""
+    members = getattr(part, "members", ())
+    if not members:
+        return place and f"capacitor {place}"
+    places = (f"{place}.{n}".lstrip(".") for n in range(1, len(members) + 1))
+    each = [_joined(member, at) for member, at in zip(members, places, strict=True)]
+    text = (" in series with " if part.kind == "series" else " beside ").join(each)
+    return f"({text})" if place else text
+
+
+def _stub(figures: Figures, stub: PartFigures) -> str:
+    """Return how to cut a stub: so long that snipping mends all that the trap may be off."""
+    text = f"The stub is {measured(stub.length, 'cm', 1)} long in the end, open and sealed at its far end"
+    rate = next((a.rate for a in figures.trap.adjustments if a.where == stub.key), None)
+    if not rate:
+        return f"{text}."
+    return (
+        f"{text}: cut {measured(stub.length + as_wound(figures) / rate, 'cm', 0)} and snip it to frequency."
+    )
 
 
 def _given(figures: Figures, made: GivenCoil) -> Iterator[str]:
@@ -79,7 +105,7 @@ def _solenoid(figures: Figures, made: Solenoid) -> Iterator[str]:
     how = f"{exact(pitch, 'length', digits=3)} from turn to turn" if spaced else "wound close"
     yield from folded(
         "  coil     ",
-        f"{turns.value} turns of {made.material} wire {exact(made.wire, 'length')} on a former"
+        f"{turns.value} turns of {made.material} wire {exact(made.wire, 'length', digits=3)} on a former"
         f" {exact(made.former, 'length')} outside, {how}.",
     )
     yield from folded(
@@ -89,10 +115,13 @@ def _solenoid(figures: Figures, made: Solenoid) -> Iterator[str]:
         f" {measured(coil.wire_length, 'm', 2)} in the turns, {measured(CUT_TAIL, 'cm', 0)} for each tail"
         + (f", {exact(made.lead, 'length')} for each lead." if made.lead else "."),
     )
-    yield from folded(
-        HEAD,
-        "Wind one turn more and take off: turns pushed together lower the trap, pulled apart raise it.",
+    lowers = any(a.what == "turns" and a.lowers > HARDLY for a in figures.trap.adjustments)
+    moved = (
+        "turns pushed together lower the trap, pulled apart raise it"
+        if lowers
+        else "pulled apart they raise it"
     )
+    yield from folded(HEAD, f"Wind one turn more and take off: {moved}.")
 
 
 def _cable(figures: Figures, made: CableCoil) -> Iterator[str]:
@@ -126,11 +155,12 @@ def _cable(figures: Figures, made: CableCoil) -> Iterator[str]:
 def _toroid(figures: Figures, made: Toroid) -> Iterator[str]:
     coil = figures.trap.coil
     turns = known(coil.turns, turns_doubt(figures), "count")
+    size = " x ".join(str(exact(each, "length")) for each in (made.outer, made.inner, made.height))
     yield from folded(
         "  coil     ",
-        f"{turns.value} turns, each once through the hole, of wire {exact(made.wire, 'length')} on a core"
-        f" {exact(made.outer, 'length')} x {exact(made.inner, 'length')} x {exact(made.height, 'length')},"
-        f" {exact(made.inductance_index, 'inductance')} a turn; {coil.most_turns} would fit.",
+        f"{turns.value} turns, each once through the hole, of wire {exact(made.wire, 'length', digits=3)}"
+        f" on a core {size}, {exact(made.inductance_index, 'inductance')} a turn;"
+        f" {coil.most_turns} would fit.",
     )
     yield from folded(HEAD, f"Cut {measured(_cut(figures), 'm', 2)}. Wind one turn more and take off.")
 

@@ -295,6 +295,9 @@ def sentence(finding: Finding, design: Design) -> str:
     as_ = saying.as_ if saying else ""
     value = amount(finding.value, finding.dimension, as_)
     limit = "" if finding.limit is None else amount(finding.limit, finding.dimension, as_ and as_ + " limit")
+    if (who := _part_of(finding.where)) and finding.code in _OF_PARTS:
+        rated = f"it is rated {limit}" if limit else "no rating of it is given"
+        return f"{who} bears {value} peak, {rated}"
     if saying is None:
         text = f"{where}: {visible(finding.code.replace('_', ' '))}, {value}"
         return f"{text}, limit {limit}" if limit else text
@@ -303,6 +306,17 @@ def sentence(finding: Finding, design: Design) -> str:
     if not limit:
         return (saying.bare or saying.says).format(where=where, value=value)
     return saying.says.format(where=where, value=value, limit=limit)
+
+
+_OF_PARTS = ("trap_voltage", "trap_voltage_unrated")
+
+
+def _part_of(where: str) -> str:
+    """Return which part of a trap bears something when that is not all of it; empty when it is."""
+    if where.startswith("antenna.trap.coil"):
+        return "the cable of the trap"
+    _, members, place = where.removesuffix(".voltage").partition("antenna.trap.capacitor.members.")
+    return f"capacitor {place.replace('.members.', '.')}" if members else ""
 
 
 def float_or(text: str, otherwise: float = math.inf) -> float:

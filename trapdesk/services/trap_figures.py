@@ -73,7 +73,8 @@ def _inductance_doubt(part: Trap, trap: BuiltTrap) -> float:
 
 def coil_figures(trap: BuiltTrap, wound: Wound) -> CoilFigures:
     """Return what to wind."""
-    half = round(2 * wound.turns) / 2
+    # Every pass through a ring core is a whole turn.
+    half = round(2 * wound.turns) / 2 if wound.most_turns is None else float(round(wound.turns))
     own = trap.self_capacitance[1]
     alone = None if trap.coil is None or not own else float(lc_resonance(trap.inductance, own))
     return CoilFigures(
