@@ -108,10 +108,9 @@ def advised(ensemble, bench, hung, random, read, seed):
             story.met_after = lowering
         readings = view.read_dips(random) if read == "dips" else view.read_meter(random)
         hoists.append(Hoist(readings=readings, change=dict(change), moves=lowering, tunings=hung.tunings))
-        diagnosis = diagnose(bench, hoists)
-        if diagnosis.named or diagnosis.misfits:
+        diagnosis = diagnose(bench, hoists) if story.met_after is None else None
+        if diagnosis and (diagnosis.named or diagnosis.misfits):
             story.called = diagnosis.named[0].code if diagnosis.named else "misfits"
-        if story.called and story.met_after is None:
             story.ended = f"called {story.called}"
             return story
         posterior = update(ensemble, hoists, seed=seed)

@@ -43,10 +43,8 @@ def lines(found: NextMove, readings: Sequence[Reading], kept: Sequence[str] = ()
     """Return everything as lines of at most 79 columns."""
     advice = found.advice
     count = len(found.posterior.forward.readings)
-    out = folded(
-        "", f"NEXT MOVE: {visible(found.figures.design.title, 48)}; after {count} reading{'s' * (count != 1)}"
-    )
-    out += ["", *_believed(found)] if not found.unread else []
+    read = f"after {count} reading{'s' * (count != 1)}" if count else "nothing read yet"
+    out = folded("", f"NEXT MOVE: {visible(found.figures.design.title, 48)}; {read}")
     if found.unread and not found.new_site:
         out += ["", *_nothing_read(found)]
     if found.diagnosis.named:
@@ -65,6 +63,8 @@ def lines(found: NextMove, readings: Sequence[Reading], kept: Sequence[str] = ()
     else:
         out += ["", *_move(found), "", *_chances(found, (advice.now, *advice.options)), "", *_rest(found)]
         out += ["", *card(found)] if count else []
+    # Of something broken nothing is believed that holds for a sound antenna.
+    out += ["", *_believed(found)] if not found.unread and not found.diagnosis.named else []
     if advice.verdict != "stop":
         out += ["", *(line for text in move_words.AT_THE_HALYARD for line in folded("! ", text))]
     out += [line for text in kept for line in folded("", text)]
@@ -72,9 +72,7 @@ def lines(found: NextMove, readings: Sequence[Reading], kept: Sequence[str] = ()
 
 
 def _nothing_read(found: NextMove) -> Iterator[str]:
-    yield from folded(
-        "", "Nothing was read yet: what follows is what is believed of an antenna built by the sheet."
-    )
+    yield from folded("", "Nothing was read yet: what follows is believed of an antenna built by the sheet.")
     yield "Readings of the antenna"
     for name, kind in KINDS.items():
         if name.startswith(("band.", "line.")):
@@ -139,12 +137,18 @@ def _span(one: Learned, ends: tuple[float, float, float]) -> str:
 def _faults(found: NextMove) -> Iterator[str]:
     named = found.diagnosis.named
     first = move_words.FAULTS[named[0].code]
-    text = f"These readings fit {first[0]} better than any sound antenna. Fold and cut nothing: {first[1]}."
-    yield from folded("SOMETHING IS WRONG  ", text)
-    for other in named[1:]:
+    text = f"These readings fit {first[0]}; no sound antenna fits nearly as well."
+    yield from folded("SOMETHING IS WRONG  ", f"{text} Fold and cut nothing: {first[1]}.")
+    for other in named[1 : 1 + FEW]:
         says, look = move_words.FAULTS[other.code]
-        yield from folded("  hard to tell apart from it: ", f"{says}; {look}.")
-    yield from folded("  ", "Mend it, read again, and only then think of wire.")
+        yield from folded("  or it is ", f"{says}: {look}.")
+    more = [move_words.FAULTS[other.code][0] for other in named[1 + FEW :]]
+    if more:
+        yield from folded("  or ", f"{', '.join(more)}.")
+    text = "Mend it, read again, and only then think of wire. Nothing found? Read once more: if it says the"
+    yield from folded(
+        "  ", f"{text} same again, measure both traps by themselves; trapdesk readings takes that."
+    )
 
 
 def _move(found: NextMove) -> Iterator[str]:
@@ -181,16 +185,18 @@ def _move(found: NextMove) -> Iterator[str]:
     for wire, need in advice.needs.items():
         if not best.tuning:
             name = _wire(found, wire)
-            yield from folded(
-                f"  {name} wire: ", f"wants {_range(need.low, need.high)} for its aim, 90 of 100."
-            )
+            yield from folded(f"  {name} wire: ", f"for its aim {_range(need.low, need.high)}, in 90 of 100.")
     yield from folded("  ", "The move is about the middle, and told no finer than it is known.")
 
 
 def _range(low: float, high: float) -> str:
     unit, size = small_step()
-    ends = f"{round(low / size):+d} to {round(high / size):+d} {unit}"
-    return f"{ends} (folding is below 0)"
+    first, last = (round(end / size) for end in (low, high))
+    if last <= 0:
+        return f"{-last} to {-first} {unit} are to be folded"
+    if first >= 0:
+        return f"{first} to {last} {unit} are to be let out"
+    return f"anything from {-first} {unit} to be folded to {last} {unit} to be let out"
 
 
 def _wire(found: NextMove, wire: str) -> str:
@@ -229,7 +235,7 @@ def _rest(found: NextMove) -> Iterator[str]:
     none, one, two = advice.lowerings
     never = max(1 - none - one - two, 0.0)
     if advice.verdict in ("wires", "traps"):
-        text = f"one does in {percent(one + none)}, two in {percent(min(one + two + none, 1.0))}"
+        text = f"one is enough in {percent(one + none)}, two in {percent(min(one + two + none, 1.0))}"
         if never > 0.02:
             text += f"; in {percent(never)} no wire length does, and the traps, the site or a tuner must"
         yield from folded("Lowerings: ", f"{text}.")
@@ -256,7 +262,7 @@ def _cutting(found: NextMove, advice: Advice) -> Iterator[str]:
         cut = advice.cut[wire]
         text = f"{_cm(spare)} {small_step()[0]} are folded back on each then. "
         text += (
-            f"{_cm(cut)} {small_step()[0]} may be cut off, for good; keep the rest folded."
+            f"{_cm(cut)} {small_step()[0]} may be cut off for good; keep the rest folded."
             if cut
             else "Cut nothing yet: a fold can be undone."
         )

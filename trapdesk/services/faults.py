@@ -395,7 +395,9 @@ def diagnose(
     whole = forward()
     count = max(len(whole.owners()), 1)
     z, _, off = peak_of(whole, np.zeros((1, whole.size)))
-    if _chance_above(float(z @ z + off @ off), count) > WELL:
+    miss = float(z @ z + off @ off)
+    # What misses by so little leaves no room for anything that fits so much better.
+    if miss < 2 * math.log(NAMED) - 1 or _chance_above(miss, count) > WELL:
         return Diagnosis(named=(), looked_at=(), healthy_misfit=0.0, misfits=False)
     basis = bench.basis(latents)
     sound, healthy_misfit = evidence(forward(basis=basis))
