@@ -1,6 +1,7 @@
 """What a builder reads of each kind of trap: doubts of all its parts, how they are joined, what to cut."""
 
 import re
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -60,5 +61,10 @@ def test_turns_wound_close_are_not_pushed_together():
 
 
 def test_a_ring_core_takes_whole_turns():
-    coil = figures_of("toroid").trap.coil
-    assert coil.half_turns == int(coil.half_turns)
+    design = store.find(DESIGNS / "toroid-trap.toml").design
+    trap = design.antenna.trap
+    # Turns that are nearer a half than a whole one.
+    ring = replace(trap.coil, inductance_index=trap.coil.inductance_index * 0.98)
+    found = solve(replace(design, antenna=replace(design.antenna, trap=replace(trap, coil=ring)))).trap.coil
+    assert 0.25 < found.turns % 1 < 0.75
+    assert found.half_turns == int(found.half_turns)

@@ -3,6 +3,7 @@
 from tests.bench.yardstick import ratio, record
 from trapdesk.engine.coil_table import quick_coil
 from trapdesk.engine.rings import _whole_rings
+from trapdesk.services.by_yield import by_yield
 from trapdesk.services.rummage import rummage
 from trapdesk.services.winders import TURNS
 from trapdesk.store import store
@@ -29,6 +30,16 @@ def test_twenty_rows():
     assert len(found.rows) >= 20
     assert all(len(row.outcome.bands) == 2 for row in found.rows)
     record("rummage, 20 rows through the ready box", ratio(look, runs=3), limit=600.0)
+
+
+def test_yield_of_a_row():
+    *_, found = rummage(DESIGN, BOX, 1)
+
+    def look():
+        return next(by_yield(DESIGN, found, "wet"))
+
+    assert look().rows[0].within is not None
+    record("rummage, yield of a row", ratio(look, runs=3), limit=150.0)
 
 
 def test_quick_coils():
