@@ -97,6 +97,12 @@ class Aside:
         self.stage = ""
         self.order = ""
 
+    def forget(self) -> None:
+        """Drop what was found, and what was typed, of another design than the one that was just opened."""
+        self._known.clear()
+        self.readings = self.hung = ()
+        self.place, self.other, self.stage = 0, "", ""
+
     def found(self, name: str) -> Any:
         """Return what a job found last, None for nothing yet."""
         known = self._known.get(name)

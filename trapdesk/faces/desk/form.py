@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 from dataclasses import dataclass, fields, replace
+from enum import StrEnum
 from typing import TYPE_CHECKING, Any
 
 from ...design.design import UNKNOWN, Band, Design, Shape, get, known_at, with_value
@@ -57,6 +58,8 @@ UNSET = {
     "station.choke.upper": "not known",
     "station.choke.lower": "not known",
     "steps": "any value",
+    "station.line.losses": "by type",
+    "station.transmitter.table": "typical",
     "site.soil": UNKNOWN,
     "site.conductivity": "by class",
     "site.permittivity": "by class",
@@ -156,7 +159,9 @@ def _heading(text: str) -> FormRow:
 def _count(key: str, known: Declared, members: tuple[Any, ...]) -> FormRow:
     """Return the row that says how many members a list has."""
     count = len(members)
-    return FormRow(key=key, known=known, value=count, text=str(count or NONE), unset=not count)
+    return FormRow(
+        key=key, known=known, value=count, text=str(count or UNSET.get(key, NONE)), unset=not count
+    )
 
 
 def _member(design: Design, row: FormRow, above: str, place: int) -> FormRow:
@@ -310,6 +315,10 @@ def put(design: Design, key: str, value: Any, figures: Figures | None, past: Ite
         return put_part(design, key, value != NONE, past)
     if key == "bands.upper":
         return _with_upper(design, value != NONE, figures, past)
+    present = get(design, key)
+    if isinstance(present, StrEnum) and isinstance(value, str):
+        # A word that was typed stands for the kind of that name, as in a file.
+        value = type(present)(value)
     changed = with_value(design, key, value)
     site = changed.site
     if key == "site.shape":

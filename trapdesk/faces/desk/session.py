@@ -55,6 +55,7 @@ class Session:
         self._hold(document, designs or (document.design,), place)
         self.generation += 1
         self.no_answer = ""
+        self.aside.forget()
         self.note(True)
 
     @property

@@ -128,10 +128,10 @@ class DrawersPane(Lines):
         name = padded(row.name, label)
         if here and self.typed is not None:
             return [(front, "cursor"), (f" {name} ", "head"), *self.typed.pieces(width)]
-        tail = " found" if row.found and not row.unset else ""
-        if len(tail) + len(row.text) > width:
-            tail = " *" if tail else ""
-        value = padded(row.text, max(1, width - len(tail)))
+        tail, text = (" found" if row.found and not row.unset else ""), row.text
+        if tail and len(tail) + len(text) > width:
+            tail, text = "", f"= {text}"
+        value = padded(text, max(1, width - len(tail)))
         style = "quiet" if row.unset else "found" if row.found else "text"
         if row.found and self.session.dimmed:
             style = "quiet"
@@ -171,7 +171,7 @@ class DrawersPane(Lines):
         elif name in ("enter", "space") and row.words:
             self._set(row, form.following_word(row))
         elif name in ("enter", "e"):
-            self.edit(Typed(form.starting_text(row), fresh=row.value is SOLVE))
+            self.edit(Typed(form.starting_text(row), fresh=name == "enter" or bool(row.words)))
         elif event.character and event.character in "0123456789" and not row.words:
             self.edit(Typed(event.character))
         elif name == "s":
@@ -247,6 +247,9 @@ class DrawersPane(Lines):
         said = (
             f"{row.known.label}: {now}, was {before}" if changed else f"{row.known.label}: {now}, as before"
         )
+        history = self.session.design.history
+        if changed and row.key.startswith("site.") and history is not None and history.steps:
+            said += "; the readings kept were taken at the old site (Parts; or ask by p in N)"
         self._tell(said)
         if changed:
             self.post_message(self.Changed())

@@ -30,7 +30,7 @@ BROWSING = (
     ("u", "undo"), ("+-", "nudge"), ("g", "go to finding"), ("c", "cure"), ("/", "find"), ("k", "keep"),
     ("o", "open"), ("n", "new"), ("arrows", "rows"), ("U", "redo"), ("PgDn", "scroll"), ("t", "colours"),
 )  # fmt: skip
-EDITING = (("Enter", "keeps"), ("Esc", "restores"), ("Ctrl+U", "clears"))
+EDITING = (("Enter", "keeps"), ("Esc", "restores"), ("arrows", "mend what is there"), ("Ctrl+U", "clears"))
 
 ANSWERING = (("Enter", "answers"), ("Esc", "leaves it"))
 PLOTTING = (("left right", "readout"), ("z", "zoom"))

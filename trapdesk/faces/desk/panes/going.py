@@ -45,8 +45,11 @@ def next_told(session: Session) -> list[str]:
 
 
 def next_line(session: Session) -> str:
-    """Return what to do by what was read, in a line; empty while nothing was."""
+    """Return what to do by what was read and done, in a line; empty while nothing was."""
     found = session.aside.found(NEXT.name)
+    history = session.design.history
+    if history is not None and history.steps and not session.aside.hung:
+        return "hoist it as it was moved, read both bands again, and type that in N"
     if found is None or not found[0] or not session.aside.fresh(NEXT):
         return ""
     texts = iter(next_told(session))

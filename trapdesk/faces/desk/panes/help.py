@@ -18,6 +18,7 @@ KEYS: tuple[tuple[str, str], ...] = (
     ("/", "find a row by typing a part of its name"),
     ("Enter or a digit", "edit the row; a choice takes its next word"),
     ("e", "type into the row, also into a choice"),
+    ("found, =", "the desk found this value, nobody set it"),
     ("s", "set or solved: let the desk find the value, or keep what it found"),
     ("+ -", "nudge: a centimetre, half a turn, one step; of a list one more, one less"),
     ("Del, Backspace", "take a tap, a segment, a lowering out of its list"),
