@@ -16,7 +16,7 @@ from ..engine.metals import MATERIALS
 from ..engine.soils import SOILS, GroundKind
 from .doubts import Doubts
 from .fields import SOLVE, Declared, Value, choice, declared, member_of, part, parts, quantity, text
-from .history import History
+from .history import STAYS, History, Step
 from .parts import Trap
 from .station import Choke, FeedLine, Segment, Transmitter, Tuner
 
@@ -318,6 +318,20 @@ class Site:
         """Whether the ground is real earth that nobody has named."""
         named = self.soil not in (None, UNKNOWN) or self.conductivity is not None
         return self.ground == GroundKind.SOIL and not named
+
+
+@dataclass(frozen=True, kw_only=True)
+class Stay:
+    """A site the antenna left, and what was read and done to it there."""
+
+    title: str = text("title", "What the design was called at that site.", default="")
+    site: Site = part("site", "Where it hung then.", default=Site())
+    steps: tuple[Step, ...] = parts(
+        "lowerings", "Readings and moves, one for each time it came down there.", kinds={"": Step}
+    )
+
+
+STAYS[""] = Stay
 
 
 @dataclass(frozen=True, kw_only=True)

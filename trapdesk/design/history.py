@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from enum import StrEnum
+from typing import Any
 
 from .fields import choice, parts, quantity, text
 
@@ -51,6 +52,10 @@ class Step:
     )
 
 
+STAYS: dict[str, type] = {}
+"""What a site it left is kept as; it is declared where sites are."""
+
+
 @dataclass(frozen=True, kw_only=True)
 class History:
     """Readings and moves in the order they were made."""
@@ -61,6 +66,14 @@ class History:
         "tuned: brought to their frequency on the bench; as built: closed as they came out.",
         default=TrapsWere.TUNED,
     )
+    stays: tuple[Any, ...] = parts(
+        "sites before", "Where it hung before, with what was read and moved there.", kinds=STAYS
+    )
     steps: tuple[Step, ...] = parts(
         "lowerings", "Readings and moves, one for each time it came down.", kinds={"": Step}
     )
+
+    @property
+    def all_steps(self) -> tuple[Step, ...]:
+        """All readings and moves at all sites, in order."""
+        return (*(step for stay in self.stays for step in stay.steps), *self.steps)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator
+from dataclasses import replace
 from typing import Any
 
 from ..errors import TrapdeskError
@@ -80,6 +81,8 @@ def _together(design: Design) -> Iterator[Breach]:
         )
     yield from _lengths_and_trap(design)
     yield from _site(design.site)
+    for place, stay in enumerate(design.history.stays if design.history else (), start=1):
+        yield from (replace(b, where=f"history.stays.{place}.{b.where}") for b in _site(stay.site))
     yield from station_rules(design.station)
     yield from _doubts(design.doubts)
 

@@ -44,6 +44,7 @@ def lines(found: NextMove, readings: Sequence[Reading], kept: Sequence[str] = ()
     advice = found.advice
     count = len(found.posterior.forward.readings)
     read = f"after {count} reading{'s' * (count != 1)}" if count else "nothing read yet"
+    read += " at the new site" * found.new_site
     out = folded("", f"NEXT MOVE: {visible(found.figures.design.title, 48)}; {read}")
     if found.unread and not found.new_site:
         out += ["", *_nothing_read(found)]
@@ -213,7 +214,7 @@ def _tuning(found: NextMove) -> str:
 
 
 def _option_words(option: Option) -> str:
-    names = {"now": "as it hangs", "both": "the move", "inner": "inner wires only", "end": "end wires only"}
+    names = {"now": "as it hangs", "both": "both wires", "inner": "inner wires only", "end": "end wires only"}
     return names.get(option.name, "traps and both wires")
 
 
@@ -227,7 +228,8 @@ def _chances(found: NextMove, options: Sequence[Option]) -> Iterator[str]:
         cells = "".join(f"{percent(option.chances[role]):>8}" for role in bands)
         both = f"{percent(option.all_bands):>8}" if len(bands) > 1 else ""
         moved = ", ".join(f"{wire} {_cm(x, sign=True)}" for wire, x in option.change.items() if x)
-        yield f"  {_option_words(option):<22}{moved:<22}".ljust(46) + cells + both
+        mark = "> " if option is found.advice.best else "  "
+        yield f"{mark}{_option_words(option):<22}{moved:<22}".ljust(46) + cells + both
 
 
 def _rest(found: NextMove) -> Iterator[str]:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 from dataclasses import replace
 
-from ..design.design import Design
+from ..design.design import Design, Site, Stay
 from ..design.history import History
 from ..design.reading_kinds import PARTS, Reading
 from ..errors import BadInput, Fault, FileFault, NoAnswer, visible
@@ -33,15 +33,13 @@ def run(options: argparse.Namespace) -> str:
         design = with_moves(design, options.moved)
         kept.append(f"What was really moved is kept in {visible(options.file, 60)}.")
     given = antenna_readings(options.values)
-    if options.keep and not given:
+    if options.keep and not (given or options.site):
         raise BadInput(Fault("--keep", "there are no readings to keep", help="type them behind the design"))
-    if options.keep and options.site:
-        help = "copy the design, give it the new [site], and keep readings there"
-        raise BadInput(Fault("--keep", "a_history_belongs_to_one_site", help=help))
     found = found_next(design, given, options.site)
     if options.keep:
-        design = with_step(design, options.values, found)
-        kept.append(f"Kept in {visible(options.file, 60)}: these readings, and this move as made.")
+        what = ["the new site"] * bool(options.site) + ["these readings"] * bool(given)
+        design = with_step(design, options.values, found, at=found.figures.design.site)
+        kept.append(f"Kept in {visible(options.file, 60)}: {', '.join([*what, 'and this move as made'])}.")
         kept.append("Did you move otherwise? Say so with --moved inner=-5cm; --undo takes both back.")
     if writes:
         store.save(design, opened.path, opened.text)
@@ -70,13 +68,13 @@ def found_next(design: Design, given: tuple[Reading, ...], site: str | None) -> 
 
 def past_readings(design: Design) -> list[tuple[Reading, ...]]:
     """Return the readings that were kept, step by step; BadInput names the step that cannot be read."""
-    steps = () if design.history is None else design.history.steps
+    steps = () if design.history is None else design.history.all_steps
     found = []
     for place, step in enumerate(steps, start=1):
         try:
             found.append(antenna_readings(step.readings.split()))
         except BadInput as refused:
-            where = f"history.steps.{place}.readings"
+            where = f"history, lowering {place}:"
             raise BadInput(
                 replace(fault, where=f"{where} {fault.where}".strip()) for fault in refused.faults
             ) from None
@@ -93,20 +91,37 @@ def antenna_readings(texts: list[str]) -> tuple[Reading, ...]:
     return readings
 
 
-def with_step(design: Design, texts: list[str], found: service.NextMove) -> Design:
-    """Return the design with readings and the move that follows them kept in it."""
+def with_step(design: Design, texts: list[str], found: service.NextMove, at: Site | None = None) -> Design:
+    """Return the design with readings and the move that follows them kept in it.
+
+    Where it hangs `at` another site that one becomes the design's: the wires stay as they were computed and
+    cut, and what was kept goes with the site it left.
+    """
     if found.diagnosis.named or found.cannot_tell or found.diagnosis.misfits:
         help = "mend or read again first; readings of something broken are not kept"
         raise NoAnswer("no_move_to_keep", "history", {}, help)
     said = " ".join("".join(text.split()) for text in texts)
     history = design.history or History()
     step = service.step_after(said, found.advice)
+    if at is not None and at != design.site:
+        stays = (*history.stays, Stay(title=design.title, site=design.site, steps=history.steps))
+        history = replace(history, stays=stays, steps=())
+        wire = found.figures.wire
+        end = None if wire.end is None else round(wire.end, 4)
+        lengths = replace(design.antenna.lengths, inner=round(wire.inner, 4), end=end)
+        design = replace(design, site=at, antenna=replace(design.antenna, lengths=lengths))
     return replace(design, history=replace(history, steps=(*history.steps, step)))
 
 
 def without_last(design: Design) -> Design:
-    """Return the design without the readings and the move that were kept last."""
+    """Return the design without the readings and the move that were kept last.
+
+    Without any left at this site it is back at the one before, its wires as they are.
+    """
     history = design.history
+    if history is not None and len(history.steps) <= 1 and history.stays:
+        *stays, last = history.stays
+        return replace(design, site=last.site, history=replace(history, stays=tuple(stays), steps=last.steps))
     if history is None or not history.steps:
         raise BadInput(
             Fault("--undo", "there is nothing to undo", help="no readings were kept in this design")

@@ -9,7 +9,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from ..design.design import Design
+from ..design.design import Design, Site
 from ..design.history import Again, History, Step, TrapsWere
 from ..design.reading_kinds import Interval, Reading
 from ..engine.fits import Sweep
@@ -50,17 +50,30 @@ class NextMove:
 
 
 def hoists_of(
-    history: History | None, past: Sequence[Sequence[Reading]], now: Sequence[Reading]
-) -> list[Hoist]:
-    """Return every way it hung, the last being how it hangs now."""
-    hoists, change, tunings = [], {"inner": 0.0, "end": 0.0}, 0
-    steps: tuple[Step, ...] = () if history is None else history.steps
-    for moves, (step, readings) in enumerate(zip(steps, past, strict=True)):
-        hoists.append(Hoist(readings=tuple(readings), change=dict(change), moves=moves, tunings=tunings))
-        change = {"inner": change["inner"] + step.inner, "end": change["end"] + step.end}
-        tunings += step.traps is Again.YES
-    hoists.append(Hoist(readings=tuple(now), change=change, moves=len(steps), tunings=tunings))
-    return hoists
+    design: Design, past: Sequence[Sequence[Reading]], now: Sequence[Reading], site: Site | None
+) -> list[tuple[Site, list[Hoist]]]:
+    """Return every way it hung, site by site; the last of each is how it came to hang there in the end.
+
+    `past` holds the readings of all steps of all sites in order; a `site` is where it hangs now instead.
+    """
+    history = design.history or History()
+    stays: list[tuple[Site, tuple[Step, ...]]] = [(stay.site, stay.steps) for stay in history.stays]
+    stays.append((design.site, history.steps))
+    if site is not None:
+        stays.append((site, ()))
+    found, read = [], iter(past)
+    change, moves, tunings = {"inner": 0.0, "end": 0.0}, 0, 0
+    for place, (there, steps) in enumerate(stays, start=1):
+        hoists = []
+        for step in steps:
+            readings = tuple(next(read))
+            hoists.append(Hoist(readings=readings, change=dict(change), moves=moves, tunings=tunings))
+            change = {"inner": change["inner"] + step.inner, "end": change["end"] + step.end}
+            moves, tunings = moves + 1, tunings + (step.traps is Again.YES)
+        readings = tuple(now) if place == len(stays) else ()
+        hoists.append(Hoist(readings=readings, change=dict(change), moves=moves, tunings=tunings))
+        found.append((there, hoists))
+    return found
 
 
 def were_tuned(design: Design) -> bool:
@@ -79,33 +92,33 @@ def next_move(
     *,
     site: Design | None = None,
 ) -> NextMove:
-    """Return what to do next; with a design of another site, at that site, where the readings are then of.
+    """Return what to do next; with a design of another site, at that site, which the readings are then of.
 
     Raises ReadingUnusable for a reading that cannot be of this antenna.
     """
     _check(design, readings)
     plain = replace(design, history=None)
-    figures = solve(plain)
-    ensemble = Ensemble(figures)
-    old = site is None
-    hoists = hoists_of(design.history, past, readings if old else ())
     tuned = were_tuned(design)
+    (first, hoists), *later = hoists_of(design, past, readings, None if site is None else site.site)
+    figures = solve(replace(plain, site=first))
+    ensemble = Ensemble(figures)
     posterior = update(ensemble, hoists, tuned=tuned, sweeps=sweeps)
-    if not old:
-        assert site is not None
+    read = [reading for hoist in hoists for reading in hoist.readings]
+    for there, hoists in later:
+        # The wires are cut: elsewhere they are what they were, whatever that site would have had computed.
         lengths = replace(plain.antenna.lengths, inner=figures.wire.inner, end=figures.wire.end)
-        antenna = replace(plain.antenna, lengths=lengths)
-        figures = solve(replace(plain, antenna=antenna, site=site.site))
+        plain = replace(plain, antenna=replace(plain.antenna, lengths=lengths))
+        figures = solve(replace(plain, site=there))
         ensemble = Ensemble(figures)
-        posterior = at_new_site(posterior, ensemble, readings, sweeps=sweeps)
+        posterior = at_new_site(posterior, ensemble, hoists, sweeps=sweeps)
+        read += [reading for hoist in hoists for reading in hoist.readings]
     diagnosis = Diagnosis(named=(), looked_at=(), healthy_misfit=posterior.misfit, misfits=False)
-    if old and any(hoist.readings for hoist in hoists):
+    if any(hoist.readings for hoist in hoists):
         diagnosis = diagnose(Bench(ensemble), hoists, tuned=tuned, sweeps=sweeps)
     can_tune = figures.trap is not None and bool(figures.trap.adjustments)
     advice = advise(posterior, can_tune=can_tune)
     prospects = Prospects(posterior)
     swr = {role: value[0] for role, value in prospects.worst([{}]).items()}
-    read = [reading for hoist in hoists for reading in hoist.readings]
     little = sum(posterior.told) < LITTLE and posterior.survivors > 0.7 * posterior.weights.size
     return NextMove(
         figures=figures,
@@ -116,8 +129,8 @@ def next_move(
         worst_swr={r: (float(np.quantile(v, 0.5)), float(np.quantile(v, 0.95))) for r, v in swr.items()},
         dips=_dips_after(prospects, advice),
         unread=not read,
-        cannot_tell=bool(read) and little and old,
-        new_site=not old,
+        cannot_tell=bool(read) and little and not later,
+        new_site=bool(later),
     )
 
 

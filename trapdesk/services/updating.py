@@ -14,7 +14,6 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..design.reading_kinds import Reading
 from ..engine.fits import Sweep
 from ..engine.sampling import normal_quantile, uniform
 from .antenna_readings import Altered, Forward, Hoist
@@ -236,7 +235,7 @@ def _around(
 def at_new_site(
     posterior: Posterior,
     ensemble: Ensemble,
-    readings: Sequence[Reading] = (),
+    hoists: Sequence[Hoist],
     *,
     sweeps: Mapping[str, Sweep] | None = None,
     trials: int = TRIALS,
@@ -245,9 +244,9 @@ def at_new_site(
     """Return what is believed of the same antenna elsewhere: what belongs to it is kept, the site forgotten.
 
     What is kept is put into a normal distribution of the same mean and spread. `ensemble` is that of the new
-    site with the same computed wires.
+    site with the same computed wires, `hoists` are how it hung there.
     """
-    old, last = posterior.forward.latents, posterior.forward.hoists[-1]
+    old, last = posterior.forward.latents, hoists[-1]
     latents = latents_of(ensemble, last.moves, last.tunings)
     z = posterior.even(trials)[:, : old.size]
     basis, origin = np.eye(latents.size), np.zeros(latents.size)
@@ -263,9 +262,8 @@ def at_new_site(
     spread = np.linalg.cholesky(np.cov(z[:, here].T) + 1e-6 * np.eye(here.size))
     origin[there] = z[:, here].mean(axis=0)
     basis[np.ix_(there, there)] = spread.T
-    hoist = Hoist(readings=tuple(readings), change=last.change, moves=last.moves, tunings=last.tunings)
     stage = posterior.forward.stage
-    forward = Forward(ensemble, latents, [hoist], stage, sweeps or {}, basis=basis, origin=origin)
+    forward = Forward(ensemble, latents, hoists, stage, sweeps or {}, basis=basis, origin=origin)
     return weigh(forward, trials, seed)
 
 

@@ -8,7 +8,7 @@ from dataclasses import replace
 from typing import Any
 
 from ...design.capacitor_kinds import CAPACITORS, SingleCapacitor
-from ...design.design import Band, Design, get, known_at, with_value
+from ...design.design import Band, Design, Stay, get, known_at, with_value
 from ...design.history import Step
 from ...design.station import TYPICAL_FOLDBACK, Foldback, ListedLoss, Segment, Tap
 from ...engine.cable_list import CABLES
@@ -128,6 +128,11 @@ def _step(design: Design, key: str) -> Design:
     return with_value(design, key, (*get(design, key), Step()))
 
 
+def _stay(design: Design, key: str) -> Design:
+    """Add a site it hung at before, at first like the present one."""
+    return with_value(design, key, (*get(design, key), Stay(title=design.title, site=design.site)))
+
+
 def _capacitor(design: Design, key: str) -> Design:
     """Add a capacitor of a value that is easy to find; the print is there to be typed over."""
     member = SingleCapacitor(print=prints.read("47 pF"))
@@ -140,6 +145,7 @@ _STARTS: dict[type, Callable[[Design, str], Design]] = {
     Tap: _tap,
     Foldback: _foldback,
     Step: _step,
+    Stay: _stay,
     SingleCapacitor: _capacitor,
 }
 """What adds one more, by what the list holds."""
