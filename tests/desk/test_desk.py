@@ -398,7 +398,7 @@ async def test_help_tells_of_the_row_under_the_cursor():
         assert "Height of the feed point above ground." in whole
         assert "from 50 cm up to 300 m" in whole
         assert "views, each by its capital letter" in whole
-        await pressed(desk, pilot, "pagedown", "pagedown")
+        await pressed(desk, pilot, *["pagedown"] * 3)
         assert "Enter keeps, Esc restores" in text(desk)
         await pressed(desk, pilot, "h")
         assert "[answer]" in text(desk)

@@ -54,8 +54,6 @@ async def test_the_whole_job_from_an_empty_design_by_keyboard_alone(tmp_path, mo
         assert "of 100 antennas" in text(desk)
         await person.keys_of("slash", " line", "enter", "enter", "slash", " line len", "enter", " 20m")
         await person.keys_of("enter")
-            "slash", " line", "enter", "enter", "slash", " line len", "enter", " 20m", "enter"
-        )
         await person.keys_of("slash", " tuner", "enter", "enter", "slash", " power", "enter", " 50W", "enter")
         await person.keys_of("w", "enter")
         await person.keys_of("P", "x", "enter", "H", "x", "enter")

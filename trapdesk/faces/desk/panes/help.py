@@ -56,10 +56,11 @@ def help_lines(sight: Sight, letters: Mapping[str, View]) -> list[Line]:
 def _listed(pairs: Sequence[tuple[str, str]], width: int) -> list[Line]:
     """Return names with what they stand for beside them."""
     lines: list[Line] = []
+    column = max(len(name) for name, _ in pairs) + 1
     for name, does in pairs:
-        first, *more = wrapped(does, max(8, width - 18))
-        lines.append([(f"{name:<17} ", "found"), (first, "text")])
-        lines += [[(" " * 18 + piece, "text")] for piece in more]
+        first, *more = wrapped(does, max(8, width - column))
+        lines.append([(f"{name:<{column}}", "found"), (first, "text")])
+        lines += [[(" " * column + piece, "text")] for piece in more]
     return lines
 
 
