@@ -35,6 +35,8 @@ FEW_LOSSES, FEW_SIZES = (1 / 600, 1 / 80), 4
 """Coil losses, 1/Q, and how many capacitances a trap's outcome is known for; fewer for a first look."""
 BIN = 0.005
 """Of combinations this near each other in capacitance only the best two are tried with every coil."""
+AT_ONCE = 4096
+"""Combinations whose figures are read off at once."""
 BEST_OF_PAIR = 4
 NEAR = 0.2
 """How many points the coarse cost may be off."""
@@ -173,7 +175,18 @@ class Search:
         if not len(every):
             return every
         inside = np.clip(every.capacitance, self.range[-1], self.range[0])
-        losses, fillings, volts = self.surface.at(inside, np.array(1 / 200), every.loss)
+        # A piece at a time: all at once take more memory than everything else at the desk.
+        pieces = [
+            self.surface.at(
+                inside[start : start + AT_ONCE], np.array(1 / 200), every.loss[start : start + AT_ONCE]
+            )
+            for start in range(0, len(every), AT_ONCE)
+        ]
+        losses, fillings = (
+            [np.concatenate(band) for band in zip(*(piece[n] for piece in pieces), strict=True)]
+            for n in (0, 1)
+        )
+        volts = np.concatenate([piece[2] for piece in pieces])
         points = cost(
             losses=losses,
             fillings=fillings,

@@ -148,9 +148,13 @@ def picked(
         return
     points = points_of(some, surface, of)
     losses = some.loss * some.capacitance / of["total"]
-    order = np.argsort(points, kind="stable")[:BEST]
+    order = np.argsort(points, kind="stable")
     order = order[np.isfinite(points[order])]
-    for place, k in enumerate(order):
+    if np.any(some.stub >= 0):
+        # Of a coil with stubs of one cable a little longer or shorter the best is enough.
+        alike = np.where(some.stub >= 0, some.stub * 1e3 + of["turns"], -1.0 - np.arange(len(some)))[order]
+        order = order[np.sort(np.unique(alike, return_index=True)[1])]
+    for place, k in enumerate(order[:BEST]):
         one = {name: float(array[k]) for name, array in of.items()}
         yield Offer(
             kind=pair[0],
