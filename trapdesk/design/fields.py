@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import MISSING, dataclass, field, fields, is_dataclass, replace
 from enum import Enum
+from functools import cache
+from types import MappingProxyType
 from typing import Any
 
 
@@ -80,9 +82,14 @@ def printed(label: str, help: str, *, example: str) -> Any:
     return _declare(None, dimension="print", label=label, help=help, example=example)
 
 
-def declared(part: Any) -> dict[str, Declared]:
-    """Return the declarations of a part's fields, by name, in order."""
-    return {f.name: f.metadata["declared"] for f in fields(part)}
+def declared(part: Any) -> Mapping[str, Declared]:
+    """Return the declarations of the fields of a part, or of a kind of part, by name, in order."""
+    return _declared(part if isinstance(part, type) else type(part))
+
+
+@cache
+def _declared(kind: type) -> Mapping[str, Declared]:
+    return MappingProxyType({f.name: f.metadata["declared"] for f in fields(kind)})
 
 
 def walk(part: Any, prefix: str = "") -> Iterator[tuple[str, Declared, Any]]:

@@ -6,7 +6,6 @@ import difflib
 import errno
 import json
 import os
-import secrets
 import stat
 from dataclasses import dataclass
 from importlib import resources
@@ -241,7 +240,7 @@ def _mode(target: str) -> int | None:
 def put_whole(target: str, data: bytes, mode: int | None = None) -> None:
     """Put bytes in the place of a file, all of them or none."""
     folder = os.path.dirname(target)
-    beside = os.path.join(folder, f".{secrets.token_hex(6)}.trapdesk")
+    beside = os.path.join(folder, f".{os.urandom(6).hex()}.trapdesk")
     handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o666)
     try:
         with open(handle, "wb") as file:

@@ -12,10 +12,12 @@ from rich.console import RenderableType
 from rich.text import Text
 from textual.app import App, ComposeResult
 from textual.binding import Binding
+from textual.driver import Driver
 from textual.events import Key, Paste, Resize
 from textual.screen import Screen
 from textual.timer import Timer
 
+from .. import shown
 from . import config, journal
 from .arrange import LEAST_HEIGHT, LEAST_WIDTH, arrangement
 from .deeds import KEYS, Deeds
@@ -23,6 +25,7 @@ from .endings import end_by_signals, told
 from .filing import Filing
 from .lines import Lines, padded
 from .middle import Middle
+from .mouse import quieter
 from .panes.drawers import DrawersPane
 from .panes.frame import Foot, Heading
 from .session import Session
@@ -54,11 +57,13 @@ class Desk(App[None]):
         trouble: str = "",
     ) -> None:
         super().__init__()
+        # Two widgets on every screen for what the foot does here.
+        self._disable_tooltips = self._disable_notifications = True
         self.session = session
         self.drawn = drawn
         self.thin = Thin()
         self.chosen = chosen or config.Config()
-        session.units = self.chosen.units
+        shown.show_lengths_in(self.chosen.units)
         self._trouble = trouble
         self._fitting = False
         self._settling: Timer | None = None
@@ -68,6 +73,10 @@ class Desk(App[None]):
         for theme in THEMES.values():
             self.register_theme(theme)
         self.theme = drawn.theme
+
+    def get_driver_class(self) -> type[Driver]:
+        """Return the driver of the terminal, with a mouse that is quiet while it only passes by."""
+        return quieter(super().get_driver_class())
 
     def get_theme_variable_defaults(self) -> dict[str, str]:
         """Return the colours that a theme not of ours lacks."""
@@ -96,6 +105,7 @@ class Desk(App[None]):
         self.theme_changed_signal.subscribe(self, lambda theme: self._recolour())
         if not self.is_headless:
             end_by_signals(self)
+        self._lay_out(*self.size)
         self.call_after_refresh(self._begin)
 
     def _recolour(self) -> None:
@@ -191,13 +201,15 @@ class Desk(App[None]):
 
     def on_resize(self, event: Resize) -> None:
         """Choose the arrangement for a size."""
-        width, height = event.size
         self.thin.forget()
-        self.middle.arranged = arrangement(width, height)
-        self.middle.furnish()
+        self._lay_out(*event.size)
+        if self.middle.size:  # else nothing has been laid out yet
+            self.repaint()
+
+    def _lay_out(self, width: int, height: int) -> None:
+        self.middle.lay_out(arrangement(width, height))
         if self.middle.arranged.small:
             self._say_small(width, height)
-        self.repaint()
 
     def _say_small(self, width: int, height: int) -> None:
         """Say in the one line there is that nothing else fits."""
@@ -219,7 +231,9 @@ class Desk(App[None]):
         self.repaint()
 
     def repaint(self) -> None:
-        """Hand the session to every pane."""
+        """Hand the session to every pane; at the end of the desk there may be none left."""
+        if not self.query(Heading):
+            return
         self.query_one(Heading).repaint(self.session)
         self.middle.repaint()
         self.repaint_foot()

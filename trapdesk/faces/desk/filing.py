@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import hashlib
 import os
 from collections.abc import Callable
 from pathlib import Path
@@ -254,7 +253,7 @@ class Filing:
     def _unless_changed(self, path: Path, then: Callable[[], None] | None = None) -> None:
         """Save over the file that was opened, unless somebody else changed it since: then ask."""
         try:
-            same = _print_of(store.read_file(path)) == _print_of(self._session.text)
+            same = _bytes_of(store.read_file(path)) == _bytes_of(self._session.text)
         except TrapdeskError:
             same = not path.exists()
         if same:
@@ -312,5 +311,5 @@ class Filing:
         self._asker.close()
 
 
-def _print_of(text: str) -> bytes:
-    return hashlib.sha256(text.encode("utf-8", "surrogatepass")).digest()
+def _bytes_of(text: str) -> bytes:
+    return text.encode("utf-8", "surrogatepass")

@@ -14,7 +14,6 @@ from __future__ import annotations
 
 import json
 import os
-import secrets
 import zlib
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
@@ -135,7 +134,7 @@ class Journal:
         """Begin a journal with the designs there are; it takes its name when all of them are on the disk."""
         self.folder.mkdir(mode=0o700, parents=True, exist_ok=True)
         number = max((number_of(file) for file in _files(self.folder)), default=0) + 1
-        file = self.folder / f"{number:06d}-{secrets.token_hex(4)}{ENDING}"
+        file = self.folder / f"{number:06d}-{os.urandom(4).hex()}{ENDING}"
         beside = file.with_suffix(".begun")
         old = self._file
         self._give_up()

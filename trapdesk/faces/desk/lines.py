@@ -85,6 +85,7 @@ class Lines(Widget):
     def __init__(self, *, id: str) -> None:
         super().__init__(id=id)
         self._lines: list[list[Piece]] = []
+        self._written = self._drawn = False
         self._first = 0
         self.edge = ""
         self.stale = False
@@ -106,12 +107,16 @@ class Lines(Widget):
 
     def show(self, lines: Sequence[Line], *, stale: bool = False) -> None:
         """Show other lines; only those that changed are repainted. Stale ones are dimmed."""
+        self._written = True
         new = [list(line) for line in lines]
         old, self._lines = self._lines, new
         first = self._first
         self.scroll_lines(0)
-        if stale != self.stale or first != self._first:
-            self.stale = stale
+        anew = stale != self.stale or first != self._first
+        self.stale = stale
+        if not self._drawn:
+            return
+        if anew:
             self.refresh()
             return
         for index in range(max(len(old), len(new))):
@@ -140,6 +145,10 @@ class Lines(Widget):
 
     def render_line(self, y: int) -> Strip:
         """Return one row, filled to the width of the pane."""
+        if not self._written:
+            # All panes have their sizes when the first row is asked for: written then, none is sent empty.
+            self.app.repaint()
+        self._drawn = True
         index = self.line_at(y)
         pieces = list(self._lines[index]) if 0 <= index < len(self._lines) else []
         if self.edge:

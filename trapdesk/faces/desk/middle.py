@@ -40,12 +40,31 @@ class Middle(Container):
         yield DrawersPane(self.session, id="drawers")
         yield Container(ViewPane(id="answer"), id="centre")
 
-    def furnish(self) -> None:
-        """Add the panes the arrangement has room for; the style sheet hides those a later one has not."""
+    def lay_out(self, arranged: Arrangement) -> None:
+        """Take another arrangement, with the panes it has room for; the style sheet hides what it has not."""
+        self.arranged = arranged
         if self.arranged.tall and not self.query("#below"):
             self.query_one("#centre").mount(ViewPane(id="below"))
         if self.arranged.wide and not self.query("#right"):
             self.mount(Container(ViewPane(id="side"), ViewPane(id="chances"), id="right"))
+        self._classify()
+
+    def _classify(self) -> None:
+        """Tell the style sheet what is to be seen."""
+        arranged = self.arranged
+        if self.shown not in arranged.cycle:
+            self.shown = arranged.cycle[0]
+        for name in ("small", "short", "thin", "wide", "tall"):
+            self.screen.set_class(getattr(arranged, name), name)
+        self.screen.set_class(self._inputs, "inputs")
+        self.screen.set_class(arranged.thin and not self._inputs, "views")
+        self.screen.set_class(self._broad, "broad")
+        self.screen.set_class(self._covering and not arranged.thin, "cover")
+
+    @property
+    def _inputs(self) -> bool:
+        """Whether the inputs have the one pane there is."""
+        return self.arranged.thin and self.shown is INPUTS and not self.helping
 
     def _pane(self, name: str) -> ViewPane:
         return self.query_one(f"#{name}", ViewPane)
@@ -62,7 +81,8 @@ class Middle(Container):
     @property
     def _beside(self) -> bool:
         """Whether findings, or help in their place, have a pane of their own just now."""
-        return self.arranged.wide and not self._broad
+        # The pane is there a moment after its column, and tells of its size then like any other.
+        return self.arranged.wide and not self._broad and bool(self.query("#side"))
 
     @property
     def _covering(self) -> bool:
@@ -80,17 +100,8 @@ class Middle(Container):
 
     def repaint(self) -> None:
         """Hand the session to every pane, and have worked out what they lack."""
-        arranged = self.arranged
-        if self.shown not in arranged.cycle:
-            self.shown = arranged.cycle[0]
-        helping = self.helping and not self._beside
-        inputs = arranged.thin and self.shown is INPUTS and not helping
-        for name in ("small", "short", "thin", "wide", "tall"):
-            self.screen.set_class(getattr(arranged, name), name)
-        self.screen.set_class(inputs, "inputs")
-        self.screen.set_class(arranged.thin and not inputs, "views")
-        self.screen.set_class(self._broad, "broad")
-        self.screen.set_class(self._covering and not arranged.thin, "cover")
+        self._classify()
+        arranged, helping = self.arranged, self.helping and not self._beside
         drawers = self._drawers
         drawers.repaint()
         for pane in self.query(ViewPane):
@@ -99,7 +110,7 @@ class Middle(Container):
         given = (self.session, drawers.row, self._drawn)
         if arranged.tall and not self._broad:
             self._pane("answer").update_view(*given, ANSWER, [(ANSWER.name, "picked")])
-        if not inputs:
+        if not self._inputs:
             view, turning = HELP if helping else self.shown, self._turning
             turning.update_view(*given, view, names(arranged.cycle, view, turning.room, self._busy()))
         if self._beside:
