@@ -94,11 +94,13 @@ class FormRow:
 
     @property
     def name(self) -> str:
-        """The label as it stands below the row it belongs to, where it belongs to one."""
+        """The label as it stands in its drawer, without what the rows around it say already."""
         label = self.known.label
         if ": " in label:
             return "  " + label.partition(": ")[2]
-        return "  doubt" if label.startswith("doubt of ") else label
+        if self.key.startswith("station.tuner."):
+            return label.removeprefix("tuner ")
+        return "  doubt" if label.startswith("doubt of ") else label.replace(" on the ", ", ")
 
     @property
     def counts(self) -> bool:

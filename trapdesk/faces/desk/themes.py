@@ -45,7 +45,7 @@ THEMES = {
         _theme("dark", "#101418 #d8dcd6 #8a949c #8fd0c0 #e0b860 #ff8a70 #8fd0c0"),
         _theme("daylight", "#ffffff #000000 #4a4a4a #00506a #7a4a00 #a00000 #00506a", dark=False),
         # Red alone, and on black: what eyes used to the dark lose least by. Common practice, no source.
-        _theme("red-light", "#000000 #d02010 #8a1408 #ff4030 #ff4030 #ff4030 #8a1408"),
+        _theme("red-light", "#000000 #d82414 #a81e10 #ff4030 #ff4030 #ff4030 #8a1408"),
         _theme("plain", " ".join([_DEFAULT] * len(NAMES)), ansi=True, faint="dim"),
     )
 }
