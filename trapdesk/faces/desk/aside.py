@@ -33,6 +33,14 @@ def give_way() -> None:
         os.setpriority(os.PRIO_PROCESS, thread, max(RANK, os.getpriority(os.PRIO_PROCESS, thread)))
 
 
+def give_back() -> None:
+    """Return memory that is free to the system, where the C library keeps it until it is told (glibc)."""
+    import ctypes
+
+    if sys.platform == "linux" and (trim := getattr(ctypes.CDLL(None), "malloc_trim", None)) is not None:
+        trim(0)
+
+
 @dataclass(frozen=True, kw_only=True)
 class Task:
     """What a piece of work is given. `tell` shows how far it is; it ends soon once `stopped` says so."""
@@ -205,6 +213,7 @@ class Aside:
         except Exception as error:
             self._post(self._failed, error)
             return
+        give_back()
         self._post(self._ended, job, token, refusal)
 
     def _failed(self, error: Exception) -> None:
