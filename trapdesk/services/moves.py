@@ -28,10 +28,14 @@ SURE, ENOUGH = 0.98, 0.9
 """Chance from which on it is left as it is, and that counts as met where traps might be mended. [1]"""
 WORTH, TUNING_WORTH = 0.03, 0.15
 """By how much a chance must rise for a lowering, and for taking the traps down as well. [1]"""
+ADDING_WORTH = 0.1
+"""By how much a chance must rise for wire to be added to what there is. [1], a choice of ours"""
 LOWERINGS = 4
 """Lowerings over which the risk of having cut too much is spread. [1], a choice of ours"""
 WORTH_CUTTING = 0.03
 """Less wire than this is not worth a cut. [m]"""
+FARTHEST = 10.0
+"""No move is looked for beyond this. [m]"""
 FINEST = 0.005
 """Nobody folds finer than this. [m]"""
 STREAM = 2048
@@ -250,6 +254,29 @@ def needs_of(prospects: Prospects, *, tuning: bool = False) -> dict[str, Need]:
     return found
 
 
+def _best(
+    prospects: Prospects,
+    name: str,
+    wires: Sequence[str],
+    needs: Mapping[str, Need],
+    most: Mapping[str, float],
+    *,
+    tuning: bool = False,
+) -> Option:
+    """Return the best move of some wires; one for which wire must be added only where that is worth it."""
+    free = {wire: FARTHEST for wire in wires}
+    middle = {wire: needs[wire].middle for wire in wires}
+    move = _rounded(prospects.search(middle, wires, free, tuning=tuning), needs, free)
+    found = prospects.option(name, move, tuning=tuning)
+    if any(move[wire] > most[wire] + 1e-9 for wire in wires):
+        within = {wire: min(value, most[wire]) for wire, value in move.items()}
+        held = _rounded(prospects.search(within, wires, most, tuning=tuning), needs, most)
+        other = prospects.option(name, held, tuning=tuning)
+        if other.all_bands >= found.all_bands - ADDING_WORTH:
+            return other
+    return found
+
+
 def advise(posterior: Posterior, *, can_tune: bool, reserve: float | None = None) -> Advice:
     """Return what to do next.
 
@@ -262,22 +289,16 @@ def advise(posterior: Posterior, *, can_tune: bool, reserve: float | None = None
     meant = prospects.hoist.change
     most = {wire: max(reserve - meant.get(wire, 0.0), 0.0) for wire in prospects.wires}
     needs = needs_of(prospects)
-    free = {wire: 10.0 for wire in prospects.wires}
     now = prospects.option("now", {})
-    middle = {wire: need.middle for wire, need in needs.items()}
-    best_move = prospects.search(middle, prospects.wires, free, tuning=False)
-    both = prospects.option("both", _rounded(best_move, needs, free))
+    both = _best(prospects, "both", prospects.wires, needs, most)
     options = [both]
     singles = []
     for wire in prospects.wires if len(prospects.wires) > 1 else ():
-        move = prospects.search({wire: middle[wire]}, (wire,), free, tuning=False)
-        singles.append(prospects.option(wire, _rounded(move, needs, free)))
+        singles.append(_best(prospects, wire, (wire,), needs, most))
     options += singles
     if can_tune and both.all_bands < ENOUGH and prospects.traps is not None:
         again = needs_of(prospects, tuning=True)
-        start = {wire: need.middle for wire, need in again.items()}
-        move = prospects.search(start, prospects.wires, free, tuning=True)
-        options.append(prospects.option("traps", _rounded(move, again, free), tuning=True))
+        options.append(_best(prospects, "traps", prospects.wires, again, most, tuning=True))
     best = both
     one = max(singles, key=lambda option: option.all_bands) if singles else None
     traps = next((option for option in options if option.tuning), None)
