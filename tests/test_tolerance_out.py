@@ -13,6 +13,8 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from trapdesk.design.design import with_value
+from trapdesk.design.parts import Sealing
 from trapdesk.faces import cli, hill_card, json_out, sheet, tolerance_json, tolerance_out, trial_run
 from trapdesk.services.advice import advise
 from trapdesk.services.beliefs import CAUSES, QUANTITIES
@@ -23,7 +25,8 @@ from trapdesk.services.trial_traps import STAGES
 from trapdesk.store import store
 
 ROOT = Path(__file__).resolve().parent.parent
-FIGURES = solve(store.preset("40-20-vee")[0], site_effects=True)
+DESIGN = with_value(store.preset("40-20-vee")[0], "antenna.trap.weather.sealing", Sealing.TAPE)
+FIGURES = solve(DESIGN, site_effects=True)
 ENSEMBLE = Ensemble(FIGURES)
 FOUND = tolerance(FIGURES, trials=1000, seed=9, ensemble=ENSEMBLE)
 ADVICE = advise(ENSEMBLE, trials=300)
@@ -162,8 +165,11 @@ def run(capsys, *arguments):
     return code, captured.out, captured.err
 
 
-def test_command(capsys):
-    code, out, err = run(capsys, "tolerance", "40-20-vee", "--trials", "1_000", "--seed", "9")
+def test_command(capsys, tmp_path):
+    text = (ROOT / "presets/40-20-vee.toml").read_text("utf-8")
+    taped = tmp_path / "taped.toml"
+    taped.write_text(f'{text}\n[antenna.trap.weather]\nsealing = "tape"\n', "utf-8")
+    code, out, err = run(capsys, "tolerance", str(taped), "--trials", "1_000", "--seed", "9")
     assert (code, err) == (0, "")
     # The figures of the verb know nothing of the site's effects, which change nothing here.
     assert out.splitlines()[2:9] == TEXT[2:9]

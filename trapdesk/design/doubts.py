@@ -119,13 +119,13 @@ class Doubts:
     tuning_meaning: Meaning = _meaning("trap reading", Meaning.TWO_SIGMA)
     sealing_least: float | None = _relative(
         "sealing, least",
-        "Closing a trap lowers it by at least this much. Unset: half of what the trap's weather says.",
+        "Closing a trap lowers it by at least this much. Unset: 0.4 times what the trap's weather says.",
         default=None,
         example="0.5 %",
     )
     sealing_most: float | None = _relative(
         "sealing, most",
-        "Closing a trap lowers it by at most this much. Unset: twice what the trap's weather says.",
+        "Closing a trap lowers it by at most this much. Unset: 1.6 times what the trap's weather says.",
         default=None,
         example="2 %",
     )

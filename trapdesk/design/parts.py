@@ -42,10 +42,10 @@ class Weather:
         "ratio",
         "sealing lowers by",
         "How much closing it lowers the trap's resonance. 0.5 to 2 %: common practice, no source.",
-        default=0.01,
+        default=0.0125,
         low=0.0,
         high=0.2,
-        example="1 %",
+        example="1.25 %",
     )
     rain_shift: float = quantity(
         "ratio",
@@ -92,6 +92,11 @@ class Weather:
         high=60.0,
         example="-10 degC",
     )
+
+    @property
+    def closing(self) -> float:
+        """How much closing lowers the resonance, a part of it; nothing of a trap that stays open."""
+        return 0.0 if self.sealing is Sealing.NONE else self.sealing_shift
 
 
 @dataclass(frozen=True, kw_only=True)

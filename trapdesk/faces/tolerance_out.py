@@ -24,8 +24,8 @@ STAGES: dict[str, str] = {
     "wet": "wet",
 }
 STAGE_HELP: dict[str, str] = {
-    "as_cut": "built and hung by the sheet, nothing measured, traps open",
-    "tuned": "traps brought to their frequency on the bench, then sealed",
+    "as_cut": "built and hung by the sheet, not yet tuned or sealed",
+    "tuned": "traps brought to their frequency on the bench, sealed if the design says so",
     "aimed": "wires folded or cut until resonance is at both aims",
     "wet": "the same antenna in the rain, at another temperature",
 }
@@ -51,7 +51,7 @@ CAUSE_NAMES: dict[str, str] = {
 STEPS: dict[str, str] = {
     "tighter_capacitor": "capacitors of 1 %",
     "match_traps": "measure coils and capacitors to 1 % and pair like with like",
-    "tune_traps": "tune both traps on the bench, then seal them",
+    "tune_traps": "tune both traps on the bench, before any sealing",
     "seal_then_tune": "seal both traps first, then tune them",
     "bring_to_aim": "bring the wires to the aims",
 }

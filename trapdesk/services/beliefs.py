@@ -16,7 +16,7 @@ from ..design.parts import GivenCoil, Solenoid
 from ..engine.ground import Ground
 from ..engine.sampling import normal_probability, normal_quantile, uniform
 from ..engine.soils import SOILS, UNKNOWN_SOIL_FROM, GroundKind
-from .capacitors import drift_of, tolerance_of
+from .capacitors import tolerance_of
 from .measured_trap import doubts_of
 from .trap import BuiltTrap
 
@@ -25,9 +25,7 @@ COIL, WOUND = 0.015, 0.005
 CAPACITOR = 0.05
 """Tolerance of a capacitor nobody says anything of. [1], common practice, no source"""
 Q = 0.15
-DRIFTS = (4e-5, 3e-5)
-"""Drift of coil and capacitor where the parts do not say. [1/K], common practice, no source"""
-SEALING, RAIN = (0.5, 2.0), (2 / 3, 4 / 3)
+SEALING, RAIN = (0.4, 1.6), (2 / 3, 4 / 3)
 """Least and most of what sealing and rain do, over what the trap's weather says. [1]"""
 SAG = {Shape.FLAT: 0.4, Shape.VEE: 0.2}
 """Most a side sags, by shape. [m], an estimate, no source"""
@@ -171,16 +169,13 @@ def _of_trap(design: Design, trap: BuiltTrap) -> Iterator[tuple[str, Belief]]:
         if name not in known:
             yield name, belief
     yield "tuning", about("tuning", doubts.tuning)
-    weather = part.weather
-    for name, shift, factors in (
-        ("sealing", weather.sealing_shift, SEALING),
-        ("rain", weather.rain_shift, RAIN),
-    ):
+    said = part.weather
+    for name, shift, factors in (("sealing", said.closing, SEALING), ("rain", said.rain_shift, RAIN)):
         ends = [getattr(doubts, f"{name}_{end}") for end in ("least", "most")]
         low, high = (f * shift if end is None else end for end, f in zip(ends, factors, strict=True))
         yield name, _between(min(low, high), high, **pair)
     for name in ("temperature", "weather"):
-        cold, hot = (doubts.temperature * (at - weather.built_at) for at in (weather.in_cold, weather.in_sun))
+        cold, hot = (doubts.temperature * (at - said.built_at) for at in (said.in_cold, said.in_sun))
         yield name, _between(cold, hot)
 
 
@@ -235,21 +230,6 @@ def _as_built(
         yield "capacitor", about("capacitor", size)
     reached = max(abs(factor - 1) for factor in trap.q_factors) or Q
     yield "q", about("q", min(reached, 0.9) if doubts.q is None else doubts.q)
-
-
-def drifts(design: Design, trap: BuiltTrap) -> tuple[float, float]:
-    """Return the drift of inductance and capacitance with temperature, in 1/K."""
-    doubts = design.doubts
-    of_coil, of_capacitor = DRIFTS
-    if trap.coil is not None and trap.coil.drift is not None:
-        of_coil = trap.coil.drift
-    if trap.capacitor is not None:
-        drift, _, known = drift_of(trap.capacitor, trap.resonance)
-        of_capacitor = drift if known else of_capacitor
-    return (
-        of_coil if doubts.coil_drift is None else doubts.coil_drift,
-        of_capacitor if doubts.capacitor_drift is None else doubts.capacitor_drift,
-    )
 
 
 def draw(varying: Mapping[str, Belief], seed: int, begin: int, count: int) -> dict[str, np.ndarray]:

@@ -187,11 +187,11 @@ class Ensemble:
         return draw(self.varying, seed, begin, count)
 
     def nominal(self, count: int = 1) -> dict[str, np.ndarray]:
-        """Return trials in which nothing varies: ranges at their middle where they are allowed for."""
+        """Return trials in which nothing varies; sealing does what is allowed for."""
         found = {}
         for name, belief in self.varying.items():
-            middle = sum(belief.ends) / 2 if name == "sealing" else 0.0
-            found[name] = np.full((count, 2) if belief.pair else count, middle)
+            value = self.of_traps.part.weather.closing if name == "sealing" else 0.0
+            found[name] = np.full((count, 2) if belief.pair else count, value)
         return found
 
     def places(

@@ -40,7 +40,6 @@ def trap_figures(design: Design, trap: BuiltTrap, bands: Iterable[BandFigures]) 
     each = trap.impedance(np.append(frequency, list(roles.values())))
     impedance = each[:TRAP_POINTS]
     weather = part.weather
-    sealed = weather.sealing_shift if weather.sealing is not Sealing.NONE else 0.0
     return TrapFigures(
         resonance=trap.resonance,
         inductance=trap.inductance,
@@ -54,8 +53,11 @@ def trap_figures(design: Design, trap: BuiltTrap, bands: Iterable[BandFigures]) 
         resonance_doubt=trap.resonance * trap.doubt / 2,
         inductance_doubt=_inductance_doubt(part, trap),
         q_range=(trap.q * trap.q_factors[0], trap.q * trap.q_factors[1]),
-        bring_to=trap.resonance / (1 - sealed),
-        parts=tuple(_part(fitted, trap.resonance) for fitted, _ in weights(trap.capacitor, trap.resonance)),
+        bring_to=trap.resonance / (1 - weather.closing),
+        # A cable is coil and capacitor at once: there is no capacitor to list.
+        parts=()
+        if trap.cable
+        else tuple(_part(fitted, trap.resonance) for fitted, _ in weights(trap.capacitor, trap.resonance)),
         tolerance=tolerance_of(trap.capacitor, trap.resonance),
         varies=varies_of(trap.capacitor, trap.resonance) * trap.fitted / trap.capacitance,
         adjustments=tuple(adjustments(part, trap)),

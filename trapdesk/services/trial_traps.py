@@ -14,9 +14,10 @@ from ..design.parts import CableCoil, Toroid
 from ..engine import resonator
 from ..engine.coil_formulas import sheet_inductance
 from ..engine.quotients import resonator_fraction
-from .beliefs import Belief, Draws, drifts
+from .beliefs import Belief, Draws
 from .measured_trap import holds_resonance
 from .trap import BuiltTrap
+from .weather import drifts
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -136,12 +137,9 @@ class TrialTraps:
             inductance = inductance * (trap.capacitance / capacitance)
         sealing = of("sealing")
         if stage.tuned:
-            belief = self.varying.get("sealing")
-            allowed = 1.0
-            if belief is not None and stage.sealed and not stage.sealed_first:
-                # Who tunes before sealing tunes as much too high as sealing takes in the middle.
-                allowed = 1 - sum(belief.ends) / 2
-            wanted = (1 + of("tuning")) / allowed
+            # Who tunes before sealing tunes as much too high as the sheet says that sealing takes.
+            closes = "sealing" in self.varying and stage.sealed and not stage.sealed_first
+            wanted = (1 + of("tuning")) / (1 - part.weather.closing * closes)
             inductance = trap.capacitance / capacitance / wanted**2
         if stage.sealed and not stage.sealed_first:
             capacitance = capacitance / (1 - sealing) ** 2

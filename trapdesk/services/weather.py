@@ -9,7 +9,6 @@ import numpy as np
 from ..design.coil_kinds import Solenoid
 from ..design.design import Design
 from ..design.former_kinds import FORMER_MATERIALS
-from ..design.parts import Sealing
 from ..engine.coils import quick_exponents, temperature_drift
 from ..engine.heat import drifted
 from ..engine.metals import MATERIALS
@@ -21,15 +20,28 @@ from .response import MARGIN, swr
 from .trap import BuiltTrap
 
 POINTS = 121
+DRIFTS = (4e-5, 3e-5)
+"""Drift of coil and capacitor where the parts do not say. [1/K], common practice, no source"""
 
 
 def drifts(design: Design, trap: BuiltTrap) -> tuple[float, float]:
-    """Return the temperature coefficients of inductance and of all capacitance, unknown ones as 0, in 1/K."""
-    if trap.cable is not None:
-        # The shield follows the former; of the dielectric nothing is listed.
-        return FORMER_MATERIALS[design.antenna.trap.coil.former_material].expansion, 0.0
+    """Return the drift of inductance and of all capacitance, in 1/K: as set, or that of the parts."""
+    doubts = design.doubts
+    of_coil, of_capacitance = _of_cable(design) if trap.cable is not None else _of_parts(design, trap)
+    return (
+        of_coil if doubts.coil_drift is None else doubts.coil_drift,
+        of_capacitance if doubts.capacitor_drift is None else doubts.capacitor_drift,
+    )
+
+
+def _of_cable(design: Design) -> tuple[float, float]:
+    # The shield follows the former; of the dielectric nothing is listed.
+    return FORMER_MATERIALS[design.antenna.trap.coil.former_material].expansion, 0.0
+
+
+def _of_parts(design: Design, trap: BuiltTrap) -> tuple[float, float]:
     coil, part = trap.coil, design.antenna.trap.coil
-    of_coil = coil.drift or 0.0
+    of_coil = DRIFTS[0] if coil.drift is None else coil.drift
     if isinstance(part, Solenoid) and coil.winding is not None:
         material = MATERIALS[part.material]
         of_coil = float(
@@ -43,15 +55,15 @@ def drifts(design: Design, trap: BuiltTrap) -> tuple[float, float]:
                 quick_exponents(coil.winding),
             )
         )
-    share = trap.fitted / trap.capacitance
-    return of_coil, drift_of(trap.capacitor, trap.resonance)[0] * share
+    of_fitted, _, known = drift_of(trap.capacitor, trap.resonance)
+    return of_coil, (of_fitted if known else DRIFTS[1]) * trap.fitted / trap.capacitance
 
 
 def _steps(design: Design, trap: BuiltTrap, heat: Heat | None) -> Iterator[tuple[str, float]]:
     """Yield what happens and by which part of itself the resonance moves."""
     weather = design.antenna.trap.weather
-    if weather.sealing is not Sealing.NONE:
-        yield "sealing", -weather.sealing_shift
+    if weather.closing:
+        yield "sealing", -weather.closing
     yield "rain", -weather.rain_shift
     yield "ice", -weather.ice_shift
     of_coil, of_capacitor = drifts(design, trap)
