@@ -78,8 +78,9 @@ def even(size: float) -> float:
 
 def lines(figures: Figures, ensemble: Tolerance | None = None) -> list[str]:
     """Return the card as lines, fewer than fill a small screen; with an ensemble, how much wire to leave."""
-    head = f"HILL CARD: {title(figures.design, 40)}"
-    found = [f"{head:<{WIDTH - len(words.ESTIMATE)}}{words.ESTIMATE}", *_marks(figures)]
+    head = f"HILL CARD: {title(figures.design, 36)}"
+    basis = words.basis(figures.design)
+    found = [f"{head:<{WIDTH - len(basis) - 1}} {basis}"[:WIDTH], *_marks(figures)]
     found += [] if ensemble is None else folded("", tolerance_out.card_line(ensemble))
     all_cards = cards(figures)
     for number, card in enumerate(all_cards, start=1):

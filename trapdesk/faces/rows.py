@@ -167,7 +167,7 @@ def _input(figures: Figures, key: str, group: str = "site", **more: Any) -> Row:
 def _site(figures: Figures) -> Iterator[Row]:
     design, lengths = figures.design, figures.lengths
     yield Row(key="title", group="site", label="design", given=visible(design.title, 40))
-    yield Row(key="basis", group="site", label="these figures are", value=words.ESTIMATE)
+    yield Row(key="basis", group="site", label="these figures are", value=words.basis(figures.design))
     yield _input(figures, "site.shape")
     yield _input(figures, "site.height")
     if design.site.shape is Shape.VEE:
@@ -372,7 +372,7 @@ def summary(figures: Figures) -> tuple[Row, ...]:
         return Row(key=key, group="summary", label=label, value=value, finding=finding)
 
     found = [
-        row("title", "", f"{visible(figures.design.title, 40)}: {words.ESTIMATE}"),
+        row("title", "", f"{visible(figures.design.title, 40)}: {words.basis(figures.design)}"),
         row("site", "site", site_line(figures)),
         row("station", "radio", station_line(figures.design)),
     ]

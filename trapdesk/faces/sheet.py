@@ -65,7 +65,7 @@ def document(figures: Figures, ensemble: Tolerance | None = None) -> dict[str, A
 
 def _head(figures: Figures) -> Iterator[str]:
     yield f"BUILD SHEET: {title(figures.design)}"
-    yield from folded("", f"This is {words.ESTIMATE}. Leave the wires long, measure, then cut.")
+    yield from folded("", f"This is {words.basis(figures.design)}. Leave the wires long, measure, then cut.")
     yield ""
     yield from folded("  site   ", site_line(figures))
     yield from folded("  radio  ", station_line(figures.design))

@@ -16,9 +16,18 @@ if TYPE_CHECKING:
     from ..services.figures import Finding
 
 ESTIMATE = "an estimate, not measured"
+MEASURED = "an estimate, traps as measured"
 
 LEVELS: dict[Level, str] = {Level.FINE: "fine", Level.WATCH: "watch", Level.STOP: "STOP"}
 SEVERITY = (Level.STOP, Level.WATCH, Level.FINE)
+
+
+def basis(design: Design) -> str:
+    """Return what the figures of a design rest on, in a few words."""
+    trap = design.antenna.trap
+    measured = trap.measured if trap is not None else None
+    values = (measured.resonance, measured.inductance, measured.capacitance, measured.q) if measured else ()
+    return MEASURED if any(value is not None for value in values) else ESTIMATE
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -52,7 +52,7 @@ class Heading(Lines):
             star += " (no journal)"
         about = _summary(figures) if figures is not None else {}
         room = width - len(state) - 1 if state else width
-        basis = "" if session.dimmed or session.figures is None else f": {words.ESTIMATE}"
+        basis = f": {words.basis(figures.design)}" if figures is not None and not session.dimmed else ""
         if width < 2 * len(basis):
             basis = basis.partition(",")[0]
         title = visible(session.design.title, max(8, room - len(basis) - len(star)))
