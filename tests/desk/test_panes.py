@@ -326,7 +326,7 @@ async def test_a_reading_that_cannot_be_read_is_refused_and_can_be_mended():
             assert not desk.foot.asking
 
 
-HUNG = "upper.dip=14.02MHz lower.dip=7.02MHz"
+HUNG = "upper.dip=14.07MHz lower.dip=7.05MHz"
 
 
 async def test_the_next_move_is_that_of_the_verb_and_is_kept():
