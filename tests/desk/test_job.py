@@ -63,16 +63,20 @@ async def test_the_whole_job_from_an_empty_design_by_keyboard_alone(tmp_path, mo
         assert "next: MOVE" in text(desk)
         # What to do stands in sight, above what it rests on.
         assert any(line.startswith("MOVE ") for line in screen(desk)[4:18])
-        await person.keys_of("a", "p", " 80-40-flat", "enter")
-        assert "HANG IT" in desk.query_one("#answer").plain() or "MOVE" in desk.query_one("#answer").plain()
-        await person.keys_of("w")
+        await person.keys_of("a")
+        assert "next: hoist it as it was moved" in text(desk)
+        await person.keys_of("p", " 80-40-flat", "enter")
+        assert "nothing read yet" in desk.query_one("#answer").plain()
+        await person.keys_of("a", "w")
         assert person.keys <= MOST_KEYS, person.keys
         assert not session.unsaved
         saved = store.load("40-20.toml")
-    assert saved.history.steps[0].readings == "upper.dip=14.08MHz lower.dip=7.03MHz"
+    stay, *_ = saved.history.stays
+    assert stay.steps[0].readings == "upper.dip=14.08MHz lower.dip=7.03MHz"
+    assert (stay.site.shape, stay.site.height) == (Shape.VEE, 8.0)
+    assert saved.site == store.preset("80-40-flat")[0].site
     assert saved.station.line.length == 20.0
     assert saved.station.power == 50.0
-    assert (saved.site.shape, saved.site.height) == (Shape.VEE, 8.0)
     assert (tmp_path / "paper.txt").read_text().startswith("BUILD SHEET: 40/20 m, new")
     assert (tmp_path / "hill.txt").read_text().startswith("HILL CARD: 40/20 m, new")
 
@@ -133,14 +137,35 @@ async def test_nothing_found_of_another_design_is_shown():
         await settled(desk, pilot)
 
 
-async def test_a_new_site_says_that_kept_readings_are_of_the_old():
+async def test_another_site_is_asked_about_once_readings_were_kept():
     async with opened() as (desk, pilot):
-        history = History(steps=(Step(readings="upper.dip=14.1MHz"),))
+        history = History(steps=(Step(readings="upper.dip=14.1MHz", inner=-0.05),))
         desk.session.take(replace(desk.session.design, history=history))
         desk.solve()
         await settled(desk, pilot)
+        before, wires = desk.session.design, desk.session.figures.lengths
         assert "next: hoist it as it was moved" in text(desk)
         await go_to(desk, pilot, HEIGHT)
-        await typed(desk, pilot, "9 m", "enter")
-        assert "at the old site" in " ".join(screen(desk)[-3:])
+        for key, height in (("escape", 10.0), ("c", 9.0), ("n", 9.0)):
+            await typed(desk, pilot, "9 m", "enter")
+            assert "readings were kept at this site" in text(desk)
+            await pressed(desk, pilot, key)
+            assert desk.session.design.site.height == height
+            assert (desk.session.design.history == history) is (key != "n")
+            moved = desk.session.design
+            if moved != before:
+                await pressed(desk, pilot, "u")
+                await settled(desk, pilot)
+                assert desk.session.design == before
+        await pressed(desk, pilot, "U")
+        assert moved.history.steps == ()
+        assert moved.history.stays[0].steps == history.steps
+        assert moved.history.stays[0].site == before.site
+        # The wires stay as they were cut, wherever they hang.
+        assert moved.antenna.lengths.inner == pytest.approx(wires.inner, abs=1e-4)
+        assert moved.antenna.lengths.end == pytest.approx(wires.end, abs=1e-4)
+        await settled(desk, pilot)
+        assert not desk.session.no_answer
+        await typed(desk, pilot, "8 m", "enter")
+        assert desk.session.design.site.height == 8.0
         await settled(desk, pilot)

@@ -14,6 +14,7 @@ from .. import form
 from ..form import DRAWERS, FormRow
 from ..lines import Line, Lines, padded
 from ..lists import list_of, without
+from ..moving import moved, reads_here
 from ..session import Session
 from ..titles import in_sight
 from ..typed import Typed
@@ -230,11 +231,32 @@ class DrawersPane(Lines):
         self._tell("taken out of its list; u puts it back")
         self.post_message(self.Changed())
 
-    def _set(self, row: FormRow, value: object) -> None:
+    def _ask_site(self, row: FormRow, value: object) -> None:
+        """Ask what a changed site means for readings that were kept; anything else leaves all as it was."""
+
+        def decided(key: str) -> None:
+            self.typed = None
+            if key in ("n", "c"):
+                self._set(row, value, new_site=key == "n")
+            else:
+                self.repaint()
+                self._tell("as it was")
+
+        question = "readings were kept at this site: n it hangs at a new one, c only corrects, Esc neither"
+        self.app.ask(question, decided)  # type: ignore[attr-defined] - the desk is the app
+
+    def _set(self, row: FormRow, value: object, new_site: bool | None = None) -> None:
         """Set a row; what a rule forbids is told, and the old value stays."""
         before = row.text
+        session = self.session
+        if new_site is None and row.key.startswith("site.") and reads_here(session.design):
+            self._ask_site(row, value)
+            return
         try:
-            changed = self.session.set(row, value)
+            changed = form.put(session.design, row.key, value, session.figures, session.past())
+            if new_site and changed != session.design:
+                changed = moved(session.design, changed, session.figures)
+            changed = session.take(changed)
         except BadInput as refusal:
             self._refuse(row, refusal)
             return
@@ -247,9 +269,6 @@ class DrawersPane(Lines):
         said = (
             f"{row.known.label}: {now}, was {before}" if changed else f"{row.known.label}: {now}, as before"
         )
-        history = self.session.design.history
-        if changed and row.key.startswith("site.") and history is not None and history.steps:
-            said += "; the readings kept were taken at the old site (Parts; or ask by p in N)"
         self._tell(said)
         if changed:
             self.post_message(self.Changed())

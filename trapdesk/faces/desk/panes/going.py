@@ -97,7 +97,9 @@ def next_press(key: str, acting: Acting) -> bool:
     elif key == "backspace":
         _edit(acting, _without_last, "the last readings and their move are taken out; u puts them back")
     elif key == "a":
-        _edit(acting, _kept, "kept: these readings, and this move as made; d says otherwise, u undoes it")
+        what = ["the new site"] * bool(aside.other) + ["these readings"] * bool(aside.hung)
+        words = f"kept: {', '.join(what)}, and this move as made; d says otherwise, u undoes it"
+        _edit(acting, _kept, words)
     elif key == "d":
         acting.ask("what was really moved", lambda given: _moved(given, acting), "inner=")
     elif key == "p":
@@ -154,11 +156,9 @@ def _kept(session: Session) -> Design:
 
     aside = session.aside
     found = aside.found(NEXT.name)
-    if found is None or not found[0] or not aside.fresh(NEXT):
+    if found is None or not (found[0] or aside.other) or not aside.fresh(NEXT):
         raise BadInput(Fault("", "there_are_no_readings_to_keep_yet", help="Enter takes one"))
-    if aside.other:
-        raise BadInput(Fault("", "a_history_belongs_to_one_site", help="p takes the other site away"))
-    return next_run.with_step(session.design, list(aside.hung), found[1])
+    return next_run.with_step(session.design, list(aside.hung), found[1], at=found[1].figures.design.site)
 
 
 def _edit(acting: Acting, change: Callable[[Session], Design], words: str) -> None:
@@ -171,7 +171,7 @@ def _edit(acting: Acting, change: Callable[[Session], Design], words: str) -> No
     except TrapdeskError as error:
         acting.say(reason(error), refused=True)
         return
-    session.aside.hung = ()
+    session.aside.hung, session.aside.other = (), ""
     acting.say(words)
     if changed:
         acting.changed()
