@@ -44,8 +44,11 @@ LOOSE = 0.08
 """How far the place of a break may be from those solved, one sigma, as a share of the end wire. [1]"""
 OFF_BY = (1.0, -1.0, 0.3048, -0.3048)
 """By how much both wires of a kind may be off where a unit was slipped: a metre, a foot. [m]"""
-SPREAD = 1.5
-"""How many times as far off as believed a sound antenna may be: beliefs are estimates, faults are not. [1]"""
+SPREAD = 2.0
+"""How many times as far off as believed a sound antenna may be. [1], a choice of ours
+
+Beliefs are estimates: who is sent to open a sound trap loses more than who folds wire for a poor one.
+"""
 NAMED = 20.0
 """How many times likelier the readings must be of a fault than of a sound antenna for it to be named."""
 BESIDE = 20.0
