@@ -16,7 +16,7 @@ REGION_1 = {
 
 
 def test_presets_are_these():
-    assert store.presets() == ["20-10-flat", "40-20-vee", "80-40-flat"]
+    assert store.presets() == ["20-10-flat", "40-20-vee", "80-40-cable", "80-40-flat"]
     assert store.FIRST_PRESET == "40-20-vee"
 
 
@@ -36,7 +36,8 @@ def test_preset_names_its_bands_truly(name):
     for band in (upper, lower):
         assert (band.low, band.high) == REGION_1[band.name]
         assert band.low < band.wanted_low < band.wanted_high < band.high
-    assert design.site.shape == name[6:]
+    # What a name ends in is the shape, unless it is what the traps are wound of.
+    assert name[6:] in (design.site.shape, design.antenna.trap.coil.kind)
     assert (design.antenna.lengths.inner, design.antenna.lengths.end) == (SOLVE, SOLVE)
 
 
@@ -50,3 +51,11 @@ def test_preset_fits_a_screen(name):
     _, text = store.preset(name)
     assert text.isascii()
     assert max(len(line) for line in text.splitlines()) <= 110
+
+
+def test_one_preset_shows_cable_line_choke_and_tuner():
+    design, _ = store.preset("80-40-cable")
+    station = design.station
+    assert design.antenna.trap.coil.kind == "cable" and design.antenna.trap.capacitor is None
+    assert station.line.type == "RG-58/U" and station.choke is not None
+    assert station.tuner.network == "t-clc"
