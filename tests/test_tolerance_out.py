@@ -236,3 +236,20 @@ def test_a_long_run_tells_where_it_is_and_stops_on_the_first_interrupt():
     assert "of 2000000 trials; Ctrl-C stops and keeps them" in first and "Traceback" not in err
     document = json.loads(out)
     assert running.returncode == 0 and document["stopped"] and 0 < document["trials"] < 2_000_000
+
+
+def test_without_a_trap_none_is_tuned_and_one_band_is_not_both():
+    plain = store.preset("40-20-vee")[0]
+    lengths = replace(plain.antenna.lengths, end=None)
+    design = replace(
+        plain,
+        bands=replace(plain.bands, upper=None),
+        antenna=replace(plain.antenna, trap=None, lengths=lengths),
+    )
+    figures = solve(design)
+    found = tolerance(figures, trials=200)
+    lost = replace(found, stages={n: replace(s, unreached=0.1) for n, s in found.stages.items()})
+    for told in (tolerance_out.lines(lost), sheet.text(figures, found).splitlines()):
+        assert not re.search(r"tuned|both bands|both aims", " ".join(told))
+    assert "as cut" in "\n".join(tolerance_out.lines(lost))
+    assert "brought the band to its aim" in " ".join(tolerance_out.lines(lost))

@@ -13,7 +13,7 @@ from ..errors import visible
 from ..services.advice import Advice, Change, ForYield, Step
 from ..services.beliefs import CAUSES, Belief
 from ..services.causes import Shares
-from ..services.tolerance import Allowance, Scatter, Tolerance, Yield
+from ..services.tolerance import Allowance, Scatter, StageScatter, Tolerance, Yield
 from .layout import WIDTH, folded
 from .shown import LARGEST_SWR, about, centimetres, measured, megahertz, swr
 
@@ -111,6 +111,13 @@ def _end(value: float, digits: int, outward: Callable[[float], int]) -> str:
     return f"{min(outward(round(value / step, 6)) * step, 100.0 - step):.{digits}f}"
 
 
+def told_stages(found: Tolerance) -> Iterator[tuple[str, StageScatter]]:
+    """Yield the stages there are something to tell of: without traps none is tuned."""
+    for name, stage in found.stages.items():
+        if name != "tuned" or found.design.antenna.trap is not None:
+            yield name, stage
+
+
 def trials_line(found: Tolerance) -> str:
     """Return how many trials, and by which seed."""
     told = f"{found.trials} trials, seed {found.seed}"
@@ -137,8 +144,9 @@ def card_line(found: Tolerance) -> str:
     leave = ", ".join(
         f"{wire_name(one, alone)} {centimetres(one.length)}" for one in found.allowances.values()
     )
-    names = ("as_cut", "tuned", "aimed")
-    told = ", ".join(f"{STAGES[name]} {percent(found.stages[name].within.share)}" for name in names)
+    told = ", ".join(
+        f"{STAGES[name]} {percent(stage.within.share)}" for name, stage in told_stages(found) if name != "wet"
+    )
     return f"Leave {leave}. Chance to hold the SWR: {told}."
 
 
@@ -156,7 +164,7 @@ def lines(found: Tolerance, advice: Advice | None = None, chosen: ForYield | Non
 
 def summary(found: Tolerance) -> str:
     """Return the yield of every stage in one line, for where there is no more room."""
-    parts = [f"{STAGES[name]} {percent(stage.within.share)}" for name, stage in found.stages.items()]
+    parts = [f"{STAGES[name]} {percent(stage.within.share)}" for name, stage in told_stages(found)]
     return f"within the SWR limit: {', '.join(parts)}"
 
 
@@ -169,7 +177,7 @@ def yields(found: Tolerance) -> list[str]:
     names = "".join(f"{visible(band.name, 12):>21}" for band in bands.values())
     all_bands = "" if len(bands) == 1 else f"{'both':>21}"
     out += [f"  {'':<14}{all_bands}{names}"]
-    for name, stage in found.stages.items():
+    for name, stage in told_stages(found):
         shares = [] if len(bands) == 1 else [stage.within]
         shares += [band.within for band in stage.bands.values()]
         # They are so many of 100: without the sign there is room between them.
@@ -179,22 +187,29 @@ def yields(found: Tolerance) -> list[str]:
     if not found.varying:
         told = "Nothing varies: all antennas are the computed one, whatever the brackets say."
     out += folded("  ", told)
-    for name, text in STAGE_HELP.items():
-        out += folded(f"  {STAGES[name] + ':':<16} ", text)
+    for name, _ in told_stages(found):
+        out += folded(f"  {STAGES[name] + ':':<16} ", _stage_help(found, name))
     lost = {name: stage.unreached for name, stage in found.stages.items() if stage.unreached > 0}
     if lost:
         share = percent(max(lost.values()))
-        out += folded(
-            "  ", f"In {share} no wire length near the computed ones brought both bands to their aims."
-        )
+        what = "the band to its aim" if len(bands) == 1 else "both bands to their aims"
+        out += folded("  ", f"In {share} no wire length near the computed ones brought {what}.")
     return out
+
+
+def _stage_help(found: Tolerance, name: str) -> str:
+    """Return what a stage is, in words that fit the bands and the traps there are."""
+    text = STAGE_HELP[name]
+    if found.design.bands.upper is None:
+        text = text.replace("both aims", "the aim")
+    return text if found.design.antenna.trap is not None else text.replace(", not yet tuned or sealed", "")
 
 
 def scatters(found: Tolerance) -> list[str]:
     """Return the scatter of every result, band by band, stage by stage, and where the dips and SWR lie."""
     out = ["What 5 to 95 of 100 antennas do; in brackets every doubt at its end at once"]
     for role in next(iter(found.stages.values())).bands:
-        stages = {name: stage.bands[role] for name, stage in found.stages.items()}
+        stages = {name: stage.bands[role] for name, stage in told_stages(found)}
         first = next(iter(stages.values()))
         out += [f"{visible(first.name, 12)}"]
         out += [f"  {'':<15}{'dip, MHz':>27}{'SWR at the aim':>17}{'worst SWR':>18}"]
@@ -224,7 +239,7 @@ def scatters(found: Tolerance) -> list[str]:
 
 def histograms(found: Tolerance, role: str, columns: int = STRIP) -> list[str]:
     """Return where dips and worst SWR of a band lie at every stage: denser is more."""
-    stages = {name: stage.bands[role] for name, stage in found.stages.items()}
+    stages = {name: stage.bands[role] for name, stage in told_stages(found)}
     band = dict(found.design.bands.items())[role]
     out = ["  where the dips lie: [ ] the wanted part, ^ the aim"]
     low, high = _reach([b.results["dip"] for b in stages.values()])
