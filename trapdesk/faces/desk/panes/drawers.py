@@ -126,6 +126,10 @@ class DrawersPane(Lines):
         # A long name takes of the room that a short value leaves.
         longer = max(label, min(len(row.name), self.room - 3 - self._spare - max(4, len(row.text))))
         width, label = width - (longer - label), longer
+        # And a long value of what a short name leaves.
+        short = max(len(row.name), min(label, label + width - len(row.text) - len(" found") * row.found))
+        if not (here and self.typed is not None):
+            width, label = width + (label - short), short
         name = padded(row.name, label)
         if here and self.typed is not None:
             return [(front, "cursor"), (f" {name} ", "head"), *self.typed.pieces(width)]

@@ -135,7 +135,9 @@ class Foot(Lines):
         """Show worst finding, yield, next move, note and keys in as many lines as there are."""
         width, height = self.size.width, self.size.height
         row = None if self.offered else row
-        note = self._note(session, row, width, 2 if height > 3 else 1)
+        # A question that a key answers is told whole: what the keys do stands at its end.
+        most = height - 1 if self.asking and self._typed is None else 2 if height > 3 else 1
+        note = self._note(session, row, width, most)
         room = height - 1 - len(note)
         chances = self._chances(session, width) if room >= 3 else []
         # The worst finding always has a line; what is left goes to its cure, then to the next move.
