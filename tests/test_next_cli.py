@@ -166,3 +166,13 @@ def test_sweep_of_another_band(call, design, tmp_path):
     name.write_text("# MHz S RI R 50\n" + "".join(f"{21 + k / 50} 0.3 0.1\n" for k in range(30)), "utf-8")
     code, _, err = call("next", str(design), f"upper.sweep={name}")
     assert code == 2 and "hardly of this band" in err
+
+
+def test_many_readings_are_kept_in_one_step(call, design):
+    """A meter read all over both bands is one lowering, however long the line it takes to type."""
+    texts = [f"lower.swr@7.0{k}0MHz=1..2" for k in range(9)]
+    texts += [f"upper.swr@14.{k}0MHz=1.2..2.5" for k in range(4)]
+    assert call("next", str(design), *texts, "--keep")[0] == 0
+    assert store.find(str(design)).design.history.steps[-1].readings == " ".join(texts)
+    code, out, _ = call("next", str(design), "--json")
+    assert code == 0 and len(json.loads(out)["readings"]) == len(texts)

@@ -26,7 +26,7 @@ class Declared:
 
     `dimension` names a unit family, or is `text`, `print`, `choice`, `part`, or `parts` for a list of them.
     Limits are SI and include their ends, except `above`, which excludes its end. `choices` are the words a
-    choice may be, or a registry of kinds.
+    choice may be, or a registry of kinds; `longest` is how many characters a text may have.
     """
 
     label: str
@@ -39,6 +39,7 @@ class Declared:
     optional: bool = False
     choices: dict[str, Any] | tuple[str, ...] = ()
     alias: str = ""
+    longest: int = 200
     example: str = ""
 
 
@@ -62,9 +63,9 @@ def choice(choices: Any, label: str, help: str, *, default: Any = MISSING, optio
     return _declare(default, dimension="choice", label=label, help=help, choices=words, optional=optional)
 
 
-def text(label: str, help: str, *, default: Any = MISSING) -> Any:
-    """Declare free text."""
-    return _declare(default, dimension="text", label=label, help=help)
+def text(label: str, help: str, *, default: Any = MISSING, longest: int = 200) -> Any:
+    """Declare free text of at most so many characters."""
+    return _declare(default, dimension="text", label=label, help=help, longest=longest)
 
 
 def part(label: str, help: str, *, default: Any = MISSING, kinds: Any = (), optional: bool = False) -> Any:

@@ -40,7 +40,7 @@ class Step:
     """One lowering: what was read before it, and what was done to the wires of both sides."""
 
     readings: str = text(
-        "readings", "What was read, as it is typed, with a blank between readings.", default=""
+        "readings", "What was read, as it is typed, with a blank between readings.", default="", longest=4000
     )
     inner: float = _moved("inner")
     end: float = _moved("end")

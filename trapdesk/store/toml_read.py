@@ -253,8 +253,8 @@ class _Reader:
         if not isinstance(given, str):
             help = f"text stands in quotes: {example(where)}"
             self.fault(where, f"{_what(given)}_stands_where_text_is_wanted", help=help)
-        elif len(given) > LONGEST_TEXT:
-            help = f"at most {LONGEST_TEXT} characters, not {len(given)}"
+        elif len(given) > spec.longest:
+            help = f"at most {spec.longest} characters, not {len(given)}"
             self.fault(where, "too_long", help=help)
         elif bad := next((c for c in given if unicodedata.category(c) in ("Cc", "Cs", "Zl", "Zp")), ""):
             self.fault(where, "holds_a_control_character", bad, help="letters, digits and signs on one line")
