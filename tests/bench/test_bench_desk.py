@@ -171,6 +171,8 @@ def echoes(desk, count) -> list[float]:
     """Return how long each of so many characters, typed into a line, took to be on the screen."""
     desk.type("w")
     desk.until("write to ")
+    desk.type("\x15")  # what is suggested goes
+    desk.until(lambda text: not typed_text(desk))
     taken = []
     for number in range(count):
         wanted = str(number % 10)

@@ -46,6 +46,7 @@ def serving(command, env, over):
         else:  # a server hangs up on what ran over a link that is gone
             child.send_signal(signal.SIGHUP)
             await ended
+        await process.wait_closed()  # what was passed on is closed too
         over.set()
 
     return serve
