@@ -95,6 +95,7 @@ class Aside:
         self._idle = asyncio.Event()
         self._app: App | None = None
         self._changed: Callable[[], None] = lambda: None
+        self._moved_on: Callable[[], None] = lambda: None
         self.box = ""
         self.place = 0
         self.readings: tuple[str, ...] = ()
@@ -138,9 +139,15 @@ class Aside:
     def _token(self, job: Job) -> Hashable:
         return (self._session.generation, job.asked(self))
 
-    def want(self, app: App, jobs: Iterable[Job], changed: Callable[[], None]) -> None:
-        """Have these jobs done for the present design, the first first; `changed` is called at each find."""
-        self._app, self._wanted, self._changed = app, tuple(jobs), changed
+    def want(
+        self, app: App, jobs: Iterable[Job], changed: Callable[[], None], moved_on: Callable[[], None]
+    ) -> None:
+        """Have these jobs done for the present design, the first first.
+
+        `changed` is called at each find, `moved_on` when one tells how far it is.
+        """
+        self._app, self._wanted = app, tuple(jobs)
+        self._changed, self._moved_on = changed, moved_on
         self._next()
 
     def stop(self, name: str) -> None:
@@ -201,6 +208,7 @@ class Aside:
         """Run a job in a thread and hand over what it finds."""
         from .solving import reason
 
+        give_way()
         sys.setswitchinterval(SWITCHING)
         refusal = ""
         try:
@@ -223,7 +231,7 @@ class Aside:
     def _told(self, name: str, text: str) -> None:
         if self._progress.get(name) != text:
             self._progress[name] = text
-            self._changed()
+            self._moved_on()
 
     def _take(self, name: str, token: Hashable, value: Any) -> None:
         """Take in what was found; what is for an older design is dropped."""

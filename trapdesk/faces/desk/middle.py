@@ -10,7 +10,9 @@ from textual.events import Key
 
 from ...errors import TrapdeskError, visible
 from .arrange import ANSWER, CHANCES, FINDINGS, HELP, INPUTS, LETTERS, Arrangement, arrangement, names
+from .aside import Job
 from .filing import Asker
+from .lines import Line
 from .panes.drawers import DrawersPane
 from .panes.frame import Foot
 from .panes.jobs import TOLERANCE
@@ -106,13 +108,13 @@ class Middle(Container):
         drawers.repaint()
         for pane in self.query(ViewPane):
             pane.edge = "" if arranged.thin or self._covering else self._drawn.upright
-        self.session.aside.want(self.app, dict.fromkeys((TOLERANCE, *self.shown.jobs)), self._found)
+        self.session.aside.want(self.app, self._jobs, self._found, self._moved_on)
         given = (self.session, drawers.row, self._drawn)
         if arranged.tall and not self._broad:
             self._pane("answer").update_view(*given, ANSWER, [(ANSWER.name, "picked")])
         if not self._inputs:
             view, turning = HELP if helping else self.shown, self._turning
-            turning.update_view(*given, view, names(arranged.cycle, view, turning.room, self._busy()))
+            turning.update_view(*given, view, self._names(view))
         if self._beside:
             view = HELP if self.helping else FINDINGS
             self._pane("side").update_view(*given, view, [(view.name, "picked")])
@@ -122,6 +124,24 @@ class Middle(Container):
         foot.offered = self.shown.keys or VIEWING if self.held and not helping else ()
         foot.about = self.shown.about
         foot.plotting = self.plotting
+
+    def _names(self, view: View) -> Line:
+        return names(self.arranged.cycle, view, self._turning.room, self._busy())
+
+    @property
+    def _jobs(self) -> tuple[Job, ...]:
+        """What is to be worked out for what is in sight."""
+        return tuple(dict.fromkeys((TOLERANCE, *self.shown.jobs)))
+
+    def _moved_on(self) -> None:
+        """Tell how far the work is: where there is something to see already, beside the name alone."""
+        pane, aside = self._turning, self.session.aside
+        there = all(aside.found(job.name) is not None for job in self._jobs)
+        # A list to pick from says so below its rows too.
+        if there and pane.view is self.shown and self.shown.picked is None:
+            pane.rename(self._names(self.shown))
+        else:
+            self._found()
 
     def _busy(self) -> str:
         """Return how far the work for the view is."""

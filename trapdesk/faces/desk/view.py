@@ -134,6 +134,10 @@ class ViewPane(Lines):
                 return
             left += cell_len(text)
 
+    def rename(self, names: Line) -> None:
+        """Show another line of names above the same lines."""
+        self.show([names, *self._lines[1:]], stale=self.stale)
+
     def slide(self, columns: int) -> None:
         """Go past columns of a text too wide for the room, or back."""
         self.left = max(0, min(self.left + columns, 80 - self.room))
