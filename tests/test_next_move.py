@@ -12,7 +12,7 @@ import numpy as np
 import pytest
 
 from tests.broken_antenna import readings_of
-from tests.closed_loop import ensemble_of, honest, study, table
+from tests.closed_loop import PRESETS, ensemble_of, honest, study, table
 from tests.hung_antenna import WIDER, Hung
 from trapdesk.design.design import with_value
 from trapdesk.design.reading_kinds import Doubt, Interval, Reading
@@ -27,7 +27,10 @@ from trapdesk.services.updating import latents_of, learned, stage_of, update
 from trapdesk.store import store
 
 LONG = bool(os.environ.get("TRAPDESK_LONG"))
-ALL, FAULTY = (200, 50) if LONG else (6, 2)
+ALL, FAULTY = (200, 50) if LONG else (5, 2)
+PLACES = PRESETS if LONG else PRESETS[:1]
+SUBTLE = ("end_wire_broken", "unequal_traps", "water_one", "water_both")
+"""Faults so small, some of them, that a sound antenna may look like that."""
 
 
 @pytest.fixture(scope="module")
@@ -187,26 +190,29 @@ def _history(readings):
 # Closed loops
 
 
-def test_stated_intervals_hold_the_truth(vee):
-    number = ALL if LONG else 16
+@pytest.mark.parametrize("name", PLACES)
+def test_stated_intervals_hold_the_truth(name):
+    number = ALL if LONG else 8
+    ensemble = ensemble_of(name)
     for read in ("dips", "meter"):
-        shares = honest(vee, number, 5, read)
+        shares = honest(ensemble, number, 5, read)
         if LONG:
-            print(f"\n90 % intervals, {number} antennas, {read}: {shares}")
+            print(f"\n90 % intervals, {name}, {number} antennas, {read}: {shares}")
         # 84 to 95 % of 200; of the few in a short run all quantities together, within three sampling errors.
         if LONG:
             assert all(0.84 <= share <= 0.95 for share in shares.values()), shares
-        assert 0.80 <= np.mean(list(shares.values())) <= 0.97
+        assert 0.75 <= np.mean(list(shares.values())) <= 1.0
 
 
+@pytest.mark.parametrize("name", PLACES)
 @pytest.mark.parametrize("read", ["dips", "meter"])
-def test_following_the_advice_in_a_wider_world(read):
-    stories = study("40-20-vee", ALL, 7, world=WIDER, read=read)
+def test_following_the_advice_in_a_wider_world(name, read):
+    stories = study(name, ALL, 7, world=WIDER, read=read)
     found = table(stories)
     if LONG:
-        print(f"\nadvice by {read}: {found}")
+        print(f"\n{name}, advice by {read}: {found}")
         for rule in ("plain", "plain learning"):
-            print(f"{rule} rule by dips: {table(study('40-20-vee', ALL, 7, world=WIDER, rule=rule))}")
+            print(f"{rule} rule: {table(study(name, ALL, 7, world=WIDER, read=read, rule=rule))}")
     assert found["median"] <= 2
     assert found["within 4"] >= (0.95 if LONG else 0.75)
     # A share of the stated risk and three sampling errors.
@@ -226,14 +232,52 @@ def test_faults_are_named(vee, bench, code):
     if LONG:
         print(f"\n{code}: {told} of {FAULTY} twenty times likelier than sound, {named} named")
     assert named >= 0.9 * told
-    if code not in ("end_wire_broken", "unequal_traps", "water_one"):
+    if code not in SUBTLE:
         assert told > 0
 
 
-def test_sound_antennas_are_not_called_faulty(vee, bench):
-    called = 0
-    number = ALL if LONG else 20
+@pytest.mark.parametrize("read", ["dips", "meter"])
+@pytest.mark.parametrize("name", PLACES)
+def test_sound_antennas_are_not_called_faulty(name, read):
+    called, number, ensemble = 0, ALL if LONG else 10, ensemble_of(name)
+    bench = Bench(ensemble)
     for n in range(number):
-        found = readings_of("", vee, np.random.default_rng((10, n)), "dips")
-        called += bool(diagnose(bench, [Hoist(readings=found)]).named)
-    assert called <= max(0.02 * number, 1)
+        random = np.random.default_rng((10, n))
+        view = Hung(ensemble, random).hang({})
+        found = view.read_dips(random) if read == "dips" else view.read_meter(random)
+        diagnosis = diagnose(bench, [Hoist(readings=found)])
+        called += bool(diagnosis.named or diagnosis.misfits)
+    assert called <= 0.02 * number
+
+
+def test_slips_in_a_sweep_are_named(vee, bench):
+    """The sweep of a sound antenna, its numbers put wrong as people do; as it is nothing is named."""
+    from trapdesk.engine.fits import Sweep
+
+    view = Hung(vee, np.random.default_rng(12)).hang({})
+    frequency = np.linspace(13.9e6, 14.45e6, 40)
+    seen = view.at_radio("upper", frequency)
+    wave = (seen - 50) / (seen + 50)
+    slips = {
+        "angles_in_radians": np.abs(wave) * np.exp(1j * np.radians(np.angle(wave))),
+        "real_and_imaginary_swapped": wave.imag + 1j * wave.real,
+        "sign_of_reactance": np.conj(wave),
+    }
+    swept = (reading("upper", "sweep", "upper.s1p"),)
+    for code, given in {"": wave, **slips}.items():
+        sweep = Sweep(frequency=frequency, reference=50.0, reflection=given, transmission=None)
+        found = diagnose(bench, [Hoist(readings=swept)], sweeps={"upper.s1p": sweep})
+        assert [s.code for s in found.named[:1]] == [code] * bool(code)
+
+
+def test_no_wire_is_added_where_little_comes_of_it():
+    """What is left on each wire is enough where it brings as much as a longer one, or nearly."""
+    ensemble = ensemble_of("80-40-flat")
+    bands = dict(ensemble.design.bands.items())
+    found = tuple(reading(role, "dip", band.target * 1.004) for role, band in bands.items())
+    posterior = update(ensemble, [Hoist(readings=found)])
+    free = advise(posterior, can_tune=False, reserve=1.0)
+    needed = max(free.best.change.values())
+    held = advise(posterior, can_tune=False, reserve=0.8 * needed)
+    assert not any(held.lacking.values())
+    assert held.best.all_bands >= free.best.all_bands - 0.1
