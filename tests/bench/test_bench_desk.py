@@ -14,10 +14,11 @@ import pytest
 
 from tests.bench.yardstick import record
 from tests.desk.terminals import Terminal, environment, opened
+from trapdesk.faces.desk.app import SETTLING
 
 READY = "next: "
-SETTLED, SOON = 2.0, 0.3
-"""Seconds without a byte after which nothing more comes of an edit, and of a key that changes no design."""
+SETTLED, SOON = SETTLING + 0.1, 0.1
+"""Seconds after which a desk at rest has nothing more to send for an edit, and for any other key."""
 # The least that Textual can be: one line of text.
 BARE = """
 from textual.app import App
@@ -38,8 +39,23 @@ def spent(terminal, keys, seconds=SETTLED) -> int:
     """Return the bytes that keys cost with all that follows from them."""
     before = len(terminal.sent)
     terminal.type(keys)
-    terminal.quiet(seconds)
+    rest(terminal, seconds)
     return len(terminal.sent) - before
+
+
+def ticks(pid) -> int:
+    """Return how long a process has computed, in ticks of the system's clock."""
+    fields = Path(f"/proc/{pid}/stat").read_text().rpartition(")")[2].split()
+    return int(fields[11]) + int(fields[12])
+
+
+def rest(terminal, seconds) -> None:
+    """Take in what comes for a time, and then until the program neither sends nor computes."""
+    terminal.read(seconds)
+    while True:
+        before = ticks(terminal.pid)
+        if not terminal.read(0.3) and ticks(terminal.pid) - before <= 1:
+            return
 
 
 def cells(terminal):
@@ -89,7 +105,7 @@ def desk(tmp_path_factory):
     (home / "state" / "trapdesk").mkdir(parents=True)  # not the first run, which has a line to say
     with opened(home) as terminal:
         terminal.until(READY)
-        terminal.quiet(SETTLED)
+        rest(terminal, SETTLED)
         yield terminal
 
 
@@ -112,7 +128,7 @@ def test_bytes(desk):
     assert kept <= 1500
     desk.type("S")
     desk.until("SWR  ")
-    desk.quiet(SETTLED)
+    rest(desk, SOON)
     ratios = []
     for key in ("u", "U"):
         before = cells(desk)
@@ -129,7 +145,7 @@ def test_idle(tmp_path, desk):
     ours = woken(desk.pid, seconds)
     with bare(tmp_path) as terminal:
         terminal.until("Site")
-        terminal.quiet(SETTLED)
+        rest(terminal, SOON)
         theirs = woken(terminal.pid, seconds)
     record("desk: wake-ups idle, against a bare app's", ours / theirs, limit=1.05)
     memory = re.search(r"VmHWM:\s+(\d+) kB", Path(f"/proc/{desk.pid}/status").read_text())
@@ -160,7 +176,7 @@ def test_first_paint(tmp_path):
         with opened(tmp_path) as terminal:
             terminal.until("opening the first design")
             times["sign"].append(time.monotonic() - terminal.began)
-            terminal.until("Site")
+            terminal.until("Site")  # the first of the inputs
             times["screen"].append(time.monotonic() - terminal.began)
     bare_ = statistics.median(times["bare"])
     record("desk: first sign of life against a bare app", statistics.median(times["sign"]) / bare_, limit=1.5)
@@ -204,7 +220,7 @@ def test_echo_while_the_ensemble_runs(desk):
         desk.type("\x1b")
         desk.until("nothing was written")
         desk.type("A\x1b[H\x1b[B\x1b[B+")  # another design, for another ensemble
-        desk.quiet(SETTLED)
+        rest(desk, SETTLED)
     late = [statistics.quantiles(taken, n=20)[-1] for taken in (running, idle)]
     record("desk: 95 % of echoes while 10,000 trials run, against idle", late[0] / late[1], limit=3.0)
 
@@ -212,10 +228,6 @@ def test_echo_while_the_ensemble_runs(desk):
 def busy(desk) -> bool:
     """Return whether the process computes."""
 
-    def ticks() -> int:
-        fields = Path(f"/proc/{desk.pid}/stat").read_text().rpartition(")")[2].split()
-        return int(fields[11]) + int(fields[12])
-
-    before = ticks()
+    before = ticks(desk.pid)
     desk.read(0.2)
-    return (ticks() - before) / os.sysconf("SC_CLK_TCK") > 0.05
+    return (ticks(desk.pid) - before) / os.sysconf("SC_CLK_TCK") > 0.05
