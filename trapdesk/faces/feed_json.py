@@ -27,7 +27,9 @@ def feed(band: BandFigures) -> dict[str, Any] | None:
         "transmitter_w": found.transmitter_watts,
         "z_transmitter_ohm": found.transmitter_impedance,
         "transmitter_swr": found.transmitter_swr,
+        # A tuner is set anew at every frequency here; for other_… it is left as set for the aim.
         "worst_transmitter_swr": found.worst_transmitter_swr,
+        "tuner_set_anew_for_worst_transmitter_swr": found.tuner is not None,
         "least_transmitter_w": found.least_watts,
         "line": None if found.line is None else line(found.line),
         "line_worst_rms_v": found.worst_voltage,
@@ -35,6 +37,7 @@ def feed(band: BandFigures) -> dict[str, Any] | None:
         "transformer_w": found.transformer_watts,
         "tuner": None if found.tuner is None else setting(found.tuner, tuner_watts(band)),
         "other_place": str(other.where),
+        "other_tuner_left_as_set_for_aim": found.tuner is not None and other.where == "transmitter",
         "other_dip_hz": other.dip,
         "other_dip_swr": other.dip_swr,
         "other_low_swr": other.low_swr,

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Iterator
+from dataclasses import replace
 
 import numpy as np
 
@@ -15,9 +16,10 @@ from ..services.figures import BandFigures, Figures
 from ..services.reach import ReachMap, TunerAnswer
 from ..services.tuning import TunerSetting
 from ..services.worth import Way, WayFigures, Worth
+from ..units.unit_names import UNITS, Dimension
 from .feed_rows import element_name, element_value, line_name, loss_text, setting_text
-from .layout import folded
-from .shown import about, impedance, megahertz, percent, swr
+from .layout import WIDTH, folded
+from .shown import about, impedance, known, megahertz, percent, swr
 
 STEPS = {
     "sky": "to the sky",
@@ -39,13 +41,24 @@ SHADES = ((0.3, "."), (1.0, ":"), (math.inf, "#"))
 OWN_MARK, AIM_MARK = "o", "X"
 
 
+def watt_unit(steps: Iterable[Step]) -> str:
+    """Return the unit the powers of a way down are told in."""
+    *_, last = steps
+    return known(last.watts, last.watts / 100, "power").unit or "W"
+
+
 def printed(steps: Iterable[Step]) -> list[str]:
-    """Return the watts of a way down as text, rounded so that what is printed adds up without a remainder."""
+    """Return the powers of a way down as text, rounded so that what is printed adds up without a remainder.
+
+    They are in `watt_unit`.
+    """
     steps = tuple(steps)
+    size = UNITS[Dimension.POWER][watt_unit(steps)]
+    steps = tuple(replace(step, watts=step.watts * size.bottom / size.top) for step in steps)
     total = steps[-1].watts
     if total <= 0:
         return ["0"] * len(steps)
-    power = math.floor(math.log10(total)) - 2
+    power = max(math.floor(math.log10(total)) - 2, -6)
     unit = 10.0**power
     lost = [(i, s.watts / unit) for i, s in enumerate(steps) if s.impedance is None]
     whole = {i: math.floor(share) for i, share in lost}
@@ -77,7 +90,8 @@ def way_lines(figures: Figures, band: BandFigures) -> Iterator[str]:
     station = figures.design.station
     steps = steps_of(figures, band)
     yield f"{visible(band.name, 12)} at {megahertz(band.aim)}, from the wire down to the transmitter"
-    yield f"  {'watts':>7}  {'':<36}{'Z':<22}SWR"
+    unit = watt_unit(steps)
+    yield f"  {'watts' if unit == 'W' else unit:>7}  {'':<36}{'Z':<22}SWR"
     for step, watts in zip(steps, printed(steps), strict=True):
         words = STEPS[step.code]
         if step.code == "line":
@@ -99,8 +113,11 @@ def table_lines(figures: Figures, table: Worth) -> Iterator[str]:
     yield f"  {'':<32}{'radiated':>9}{'of made':>8}{'SWR':>6}{'gives':>7}  hottest"
     for role, ways in table.bands.items():
         name = visible(figures.bands[role].name, 12)
+        if len(name) > 6:
+            yield f"  {name}"
+            name = ""
         for way in ways:
-            yield f"  {name:<7}{_way_cells(way)}"
+            yield from _way_lines(name, way)
             name = ""
             if not way.matched:
                 yield f"  {'':<9}out of reach of the tuner in part of what is wanted"
@@ -141,14 +158,24 @@ def _gain(gain: float) -> str:
     return f"{100 * gain:.0f} % more" if gain < 1 else f"{1 + gain:.1f} times as much"
 
 
-def _way_cells(way: WayFigures) -> str:
+def _way_lines(name: str, way: WayFigures) -> Iterator[str]:
+    """Yield a way; what gets hottest follows below where there is no room for it."""
     hot = way.hottest.removeprefix("tuner ")
     if way.hottest_watts:
         hot += f" {about(way.hottest_watts, 'power')}"
-    return (
-        f"{way.way:<25}{about(way.radiated, 'power'):>9}{percent(way.share):>8}"
-        f"{swr(way.worst_swr, 0.1):>6}{about(way.least_given, 'power'):>7}  {hot}"
+    share, ratio = (
+        text.replace("under ", "<").replace("over ", ">")
+        for text in (percent(way.share), swr(way.worst_swr, 0.1))
     )
+    line = (
+        f"  {name:<7}{way.way:<25}{about(way.radiated, 'power'):>9}{share:>8}"
+        f"{ratio:>6}{about(way.least_given, 'power'):>7}"
+    )
+    if len(line) + 2 + len(hot) <= WIDTH:
+        yield f"{line}  {hot}"
+    else:
+        yield line
+        yield f"  {'':<9}hottest: {hot}"
 
 
 def setting_lines(figures: Figures, answer: TunerAnswer) -> Iterator[str]:

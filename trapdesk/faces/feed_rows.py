@@ -15,6 +15,8 @@ if TYPE_CHECKING:
     from ..services.tuning import Element, TunerSetting
 
 DIMENSIONS = {"coil": "inductance", "capacitor": "capacitance"}
+TUNER_LEFT = "tuner set at aim"
+"""Over the band the tuner is left as it was set for the aim."""
 PLACES = {"series": "in series", "shunt": "across"}
 
 
@@ -82,7 +84,8 @@ def rows(figures: Figures, band: BandFigures) -> Iterator[dict[str, str]]:
         }
 
     def watts(value: float) -> str:
-        return str(known(value, max(band.stress_doubt * value / 3, 1e-9), "power").number) + " W"
+        text = known(value, band.stress_doubt * value / 3, "power")
+        return f"{text.number} {text.unit}".rstrip()
 
     yield row("feed_w", "reaches the feed", watts(feed.feed_watts), why="at the aim")
     folded = about(station.power, "power", 3)
@@ -92,15 +95,15 @@ def rows(figures: Figures, band: BandFigures) -> Iterator[dict[str, str]]:
     see = impedance(feed.transmitter_impedance, band.impedance_doubt)
     yield row("z_transmitter", "transmitter sees", see, why="at the aim")
     other = feed.other
+    left = TUNER_LEFT if feed.tuner is not None and other.where == "transmitter" else ""
     for tail, label, value in (
         ("low", "low", other.low_swr),
         ("high", "high", other.high_swr),
         ("worst", "worst", other.worst_swr),
     ):
         text = swr(value, band.swr_doubt * value / band.aim_swr)
-        yield row(
-            f"other_{tail}", f"SWR {label}, {_short_place(other.where)}", text, why="where it is not judged"
-        )
+        what = f"SWR {label}, {_short_place(other.where)}"
+        yield row(f"other_{tail}", what, text, left, f"where it is not judged{left and ', ' + left}")
     if feed.line is not None:
         lost = f"{feed.line.total_loss:.2g} dB"
         yield row(
@@ -116,7 +119,7 @@ def rows(figures: Figures, band: BandFigures) -> Iterator[dict[str, str]]:
         volts = known(feed.worst_voltage, feed.worst_voltage * band.stress_doubt, "voltage")
         limit = f"rated {about(rated, 'voltage', 3)}" if rated else "no rating"
         yield row("line_voltage", "line volts, rms", f"{volts.value} {volts.unit}", limit, "highest along it")
-        amps = known(feed.worst_current, feed.worst_current * band.stress_doubt, "current", "A")
+        amps = known(feed.worst_current, feed.worst_current * band.stress_doubt, "current")
         limit = f"rated {about(station.line.current, 'current', 3)}" if station.line.current else "no rating"
         yield row("line_current", "line amps, rms", f"{amps.value} {amps.unit}", limit, "highest along it")
     if feed.transformer_watts > 0:

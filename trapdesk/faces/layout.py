@@ -10,8 +10,8 @@ from typing import TYPE_CHECKING
 
 from . import words
 from .lines import swr_text
-from .rows import Row, summary
-from .shown import impedance, known, percent
+from .rows import Row, shares_text, summary
+from .shown import impedance, known
 
 if TYPE_CHECKING:
     from ..services.figures import AtFrequency, BandFigures, Figures, Stress
@@ -52,7 +52,7 @@ def layout(shown_rows: Iterable[Row]) -> list[str]:
             lines += folded(f"  {row.label:<27} ", f"{row.given} {row.found}".strip())
         else:
             lines += [line]
-    return lines
+    return fitted(lines)
 
 
 def folded(head: str, text: str, width: int = WIDTH) -> list[str]:
@@ -62,6 +62,20 @@ def folded(head: str, text: str, width: int = WIDTH) -> list[str]:
     )
     lines = wrapper.wrap(_UNIT.sub(_GLUE, text))
     return [line.replace(_GLUE, " ") for line in lines] or [head.rstrip()]
+
+
+def fitted(lines: Iterable[str], width: int = WIDTH) -> list[str]:
+    """Return lines of which none is too wide, whatever the numbers in them: the rest of one hangs below."""
+    found: list[str] = []
+    for line in lines:
+        if len(line) <= width:
+            found += [line]
+            continue
+        indent = " " * (len(line) - len(line.lstrip()))
+        found += textwrap.wrap(
+            line, width, subsequent_indent=f"{indent}  ", break_on_hyphens=False, drop_whitespace=True
+        )
+    return found
 
 
 def said(head: str, text: str, cure: str) -> list[str]:
@@ -82,10 +96,10 @@ def at_lines(figures: Figures, at: Iterable[AtFrequency]) -> list[str]:
         lines += [
             f"  {one.frequency / 1e6:>9.7g} {swr_text(band, one.swr):>8}"
             f" {_impedance(one.impedance, band):>21}"
-            f" {percent(one.shares.sky, band.share_doubt):>6}"
+            f" {shares_text(one.shares)[0]:>6}"
             f" {feed.number + ' ' + feed.unit:>8}" + (f" {volts:>10} {watts:>8}" if volts else "")
         ]
-    return lines
+    return fitted(lines)
 
 
 def _impedance(z: complex, band: BandFigures) -> str:

@@ -35,12 +35,12 @@ from .shown import (
     known,
     measured,
     megahertz,
-    percent,
+    percents,
     small_step,
 )
 
 if TYPE_CHECKING:
-    from ..services.figures import BandFigures, Figures, Finding
+    from ..services.figures import BandFigures, Figures, Finding, Shares
 
 # Which row of a band or a trap a finding belongs to, where its place alone does not tell.
 _FINDING_ROWS = {
@@ -72,6 +72,9 @@ _STRESSES = {
     "trap_voltage_unrated": "peak_voltage",
     "trap_heat": "average_watts",
 }
+
+
+SHARES = "of the power taken at the feed point; what the ground takes is an estimate"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -232,20 +235,19 @@ def _band(figures: Figures, band: BandFigures) -> Iterator[Row]:
     if band.usable is not None:
         first, last = (known(edge, doubt, "frequency", "MHz").number for edge in band.usable)
         yield row("usable", "usable", f"{first} to {last} MHz")
-    yield row("sky_share", "to the sky", percent(band.shares.sky, band.share_doubt))
-    yield row("ground_share", "to the ground", percent(band.shares.ground, band.share_doubt))
-    # What the ground takes is not known well; what wire and traps take is as well known as the stress.
-    yield row("wire_share", "to the wire", percent(band.shares.wire, band.stress_doubt * band.shares.wire))
+    sky, ground, wire, trap = shares_text(band.shares)
+    yield row("sky_share", "to the sky", f"about {sky}", why=SHARES)
+    yield row("ground_share", "to the ground", f"about {ground}", why=SHARES)
+    yield row("wire_share", "to the wire", wire)
     if figures.trap is not None:
-        lost = percent(band.shares.trap, band.stress_doubt * band.shares.trap)
-        yield row("trap_share", "to both traps", lost)
-    current = known(band.feed_current, band.feed_current * band.stress_doubt, "current", "A")
+        yield row("trap_share", "to both traps", trap)
+    current = known(band.feed_current, band.feed_current * band.stress_doubt, "current")
     yield row("feed_rms", "feed current, rms", current, why="at the aim, as a steady carrier")
 
 
-def _relative(band: BandFigures) -> float:
-    """Return the relative doubt of the impedance."""
-    return band.impedance_doubt / abs(band.aim_impedance)
+def shares_text(shares: Shares) -> list[str]:
+    """Return what sky, ground, wire and both traps get, in whole per cent that add up to 100."""
+    return percents((shares.sky, shares.ground, shares.wire, shares.trap))
 
 
 def _wires(figures: Figures) -> Iterator[Row]:
@@ -303,9 +305,7 @@ def _stress(figures: Figures, band: BandFigures) -> Iterator[Row]:
     name = band_name(band)
 
     def row(tail: str, label: str, value: float, dimension: str, **more: str) -> Row:
-        text = known(
-            value, value * band.stress_doubt, dimension, {"power": "W", "current": "A"}.get(dimension, "")
-        )
+        text = known(value, value * band.stress_doubt, dimension)
         key = f"bands.{band.role}.{tail}"
         return Row(key=key, group="stress", label=f"{name} {label}", value=text.value, unit=text.unit, **more)
 

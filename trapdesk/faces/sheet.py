@@ -10,7 +10,7 @@ from ..services.figures import Figures
 from ..services.tolerance import Tolerance
 from . import feed_out, hill_card, json_out, tolerance_json, tolerance_out, trap_sheet, words
 from .feed_rows import loss_text, setting_text
-from .layout import WIDTH, folded, said
+from .layout import WIDTH, fitted, folded, said
 from .lines import (
     band_line,
     band_name,
@@ -32,7 +32,7 @@ def text(figures: Figures, ensemble: Tolerance | None = None) -> str:
     lines = [line for part in parts for line in (*part(figures), *(cutting if part is _wires else ()), "")]
     rule = "-" * WIDTH
     lines += [rule, *hill_card.lines(figures, ensemble), *_learned(figures.design), rule, "", *_cautions()]
-    return "\n".join(line.rstrip() for line in lines) + "\n"
+    return "\n".join(line.rstrip() for line in fitted(lines)) + "\n"
 
 
 def _learned(design: Design) -> list[str]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from ..units.unit_names import UNITS, Dimension
@@ -16,7 +17,10 @@ _lengths = "metric"
 _FRACTION = 0.0254 / 4
 
 PLAIN_UNITS = {"power": "W", "current": "A"}
-"""What is compared side by side keeps one unit."""
+"""What is compared side by side keeps one unit, unless there is too little of it."""
+_LITTLE = 0.01
+_LEAST = {"power": "1 nW", "current": "1 nA", "voltage": "1 nV"}
+"""Less than this is only said to be less: nothing hangs on it."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -66,9 +70,13 @@ def known(value: float | None, doubt: float | None, dimension: str, unit: str = 
         number, name = show_parts(value, kind, "imperial", resolution=resolution(doubt))
         inches = doubt / 0.0254
         return Shown(number=number, doubt=rounded(inches, resolution(inches)), unit=name)
-    name = unit or PLAIN_UNITS.get(dimension) or show_parts(max(abs(value), resolution(doubt)), kind)[1]
-    size = UNITS[kind].get(name)
-    factor = size.bottom / size.top if size else 1.0
+    size = max(abs(value), resolution(doubt))
+    if dimension in _LEAST and size < 1e-9:
+        return Shown(number=f"under {_LEAST[dimension]}")
+    plainly = PLAIN_UNITS.get(dimension) if not 0 < size < _LITTLE else None
+    name = unit or plainly or show_parts(size, kind)[1]
+    of_unit = UNITS[kind].get(name)
+    factor = of_unit.bottom / of_unit.top if of_unit else 1.0
     step = resolution(doubt * factor)
     return Shown(number=rounded(value * factor, step), doubt=rounded(doubt * factor, step), unit=name)
 
@@ -90,9 +98,11 @@ def exact(value: float | None, dimension: str, unit: str = "", digits: int = 5) 
 
 
 def about(value: float, dimension: str, digits: int = 2) -> str:
-    """Return a number that is only roughly known, with its unit; watts and amps stay watts and amps."""
-    if dimension in ("power", "current") and 0 < abs(value) < 1:
-        return f"{value:.{digits}g} {'W' if dimension == 'power' else 'A'}"
+    """Return a number that is only roughly known, with its unit; few watts and amps stay watts and amps."""
+    if dimension in _LEAST and 0 < abs(value) < 1e-9:
+        return f"under {_LEAST[dimension]}"
+    if dimension in PLAIN_UNITS and _LITTLE <= abs(value) < 1:
+        return f"{value:.{digits}g} {PLAIN_UNITS[dimension]}"
     return plain(value, dimension, digits)
 
 
@@ -139,6 +149,18 @@ def percent(share: float, doubt: float = 0.01) -> str:
     step = max(resolution(100 * doubt) if doubt > 0 else 1.0, 1.0)
     text = rounded(100 * share, step)
     return f"under {step:.0f} %" if text == "0" and share > 0 else f"{text} %"
+
+
+def percents(shares: Sequence[float]) -> list[str]:
+    """Return shares of a whole in whole per cent that add up to what they are together."""
+    whole = [math.floor(100 * share) for share in shares]
+    rest = round(100 * sum(shares)) - sum(whole)
+    # What is left over goes where rounding down took most.
+    order = sorted(range(len(whole)), key=lambda i: 100 * shares[i] - whole[i], reverse=True)
+    for i in order[:rest]:
+        whole[i] += 1
+    texts = zip(whole, shares, strict=True)
+    return ["under 1 %" if not number and share > 0 else f"{number} %" for number, share in texts]
 
 
 def megahertz(value: float, digits: int = 5) -> str:

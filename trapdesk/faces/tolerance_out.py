@@ -14,7 +14,7 @@ from ..services.advice import Advice, Change, ForYield, Step
 from ..services.beliefs import CAUSES, Belief
 from ..services.causes import Shares
 from ..services.tolerance import Allowance, Scatter, StageScatter, Tolerance, Yield
-from .layout import WIDTH, folded
+from .layout import WIDTH, fitted, folded
 from .shown import LARGEST_SWR, about, centimetres, measured, megahertz, swr
 
 STAGES: dict[str, str] = {
@@ -159,7 +159,7 @@ def lines(found: Tolerance, advice: Advice | None = None, chosen: ForYield | Non
         out += [*helps(advice), ""]
     if chosen is not None:
         out += [*choice(chosen), ""]
-    return [*out, *varies(found)]
+    return fitted([*out, *varies(found)])
 
 
 def summary(found: Tolerance) -> str:

@@ -14,7 +14,7 @@ from ..store import store
 from ..units.unit_names import Dimension
 from ..units.units import read, read_impedance
 from . import feed_json, feed_out, json_out
-from .layout import folded
+from .layout import fitted, folded
 from .line_out import cable_named
 from .pairs import bounded
 from .rows import summary
@@ -47,7 +47,7 @@ def text(file: str, load: str | None, line: str | None, length: str | None, *, a
     lines = [*head, "", *feed_out.document_lines(figures, answers, maps, table)]
     for role, setting in readings.items():
         lines += folded(f"  {figures.bands[role].name}: ", feed_out.reading_line(setting))
-    return "\n".join(lines) + "\n"
+    return "\n".join(fitted(lines)) + "\n"
 
 
 def _load(text: str) -> complex:
