@@ -14,7 +14,7 @@ from contextlib import contextmanager
 from typing import Any, NoReturn, TextIO
 
 from .. import __version__
-from ..errors import BadInput, Fault, FileFault, NoAnswer, TrapdeskError, quoted, visible
+from ..errors import FileFault, NoAnswer, TrapdeskError, quoted, visible
 from . import verb_words
 
 INTERRUPTED = 130
@@ -211,6 +211,8 @@ def _figures_of(file: str) -> Any:
 
 def figures(options: argparse.Namespace) -> str:
     """Return the figures of a design as text or JSON."""
+    from .frequencies import frequencies_of
+
     frequencies = frequencies_of(options.at)
     from ..services.solve import at_frequencies
     from . import json_out, layout, rows
@@ -222,33 +224,6 @@ def figures(options: argparse.Namespace) -> str:
     lines = [*layout.summary_lines(found), "", *layout.layout(rows.rows(found))]
     lines += layout.at_lines(found, at) if at else []
     return "\n".join(lines) + "\n"
-
-
-LOWEST, HIGHEST = 1e6, 100e6
-"""Between these the wire and its ground are computed. [Hz]"""
-
-
-def frequencies_of(texts: Sequence[str]) -> list[float]:
-    """Return the frequencies of --at in Hz; commas separate them, so decimals take a point."""
-    if not texts:
-        return []
-    from ..units import units
-
-    found, faults = [], []
-    for piece in (piece for text in texts for piece in text.split(",")):
-        try:
-            frequency = units.read(piece, units.Dimension.FREQUENCY, "--at")
-        except BadInput as refused:
-            help = "commas separate frequencies, a decimal takes a point: --at 7.05MHz,14.2MHz"
-            faults += [Fault(f.where, f.code, f.value or piece, f.limit, help) for f in refused.faults]
-            continue
-        if not LOWEST <= frequency <= HIGHEST:
-            limit = f"{LOWEST / 1e6:.0f} to {HIGHEST / 1e6:.0f} MHz"
-            faults += [Fault("--at", "outside the range", piece, limit)]
-        found += [frequency]
-    if faults:
-        raise BadInput(faults)
-    return found
 
 
 def sheet(options: argparse.Namespace) -> str:

@@ -8,16 +8,16 @@ import sys
 import threading
 from collections.abc import Callable, Hashable, Iterable, Iterator, Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, Protocol
 
 from textual.app import App
 
 from ...design.design import Design
 from ...errors import TrapdeskError
+from .refusals import reason
 
 if TYPE_CHECKING:
     from ...services.figures import Figures
-    from .session import Session
 
 SWITCHING = 0.0005
 """How long work aside may hold a key up before it is interrupted. [s]"""
@@ -39,6 +39,34 @@ def give_back() -> None:
 
     if sys.platform == "linux" and (trim := getattr(ctypes.CDLL(None), "malloc_trim", None)) is not None:
         trim(0)
+
+
+class Subject(Protocol):
+    """What the work is about: the design of a session, and how far its own answer is."""
+
+    @property
+    def design(self) -> Design:
+        """The present design."""
+
+    @property
+    def generation(self) -> int:
+        """Which design it is, counted up with each change."""
+
+    @property
+    def figures(self) -> Figures | None:
+        """The figures at hand."""
+
+    @property
+    def no_answer(self) -> str:
+        """Why the design has no figures, empty when it has or may have."""
+
+    @property
+    def solving(self) -> bool:
+        """Whether it has no answer yet."""
+
+    @property
+    def stale(self) -> bool:
+        """Whether the figures at hand are not its own."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -85,8 +113,8 @@ class Aside:
     `hung` of the antenna, `command` and `load` what was typed, `other` the design of another site.
     """
 
-    def __init__(self, session: Session) -> None:
-        self._session = session
+    def __init__(self, subject: Subject) -> None:
+        self._subject = subject
         self._known: dict[str, Known] = {}
         self._running: dict[bool, tuple[str, Hashable]] = {}
         self._stopped: set[str] = set()
@@ -125,7 +153,7 @@ class Aside:
     def fresh(self, job: Job) -> bool:
         """Return whether what a job found last belongs to the present design."""
         known = self._known.get(job.name)
-        stale = job.needs_figures and self._session.stale
+        stale = job.needs_figures and self._subject.stale
         return known is not None and known.token == self._token(job) and not stale
 
     def running(self, name: str) -> bool:
@@ -137,7 +165,7 @@ class Aside:
         return self._progress.get(name, "") if self.running(name) else ""
 
     def _token(self, job: Job) -> Hashable:
-        return (self._session.generation, job.asked(self))
+        return (self._subject.generation, job.asked(self))
 
     def want(
         self, app: App, jobs: Iterable[Job], changed: Callable[[], None], moved_on: Callable[[], None]
@@ -163,12 +191,12 @@ class Aside:
         for job in self._wanted:
             known = self._known.get(job.name)
             done = known is not None and known.whole and known.token == self._token(job)
-            if not done and not (job.needs_figures and self._session.no_answer):
+            if not done and not (job.needs_figures and self._subject.no_answer):
                 yield job
 
     def _next(self) -> None:
         """Begin what is due and can begin."""
-        if self._session.solving:
+        if self._subject.solving:
             self._idle.clear()
             return
         due = list(self._due())
@@ -181,7 +209,7 @@ class Aside:
                 self._begin(job)
 
     def _begin(self, job: Job) -> None:
-        app, session, token = self._app, self._session, self._token(job)
+        app, subject, token = self._app, self._subject, self._token(job)
         assert app is not None
         self._running[job.slow] = (job.name, token)
         self._stopped.discard(job.name)
@@ -191,8 +219,8 @@ class Aside:
             return job.name in self._stopped or self._token(job) != token or not app.is_running
 
         task = Task(
-            design=session.design,
-            figures=None if session.no_answer else session.figures,
+            design=subject.design,
+            figures=None if subject.no_answer else subject.figures,
             asked=job.asked(self),
             stopped=stopped,
             tell=lambda text: self._post(self._told, job.name, text),
@@ -206,8 +234,6 @@ class Aside:
 
     def _work(self, job: Job, token: Hashable, task: Task) -> None:
         """Run a job in a thread and hand over what it finds."""
-        from .solving import reason
-
         give_way()
         sys.setswitchinterval(SWITCHING)
         refusal = ""
@@ -235,13 +261,13 @@ class Aside:
 
     def _take(self, name: str, token: Hashable, value: Any) -> None:
         """Take in what was found; what is for an older design is dropped."""
-        if token[0] == self._session.generation:
+        if token[0] == self._subject.generation:
             self._known[name] = Known(token=token, value=value)
             self._changed()
 
     def _ended(self, job: Job, token: Hashable, refusal: str) -> None:
         self._running.pop(job.slow, None)
-        if token[0] == self._session.generation:
+        if token[0] == self._subject.generation:
             known = self._known.setdefault(job.name, Known())
             if refusal:
                 known = self._known[job.name] = Known(refusal=refusal)

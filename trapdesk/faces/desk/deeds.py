@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from collections.abc import Callable
+from typing import TYPE_CHECKING, Any, Protocol
 
 from ...errors import BadInput
 from .. import words
@@ -13,7 +14,11 @@ from .themes import THEMES
 
 if TYPE_CHECKING:
     from ...services.figures import Finding
-    from .app import Desk
+    from .middle import Middle
+    from .panes.drawers import DrawersPane
+    from .panes.frame import Foot
+    from .session import Session
+    from .thin import Thin
 
 KEYS: dict[str, str] = {
     "undo": "u",
@@ -49,10 +54,30 @@ FAR = 8
 """Steps of the readout at once."""
 
 
+class Acting(Protocol):
+    """What the deeds are done to: the app, as far as they need it."""
+
+    session: Session
+    theme: str
+    thin: Thin
+    middle: Middle
+    drawers: DrawersPane
+    foot: Foot
+
+    say: Callable[..., None]
+    ask: Callable[..., None]
+    solve: Callable[[], None]
+    repaint: Callable[[], None]
+    repaint_foot: Callable[[], None]
+    refresh: Callable[..., Any]
+    action_suspend_process: Callable[[], None]
+    _driver: Any
+
+
 class Deeds:
     """The deeds of a desk, each a method by the name it has in `KEYS`."""
 
-    def __init__(self, desk: Desk, filing: Filing) -> None:
+    def __init__(self, desk: Acting, filing: Filing) -> None:
         self._desk = desk
         self._session = desk.session
         self._filing = filing

@@ -10,11 +10,9 @@ from textual.app import App
 from textual.message import Message
 
 from ...design.design import Design
-from ...design.rules import InvalidDesign
-from ...errors import NoAnswer, TrapdeskError
-from ...store.spoken import spoken
-from .. import words
+from ...errors import TrapdeskError
 from .aside import give_way
+from .refusals import reason
 from .session import Session
 
 if TYPE_CHECKING:
@@ -91,12 +89,3 @@ class Solving:
     async def settled(self) -> None:
         """Wait until the present design has its whole answer, or the reason why there is none."""
         await self._settled.wait()
-
-
-def reason(error: TrapdeskError) -> str:
-    """Return in one line why a design has no answer."""
-    if isinstance(error, NoAnswer):
-        return words.no_answer(error)
-    if isinstance(error, InvalidDesign):
-        return "; ".join(str(spoken(breach)) for breach in error.breaches)
-    return "; ".join(str(error).splitlines())

@@ -163,7 +163,7 @@ def _kept(session: Session) -> Design:
 
 def _edit(acting: Acting, change: Callable[[Session], Design], words: str) -> None:
     """Put a changed design in place, an edit as any other."""
-    from ..solving import reason
+    from ..refusals import reason
 
     session = acting.session
     try:

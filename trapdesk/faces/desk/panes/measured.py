@@ -100,7 +100,7 @@ def _add(given: str, acting: Acting) -> None:
 
 def _keep(acting: Acting) -> None:
     from ... import readings_out
-    from ..solving import reason
+    from ..refusals import reason
 
     session = acting.session
     found = session.aside.found(READINGS.name)

@@ -54,7 +54,7 @@ def _line(words: Sequence[str]) -> list[str]:
 def _at(figures: Figures | None, words: Sequence[str]) -> list[str]:
     """Return the design at single frequencies, as `figures --at` has it."""
     from ....services.solve import at_frequencies
-    from ...cli import frequencies_of
+    from ...frequencies import frequencies_of
     from ...layout import at_lines
 
     if figures is None:
