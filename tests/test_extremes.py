@@ -119,3 +119,28 @@ def test_swr_with_a_tuner_says_how_it_is_set():
         assert told["tuner_set_anew_for_worst_transmitter_swr"] and told["other_tuner_left_as_set_for_aim"]
     plain = solve(with_value(PRESET, "station.tuner", None))
     assert {row.key: row for row in rows(plain)}["bands.lower.feed.other_worst"].given == ""
+
+
+@pytest.mark.parametrize(
+    ("names", "told"),
+    [
+        (("80 m", "80 m"), {"80 m 7.03", "80 m 3.55"}),
+        (("", ""), {"upper band", "lower band"}),
+        (("  ", "80 m"), {"upper band", "80 m"}),
+        (("relief net by day", "relief net by night"), {"relie 7.03", "relie 3.55"}),
+        (("40 m", "80 m"), {"40 m", "80 m"}),
+    ],
+)
+def test_bands_are_told_apart(names, told, tmp_path, capsys):
+    design = PRESET
+    for role, name in zip(("upper", "lower"), names, strict=True):
+        design = with_value(design, f"bands.{role}.name", name)
+    assert {design.bands.called(role) for role, _ in design.bands.items()} == told
+    path = tmp_path / "design.toml"
+    store.save(design, path)
+    assert store.load(path).bands == design.bands
+    for verb, *more in (["figures"], ["tolerance", "--trials", "50"]):
+        assert cli.main([verb, str(path), *more]) == 0
+        out = capsys.readouterr().out
+        assert all(name in out for name in told)
+        assert not re.search(r"move  by|  SWR low|, on ,|on \.$", out)

@@ -133,6 +133,18 @@ class Bands:
             if (band := getattr(self, role)) is not None:
                 yield role, band
 
+    def called(self, role: str) -> str:
+        """Return what a band is to be called: one without a name by its place, alike ones by their aims."""
+        named = {role: " ".join(band.name.split()) for role, band in self.items()}
+        if not named[role]:
+            return f"{role} band"
+        # Only so much of a name is shown in a column.
+        if len({name[:11].casefold() for name in named.values()}) == len(named):
+            return getattr(self, role).name
+        aims = {role: f"{band.target / 1e6:.5g}" for role, band in self.items()}
+        told = f"{named[role][:5].strip()} {aims[role]}"
+        return told if len(set(aims.values())) == len(aims) else f"{role} band"
+
 
 @dataclass(frozen=True, kw_only=True)
 class AntennaWire:

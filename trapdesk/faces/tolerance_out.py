@@ -305,7 +305,7 @@ def causes(found: Tolerance) -> list[str]:
             f" the trials by {100 * seen:.2f} %",
         )
     for role, (first, seen) in check.dips.items():
-        name = visible(dict(found.design.bands.items())[role].name, 12)
+        name = visible(found.design.bands.called(role), 12)
         out += folded(
             "  check    ",
             f"{name} dip as cut, causes one at a time and in proportion: {about(first, 'frequency')},"
@@ -393,7 +393,7 @@ def choice(chosen: ForYield) -> list[str]:
         out += [f"  {_change_name(chosen, change):<20}{before:>14} -> {after}"]
     out += [f"  {'yield':<20}{percent(chosen.before.share):>14} -> {chance(chosen.after)}"]
     for role, ((volts, loss), (new_volts, new_loss)) in chosen.prices.items():
-        name = visible(dict(chosen.design.bands.items())[role].name, 12)
+        name = visible(chosen.design.bands.called(role), 12)
         out += [f"  {name + ', trap peak':<20}{volts:>12.0f} V -> {new_volts:.0f} V"]
         out += [f"  {name + ', lost in traps':<20}{100 * loss:>12.1f} % -> {100 * new_loss:.1f} %"]
     return out
@@ -403,7 +403,7 @@ def _change_name(chosen: ForYield, change: Change) -> str:
     last = change.key.rpartition(".")[2]
     if last == "aim":
         role = change.key.split(".")[1]
-        return f"{visible(dict(chosen.design.bands.items())[role].name, 12)} aim"
+        return f"{visible(chosen.design.bands.called(role), 12)} aim"
     return CHANGES[last]
 
 

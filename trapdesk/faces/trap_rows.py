@@ -93,7 +93,7 @@ def _computed(figures: Figures, given: Callable[[str], str]) -> Iterator[Cells]:
         )  # fmt: skip
     yield _row("dynamic", "dynamic resistance", about(trap.dynamic_resistance, "resistance"))
     for role, z in trap.impedance.items():
-        name = visible(getattr(design.bands, role).name, 12)
+        name = visible(design.bands.called(role), 12)
         yield _row(f"z_{role}", f"trap Z at the {name} aim", impedance_range(z))
 
 

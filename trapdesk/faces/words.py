@@ -288,9 +288,9 @@ def place(where: str, design: Design) -> str:
     """Return what a person calls the place a dotted key names: a band by its name, else its label."""
     head, _, rest = where.partition(".")
     if head == "bands" and rest:
-        band = getattr(design.bands, rest.split(".")[0], None)
-        if band is not None:
-            return visible(band.name, 20)
+        role = rest.split(".")[0]
+        if getattr(design.bands, role, None) is not None:
+            return visible(design.bands.called(role), 20)
     try:
         return known_at(design, where).label
     except (KeyError, TypeError, AttributeError):

@@ -1,7 +1,8 @@
 """A wire of any lengths within a range, from a few that were solved: what a search over traps needs.
 
 The port matrices vary smoothly with both wire lengths. Solved on a small grid of them and interpolated, they
-give wire lengths and all band figures of any trap at the cost of small algebra.
+give wire lengths and all band figures of any trap at the cost of small algebra. Where they do not vary
+smoothly enough, or a trap's wires lie outside, each antenna is solved by itself.
 """
 
 from __future__ import annotations
@@ -25,8 +26,8 @@ FEW_NODES = (2, 3)
 """Lengths of inner and end wire that are solved: for figures, and for a first look a per mille or two off."""
 NODES_BAND = 3
 STEPS = 20
-BEYOND = 0.15
-"""Part of what is solved by which a length may lie outside it."""
+UNSETTLED = 0.03
+"""Last term of what is interpolated, as a part of all of it, from which on it is no longer trusted."""
 CLOSE = 1e-6
 """Part of a length to which it is found."""
 
@@ -76,6 +77,15 @@ class PortGrid:
         self._trap = traps[0]
         self._place(nodes)
 
+    @property
+    def is_smooth(self) -> bool:
+        """Whether the port matrices vary smoothly enough over the lengths to be interpolated."""
+        return all(
+            _last_term(matrix, axis, nodes) < UNSETTLED
+            for matrix in self._at_aim.values()
+            for axis, nodes in enumerate((self.inner, self.end))
+        )
+
     def finer(self) -> PortGrid:
         """Return the grid for the same traps on as many lengths as figures want."""
         other = object.__new__(PortGrid)
@@ -92,6 +102,7 @@ class PortGrid:
             np.linalg.inv(np.array([_powers(n, x) for x in n])) for n in (self.inner, self.end)
         )
         self._solve()
+        self._trusted = self.is_smooth
 
     def make(self, inner: float, end: float) -> Wire:
         """Return the wire hung with these lengths."""
@@ -123,14 +134,13 @@ class PortGrid:
         return Ports(self._nodes[role], *(np.tensordot(weights, m, 2) for m in self._matrices[role]))
 
     def lengths(self, trap: Any) -> tuple[float, float]:
-        """Return the wires that meet the aims with a trap; NoAnswer when they leave the grid."""
+        """Return the wires that meet the aims with a trap; NoAnswer when they lie outside the grid."""
         given = self.design.antenna.lengths
         unknown = [n for n, v in enumerate((given.inner, given.end)) if v is SOLVE]
         if not unknown:
             return self.guess
         roles = [("upper", "lower")[n] if "upper" in self.bands else "lower" for n in unknown]
         loads = {r: trap.impedance(np.array([self.bands[r].target]))[0] for r in roles}
-        x = np.array(self.guess)
 
         def miss(at: np.ndarray) -> np.ndarray:
             weights = self._weights(*at)
@@ -140,6 +150,9 @@ class PortGrid:
             )
 
         spans = [np.ptp(n) if n.size > 1 else 0.0 for n in (self.inner, self.end)]
+        # The nearest of the wires that were hung to start from: far from it there may be other lengths.
+        starts = [np.array(self.guess), *(np.array([w.inner, w.end]) for w in self._hung)]
+        x = min(starts, key=lambda start: float(np.abs(miss(start)).max())).copy()
         now, columns = miss(x), []
         for n in unknown:
             step = np.zeros(2)
@@ -159,23 +172,30 @@ class PortGrid:
             now = new
         for n, name in enumerate(("inner", "end")):
             low, high = _reach([getattr(wire, name) for wire in self._hung])
-            room = BEYOND * (high - low)
-            if n in unknown and not low - room <= x[n] <= high + room:
+            if n in unknown and not low <= x[n] <= high:
                 raise NoAnswer("aim_not_met", f"antenna.lengths.{name}", {f"{name}_m": float(x[n])})
         return float(x[0]), float(x[1])
 
     def outcome(self, trap: Any) -> Outcome:
-        """Return what the antenna does with a trap."""
-        inner, end = self.lengths(trap)
-        wire = self.make(inner, end)
-        return Outcome(
-            inner=inner,
-            end=end,
-            bands={
-                role: summary(self.design, role, wire, trap, self.ports(role, inner, end))
-                for role in self.bands
-            },
-        )
+        """Return what the antenna does with a trap; NoAnswer where no wires meet the aims."""
+        if not self._trusted:
+            return self._in_full(trap)
+        try:
+            inner, end = self.lengths(trap)
+        except NoAnswer:
+            return self._in_full(trap)
+        ports = {role: self.ports(role, inner, end) for role in self.bands}
+        if not all(_takes_power(of_band, trap) for of_band in ports.values()):
+            return self._in_full(trap)
+        return self._outcome(self.make(inner, end), trap, ports)
+
+    def _in_full(self, trap: Any) -> Outcome:
+        """Return what the antenna does with a trap, its wires solved for this one alone."""
+        return self._outcome(hang(self.design, trap), trap, {})
+
+    def _outcome(self, wire: Wire, trap: Any, ports: dict[str, Ports]) -> Outcome:
+        bands = {role: summary(self.design, role, wire, trap, ports.get(role)) for role in self.bands}
+        return Outcome(inner=wire.inner, end=wire.end, bands=bands)
 
 
 def summary(design: Design, role: str, wire: Wire, trap: Any, ports: Ports | None = None) -> BandSummary:
@@ -195,7 +215,7 @@ def summary(design: Design, role: str, wire: Wire, trap: Any, ports: Ports | Non
     usable = response.usable(station.swr_limit)
     return BandSummary(
         role=role,
-        name=band.name,
+        name=design.bands.called(role),
         loss=float(wanted.trap[-1]),
         width=None if usable is None else usable[1] - usable[0],
         wanted=float(np.ptp(frequency)),
@@ -226,3 +246,23 @@ def _reach(lengths: list[float]) -> tuple[float, float]:
     low, high = min(lengths), max(lengths)
     room = 0.02 * (high - low) + 0.002 * low
     return low - room, high + room
+
+
+def _takes_power(ports: Ports, trap: Any) -> bool:
+    """Return whether the feed point takes power at every frequency, as of a wire it must."""
+    return bool(np.all(terminate(ports.impedance, trap.impedance(ports.frequency)).impedance.real > 0))
+
+
+def _last_term(matrix: np.ndarray, axis: int, nodes: np.ndarray) -> float:
+    """Return the last Chebyshev term along an axis of what was solved, as a part of the largest value.
+
+    Of fewer than three nodes it says nothing: the last term is then all there is of the slope.
+    """
+    count = nodes.size
+    if count < 3:
+        return 0.0
+    # Over the zeros of the polynomial of this order, the last but one alternates like the sine.
+    weights = (-1.0) ** np.arange(count) * np.sin(np.pi * (np.arange(count) + 0.5) / count)
+    last = np.abs(np.tensordot(weights, np.moveaxis(matrix, axis, 0), 1)) * 2 / count
+    size = np.abs(matrix).max(axis=(0, 1))
+    return float(np.max(np.divide(last.max(axis=0), size, out=np.zeros_like(size), where=size > 0)))

@@ -288,7 +288,7 @@ def _band(
     feed = None if path is None else _feed(path, response, feeding.passage, aim)
     return BandFigures(
         role=role,
-        name=band.name,
+        name=design.bands.called(role),
         aim=band.target,
         aim_impedance=aim.impedance,
         aim_swr=aim.swr,

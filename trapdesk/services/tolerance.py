@@ -332,7 +332,7 @@ class _Gathered:
                 dips = self.values[i, j, 0, :kept]
                 bands[role] = BandScatter(
                     role=role,
-                    name=dict(ensemble.design.bands.items())[role].name,
+                    name=ensemble.design.bands.called(role),
                     within=yield_of(int(self.passed[i, j]), done),
                     results=scatters,
                     curve=self._curve(i, j, frequency, done),
