@@ -3,12 +3,14 @@
 import os
 import re
 import signal
+import subprocess
+import sys
 import termios
 from dataclasses import replace
 
 import pytest
 
-from tests.desk.terminals import opened
+from tests.desk.terminals import ROOT, opened
 from trapdesk.store import store
 
 READY = "next: "
@@ -143,3 +145,15 @@ def test_asleep_and_awake_again_the_screen_is_whole(tmp_path):
         terminal.until(READY)
         terminal.quiet(0.5)
         assert terminal.lines() == before
+
+
+def test_what_computes_and_draws_is_imported_after_the_inputs_are_shown():
+    code = (
+        "import sys\n"
+        "from trapdesk.faces.desk import app, opening\n"
+        "from trapdesk.store import store\n"
+        "store.find()\n"
+        "print(*{'numpy', 'pint', 'plotext', 'textual'} & sys.modules.keys())"
+    )
+    done = subprocess.run([sys.executable, "-c", code], cwd=ROOT, capture_output=True, text=True, check=True)
+    assert done.stdout.split() == ["textual"]
