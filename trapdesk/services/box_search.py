@@ -22,14 +22,17 @@ from .made import made
 from .offers import Offer
 from .port_grid import FEW_NODES, Outcome, PortGrid
 from .scoring import Cost, Surface, cost
+from .solve import hang
 from .trap import BuiltTrap, build
 from .winders import MAKERS
 
 if TYPE_CHECKING:
     from .tolerance import Yield
 
-REACTANCE = (70.0, 240.0, 640.0)
-"""Coil reactance at resonance within which traps are sought: least, middle, most. [ohm]"""
+REACTANCE = (70.0, 640.0)
+"""Coil reactance at resonance within which traps are sought. [ohm]"""
+LOOKS = 17
+"""How many reactances are looked at for wires where not all of them have any."""
 LOSSES, SIZES = (1 / 2000, 1 / 250, 1 / 100, 1 / 30), 7
 FEW_LOSSES, FEW_SIZES = (1 / 600, 1 / 80), 4
 """Coil losses, 1/Q, and how many capacitances a trap's outcome is known for; fewer for a first look."""
@@ -130,24 +133,46 @@ class Search:
         self.design, self.box, self.wanted = design, box, wanted
         self.body = design.antenna.trap.body
         self.tried = 0
-        self.range = [1 / (2 * math.pi * self.wanted * x) for x in REACTANCE]
-        self.grid = self._grid()
+        try:
+            self._start(REACTANCE)
+        except NoAnswer as error:
+            ends = self._with_wires()
+            if ends is None:
+                raise error
+            self._start(ends)
+
+    def _start(self, reactances: tuple[float, float]) -> None:
+        """Solve wires and outcomes of traps within a range of reactances; NoAnswer where one has no wires."""
+        self.range = [1 / (2 * math.pi * self.wanted * x) for x in reactances]
+        big, small = self.range
+        # These have the shortest and the longest wires, or nearly: loss moves a trap of much capacitance most.
+        few, many = 1 / LOSSES[0], 1 / LOSSES[-1]
+        corners = ((big, few), (big, many), (small, 200.0), (math.sqrt(big * small), 200.0))
+        self.grid = PortGrid(self.design, [self._tank(c, q) for c, q in corners], FEW_NODES)
         self.surface = self._surface(FEW_LOSSES, FEW_SIZES)
+
+    def _with_wires(self) -> tuple[float, float] | None:
+        """Return the widest range of reactances within which every trap has wires; None for none."""
+
+        def has_wires(x: float) -> bool:
+            try:
+                for q in (1 / LOSSES[0], 1 / LOSSES[-1]):
+                    hang(self.design, self._tank(1 / (2 * math.pi * self.wanted * x), q))
+            except NoAnswer:
+                return False
+            return True
+
+        low, high = REACTANCE
+        tried = np.geomspace(low, high, LOOKS)
+        runs, run = [], []
+        for x, good in zip(tried, map(has_wires, tried), strict=True):
+            run = [*run, float(x)] if good else []
+            runs.append(run)
+        found = max(runs, key=len)
+        return (found[0], found[-1]) if len(found) > 1 else None
 
     def _tank(self, capacitance: float, q: float, loss: float = 0.0) -> BuiltTrap:
         return build(tank(self.wanted, float(capacitance), float(q), self.body, loss))
-
-    def _grid(self) -> PortGrid:
-        """Return the wires of every trap in range, the range made narrower where a trap has no wires."""
-        for _ in range(6):
-            traps = [self._tank(c, 200.0) for c in (self.range[0], self.range[-1])]
-            try:
-                return PortGrid(self.design, traps, FEW_NODES)
-            except NoAnswer as error:
-                first = error
-                middle = self.range[1]
-                self.range = [middle * (c / middle) ** 0.75 for c in self.range]
-        raise first
 
     def _surface(self, losses: tuple[float, ...], count: int) -> Surface:
         # Chebyshev's places in the logarithm, the polynomial through them is true to the ends.

@@ -12,7 +12,7 @@ from typing import Any
 
 import numpy as np
 
-from ..design.design import MODES, Design, Lengths
+from ..design.design import MODES, Band, Design, Lengths
 from ..design.fields import SOLVE
 from ..engine.ports import Ports, chebyshev_nodes, polynomial_weights, terminate
 from ..engine.wire import Wire, plan, solve_ports
@@ -185,7 +185,7 @@ class PortGrid:
         except NoAnswer:
             return self._in_full(trap)
         ports = {role: self.ports(role, inner, end) for role in self.bands}
-        if not all(_takes_power(of_band, trap) for of_band in ports.values()):
+        if not all(_takes_power(of, self.bands[role], trap) for role, of in ports.items()):
             return self._in_full(trap)
         return self._outcome(self.make(inner, end), trap, ports)
 
@@ -248,9 +248,10 @@ def _reach(lengths: list[float]) -> tuple[float, float]:
     return low - room, high + room
 
 
-def _takes_power(ports: Ports, trap: Any) -> bool:
-    """Return whether the feed point takes power at every frequency, as of a wire it must."""
-    return bool(np.all(terminate(ports.impedance, trap.impedance(ports.frequency)).impedance.real > 0))
+def _takes_power(ports: Ports, band: Band, trap: Any) -> bool:
+    """Return whether the feed point takes power all over the wanted part, as that of a wire must."""
+    there = ports.at(np.append(wanted_frequencies(band), band.target))
+    return bool(np.all(terminate(there.impedance, trap.impedance(there.frequency)).impedance.real > 0))
 
 
 def _last_term(matrix: np.ndarray, axis: int, nodes: np.ndarray) -> float:
