@@ -145,7 +145,7 @@ class Search:
         """Solve wires and outcomes of traps within a range of reactances; NoAnswer where one has no wires."""
         self.range = [1 / (2 * math.pi * self.wanted * x) for x in reactances]
         big, small = self.range
-        # These have the shortest and the longest wires, or nearly: loss moves a trap of much capacitance most.
+        # These have the shortest and longest wires, or nearly: loss moves a trap of much capacitance most.
         few, many = 1 / LOSSES[0], 1 / LOSSES[-1]
         corners = ((big, few), (big, many), (small, 200.0), (math.sqrt(big * small), 200.0))
         self.grid = PortGrid(self.design, [self._tank(c, q) for c, q in corners], FEW_NODES)
