@@ -310,7 +310,7 @@ def test_tank_where_nothing_resonates(call):
         (["C=3uH"], ("C: ", "where a capacitance is wanted")),
         (["f=10"], ("f: '10' has no unit",)),
         (["f=nan"], ("f: ",)),
-        (["C=1e-60F"], ("C: ", "less than")),
+        (["C=1e-60F"], ("C: ", "outside 0.001 pF to 1 F")),
         (["f=1e300MHz"], ("f: ",)),
     ],
 )

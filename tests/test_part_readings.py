@@ -9,6 +9,7 @@ from tests.cases import HERE, reference
 from trapdesk.design.design import with_value
 from trapdesk.engine.fits import Sweep, loop_impedance
 from trapdesk.engine.resonator import impedance
+from trapdesk.errors import NoAnswer
 from trapdesk.services.part_readings import find
 from trapdesk.services.part_values import ReadingRefused, ReadingsDisagree
 from trapdesk.services.trap import build
@@ -284,5 +285,5 @@ def test_a_sweep_without_a_resonance_or_of_another_band():
 
 def test_no_trap():
     design = with_value(with_value(DESIGN, "antenna.trap", None), "antenna.lengths.end", None)
-    with pytest.raises(ReadingRefused, match="no_trap"):
+    with pytest.raises(NoAnswer, match="no trap"):
         found("trap.f0=14MHz", design=design)

@@ -8,6 +8,7 @@ from __future__ import annotations
 import argparse
 import difflib
 import os
+import re
 import sys
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
@@ -72,7 +73,7 @@ def _say(text: str, code: int) -> int:
 
 def _run(given: list[str]) -> int:
     if given and given[0] in VERBS:
-        options = _parser_of(given[0]).parse_intermixed_args(given[1:])
+        options = _parser_of(given[0]).parse_intermixed_args(_loads_joined(given[1:]))
         with _units_chosen():
             return _write(VERBS[given[0]][1](options))
     parser = Parser(
@@ -89,6 +90,17 @@ def _run(given: list[str]) -> int:
     if len(files) > 1 or (files and not os.path.lexists(files[0])):
         _refuse_verb(files)
     return _desk(files[0] if files else None)
+
+
+def _loads_joined(given: list[str]) -> list[str]:
+    """Return arguments with a load of a minus joined to its option: by itself it would pass for an option."""
+    joined: list[str] = []
+    for text in given:
+        if joined and joined[-1] == "--load" and re.match(r"[-+]\s*[\d.jJ]", text):
+            joined[-1] = f"--load={text}"
+        else:
+            joined.append(text)
+    return joined
 
 
 @contextmanager

@@ -93,7 +93,7 @@ def turns_doubt(figures: Figures) -> float:
 
 def length_text(length: float, doubt: float) -> Shown:
     """Return a wire length in metres: to its doubt when solved, to the millimetre when set."""
-    return known(length, doubt, "length", "m") if doubt else exact(length, "length", "m")
+    return known(length, doubt, "length", "m") if doubt else exact(length, "length", "m", digits=5)
 
 
 def site_line(figures: Figures) -> str:

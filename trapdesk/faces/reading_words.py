@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 REFUSALS: dict[str, tuple[str, str]] = {
-    "no_trap_in_the_design": ("the design has no trap", "add a table [antenna.trap]"),
     "another_band": (
         "a resonance of {read_hz} is too far from the computed {computed_hz} to be this trap's",
         "another band, another trap or a slipped unit? If it is this one, set its parts as they are first",

@@ -111,7 +111,8 @@ def given(design: Design, key: str) -> str:
         return megahertz(value)
     if what.dimension in ("text", "choice", "print"):
         return visible(value, 60)
-    return str(exact(value, what.dimension))
+    # Wires are cut to the millimetre.
+    return str(exact(value, what.dimension, digits=5 if key.startswith("antenna.lengths.") else None))
 
 
 def rows(figures: Figures) -> tuple[Row, ...]:

@@ -81,11 +81,13 @@ def known(value: float | None, doubt: float | None, dimension: str, unit: str = 
     return Shown(number=rounded(value * factor, step), doubt=rounded(doubt * factor, step), unit=name)
 
 
-def exact(value: float | None, dimension: str, unit: str = "", digits: int = 5) -> Shown:
-    """Return a number somebody set, with as many digits as it needs up to a few."""
+def exact(value: float | None, dimension: str, unit: str = "", digits: int | None = None) -> Shown:
+    """Return a number somebody set, with as many digits as it needs up to four, of a frequency five."""
     if value is None:
         return NONE
     kind = Dimension(dimension)
+    if digits is None:
+        digits = 5 if kind is Dimension.FREQUENCY else 4
     if unit and math.isfinite(value) and not imperial(kind):
         size = UNITS[kind][unit]
         return Shown(number=f"{value * size.bottom / size.top:.{digits}g}", unit=unit)

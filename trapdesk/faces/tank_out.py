@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 
-from ..engine.tank import VALUE_RANGE, TankQuantity, TankStatus
+from ..engine.tank import TankQuantity, TankStatus
 from ..errors import BadInput, Fault
 from ..services import tank as service
 from ..services.tank import TankAnswer, TankBehaviour
@@ -25,6 +25,16 @@ LABELS: dict[TankQuantity, str] = {
 }
 EXAMPLES = {"f": "10.05MHz", "L": "5.3uH", "C": "47pF", "R": "1.9ohm", "RD": "60k", "Q": "180", "B": "56kHz"}
 EXAMPLE = "trapdesk tank f=10.05MHz C=47pF Q=180"
+RANGES = {
+    "f": (1e3, 1e11),
+    "L": (1e-12, 10.0),
+    "C": (1e-15, 1.0),
+    "R": (1e-9, 1e6),
+    "RD": (1e-3, 1e12),
+    "Q": (1e-3, 1e9),
+    "B": (1e-3, 1e11),
+}
+"""Between these, in SI, lies each value of a circuit for radio; beyond them it is a slip of the prefix."""
 MOST_SLACK = 0.5
 ROUNDING = 1e-9
 """Relative difference below which two definitions agree but for rounding. [1]"""
@@ -62,11 +72,12 @@ def answer_to(texts: Sequence[str]) -> tuple[dict[str, float], TankAnswer]:
 
 
 def _outside(name: str, value: float, text: str) -> list[Fault]:
-    low, high = VALUE_RANGE["value"]
+    low, high = RANGES[name]
     if value <= 0:
         return [Fault(name, "not_positive", text, help=f"for example {EXAMPLES[name]}")]
     if not low <= value <= high:
-        return [Fault(name, "too_large" if value > high else "too_small", text, limit="any circuit has")]
+        limit = f"{show(low, Dimension(ELEMENTS[name]))} to {show(high, Dimension(ELEMENTS[name]))}"
+        return [Fault(name, "outside", text, limit, f"for example {name}={EXAMPLES[name]}")]
     return []
 
 

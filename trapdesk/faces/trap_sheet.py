@@ -159,7 +159,7 @@ def _toroid(figures: Figures, made: Toroid) -> Iterator[str]:
     yield from folded(
         "  coil     ",
         f"{turns.value} turns, each once through the hole, of wire {exact(made.wire, 'length', digits=3)}"
-        f" on a core {size}, {exact(made.inductance_index, 'inductance')} a turn;"
+        f" on a core {size}, {exact(made.inductance_index, 'inductance')} for one turn, by turns squared;"
         f" {coil.most_turns} would fit.",
     )
     yield from folded(HEAD, f"Cut {measured(_cut(figures), 'm', 2)}. Wind one turn more and take off.")

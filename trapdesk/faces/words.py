@@ -383,6 +383,7 @@ _SUFFIXES = {
     "v": Dimension.VOLTAGE,
     "a": Dimension.CURRENT,
     "w": Dimension.POWER,
+    "db": Dimension.LOSS,
 }
 
 

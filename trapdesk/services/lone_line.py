@@ -55,7 +55,7 @@ def to_seen(line: FeedLine, frequency: float, seen: complex, watts: float) -> Lo
         raise NoAnswer(
             "no_load_gives_this",
             "Zin",
-            {"matched_loss_db": float(DECIBELS * gamma.real * line.length)},
+            {"loss_if_matched_db": float(DECIBELS * gamma.real * line.length)},
             "the line's own loss leaves less room for that: look over length and type",
         )
     return to_load(line, frequency, load, watts)

@@ -17,6 +17,7 @@ from ..design.reading_kinds import Reading
 from ..engine import fits
 from ..engine.fits import Sweep
 from ..engine.measured import Estimate, half_power_centre
+from ..errors import NoAnswer
 from . import sweep_suspects
 from .part_quality import half_power, quality
 from .part_values import (
@@ -90,10 +91,11 @@ class _Seen:
 def find(design: Design, readings: Sequence[Reading], sweeps: Mapping[str, Sweep]) -> PartsFound:
     """Return what readings of a trap and its parts say of it; `sweeps` are by the file's name as typed.
 
-    Raises ReadingRefused for one that cannot be used, ReadingsDisagree where no trap fits them.
+    Raises ReadingRefused for one that cannot be used, ReadingsDisagree where no trap fits them, NoAnswer
+    for a design without a trap.
     """
     if design.antenna.trap is None:
-        raise ReadingRefused("no_trap_in_the_design", "antenna.trap")
+        raise NoAnswer("no_trap_to_build", "antenna.trap", {}, "add a table [antenna.trap]")
     computed = build(replace(design.antenna.trap, **_unmeasured(design)))
     if design.antenna.trap.coil.kind == CABLE:
         for reading in readings:

@@ -83,6 +83,16 @@ def _split(text: str, faults: list[Fault]) -> Iterator[tuple[str, str, list[tupl
         yield reading
 
 
+def _not_open(where: str, kind: Kind, text: str) -> None:
+    """Refuse a value that ends in the name of an option nothing is given for."""
+    ways = [word for word in kind.hows if word]
+    _, comma, last = text.rpartition(",")
+    name = last.strip().lower()
+    if comma and name in (*kind.options, "doubt", *(["how"] if ways else [])):
+        shown = {"doubt": "doubt=0.5%", "how": f"how={ways[0]}" if ways else ""}.get(name, kind.example)
+        _refuse(f"{where} {name}", "empty", help=f"{name} wants a value, for example {shown}")
+
+
 def _refuse(where: str, code: str, value: str = "", help: str = "", limit: str = "") -> NoReturn:
     raise BadInput(Fault(where, code, value, limit, help))
 
@@ -97,6 +107,7 @@ def _reading(name: str, value: str, options: list[tuple[str, str]]) -> Reading:
         if not at:
             _refuse(head, "a frequency is missing", help=f"for example {kind.example}")
         frequency = _positive(place, Dimension.FREQUENCY, name)
+    _not_open(head, kind, options[-1][1] if options else value)
     said = _options(head, kind, options)
     how = str(said.pop("how", next(iter(kind.hows)) if not kind.how_is_needed else ""))
     if kind.how_is_needed and not how:
