@@ -144,3 +144,22 @@ def test_bands_are_told_apart(names, told, tmp_path, capsys):
         out = capsys.readouterr().out
         assert all(name in out for name in told)
         assert not re.search(r"move  by|  SWR low|, on ,|on \.$", out)
+
+
+@pytest.mark.parametrize(
+    "typed",
+    [
+        "tank f=99GHz L=1.23456789pH Q=123456789",
+        "tank f=1.23456789kHz C=0.987654321F R=123456.789ohm",
+        "line RG-58/U length=98765.4321m f=99.987654GHz Z=0.00123-j987654321",
+        "line RG-58/U length=0.1um f=1.23456kHz Z=987654321+j123456",
+        "match Z=0.00123-j98765432 f=1.23456789kHz power=999999W",
+        "match Z=987654321 f=99GHz power=0.000001W network=t-clc",
+        "coil former=0.3m wire=0.2mm pitch=0.2mm turns=80 f=1.2345678MHz",
+    ],
+)
+def test_no_typed_value_prints_wider_than_a_terminal(typed, capsys):
+    code = cli.main(typed.split())
+    out, err = capsys.readouterr()
+    assert code in (0, 1, 2) and (out or err)
+    assert max((len(line) for line in out.splitlines()), default=0) <= WIDTH

@@ -1,5 +1,6 @@
 """The package as it is built and installed, and the tools the tests themselves rely on."""
 
+import json
 import math
 import os
 import re
@@ -16,6 +17,7 @@ import pytest
 import trapdesk
 from tests.bench import yardstick
 from trapdesk import engine
+from trapdesk.faces import cli
 
 ROOT = Path(__file__).resolve().parent.parent
 PROJECT = tomllib.loads((ROOT / "pyproject.toml").read_text("utf-8"))
@@ -150,3 +152,13 @@ def test_record_fails_past_twice_the_limit(monkeypatch):
     assert "FAILED" in lines[2]
     assert "FAILED" in lines[3]
     assert yardstick.table([]) == []
+
+
+def test_design_in_the_readme_works_as_it_stands(tmp_path, capsys):
+    (text,) = re.findall(r"^```toml\n(.*?)^```$", README, re.MULTILINE | re.DOTALL)
+    path = tmp_path / "own.toml"
+    path.write_text(text)
+    assert cli.main(["figures", str(path), "--json"]) == 0
+    found = json.loads(capsys.readouterr().out)
+    assert all(band["worst_swr"] <= 2 for band in found["bands"].values())
+    assert not [finding for finding in found["findings"] if finding["level"] == "stop"]

@@ -13,7 +13,7 @@ from ..services.coil_check import CoilAnswer, check_coil
 from ..store import toml_read
 from . import trap_json
 from .json_out import FORMAT, inputs
-from .layout import WIDTH, folded
+from .layout import WIDTH, fitted, folded
 from .pairs import Name, need, read_pairs
 from .shown import about, exact, impedance_range, known, measured, megahertz, percent
 from .trap_rows import adjustment_text, side_text
@@ -106,7 +106,7 @@ def lines(answer: CoilAnswer) -> list[str]:
     for label, text in _found(answer):
         found += _line(label, "", text)
     found += folded("", "An estimate until it is measured; --json has every digit.")
-    return found
+    return fitted(found)
 
 
 def _found(answer: CoilAnswer) -> Iterator[tuple[str, str]]:

@@ -15,7 +15,7 @@ from ..units.unit_names import Dimension
 from ..units.units import read
 from . import feed_json, json_out
 from .feed_rows import line_name
-from .layout import folded
+from .layout import fitted, folded
 from .pairs import IMPEDANCE, OHMS, TEXT, Name, need, read_pairs
 from .shown import about, exact, megahertz
 
@@ -149,7 +149,7 @@ def lines(answer: LoneLine) -> list[str]:
         found += folded("  ", f"{text}{'; ' + cable.note if cable.note else ''}.")
     if line.age or line.weather is LineWeather.WET:
         found += folded("  ", "What age and rain do to it is an estimate, no source.")
-    return found
+    return fitted(found)
 
 
 def document(answer: LoneLine) -> dict[str, Any]:

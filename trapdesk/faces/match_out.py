@@ -16,7 +16,7 @@ from ..services.tuning import TunerSetting, tune_at
 from . import feed_json, json_out
 from .feed_out import element_lines
 from .feed_rows import DIMENSIONS, PLACES, loss_text, setting_text, short_text
-from .layout import folded
+from .layout import fitted, folded
 from .line_out import cable_named
 from .pairs import IMPEDANCE, TEXT, Name, need, read_pairs
 from .shown import about, exact, impedance_range, megahertz, swr
@@ -204,7 +204,7 @@ def lines(answer: MatchAnswer) -> list[str]:
         "Volts are peak, amps rms, heat that of a steady carrier; 1 % off: the SWR with that part so far off."
     )
     found += ["", *folded("", text)]
-    return found
+    return fitted(found)
 
 
 def _label(part: MatchedPart) -> str:

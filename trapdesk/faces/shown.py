@@ -6,6 +6,7 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
+from ..units import numerals
 from ..units.unit_names import UNITS, Dimension
 from ..units.units import show, show_parts
 
@@ -90,7 +91,7 @@ def exact(value: float | None, dimension: str, unit: str = "", digits: int | Non
         digits = 5 if kind is Dimension.FREQUENCY else 4
     if unit and math.isfinite(value) and not imperial(kind):
         size = UNITS[kind][unit]
-        return Shown(number=f"{value * size.bottom / size.top:.{digits}g}", unit=unit)
+        return Shown(number=numerals.rounded(value * size.bottom / size.top, digits, None), unit=unit)
     if imperial(kind):
         # What was set in metres seldom comes to few digits of an inch.
         number, name = show_parts(value, kind, "imperial", digits=4 if abs(value) >= 0.3048 else 3)

@@ -10,7 +10,7 @@ from ..services import tank as service
 from ..services.tank import TankAnswer, TankBehaviour
 from ..units.unit_names import ELEMENTS, Dimension
 from ..units.units import read_exact, show
-from .layout import folded
+from .layout import fitted, folded
 from .pairs import split
 from .shown import exact, known
 
@@ -128,7 +128,7 @@ def lines(given: Mapping[str, float], answer: TankAnswer) -> list[str]:
     assert behaviour is not None
     found += ["", *_definitions(behaviour, answer)]
     found += folded("", "+- is what rounding of the typed values may come to; --json has every digit.")
-    return found
+    return fitted(found)
 
 
 def _definitions(b: TankBehaviour, answer: TankAnswer) -> list[str]:
