@@ -281,3 +281,12 @@ def test_no_wire_is_added_where_little_comes_of_it():
     held = advise(posterior, can_tune=False, reserve=0.8 * needed)
     assert not any(held.lacking.values())
     assert held.best.all_bands >= free.best.all_bands - 0.1
+
+
+def test_no_belief_hangs_on_a_few_trials(vee):
+    """Readings that hardly any antenna gives leave wide intervals, never a point."""
+    found = (reading("upper", "dip", 14.17e6), reading("lower", "dip", 8.95e6))
+    posterior = update(vee, [Hoist(readings=found)])
+    assert posterior.survivors >= 59
+    for one in learned(posterior):
+        assert one.after[2] > one.after[0]

@@ -33,6 +33,8 @@ OWN_STEPS = 2
 """Kalman steps of each trial's own: after one alone, weights hang on the few trials it served well. [1]"""
 LEAST = 0.06
 """Share of the trials drawn that must survive for them not to be drawn once more. [1]"""
+FEWEST = 60
+"""Trials of equal weight that the weighed ones must be worth at least. [1]"""
 STREAM = 4096
 """First stream of random numbers here: those of the beliefs lie below."""
 BUILT = Stage(name="built", sealed=True)
@@ -140,13 +142,28 @@ def _posterior(
     return Posterior(
         forward=forward,
         z=z,
-        weights=share / share.sum(),
+        weights=_levelled(share),
         evidence=largest + math.log(share.mean()),
         misfit=misfit,
         told=_told(slopes, owners, count),
         strain=tuple(float(np.sqrt((off[owners == i] ** 2).sum())) for i in range(count)),
         moved=moved,
     )
+
+
+def _levelled(share: np.ndarray) -> np.ndarray:
+    """Return weights that add to 1, no fewer than `FEWEST` trials counting.
+
+    Where a few trials carry all, an interval of them would be far too narrow: weights are evened out until
+    more do, which errs on the wide side.
+    """
+    power = 1.0
+    while True:
+        weights = share**power
+        weights = weights / weights.sum()
+        if 1 / (weights**2).sum() >= min(FEWEST, share.size) or power < 1e-3:
+            return weights
+        power *= 0.8
 
 
 def _told(slopes: np.ndarray, owners: np.ndarray, count: int) -> tuple[float, ...]:
