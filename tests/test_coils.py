@@ -9,7 +9,9 @@ from hypothesis import strategies as st
 from scipy.constants import mu_0
 
 from tests.cases import published, reference
+from trapdesk.design.coil_kinds import Solenoid
 from trapdesk.engine import coil_formulas, coils, metals, rings
+from trapdesk.services.coils import build_coil
 
 COPPER = metals.MATERIALS["copper"]
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=25)
@@ -333,3 +335,12 @@ def test_winding_refuses(solve, change):
 def test_refuses(call, name):
     with pytest.raises(ValueError, match=rf"^{name} must be"):
         call()
+
+
+@pytest.mark.parametrize("spacing", [{"pitch": 3.53e-3}, {"length": 0.0459}, {}])
+def test_insulated_wire_lies_on_the_former_with_its_insulation(spacing):
+    """By geometry: from a former of 32 mm, 0.1 mm of enamel and half a wire of 1.6 mm to the centre."""
+    made = Solenoid(former=0.032, wire=1.6e-3, insulation=1e-4, turns=13.0, **spacing)
+    wound = build_coil(made, None, None, 28e6).wound
+    assert wound.diameter == pytest.approx(2 * (16e-3 + 0.1e-3 + 0.8e-3))
+    assert wound.outer_diameter == pytest.approx(2 * (16e-3 + 0.1e-3 + 1.6e-3 + 0.1e-3))

@@ -8,6 +8,7 @@ from itertools import combinations_with_replacement
 import pytest
 
 from trapdesk.design.box import Box, Cable, Capacitor, Core, Former, TurnStep, Wire
+from trapdesk.design.coil_kinds import Solenoid
 from trapdesk.design.fields import SOLVE
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import cli, rummage_out
@@ -161,6 +162,25 @@ def test_rows_are_confirmed_by_the_full_solve():
                 band.worst_stress.peak_voltage, rel=3e-3
             )
             assert row.outcome.bands[role].width == pytest.approx(band.width, rel=6e-3)
+
+
+def test_a_row_typed_by_hand_gives_the_same_trap():
+    box = Box(
+        formers=(replace(PIPE, diameter=0.032),),
+        wires=(ENAMELLED,),
+        capacitors=(replace(DISC, capacitance=10e-12),),
+    )
+    design = preset("20-10-flat")
+    found = finished(design, box)
+    coil = found.rows[0].trap.coil
+    typed = Solenoid(
+        former=0.032, wire=1.6e-3, insulation=5e-5, pitch=round(coil.pitch, 5), turns=found.rows[0].turns
+    )
+    disc = replace(found.rows[0].trap, resonance=SOLVE, coil=typed)
+    figures = solve(replace(design, antenna=replace(design.antenna, trap=disc)))
+    # The pitch as printed is right to half a hundredth of a millimetre, and moves half of that at most.
+    assert figures.trap.resonance == pytest.approx(found.resonance, rel=5e-6 / coil.pitch / 2)
+    assert found.rows[0].diameter == pytest.approx(figures.trap.coil.diameter)
 
 
 def test_a_row_holds_to_the_box():

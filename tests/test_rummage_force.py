@@ -18,9 +18,9 @@ from trapdesk.design.parts import Trap
 from trapdesk.engine.cable_list import Terminals
 from trapdesk.errors import NoAnswer
 from trapdesk.services.box_parts import cable_part, capacitor_part, solenoid_part, stub_part, toroid_part
-from trapdesk.services.coils import COIL_DOUBT
+from trapdesk.services.coils import COIL_DOUBT, CUT_TAIL
 from trapdesk.services.combos import STUB_DOUBT
-from trapdesk.services.offers import END_ROOM, RING_ROOM, SNIP_STEP, SPREAD, TAIL
+from trapdesk.services.offers import END_ROOM, RING_ROOM, SNIP_STEP, SPREAD
 from trapdesk.services.rummage import wanted_resonance
 from trapdesk.services.scoring import cost
 from trapdesk.services.solve import solve
@@ -189,7 +189,7 @@ def drawn_apart(box, wanted, former, wire, up, way, pieces, tolerance, volts):
     built = build(trap(up, pitch))
     coil = built.wound
     reactance = 2 * math.pi * wanted * built.inductance
-    if 2 * (coil.wire_length + 2 * TAIL) > wire.length or not LEAST <= reactance <= MOST:
+    if 2 * (coil.wire_length + 2 * CUT_TAIL) > wire.length or not LEAST <= reactance <= MOST:
         return None
     # What the coil adds of its own is known to a factor of two either way.
     own = built.self_capacitance[1]
@@ -236,7 +236,7 @@ def coils_with_stubs(box, wanted) -> Iterator[Try]:
                         if one is None:
                             continue
                         trap, built, fixed = one
-                        if 2 * (built.wound.wire_length + 2 * TAIL) > wire.length:
+                        if 2 * (built.wound.wire_length + 2 * CUT_TAIL) > wire.length:
                             continue
                         fixed_stub = replace(trap.capacitor, length=built.capacitor.length)
 
@@ -317,7 +317,7 @@ def rings(box, wanted) -> Iterator[Try]:
             over = wire.diameter + 2 * wire.coating
             for turns in range(1, int(math.pi * (core.inner - over) / wire.closest) + 1):
                 inductance = turns**2 * core.inductance_index
-                wire_length = turns * (2 * core.height + core.outer - core.inner + 4 * over) + 2 * TAIL
+                wire_length = turns * (2 * core.height + core.outer - core.inner + 4 * over) + 2 * CUT_TAIL
                 if 2 * wire_length > wire.length or not 0.9 * LEAST <= w * inductance <= 1.1 * MOST:
                     continue
                 common = {"length": core.height, "diameter": core.outer}

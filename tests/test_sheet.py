@@ -80,7 +80,7 @@ def test_three_lengths_of_each_wire():
 def test_how_to_wind():
     text = words_of(sheet.text(FIGURES))
     assert "10.37 +- 0.08 turns of copper wire 1.6 mm on a former 50 mm outside" in text
-    assert "Mean diameter 51.6 mm (former and one wire), winding length 31.1 mm" in text
+    assert "Mean diameter 51.7 mm (former and one wire with its insulation), winding length 31.1 mm" in text
     assert "Cut 1.88 m: 1.68 m in the turns, 10 cm for each tail" in text
     assert "14.05 MHz by itself" in text
 

@@ -103,6 +103,7 @@ def _solenoid(figures: Figures, made: Solenoid) -> Iterator[str]:
     spaced = made.pitch is not None or made.length is not None
     pitch = coil.pitch or made.pitch or 0.0
     how = f"{exact(pitch, 'length', digits=3)} from turn to turn" if spaced else "wound close"
+    coat = " with its insulation" if made.insulation else ""
     yield from folded(
         "  coil     ",
         f"{turns.value} turns of {made.material} wire {exact(made.wire, 'length', digits=3)} on a former"
@@ -110,7 +111,7 @@ def _solenoid(figures: Figures, made: Solenoid) -> Iterator[str]:
     )
     yield from folded(
         HEAD,
-        f"Mean diameter {measured(coil.diameter, 'mm', 1)} (former and one wire), winding length"
+        f"Mean diameter {measured(coil.diameter, 'mm', 1)} (former and one wire{coat}), winding length"
         f" {measured(coil.length, 'mm', 1)} (turns times pitch). Cut {measured(_cut(figures), 'm', 2)}:"
         f" {measured(coil.wire_length, 'm', 2)} in the turns, {measured(CUT_TAIL, 'cm', 0)} for each tail"
         + (f", {exact(made.lead, 'length')} for each lead." if made.lead else "."),

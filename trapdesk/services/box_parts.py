@@ -32,9 +32,9 @@ def type_of(cable: Cable) -> str:
 
 
 def solenoid_part(former: Former, wire: Wire, pitch: float, turns: float) -> Solenoid:
-    """Return a coil of a box's wire on its former; the metal lies on the former and its coat."""
+    """Return a coil of a box's wire on its former."""
     return Solenoid(
-        former=former.diameter + 2 * wire.coating,
+        former=former.diameter,
         wire=wire.diameter,
         insulation=wire.coating,
         pitch=pitch,

@@ -32,7 +32,7 @@ TOROID_Q = (0.7, 1.2)
 """The same of the Q stated for a coil on a core; an estimate, no source."""
 NO_SELF_CAPACITANCE = (0.0, 0.0, 0.0)
 CUT_TAIL = 0.10
-"""Wire to leave at each end of a coil. [m], common practice, no source"""
+"""Wire beyond the winding at each end of a coil. [m], common practice, no source"""
 GUESSES = np.arange(1.0, MOST_TURNS + 1.0)
 STEPS = 16
 
@@ -111,6 +111,11 @@ def _by_q(inductance: float, q: float, q_at: float) -> Callable[[Any], tuple[Any
     return series
 
 
+def mean_diameter(coil: Solenoid) -> float:
+    """Return the diameter to the centre of the wire, which lies on the former with its insulation."""
+    return coil.former + coil.wire + 2 * coil.insulation
+
+
 def pitch_of(coil: Solenoid, turns: float) -> float:
     """Return the distance from turn to turn: as set, from the winding's length, or wound close."""
     if coil.pitch is not None:
@@ -120,9 +125,7 @@ def pitch_of(coil: Solenoid, turns: float) -> float:
 
 def _solenoid(coil: Solenoid, frequency: float | None, needed: Needed | None, q_at: float) -> BuiltCoil:
     material = MATERIALS[coil.material]
-    close = coil.pitch is None and coil.length is None
-    # Wound close, wire with its insulation lies on the former.
-    diameter = coil.former + coil.wire + (2 * coil.insulation if close else 0.0)
+    diameter = mean_diameter(coil)
     leads = 2 * straight_inductance(coil.lead, coil.wire)
 
     def wind(turns: float) -> Winding:

@@ -15,8 +15,9 @@ from ..engine.cable_list import Terminals
 from ..errors import NoAnswer
 from .box_parts import cable_part, capacitor_part, solenoid_part, stub_part, toroid_part
 from .capacitors import cable_rating
+from .coils import CUT_TAIL, mean_diameter
 from .combos import TRAPS
-from .offers import END_ROOM, TAIL, Offer, built_off, room
+from .offers import END_ROOM, Offer, built_off, room
 from .trap import BuiltTrap, build
 from .winders import WIDER, turn_step
 
@@ -79,10 +80,10 @@ def _solenoid(offer: Offer, box: Box, wanted: float) -> Made | None:
                     return None
                 slope = _slope(trap, built.resonance)
                 down, up = room(slope, pitch, wire.closest, length, former.length)
-                turn = math.hypot(math.pi * (coil.former + coil.wire), pitch)
+                turn = math.hypot(math.pi * mean_diameter(coil), pitch)
                 offer = replace(
                     offer, turns=turns, pitch=pitch, length=length, down=float(down), up=float(up),
-                    wire_length=turns * turn + 2 * TAIL,
+                    wire_length=turns * turn + 2 * CUT_TAIL,
                     off=built_off(offer.tolerance, built.capacitance - built.fitted, built.capacitance),
                 )  # fmt: skip
                 return trap, built, offer

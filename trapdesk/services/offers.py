@@ -17,8 +17,6 @@ from .scoring import Surface, cost
 
 END_ROOM = 0.01
 """Former beyond the winding at each end. [m], an estimate"""
-TAIL = 0.12
-"""Wire beyond the winding at each end. [m], an estimate"""
 SPREAD = 1.2
 """How much wider than as wound the turns of an open winding can still be set; an estimate."""
 RING_ROOM = 0.05

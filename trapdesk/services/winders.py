@@ -20,8 +20,9 @@ from ..engine.ground import C0
 from ..engine.metals import MATERIALS
 from .box_parts import cable_part, solenoid_part, toroid_part
 from .capacitors import cable_rating, line_of
+from .coils import CUT_TAIL, mean_diameter
 from .combos import FREE, TRAPS, Combos
-from .offers import END_ROOM, RING_ROOM, TAIL, Offer, built_off, picked, points_of, room
+from .offers import END_ROOM, RING_ROOM, Offer, built_off, picked, points_of, room
 from .scoring import Surface, cost
 
 SPACINGS = (1.0, 1.5, 2.0, 3.0)
@@ -98,7 +99,7 @@ def turn_step(former: Former) -> float:
 def windings(former: Former, wire: Wire, wanted: float) -> Wound | None:
     """Return what a wire makes on a former at each pitch, as long as the former is; None where it cannot."""
     metal = solenoid_part(former, wire, wire.closest, 1.0)
-    diameter, w = metal.former + metal.wire, 2 * math.pi * wanted
+    diameter, w = mean_diameter(metal), 2 * math.pi * wanted
     turns = TURNS[TURNS % turn_step(former) == 0]
     pitches = wire.closest * np.array(SPACINGS)
     covered = in_range(diameter, pitches, wire.diameter) & in_range(diameter, WIDER * pitches, wire.diameter)
@@ -154,7 +155,7 @@ def solenoid_offers(
             "loss": resistance * w * total,
             "length": length,
             "diameter": np.full(turns.size, wound.diameter),
-            "wire_length": turns * np.hypot(math.pi * wound.diameter, pitch) + 2 * TAIL,
+            "wire_length": turns * np.hypot(math.pi * wound.diameter, pitch) + 2 * CUT_TAIL,
             "down": down,
             "up": up,
             "off": built_off(some.tolerance, total - some.capacitance, total),
@@ -202,7 +203,7 @@ def toroid_offers(
     ask = 1 / (w * w * total * core.inductance_index)
     turns = np.clip(np.round(np.sqrt(ask)), 1, most)
     shift = np.log(turns**2 / ask)
-    wire_length = turns * (2 * core.height + core.outer - core.inner + 4 * over) + 2 * TAIL
+    wire_length = turns * (2 * core.height + core.outer - core.inner + 4 * over) + 2 * CUT_TAIL
     good = (np.abs(shift) < RING_ROOM) & (wire_length * TRAPS <= wire.length)
     good &= (total >= limits[0]) & (total <= limits[1])
     some, size = joined.take(np.flatnonzero(good)), np.ones(np.count_nonzero(good))
