@@ -8,6 +8,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from trapdesk.design.preferred_values import SERIES
 from trapdesk.errors import BadInput
 from trapdesk.units import print_tables, prints
 
@@ -32,7 +33,7 @@ def test_published_tables():
             PUBLISHED["figure"][first] * PUBLISHED["multiplier"][second] * 1e-6, abs=1e-15
         )
         assert doubt == pytest.approx(PUBLISHED["allowed"][third] * 1e-6)
-    assert print_tables.SERIES["E24"] == tuple(round(10 * value) for value in PUBLISHED["e24"])
+    assert SERIES["E24"] == tuple(round(10 * value) for value in PUBLISHED["e24"])
     for letter, share in PUBLISHED["percent"].items():
         assert prints.read_tolerance(letter, 47e-12) == pytest.approx((share / 100, share / 100))
     for letter, size in PUBLISHED["picofarads"].items():
@@ -51,24 +52,22 @@ def test_trade_names_mean_their_codes():
 
 
 def test_series():
-    assert print_tables.SERIES["E6"] == E6
-    assert print_tables.SERIES["E12"] == E12
-    assert len(print_tables.SERIES["E3"]) == 3
+    assert SERIES["E6"] == E6
+    assert SERIES["E12"] == E12
+    assert len(SERIES["E3"]) == 3
     for name, (first, second, last) in FINE.items():
-        series = print_tables.SERIES[name]
+        series = SERIES[name]
         assert (series[0], series[1], series[-1]) == (first, second, last)
         assert len(series) == int(name[1:]) == len(set(series))
-    assert (
-        set(print_tables.SERIES["E48"]) < set(print_tables.SERIES["E96"]) < set(print_tables.SERIES["E192"])
-    )
+    assert set(SERIES["E48"]) < set(SERIES["E96"]) < set(SERIES["E192"])
 
 
-@pytest.mark.parametrize("series", print_tables.SERIES)
+@pytest.mark.parametrize("series", SERIES)
 @given(st.floats(1e-14, 1e6))
 def test_preferred_is_the_nearest(series, value):
     found = prints.preferred(value, series)
     assert prints.preferred(found, series) == pytest.approx(found)
-    steps = 1 + 1.2 * (10 ** (1 / len(print_tables.SERIES[series])) - 1)
+    steps = 1 + 1.2 * (10 ** (1 / len(SERIES[series])) - 1)
     assert value / steps < found < value * steps
 
 

@@ -8,6 +8,7 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from ..design.box import Box, Capacitor, Former, Wire
+from ..design.preferred_values import SERIES
 from .box_search import Row, Search
 from .combos import TRAPS
 
@@ -27,8 +28,6 @@ class Shortage:
     parts: tuple[tuple[str, Any], ...]
 
 
-E12 = (1.0, 1.2, 1.5, 1.8, 2.2, 2.7, 3.3, 3.9, 4.7, 5.6, 6.8, 8.2)
-"""One decade of preferred values. From memory: IEC 60063."""
 FORMERS = (0.025, 0.032, 0.04, 0.05, 0.063)
 WIRES = (0.001, 0.0016, 0.002)
 AMPLE = 0.15
@@ -127,11 +126,9 @@ def _capacitors(search: Search) -> Iterator[Capacitor]:
     """Yield preferred values within the range, rated for what they would bear."""
     least, most = search.range[-1], search.range[0]
     for power in range(math.floor(math.log10(least)), math.ceil(math.log10(most))):
-        for value in E12:
-            c = value * 10.0**power
+        for value in SERIES["E12"]:
+            c = value * 10.0 ** (power - 1)
             if least < c < most:
                 volts = search.volts(c)
                 rating = math.ceil(MARGIN * volts / 500) * 500.0
-                yield Capacitor(
-                    name=f"{value * 10.0 ** (power + 12):.3g} pF", capacitance=c, voltage=rating, count=TRAPS
-                )
+                yield Capacitor(name=f"{1e12 * c:.3g} pF", capacitance=c, voltage=rating, count=TRAPS)

@@ -1,30 +1,10 @@
-"""Tables behind what is printed on capacitors, after IEC 60062, IEC 60063 and the codes of class 1 ceramics.
+"""Tables behind what is printed on capacitors, after IEC 60062 and the codes of class 1 ceramics.
 
-The three-sign codes, E24, the trade names and the letters B to K, M and Z were read in copies of the tables;
-the other letters, the finer series and the two letters of IEC 60384 are from memory.
+The three-sign codes, the trade names and the letters B to K, M and Z were read in copies of the tables; the
+other letters and the two letters of IEC 60384 are from memory. Preferred values stand in the design.
 """
 
 from __future__ import annotations
-
-_E24 = (10, 11, 12, 13, 15, 16, 18, 20, 22, 24, 27, 30, 33, 36, 39, 43, 47, 51, 56, 62, 68, 75, 82, 91)
-
-
-def _fine_series(count: int) -> tuple[float, ...]:
-    """Return a series of three digits: powers of ten rounded, but for one value of the finest."""
-    values = (round(100 * 10 ** (step / count)) / 10 for step in range(count))
-    return tuple(92.0 if value == 91.9 else value for value in values)
-
-
-SERIES: dict[str, tuple[float, ...]] = {
-    "E3": _E24[::8],
-    "E6": _E24[::4],
-    "E12": _E24[::2],
-    "E24": _E24,
-    "E48": _fine_series(48),
-    "E96": _fine_series(96),
-    "E192": _fine_series(192),
-}
-"""Preferred values of IEC 60063, 10 up to below 100; 920 in place of 919 in E192."""
 
 PERCENT: dict[str, tuple[float, float]] = {
     "E": (0.005, 0.005),

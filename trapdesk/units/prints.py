@@ -2,7 +2,7 @@
 
 Values and tolerance letters after IEC 60062, preferred values after IEC 60063, temperature characteristics
 of class 1 ceramics by their three-sign codes, their trade names and the two letters of IEC 60384; see
-`print_tables` for what of it was read and what is from memory.
+`print_tables` and the preferred values for what of it was read and what is from memory.
 """
 
 from __future__ import annotations
@@ -13,6 +13,7 @@ from collections.abc import Iterator
 from itertools import pairwise
 
 from ..design.capacitor_kinds import Printed
+from ..design.preferred_values import SERIES
 from ..errors import BadInput, Fault
 from .print_tables import (
     ALLOWED,
@@ -22,7 +23,6 @@ from .print_tables import (
     MULTIPLIER,
     PERCENT,
     PICOFARADS,
-    SERIES,
     SMALL,
     TRADE,
     VARIES,
