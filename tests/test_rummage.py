@@ -509,3 +509,37 @@ def test_rows_outside_are_refused(capsys, rows):
     code, out, err = run(capsys, "40-20-vee", "--rows", rows)
     assert (code, out) == (2, "")
     assert "1 to 200" in err
+
+
+def test_a_row_is_taken_into_a_new_file(tmp_path, monkeypatch, capsys):
+    monkeypatch.chdir(tmp_path)
+    file = tmp_path / "mine.toml"
+    words = ["rummage", "20-10-flat", "--rows", "1", "--take", "2"]
+    assert cli.main([*words, "--out", "mine.toml"]) == 0
+    assert "trap of row 2 is in mine.toml" in capsys.readouterr().out
+    # Read back and solved, it is the row: the same trap on the same wires.
+    design, row = store.load(file), finished(preset("20-10-flat"), find_box(), 1).rows[1]
+    assert design.antenna.trap.coil == row.trap.coil
+    full = solve(design)
+    assert full.trap.resonance == pytest.approx(row.resonance, rel=1e-6)
+    assert full.lengths.inner == pytest.approx(row.outcome.inner, abs=2e-3)
+    before = file.read_bytes()
+    assert cli.main([*words, "--out", str(file)]) == 3
+    assert "nothing is written over" in capsys.readouterr().err
+    assert file.read_bytes() == before
+
+
+@pytest.mark.parametrize(
+    ("more", "said"),
+    [
+        (["--take", "1"], "--out and a file"),
+        (["--out", "new.toml"], "--take and the number"),
+        (["--take", "99", "--out", "new.toml"], "1 to "),
+        (["--take", "0", "--out", "new.toml"], "1 to "),
+    ],
+)
+def test_a_row_half_said_or_not_there_is_refused(tmp_path, monkeypatch, capsys, more, said):
+    monkeypatch.chdir(tmp_path)
+    assert cli.main(["rummage", "20-10-flat", "--rows", "1", *more]) == 2
+    assert said in capsys.readouterr().err
+    assert not list(tmp_path.iterdir())

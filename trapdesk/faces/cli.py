@@ -194,7 +194,9 @@ def _parser_of(verb: str) -> Parser:
         parser.add_argument("--out", metavar="NAME", help="write a file that is not there yet")
     if verb == "rummage":
         parser.add_argument("--box", metavar="FILE", help="what there is; the ready box unless said")
-        parser.add_argument("--rows", type=int, default=20, metavar="N", help="at most so many rows")
+        parser.add_argument("--rows", type=int, default=20, metavar="N", help=verb_words.ROWS)
+        parser.add_argument("--take", type=int, metavar="N", help="write the design with the trap of row N")
+        parser.add_argument("--out", metavar="NAME", help="to this file, which is not there yet")
         parser.add_argument(
             "--for-yield",
             choices=STAGES,
@@ -388,7 +390,8 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
     "rummage": (
         "Print the best traps a box of parts can build for a design, two of each.",
         rummage,
-        "trapdesk rummage 40-20-vee --box relief-box --rows 5",
+        "trapdesk rummage 40-20-vee --box relief-box --rows 5\n"
+        "  trapdesk rummage 40-20-vee --take 2 --out mine.toml",
         '\n\nA box is a TOML file of kind = "box"; relief-box is ready to copy. Ctrl-C keeps\n'
         "what was found so far. --for-yield takes about half a second a row\n"
         "more; brought to aim nearly every trap is good, wet tells them apart.",

@@ -27,6 +27,8 @@ Exit: 0 an answer, 1 no answer exists, 2 bad input, 3 a file that cannot be
 read or written.
 All figures are estimates until something is measured."""
 
+ROWS = "the best so many, 20 unless said, and the best of each kind"
+
 MATCH = """\
 Print how to match a load, network by network, the least loss first.
   Z f           the load, as 35-j120, 35-120j or "35 -120", and where

@@ -54,10 +54,10 @@ def _bytes(path: str | os.PathLike[str]) -> bytes:
     return data
 
 
-def write_new(path: str | os.PathLike[str], text: str) -> None:
+def write_new(path: str | os.PathLike[str], text: str, encoding: str = "ascii") -> None:
     """Write a file that is not there yet; FileFault when one is, or when it cannot be written."""
     try:
-        with open(path, "x", encoding="ascii", newline="\n") as file:
+        with open(path, "x", encoding=encoding, newline="\n") as file:
             file.write(text)
     except FileExistsError:
         raise FileFault(path, "already_there", help="nothing is written over; choose another name") from None
