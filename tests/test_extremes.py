@@ -155,7 +155,7 @@ def test_bands_are_told_apart(names, told, tmp_path, capsys):
         "line RG-58/U length=0.1um f=1.23456kHz Z=987654321+j123456",
         "match Z=0.00123-j98765432 f=1.23456789kHz power=999999W",
         "match Z=987654321 f=99GHz power=0.000001W network=t-clc",
-        "coil former=0.3m wire=0.2mm pitch=0.2mm turns=80 f=1.2345678MHz",
+        "coil former=0.3m wire=0.2mm pitch=1mm turns=80 f=1.2345678MHz",
     ],
 )
 def test_no_typed_value_prints_wider_than_a_terminal(typed, capsys):

@@ -701,7 +701,7 @@ def test_find_prefers_a_file_to_a_preset(tmp_path, monkeypatch):
     assert (found.design, found.text, str(found.path)) == (store.read_text(SMALL), SMALL, "80-40-flat.toml")
     assert store.find("80-40-flat").path is None
     assert "did you mean the preset 40-20-vee?" in file_fault(store.find, "40-20-ve")
-    assert "presets are 20-10-flat, 40-20-vee, 80-40-flat" in file_fault(store.preset, "nothing")
+    assert "presets are 20-10-flat, 40-20-vee, 80-40-cable, 80-40-flat" in file_fault(store.preset, "nothing")
     os.symlink("nowhere", tmp_path / "40-20-vee")
     assert "there is no such file" in file_fault(store.find, "40-20-vee")
 

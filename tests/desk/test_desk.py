@@ -85,8 +85,8 @@ async def test_an_edit_changes_the_design_and_the_figures():
         await settled(desk, pilot)
         assert desk.session.design.site.height == pytest.approx(472 * 0.0254)
         assert desk.session.figures.bands["lower"].dip != before.bands["lower"].dip
-        assert "height: 11.989 m, was 10 m" in text(desk)
-        assert "feed point at 11.989 m" in screen(desk)[1]
+        assert "height: 11.99 m, was 10 m" in text(desk)
+        assert "feed point at 11.99 m" in screen(desk)[1]
 
 
 async def test_a_gauge_is_typed_after_enter():
