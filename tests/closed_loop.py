@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
@@ -113,8 +113,12 @@ def advised(ensemble, bench, hung, random, read, seed):
             story.called = diagnosis.named[0].code if diagnosis.named else "misfits"
             story.ended = f"called {story.called}"
             return story
-        posterior = update(ensemble, hoists, seed=seed)
-        advice = advise(posterior, can_tune=True)
+        advice = advise(update(ensemble, hoists, seed=seed), can_tune=True)
+        if advice.verdict == "measure":
+            # It says to read the SWR at the wanted edges, which takes no lowering.
+            more = view.read_meter(random, 2, wanted=True)
+            hoists[-1] = replace(hoists[-1], readings=(*readings, *more))
+            advice = advise(update(ensemble, hoists, seed=seed), can_tune=True)
         if story.met_after is not None:
             story.said = advice.verdict
             return story

@@ -221,12 +221,16 @@ class View:
             )
         return tuple(found)
 
-    def read_meter(self, random, places=3, sigma=0.08):
-        """Return what a transmitter's meter shows: coarse, inside the band, off the scale above 3."""
+    def read_meter(self, random, places=3, sigma=0.08, *, wanted=False):
+        """Return what a transmitter's meter shows: coarse, inside the band, off the scale above 3.
+
+        It is read over the whole band, or over the `wanted` part alone.
+        """
         steps = [1.0, 1.2, 1.5, 2.0, 2.5, 3.0, math.inf]
         found = []
         for role, band in self.ensemble.design.bands.items():
-            for f in np.linspace(band.low, band.high, places):
+            ends = band.wanted_edges if wanted else (band.low, band.high)
+            for f in np.linspace(*ends, places):
                 shown = float(self.swr(role, f)[0]) * math.exp(sigma * random.standard_normal())
                 i = int(np.clip(np.searchsorted(steps, shown) - 1, 0, len(steps) - 2))
                 value = Interval(low=steps[i], high=steps[i + 1])

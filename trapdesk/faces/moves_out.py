@@ -82,15 +82,15 @@ def _nothing_read(found: NextMove) -> Iterator[str]:
 
 
 def _best_reading(found: NextMove) -> str:
-    """Return which reading to take next: a dip that is missing, else the SWR at the wanted edges."""
-    read = {(r.subject, r.what) for r in found.posterior.forward.readings}
-    for role in ROLES:
-        band = found.figures.bands.get(role)
-        if band is not None and not {(role, "dip"), (role, "z"), (role, "sweep")} & read:
-            return f"the dip on {band_name(band)}, as {role}.dip=..., at the radio's end of the line"
-    band = found.figures.bands["lower"]
-    edges = " and ".join(megahertz(f) for f in _edges(found, "lower"))
-    return f"the SWR on {band_name(band)} at {edges}, as lower.swr@...=..."
+    """Return which reading to take next: a dip where nothing was read, else SWR where the limit is judged."""
+    read = {r.subject for r in found.posterior.forward.readings}
+    roles = sorted(found.figures.bands, key=lambda role: found.advice.now.chances[role])
+    for role in roles:
+        if role not in read:
+            name = band_name(found.figures.bands[role])
+            return f"the dip on {name}, as {role}.dip=..., at the radio's end of the line"
+    edges = " and ".join(megahertz(f) for f in _edges(found, roles[0]))
+    return f"the SWR on {band_name(found.figures.bands[roles[0]])} at {edges}, as {roles[0]}.swr@...=..."
 
 
 def _edges(found: NextMove, role: str) -> tuple[float, float]:
@@ -162,8 +162,9 @@ def _move(found: NextMove) -> Iterator[str]:
         return
     if advice.verdict == "measure":
         reading = _best_reading(found)
-        text = f"No move is worth a lowering by what is known ({percent(advice.now.all_bands)} as it hangs)."
-        yield from folded("LEAVE IT  ", f"{text} To know more, read {reading}.")
+        chance = percent(advice.now.all_bands)
+        text = f"It meets the limit in {chance} of what is believed, and no move is worth a lowering."
+        yield from folded("LEAVE IT  ", f"{text} To be surer, read {reading}.")
         return
     if found.new_site and max(abs(x) for x in advice.best.change.values()) == 0:
         yield from folded("HANG IT  ", "as it is.")

@@ -68,7 +68,7 @@ class Need:
 
 @dataclass(frozen=True, kw_only=True)
 class Advice:
-    """What to do next. `verdict` is stop, wires, traps or measure.
+    """What to do next. `verdict` is stop, wires, traps, or measure: no move helps, reading more may.
 
     `lowerings` are the chances that no, one or two more lowerings do; what is left of 1 is out of reach of
     any length. `cut` is what may be cut off each folded-back wire after the move [m], `spare` what is folded
@@ -307,7 +307,7 @@ def advise(posterior: Posterior, *, can_tune: bool, reserve: float | None = None
     verdict = "traps" if best.tuning else "wires"
     still = all(value == 0.0 for value in best.change.values()) and not best.tuning
     if now.all_bands >= SURE or best.all_bands < now.all_bands + WORTH or still:
-        verdict = "stop" if now.all_bands >= ENOUGH else "measure"
+        verdict = "stop" if now.all_bands >= SURE else "measure"
         best = now
     lowerings = _lowerings(prospects, now, best)
     each = ensemble.design.doubts.risk / len(prospects.wires) / LOWERINGS
