@@ -229,8 +229,9 @@ def test_formulas_agree_within_their_stated_errors(shape):
     diameter, pitch, wire, turns = shape
     inductance, proximity = rings.solenoid_rings(*shape)
     uniform = rings.ring_sum(*shape)
-    # Crowding only lowers the inductance, by at most 8 % from pitch 1.5 d on.
-    assert 1.0 < uniform / inductance < 1.08
+    # Crowding moves the current inwards, no further than the inner edge of the wire; inductance goes with
+    # the diameter's square at most.
+    assert 1.0 < uniform / inductance < (diameter / (diameter - wire)) ** 2
     # Rosa's sum is the ring sum with tapes for rings: the two differ by what tapes of that width do.
     assert coil_formulas.rosa_inductance(*shape) == pytest.approx(uniform, rel=0.015)
     low, high = coil_formulas.MEDHURST_ERROR
