@@ -13,19 +13,20 @@ from scipy.optimize import brentq
 from tests.test_rummage import by_hand, finished, preset
 from trapdesk.design.box import Box, Cable, Capacitor, Core, Former, Wire
 from trapdesk.design.capacitor_kinds import GivenCapacitor
+from trapdesk.design.coil_kinds import GivenCoil
 from trapdesk.design.fields import SOLVE
 from trapdesk.design.parts import Trap
 from trapdesk.engine.cable_list import Terminals
 from trapdesk.errors import NoAnswer
-from trapdesk.services.box_parts import cable_part, capacitor_part, solenoid_part, stub_part, toroid_part
-from trapdesk.services.coils import COIL_DOUBT, CUT_TAIL
-from trapdesk.services.combos import STUB_DOUBT
-from trapdesk.services.offers import END_ROOM, RING_ROOM, SNIP_STEP, SPREAD
-from trapdesk.services.rummage import wanted_resonance
-from trapdesk.services.scoring import cost
-from trapdesk.services.solve import solve
-from trapdesk.services.trap import build
-from trapdesk.services.winders import SPACINGS
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.box.combos import STUB_DOUBT
+from trapdesk.services.box.offers import END_ROOM, RING_ROOM, SNIP_STEP, SPREAD
+from trapdesk.services.box.parts import cable_part, capacitor_part, solenoid_part, stub_part, toroid_part
+from trapdesk.services.box.rummage import wanted_resonance
+from trapdesk.services.box.scoring import cost
+from trapdesk.services.box.winders import SPACINGS
+from trapdesk.services.trap.built import build
+from trapdesk.services.trap.coils import COIL_DOUBT, CUT_TAIL
 
 LEAST, MOST = 70.0, 640.0
 """Reactances within which traps are sought. [ohm]"""
@@ -43,10 +44,10 @@ class Try:
     volts: float
     fixed: dict
 
-    @property
-    def bound(self) -> float:
-        """What it costs at least: loss, width and volts cost nothing below nothing."""
-        return float(cost(losses=[0], fillings=[0], volts_share=0.0, rated=True, **self.fixed).total)
+    def bound(self, least_losses) -> float:
+        """What it costs at least: what the trap surely takes; width and volts cost nothing below nothing."""
+        losses = least_losses(build(self.trap))
+        return float(cost(losses=losses, fillings=[0], volts_share=0.0, rated=True, **self.fixed).total)
 
 
 def small_box(seed):
@@ -108,14 +109,44 @@ def force(design, box, most):
     What costs more than the best already found before its antenna is solved need not be solved.
     """
     wanted, found = wanted_resonance(design), {}
-    for one in sorted(everything(box, wanted), key=lambda one: one.bound):
+    least = least_losses(design, wanted)
+    bounds = [(one.bound(least), place, one) for place, one in enumerate(everything(box, wanted))]
+    for bound, _, one in sorted(bounds):
         worst = sorted(found.values(), key=lambda v: v[0])[most - 1][0] if len(found) >= most else math.inf
-        if one.bound > min(worst, found.get(one.pair, (math.inf,))[0]):
+        if bound > min(worst, found.get(one.pair, (math.inf,))[0]):
             continue
         points = priced(design, wanted, one)
+        assert points is None or bound <= points
         if points is not None and points < found.get(one.pair, (math.inf,))[0]:
             found[one.pair] = (points, *one.pair, *one.shows)
     return sorted(found.values(), key=lambda v: v[0])[:most]
+
+
+def least_losses(design, wanted):
+    """Return what both traps surely take on each band, for any built trap, from plain ones solved in full.
+
+    A trap takes power at least as its coil does, by its reactance and resistance at resonance; nine tenths of
+    that leave room for a resistance that changes otherwise with frequency.
+    """
+    reactances, q, odds = np.geomspace(LEAST, MOST, 5), 300.0, []
+    for x in reactances:
+        capacitor = GivenCapacitor(capacitance=float(1 / (2 * math.pi * wanted * x)), q=None)
+        plain = Trap(
+            resonance=wanted, body=design.antenna.trap.body, coil=GivenCoil(q=q), capacitor=capacitor
+        )
+        full = solve(replace(design, antenna=replace(design.antenna, trap=plain)))
+        odds.append([b.shares.trap / (1 - b.shares.trap) * q for b in full.bands.values()])
+
+    def least(built):
+        inductance, _, resistance, _ = built.circuit(np.float64(built.resonance))
+        x = 2 * math.pi * built.resonance * float(inductance)
+        at = [
+            float(np.interp(math.log(x), np.log(reactances), of)) * resistance / x
+            for of in zip(*odds, strict=True)
+        ]
+        return [float(0.9 * odd / (1 + odd)) for odd in at]
+
+    return least
 
 
 def everything(box, wanted):
