@@ -7,12 +7,12 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from tests.hung_antenna import HONEST, WIDER, Hung
-from trapdesk.services.antenna_readings import Hoist, dips
-from trapdesk.services.ensemble import Ensemble
-from trapdesk.services.faults import Bench, diagnose
-from trapdesk.services.moves import Prospects, advise
-from trapdesk.services.solve import solve
-from trapdesk.services.updating import stage_of, update
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.hung.faults import Bench, diagnose
+from trapdesk.services.hung.moves import Prospects, advise
+from trapdesk.services.hung.readings import Hoist, dips
+from trapdesk.services.hung.updating import stage_of, update
+from trapdesk.services.trials.ensemble import Ensemble
 from trapdesk.store import store
 
 PRESETS = ("40-20-vee", "80-40-flat", "20-10-flat")

@@ -17,12 +17,12 @@ from trapdesk.engine.cables import propagation, transform
 from trapdesk.engine.mesh import Side
 from trapdesk.engine.ports import chebyshev_nodes, polynomial_weights, terminate
 from trapdesk.engine.wire import BentWire, plan, solve_whole
-from trapdesk.services.antenna_readings import dips, squared
-from trapdesk.services.beliefs import TWO_THIRDS, soil_at
-from trapdesk.services.ensemble import WIRES, Ensemble
-from trapdesk.services.lengths import slope_of
-from trapdesk.services.response import MARGIN
-from trapdesk.services.updating import latents_of, stage_of
+from trapdesk.services.antenna.lengths import slope_of
+from trapdesk.services.antenna.response import MARGIN
+from trapdesk.services.hung.readings import dips, squared
+from trapdesk.services.hung.updating import latents_of, stage_of
+from trapdesk.services.trials.beliefs import TWO_THIRDS, soil_at
+from trapdesk.services.trials.ensemble import WIRES, Ensemble
 
 NODES, GRID = 5, 321
 PIECES = 6

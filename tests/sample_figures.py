@@ -11,7 +11,7 @@ from trapdesk.design.parts import GivenCapacitor, Solenoid, Trap
 from trapdesk.engine.ground import Ground
 from trapdesk.engine.soils import GroundKind
 from trapdesk.engine.wire import Wire
-from trapdesk.services.figures import (
+from trapdesk.services.antenna.figures import (
     BandFigures,
     CoilFigures,
     Curve,

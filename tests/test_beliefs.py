@@ -21,10 +21,10 @@ from trapdesk.engine.ground import Ground
 from trapdesk.engine.resonator import lc_resonance
 from trapdesk.engine.sampling import normal_probability, normal_quantile, uniform
 from trapdesk.engine.soils import SOILS, UNKNOWN_SOIL, GroundKind
-from trapdesk.services.beliefs import Belief, beliefs, draw, soil_at
-from trapdesk.services.causes import deviation
-from trapdesk.services.trap import build
-from trapdesk.services.trial_traps import STAGES, TrialTraps
+from trapdesk.services.trap.built import build
+from trapdesk.services.trials.beliefs import Belief, beliefs, draw, soil_at
+from trapdesk.services.trials.causes import deviation
+from trapdesk.services.trials.traps import STAGES, TrialTraps
 
 MANY = 400_000
 

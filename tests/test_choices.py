@@ -12,8 +12,8 @@ from trapdesk.design.coil_kinds import GivenCoil
 from trapdesk.design.parts import Trap
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import choices_out, cli
-from trapdesk.services.choices import ABOVE, BELOW, choices
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.compare.choices import ABOVE, BELOW, choices
 from trapdesk.store import store
 
 

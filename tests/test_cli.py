@@ -86,7 +86,7 @@ def test_help(call, verb):
 
 @pytest.mark.parametrize("verb", cli.VERBS)
 def test_example_of_the_help_works(call, verb):
-    example = cli.VERBS[verb][2].partition(" >")[0].split()[1:]
+    example = cli.VERBS[verb][2].splitlines()[0].partition(" >")[0].split()[1:]
     code, out, err = call(*example)
     assert (code, err) == (0, "")
     assert len(out.splitlines()) > 10

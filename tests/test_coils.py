@@ -11,7 +11,7 @@ from scipy.constants import mu_0
 from tests.cases import published, reference
 from trapdesk.design.coil_kinds import Solenoid
 from trapdesk.engine import coil_formulas, coils, metals, rings
-from trapdesk.services.coils import build_coil
+from trapdesk.services.trap.coils import build_coil
 
 COPPER = metals.MATERIALS["copper"]
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=25)

@@ -13,7 +13,7 @@ from trapdesk.faces import cli, feed_json, feed_out
 from trapdesk.faces.layout import WIDTH, fitted
 from trapdesk.faces.rows import rows
 from trapdesk.faces.shown import about, known, percents
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
 PRESET = store.preset("80-40-cable")[0]

@@ -6,11 +6,11 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from trapdesk.services.antenna_readings import Forward, Hoist
-from trapdesk.services.ensemble import Ensemble
-from trapdesk.services.faults import Bench
-from trapdesk.services.solve import solve
-from trapdesk.services.updating import latents_of, stage_of
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.hung.faults import Bench
+from trapdesk.services.hung.readings import Forward, Hoist
+from trapdesk.services.hung.updating import latents_of, stage_of
+from trapdesk.services.trials.ensemble import Ensemble
 from trapdesk.store.toml_read import read_text
 
 HERE = Path(__file__).parent / "reference"

@@ -27,10 +27,10 @@ from trapdesk.engine.cables import propagation
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import cli, feed_out, json_out, layout, rows, words
 from trapdesk.faces.json_out import figures as document_of
-from trapdesk.services.feed import Path, Step, given_power, line_of, way_down
-from trapdesk.services.feed_point import FeedPoint
-from trapdesk.services.lone_line import to_load, to_seen
-from trapdesk.services.solve import at_frequencies, solve
+from trapdesk.services.antenna.feed_point import FeedPoint
+from trapdesk.services.antenna.solve import at_frequencies, solve
+from trapdesk.services.feed.lone_line import to_load, to_seen
+from trapdesk.services.feed.path import Path, Step, given_power, line_of, way_down
 from trapdesk.store import store
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=60)

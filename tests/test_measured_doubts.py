@@ -12,14 +12,14 @@ from scipy import stats
 
 from trapdesk.design.design import with_value
 from trapdesk.design.measured_part import Measured
-from trapdesk.services.advice import advise
-from trapdesk.services.beliefs import beliefs, draw
-from trapdesk.services.causes import trap_first_order
-from trapdesk.services.ensemble import Ensemble
-from trapdesk.services.measured_trap import doubts_of
-from trapdesk.services.solve import solve
-from trapdesk.services.trap import build
-from trapdesk.services.trial_traps import STAGES, Traps, TrialTraps
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.trap.built import build
+from trapdesk.services.trap.measured_trap import doubts_of
+from trapdesk.services.trials.advice import advise
+from trapdesk.services.trials.beliefs import beliefs, draw
+from trapdesk.services.trials.causes import trap_first_order
+from trapdesk.services.trials.ensemble import Ensemble
+from trapdesk.services.trials.traps import STAGES, Traps, TrialTraps
 from trapdesk.store import store
 
 PLAIN = store.preset("80-40-flat")[0]

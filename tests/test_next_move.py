@@ -17,13 +17,13 @@ from tests.hung_antenna import WIDER, Hung
 from trapdesk.design.design import with_value
 from trapdesk.design.reading_kinds import Doubt, Interval, Reading
 from trapdesk.design.station import FeedLine
-from trapdesk.services.antenna_readings import Forward, Hoist, ReadingUnusable
-from trapdesk.services.ensemble import Ensemble
-from trapdesk.services.faults import FAULTS, Bench, diagnose, of_other_band
-from trapdesk.services.moves import advise, step_of
-from trapdesk.services.next_move import next_move
-from trapdesk.services.solve import solve
-from trapdesk.services.updating import latents_of, learned, stage_of, update
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.hung.faults import FAULTS, Bench, diagnose, of_other_band
+from trapdesk.services.hung.moves import advise, step_of
+from trapdesk.services.hung.next_move import next_move
+from trapdesk.services.hung.readings import Forward, Hoist, ReadingUnusable
+from trapdesk.services.hung.updating import latents_of, learned, stage_of, update
+from trapdesk.services.trials.ensemble import Ensemble
 from trapdesk.store import store
 
 LONG = bool(os.environ.get("TRAPDESK_LONG"))

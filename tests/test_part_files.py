@@ -16,7 +16,7 @@ from trapdesk.engine.soils import GroundKind
 from trapdesk.errors import BadInput, NoAnswer, TrapdeskError
 from trapdesk.faces import cli, coil_out, json_out, layout, rows, sheet
 from trapdesk.faces.desk import form
-from trapdesk.services.solve import at_frequencies, solve
+from trapdesk.services.antenna.solve import at_frequencies, solve
 from trapdesk.store import store
 from trapdesk.store.toml_read import DesignFault
 from trapdesk.units import prints

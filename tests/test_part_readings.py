@@ -10,9 +10,9 @@ from trapdesk.design.design import with_value
 from trapdesk.engine.fits import Sweep, loop_impedance
 from trapdesk.engine.resonator import impedance
 from trapdesk.errors import NoAnswer
-from trapdesk.services.part_readings import find
-from trapdesk.services.part_values import ReadingRefused, ReadingsDisagree
-from trapdesk.services.trap import build
+from trapdesk.services.bench.part_readings import find
+from trapdesk.services.trap.built import build
+from trapdesk.services.trap.part_values import ReadingRefused, ReadingsDisagree
 from trapdesk.store import store
 from trapdesk.store.sweep_files import read
 from trapdesk.units.reading_text import parse

@@ -5,7 +5,7 @@ import pytest
 from trapdesk.faces import cli, trap_sheet
 from trapdesk.faces.lines import site_line
 from trapdesk.faces.shown import exact
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
 ONE_BAND = """

@@ -16,12 +16,12 @@ from trapdesk.design.design import with_value
 from trapdesk.design.measured_part import Measured
 from trapdesk.design.reading_kinds import KINDS, PARTS
 from trapdesk.faces import cli, readings_out
-from trapdesk.services.beliefs import beliefs, draw
-from trapdesk.services.ensemble import Ensemble
-from trapdesk.services.part_values import ReadingRefused
-from trapdesk.services.solve import solve
-from trapdesk.services.trap import build
-from trapdesk.services.trial_traps import STAGES
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.trap.built import build
+from trapdesk.services.trap.part_values import ReadingRefused
+from trapdesk.services.trials.beliefs import beliefs, draw
+from trapdesk.services.trials.ensemble import Ensemble
+from trapdesk.services.trials.traps import STAGES
 from trapdesk.store import store
 
 LOOP = HERE / "s1p" / "trap_loop_ma_mhz.s1p"

@@ -17,8 +17,8 @@ from trapdesk.design.fields import SOLVE
 from trapdesk.design.parts import GivenCapacitor, GivenCoil, Trap
 from trapdesk.engine.ports import terminate
 from trapdesk.engine.wire import plan, solve_ports
-from trapdesk.services.solve import at_frequencies, hang, solve
-from trapdesk.services.trap import build
+from trapdesk.services.antenna.solve import at_frequencies, hang, solve
+from trapdesk.services.trap.built import build
 
 REFERENCE = Path(__file__).parent / "reference"
 CASES = json.loads((REFERENCE / "antenna.json").read_text())["cases"]

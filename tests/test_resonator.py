@@ -14,7 +14,7 @@ from scipy.optimize import linprog, minimize_scalar
 
 from trapdesk.engine import resonator, tank
 from trapdesk.engine.stress import stress
-from trapdesk.services import tank as service
+from trapdesk.services.bench import tank as service
 
 HERE = Path(__file__).parent
 # Independent reference computation: 40-digit roots of the rational function (mpmath) and searches on the

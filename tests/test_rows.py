@@ -13,8 +13,8 @@ from tests.sample_figures import BANDS, DESIGN, FIGURES, FINDINGS, PLAIN, TRAP
 from trapdesk.design.design import Bands
 from trapdesk.errors import NoAnswer
 from trapdesk.faces import json_out, layout, rows, shown, words
-from trapdesk.services.figures import AtFrequency, Finding, Shares
-from trapdesk.services.levels import Level
+from trapdesk.services.antenna.figures import AtFrequency, Finding, Shares
+from trapdesk.services.antenna.levels import Level
 from trapdesk.units.unit_names import UNITS, Dimension
 
 EVERY = [FIGURES, PLAIN]

@@ -415,6 +415,7 @@ def priced(design, wanted, one):
 @pytest.mark.parametrize(("name", "seed"), [("40-20-vee", 11), ("20-10-flat", 12), ("80-40-flat", 13)])
 def test_ranking_is_that_of_trying_everything(name, seed):
     design, box = preset(name), small_box(seed)
+    box = replace(box, wires=box.wires[:2])
     expected = force(design, box, 5)
     rows = finished(design, box).rows[:5]
     assert len(expected) >= 3

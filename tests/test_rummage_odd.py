@@ -7,8 +7,8 @@ import pytest
 from tests.test_rummage import DISC, PIPE, SMALL, finished, preset
 from trapdesk.design.box import Cable
 from trapdesk.errors import NoAnswer
-from trapdesk.services.rummage import take
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.box.rummage import take
 
 
 def with_bands(design, resonance, **edges):

@@ -29,8 +29,8 @@ from trapdesk.design.parts import GivenCapacitor, GivenCoil, Solenoid, Trap
 from trapdesk.design.rules import InvalidDesign
 from trapdesk.engine.soils import SOILS
 from trapdesk.errors import NoAnswer, TrapdeskError
-from trapdesk.services.levels import Level
-from trapdesk.services.solve import at_frequencies, solve, with_site_effects
+from trapdesk.services.antenna.levels import Level
+from trapdesk.services.antenna.solve import at_frequencies, solve, with_site_effects
 from trapdesk.store import store
 
 UPPER = Band(name="40 m", low=7.0e6, high=7.2e6, wanted_low=7.05e6, wanted_high=7.1e6)

@@ -17,16 +17,16 @@ from trapdesk.design.parts import CableCoil, Sealing, StubCapacitor, Toroid
 from trapdesk.design.station import FeedLine
 from trapdesk.engine.ports import chebyshev_nodes, terminate, terminate_entries
 from trapdesk.engine.wire import plan, solve_whole
-from trapdesk.services import tolerance as service
-from trapdesk.services.advice import advise, for_yield
-from trapdesk.services.beliefs import CAUSES
-from trapdesk.services.causes import Regression, trap_first_order
-from trapdesk.services.ensemble import Ensemble, swr_of
-from trapdesk.services.response import swr
-from trapdesk.services.solve import solve
-from trapdesk.services.stages import run_stage
-from trapdesk.services.tolerance import allowance_of, quick_yield, tolerance, yield_of
-from trapdesk.services.trial_traps import STAGES
+from trapdesk.services.antenna.response import swr
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.trials import tolerance as service
+from trapdesk.services.trials.advice import advise, for_yield
+from trapdesk.services.trials.beliefs import CAUSES
+from trapdesk.services.trials.causes import Regression, trap_first_order
+from trapdesk.services.trials.ensemble import Ensemble, swr_of
+from trapdesk.services.trials.stages import run_stage
+from trapdesk.services.trials.tolerance import allowance_of, quick_yield, tolerance, yield_of
+from trapdesk.services.trials.traps import STAGES
 from trapdesk.store import store
 
 PRESETS = ("20-10-flat", "40-20-vee", "80-40-flat")

@@ -16,12 +16,12 @@ import pytest
 from trapdesk.design.design import with_value
 from trapdesk.design.parts import Sealing
 from trapdesk.faces import cli, hill_card, json_out, sheet, tolerance_json, tolerance_out, trial_run
-from trapdesk.services.advice import advise
-from trapdesk.services.beliefs import CAUSES, QUANTITIES
-from trapdesk.services.ensemble import Ensemble
-from trapdesk.services.solve import solve
-from trapdesk.services.tolerance import Yield, tolerance, yield_of
-from trapdesk.services.trial_traps import STAGES
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.trials.advice import advise
+from trapdesk.services.trials.beliefs import CAUSES, QUANTITIES
+from trapdesk.services.trials.ensemble import Ensemble
+from trapdesk.services.trials.tolerance import Yield, tolerance, yield_of
+from trapdesk.services.trials.traps import STAGES
 from trapdesk.store import store
 
 ROOT = Path(__file__).resolve().parent.parent

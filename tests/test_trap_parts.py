@@ -25,11 +25,11 @@ from trapdesk.engine.capacitors import stub_end_voltage, stub_impedance, stub_le
 from trapdesk.engine.dielectrics import DIELECTRICS
 from trapdesk.engine.resonator import impedance
 from trapdesk.errors import NoAnswer
-from trapdesk.services.capacitors import build_capacitor, drift_of, line_of, tolerance_of, weights
-from trapdesk.services.levels import Level
-from trapdesk.services.solve import solve
-from trapdesk.services.trap import build
-from trapdesk.services.trap_figures import adjustments
+from trapdesk.services.antenna.levels import Level
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.antenna.trap_figures import adjustments
+from trapdesk.services.trap.built import build
+from trapdesk.services.trap.capacitors import build_capacitor, drift_of, line_of, tolerance_of, weights
 from trapdesk.store import store
 from trapdesk.units import prints
 

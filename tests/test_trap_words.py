@@ -7,7 +7,7 @@ from pathlib import Path
 import pytest
 
 from trapdesk.faces import trap_rows, trap_sheet, words
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
 DESIGNS = Path(__file__).parent / "designs"

@@ -24,11 +24,11 @@ from trapdesk.engine.arms import Problem
 from trapdesk.engine.ladder import carried, input_impedance
 from trapdesk.engine.networks import NETWORKS, ladder_of
 from trapdesk.faces import cli, feed_out
-from trapdesk.services import tuning
-from trapdesk.services.feed import Path
-from trapdesk.services.feed_point import FeedPoint
-from trapdesk.services.reach import reach_map, reading, tuner_answer
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.feed_point import FeedPoint
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.compare.reach import reach_map, reading, tuner_answer
+from trapdesk.services.feed import tuner as tuning
+from trapdesk.services.feed.path import Path
 from trapdesk.store import store
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=40)

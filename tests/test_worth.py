@@ -10,10 +10,10 @@ from trapdesk.design.fields import SOLVE
 from trapdesk.design.station import Choke, FeedLine, Foldback, Segment, Transmitter, Tuner, TunerPlace
 from trapdesk.engine.cables import line_figures, propagation
 from trapdesk.faces import feed_out
-from trapdesk.services.feed import given_power, line_of
-from trapdesk.services.feed_point import FeedPoint
-from trapdesk.services.solve import solve
-from trapdesk.services.worth import POINTS, Way, worth
+from trapdesk.services.antenna.feed_point import FeedPoint
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.compare.worth import POINTS, Way, worth
+from trapdesk.services.feed.path import given_power, line_of
 from trapdesk.store import store
 
 DESIGN, _ = store.preset("40-20-vee")

@@ -16,7 +16,7 @@ from trapdesk.design.design import Shape, Site, with_value
 from trapdesk.design.fields import SOLVE
 from trapdesk.design.parts import GivenCoil, Solenoid
 from trapdesk.engine import rings
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
 WOUND = Solenoid(former=0.04, wire=1.6e-3, pitch=2.4e-3, turns=SOLVE)

@@ -8,8 +8,8 @@ import pytest
 from tests.bench.yardstick import ratio, record
 from tests.closed_loop import ensemble_of
 from trapdesk.design.reading_kinds import Doubt, Interval, Reading
-from trapdesk.services.antenna_readings import Hoist
-from trapdesk.services.updating import update
+from trapdesk.services.hung.readings import Hoist
+from trapdesk.services.hung.updating import update
 
 
 def of_dips(design, shift):

@@ -3,9 +3,9 @@
 from tests.bench.yardstick import ratio, record
 from trapdesk.engine.coil_table import quick_coil
 from trapdesk.engine.rings import _whole_rings
-from trapdesk.services.by_yield import by_yield
-from trapdesk.services.rummage import rummage
-from trapdesk.services.winders import TURNS
+from trapdesk.services.box.by_yield import by_yield
+from trapdesk.services.box.rummage import rummage
+from trapdesk.services.box.winders import TURNS
 from trapdesk.store import store
 from trapdesk.store.box_read import find_box
 

@@ -3,9 +3,9 @@
 import pytest
 
 from tests.bench.yardstick import ratio, record
-from trapdesk.services.ensemble import Ensemble
-from trapdesk.services.solve import solve
-from trapdesk.services.tolerance import tolerance
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.trials.ensemble import Ensemble
+from trapdesk.services.trials.tolerance import tolerance
 from trapdesk.store import store
 
 

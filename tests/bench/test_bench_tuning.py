@@ -7,9 +7,9 @@ import pytest
 from tests.bench.yardstick import ratio, record
 from trapdesk.design.design import with_value
 from trapdesk.design.station import FeedLine, Transmitter, Tuner, TunerCapacitor, TunerCoil
-from trapdesk.services.reach import reach_map, tuner_answer
-from trapdesk.services.solve import solve
-from trapdesk.services.worth import worth
+from trapdesk.services.antenna.solve import solve
+from trapdesk.services.compare.reach import reach_map, tuner_answer
+from trapdesk.services.compare.worth import worth
 from trapdesk.store import store
 
 

@@ -10,7 +10,7 @@ from trapdesk.faces.desk.app import Desk
 from trapdesk.faces.desk.form import DRAWERS
 from trapdesk.faces.desk.session import Session
 from trapdesk.faces.desk.terminal import Glyphs, Look
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
 CHARACTERS = {"space": " ", "plus": "+", "minus": "-", "question_mark": "?", "slash": "/"}

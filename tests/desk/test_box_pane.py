@@ -4,7 +4,7 @@ import asyncio
 
 from tests.desk.screens import LONGEST, opened, pressed, settled, text, typed
 from trapdesk.faces.desk.panes.jobs import RUMMAGE
-from trapdesk.services.by_yield import ranked
+from trapdesk.services.box.by_yield import ranked
 
 BOX = """
 format = 1

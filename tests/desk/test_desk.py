@@ -12,7 +12,7 @@ from trapdesk.design.design import get
 from trapdesk.design.fields import SOLVE
 from trapdesk.faces import rows
 from trapdesk.faces.desk.opening import run
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
 HEIGHT = "site.height"

@@ -17,7 +17,7 @@ from trapdesk.faces.desk.fresh import begun
 from trapdesk.faces.desk.journal import Journal
 from trapdesk.faces.desk.terminal import look
 from trapdesk.faces.desk.themes import THEMES
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
 HEIGHT = "site.height"

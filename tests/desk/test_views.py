@@ -13,8 +13,8 @@ from trapdesk.design.rules import check
 from trapdesk.faces import words
 from trapdesk.faces.desk import cures
 from trapdesk.faces.desk.plots import Panel, draw
-from trapdesk.services.levels import Level
-from trapdesk.services.solve import solve
+from trapdesk.services.antenna.levels import Level
+from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
 HEIGHT = "site.height"

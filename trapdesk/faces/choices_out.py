@@ -7,7 +7,7 @@ from typing import Any
 
 from ..design.design import Design
 from ..errors import visible
-from ..services.choices import Choices, Point
+from ..services.compare.choices import Choices, Point
 from .json_out import FORMAT
 from .layout import folded
 from .rummage_out import document_band

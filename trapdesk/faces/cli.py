@@ -217,7 +217,7 @@ def _parser_of(verb: str) -> Parser:
 
 
 def _figures_of(file: str) -> Any:
-    from ..services.solve import solve
+    from ..services.antenna.solve import solve
     from ..store import store
 
     return solve(store.find(file).design, site_effects=True)
@@ -228,7 +228,7 @@ def figures(options: argparse.Namespace) -> str:
     from .frequencies import frequencies_of
 
     frequencies = frequencies_of(options.at)
-    from ..services.solve import at_frequencies
+    from ..services.antenna.solve import at_frequencies
     from . import json_out, layout, rows
 
     found = _figures_of(options.file)
@@ -242,7 +242,7 @@ def figures(options: argparse.Namespace) -> str:
 
 def sheet(options: argparse.Namespace) -> str:
     """Return the build sheet of a design as text or JSON."""
-    from ..services.tolerance import tolerance as ensemble
+    from ..services.trials.tolerance import tolerance as ensemble
     from . import json_out
     from . import sheet as paper
 
@@ -322,7 +322,7 @@ def rummage(options: argparse.Namespace) -> str:
 
 def choices(options: argparse.Namespace) -> str:
     """Return what other trap resonances and other ratios of L to C would do, as text or JSON."""
-    from ..services import choices as service
+    from ..services.compare import choices as service
     from ..store import store
     from . import choices_out, json_out
 

@@ -9,7 +9,7 @@ from typing import Any
 from ..design.coil_kinds import COILS
 from ..design.fields import SOLVE, declared
 from ..errors import BadInput, Fault
-from ..services.coil_check import CoilAnswer, check_coil
+from ..services.bench.coil_check import CoilAnswer, check_coil
 from ..store import toml_read
 from . import trap_json
 from .json_out import FORMAT, inputs

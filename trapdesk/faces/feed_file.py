@@ -8,7 +8,7 @@ import numpy as np
 
 from .. import __version__
 from ..errors import visible
-from ..services.figures import Figures
+from ..services.antenna.figures import Figures
 from ..store.touchstone import touchstone
 from .json_out import FORMAT
 from .layout import WIDTH, folded

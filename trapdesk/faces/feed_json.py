@@ -5,12 +5,12 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any
 
-from ..services.feed import LineUse, Step
-from ..services.feed_findings import tuner_watts
-from ..services.figures import BandFigures, Figures
-from ..services.reach import ReachMap, TunerAnswer
-from ..services.tuning import Element, TunerSetting
-from ..services.worth import WayFigures, Worth
+from ..services.antenna.feed_findings import tuner_watts
+from ..services.antenna.figures import BandFigures, Figures
+from ..services.compare.reach import ReachMap, TunerAnswer
+from ..services.compare.worth import WayFigures, Worth
+from ..services.feed.path import LineUse, Step
+from ..services.feed.tuner import Element, TunerSetting
 
 VALUE_KEYS = {"coil": "inductance_h", "capacitor": "capacitance_f"}
 _UNIT = {"coil": "_h", "capacitor": "_f"}

@@ -10,12 +10,12 @@ import numpy as np
 
 from ..design.design import MODES
 from ..errors import visible
-from ..services.feed import Path, Step, way_down
-from ..services.feed_point import FeedPoint
-from ..services.figures import BandFigures, Figures
-from ..services.reach import ReachMap, TunerAnswer
-from ..services.tuning import TunerSetting
-from ..services.worth import Way, WayFigures, Worth
+from ..services.antenna.feed_point import FeedPoint
+from ..services.antenna.figures import BandFigures, Figures
+from ..services.compare.reach import ReachMap, TunerAnswer
+from ..services.compare.worth import Way, WayFigures, Worth
+from ..services.feed.path import Path, Step, way_down
+from ..services.feed.tuner import TunerSetting
 from ..units.unit_names import UNITS, Dimension
 from .feed_rows import element_name, element_value, line_name, loss_text, setting_text
 from .layout import WIDTH, folded

@@ -11,8 +11,8 @@ from ..errors import visible
 from .shown import about, exact, impedance, known, swr
 
 if TYPE_CHECKING:
-    from ..services.figures import BandFigures, Figures
-    from ..services.tuning import Element, TunerSetting
+    from ..services.antenna.figures import BandFigures, Figures
+    from ..services.feed.tuner import Element, TunerSetting
 
 DIMENSIONS = {"coil": "inductance", "capacitor": "capacitance"}
 TUNER_LEFT = "tuner set at aim"
@@ -113,7 +113,7 @@ def rows(figures: Figures, band: BandFigures) -> Iterator[dict[str, str]]:
             f"{feed.line.matched_loss:.2g} dB matched",
             line_name(station.line),
         )
-        from ..services.feed import voltage_rating
+        from ..services.feed.path import voltage_rating
 
         rated = voltage_rating(station.line)
         volts = known(feed.worst_voltage, feed.worst_voltage * band.stress_doubt, "voltage")
@@ -126,7 +126,7 @@ def rows(figures: Figures, band: BandFigures) -> Iterator[dict[str, str]]:
         yield row("transformer_w", "transformer", watts(feed.transformer_watts), why="lost in it at the aim")
     if feed.tuner is not None:
         yield row("tuner", "tuner", loss_text(feed.tuner), feed.tuner.network, "set for the aim, least loss")
-        from ..services.feed_findings import tuner_watts
+        from ..services.antenna.feed_findings import tuner_watts
 
         root = math.sqrt(tuner_watts(band))
         for number, element in enumerate(feed.tuner.elements, start=1):

@@ -6,8 +6,8 @@ import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 
-from ..services.figures import BandFigures, Figures
-from ..services.tolerance import Tolerance
+from ..services.antenna.figures import BandFigures, Figures
+from ..services.trials.tolerance import Tolerance
 from . import tolerance_out, words
 from .layout import WIDTH, folded
 from .lines import band_name, title

@@ -16,16 +16,8 @@ import numpy as np
 from ..design.capacitor_kinds import Printed
 from ..design.design import Design
 from ..design.fields import SOLVE, declared, walk
-from ..services.figures import (
-    AtFrequency,
-    BandFigures,
-    Effects,
-    Figures,
-    Finding,
-    Shares,
-    Stress,
-)
-from ..services.tank import TankAnswer
+from ..services.antenna.figures import AtFrequency, BandFigures, Effects, Figures, Finding, Shares, Stress
+from ..services.bench.tank import TankAnswer
 from . import feed_json, trap_json, words
 
 FORMAT = 1

@@ -14,7 +14,7 @@ from .rows import Row, shares_text, summary
 from .shown import impedance, known
 
 if TYPE_CHECKING:
-    from ..services.figures import AtFrequency, BandFigures, Figures, Stress
+    from ..services.antenna.figures import AtFrequency, BandFigures, Figures, Stress
 
 WIDTH = 79
 GROUPS: dict[str, str] = {

@@ -9,8 +9,8 @@ from ..design.station import OWN, FeedLine, LineWeather, ListedLoss
 from ..engine.cable_list import CABLES
 from ..engine.cable_types import LOSS_DOUBT
 from ..errors import BadInput, Fault
-from ..services.feed import line_of, voltage_rating
-from ..services.lone_line import LoneLine, to_load, to_seen
+from ..services.feed.lone_line import LoneLine, to_load, to_seen
+from ..services.feed.path import line_of, voltage_rating
 from ..units.unit_names import Dimension
 from ..units.units import read
 from . import feed_json, json_out

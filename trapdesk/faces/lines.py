@@ -15,7 +15,7 @@ from .feed_rows import line_name
 from .shown import Shown, about, centimetres, exact, kilohertz_per_step, known, measured, megahertz, swr
 
 if TYPE_CHECKING:
-    from ..services.figures import BandFigures, Figures
+    from ..services.antenna.figures import BandFigures, Figures
 
 
 def title(design: Design, longest: int = 60) -> str:
@@ -51,12 +51,12 @@ def rating(design: Design) -> float | None:
     if trap is None:
         return None
     if isinstance(trap.coil, CableCoil):
-        from ..services.capacitors import cable_rating
+        from ..services.trap.capacitors import cable_rating
 
         return cable_rating(trap.coil)
     part = trap.capacitor
     if isinstance(part, StubCapacitor):
-        from ..services.capacitors import cable_rating
+        from ..services.trap.capacitors import cable_rating
 
         return cable_rating(part)
     printed = getattr(part, "print", None)

@@ -10,9 +10,9 @@ from typing import Any
 from ..design.station import TUNER_NETWORKS, FeedLine, Tuner
 from ..engine.networks import NETWORKS
 from ..errors import BadInput, Fault, NoAnswer
-from ..services.feed import line_of
-from ..services.load_match import MatchedPart, Solution, solutions, with_line
-from ..services.tuning import TunerSetting, tune_at
+from ..services.feed.load_match import MatchedPart, Solution, solutions, with_line
+from ..services.feed.path import line_of
+from ..services.feed.tuner import TunerSetting, tune_at
 from . import feed_json, json_out
 from .feed_out import element_lines
 from .feed_rows import DIMENSIONS, PLACES, loss_text, setting_text, short_text

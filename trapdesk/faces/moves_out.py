@@ -7,9 +7,9 @@ from typing import Any
 
 from ..design.reading_kinds import KINDS, Reading
 from ..errors import visible
-from ..services.moves import Advice, Option
-from ..services.next_move import NextMove
-from ..services.updating import Learned
+from ..services.hung.moves import Advice, Option
+from ..services.hung.next_move import NextMove
+from ..services.hung.updating import Learned
 from . import hill_card, move_words
 from .json_out import FORMAT
 from .layout import WIDTH, folded

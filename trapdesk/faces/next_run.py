@@ -9,8 +9,8 @@ from ..design.design import Design, Site, Stay
 from ..design.history import History
 from ..design.reading_kinds import PARTS, Reading
 from ..errors import BadInput, Fault, FileFault, NoAnswer, visible
-from ..services import next_move as service
-from ..services.antenna_readings import ReadingUnusable
+from ..services.hung import next_move as service
+from ..services.hung.readings import ReadingUnusable
 from ..store import store
 from ..units import reading_text, units
 from . import json_out, move_words, moves_out, readings_out

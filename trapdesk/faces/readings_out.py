@@ -13,14 +13,9 @@ from ..design.reading_kinds import KINDS, PARTS, Doubt, Kind, Reading
 from ..engine.fits import Sweep
 from ..engine.measured import Estimate
 from ..errors import BadInput, Fault, NoAnswer, visible
-from ..services import measured_trap, part_readings
-from ..services.part_values import (
-    PartsFound,
-    ReadingRefused,
-    ReadingsDisagree,
-    Remark,
-    SweepFit,
-)
+from ..services.bench import part_readings
+from ..services.trap import measured_trap
+from ..services.trap.part_values import PartsFound, ReadingRefused, ReadingsDisagree, Remark, SweepFit
 from ..store import sweep_files
 from ..units import reading_text
 from . import reading_words as said

@@ -40,7 +40,7 @@ from .shown import (
 )
 
 if TYPE_CHECKING:
-    from ..services.figures import BandFigures, Figures, Finding, Shares
+    from ..services.antenna.figures import BandFigures, Figures, Finding, Shares
 
 # Which row of a band or a trap a finding belongs to, where its place alone does not tell.
 _FINDING_ROWS = {

@@ -10,11 +10,11 @@ from typing import Any
 from ..design.box import Box
 from ..design.design import Design
 from ..errors import visible
-from ..services.box_search import Row, Stub
-from ..services.port_grid import BandSummary
-from ..services.rummage import Found
-from ..services.scoring import WORDS
-from ..services.shortage import Shortage
+from ..services.box.rummage import Found
+from ..services.box.scoring import WORDS
+from ..services.box.search import Row, Stub
+from ..services.box.shortage import Shortage
+from ..services.compare.port_grid import BandSummary
 from .json_out import FORMAT, SUFFIXES
 from .json_out import inputs as inputs_of
 from .layout import folded

@@ -10,7 +10,7 @@ from typing import Any
 from ..design.box import Box
 from ..design.design import Design
 from ..errors import BadInput, Fault, FileFault, NoAnswer, visible
-from ..services.rummage import Found, rummage, take
+from ..services.box.rummage import Found, rummage, take
 from ..store import box_read, store, sweep_files
 from . import json_out, rummage_out
 
@@ -78,6 +78,6 @@ def search(design: Design, box: Box, rows: int, stage: str | None) -> Iterator[F
     for found in rummage(design, box, rows):
         yield found
     if stage and found.rows:
-        from ..services.by_yield import by_yield
+        from ..services.box.by_yield import by_yield
 
         yield from by_yield(design, found, stage)

@@ -6,8 +6,8 @@ from collections.abc import Iterator
 from typing import Any
 
 from ..design.design import Design, Shape
-from ..services.figures import Figures
-from ..services.tolerance import Tolerance
+from ..services.antenna.figures import Figures
+from ..services.trials.tolerance import Tolerance
 from . import feed_out, hill_card, json_out, tolerance_json, tolerance_out, trap_sheet, words
 from .feed_rows import loss_text, setting_text
 from .layout import WIDTH, fitted, folded, said

@@ -6,8 +6,8 @@ from collections.abc import Mapping, Sequence
 
 from ..engine.tank import TankQuantity, TankStatus
 from ..errors import BadInput, Fault
-from ..services import tank as service
-from ..services.tank import TankAnswer, TankBehaviour
+from ..services.bench import tank as service
+from ..services.bench.tank import TankAnswer, TankBehaviour
 from ..units.unit_names import ELEMENTS, Dimension
 from ..units.units import read_exact, show
 from .layout import fitted, folded

@@ -4,9 +4,17 @@ from __future__ import annotations
 
 from typing import Any
 
-from ..services.advice import Advice, ForYield, Step
-from ..services.beliefs import Belief
-from ..services.tolerance import RESULTS, Allowance, BandScatter, Scatter, StageScatter, Tolerance, Yield
+from ..services.trials.advice import Advice, ForYield, Step
+from ..services.trials.beliefs import Belief
+from ..services.trials.tolerance import (
+    RESULTS,
+    Allowance,
+    BandScatter,
+    Scatter,
+    StageScatter,
+    Tolerance,
+    Yield,
+)
 from .json_out import FORMAT
 
 

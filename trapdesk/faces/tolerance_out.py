@@ -10,10 +10,10 @@ import numpy as np
 from ..design.design import Design
 from ..design.doubts import Meaning
 from ..errors import visible
-from ..services.advice import Advice, Change, ForYield, Step
-from ..services.beliefs import CAUSES, Belief
-from ..services.causes import Shares
-from ..services.tolerance import Allowance, Scatter, StageScatter, Tolerance, Yield
+from ..services.trials.advice import Advice, Change, ForYield, Step
+from ..services.trials.beliefs import CAUSES, Belief
+from ..services.trials.causes import Shares
+from ..services.trials.tolerance import Allowance, Scatter, StageScatter, Tolerance, Yield
 from .layout import WIDTH, fitted, folded
 from .shown import LARGEST_SWR, about, centimetres, measured, megahertz, swr
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 from typing import Any
 
-from ..services.figures import Adjustment, CoilFigures, Figures, Heat, PartFigures, PartStress, Shift
+from ..services.antenna.figures import Adjustment, CoilFigures, Figures, Heat, PartFigures, PartStress, Shift
 
 
 def add_trap(table: dict[str, Any], figures: Figures) -> None:

@@ -14,7 +14,14 @@ from .lines import band_name, inductance_text, turns_doubt
 from .shown import Shown, about, exact, impedance_range, known, measured, megahertz, percent, small_step, swr
 
 if TYPE_CHECKING:
-    from ..services.figures import Adjustment, BandFigures, Figures, PartFigures, PartStress, TrapFigures
+    from ..services.antenna.figures import (
+        Adjustment,
+        BandFigures,
+        Figures,
+        PartFigures,
+        PartStress,
+        TrapFigures,
+    )
 
 Cells = dict[str, str]
 
@@ -114,7 +121,7 @@ def as_wound(figures: Figures) -> float:
         return trap.resonance_doubt
     parts = max(trap.tolerance) if trap.tolerance is not None else 0.0
     if trap.tolerance is None and any(part.length is not None for part in trap.parts):
-        from ..services.combos import STUB_DOUBT
+        from ..services.box.combos import STUB_DOUBT
 
         parts = STUB_DOUBT
     return trap.resonance_doubt + trap.resonance * parts * trap.fitted_capacitance / trap.capacitance / 2

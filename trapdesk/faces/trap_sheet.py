@@ -7,8 +7,8 @@ from typing import Any
 
 from ..design.coil_kinds import CableCoil, GivenCoil, Solenoid, Toroid
 from ..engine.cable_list import Terminals
-from ..services.coils import CUT_TAIL
-from ..services.figures import Figures, PartFigures
+from ..services.antenna.figures import Figures, PartFigures
+from ..services.trap.coils import CUT_TAIL
 from .layout import folded
 from .lines import inductance_text, rating, turns_doubt
 from .shown import about, exact, known, measured, megahertz, percent

@@ -65,10 +65,10 @@ def _stoppable(watch: _Watch) -> Iterator[None]:
 
 def run(file: str, trials: str, seed: str, for_yield: str | None) -> tuple[Any, Any, Any]:
     """Return the ensemble of a design, what would help, and the design chosen for yield if asked for."""
-    from ..services import advice
-    from ..services import tolerance as service
-    from ..services.ensemble import Ensemble
-    from ..services.solve import solve
+    from ..services.antenna.solve import solve
+    from ..services.trials import advice
+    from ..services.trials import tolerance as service
+    from ..services.trials.ensemble import Ensemble
     from ..store import store
 
     count = whole("--trials", trials, service.FEWEST, service.MOST, "10000")

@@ -7,9 +7,9 @@ from dataclasses import replace
 from ..design.design import Design
 from ..design.station import OWN, FeedLine
 from ..errors import BadInput, Fault
-from ..services.reach import reach_map, reading, tuner_answer
-from ..services.solve import solve
-from ..services.worth import worth
+from ..services.antenna.solve import solve
+from ..services.compare.reach import reach_map, reading, tuner_answer
+from ..services.compare.worth import worth
 from ..store import store
 from ..units.unit_names import Dimension
 from ..units.units import read, read_impedance

@@ -8,12 +8,12 @@ from typing import TYPE_CHECKING
 
 from ..design.design import Design, known_at
 from ..errors import NoAnswer, visible
-from ..services.levels import Level
+from ..services.antenna.levels import Level
 from ..units.unit_names import Dimension
 from . import shown
 
 if TYPE_CHECKING:
-    from ..services.figures import Finding
+    from ..services.antenna.figures import Finding
 
 ESTIMATE = "an estimate, not measured"
 MEASURED = "an estimate, traps as measured"

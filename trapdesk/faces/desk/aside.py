@@ -17,7 +17,7 @@ from ...errors import TrapdeskError
 from .refusals import reason
 
 if TYPE_CHECKING:
-    from ...services.figures import Figures
+    from ...services.antenna.figures import Figures
 
 SWITCHING = 0.0005
 """How long work aside may hold a key up before it is interrupted. [s]"""

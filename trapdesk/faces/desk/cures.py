@@ -14,7 +14,7 @@ from ...units.units import show
 from .. import shown
 
 if TYPE_CHECKING:
-    from ...services.figures import Figures, Finding
+    from ...services.antenna.figures import Figures, Finding
 
 EDGE_STEP = 5e3
 """Edges of a wanted part are tried at whole multiples of this. [Hz]"""

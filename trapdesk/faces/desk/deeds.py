@@ -13,7 +13,7 @@ from .mouse import switch
 from .themes import THEMES
 
 if TYPE_CHECKING:
-    from ...services.figures import Finding
+    from ...services.antenna.figures import Finding
     from .middle import Middle
     from .panes.drawers import DrawersPane
     from .panes.frame import Foot

@@ -24,7 +24,7 @@ from .lists import list_of, read_count, with_count
 from .optional import ADDED, PARTS, own_line, put_part
 
 if TYPE_CHECKING:
-    from ...services.figures import Figures
+    from ...services.antenna.figures import Figures
 
 DRAWERS: dict[str, tuple[str, ...]] = {
     "Site": ("title", "site."),

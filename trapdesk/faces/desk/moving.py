@@ -9,7 +9,7 @@ from ...design.design import Design, Stay
 from ...errors import BadInput, Fault
 
 if TYPE_CHECKING:
-    from ...services.figures import Figures
+    from ...services.antenna.figures import Figures
 
 
 def reads_here(design: Design) -> bool:

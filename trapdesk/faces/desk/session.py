@@ -15,7 +15,7 @@ from .aside import Aside
 from .form import FormRow, put
 
 if TYPE_CHECKING:
-    from ...services.figures import Figures
+    from ...services.antenna.figures import Figures
 
 
 class Session:

@@ -16,7 +16,7 @@ from .refusals import reason
 from .session import Session
 
 if TYPE_CHECKING:
-    from ...services.figures import Figures
+    from ...services.antenna.figures import Figures
 
 Solver = Callable[[Design, "Figures | None"], "Figures"]
 
@@ -56,7 +56,7 @@ class Solving:
 
     def _solve(self, generation: int, design: Design, previous: Figures | None) -> None:
         # What computes and draws is imported here, aside: the inputs are on the screen before it.
-        from ...services.solve import solve
+        from ...services.antenna.solve import solve
         from . import plots
 
         give_way()
@@ -68,7 +68,7 @@ class Solving:
         self._app.post_message(Solved(generation, outcome, complete=isinstance(outcome, str)))
 
     def _complete(self, generation: int, figures: Figures) -> None:
-        from ...services.solve import with_site_effects
+        from ...services.antenna.solve import with_site_effects
 
         self._app.post_message(Solved(generation, with_site_effects(figures), complete=True))
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from ....services.levels import Level
+from ....services.antenna.levels import Level
 from ... import rows as presenter
 from ...layout import GROUPS
 from ..lines import Line, wrapped

@@ -112,7 +112,7 @@ def _open(given: str, acting: Acting) -> None:
 
 def _take(acting: Acting) -> None:
     """Put the picked trap into the design, an edit as any other."""
-    from ....services.rummage import take
+    from ....services.box.rummage import take
     from ... import rummage_out
 
     session = acting.session

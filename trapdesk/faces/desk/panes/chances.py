@@ -47,7 +47,7 @@ def chances_lines(sight: Sight) -> list[Line]:
     width = sight.width
     text = f"of 100 antennas, how many keep SWR {found.design.station.swr_limit:.3g}"
     lines: list[Line] = [[(piece, "head")] for piece in wrapped(text, width)[:1]]
-    for name, stage in found.stages.items():
+    for name, stage in out.told_stages(found):
         chance = out.chance(stage.within)
         bands = ", ".join(
             f"{visible(band.name, 12)} {out.percent(band.within.share)}" for band in stage.bands.values()
@@ -74,7 +74,7 @@ def chances_line(session: Session, width: int) -> str:
     found = session.aside.found(TOLERANCE.name)
     if found is None:
         return f"yield: {session.aside.refusal(TOLERANCE.name) or 'being worked out'}"
-    shares = {name: out.percent(stage.within.share) for name, stage in found.stages.items()}
+    shares = {name: out.percent(stage.within.share) for name, stage in out.told_stages(found)}
     if width < _NARROW:
         return "yield: " + ", ".join(
             f"{out.STAGES[name].split()[-1]} {share.removesuffix(' %')}" for name, share in shares.items()

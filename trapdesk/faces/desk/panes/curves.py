@@ -8,7 +8,7 @@ from dataclasses import replace
 import numpy as np
 
 from ....errors import visible
-from ....services.figures import BandFigures, Curve, Figures
+from ....services.antenna.figures import BandFigures, Curve, Figures
 from ... import shown
 from ...lines import band_line, band_name, swr_text
 from ..lines import Line

@@ -9,7 +9,7 @@ from textual.message import Message
 
 from ....design.fields import SOLVE
 from ....errors import BadInput, Fault, visible
-from ....services.levels import Level
+from ....services.antenna.levels import Level
 from .. import form
 from ..form import DRAWERS, FormRow
 from ..lines import Line, Lines, padded

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 from textual.events import Key
 
 from ....errors import visible
-from ....services.levels import Level
+from ....services.antenna.levels import Level
 from ... import rows as presenter
 from ... import words
 from ..form import NONE, FormRow
@@ -22,7 +22,7 @@ from .going import next_line
 from .jobs import TOLERANCE
 
 if TYPE_CHECKING:
-    from ....services.figures import Figures
+    from ....services.antenna.figures import Figures
 
 # What a key does, the most needed first: the last ones go when there is no room.
 BROWSING = (

@@ -10,9 +10,9 @@ from ..aside import Job, Task
 
 if TYPE_CHECKING:
     from ....design.box import Box
-    from ....services.advice import Advice
-    from ....services.rummage import Found
-    from ....services.tolerance import Tolerance
+    from ....services.box.rummage import Found
+    from ....services.trials.advice import Advice
+    from ....services.trials.tolerance import Tolerance
 
 QUICK, SHEET, FULL = 1000, 2000, 10_000
 """Trials after each edit, those of the sheet, and those of the verb unless it is told otherwise."""
@@ -20,7 +20,7 @@ ROWS = 20
 
 
 def _trials(task: Task, count: int, ensemble: Any = None) -> Tolerance:
-    from ....services.tolerance import tolerance
+    from ....services.trials.tolerance import tolerance
 
     assert task.figures is not None
 
@@ -41,8 +41,8 @@ def _for_sheet(task: Task) -> Iterator[Tolerance]:
 
 def _full(task: Task) -> Iterator[tuple[Tolerance, Advice]]:
     """Yield few trials first, then as many as the verb takes."""
-    from ....services import advice
-    from ....services.ensemble import Ensemble
+    from ....services.trials import advice
+    from ....services.trials.ensemble import Ensemble
 
     assert task.figures is not None
     ensemble = Ensemble(task.figures)
@@ -55,7 +55,7 @@ def _full(task: Task) -> Iterator[tuple[Tolerance, Advice]]:
 
 
 def _choices(task: Task) -> Iterator[Any]:
-    from ....services.choices import choices
+    from ....services.compare.choices import choices
 
     yield choices(task.design)
 
@@ -70,8 +70,8 @@ class Rummaged:
 
 
 def _rummage(task: Task) -> Iterator[Rummaged]:
-    from ....services.by_yield import by_yield
-    from ....services.rummage import rummage
+    from ....services.box.by_yield import by_yield
+    from ....services.box.rummage import rummage
     from ....store import box_read
 
     fault = ""
@@ -101,8 +101,8 @@ class Fed:
 
 
 def _tuner(task: Task) -> Iterator[Fed]:
-    from ....services.reach import reach_map, tuner_answer
-    from ....services.worth import worth
+    from ....services.compare.reach import reach_map, tuner_answer
+    from ....services.compare.worth import worth
 
     figures = task.figures
     assert figures is not None
@@ -115,8 +115,8 @@ def _tuner(task: Task) -> Iterator[Fed]:
 
 def _for_yield(task: Task) -> Iterator[Any]:
     """Yield the design chosen for the stage that was asked for, nothing without one."""
-    from ....services.advice import for_yield
-    from ....services.tolerance import SEED
+    from ....services.trials.advice import for_yield
+    from ....services.trials.tolerance import SEED
 
     if task.asked:
         task.tell("trying other traps and aims")

@@ -13,7 +13,7 @@ from ..view import Acting, Sight
 from .texts import text_lines, waiting_lines
 
 if TYPE_CHECKING:
-    from ....services.figures import Figures
+    from ....services.antenna.figures import Figures
 
 KEYS = (
     ("Enter", "type one"), ("arrows", "scroll"), ("x", "write to a file"), ("Tab", "inputs"), ("v", "view"),
@@ -53,7 +53,7 @@ def _line(words: Sequence[str]) -> list[str]:
 
 def _at(figures: Figures | None, words: Sequence[str]) -> list[str]:
     """Return the design at single frequencies, as `figures --at` has it."""
-    from ....services.solve import at_frequencies
+    from ....services.antenna.solve import at_frequencies
     from ...frequencies import frequencies_of
     from ...layout import at_lines
 

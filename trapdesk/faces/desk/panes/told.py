@@ -50,7 +50,7 @@ def down_told(session: Session) -> list[str]:
 
 def loads_told(session: Session) -> list[str]:
     """Return map of reach and settings of the tuner, band by band; a load that was asked for first."""
-    from ....services.reach import reading
+    from ....services.compare.reach import reading
     from ....units import units
     from ... import feed_out
     from ...layout import folded

@@ -1,0 +1,1 @@
+"""The figures of one design: its wire solved with its traps, stress, weather and findings."""

@@ -1,0 +1,1 @@
+"""A part by itself on the bench: computed, or read off a meter."""

@@ -1,0 +1,1 @@
+"""What traps can be built from what lies in the box."""

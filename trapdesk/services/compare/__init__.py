@@ -1,0 +1,1 @@
+"""A design against what it could be: other resonances, other ways to feed it, other loads."""

@@ -1,0 +1,1 @@
+"""What lies between the feed point and the transmitter: line, transformer, tuner."""

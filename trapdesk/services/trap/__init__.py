@@ -1,0 +1,1 @@
+"""A trap and its parts as circuits."""
