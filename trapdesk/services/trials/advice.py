@@ -22,7 +22,7 @@ from .beliefs import Belief
 from .ensemble import Ensemble, reflection_of
 from .stages import run_stage
 from .tolerance import BLOCK, SEED, Yield, allowances, stage_yield
-from .traps import STAGES, Stage
+from .traps import AS_CUT, STAGES, Stage
 
 TRIALS, FEWEST = 2000, 200
 """Trials improvements are held against each other in, and the fewest in which that tells anything."""
@@ -114,7 +114,7 @@ IMPROVEMENTS: dict[str, tuple[bool, Callable[[_Plan], _Plan | None]]] = {
 
 def advise(ensemble: Ensemble, *, trials: int = TRIALS, seed: int = SEED) -> Advice:
     """Return what each improvement buys, for the antenna as cut."""
-    start = _Plan(STAGES[0], ensemble.varying)
+    start = _Plan(AS_CUT, ensemble.varying)
 
     def worth(plan: _Plan) -> Yield:
         return stage_yield(ensemble.with_beliefs(plan.varying), plan.stage, trials, seed)
@@ -207,7 +207,7 @@ class _Search:
             return -math.inf
         ensemble = self.ensemble.with_trap(design, trap)
         still = ensemble.nominal(1)
-        change = ensemble.to_aim({**still, **_no_reading(still)}, replace(STAGES[0], aimed=True), 1)
+        change = ensemble.to_aim({**still, **_no_reading(still)}, replace(AS_CUT, aimed=True), 1)
         if any(not np.isfinite(value).all() for value in change.values()):
             return -math.inf
         moved = {name: value[0] for name, value in change.items()}

@@ -20,7 +20,7 @@ from ..trap.built import BuiltTrap, build
 from .aiming import root
 from .beliefs import TWO_THIRDS, Belief, Draws, beliefs, draw
 from .nearby import Nearby, Table
-from .traps import STAGES, Circuit, Stage, Traps, TrialTraps
+from .traps import AS_CUT, Circuit, Stage, Traps, TrialTraps
 from .workspace import Workspace
 
 POINTS = 41
@@ -321,7 +321,7 @@ class Ensemble:
     def _slopes(self) -> np.ndarray:
         """Change of the reactance at each aim with each wire, in ohm per metre, for the nominal antenna."""
         count = 2 * len(self.unknown_wires)
-        stage = replace(STAGES[0], name="nominal")
+        stage = replace(AS_CUT, name="nominal")
         nothing = self.nominal(count)
         traps = self.traps(nothing, stage, count)
         places = self.places({}, count)

@@ -7,7 +7,7 @@ from collections.abc import Mapping
 import numpy as np
 
 from .ensemble import Ensemble, Outcome
-from .traps import STAGES, Stage, Traps
+from .traps import AIMED, Stage, Traps
 
 
 def run_stage(
@@ -33,7 +33,7 @@ def run_stage(
         aimed = [stage for stage in stages if stage.aimed and stage.tuned is tuned]
         if aimed:
             dry = next((stage for stage in aimed if not stage.wet), aimed[0])
-            known = free if dry == STAGES[2] else None
+            known = free if dry == AIMED else None
             change = ensemble.to_aim(draws, _dry(dry), count, most, known)
             lost = np.any([np.isnan(value) for value in change.values()], axis=0)
             for stage in aimed:

@@ -16,7 +16,7 @@ from .beliefs import Belief
 from .causes import Regression, Shares, corners, one_at_a_time, trap_first_order
 from .ensemble import Ensemble, Outcome, reflection_of, swr_of
 from .stages import run_stage
-from .traps import STAGES, Stage
+from .traps import AIMED, AS_CUT, STAGES, Stage
 
 TRIALS, SEED = 10_000, 1
 FEWEST, MOST = 2, 10_000_000
@@ -109,8 +109,8 @@ class StageScatter:
 class Allowance:
     """How much longer to cut a wire [m], so that adding some stays unlikely, and what it may cost.
 
-    `added` and `folded` are the most that is let out beyond the mark, and folded back within it, by 5 and 95
-    of 100; `reserve_risk` is the chance that the design's own reserve is too short.
+    5 of 100 antennas need less beyond the mark than `shortest`, 5 more than `longest`; what is folded back
+    within it is negative; `reserve_risk` is the chance that the design's own reserve is too short.
     """
 
     wire: str
@@ -190,7 +190,7 @@ def allowance_of(needs: Mapping[str, np.ndarray], risk: float) -> dict[str, floa
 
 def pilot_change(ensemble: Ensemble, draws: Mapping[str, np.ndarray], count: int) -> dict[str, np.ndarray]:
     """Return what would bring trials to the aims, traps tuned, however much wire that takes."""
-    return ensemble.to_aim(draws, STAGES[2], count)
+    return ensemble.to_aim(draws, AIMED, count)
 
 
 def part_of(values: Mapping[str, np.ndarray], begin: int, end: int) -> dict[str, np.ndarray]:
@@ -414,10 +414,10 @@ def _check(ensemble: Ensemble, draws: Mapping[str, np.ndarray], count: int, gath
     trap = None
     first = trap_first_order(ensemble)
     if first is not None:
-        built = ensemble.traps({n: v for n, v in draws.items() if n != "temperature"}, STAGES[0], count)
+        built = ensemble.traps({n: v for n, v in draws.items() if n != "temperature"}, AS_CUT, count)
         resonance = ensemble.of_traps.resonance(built)
         trap = (first, float(resonance.std() / resonance.mean()))
-    dips = one_at_a_time(ensemble, STAGES[0])
+    dips = one_at_a_time(ensemble, AS_CUT)
     return Check(
         trap=trap,
         dips={

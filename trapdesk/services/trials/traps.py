@@ -32,12 +32,11 @@ class Stage:
     wet: bool = False
 
 
-STAGES: tuple[Stage, ...] = (
-    Stage(name="as_cut"),
-    Stage(name="tuned", tuned=True, sealed=True),
-    Stage(name="aimed", tuned=True, sealed=True, aimed=True),
-    Stage(name="wet", tuned=True, sealed=True, aimed=True, wet=True),
-)
+AS_CUT = Stage(name="as_cut")
+TUNED = Stage(name="tuned", tuned=True, sealed=True)
+AIMED = Stage(name="aimed", tuned=True, sealed=True, aimed=True)
+WET = Stage(name="wet", tuned=True, sealed=True, aimed=True, wet=True)
+STAGES: tuple[Stage, ...] = (AS_CUT, TUNED, AIMED, WET)
 
 
 @dataclass(frozen=True, kw_only=True)
