@@ -32,6 +32,11 @@ def farthest(meaning: Meaning) -> float:
     return CUT / SIGMAS[meaning] if meaning in SIGMAS else 1.0
 
 
+def two_sigma(size: float, meaning: Meaning) -> float:
+    """Return a stated size as two sigma; limits stand as they are."""
+    return size * SIGMAS[Meaning.TWO_SIGMA] / SIGMAS[meaning] if meaning in SIGMAS else size
+
+
 def _relative(label: str, help: str, *, default: float | None, example: str = "") -> Any:
     return quantity(
         "ratio",
@@ -53,6 +58,10 @@ def _meaning(of: str, default: Meaning) -> Any:
         " normal, the size being one sigma, each part by itself.",
         default=default,
     )
+
+
+SITE = 0.007
+"""How far trees, slopes and masts may move a frequency. [1], common practice, no source"""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -223,7 +232,7 @@ class Doubts:
     site: float = _relative(
         "site doubt",
         "Trees, slopes and masts: what they may move the wire's frequency by.",
-        default=0.007,
+        default=SITE,
         example="0.7 %",
     )
     site_meaning: Meaning = _meaning("site", Meaning.TWO_SIGMA)

@@ -133,8 +133,6 @@ def tuner(
             "ways": [_way(one) for one in table.bands[role]],
         }
     return {
-        "format": 1,
-        "kind": "tuner",
         "bands": bands,
         "advice": str(table.advice),
         "gain": table.gain,

@@ -47,7 +47,7 @@ def layout(shown_rows: Iterable[Row]) -> list[str]:
             continue
         line = f"  {row.label:<27} {row.given:<16} {row.found}".rstrip()
         if row.finding is not None:
-            line = f"{line:<{WIDTH - 6}} {words.LEVELS[row.finding.level]}"
+            line = f"{line:<{WIDTH - 6}} {words.LEVEL_WORDS[row.finding.level]}"
         if len(line) > WIDTH:
             lines += folded(f"  {row.label:<27} ", f"{row.given} {row.found}".strip())
         else:

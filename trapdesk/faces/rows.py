@@ -361,7 +361,7 @@ def _effects(band: BandFigures) -> Iterator[Row]:
 def _findings(figures: Figures) -> Iterator[Row]:
     for number, finding in enumerate(words.ranked(figures.findings)):
         yield Row(
-            key=f"findings.{number}", group="findings", label=words.LEVELS[finding.level],
+            key=f"findings.{number}", group="findings", label=words.LEVEL_WORDS[finding.level],
             value=words.sentence(finding, figures.design), why=words.cure(finding), finding=finding,
         )  # fmt: skip
 
@@ -390,5 +390,5 @@ def summary(figures: Figures) -> tuple[Row, ...]:
     else:
         text = words.sentence(worst, figures.design)
         helps = words.cure_among(worst, figures.findings)
-        found += [row("worst", words.LEVELS[worst.level], f"{text}; {helps}" if helps else text, worst)]
+        found += [row("worst", words.LEVEL_WORDS[worst.level], f"{text}; {helps}" if helps else text, worst)]
     return (*found, row("next", "next", next_move(figures)))

@@ -175,7 +175,7 @@ def _findings(figures: Figures) -> Iterator[str]:
     yield "FINDINGS"
     for finding in words.ranked(figures.findings):
         text = words.sentence(finding, figures.design)
-        yield from said(f"  {words.LEVELS[finding.level]}: ", text, words.cure(finding))
+        yield from said(f"  {words.LEVEL_WORDS[finding.level]}: ", text, words.cure(finding))
     if not figures.findings:
         yield "  none"
 

@@ -32,7 +32,8 @@ def text(file: str, load: str | None, line: str | None, length: str | None, *, a
     table = worth(figures)
     readings = {} if asked is None else {role: reading(found, asked) for role, found in maps.items()}
     if as_json:
-        document = feed_json.tuner(figures, answers, maps, table)
+        document = {"format": json_out.FORMAT, "kind": "tuner"}
+        document |= feed_json.tuner(figures, answers, maps, table)
         for role, band in figures.bands.items():
             document["bands"][role]["way_down"] = feed_json.steps(feed_out.steps_of(figures, band))
             if role in readings:

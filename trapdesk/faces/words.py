@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 
 from ..design.design import Design, known_at
 from ..errors import NoAnswer, visible
-from ..services.antenna.levels import Level
+from ..services.antenna.levels import LEVELS, Level
 from ..units.unit_names import Dimension
 from . import shown
 
@@ -18,8 +18,9 @@ if TYPE_CHECKING:
 ESTIMATE = "an estimate, not measured"
 MEASURED = "an estimate, traps as measured"
 
-LEVELS: dict[Level, str] = {Level.FINE: "fine", Level.WATCH: "watch", Level.STOP: "STOP"}
-SEVERITY = (Level.STOP, Level.WATCH, Level.FINE)
+LEVEL_WORDS: dict[Level, str] = {Level.FINE: "fine", Level.WATCH: "watch", Level.STOP: "STOP"}
+SEVERITY = LEVELS[::-1]
+"""The worst first."""
 
 
 def basis(design: Design) -> str:

@@ -166,7 +166,7 @@ class Deeds:
         finding = ranked[after % len(ranked)]
         self._jumped = (finding,)
         self._go(finding)
-        self._desk.say(f"{words.LEVELS[finding.level]}: {words.sentence(finding, figures.design)}")
+        self._desk.say(f"{words.LEVEL_WORDS[finding.level]}: {words.sentence(finding, figures.design)}")
 
     def cure(self) -> None:
         """Try the cure of the finding last jumped to, else of the worst, as an edit that can be undone."""

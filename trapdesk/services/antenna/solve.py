@@ -9,6 +9,7 @@ from dataclasses import replace
 import numpy as np
 
 from ...design.design import MODES, UNKNOWN, Band, Design
+from ...design.doubts import SITE, Meaning, two_sigma
 from ...design.fields import SOLVE
 from ...design.rules import Breach, InvalidDesign, check
 from ...engine.conductors import coating_elastance
@@ -39,8 +40,6 @@ from .response import Behaviour, Look, Response, behave, swr
 from .trap_figures import trap_figures
 from .weather import shifts
 
-SITE_DOUBT = 0.007
-"""How far trees, slopes and masts may move a frequency, relative. Common practice, no source."""
 IMPEDANCE_DOUBT, UNKNOWN_IMPEDANCE_DOUBT = 0.05, 0.12
 """How far an impedance may be off over a named soil and over an unknown one, relative; an estimate."""
 SHARE_DOUBT, UNKNOWN_SHARE_DOUBT = 0.02, 0.15
@@ -308,7 +307,7 @@ def _band(
         parts=() if trap is None else part_stress(design, trap, wanted),
         effects=by,
         curve=Curve(frequency=near.frequency[::2], impedance=near.impedance[::2], swr=near.swr[::2]),
-        frequency_doubt=math.hypot(SITE_DOUBT * band.target, of_trap),
+        frequency_doubt=math.hypot(_site_doubt(design) * band.target, of_trap),
         impedance_doubt=relative * abs(aim.impedance),
         swr_doubt=relative * aim.swr,
         share_doubt=UNKNOWN_SHARE_DOUBT if unknown else SHARE_DOUBT,
@@ -400,6 +399,12 @@ def _worst(over: Behaviour, design: Design) -> Stress | None:
     return _stress(over, design, np.max, float(over.frequency[where]))
 
 
+def _site_doubt(design: Design) -> float:
+    """Return how far the site may move a frequency; where it is switched off, still the usual."""
+    doubts = design.doubts
+    return two_sigma(doubts.site or SITE, Meaning(doubts.site_meaning))
+
+
 def _lengths(design: Design, wire: Wire) -> LengthFigures:
     lengths, stretch = design.antenna.lengths, 1 + design.antenna.wire.stretch
     taken = wire.body / 2
@@ -421,5 +426,5 @@ def _lengths(design: Design, wire: Wire) -> LengthFigures:
         half_wave=C0 / 2 / design.bands.lower.target,
         end_height=None if wire.ground.kind is GroundKind.SPACE else wire.end_height,
         slope=wire.slope,
-        doubt=SITE_DOUBT * wire.inner,
+        doubt=_site_doubt(design) * wire.inner,
     )

@@ -25,7 +25,7 @@ from .capacitors import Limits
 
 WHERE = "antenna.trap.coil"
 COIL_DOUBT = 0.015
-"""How far the inductance of a coil wound by hand may be off, relative; a given one is taken as given."""
+"""How far the inductance of a coil made by hand may be off, turns, pitch and former with it. [1]"""
 WOUND_Q = (BUILT_Q[0] / BUILT_Q[1], BUILT_Q[2] / BUILT_Q[1])
 """What a coil of plain wire may reach of the Q computed, low and high."""
 TOROID_Q = (0.7, 1.2)

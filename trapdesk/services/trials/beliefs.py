@@ -18,10 +18,11 @@ from ...engine.sampling import normal_probability, normal_quantile, uniform
 from ...engine.soils import SOILS, UNKNOWN_SOIL_FROM, GroundKind
 from ..trap.built import BuiltTrap
 from ..trap.capacitors import tolerance_of
+from ..trap.coils import COIL_DOUBT
 from ..trap.measured_trap import doubts_of
 
-COIL, WOUND = 0.015, 0.005
-"""How far an inductance may be off: of a coil as made, and of one wound as computed. [1]"""
+WOUND = 0.005
+"""How far the inductance of a coil wound just as computed may be off. [1]"""
 CAPACITOR = 0.05
 """Tolerance of a capacitor nobody says anything of. [1], common practice, no source"""
 Q = 0.15
@@ -209,7 +210,7 @@ def _as_built(
     if doubts.coil is not None:
         size = doubts.coil
     elif isinstance(coil, GivenCoil):
-        size = COIL
+        size = COIL_DOUBT
     else:
         size = WOUND if isinstance(coil, Solenoid) else max(trap.doubt, WOUND)
     yield "coil", about("coil", size, doubts.alike if isinstance(coil, GivenCoil) else 1.0)

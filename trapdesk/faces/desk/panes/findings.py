@@ -17,7 +17,7 @@ def findings_lines(sight: Sight) -> list[Line]:
     lines: list[Line] = []
     for finding in words.ranked(figures.findings):
         style = STYLES[finding.level]
-        text = f"{words.LEVELS[finding.level]}: {words.sentence(finding, figures.design)}"
+        text = f"{words.LEVEL_WORDS[finding.level]}: {words.sentence(finding, figures.design)}"
         lines += [
             [((MARKS[finding.level] if not index else "  ") + piece, style)]
             for index, piece in enumerate(wrapped(text, sight.width - 2))
