@@ -21,8 +21,8 @@ from trapdesk.services.antenna.figures import (
     LengthFigures,
     Level,
     Shares,
-    Stress,
     TrapFigures,
+    TrapStress,
 )
 
 DESIGN = Design(
@@ -52,8 +52,8 @@ def curve(centre: float) -> Curve:
     return Curve(frequency=frequency, impedance=impedance, swr=np.array([3.1, 1.8, 1.2, 1.8, 3.1]))
 
 
-def stress(frequency: float) -> Stress:
-    return Stress(
+def stress(frequency: float) -> TrapStress:
+    return TrapStress(
         frequency=frequency,
         peak_voltage=1854.3,
         rms_current=0.2123,

@@ -30,7 +30,7 @@ from trapdesk.faces.json_out import figures as document_of
 from trapdesk.services.antenna.feed_point import FeedPoint
 from trapdesk.services.antenna.solve import at_frequencies, solve
 from trapdesk.services.feed.lone_line import to_load, to_seen
-from trapdesk.services.feed.path import Path, Step, given_power, line_of, way_down
+from trapdesk.services.feed.path import Path, WayStep, given_power, laid_line, way_down
 from trapdesk.store import store
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=60)
@@ -60,25 +60,27 @@ def call(capsys):
 
 
 def test_line_values_of_its_own_come_before_those_of_its_type():
-    listed = line_of(COAX)
+    listed = laid_line(COAX)
     assert (listed.z0, listed.velocity_factor) == (50.0, 0.66)
-    own = line_of(replace(COAX, z0=53.5, velocity_factor=0.7, losses=(ListedLoss(frequency=4e6, loss=0.02),)))
+    own = laid_line(
+        replace(COAX, z0=53.5, velocity_factor=0.7, losses=(ListedLoss(frequency=4e6, loss=0.02),))
+    )
     assert (own.z0, own.velocity_factor, own.dielectric_loss) == (53.5, 0.7, 0.0)
     # One loss counts to the conductors: 0.02 dB/m at 4 MHz is 0.01 at 1 MHz.
     assert own.skin_loss * 1e3 == pytest.approx(0.01, rel=1e-12)
 
 
 def test_age_and_rain_raise_the_loss():
-    new, old = line_of(COAX), line_of(replace(COAX, age=10.0, yearly_loss=0.03))
+    new, old = laid_line(COAX), laid_line(replace(COAX, age=10.0, yearly_loss=0.03))
     assert old.skin_loss / new.skin_loss == pytest.approx(1.3, rel=1e-12)
-    wet = line_of(replace(COAX, weather=LineWeather.WET))
+    wet = laid_line(replace(COAX, weather=LineWeather.WET))
     assert wet.skin_loss / new.skin_loss == pytest.approx(1.05, rel=1e-12)
     assert wet.velocity_factor == new.velocity_factor
     window = FeedLine(type="window line", length=25.0)
-    dry, wet = line_of(window), line_of(replace(window, weather=LineWeather.WET))
+    dry, wet = laid_line(window), laid_line(replace(window, weather=LineWeather.WET))
     assert wet.skin_loss / dry.skin_loss == pytest.approx(2.0, rel=1e-12)
     assert wet.velocity_factor / dry.velocity_factor == pytest.approx(0.97, rel=1e-12)
-    chosen = line_of(replace(window, weather=LineWeather.WET, wet_loss=3.0, wet_slower=0.1))
+    chosen = laid_line(replace(window, weather=LineWeather.WET, wet_loss=3.0, wet_slower=0.1))
     assert chosen.skin_loss / dry.skin_loss == pytest.approx(4.0, rel=1e-12)
 
 
@@ -111,7 +113,7 @@ def test_verb_line_against_scikit_rf(call, kind, length, frequency, load):
     assert code == 0
     found = json.loads(out)
     ours = complex(*found["z_in_ohm"])
-    theirs = cascade(line_of(FeedLine(type=kind, length=length)), length, frequency, load)
+    theirs = cascade(laid_line(FeedLine(type=kind, length=length)), length, frequency, load)
     assert abs(ours / theirs - 1) < 1e-9
 
 
@@ -240,7 +242,7 @@ def test_share_is_the_loss_of_the_line_by_definition():
 @pytest.mark.parametrize("judged_at", ["feed", "transmitter"])
 def test_judged_where_the_design_says_and_shown_at_the_other_place(judged_at):
     figures = solve(fed(line=COAX, judged_at=type(DESIGN.station.judged_at)(judged_at)))
-    point, line = FeedPoint(figures), line_of(COAX)
+    point, line = FeedPoint(figures), laid_line(COAX)
     for role, band in figures.bands.items():
         low, high = getattr(DESIGN.bands, role).wanted_edges
         frequency = np.array([low, high])
@@ -334,8 +336,8 @@ def test_power_in_is_power_out_and_losses(station, frequency, resistance, reacta
 
 def test_printed_watts_add_up_to_the_last_digit():
     watts = [33.4, 33.3, 33.3]
-    steps = [Step(code="sky", watts=w) for w in watts] + [
-        Step(code="feed", watts=100.0, impedance=50, swr=1.0)
+    steps = [WayStep(code="sky", watts=w) for w in watts] + [
+        WayStep(code="feed", watts=100.0, impedance=50, swr=1.0)
     ]
     assert feed_out.printed(steps) == ["34", "33", "33", "100"]
 

@@ -15,7 +15,7 @@ from trapdesk.design.measured_part import Measured
 from trapdesk.services.antenna.solve import solve
 from trapdesk.services.trap.built import build
 from trapdesk.services.trap.measured_trap import doubts_of
-from trapdesk.services.trials.advice import advise
+from trapdesk.services.trials.advice import improvements
 from trapdesk.services.trials.beliefs import beliefs, draw
 from trapdesk.services.trials.causes import trap_first_order
 from trapdesk.services.trials.ensemble import Ensemble
@@ -219,5 +219,5 @@ def test_values_without_a_doubt_are_certain():
 
 def test_nobody_is_told_to_measure_what_was_measured():
     ensemble = Ensemble(solve(with_measured(**CASES["all three, kept"][0])))
-    found = advise(ensemble, trials=200)
+    found = improvements(ensemble, trials=200)
     assert not {"match_traps", "tighter_capacitor"} & {step.code for step in (*found.steps, *found.then)}

@@ -20,7 +20,7 @@ from trapdesk.engine.wire import plan, solve_whole
 from trapdesk.services.antenna.response import swr
 from trapdesk.services.antenna.solve import solve
 from trapdesk.services.trials import tolerance as service
-from trapdesk.services.trials.advice import advise, for_yield
+from trapdesk.services.trials.advice import for_yield, improvements
 from trapdesk.services.trials.beliefs import CAUSES
 from trapdesk.services.trials.causes import Regression, trap_first_order
 from trapdesk.services.trials.ensemble import Ensemble, swr_of
@@ -292,7 +292,7 @@ def test_stages_do_what_they_say(vee):
 
 
 def test_advice_is_what_the_improved_antenna_does(vee):
-    found = advise(vee, trials=1000)
+    found = improvements(vee, trials=1000)
     by_code = {step.code: step for step in found.steps}
     assert by_code["tune_traps"].within == service.stage_yield(vee, TUNED, 1000, 1)
     tuned_open = replace(AIMED, tuned=False, sealed=False)
@@ -369,7 +369,7 @@ def test_every_kind_of_design_has_an_answer_of_numbers(design):
                 numbers = (result.mean, result.deviation, result.low, result.high, result.least, result.most)
                 assert np.isfinite(numbers).all()
     assert stage.within.share <= min(band.within.share for band in stage.bands.values())
-    assert advise(Ensemble(solve(design)), trials=200).steps
+    assert improvements(Ensemble(solve(design)), trials=200).steps
 
 
 @pytest.mark.parametrize("name", ["line", "coil of cable", "ring core", "stub", "coated", "mirror"])

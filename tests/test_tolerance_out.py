@@ -17,7 +17,7 @@ from trapdesk.design.design import with_value
 from trapdesk.design.parts import Sealing
 from trapdesk.faces import cli, hill_card, json_out, sheet, tolerance_json, tolerance_out, trial_run
 from trapdesk.services.antenna.solve import solve
-from trapdesk.services.trials.advice import advise
+from trapdesk.services.trials.advice import improvements
 from trapdesk.services.trials.beliefs import CAUSES, QUANTITIES
 from trapdesk.services.trials.ensemble import Ensemble
 from trapdesk.services.trials.tolerance import Yield, tolerance, yield_of
@@ -29,7 +29,7 @@ DESIGN = with_value(store.preset("40-20-vee")[0], "antenna.trap.weather.sealing"
 FIGURES = solve(DESIGN, site_effects=True)
 ENSEMBLE = Ensemble(FIGURES)
 FOUND = tolerance(FIGURES, trials=1000, seed=9, ensemble=ENSEMBLE)
-ADVICE = advise(ENSEMBLE, trials=300)
+ADVICE = improvements(ENSEMBLE, trials=300)
 TEXT = tolerance_out.lines(FOUND, ADVICE)
 NOT_A_NUMBER = re.compile(r"\bnan\b", re.IGNORECASE)
 
@@ -45,7 +45,7 @@ def test_few_trials_of_any_preset_read_well(name, trials):
     figures = solve(store.preset(name)[0])
     ensemble = Ensemble(figures)
     text = tolerance_out.lines(
-        tolerance(figures, trials=trials, ensemble=ensemble), advise(ensemble, trials=2)
+        tolerance(figures, trials=trials, ensemble=ensemble), improvements(ensemble, trials=2)
     )
     assert max(map(len, text)) <= 79
     # A column never touches the one before it.

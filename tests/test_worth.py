@@ -13,7 +13,7 @@ from trapdesk.faces import feed_out
 from trapdesk.services.antenna.feed_point import FeedPoint
 from trapdesk.services.antenna.solve import solve
 from trapdesk.services.compare.worth import POINTS, Way, worth
-from trapdesk.services.feed.path import given_power, line_of
+from trapdesk.services.feed.path import given_power, laid_line
 from trapdesk.store import store
 
 DESIGN, _ = store.preset("40-20-vee")
@@ -37,7 +37,7 @@ def ways(table, role):
 
 def test_as_it_is_by_hand():
     """Line, transmitter and wire put together once more, point by point."""
-    point, line = FeedPoint(LONG), line_of(FED.station.line)
+    point, line = FeedPoint(LONG), laid_line(FED.station.line)
     for role in LONG.bands:
         low, high = getattr(FED.bands, role).wanted_edges
         frequency = np.linspace(low, high, POINTS)

@@ -9,7 +9,7 @@ from ..services.antenna.feed_findings import tuner_watts
 from ..services.antenna.figures import BandFigures, Figures
 from ..services.compare.reach import ReachMap, TunerAnswer
 from ..services.compare.worth import WayFigures, Worth
-from ..services.feed.path import LineUse, Step
+from ..services.feed.path import LineUse, WayStep
 from ..services.feed.tuner import Element, TunerSetting
 
 VALUE_KEYS = {"coil": "inductance_h", "capacitor": "capacitance_f"}
@@ -47,7 +47,7 @@ def feed(band: BandFigures) -> dict[str, Any] | None:
     }
 
 
-def steps(found: tuple[Step, ...]) -> list[dict[str, Any]]:
+def steps(found: tuple[WayStep, ...]) -> list[dict[str, Any]]:
     """Return the way down: what stays where, and the places passed."""
     return [
         {"step": s.code, "lost_w": s.watts}

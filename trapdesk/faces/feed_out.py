@@ -14,7 +14,7 @@ from ..services.antenna.feed_point import FeedPoint
 from ..services.antenna.figures import BandFigures, Figures
 from ..services.compare.reach import ReachMap, TunerAnswer
 from ..services.compare.worth import Way, WayFigures, Worth
-from ..services.feed.path import Path, Step, way_down
+from ..services.feed.path import Path, WayStep, way_down
 from ..services.feed.tuner import TunerSetting
 from ..units.unit_names import UNITS, Dimension
 from .feed_rows import element_name, element_value, line_name, loss_text, setting_text
@@ -41,13 +41,13 @@ SHADES = ((0.3, "."), (1.0, ":"), (math.inf, "#"))
 OWN_MARK, AIM_MARK = "o", "X"
 
 
-def watt_unit(steps: Iterable[Step]) -> str:
+def watt_unit(steps: Iterable[WayStep]) -> str:
     """Return the unit the powers of a way down are told in."""
     *_, last = steps
     return known(last.watts, last.watts / 100, "power").unit or "W"
 
 
-def printed(steps: Iterable[Step]) -> list[str]:
+def printed(steps: Iterable[WayStep]) -> list[str]:
     """Return the powers of a way down as text, rounded so that what is printed adds up without a remainder.
 
     They are in `watt_unit`.
@@ -73,7 +73,7 @@ def printed(steps: Iterable[Step]) -> list[str]:
     return texts
 
 
-def steps_of(figures: Figures, band: BandFigures) -> tuple[Step, ...]:
+def steps_of(figures: Figures, band: BandFigures) -> tuple[WayStep, ...]:
     """Return the way down of a band, also where nothing lies between wire and transmitter."""
     if band.feed is not None:
         return band.feed.steps

@@ -16,7 +16,7 @@ import numpy as np
 from ..design.capacitor_kinds import Printed
 from ..design.design import Design
 from ..design.fields import SOLVE, declared, walk
-from ..services.antenna.figures import AtFrequency, BandFigures, Effects, Figures, Finding, Shares, Stress
+from ..services.antenna.figures import AtFrequency, BandFigures, Effects, Figures, Finding, Shares, TrapStress
 from ..services.bench.tank import TankAnswer
 from . import feed_json, trap_json, words
 
@@ -145,7 +145,7 @@ def _shares(shares: Shares) -> dict[str, Any]:
     return {f"{name}_share": getattr(shares, name) for name in names}
 
 
-def _stress(stress: Stress | None) -> dict[str, Any]:
+def _stress(stress: TrapStress | None) -> dict[str, Any]:
     return {
         "trap_peak_v": stress.peak_voltage if stress else None,
         "trap_rms_a": stress.rms_current if stress else None,

@@ -14,7 +14,7 @@ from .rows import Row, shares_text, summary
 from .shown import impedance, known
 
 if TYPE_CHECKING:
-    from ..services.antenna.figures import AtFrequency, BandFigures, Figures, Stress
+    from ..services.antenna.figures import AtFrequency, BandFigures, Figures, TrapStress
 
 WIDTH = 79
 GROUPS: dict[str, str] = {
@@ -108,7 +108,7 @@ def _impedance(z: complex, band: BandFigures) -> str:
     return impedance(z, part * abs(z.real), part * max(abs(z.real), abs(z.imag)))
 
 
-def _at_stress(stress: Stress | None, doubt: float) -> tuple[str, str]:
+def _at_stress(stress: TrapStress | None, doubt: float) -> tuple[str, str]:
     if stress is None:
         return "", ""
     volts = known(stress.peak_voltage, stress.peak_voltage * doubt, "voltage")

@@ -10,7 +10,7 @@ from ..engine.cable_list import CABLES
 from ..engine.cable_types import LOSS_DOUBT
 from ..errors import BadInput, Fault
 from ..services.feed.lone_line import LoneLine, to_load, to_seen
-from ..services.feed.path import line_of, voltage_rating
+from ..services.feed.path import laid_line, voltage_rating
 from ..units.unit_names import Dimension
 from ..units.units import read
 from . import feed_json, json_out
@@ -98,7 +98,7 @@ def losses(text: str) -> tuple[ListedLoss, ...]:
 
 def _answer(line: FeedLine, found: dict[str, Any]) -> LoneLine:
     try:
-        line_of(line)
+        laid_line(line)
     except ValueError as error:
         raise BadInput(Fault("loss", "cannot_be_fitted", help=str(error))) from None
     carried, end = (to_load, found["Z"]) if "Z" in found else (to_seen, found["Zin"])

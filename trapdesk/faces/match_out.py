@@ -11,7 +11,7 @@ from ..design.station import TUNER_NETWORKS, FeedLine, Tuner
 from ..engine.networks import NETWORKS
 from ..errors import BadInput, Fault, NoAnswer
 from ..services.feed.load_match import MatchedPart, Solution, solutions, with_line
-from ..services.feed.path import line_of
+from ..services.feed.path import laid_line
 from ..services.feed.tuner import TunerSetting, tune_at
 from . import feed_json, json_out
 from .feed_out import element_lines
@@ -88,7 +88,7 @@ def _free(typed: dict[str, Any], name: str) -> MatchAnswer:
     parts = Tuner()
     line = None
     if "line" in typed:
-        line = line_of(FeedLine(type=cable_named(typed["line"], "line"), length=1.0))
+        line = laid_line(FeedLine(type=cable_named(typed["line"], "line"), length=1.0))
     names = list(TUNER_NETWORKS.get(name, (name,))) if name else list(NETWORKS)
     if line is None:
         stubs = with_line(names)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from ..services.trials.advice import Advice, ForYield, Step
+from ..services.trials.advice import ForYield, Improvement, Improvements
 from ..services.trials.beliefs import Belief
 from ..services.trials.tolerance import (
     RESULTS,
@@ -19,7 +19,7 @@ from .json_out import FORMAT
 
 
 def document(
-    found: Tolerance, advice: Advice | None = None, chosen: ForYield | None = None
+    found: Tolerance, advice: Improvements | None = None, chosen: ForYield | None = None
 ) -> dict[str, Any]:
     """Return everything for scripts: SI, unit in the key."""
     out: dict[str, Any] = {
@@ -134,5 +134,5 @@ def _belief(belief: Belief) -> dict[str, Any]:
     return {"low": low, "high": high, "meaning": meaning, "alike": belief.alike if belief.pair else None}
 
 
-def _step_document(step: Step) -> dict[str, Any]:
+def _step_document(step: Improvement) -> dict[str, Any]:
     return {"code": step.code, "yield": _yield(step.within), "gain": step.gain}

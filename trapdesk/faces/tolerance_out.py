@@ -10,9 +10,9 @@ import numpy as np
 from ..design.design import Design
 from ..design.doubts import Meaning
 from ..errors import visible
-from ..services.trials.advice import Advice, Change, ForYield, Step
+from ..services.trials.advice import Change, ForYield, Improvement, Improvements
 from ..services.trials.beliefs import CAUSES, Belief
-from ..services.trials.causes import Shares
+from ..services.trials.causes import CauseShares
 from ..services.trials.tolerance import Allowance, Scatter, StageScatter, Tolerance, Yield
 from .layout import WIDTH, fitted, folded
 from .shown import LARGEST_SWR, about, centimetres, measured, megahertz, swr
@@ -150,7 +150,7 @@ def card_line(found: Tolerance) -> str:
     return f"Leave {leave}. Chance to hold the SWR: {told}."
 
 
-def lines(found: Tolerance, advice: Advice | None = None, chosen: ForYield | None = None) -> list[str]:
+def lines(found: Tolerance, advice: Improvements | None = None, chosen: ForYield | None = None) -> list[str]:
     """Return everything as lines of at most 79 columns."""
     out = [*folded("", f"TOLERANCE: {visible(found.design.title, 50)}; {trials_line(found)}"), ""]
     for part in (yields(found), scatters(found), causes(found), cutting(found)):
@@ -314,7 +314,7 @@ def causes(found: Tolerance) -> list[str]:
     return out
 
 
-def shares_text(shares: Shares | None) -> str:
+def shares_text(shares: CauseShares | None) -> str:
     """Return causes in order with their shares, and what remains by interaction."""
     if shares is None:
         return "does not scatter enough to tell"
@@ -363,7 +363,7 @@ def _signed(length: float) -> str:
     return f"{centimetres(length)} {'shorter' if length < 0 else 'longer'}"
 
 
-def helps(advice: Advice) -> list[str]:
+def helps(advice: Improvements) -> list[str]:
     """Return what each improvement buys."""
     trials = advice.base.trials
     out = [f"What would help most, from as cut, now {percent(advice.base.share)} ({trials} trials)"]
@@ -376,7 +376,7 @@ def helps(advice: Advice) -> list[str]:
     return out
 
 
-def _step(step: Step) -> str:
+def _step(step: Improvement) -> str:
     gain = 100 * step.gain
     return f"  {STEPS[step.code]:<61} {percent(step.within.share):>6} {gain:>+5.0f}"
 

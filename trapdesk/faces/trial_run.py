@@ -79,7 +79,7 @@ def run(file: str, trials: str, seed: str, for_yield: str | None) -> tuple[Any, 
     with _stoppable(watch):
         found = service.tolerance(figures, trials=count, seed=start, progress=watch, ensemble=ensemble)
     few = max(min(found.trials, advice.TRIALS), advice.FEWEST)
-    helps = advice.advise(ensemble, trials=few, seed=start)
+    helps = advice.improvements(ensemble, trials=few, seed=start)
     chosen = None
     if for_yield is not None:
         chosen = advice.for_yield(figures, stage=for_yield, seed=start)

@@ -41,7 +41,7 @@ class Shares:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Stress:
+class TrapStress:
     """What one trap bears at the stated power as a steady carrier, and on average in the stated mode.
 
     Coil and capacitor share the peak voltage; their currents are those that circulate in the trap.
@@ -107,8 +107,8 @@ class BandFigures:
     usable: tuple[float, float] | None
     shares: Shares
     feed_current: float
-    stress: Stress | None
-    worst_stress: Stress | None
+    stress: TrapStress | None
+    worst_stress: TrapStress | None
     effects: Effects | None
     curve: Curve
     frequency_doubt: float
@@ -307,4 +307,4 @@ class AtFrequency:
     swr: float
     shares: Shares
     feed_current: float
-    stress: Stress | None
+    stress: TrapStress | None

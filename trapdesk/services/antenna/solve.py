@@ -30,7 +30,7 @@ from .figures import (
     Figures,
     LengthFigures,
     Shares,
-    Stress,
+    TrapStress,
 )
 from .findings import find
 from .lengths import LEAST_END_HEIGHT, Search, find_lengths, first_guess, slope_of, solved_for
@@ -375,12 +375,12 @@ def at_point(over: Behaviour, i: int, design: Design) -> AtFrequency:
 
 def _stress(
     over: Behaviour, design: Design, pick: Callable[[np.ndarray], float], frequency: float
-) -> Stress | None:
+) -> TrapStress | None:
     """Return what one trap bears, each array of it brought to one number."""
     if over.stress is None:
         return None
     watts = float(pick(over.stress.total_power))
-    return Stress(
+    return TrapStress(
         frequency=frequency,
         peak_voltage=float(pick(over.stress.peak_voltage)),
         rms_current=float(pick(over.trap_current)),
@@ -391,7 +391,7 @@ def _stress(
     )
 
 
-def _worst(over: Behaviour, design: Design) -> Stress | None:
+def _worst(over: Behaviour, design: Design) -> TrapStress | None:
     """Return each kind of stress at its worst in the wanted part, and where the voltage is worst."""
     if over.stress is None:
         return None

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from ...design.station import FeedLine
 from ...engine.cables import DECIBELS, Line, line_figures, load_behind, propagation
 from ...errors import NoAnswer
-from .path import LineUse, line_of, line_use
+from .path import LineUse, laid_line, line_use
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -31,7 +31,7 @@ def to_load(line: FeedLine, frequency: float, load: complex, watts: float) -> Lo
 
     ValueError for losses that cannot be fitted.
     """
-    constants = line_of(line)
+    constants = laid_line(line)
     gamma, impedance = propagation(constants, frequency)
     found = line_figures(gamma, impedance, line.length, load, float(constants.z0))
     return LoneLine(
@@ -49,7 +49,7 @@ def to_seen(line: FeedLine, frequency: float, seen: complex, watts: float) -> Lo
 
     NoAnswer where no load at the far end can be the reason for it.
     """
-    gamma, impedance = propagation(line_of(line), frequency)
+    gamma, impedance = propagation(laid_line(line), frequency)
     load = complex(load_behind(gamma, impedance, line.length, seen))
     if not (math.isfinite(abs(load)) and load.real > 0):
         raise NoAnswer(

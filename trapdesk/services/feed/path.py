@@ -26,7 +26,7 @@ from ...engine.reflection import swr
 from .tuner import Tuned, TunerSetting, setting_seen, setting_share, tune, tune_at
 
 
-def line_of(feed_line: FeedLine) -> Line:
+def laid_line(feed_line: FeedLine) -> Line:
     """Return the line as it lies there, with age and weather; ValueError for losses that cannot be fitted."""
     cable = None if feed_line.type == OWN else CABLES[feed_line.type]
     listed = cable_line(cable) if cable is not None else None
@@ -100,7 +100,7 @@ class LineUse:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Step:
+class WayStep:
     """One line of the way down: watts that stay there, or with an impedance a place they pass.
 
     `code` is sky, ground, wire, traps, transformer, line, tuner coil, tuner capacitor for what keeps watts;
@@ -146,7 +146,7 @@ class FeedFigures:
     worst_transmitter_swr: float
     least_watts: float
     other: OtherPlace
-    steps: tuple[Step, ...]
+    steps: tuple[WayStep, ...]
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -173,7 +173,7 @@ class Path:
     def __init__(self, station: Station, *, typical_transmitter: bool = False) -> None:
         self.station, self.typical = station, typical_transmitter
         self.reference = station.reference
-        self.line = None if station.line is None else line_of(station.line)
+        self.line = None if station.line is None else laid_line(station.line)
         self.length = 0.0 if station.line is None else station.line.length
         choke = station.choke
         self.ratio = 1.0 if choke is None else choke.ratio
@@ -306,22 +306,22 @@ def line_use(found: LineFigures, load: complex, watts: float, i: int | tuple[()]
 
 def way_down(
     path: Path, passage: Passage, i: int, feed: complex, shares: Mapping[str, float]
-) -> tuple[Step, ...]:
+) -> tuple[WayStep, ...]:
     """Return the way from the wire to the transmitter at one frequency: what stays adds up to its power.
 
     `shares` are those of the power accepted at the feed point, by the codes they go under.
     """
     watts = float(passage.arriving[i])
-    steps = [Step(code=code, watts=share * watts) for code, share in shares.items()]
+    steps = [WayStep(code=code, watts=share * watts) for code, share in shares.items()]
 
     def place(code: str, passing: float, impedance: complex) -> None:
         ratio = float(swr(impedance, path.reference))
-        steps.append(Step(code=code, watts=passing, impedance=complex(impedance), swr=ratio))
+        steps.append(WayStep(code=code, watts=passing, impedance=complex(impedance), swr=ratio))
 
     def tuner() -> None:
         into, tuned = float(passage.into_tuner[i]), passage.tuned
         for code, share in (("tuner coil", tuned.all_coils), ("tuner capacitor", tuned.all_capacitors)):
-            steps.append(Step(code=code, watts=into * float(share[i])))
+            steps.append(WayStep(code=code, watts=into * float(share[i])))
 
     place("feed", watts, feed)
     if path.at_feed:
@@ -330,13 +330,13 @@ def way_down(
         place("tuner", watts, complex(passage.tuned.impedance[i]))
     if path.ratio != 1.0 or path.passed != 1.0:
         lost = float(passage.transformer[i])
-        steps.append(Step(code="transformer", watts=lost))
+        steps.append(WayStep(code="transformer", watts=lost))
         watts += lost
         if path.line is not None or (path.tuner is not None and not path.at_feed):
             place("line end", watts, complex(passage.line_load[i]))
     if path.line is not None:
         into = float(passage.in_line[i])
-        steps.append(Step(code="line", watts=into - into * float(passage.line.power_load[i])))
+        steps.append(WayStep(code="line", watts=into - into * float(passage.line.power_load[i])))
         if path.tuner is not None and not path.at_feed:
             place("line start", into, complex(passage.line.input_impedance[i]))
     if path.tuner is not None and not path.at_feed:

@@ -44,7 +44,7 @@ FARTHEST = (0.04, 0.5)
 
 
 @dataclass(frozen=True, kw_only=True)
-class Step:
+class Improvement:
     """One improvement by itself: what the yield becomes, in the same trials."""
 
     code: str
@@ -53,12 +53,12 @@ class Step:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Advice:
+class Improvements:
     """Improvements of an antenna built and hung as cut, the best first, and what goes best with the first."""
 
     base: Yield
-    steps: tuple[Step, ...]
-    then: tuple[Step, ...]
+    steps: tuple[Improvement, ...]
+    then: tuple[Improvement, ...]
 
 
 @dataclass(frozen=True)
@@ -112,28 +112,28 @@ IMPROVEMENTS: dict[str, tuple[bool, Callable[[_Plan], _Plan | None]]] = {
 """Improvements: whether they need a trap, and what they make of a plan; None where there is nothing to do."""
 
 
-def advise(ensemble: Ensemble, *, trials: int = TRIALS, seed: int = SEED) -> Advice:
+def improvements(ensemble: Ensemble, *, trials: int = TRIALS, seed: int = SEED) -> Improvements:
     """Return what each improvement buys, for the antenna as cut."""
     start = _Plan(AS_CUT, ensemble.varying)
 
     def worth(plan: _Plan) -> Yield:
         return stage_yield(ensemble.with_beliefs(plan.varying), plan.stage, trials, seed)
 
-    def steps(plan: _Plan, base: Yield) -> Iterator[tuple[Step, _Plan]]:
+    def steps(plan: _Plan, base: Yield) -> Iterator[tuple[Improvement, _Plan]]:
         for code, (for_traps, improve) in IMPROVEMENTS.items():
             if for_traps and ensemble.trap is None:
                 continue
             better = improve(plan)
             if better is not None:
                 within = worth(better)
-                yield Step(code=code, within=within, gain=within.share - base.share), better
+                yield Improvement(code=code, within=within, gain=within.share - base.share), better
 
     base = worth(start)
     first = sorted(steps(start, base), key=lambda pair: -pair[0].gain)
-    then: list[tuple[Step, _Plan]] = []
+    then: list[tuple[Improvement, _Plan]] = []
     if first and first[0][0].within.share < 1.0:
         then = sorted(steps(first[0][1], first[0][0].within), key=lambda pair: -pair[0].gain)
-    return Advice(base=base, steps=tuple(s for s, _ in first), then=tuple(s for s, _ in then))
+    return Improvements(base=base, steps=tuple(s for s, _ in first), then=tuple(s for s, _ in then))
 
 
 @dataclass(frozen=True, kw_only=True)

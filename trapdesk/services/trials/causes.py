@@ -31,7 +31,7 @@ class Share:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Shares:
+class CauseShares:
     """Shares of a result's variance, the largest first, and what no cause has by itself."""
 
     causes: tuple[Share, ...]
@@ -80,14 +80,14 @@ class Regression:
         self._square[np.diag_indices(at)] *= 1 + 1e-9
         self.enough = count >= max(FEWEST, 3 * at)
 
-    def shares(self, results: np.ndarray) -> list[Shares | None]:
+    def shares(self, results: np.ndarray) -> list[CauseShares | None]:
         """Return the shares of each result (trials, results); none of one that does not scatter."""
         if not self.enough:
             return [None] * results.shape[1]
         moved = results - results.mean(axis=0)
         spread = moved.var(axis=0)
         found = np.linalg.solve(self._square, self._terms.T @ moved)
-        answers: list[Shares | None] = []
+        answers: list[CauseShares | None] = []
         for i, variance in enumerate(spread):
             if not variance > 1e-18 * max(float(np.mean(results[:, i]) ** 2), 1e-30):
                 answers.append(None)
@@ -99,7 +99,7 @@ class Regression:
             }
             ranked = sorted(parts.items(), key=lambda pair: -pair[1])
             told = tuple(Share(cause=cause, share=share) for cause, share in ranked if share > SMALLEST)
-            answers.append(Shares(causes=told, together=max(0.0, 1.0 - sum(parts.values()))))
+            answers.append(CauseShares(causes=told, together=max(0.0, 1.0 - sum(parts.values()))))
         return answers
 
 

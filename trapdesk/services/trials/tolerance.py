@@ -13,7 +13,7 @@ from ...engine.sampling import quantiles
 from ..antenna.figures import Figures
 from ..antenna.solve import solve
 from .beliefs import Belief
-from .causes import Regression, Shares, corners, one_at_a_time, trap_first_order
+from .causes import CauseShares, Regression, corners, one_at_a_time, trap_first_order
 from .ensemble import Ensemble, Outcome, reflection_of, swr_of
 from .stages import run_stage
 from .traps import AIMED, AS_CUT, STAGES, Stage
@@ -65,7 +65,7 @@ class Scatter:
     high: float
     least: float
     most: float
-    causes: Shares | None
+    causes: CauseShares | None
     edges: np.ndarray
     counts: np.ndarray
 
@@ -388,7 +388,7 @@ def _values(one: Outcome) -> np.ndarray:
 
 
 def _scatter(
-    values: np.ndarray, tails: np.ndarray, causes: Shares | None, ends: tuple[float, float]
+    values: np.ndarray, tails: np.ndarray, causes: CauseShares | None, ends: tuple[float, float]
 ) -> Scatter:
     begin, low, middle, high, end = (float(tail) for tail in tails)
     if not end > begin:

@@ -11,7 +11,7 @@ from ..aside import Job, Task
 if TYPE_CHECKING:
     from ....design.box import Box
     from ....services.box.rummage import Found
-    from ....services.trials.advice import Advice
+    from ....services.trials.advice import Improvements
     from ....services.trials.tolerance import Tolerance
 
 QUICK, SHEET, FULL = 1000, 2000, 10_000
@@ -39,7 +39,7 @@ def _for_sheet(task: Task) -> Iterator[Tolerance]:
     yield _trials(task, SHEET)
 
 
-def _full(task: Task) -> Iterator[tuple[Tolerance, Advice]]:
+def _full(task: Task) -> Iterator[tuple[Tolerance, Improvements]]:
     """Yield few trials first, then as many as the verb takes."""
     from ....services.trials import advice
     from ....services.trials.ensemble import Ensemble
@@ -51,7 +51,7 @@ def _full(task: Task) -> Iterator[tuple[Tolerance, Advice]]:
         if task.stopped():
             return
         task.tell("what would help")
-        yield found, advice.advise(ensemble, trials=min(found.trials, advice.TRIALS), seed=found.seed)
+        yield found, advice.improvements(ensemble, trials=min(found.trials, advice.TRIALS), seed=found.seed)
 
 
 def _choices(task: Task) -> Iterator[Any]:
