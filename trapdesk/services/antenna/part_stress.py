@@ -13,7 +13,7 @@ from ...engine.capacitors import rating
 from ...engine.heat import over_share, temperature_rise
 from ...engine.toroids import toroid_flux
 from ..trap.built import BuiltTrap
-from ..trap.capacitors import Fitted, capacitance_of
+from ..trap.capacitors import FittedCapacitor, capacitance_of
 from .figures import BandFigures, Heat, PartStress
 from .response import Behaviour
 
@@ -68,7 +68,7 @@ def _part(
 
 
 def _capacitor(
-    fitted: Fitted, frequency: np.ndarray, volts: np.ndarray, amps: np.ndarray, mean: float
+    fitted: FittedCapacitor, frequency: np.ndarray, volts: np.ndarray, amps: np.ndarray, mean: float
 ) -> PartStress:
     limits, z = fitted.limits, fitted.impedance(frequency)
     reach = 1.0 if limits.reach is None else limits.reach(frequency)

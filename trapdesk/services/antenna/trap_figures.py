@@ -12,7 +12,7 @@ from ...design.parts import Sealing, Trap
 from ...engine.capacitors import stub_impedance
 from ...engine.resonator import dynamic_resistance, lc_resonance
 from ..trap.built import BuiltTrap
-from ..trap.capacitors import Fitted, capacitance_of, tolerance_of, varies_of, weights
+from ..trap.capacitors import FittedCapacitor, capacitance_of, tolerance_of, varies_of, weights
 from ..trap.coils import Wound
 from .figures import Adjustment, BandFigures, CoilFigures, Curve, PartFigures, TrapFigures
 from .part_stress import heat
@@ -109,7 +109,7 @@ def _follows(trap: BuiltTrap, wound: Wound, turns: float) -> float:
     return (wound.turns / turns) ** (power / 2)
 
 
-def _part(fitted: Fitted, frequency: float) -> PartFigures:
+def _part(fitted: FittedCapacitor, frequency: float) -> PartFigures:
     z = complex(fitted.impedance(np.float64(frequency)))
     source = fitted.loss_source
     return PartFigures(

@@ -16,7 +16,7 @@ from ...engine import resonator
 from ...engine.stress import Stress, stress
 from ...errors import NoAnswer
 from .cable_coil import BuiltCable, CableNetwork, build_cable
-from .capacitors import BuiltCapacitor, Fitted, Limits, build_capacitor, cable_rating, is_open
+from .capacitors import BuiltCapacitor, FittedCapacitor, Limits, build_capacitor, cable_rating, is_open
 from .coils import NO_SELF_CAPACITANCE, BuiltCoil, Wound, build_coil
 from .measured_trap import MeasuredNetwork, with_measured
 
@@ -274,7 +274,7 @@ def _of_cable(coil: CableCoil, resonance: float | None) -> BuiltTrap:
     built: BuiltCable = build_cable(coil, resonance)
     network = built.network
     inductance, capacitance, _ = network.equivalent
-    rating = Fitted(
+    rating = FittedCapacitor(
         key="antenna.trap.coil",
         name=coil.cable,
         impedance=network.impedance,

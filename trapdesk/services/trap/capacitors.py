@@ -43,7 +43,7 @@ class Limits:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Fitted:
+class FittedCapacitor:
     """One capacitor, or equal ones side by side.
 
     `key` is its place in the design, `tolerance` the relative error down and up, None where nobody said;
@@ -63,7 +63,7 @@ class Fitted:
     length: float | None = None
     line: Line | None = None
 
-    def shares(self, frequency: np.ndarray) -> Iterator[tuple[Fitted, np.ndarray, np.ndarray]]:
+    def shares(self, frequency: np.ndarray) -> Iterator[tuple[FittedCapacitor, np.ndarray, np.ndarray]]:
         """Yield every capacitor with its volts and amps per volt across the whole."""
         yield self, np.ones_like(frequency), 1 / np.abs(self.impedance(frequency))
 
@@ -74,14 +74,14 @@ class Joined:
 
     key: str
     in_series: bool
-    members: tuple[Fitted | Joined, ...]
+    members: tuple[FittedCapacitor | Joined, ...]
 
     def impedance(self, frequency: Any) -> Any:
         """Return the impedance of all of it, in ohm."""
         each = [member.impedance(frequency) for member in self.members]
         return sum(each) if self.in_series else 1 / sum(1 / z for z in each)
 
-    def shares(self, frequency: np.ndarray) -> Iterator[tuple[Fitted, np.ndarray, np.ndarray]]:
+    def shares(self, frequency: np.ndarray) -> Iterator[tuple[FittedCapacitor, np.ndarray, np.ndarray]]:
         """Yield every capacitor with its volts and amps per volt across the whole."""
         whole = np.abs(self.impedance(frequency))
         for member in self.members:
@@ -90,7 +90,7 @@ class Joined:
                 yield part, share * volts, amps * volts
 
 
-BuiltCapacitor = Fitted | Joined
+BuiltCapacitor = FittedCapacitor | Joined
 
 
 def capacitance_of(impedance: Any, frequency: Any) -> Any:
@@ -110,12 +110,14 @@ def build_capacitor(
     return BUILDERS[type(part)](part, key, frequency, reactance)
 
 
-def _given(part: GivenCapacitor, key: str, frequency: float | None, reactance: float | None) -> Fitted:
+def _given(
+    part: GivenCapacitor, key: str, frequency: float | None, reactance: float | None
+) -> FittedCapacitor:
     capacitance = part.capacitance
     if capacitance is SOLVE:
         capacitance = 1 / (2 * math.pi * frequency * reactance)
     z = _lossy(capacitance, 1 / part.q if part.q else 0.0)
-    return Fitted(
+    return FittedCapacitor(
         key=key,
         name=key.rpartition(".")[2],
         impedance=z,
@@ -129,7 +131,9 @@ def _lossy(capacitance: float, loss_tangent: float) -> Callable[[Any], Any]:
     return lambda frequency: (loss_tangent - 1j) / (2 * np.pi * frequency * capacitance)
 
 
-def _single(part: SingleCapacitor, key: str, frequency: float | None, reactance: float | None) -> Fitted:
+def _single(
+    part: SingleCapacitor, key: str, frequency: float | None, reactance: float | None
+) -> FittedCapacitor:
     said, pieces = part.print, int(part.count)
     dielectric = DIELECTRICS["ceramic, class 2" if said.varies else part.dielectric]
     loss, source = part.loss_tangent, "given"
@@ -138,7 +142,7 @@ def _single(part: SingleCapacitor, key: str, frequency: float | None, reactance:
         if dielectric is DIELECTRICS["ceramic"]:
             loss = 1 / float(engine.ceramic_q(said.capacitance))
     voltage, current, heat = part.voltage or said.voltage, part.current, part.heat
-    return Fitted(
+    return FittedCapacitor(
         key=key,
         name=said.text,
         impedance=_lossy(said.capacitance * pieces, loss),
@@ -177,11 +181,11 @@ def cable_rating(part: Any) -> float | None:
     return part.voltage or (None if working is None else math.sqrt(2) * working)
 
 
-def _stub(part: StubCapacitor, key: str, frequency: float | None, reactance: float | None) -> Fitted:
+def _stub(part: StubCapacitor, key: str, frequency: float | None, reactance: float | None) -> FittedCapacitor:
     line, length = line_of(part), part.length
     if length is SOLVE:
         length = float(engine.stub_length(frequency, line, reactance))
-    return Fitted(
+    return FittedCapacitor(
         key=key,
         name=f"stub of {part.cable}",
         impedance=lambda f: engine.stub_impedance(f, line, length),
@@ -234,7 +238,7 @@ BUILDERS: dict[type, Callable[[Any, str, float | None, float | None], BuiltCapac
 }
 
 
-def weights(built: BuiltCapacitor, frequency: float) -> list[tuple[Fitted, float]]:
+def weights(built: BuiltCapacitor, frequency: float) -> list[tuple[FittedCapacitor, float]]:
     """Return every capacitor with the share of the whole's relative change that its own makes."""
     at = np.float64(frequency)
     # A part's reactive power over that of the whole is how much the whole follows it.
