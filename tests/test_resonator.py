@@ -8,12 +8,12 @@ from pathlib import Path
 import mpmath
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 from scipy.optimize import linprog, minimize_scalar
 
-from trapdesk.engine import resonator, tank
-from trapdesk.engine.stress import stress
+from trapdesk.engine import resonances, resonator, tank
+from trapdesk.engine.stress import stress, stress_of_branches
 from trapdesk.services.bench import tank as service
 
 HERE = Path(__file__).parent
@@ -58,20 +58,20 @@ def parts_of(inputs):
 def test_reference_resonances(case):
     parts, expected = parts_of(case["inputs"]), case["expected"]
     z_lc = resonator.impedance(expected["f_lc_hz"], *parts)
-    low, high = resonator.half_power_frequencies(*parts)
-    q = resonator.qualities(*parts)
+    low, high = resonances.half_power_frequencies(*parts)
+    q = resonances.qualities(*parts)
     got = {
         "f_lc_hz": resonator.lc_resonance(*parts[:2]),
-        "f_upf_hz": resonator.unity_power_factor_resonance(*parts[:4]),
-        "f_zmax_hz": resonator.peak_resonance(*parts),
-        "z_max_ohm": resonator.peak_impedance(*parts),
+        "f_upf_hz": resonances.unity_power_factor_resonance(*parts[:4]),
+        "f_zmax_hz": resonances.peak_resonance(*parts),
+        "z_max_ohm": resonances.peak_impedance(*parts),
         "z_at_f_lc_re_ohm": z_lc.real,
-        "r_at_upf_ohm": resonator.dynamic_resistance(*parts),
-        "rd_highq_ohm": resonator.dynamic_resistance_high_q(*parts),
+        "r_at_upf_ohm": resonances.dynamic_resistance(*parts),
+        "rd_highq_ohm": resonances.dynamic_resistance_high_q(*parts),
         "q_from_components": q.components,
         "f_3db_lo_hz": low,
         "f_3db_hi_hz": high,
-        "bw_3db_hz": resonator.bandwidth(*parts),
+        "bw_3db_hz": resonances.bandwidth(*parts),
         "q_from_3db": q.half_power,
         "q_from_zmax": q.peak,
     }
@@ -81,9 +81,9 @@ def test_reference_resonances(case):
     assert z_lc.imag == pytest.approx(expected["z_at_f_lc_im_ohm"], rel=within, abs=within * abs(z_lc))
     if "r_at_upf_closed_form_ohm" in expected:
         assert got["r_at_upf_ohm"] == pytest.approx(expected["r_at_upf_closed_form_ohm"], rel=within)
-    below, above = resonator.lead_or_lag([0.5 * expected["f_lc_hz"], 2.0 * expected["f_lc_hz"]], *parts[:4])
-    words = {1: "inductive", -1: "capacitive"}
-    assert (words[int(below)], words[int(above)]) == (expected["sign_below_f0"], expected["sign_above_f0"])
+    signs = np.sign(resonator.impedance(np.array([0.5, 2.0]) * expected["f_lc_hz"], *parts).imag)
+    words = {1.0: "inductive", -1.0: "capacitive"}
+    assert [words[sign] for sign in signs] == [expected["sign_below_f0"], expected["sign_above_f0"]]
 
 
 @pytest.mark.parametrize("case", reference("res-", without=["res-nofr"]))
@@ -100,9 +100,9 @@ def test_reference_impedance(case):
 def test_reference_no_unity_power_factor(case):
     parts = parts_of(case["inputs"])
     assert case["expected"]["f_upf_hz"] is None
-    assert np.isnan(resonator.unity_power_factor_resonance(*parts[:4]))
-    assert np.isnan(resonator.dynamic_resistance(*parts))
-    assert resonator.unity_power_factor_status(*parts[:4]) == resonator.UnityPowerFactor.NONE
+    assert np.isnan(resonances.unity_power_factor_resonance(*parts[:4]))
+    assert np.isnan(resonances.dynamic_resistance(*parts))
+    assert resonances.unity_power_factor_status(*parts[:4]) == resonances.UnityPowerFactor.NONE
 
 
 @pytest.mark.parametrize("case", reference("pow-"))
@@ -191,7 +191,7 @@ def plain_impedance(f, l, c, r, r_c, r_p):  # noqa: E741 - as in the formulas
 @given(circuits(), logarithmic(0.05, 20.0))
 def test_impedance_is_branches_added(parts, ratio):
     f = ratio * resonator.lc_resonance(*parts[:2])
-    q = resonator.qualities(*parts).components
+    q = resonances.qualities(*parts).components
     # Near resonance the plain sum cancels: its rounding grows with Q.
     assert resonator.impedance(f, *parts) == pytest.approx(
         plain_impedance(f, *parts), rel=1e-13 * max(q, 1.0)
@@ -204,7 +204,7 @@ def test_peak_by_search(parts):
     f0 = resonator.lc_resonance(*parts[:2])
     grid = f0 * np.geomspace(1e-3, 1e3, 3001)
     values = np.abs(plain_impedance(grid, *parts))
-    f, z = resonator.peak_resonance(*parts), resonator.peak_impedance(*parts)
+    f, z = resonances.peak_resonance(*parts), resonances.peak_impedance(*parts)
     if np.isnan(f):
         assert np.isnan(z)
         assert max(values[0], values[-1]) >= values.max() * (1.0 - 1e-12)
@@ -236,14 +236,14 @@ def exact_square(l, c, r, r_c, r_p):  # noqa: E741 - as in the formulas
 @settings(fixed, max_examples=25)
 @given(circuits(largest_loss=0.8))
 def test_peak_and_width_in_forty_digits(parts):
-    got = resonator.peak_resonance(*parts)
-    low, high = resonator.half_power_frequencies(*parts)
-    width = resonator.bandwidth(*parts)
+    got = resonances.peak_resonance(*parts)
+    low, high = resonances.half_power_frequencies(*parts)
+    width = resonances.bandwidth(*parts)
     with mpmath.workdps(40):
         square = exact_square(*parts)
         if np.isnan(got):
             return
-        step = mpmath.mpf(10) ** -3 / resonator.qualities(*parts).components
+        step = mpmath.mpf(10) ** -3 / resonances.qualities(*parts).components
         at = mpmath.log(float(got))
         peak = mpmath.findroot(lambda x: mpmath.diff(square, x), (at, at + step), tol=1e-40, verify=False)
         assert got == pytest.approx(float(mpmath.exp(peak)), rel=1e-12)
@@ -267,22 +267,22 @@ def test_width_at_extreme_q(q):
     l, c = 2e-6, 5e-11  # noqa: E741 - as in the formulas
     half = np.sqrt(l / c) / q / 2.0
     parts = (l, c, half, half)
-    assert resonator.peak_resonance(*parts) == pytest.approx(resonator.lc_resonance(l, c), rel=1e-14)
-    assert resonator.peak_impedance(*parts) == pytest.approx((l / c + half**2) / (2.0 * half), rel=1e-14)
-    low, high = resonator.half_power_frequencies(*parts)
+    assert resonances.peak_resonance(*parts) == pytest.approx(resonator.lc_resonance(l, c), rel=1e-14)
+    assert resonances.peak_impedance(*parts) == pytest.approx((l / c + half**2) / (2.0 * half), rel=1e-14)
+    low, high = resonances.half_power_frequencies(*parts)
     if not np.isnan(low):
         assert low * high == pytest.approx(resonator.lc_resonance(l, c) ** 2, rel=1e-13)
-        assert resonator.bandwidth(*parts) == pytest.approx(high - low, rel=1e-15 * max(q, 10.0) * 10)
+        assert resonances.bandwidth(*parts) == pytest.approx(high - low, rel=1e-15 * max(q, 10.0) * 10)
     assert np.isnan(low) == np.isnan(high) == (q < 0.65)
 
 
 @fixed
 @given(circuits())
 def test_half_power_points_lie_on_the_curve(parts):
-    z = resonator.peak_impedance(*parts)
-    for f in resonator.half_power_frequencies(*parts):
+    z = resonances.peak_impedance(*parts)
+    for f in resonances.half_power_frequencies(*parts):
         if not np.isnan(f):
-            q = max(1.0, resonator.qualities(*parts).components)
+            q = max(1.0, resonances.qualities(*parts).components)
             assert abs(resonator.impedance(f, *parts)) == pytest.approx(
                 z / np.sqrt(2.0), rel=1e-13 * q + 1e-11
             )
@@ -291,8 +291,8 @@ def test_half_power_points_lie_on_the_curve(parts):
 @fixed
 @given(circuits())
 def test_missing_half_power_point_has_no_value_that_low(parts):
-    z, f = resonator.peak_impedance(*parts), resonator.peak_resonance(*parts)
-    low, high = resonator.half_power_frequencies(*parts)
+    z, f = resonances.peak_impedance(*parts), resonances.peak_resonance(*parts)
+    low, high = resonances.half_power_frequencies(*parts)
     if np.isnan(low) and not np.isnan(f):
         assert abs(resonator.impedance(1e-4 * f, *parts)) >= z / np.sqrt(2.0) * (1.0 - 1e-6)
     if np.isnan(high) and not np.isnan(f):
@@ -302,15 +302,14 @@ def test_missing_half_power_point_has_no_value_that_low(parts):
 @fixed
 @given(circuits())
 def test_unity_power_factor(parts):
-    f = resonator.unity_power_factor_resonance(*parts[:4])
-    status = resonator.unity_power_factor_status(*parts[:4])
-    assert np.isnan(f) == (status != resonator.UnityPowerFactor.ONE)
-    if status == resonator.UnityPowerFactor.ONE:
+    f = resonances.unity_power_factor_resonance(*parts[:4])
+    status = resonances.unity_power_factor_status(*parts[:4])
+    assert np.isnan(f) == (status != resonances.UnityPowerFactor.ONE)
+    if status == resonances.UnityPowerFactor.ONE:
         z = plain_impedance(f, *parts)
-        assert resonator.dynamic_resistance(*parts) == pytest.approx(z.real, rel=1e-9)
+        assert resonances.dynamic_resistance(*parts) == pytest.approx(z.real, rel=1e-9)
         assert abs(z.imag) <= 1e-9 * abs(z)
-        assert resonator.lead_or_lag(f, *parts[:4]) == 0
-    elif status == resonator.UnityPowerFactor.EVERY:
+    elif status == resonances.UnityPowerFactor.EVERY:
         z = plain_impedance(f0_grid(parts), *parts)
         assert np.all(np.abs(z.imag) <= 1e-13 * np.abs(z))
     else:
@@ -322,24 +321,14 @@ def f0_grid(parts):
     return resonator.lc_resonance(*parts[:2]) * np.geomspace(1e-2, 1e2, 41)
 
 
-@fixed
-@given(circuits(largest_loss=5.0))
-def test_lead_or_lag_is_the_sign_of_the_reactance(parts):
-    f = f0_grid(parts)
-    z = plain_impedance(f, *parts)
-    clear = np.abs(z.imag) > 1e-9 * np.abs(z)
-    assert np.array_equal(resonator.lead_or_lag(f, *parts[:4])[clear], np.sign(z.imag)[clear])
-
-
 def test_resistive_at_every_frequency():
     # r = r_c = sqrt(l/c) makes the impedance that resistance throughout.
     parts = (1e-6, 4e-10, 50.0, 50.0)
-    assert resonator.unity_power_factor_status(*parts) == resonator.UnityPowerFactor.EVERY
-    assert np.isnan(resonator.unity_power_factor_resonance(*parts))
-    assert resonator.dynamic_resistance(*parts) == pytest.approx(50.0, rel=1e-14)
+    assert resonances.unity_power_factor_status(*parts) == resonances.UnityPowerFactor.EVERY
+    assert np.isnan(resonances.unity_power_factor_resonance(*parts))
+    assert resonances.dynamic_resistance(*parts) == pytest.approx(50.0, rel=1e-14)
     f = np.geomspace(1e3, 1e9, 7)
     assert resonator.impedance(f, *parts) == pytest.approx(np.full(7, 50.0 + 0j), rel=1e-12)
-    assert not resonator.lead_or_lag(f, *parts).any()
 
 
 def test_lossless():
@@ -348,10 +337,10 @@ def test_lossless():
     assert resonator.impedance(f0, *parts) == complex(np.inf, 0.0)
     # jX with X = w l/(1 - w^2 l c), no resistance.
     assert resonator.impedance([0.5 * f0, 2.0 * f0], *parts) == pytest.approx([2j / 3, -2j / 3], rel=1e-14)
-    assert resonator.peak_impedance(*parts) == np.inf
-    assert resonator.half_power_frequencies(*parts) == (pytest.approx(f0), pytest.approx(f0))
-    assert resonator.bandwidth(*parts) == 0.0
-    q = resonator.qualities(*parts)
+    assert resonances.peak_impedance(*parts) == np.inf
+    assert resonances.half_power_frequencies(*parts) == (pytest.approx(f0), pytest.approx(f0))
+    assert resonances.bandwidth(*parts) == 0.0
+    q = resonances.qualities(*parts)
     assert (q.components, q.dynamic, q.half_power, q.peak) == (np.inf,) * 4
     driven = stress(f0, *parts, current=1.0)
     assert driven.voltage == np.inf and driven.total_power == 0.0
@@ -367,7 +356,7 @@ def test_watts_add_up(parts, ratio, current):
     f = ratio * resonator.lc_resonance(*parts[:2])
     got = stress(f, *parts, current=current)
     z = plain_impedance(f, *parts)
-    rounding = 1e-12 * max(resonator.qualities(*parts).components, 1.0)
+    rounding = 1e-12 * max(resonances.qualities(*parts).components, 1.0)
     assert got.total_power == pytest.approx(z.real * current**2, rel=rounding + 1e-10)
     reactive = got.coil_reactive - got.capacitor_reactive
     scale = max(got.coil_reactive, got.capacitor_reactive)
@@ -377,10 +366,58 @@ def test_watts_add_up(parts, ratio, current):
     assert back.coil_power == pytest.approx(got.coil_power, rel=1e-13)
 
 
+@fixed
+@given(circuits(), logarithmic(0.1, 10.0), logarithmic(1e-3, 10.0))
+def test_branches_of_plain_parts_are_the_resonator(parts, ratio, current):
+    inductance, capacitance, r, r_c, _ = parts
+    f = ratio * resonator.lc_resonance(inductance, capacitance)
+    w = 2.0 * np.pi * f
+    coil, capacitor = r + 1j * w * inductance, r_c + 1.0 / (1j * w * capacitance)
+    # What branches lose to rounding where they nearly cancel: up to Q times that of one of them.
+    q = max(resonances.qualities(inductance, capacitance, r, r_c).components, 1.0)
+    assume(q < 1e9)
+    within = 1e-12 + 1e-15 * q
+    plain = resonator.impedance(f, inductance, capacitance, r, r_c)
+    assert abs(resonator.impedance_of_branches(coil, capacitor) / plain - 1.0) < within
+    got = stress_of_branches(current, coil, capacitor)
+    expected = stress(f, inductance, capacitance, r, r_c, current=current)
+    for name, value in vars(expected).items():
+        assert getattr(got, name) == pytest.approx(value, rel=2.0 * within), name
+
+
+def test_branches_array_equals_scalar():
+    # (steps, 1) capacitors, one of them with a resistance below 0 by rounding, across (frequencies,) coils.
+    coil = np.array([1.0 + 200j, 2.0 + 400j, 3.0 + 800j])
+    capacitor = np.array([[0.1 - 300j], [-1e-18 - 500j]])
+    z = resonator.impedance_of_branches(coil, capacitor)
+    many = stress_of_branches(np.array([1.0, 2.0, 0.0]), coil, capacitor)
+    for at in np.ndindex(2, 3):
+        assert z[at] == resonator.impedance_of_branches(coil[at[1]], capacitor[at[0], 0])
+        one = stress_of_branches([1.0, 2.0, 0.0][at[1]], coil[at[1]], capacitor[at[0], 0])
+        for name, value in vars(one).items():
+            assert getattr(many, name)[at] == value, name
+    assert np.all(many.capacitor_power >= 0.0) and np.all(many.voltage[:, 2] == 0.0)
+    with pytest.raises(ValueError, match="current must be"):
+        stress_of_branches(-1.0, coil, capacitor)
+
+
+@fixed
+@given(logarithmic(1e6, 1e8), logarithmic(1e-13, 1e-3))
+def test_partner_resonates_there(frequency, value):
+    other = resonator.partner(frequency, value)
+    assert resonator.lc_resonance(value, other) == pytest.approx(frequency, rel=1e-14)
+    assert resonator.partner(frequency, other) == pytest.approx(value, rel=1e-14)
+    assert resonator.partner([frequency, 2.0 * frequency], value) == pytest.approx(
+        [other, other / 4.0], rel=1e-14
+    )
+    with pytest.raises(ValueError, match="value must be"):
+        resonator.partner(frequency, -value)
+
+
 def test_circulating_current_is_q_times_line_current():
     parts = (5e-6, 1e-10, 0.5)
-    q = resonator.qualities(*parts).components
-    got = stress(resonator.unity_power_factor_resonance(*parts), *parts, current=0.2)
+    q = resonances.qualities(*parts).components
+    got = stress(resonances.unity_power_factor_resonance(*parts), *parts, current=0.2)
     # At unity power factor |I_C| = w C R_D I = Q sqrt(1 - 1/Q^2) I.
     assert got.circulating_current == pytest.approx(0.2 * np.sqrt(q**2 - 1.0), rel=1e-12)
 
@@ -404,17 +441,16 @@ def flat(value):
     ("function", "count", "swept"),
     [
         (resonator.impedance, 5, True),
-        (resonator.lead_or_lag, 4, True),
         (resonator.lc_resonance, 2, False),
-        (resonator.unity_power_factor_resonance, 4, False),
-        (resonator.unity_power_factor_status, 4, False),
-        (resonator.peak_resonance, 5, False),
-        (resonator.peak_impedance, 5, False),
-        (resonator.half_power_frequencies, 5, False),
-        (resonator.bandwidth, 5, False),
-        (resonator.dynamic_resistance, 5, False),
-        (resonator.dynamic_resistance_high_q, 5, False),
-        (resonator.qualities, 5, False),
+        (resonances.unity_power_factor_resonance, 4, False),
+        (resonances.unity_power_factor_status, 4, False),
+        (resonances.peak_resonance, 5, False),
+        (resonances.peak_impedance, 5, False),
+        (resonances.half_power_frequencies, 5, False),
+        (resonances.bandwidth, 5, False),
+        (resonances.dynamic_resistance, 5, False),
+        (resonances.dynamic_resistance_high_q, 5, False),
+        (resonances.qualities, 5, False),
         (lambda *x: stress(*x, current=np.array([1.0, 2.0, 3.0, 4.0])), 5, True),
     ],
 )
@@ -449,7 +485,7 @@ def test_refuses(name, wrong):
     if name != "frequency":
         del good["frequency"]
         with pytest.raises(ValueError, match=f"{name} must be"):
-            resonator.peak_resonance(**good | {name: wrong})
+            resonances.peak_resonance(**good | {name: wrong})
 
 
 @pytest.mark.parametrize(
@@ -469,7 +505,7 @@ def test_refuses_losses(name, wrong):
     with pytest.raises(ValueError, match=f"{name} must be"):
         resonator.impedance(7e6, **good | {name: wrong})
     with pytest.raises(ValueError, match=f"{name} must be"):
-        resonator.bandwidth(**good | {name: wrong})
+        resonances.bandwidth(**good | {name: wrong})
 
 
 def test_stress_refuses():

@@ -24,6 +24,7 @@ The files, each one subject:
 ``cable_winding``     the same as a winding: inductance, resistance, turns for a resonance
 ``capacitors``        loss by Q or dielectric, open stubs, what voltage a capacitor stands
 ``resonator``         the one parallel resonator: trap, tuner element, trial and fit alike
+``resonances``        what it is known by: resonances, dynamic resistance, width, Q
 ``mesh``              sides of a wire cut into elements: quadratures, static integrals, sample points
 ``wire``              thin-wire integral equation: a wire with ports to its port matrix and currents
 ``ports``             that wire over frequency: port matrices, traps as terminations, interpolation

@@ -124,6 +124,11 @@ def half_power_centre(low: float, high: float) -> float:
     float
         Their geometric mean. [Hz]
 
+    Raises
+    ------
+    ValueError
+        If a value is not above 0; NaN counts as outside.
+
     Source
     ------
     Derived here: f/f0 - f0/f is the same but for its sign at both.

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from .limits import at_least
-from .resonator import impedance
+from .resonator import impedance, impedance_of_branches
 
 FloatArray = NDArray[np.float64]
 
@@ -122,3 +122,52 @@ def stress(
     }
     shape = np.broadcast_shapes(*(np.shape(value) for value in fields.values()))
     return Stress(**{name: np.broadcast_to(value, shape)[()] for name, value in fields.items()})
+
+
+def stress_of_branches(current: ArrayLike, coil: ArrayLike, capacitor: ArrayLike) -> Stress:
+    """Return what two branches in parallel carry for a current through both, whatever they are made of.
+
+    Parameters
+    ----------
+    current : float or array
+        Current through the whole circuit, rms. [A], >= 0
+    coil, capacitor : complex or array
+        Impedance of each branch. [ohm], neither they nor their sum 0
+
+    Returns
+    -------
+    Stress
+        Currents [A], voltages [V], powers [W], reactive powers [VA]; nothing in a shunt, and no power in a
+        capacitor whose resistance is below 0 by rounding.
+
+    Raises
+    ------
+    ValueError
+        If the current is outside the limits above; NaN counts as outside.
+
+    Source
+    ------
+    Derived here: the voltage is that across both, see `resonator.impedance_of_branches`.
+    """
+    at_least(0.0, current=current)
+    coil, capacitor = np.asarray(coil, dtype=complex), np.asarray(capacitor, dtype=complex)
+    across = np.asarray(current, dtype=float) * np.abs(impedance_of_branches(coil, capacitor))
+    through, beside = across / np.abs(coil), across / np.abs(capacitor)
+    coil_power = through**2 * coil.real
+    capacitor_power = beside**2 * np.maximum(capacitor.real, 0.0)
+    nothing = np.zeros_like(across)
+    return Stress(
+        line_current=np.broadcast_to(np.asarray(current, dtype=float), across.shape)[()],
+        voltage=across,
+        peak_voltage=np.sqrt(2.0) * across,
+        coil_current=through,
+        capacitor_current=beside,
+        shunt_current=nothing,
+        circulating_current=np.minimum(through, beside),
+        coil_power=coil_power,
+        capacitor_power=capacitor_power,
+        shunt_power=nothing,
+        total_power=coil_power + capacitor_power,
+        coil_reactive=through**2 * np.abs(coil.imag),
+        capacitor_reactive=beside**2 * np.abs(capacitor.imag),
+    )

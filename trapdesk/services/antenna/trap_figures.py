@@ -10,7 +10,8 @@ from ...design.coil_kinds import Solenoid, Toroid
 from ...design.design import Design
 from ...design.parts import Sealing, Trap
 from ...engine.capacitors import stub_impedance
-from ...engine.resonator import dynamic_resistance, lc_resonance
+from ...engine.resonances import dynamic_resistance
+from ...engine.resonator import lc_resonance
 from ..trap.built import BuiltTrap
 from ..trap.capacitors import FittedCapacitor, capacitance_of, tolerance_of, varies_of, weights
 from ..trap.coils import Wound

@@ -6,7 +6,7 @@ from types import MappingProxyType
 
 import numpy as np
 
-from ...engine import resonator
+from ...engine import resonances, resonator
 from ...engine.tank import Disagreement, TankQuantity, TankStatus, solve_tank
 
 
@@ -132,20 +132,20 @@ def behaviour(inductance: float, capacitance: float, coil_resistance: float) -> 
         If any value is outside the limits above; NaN counts as outside.
     """
     parts = (inductance, capacitance, coil_resistance)
-    low, high = resonator.half_power_frequencies(*parts)
-    exact = resonator.dynamic_resistance(*parts)
-    high_q = resonator.dynamic_resistance_high_q(*parts)
-    largest = resonator.peak_impedance(*parts)
-    q = resonator.qualities(*parts)
+    low, high = resonances.half_power_frequencies(*parts)
+    exact = resonances.dynamic_resistance(*parts)
+    high_q = resonances.dynamic_resistance_high_q(*parts)
+    largest = resonances.peak_impedance(*parts)
+    q = resonances.qualities(*parts)
     return TankBehaviour(
         lc_resonance=float(resonator.lc_resonance(inductance, capacitance)),
-        unity_power_factor_resonance=_real(resonator.unity_power_factor_resonance(*parts)),
-        unity_power_factor=str(resonator.unity_power_factor_status(*parts)),
-        peak_resonance=_real(resonator.peak_resonance(*parts)),
+        unity_power_factor_resonance=_real(resonances.unity_power_factor_resonance(*parts)),
+        unity_power_factor=str(resonances.unity_power_factor_status(*parts)),
+        peak_resonance=_real(resonances.peak_resonance(*parts)),
         peak_impedance=_real(largest),
         half_power_low=_real(low),
         half_power_high=_real(high),
-        half_power_width=_real(resonator.bandwidth(*parts)),
+        half_power_width=_real(resonances.bandwidth(*parts)),
         dynamic_resistance=_real(exact),
         dynamic_resistance_high_q=float(high_q),
         dynamic_resistance_difference=_real(exact - high_q),

@@ -13,7 +13,7 @@ from ...design.coil_kinds import CableCoil
 from ...design.fields import SOLVE
 from ...design.parts import Trap
 from ...engine import resonator
-from ...engine.stress import Stress, stress
+from ...engine.stress import Stress, stress, stress_of_branches
 from ...errors import NoAnswer
 from .cable_coil import BuiltCable, CableNetwork, build_cable
 from .capacitors import BuiltCapacitor, FittedCapacitor, Limits, build_capacitor, cable_rating, is_open
@@ -75,8 +75,7 @@ class Lumped:
     def impedance(self, frequency: np.ndarray) -> np.ndarray:
         """Return the impedance at frequencies, in ohm."""
         if self._of_line:
-            coil, capacitor = self._branches(frequency)
-            return coil * capacitor / (coil + capacitor)
+            return resonator.impedance_of_branches(*self._branches(frequency))
         return resonator.impedance(frequency, *self.circuit(frequency))
 
     def moved(self, frequency: np.ndarray, steps: Sequence[float]) -> np.ndarray:
@@ -84,7 +83,7 @@ class Lumped:
         if self._of_line:
             coil, capacitor = self._branches(frequency)
             capacitor = capacitor * (1 + np.asarray(steps, float)[:, None]) ** 2
-            return coil * capacitor / (coil + capacitor)
+            return resonator.impedance_of_branches(coil, capacitor)
         inductance, capacitance, coil, capacitor = self.circuit(frequency)
         factor = (1 + np.asarray(steps, float)[:, None]) ** 2
         return resonator.impedance(frequency, inductance, capacitance / factor, coil, capacitor)
@@ -92,31 +91,8 @@ class Lumped:
     def stress(self, frequency: np.ndarray, current: np.ndarray) -> Stress:
         """Return what its parts bear for an rms current through the whole trap."""
         if self._of_line:
-            return _stress(current, *self._branches(frequency))
+            return stress_of_branches(current, *self._branches(frequency))
         return stress(frequency, *self.circuit(frequency), current=current)
-
-
-def _stress(current: np.ndarray, coil: np.ndarray, capacitor: np.ndarray) -> Stress:
-    """Return what two branches bear, whatever they are made of."""
-    volts = current * np.abs(coil * capacitor / (coil + capacitor))
-    through, across = volts / np.abs(coil), volts / np.abs(capacitor)
-    in_coil, in_capacitor = through**2 * coil.real, across**2 * np.maximum(capacitor.real, 0.0)
-    nothing = np.zeros_like(volts)
-    return Stress(
-        line_current=np.broadcast_to(current, volts.shape),
-        voltage=volts,
-        peak_voltage=math.sqrt(2) * volts,
-        coil_current=through,
-        capacitor_current=across,
-        shunt_current=nothing,
-        circulating_current=np.minimum(through, across),
-        coil_power=in_coil,
-        capacitor_power=in_capacitor,
-        shunt_power=nothing,
-        total_power=in_coil + in_capacitor,
-        coil_reactive=through**2 * np.abs(coil.imag),
-        capacitor_reactive=across**2 * np.abs(capacitor.imag),
-    )
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -202,7 +178,9 @@ def _computed(trap: Trap) -> BuiltTrap:
         return _with_capacitor_found(trap, resonance)
     capacitor = build_capacitor(trap.capacitor)
     fitted = _farads(capacitor, resonance)
-    coil = build_coil(trap.coil, resonance, lambda own: _partner(resonance, fitted + own), resonance)
+    coil = build_coil(
+        trap.coil, resonance, lambda own: float(resonator.partner(resonance, fitted + own)), resonance
+    )
     return _built(resonance, coil, capacitor)
 
 
@@ -216,14 +194,9 @@ def _farads(capacitor: BuiltCapacitor, frequency: float) -> float:
     return -1 / (2 * math.pi * frequency * float(np.imag(capacitor.impedance(at))))
 
 
-def _partner(resonance: float, value: float) -> float:
-    """Return the capacitance to an inductance at a resonance, or the other way round."""
-    return 1 / ((2 * math.pi * resonance) ** 2 * value)
-
-
 def _with_capacitor_found(trap: Trap, resonance: float) -> BuiltTrap:
     coil = build_coil(trap.coil, resonance, None, resonance)
-    total = _partner(resonance, float(coil.series(np.float64(resonance))[0]))
+    total = float(resonator.partner(resonance, coil.series(np.float64(resonance))[0]))
     left = total - coil.own[1]
     if left <= 0:
         raise NoAnswer(

@@ -30,6 +30,7 @@ from ...engine.cable_winding import (
 from ...engine.cables import Line
 from ...engine.coils import SOLENOID_ERROR, self_capacitance_range
 from ...engine.metals import MATERIALS
+from ...engine.resonator import partner
 from ...engine.stress import Stress
 from ...errors import NoAnswer
 from .capacitors import line_of
@@ -101,8 +102,7 @@ class CableNetwork:
         y = 1 / self.impedance(at)
         slope = (y[2].imag - y[0].imag) / (2 * np.pi * (at[2] - at[0]))
         capacitance = float(slope / 2)
-        w = 2 * math.pi * self.resonance
-        inductance = 1 / (w * w * capacitance)
+        inductance = float(partner(self.resonance, capacitance))
         return inductance, capacitance, float(y[1].real) * inductance / capacitance
 
     def circuit(self, frequency: np.ndarray) -> tuple[np.ndarray, float, np.ndarray, float]:

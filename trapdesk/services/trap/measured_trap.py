@@ -12,6 +12,7 @@ import numpy as np
 from ...design.design import Design, with_value
 from ...design.measured_part import Measured
 from ...engine.measured import Estimate
+from ...engine.resonator import lc_resonance, partner
 from ...engine.stress import Stress
 from .part_values import PartsFound
 
@@ -29,14 +30,14 @@ def values_with(
     """
     f, l, c = (getattr(measured, name) for name in NAMES)  # noqa: E741 - the document's symbol
     if f is not None and l is not None:
-        return f, l, 1.0 / ((2.0 * math.pi * f) ** 2 * l)
+        return f, l, float(partner(f, l))
     if f is not None:
         c = c or capacitance
-        return f, 1.0 / ((2.0 * math.pi * f) ** 2 * c), c
+        return f, float(partner(f, c)), c
     if l is None and c is None:
         return resonance, inductance, capacitance
     l, c = l or inductance, c or capacitance  # noqa: E741
-    return 1.0 / (2.0 * math.pi * math.sqrt(l * c)), l, c
+    return float(lc_resonance(l, c)), l, c
 
 
 @dataclass(frozen=True, kw_only=True)
