@@ -18,10 +18,10 @@ from trapdesk.services.box.by_yield import TRIALS, by_yield, ranked
 from trapdesk.services.box.combos import PIECES, WAYS, combos
 from trapdesk.services.box.offers import END_ROOM
 from trapdesk.services.box.parts import stub_part
-from trapdesk.services.box.rummage import rummage, take, wanted_resonance
+from trapdesk.services.box.rummage import rummage, take
 from trapdesk.services.box.search import Search, tank
 from trapdesk.services.compare.port_grid import PortGrid
-from trapdesk.services.trap.built import build
+from trapdesk.services.trap.built import build, wanted_resonance
 from trapdesk.services.trials.tolerance import quick_yield, yield_of
 from trapdesk.store import store
 from trapdesk.store.box_read import find_box
@@ -122,7 +122,7 @@ def test_worst_case_tolerance_is_that_of_the_corners():
 @pytest.mark.parametrize("name", store.presets())
 def test_interpolated_wires_are_the_solved_ones(name):
     design = preset(name)
-    wanted = wanted_resonance(design)
+    wanted = wanted_resonance(design.antenna.trap)
     traps = [
         build(tank(wanted, 1 / (2 * math.pi * wanted * x), 200.0, design.antenna.trap.body))
         for x in (70.0, 640.0)
@@ -208,7 +208,9 @@ def test_taking_a_row_changes_the_trap_alone():
     taken = take(design, row)
     assert taken.antenna.trap == row.trap
     assert replace(taken, antenna=design.antenna) == design
-    assert wanted_resonance(taken) == pytest.approx(wanted_resonance(design), rel=2e-6)
+    assert wanted_resonance(taken.antenna.trap) == pytest.approx(
+        wanted_resonance(design.antenna.trap), rel=2e-6
+    )
 
 
 def test_a_set_length_stays():
@@ -234,7 +236,7 @@ def test_a_stub_serves_as_capacitor_and_holds_to_cable_and_rating():
     box = replace(SMALL, capacitors=(), cables=(COAX,))
     row = next(row for row in finished(preset(), box).rows if row.kind == "stub")
     assert row.pieces == ()
-    w = 2 * math.pi * wanted_resonance(preset())
+    w = 2 * math.pi * wanted_resonance(preset().antenna.trap)
     # An open line without loss: B = tan(w s / v) / Z0, and 1 / cos(w s / v) the volts at its end.
     angle = w * row.stub.length / (0.66 * 299792458.0)
     assert math.tan(angle) / 50.0 == pytest.approx(w * row.capacitance, rel=1e-4)
@@ -276,7 +278,7 @@ def test_a_former_may_want_whole_turns():
 
 def test_traps_that_are_looked_at_closer_are_the_best_of_all(monkeypatch):
     design, box = preset(), find_box()
-    search = Search(design, box, wanted_resonance(design))
+    search = Search(design, box, wanted_resonance(design.antenna.trap))
     joined = search.capacitors(box)
     pairs = [("solenoid", 3, 3), ("solenoid", 5, 4), ("solenoid", 8, 1), ("stub", 9, 2)]
     few = [search.offers(box, pair, joined) for pair in pairs]
@@ -402,9 +404,9 @@ def test_a_ring_core_is_wound_with_whole_turns():
     assert row.turns == int(row.turns)
     # The default of 1.5 pF that the winding adds lies beside the capacitor.
     total = row.capacitance + 1.5e-12
-    wanted = 1 / ((2 * math.pi * wanted_resonance(preset())) ** 2 * total)
+    wanted = 1 / ((2 * math.pi * wanted_resonance(preset().antenna.trap)) ** 2 * total)
     assert row.turns**2 * core.inductance_index == pytest.approx(wanted, rel=0.052)
-    assert row.resonance == pytest.approx(wanted_resonance(preset()), rel=1e-6)
+    assert row.resonance == pytest.approx(wanted_resonance(preset().antenna.trap), rel=1e-6)
 
 
 def test_a_design_without_a_trap_has_nothing_to_look_for():

@@ -22,10 +22,9 @@ from trapdesk.services.antenna.solve import solve
 from trapdesk.services.box.combos import STUB_DOUBT
 from trapdesk.services.box.offers import END_ROOM, RING_ROOM, SNIP_STEP, SPREAD
 from trapdesk.services.box.parts import cable_part, capacitor_part, solenoid_part, stub_part, toroid_part
-from trapdesk.services.box.rummage import wanted_resonance
 from trapdesk.services.box.scoring import cost
 from trapdesk.services.box.winders import SPACINGS
-from trapdesk.services.trap.built import build
+from trapdesk.services.trap.built import build, wanted_resonance
 from trapdesk.services.trap.coils import COIL_DOUBT, CUT_TAIL
 
 LEAST, MOST = 70.0, 640.0
@@ -108,7 +107,7 @@ def force(design, box, most):
 
     What costs more than the best already found before its antenna is solved need not be solved.
     """
-    wanted, found = wanted_resonance(design), {}
+    wanted, found = wanted_resonance(design.antenna.trap), {}
     least = least_losses(design, wanted)
     bounds = [(one.bound(least), place, one) for place, one in enumerate(everything(box, wanted))]
     for bound, _, one in sorted(bounds):

@@ -18,6 +18,8 @@ from ...engine.coil_table import QUICK_RANGE, in_range, quick_coil
 from ...engine.conductors import internal_impedance
 from ...engine.ground import C0
 from ...engine.metals import MATERIALS
+from ...engine.resonator import partner
+from ...engine.toroids import toroid_most_turns, toroid_turn_length, toroid_turns
 from ..trap.capacitors import cable_rating, line_of
 from ..trap.coils import CUT_TAIL, mean_diameter
 from .combos import FREE, TRAPS, Combos
@@ -137,7 +139,7 @@ def solenoid_offers(
     at: list[tuple[np.ndarray, np.ndarray, np.ndarray]] = []
     for k, there in enumerate(wound.there):
         # The fewest turns that are enough: then they are drawn apart until it is right.
-        needed = 1 / (w * w * wound.inductance[k, :there]) - wound.own[k, :there]
+        needed = partner(wanted, wound.inductance[k, :there]) - wound.own[k, :there]
         n = np.searchsorted(-needed, -joined.capacitance)
         which = np.flatnonzero((n > 0) & (n < there))
         at.append((np.full(which.size, k), n[which], which))
@@ -193,17 +195,18 @@ def toroid_offers(
     box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Limits
 ) -> Iterator[Offer]:
     """Yield the best traps of one core and one wire: whole turns, capacitors near what they ask for."""
-    w, core, wire = 2 * math.pi * wanted, box.cores[pair[1]], box.wires[pair[2]]
+    core, wire = box.cores[pair[1]], box.wires[pair[2]]
     over = wire.diameter + 2 * wire.coating
-    most = int(math.pi * (core.inner - over) / wire.closest)
+    most = int(toroid_most_turns(core.inner, wire.closest))
     if core.count < TRAPS or most < 2:
         return
     # The turns nearest in inductance, whole on a ring.
     total = joined.capacitance + toroid_part(core, wire, 1.0).self_capacitance
-    ask = 1 / (w * w * total * core.inductance_index)
-    turns = np.clip(np.round(np.sqrt(ask)), 1, most)
-    shift = np.log(turns**2 / ask)
-    wire_length = turns * (2 * core.height + core.outer - core.inner + 4 * over) + 2 * CUT_TAIL
+    ask = toroid_turns(core.inductance_index, partner(wanted, total))
+    turns = np.clip(np.round(ask), 1, most)
+    shift = 2 * np.log(turns / ask)
+    per_turn = toroid_turn_length(core.outer, core.inner, core.height, over)
+    wire_length = turns * per_turn + 2 * CUT_TAIL
     good = (np.abs(shift) < RING_ROOM) & (wire_length * TRAPS <= wire.length)
     good &= (total >= limits[0]) & (total <= limits[1])
     some, size = joined.take(np.flatnonzero(good)), np.ones(np.count_nonzero(good))
@@ -257,7 +260,7 @@ def cable_offers(
         return
     for way, terminals in enumerate(Terminals):
         ratio = 1.0 if terminals is Terminals.SHIELD else (1 + 1 / math.cos(angle)) ** 2
-        total = 1 / (w * w * l_x * ratio)
+        total = float(partner(wanted, l_x * ratio))
         if not limits[0] <= total <= limits[1]:
             continue
         losses, fillings, _ = surface.at(np.array([total]), np.array([loss]), np.zeros(1))
