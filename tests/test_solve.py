@@ -31,6 +31,7 @@ from trapdesk.engine.soils import SOILS
 from trapdesk.errors import NoAnswer, TrapdeskError
 from trapdesk.services.antenna.levels import Level
 from trapdesk.services.antenna.solve import at_frequencies, solve, with_site_effects
+from trapdesk.services.trials.tolerance import tolerance
 from trapdesk.store import store
 
 UPPER = Band(name="40 m", low=7.0e6, high=7.2e6, wanted_low=7.05e6, wanted_high=7.1e6)
@@ -663,3 +664,13 @@ def test_presets_are_good_antennas(name):
         assert high - low <= 0.75 * band.width
         assert band.usable[0] < low < high < band.usable[1]
         assert band.worst_swr <= design.station.swr_limit
+
+
+@pytest.mark.parametrize("name", ["40-20-vee", "20-10-flat", "80-40-flat"])
+def test_doubt_of_a_dip_is_two_deviations_of_antennas_as_cut(name):
+    """Against antennas drawn with all that may differ, each solved: alike to a third."""
+    figures = solve(store.preset(name)[0], site_effects=True)
+    as_cut = tolerance(figures, trials=2000).stages["as_cut"]
+    for role, band in figures.bands.items():
+        two = 2 * as_cut.bands[role].results["dip"].deviation
+        assert 0.75 < band.frequency_doubt / two < 1.33

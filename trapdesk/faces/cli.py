@@ -390,9 +390,9 @@ VERBS: dict[str, tuple[str, Callable[[argparse.Namespace], str], str, str]] = {
     "rummage": (
         "Print the best traps a box of parts can build for a design, two of each.",
         rummage,
-        "trapdesk rummage 40-20-vee --box relief-box --rows 5\n"
-        "  trapdesk rummage 40-20-vee --take 2 --out mine.toml",
-        '\n\nA box is a TOML file of kind = "box"; relief-box is ready to copy. Ctrl-C keeps\n'
+        "trapdesk rummage 40-20-vee --box relief-box --rows 5",
+        "\n  trapdesk rummage 40-20-vee --take 2 --out mine.toml\n\n"
+        'A box is a TOML file of kind = "box"; relief-box is ready to copy. Ctrl-C keeps\n'
         "what was found so far. --for-yield takes about half a second a row\n"
         "more; brought to aim nearly every trap is good, wet tells them apart.",
     ),

@@ -112,19 +112,8 @@ def _row(tail: str, label: str, value: str | Shown, **more: str) -> Cells:
 
 
 def as_wound(figures: Figures) -> float:
-    """Return how far the resonance may be off before the trap is brought to it, everything at its worst [Hz].
-
-    Coil and capacitors together; a trap that was measured is known as far as its readings go.
-    """
-    trap, measured = figures.trap, figures.design.antenna.trap.measured
-    if measured is not None and measured.resonance is not None:
-        return trap.resonance_doubt
-    parts = max(trap.tolerance) if trap.tolerance is not None else 0.0
-    if trap.tolerance is None and any(part.length is not None for part in trap.parts):
-        from ..services.box.combos import STUB_DOUBT
-
-        parts = STUB_DOUBT
-    return trap.resonance_doubt + trap.resonance * parts * trap.fitted_capacitance / trap.capacitance / 2
+    """Return how far the resonance may be off before the trap is brought to it, at worst [Hz]."""
+    return figures.trap.resonance_doubt
 
 
 def adjustment_text(adjustment: Adjustment) -> str:

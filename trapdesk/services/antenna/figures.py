@@ -85,10 +85,11 @@ class Effects:
 class BandFigures:
     """What the antenna does on one band. None where a thing does not exist.
 
-    `frequency_doubt` [Hz] goes with resonance and dip, `impedance_doubt` [ohm] with impedances, `swr_doubt`
-    [1] with every SWR, `share_doubt` [1] with the shares, `stress_doubt` [1] is the relative one of volts,
-    amps and watts. Every SWR is that where it is judged; impedances are those at the feed point. `feed` is
-    None where nothing lies between feed point and transmitter.
+    `frequency_doubt` [Hz] goes with resonance and dip before anything is tuned and is about two standard
+    deviations, `impedance_doubt` [ohm] goes with impedances, `swr_doubt` [1] with every SWR, `share_doubt`
+    [1] with the shares, `stress_doubt` [1] is the relative one of volts, amps and watts. Every SWR is that
+    where it is judged; impedances are those at the feed point. `feed` is None where nothing lies between feed
+    point and transmitter.
     """
 
     role: str

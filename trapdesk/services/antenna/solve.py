@@ -37,7 +37,7 @@ from .lengths import LEAST_END_HEIGHT, Search, find_lengths, first_guess, slope_
 from .moved import Moved
 from .part_stress import part_stress
 from .response import Behaviour, Look, Response, behave, swr
-from .trap_figures import trap_figures
+from .trap_figures import off_as_made, trap_figures
 from .weather import shifts
 
 IMPEDANCE_DOUBT, UNKNOWN_IMPEDANCE_DOUBT = 0.05, 0.12
@@ -282,7 +282,9 @@ def _band(
     unknown = design.site.soil_is_unknown
     relative = UNKNOWN_IMPEDANCE_DOUBT if unknown else IMPEDANCE_DOUBT
     by = effects(response, role, moved)
-    of_trap = abs(by.trap or 0.0) * trap.doubt / 2 if by is not None and trap is not None else 0.0
+    of_trap = 0.0
+    if by is not None and trap is not None:
+        of_trap = abs(by.trap or 0.0) * off_as_made(design, trap)
     near = response.near
     feed = None if path is None else _feed(path, response, feeding.passage, aim)
     return BandFigures(

@@ -13,7 +13,14 @@ from ...engine.capacitors import stub_impedance
 from ...engine.resonances import dynamic_resistance
 from ...engine.resonator import lc_resonance
 from ..trap.built import BuiltTrap
-from ..trap.capacitors import FittedCapacitor, capacitance_of, tolerance_of, varies_of, weights
+from ..trap.capacitors import (
+    UNSAID_TOLERANCE,
+    FittedCapacitor,
+    capacitance_of,
+    tolerance_of,
+    varies_of,
+    weights,
+)
 from ..trap.coils import Wound
 from .figures import Adjustment, BandFigures, CoilFigures, Curve, PartFigures, TrapFigures
 from .part_stress import heat
@@ -51,7 +58,7 @@ def trap_figures(design: Design, trap: BuiltTrap, bands: Iterable[BandFigures]) 
         impedance={role: complex(z) for role, z in zip(roles, each[TRAP_POINTS:], strict=True)},
         coil=None if trap.wound is None else coil_figures(trap, trap.wound),
         curve=Curve(frequency=frequency, impedance=impedance, swr=swr(impedance, design.station.reference)),
-        resonance_doubt=trap.resonance * trap.doubt / 2,
+        resonance_doubt=trap.resonance * off_as_made(design, trap),
         inductance_doubt=_inductance_doubt(part, trap),
         q_range=(trap.q * trap.q_factors[0], trap.q * trap.q_factors[1]),
         bring_to=trap.resonance / (1 - weather.closing),
@@ -64,6 +71,22 @@ def trap_figures(design: Design, trap: BuiltTrap, bands: Iterable[BandFigures]) 
         adjustments=tuple(adjustments(part, trap)),
         heat=heat(design, trap, bands),
     )
+
+
+def off_as_made(design: Design, trap: BuiltTrap) -> float:
+    """Return by what part of itself a trap's resonance may be off before it is brought there.
+
+    Everything at its worst: the coil's doubt and the capacitor's tolerance together, which of traps made in
+    numbers is about two standard deviations. A trap that was measured is known as far as its readings go.
+    """
+    measured, doubts = design.antenna.trap.measured, design.doubts
+    if trap.cable or (measured is not None and measured.resonance is not None):
+        return trap.doubt / 2
+    if measured is not None and measured.capacitance is not None:
+        return (trap.doubt + measured.capacitance_doubt / measured.capacitance) / 2
+    said = tolerance_of(trap.capacitor, trap.resonance) or (UNSAID_TOLERANCE,)
+    size = max(said) if doubts.capacitor is None else doubts.capacitor
+    return (trap.doubt + size * trap.fitted / trap.capacitance) / 2
 
 
 def _inductance_doubt(part: Trap, trap: BuiltTrap) -> float:

@@ -26,6 +26,8 @@ from ...engine.dielectrics import DIELECTRICS
 from ...errors import NoAnswer
 
 WHERE = "antenna.trap.capacitor"
+UNSAID_TOLERANCE = 0.05
+"""Tolerance of a capacitor nobody says anything of. [1], common practice, no source"""
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -17,14 +17,12 @@ from ...engine.ground import Ground
 from ...engine.sampling import normal_probability, normal_quantile, uniform
 from ...engine.soils import SOILS, UNKNOWN_SOIL_FROM, GroundKind
 from ..trap.built import BuiltTrap
-from ..trap.capacitors import tolerance_of
+from ..trap.capacitors import UNSAID_TOLERANCE, tolerance_of
 from ..trap.coils import COIL_DOUBT
 from ..trap.measured_trap import doubts_of
 
 WOUND = 0.005
 """How far the inductance of a coil wound just as computed may be off. [1]"""
-CAPACITOR = 0.05
-"""Tolerance of a capacitor nobody says anything of. [1], common practice, no source"""
 Q = 0.15
 SEALING, RAIN = (0.4, 1.6), (2 / 3, 4 / 3)
 """Least and most of what sealing and rain do, over what the trap's weather says. [1]"""
@@ -227,7 +225,7 @@ def _as_built(
     if printed is not None and printed[0] != printed[1]:
         yield "capacitor", _between(-printed[0], printed[1], **pair)
     else:
-        size = printed[0] if printed else CAPACITOR if doubts.capacitor is None else doubts.capacitor
+        size = printed[0] if printed else UNSAID_TOLERANCE if doubts.capacitor is None else doubts.capacitor
         yield "capacitor", about("capacitor", size)
     reached = max(abs(factor - 1) for factor in trap.q_factors) or Q
     yield "q", about("q", min(reached, 0.9) if doubts.q is None else doubts.q)
