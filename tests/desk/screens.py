@@ -1,10 +1,12 @@
 """What the tests of the desk share: opening it, typing, and reading its screen as plain lines."""
 
 import asyncio
-from contextlib import asynccontextmanager
+import io
+from contextlib import asynccontextmanager, redirect_stdout
 
 from textual.events import Key
 
+from trapdesk.faces.cli import main
 from trapdesk.faces.desk import form
 from trapdesk.faces.desk.app import Desk
 from trapdesk.faces.desk.form import DRAWERS
@@ -84,3 +86,39 @@ async def go_to(desk, pilot, key):
             return
         await pressed(desk, pilot, "tab")
     raise AssertionError(f"no row {key}")
+
+
+async def worked_out(desk, pilot):
+    """Wait until all that the views on the screen want is there."""
+    await settled(desk, pilot)
+    await asyncio.wait_for(desk.session.aside.settled(), LONGEST)
+    await pilot.pause()
+
+
+async def shown(desk, pilot, letter):
+    await pressed(desk, pilot, letter)
+    await worked_out(desk, pilot)
+
+
+def pane(desk):
+    """Return the whole text of the pane that turns, also what is scrolled out of sight."""
+    return desk.query_one("#below" if desk.screen.has_class("tall") else "#answer").plain()
+
+
+def said(*words):
+    """Return what a verb prints; the desk, where it runs, has a standard output of its own."""
+    with redirect_stdout(io.StringIO()) as printed:
+        assert main(list(words)) == 0
+    assert len(lines_of(printed.getvalue())) > 5
+    return printed.getvalue()
+
+
+def lines_of(whole):
+    """Return the lines of a text without their indentation, marks and gaps; layout aside."""
+    return [" ".join(line.replace(">", " ").split()) for line in whole.splitlines() if line.strip()]
+
+
+def missing(whole, within):
+    """Return the lines of a text that are not in another, however that breaks them."""
+    there = " ".join(lines_of(within))
+    return [line for line in lines_of(whole) if line not in there]

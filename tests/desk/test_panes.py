@@ -1,17 +1,29 @@
 """The views that are worked out aside, by keyboard: the desk answers as the command line does."""
 
 import asyncio
-import io
 import re
 import threading
-from contextlib import redirect_stdout
 from dataclasses import replace
 
 import pytest
 
-from tests.desk.screens import LONGEST, go_to, noted, opened, pressed, screen, settled, text, typed
+from tests.desk.screens import (
+    LONGEST,
+    go_to,
+    missing,
+    noted,
+    opened,
+    pane,
+    pressed,
+    said,
+    screen,
+    settled,
+    shown,
+    text,
+    typed,
+    worked_out,
+)
 from trapdesk.faces import tolerance_out
-from trapdesk.faces.cli import main
 from trapdesk.faces.desk import form
 from trapdesk.faces.desk.arrange import LETTERS, VIEWS, arrangement, names
 from trapdesk.faces.desk.aside import Job
@@ -19,46 +31,11 @@ from trapdesk.faces.desk.lines import width_of
 from trapdesk.faces.desk.optional import PARTS
 from trapdesk.faces.desk.panes.jobs import FOR_YIELD, RUMMAGE, TOLERANCE
 from trapdesk.faces.desk.panes.texts import text_lines
+from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
 PRESET = "40-20-vee"
 HEIGHT = "site.height"
-
-
-async def worked_out(desk, pilot):
-    """Wait until all that the views on the screen want is there."""
-    await settled(desk, pilot)
-    await asyncio.wait_for(desk.session.aside.settled(), LONGEST)
-    await pilot.pause()
-
-
-async def shown(desk, pilot, letter):
-    await pressed(desk, pilot, letter)
-    await worked_out(desk, pilot)
-
-
-def pane(desk):
-    """Return the whole text of the pane that turns, also what is scrolled out of sight."""
-    return desk.query_one("#below" if desk.screen.has_class("tall") else "#answer").plain()
-
-
-def said(*words):
-    """Return what a verb prints; the desk, where it runs, has a standard output of its own."""
-    with redirect_stdout(io.StringIO()) as printed:
-        assert main(list(words)) == 0
-    assert len(lines_of(printed.getvalue())) > 5
-    return printed.getvalue()
-
-
-def lines_of(whole):
-    """Return the lines of a text without their indentation, marks and gaps; layout aside."""
-    return [" ".join(line.replace(">", " ").split()) for line in whole.splitlines() if line.strip()]
-
-
-def missing(whole, within):
-    """Return the lines of a text that are not in another, however that breaks them."""
-    there = " ".join(lines_of(within))
-    return [line for line in lines_of(whole) if line not in there]
 
 
 BOX = """
@@ -295,122 +272,6 @@ async def test_a_box_that_is_not_there_is_told_in_a_line():
         assert "there is no such file" in pane(desk)
 
 
-READINGS = "trap.f0=13.98MHz trap.f0_with=11.6MHz,added=22pF"
-
-
-async def test_readings_come_to_what_the_verb_says_and_are_kept():
-    printed = said("readings", PRESET, *READINGS.split())
-    async with opened() as (desk, pilot):
-        await shown(desk, pilot, "M")
-        for reading in READINGS.split():
-            await pressed(desk, pilot, "enter")
-            await typed(desk, pilot, reading, "enter")
-            await worked_out(desk, pilot)
-        assert missing(printed, pane(desk)) == []
-        before = desk.session.design
-        await pressed(desk, pilot, "a")
-        await worked_out(desk, pilot)
-        assert desk.session.design.antenna.trap.measured.resonance == pytest.approx(13.98e6, rel=1e-3)
-        await pressed(desk, pilot, "u")
-        assert desk.session.design is before
-        await pressed(desk, pilot, "backspace")
-        assert desk.session.aside.readings == (READINGS.split()[0],)
-        await worked_out(desk, pilot)
-
-
-async def test_a_reading_that_cannot_be_read_is_refused_and_can_be_mended():
-    async with opened() as (desk, pilot):
-        await shown(desk, pilot, "M")
-        for wrong in ("trap.f0=13 parsnips", "nonsense", "trap.f0=", "x" * 150, "[red]=1MHz"):
-            await pressed(desk, pilot, "enter")
-            await typed(desk, pilot, wrong, "enter")
-            assert desk.session.aside.readings == (), wrong
-            assert desk.foot.asking, wrong
-            await pressed(desk, pilot, "escape")
-            assert not desk.foot.asking
-
-
-HUNG = "upper.dip=14.07MHz lower.dip=7.05MHz"
-
-
-async def test_the_next_move_is_that_of_the_verb_and_is_kept():
-    async with opened() as (desk, pilot):
-        await shown(desk, pilot, "N")
-        assert "Nothing was read yet" in pane(desk)
-        await pressed(desk, pilot, "a")
-        assert "! there are no readings to keep yet" in text(desk)
-        await pressed(desk, pilot, "enter", "ctrl+u")
-        await typed(desk, pilot, "trap.f0=14MHz", "enter")
-        assert desk.foot.asking
-        await pressed(desk, pilot, "ctrl+u")
-        await typed(desk, pilot, HUNG, "enter")
-        await worked_out(desk, pilot)
-        assert missing(said("next", PRESET, *HUNG.split()), pane(desk)) == []
-        assert "next: MOVE Both sides alike: fold" in text(desk)
-        before = desk.session.design
-        await pressed(desk, pilot, "a")
-        kept = desk.session.design
-        assert kept.history.steps[0].readings == HUNG
-        assert kept.history.steps[0].inner < -0.1
-        await pressed(desk, pilot, "d", "ctrl+u")
-        await typed(desk, pilot, "inner=-20cm", "enter")
-        assert desk.session.design.history.steps[0].inner == pytest.approx(-0.2)
-        await pressed(desk, pilot, "u", "u")
-        assert desk.session.design is before
-        await pressed(desk, pilot, "tab")
-        await settled(desk, pilot)
-
-
-SUMS = [
-    "tank f=10.05MHz C=47pF Q=180",
-    "match Z=35-j120 f=7.1MHz",
-    "line RG-58/U length=20m f=7.1MHz Z=35-j120",
-]
-
-
-async def test_sums_are_those_of_their_verbs():
-    async with opened() as (desk, pilot):
-        await shown(desk, pilot, "Q")
-        for words in SUMS:
-            printed = said(*words.split())
-            await pressed(desk, pilot, "enter", "ctrl+u")
-            await typed(desk, pilot, words, "enter")
-            await worked_out(desk, pilot)
-            assert missing(printed, pane(desk)) == []
-        printed = said("figures", PRESET, "--at", "7.05MHz,14.2MHz")
-        await pressed(desk, pilot, "enter", "ctrl+u")
-        await typed(desk, pilot, "at 7.05MHz,14.2MHz", "enter")
-        await worked_out(desk, pilot)
-        asked = [line for line in lines_of(pane(desk))[2:] if line]
-        assert len(asked) == 4
-        assert missing("\n".join(asked), printed) == []
-
-
-async def test_a_sum_that_cannot_be_done_is_answered_in_words():
-    async with opened() as (desk, pilot):
-        await shown(desk, pilot, "Q")
-        for wrong in ("parsnips", "tank", "tank f=1 parsnip", "line", "match Z=0", "at 7"):
-            await pressed(desk, pilot, "enter", "ctrl+u")
-            await typed(desk, pilot, wrong, "enter")
-            await worked_out(desk, pilot)
-            assert any(line.startswith("! ") for line in pane(desk).splitlines()), wrong
-            assert "Traceback" not in text(desk)
-
-
-async def test_a_load_is_read_off_the_map_as_the_verb_does():
-    printed = said("tuner", PRESET, "--load", "35-j120")
-    async with opened() as (desk, pilot):
-        await shown(desk, pilot, "L")
-        await pressed(desk, pilot, "enter", "ctrl+u")
-        await typed(desk, pilot, "-5+j0", "enter")
-        assert any(line.startswith("! ") for line in await noted(desk, pilot))
-        await pressed(desk, pilot, "enter", "ctrl+u")
-        await typed(desk, pilot, "35-j120", "enter")
-        told = [line for line in lines_of(printed) if "35 - j120" in line]
-        assert len(told) == 2
-        assert missing("\n".join(told), pane(desk)) == []
-
-
 async def test_a_design_chosen_for_its_yield_can_be_accepted(monkeypatch):
     """The search itself has its tests; here another design stands for what it found."""
     other = replace(store.find().design.station, swr_limit=2.5)
@@ -442,6 +303,47 @@ async def test_a_text_is_written_to_a_file_never_over_one(tmp_path, monkeypatch)
     assert (tmp_path / "sheet.txt").read_text("ascii") == said("sheet", PRESET)
     assert (tmp_path / "feed.s1p").read_text("ascii") == said("touchstone", PRESET)
     assert (tmp_path / "card.txt").read_text("ascii").startswith("HILL CARD")
+
+
+def held_back():
+    """Return a gate, and a solver that waits until it is opened."""
+    gate = threading.Event()
+
+    def solver(*given):
+        assert gate.wait(LONGEST)
+        return solve(*given)
+
+    return gate, solver
+
+
+async def test_a_text_asked_for_early_is_written_once_it_is_there(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    gate, solver = held_back()
+    async with opened(solver=solver, wait=False) as (desk, pilot):
+        await pressed(desk, pilot, "P", "x", "ctrl+u")
+        await typed(desk, pilot, "early.txt", "enter")
+        assert "early.txt will be written once it is worked out" in text(desk)
+        # It is also when another view is looked at meanwhile.
+        await pressed(desk, pilot, "A")
+        assert not (tmp_path / "early.txt").exists()
+        gate.set()
+        await worked_out(desk, pilot)
+        assert "written to early.txt" in text(desk)
+    assert (tmp_path / "early.txt").read_text("ascii") == said("sheet", PRESET)
+
+
+async def test_what_waits_to_be_written_is_dropped_when_the_design_changes(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    gate, solver = held_back()
+    async with opened(solver=solver, wait=False) as (desk, pilot):
+        await pressed(desk, pilot, "S", "x", "ctrl+u")
+        await typed(desk, pilot, "early.s1p", "enter")
+        await go_to(desk, pilot, HEIGHT)
+        await typed(desk, pilot, "8 m", "enter")
+        assert any("early.s1p was not written" in line for line in await noted(desk, pilot))
+        gate.set()
+        await worked_out(desk, pilot)
+    assert not (tmp_path / "early.s1p").exists()
 
 
 async def test_keys_for_the_inputs_do_nothing_while_a_text_hides_them():

@@ -160,6 +160,10 @@ class Aside:
         """Return whether a job is at work."""
         return any(running == name for running, _ in self._running.values())
 
+    def pending(self, jobs: Sequence[Job]) -> bool:
+        """Return whether any of these jobs is at work, or wanted and not there."""
+        return any(self.running(job.name) for job in jobs) or any(job in jobs for job in self._due())
+
     def progress(self, name: str) -> str:
         """Return how far a job is, empty when it is not at work."""
         return self._progress.get(name, "") if self.running(name) else ""

@@ -8,7 +8,6 @@ from textual.app import ComposeResult
 from textual.containers import Container
 from textual.events import Key
 
-from ...errors import TrapdeskError, visible
 from .arrange import ANSWER, CHANCES, FINDINGS, HELP, INPUTS, LETTERS, Arrangement, arrangement, names
 from .aside import Job
 from .filing import Asker
@@ -19,6 +18,7 @@ from .panes.jobs import TOLERANCE
 from .session import Session
 from .terminal import Look
 from .view import View, ViewPane
+from .writing import Writing
 
 SIDEWAYS = 8
 _OF_INPUTS = frozenset("0123456789+=-es ")
@@ -36,6 +36,7 @@ class Middle(Container):
         self.helping = False
         self._before: View = ANSWER
         self._hold = False
+        self._writing = Writing(session, self)
 
     def compose(self) -> ComposeResult:
         """Lay out the panes that every size has; `furnish` adds those of the present one."""
@@ -124,14 +125,15 @@ class Middle(Container):
         foot.offered = self.shown.keys or VIEWING if self.held and not helping else ()
         foot.about = self.shown.about
         foot.plotting = self.plotting
+        self._writing.look()
 
     def _names(self, view: View) -> Line:
         return names(self.arranged.cycle, view, self._turning.room, self._busy())
 
     @property
     def _jobs(self) -> tuple[Job, ...]:
-        """What is to be worked out for what is in sight."""
-        return tuple(dict.fromkeys((TOLERANCE, *self.shown.jobs)))
+        """What is to be worked out for what is in sight, or waits to be written."""
+        return tuple(dict.fromkeys((TOLERANCE, *self.shown.jobs, *self._writing.jobs)))
 
     def _moved_on(self) -> None:
         """Tell how far the work is: where there is something to see already, beside the name alone."""
@@ -162,7 +164,7 @@ class Middle(Container):
         if view := LETTERS.get(character):
             self._show(view)
         elif character == "x" and self.shown.told is not None and not self.helping:
-            self._export(self.shown)
+            self._writing.ask(self.shown)
         elif not self.held or self.helping:
             return False
         elif self.shown.press is not None and self.shown.press(event.key, self):
@@ -218,31 +220,6 @@ class Middle(Container):
             self._hold = False
         self.say("")
         self._found()
-
-    def _export(self, view: View) -> None:
-        """Ask for the name of a file and write there what a view tells."""
-        from ...store import sweep_files
-
-        assert view.told is not None
-        texts = view.told(self.session)
-        if not texts:
-            self.say("there is nothing to write yet", refused=True)
-            return
-
-        def write(given: str) -> None:
-            if not given:
-                self.say("nothing was written")
-                return
-            # What is not plain ASCII is written as the command line writes it.
-            data = "".join(f"{text.rstrip()}\n" for text in texts).encode("ascii", "backslashreplace")
-            try:
-                sweep_files.write_new(given, data.decode("ascii"))
-            except TrapdeskError as error:
-                self.say("; ".join(str(error).splitlines()), refused=True)
-                return
-            self.say(f"written to {visible(given, 60)}")
-
-        self.ask(f"write {view.name} to", write, view.name.partition(" ")[0] + view.ending)
 
     @property
     def _asker(self) -> Asker:
