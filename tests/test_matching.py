@@ -7,12 +7,13 @@ from hypothesis import strategies as st
 from scipy.optimize import differential_evolution
 
 from tests.cases import reference
+from tests.families import family, limits
 from trapdesk.engine import matching, nearest
 from trapdesk.engine.arms import Kind, Problem
-from trapdesk.engine.boxes import Limits, limits
 from trapdesk.engine.ladder import carried, input_impedance
 from trapdesk.engine.networks import NETWORKS, ladder_of, match
-from trapdesk.engine.reflection import reflection, swr
+from trapdesk.engine.reflection import swr
+from trapdesk.engine.spans import ArmLimits
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=60)
 THREE = [name for name, network in NETWORKS.items() if len(network.arms) == 3]
@@ -26,6 +27,10 @@ def ohms(pair):
 def found(values):
     """Return the solutions there are, of a problem with one load."""
     return values[~np.isnan(values[:, 0])]
+
+
+def reflection(z, wanted=50.0):
+    return np.abs((z - wanted) / (z + np.conj(wanted)))
 
 
 def seen(network, values, problem):
@@ -54,7 +59,7 @@ def test_reference_least_loss(case):
     assert stress.voltages == pytest.approx(expected["v_rms_100w"], rel=1e-6)
     assert stress.currents == pytest.approx(expected["i_rms_100w"], rel=1e-6)
     assert stress.powers == pytest.approx(expected["p_element_w"], rel=1e-6)
-    values, loss = matching.family(C_L_C, problem, np.geomspace(*capacitor, 20_001))
+    values, loss = family(C_L_C, problem, np.geomspace(*capacitor, 20_001))
     low, high = (np.array([e[0], e[1], e[0]])[:, None] for e in zip(capacitor, coil, strict=True))
     inside = np.all((values >= low) & (values <= high), axis=1)
     # The reference's worst match is the worst of a scan, so one that is found here may only be worse.
@@ -116,7 +121,7 @@ def test_least_loss_is_not_beaten_on_a_fine_grid(name, plain, loss, box):
     got = matching.least_loss(network, problem, within)
     ends = np.array([within.low, within.high])
     # Brute force: every match along the arm beside the load.
-    values, grid_loss = matching.family(network, problem, np.geomspace(*ends[:, 2], 2001))
+    values, grid_loss = family(network, problem, np.geomspace(*ends[:, 2], 2001))
     inside = np.all((values >= ends[0][:, None]) & (values <= ends[1][:, None]), axis=1)
     if np.any(inside):
         assert got.matched
@@ -137,7 +142,7 @@ def test_least_loss_between_limits():
     within = limits(C_L_C, coil=(1e-9, 1e-3), capacitor=(1e-13, 1e-5))
     got = matching.least_loss(C_L_C, problem, within)
     ends = np.array([within.low, within.high])
-    values, loss = matching.family(C_L_C, problem, got.values[2] * np.linspace(0.9, 1.1, 2001))
+    values, loss = family(C_L_C, problem, got.values[2] * np.linspace(0.9, 1.1, 2001))
     inside = np.all((values > ends[0][:, None]) & (values < ends[1][:, None]), axis=1)
     assert got.loss_db <= np.min(loss[inside]) + 1e-12
     assert np.all((got.values > 2.0 * ends[0]) & (got.values < 0.5 * ends[1]))
@@ -206,7 +211,7 @@ def test_nearest_setting_with_an_arm_at_nothing():
     # nothing and the one across at infinity, and the SWR is the load's own.
     network, load = NETWORKS["l-source-coils"], 60.0 + 100j
     problem = Problem(frequency=3.6e6, load=load)
-    got = nearest.best_setting(network, problem, Limits(low=(4e-6, 0.0), high=(np.inf, 3e-6)))
+    got = nearest.best_setting(network, problem, ArmLimits(low=(4e-6, 0.0), high=(np.inf, 3e-6)))
     assert not got.matched
     assert got.values.tolist() == [np.inf, 0.0]
     assert got.swr == pytest.approx(swr(load), rel=1e-12)
@@ -221,7 +226,7 @@ def test_widening_the_limit_named_short_gives_a_match():
     assert got.needed < low[got.short_arm] or got.needed > high[got.short_arm]
     low[got.short_arm] = min(low[got.short_arm], 0.999 * got.needed)
     high[got.short_arm] = max(high[got.short_arm], 1.001 * got.needed)
-    assert matching.least_loss(C_L_C, problem, Limits(low=tuple(low), high=tuple(high))).matched
+    assert matching.least_loss(C_L_C, problem, ArmLimits(low=tuple(low), high=tuple(high))).matched
 
 
 def test_settings_of_many_loads_at_once():

@@ -3,9 +3,9 @@
 import numpy as np
 
 from tests.bench.yardstick import ratio, record
+from tests.families import limits
 from trapdesk.engine import matching, nearest
 from trapdesk.engine.arms import Problem
-from trapdesk.engine.boxes import limits
 from trapdesk.engine.ladder import carried
 from trapdesk.engine.networks import NETWORKS, ladder_of, touchiness
 from trapdesk.engine.reflection import swr

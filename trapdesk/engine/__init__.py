@@ -34,9 +34,9 @@ The files, each one subject:
 ``reflection``        reflection and standing wave ratio of an impedance against the wanted one
 ``ladder``            series and shunt branches and stretches of line: cascade, loss, what each part carries
 ``arms``              coils and capacitors as immittances: the algebra under the closed-form matches
-``networks``          the registry of matching networks and the closed-form match of each; width, touchiness
-``boxes``             limits of real parts: the box of settings of a network
-``matching``          the match of least loss within limits, its family, the loads in reach
+``networks``          the registry of matching networks and the closed-form match of each; touchiness
+``spans``             limits of real parts: the span of settings of a network
+``matching``          the match of least loss within limits, the loads in reach
 ``nearest``           the best setting for a load: match or nearest, what is short, arms in steps
 ``heat``              how warm a part gets, and drift of a resonance
 ``stress``            what each part of the resonator carries: currents, volts, watts, reactive power

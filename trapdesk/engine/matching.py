@@ -9,23 +9,21 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from .arms import Problem, chain, pinned, values_to_sizes
-from .boxes import (
-    Box,
-    Limits,
+from .arms import Problem
+from .networks import Network
+from .spans import (
+    ArmLimits,
+    Span,
     at_limits,
-    box_of,
     clipped,
     curve,
     decibels,
     efficiency,
-    flat,
     pick,
     search_range,
+    span_of,
     values_of,
 )
-from .limits import positive
-from .networks import Network
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
@@ -58,20 +56,20 @@ class LeastLoss:
     matched: BoolArray
 
 
-def _losses(box: Box, sizes: FloatArray) -> FloatArray:
+def _losses(span: Span, sizes: FloatArray) -> FloatArray:
     """Return the share lost (points, n) at sizes (arms, points, n), infinite outside the limits or if NaN."""
-    low, high = box.low[:, None] * (1.0 - SLACK), box.high[:, None] * (1.0 + SLACK)
+    low, high = span.low[:, None] * (1.0 - SLACK), span.high[:, None] * (1.0 + SLACK)
     with np.errstate(invalid="ignore", divide="ignore"):
         inside = np.all((sizes >= low) & (sizes <= high), axis=0)
-        return np.where(inside, 1.0 - efficiency(box.links, sizes), np.inf)
+        return np.where(inside, 1.0 - efficiency(span.links, sizes), np.inf)
 
 
-def least_sizes(box: Box, points: int = SCAN, refine: bool = True) -> tuple[FloatArray, FloatArray]:
+def least_sizes(span: Span, points: int = SCAN, refine: bool = True) -> tuple[FloatArray, FloatArray]:
     """Return the sizes of least loss.
 
     Parameters
     ----------
-    box : Box
+    span : Span
         The settings there are.
     points : int
         Points of the search along the curve of matches, besides those at the limits. [-], 0 or >= 2
@@ -87,14 +85,14 @@ def least_sizes(box: Box, points: int = SCAN, refine: bool = True) -> tuple[Floa
     ------
     Derived here: every match with an arm at a limit in closed form, then the curve of matches.
     """
-    sizes = at_limits(box)
-    best, cost = pick(sizes, _losses(box, sizes))
-    if len(box.links.arms) == 2 or points == 0:
+    sizes = at_limits(span)
+    best, cost = pick(sizes, _losses(span, sizes))
+    if len(span.links.arms) == 2 or points == 0:
         return best, cost
-    low, high = search_range(box, 0)
+    low, high = search_range(span, 0)
     grid = low + (high - low) * np.linspace(0.0, 1.0, points)[:, None]
-    scanned = curve(box.links, 0, np.exp(grid))
-    losses = _losses(box, scanned)
+    scanned = curve(span.links, 0, np.exp(grid))
+    losses = _losses(span, scanned)
     halves = [slice(None, points), slice(points, None)]
     starts = [best]
     for half in halves:  # each root is a curve of its own and may have its own least loss
@@ -110,8 +108,8 @@ def least_sizes(box: Box, points: int = SCAN, refine: bool = True) -> tuple[Floa
         centre = np.log(np.stack([start[0] for start in starts]))
     for _ in range(ZOOM_LEVELS):
         around = np.clip(centre[:, None] + offsets * step, low, high)
-        tried = curve(box.links, 0, np.exp(around.reshape(-1, len(step))))
-        losses = _losses(box, tried)
+        tried = curve(span.links, 0, np.exp(around.reshape(-1, len(step))))
+        losses = _losses(span, tried)
         shaped = losses.reshape(2, len(centre), ZOOM_POINTS, -1).min(axis=0)
         index = np.argmin(shaped, axis=1)[:, None]
         found = np.isfinite(np.take_along_axis(shaped, index, axis=1))[:, 0]
@@ -124,7 +122,7 @@ def least_sizes(box: Box, points: int = SCAN, refine: bool = True) -> tuple[Floa
 
 
 def least_loss(
-    network: Network, problem: Problem, within: Limits, points: int = SCAN, refine: bool = True
+    network: Network, problem: Problem, within: ArmLimits, points: int = SCAN, refine: bool = True
 ) -> LeastLoss:
     """Return the match of least loss within the limits.
 
@@ -134,7 +132,7 @@ def least_loss(
         Two or three arms of coils and capacitors.
     problem : Problem
         Loads, frequencies and quality of parts; all at once.
-    within : Limits
+    within : ArmLimits
         Limits of the arms.
     points : int
         Points of the search along the curve of matches, besides those at the limits. [-]
@@ -150,10 +148,10 @@ def least_loss(
     ------
     Derived here: every match with an arm at a limit in closed form, then the curve of matches.
     """
-    box = box_of(network, problem, within)
-    sizes, cost = least_sizes(box, points, refine)
+    span = span_of(network, problem, within)
+    sizes, cost = least_sizes(span, points, refine)
     matched = np.isfinite(cost)
-    values = values_of(box.links, np.where(matched, sizes, np.nan)).reshape(-1, *problem.shape)
+    values = values_of(span.links, np.where(matched, sizes, np.nan)).reshape(-1, *problem.shape)
     return LeastLoss(
         values=clipped(values, within),
         loss_db=decibels(np.where(matched, 1.0 - cost, np.nan)).reshape(problem.shape)[()],
@@ -161,52 +159,12 @@ def least_loss(
     )
 
 
-def family(network: Network, problem: Problem, held: ArrayLike) -> tuple[FloatArray, FloatArray]:
-    """Return the matches of a network of three arms along the values of the arm beside the load.
-
-    Parameters
-    ----------
-    network : Network
-        Three arms of coils and capacitors.
-    problem : Problem
-        One load or many.
-    held : float array
-        (points,) values of the arm beside the load. [H], [F], > 0
-
-    Returns
-    -------
-    tuple of two float arrays
-        Values (2, arms, points, ...) from the source to the load, for both roots; loss (2, points, ...). NaN
-        where that value leaves no match. [H], [F]; [dB]
-
-    Raises
-    ------
-    ValueError
-        If a held value is not above 0, or the network has not three arms of coils and capacitors.
-
-    Source
-    ------
-    Derived here: see `arms.pinned`.
-    """
-    positive(held=held)
-    if len(network.arms) != 3:
-        raise ValueError("network must have three arms: two leave no choice")
-    links = chain(network.arms, flat(problem))
-    held = np.asarray(held, dtype=float)
-    sizes = pinned(links, 0, values_to_sizes(links, 0, held[:, None]))
-    with np.errstate(invalid="ignore", divide="ignore"):
-        sizes = np.where(np.all(sizes >= 0.0, axis=1)[:, None], sizes, np.nan)
-        pairs = [(values_of(links, root), decibels(efficiency(links, root))) for root in sizes]
-    values = np.stack([pair[0] for pair in pairs]).reshape(2, 3, len(held), *problem.shape)
-    return values, np.stack([pair[1] for pair in pairs]).reshape(2, len(held), *problem.shape)
-
-
 def reach(
     network: Network,
     frequency: float,
     resistance: ArrayLike,
     reactance: ArrayLike,
-    within: Limits,
+    within: ArmLimits,
     wanted: complex = 50.0,
     coil_q: float = np.inf,
     capacitor_q: float = np.inf,
@@ -221,7 +179,7 @@ def reach(
         Frequency. [Hz], > 0
     resistance, reactance : float arrays
         (r,) and (x,): the axes of the map. [ohm], resistance > 0
-    within : Limits
+    within : ArmLimits
         Limits of the arms.
     wanted : complex
         Impedance the source should see. [ohm], real part > 0

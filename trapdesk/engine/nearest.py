@@ -8,11 +8,15 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from .arms import Problem
-from .boxes import (
-    Box,
-    Limits,
+from .ladder import input_impedance
+from .limits import positive
+from .matching import least_sizes
+from .networks import Network, ladder_of
+from .reflection import swr, swr_of_reflection
+from .spans import (
+    ArmLimits,
+    Span,
     at_limits,
-    box_of,
     clipped,
     curve,
     decibels,
@@ -21,13 +25,9 @@ from .boxes import (
     pick,
     scales,
     search_range,
+    span_of,
     values_of,
 )
-from .ladder import input_impedance
-from .limits import positive
-from .matching import least_sizes
-from .networks import Network, ladder_of
-from .reflection import swr, swr_of_reflection
 
 FloatArray = NDArray[np.float64]
 BoolArray = NDArray[np.bool_]
@@ -71,12 +71,12 @@ class Setting:
     limit: FloatArray
 
 
-def _best_of_arm(box: Box, sizes: list[FloatArray], arm: int) -> tuple[FloatArray, FloatArray]:
+def _best_of_arm(span: Span, sizes: list[FloatArray], arm: int) -> tuple[FloatArray, FloatArray]:
     """Return the size of one arm, all others given, with the least reflection, and its square.
 
     The reflection is (p + q m)/(r + s m) in the size m; its square is stationary at the roots of a quadratic.
     """
-    links = box.links
+    links = span.links
     before = links.start
     for i in range(arm):
         before = 1.0 / (before + sizes[i] * links.direction[i])
@@ -96,8 +96,8 @@ def _best_of_arm(box: Box, sizes: list[FloatArray], arm: int) -> tuple[FloatArra
         root = np.sqrt(np.maximum(half * half - square * constant, 0.0))
         t = -(half + np.where(half >= 0.0, root, -root))
         tried = [t / square, constant / t]
-    ceiling = np.minimum(box.high[arm], np.exp(search_range(box, arm)[1]))
-    ends = [np.broadcast_to(end, np.shape(t)) for end in (box.low[arm], ceiling)]
+    ceiling = np.minimum(span.high[arm], np.exp(search_range(span, arm)[1]))
+    ends = [np.broadcast_to(end, np.shape(t)) for end in (span.low[arm], ceiling)]
     tried = [np.where(np.isfinite(m), np.clip(m, *ends), ends[0]) for m in tried] + ends
     squares = [((p2 * m + p1) * m + p0) / ((r2 * m + r1) * m + r0) for m in tried]
     best, least = tried[0], squares[0]
@@ -106,20 +106,22 @@ def _best_of_arm(box: Box, sizes: list[FloatArray], arm: int) -> tuple[FloatArra
     return best, np.maximum(least, 0.0)
 
 
-def _along(box: Box, fixed: dict[int, FloatArray], scanned: int, free: int) -> tuple[FloatArray, FloatArray]:
+def _along(
+    span: Span, fixed: dict[int, FloatArray], scanned: int, free: int
+) -> tuple[FloatArray, FloatArray]:
     """Scan one arm with another always at its best; return sizes (arms, n) and the square reflection (n,)."""
-    low, high = search_range(box, scanned)
-    count = len(box.links.arms)
+    low, high = search_range(span, scanned)
+    count = len(span.links.arms)
     centre, step = 0.5 * (low + high), 0.5 * (high - low)
     best, least = np.full((count, len(low)), np.nan), np.full(len(low), np.inf)
     for level in range(NEAREST_LEVELS):
         points = NEAREST_SCAN if level == 0 else ZOOM_POINTS
         log_size = np.clip(centre + step * np.linspace(-1.0, 1.0, points)[:, None], low, high)
         sizes = [np.broadcast_to(fixed.get(i, np.nan), log_size.shape) for i in range(count)]
-        sizes[scanned] = np.clip(np.exp(log_size), box.low[scanned], box.high[scanned])
+        sizes[scanned] = np.clip(np.exp(log_size), span.low[scanned], span.high[scanned])
         if level == 0:  # a limit of nothing has no logarithm
-            sizes[scanned][0] = box.low[scanned]
-        sizes[free], squares = _best_of_arm(box, sizes, free)
+            sizes[scanned][0] = span.low[scanned]
+        sizes[free], squares = _best_of_arm(span, sizes, free)
         here, here_square = pick(np.stack(sizes), squares)
         best = np.where(here_square < least, here, best)
         least = np.minimum(here_square, least)
@@ -128,33 +130,33 @@ def _along(box: Box, fixed: dict[int, FloatArray], scanned: int, free: int) -> t
     return best, least
 
 
-def _nearest(box: Box) -> tuple[FloatArray, FloatArray]:
+def _nearest(span: Span) -> tuple[FloatArray, FloatArray]:
     """Return the sizes (arms, n) of least reflection and its magnitude (n,), one of three arms at a limit."""
-    if len(box.links.arms) == 2:
-        best, least = _along(box, {}, 0, 1)
+    if len(span.links.arms) == 2:
+        best, least = _along(span, {}, 0, 1)
         return best, np.sqrt(least)
-    best, least = np.full_like(box.low, np.nan), np.full(box.low.shape[1], np.inf)
+    best, least = np.full_like(span.low, np.nan), np.full(span.low.shape[1], np.inf)
     for arm in range(3):
         scanned, free = (i for i in range(3) if i != arm)
-        ceiling = np.exp(search_range(box, arm)[1])
-        for end in (box.low[arm], np.minimum(box.high[arm], ceiling)):
-            here, here_least = _along(box, {arm: end}, scanned, free)
+        ceiling = np.exp(search_range(span, arm)[1])
+        for end in (span.low[arm], np.minimum(span.high[arm], ceiling)):
+            here, here_least = _along(span, {arm: end}, scanned, free)
             best = np.where(here_least < least, here, best)
             least = np.minimum(here_least, least)
     return best, np.sqrt(least)
 
 
-def _shortage(box: Box, values_low: FloatArray, values_high: FloatArray):
+def _shortage(span: Span, values_low: FloatArray, values_high: FloatArray):
     """Return (arm from the source, value needed, limit broken) of the match that breaks limits least."""
-    links = box.links
-    sizes = at_limits(box)
+    links = span.links
+    sizes = at_limits(span)
     if len(links.arms) == 3:
-        low, high = search_range(box, 0)
+        low, high = search_range(span, 0)
         grid = low + (high - low) * np.linspace(0.0, 1.0, SHORT_SCAN)[:, None]
         sizes = np.concatenate([sizes, curve(links, 0, np.exp(grid))], axis=1)
     with np.errstate(divide="ignore", invalid="ignore"):
         # Counted in ohms and siemens, not as a ratio: an arm that should vanish is short of next to nothing.
-        excess = np.fmax(np.fmax(sizes - box.high[:, None], box.low[:, None] - sizes), 0.0)
+        excess = np.fmax(np.fmax(sizes - span.high[:, None], span.low[:, None] - sizes), 0.0)
         excess = np.where(np.isnan(sizes) | (sizes < 0.0), np.inf, excess / scales(links)[:, None])
         best, total = pick(np.concatenate([sizes, excess]), np.sum(excess, axis=0))
     count = len(links.arms)
@@ -166,7 +168,7 @@ def _shortage(box: Box, values_low: FloatArray, values_high: FloatArray):
     return np.where(exists, arm, -1), np.where(exists, needed, np.nan), np.where(exists, limit, np.nan)
 
 
-def _part(problem: Problem, within: Limits, chosen: BoolArray) -> tuple[Problem, Limits]:
+def _part(problem: Problem, within: ArmLimits, chosen: BoolArray) -> tuple[Problem, ArmLimits]:
     """Return some loads of a flat problem with their limits."""
     names = ("frequency", "load", "wanted", "coil_q", "capacitor_q")
     some = Problem(**{name: getattr(problem, name)[chosen] for name in names})
@@ -174,10 +176,10 @@ def _part(problem: Problem, within: Limits, chosen: BoolArray) -> tuple[Problem,
     low, high = (
         tuple(np.broadcast_to(end, shape)[chosen] for end in ends) for ends in (within.low, within.high)
     )
-    return some, Limits(low=low, high=high)
+    return some, ArmLimits(low=low, high=high)
 
 
-def best_setting(network: Network, problem: Problem, within: Limits) -> Setting:
+def best_setting(network: Network, problem: Problem, within: ArmLimits) -> Setting:
     """Return the match of least loss, or the nearest setting with what is short, for each load.
 
     Parameters
@@ -186,7 +188,7 @@ def best_setting(network: Network, problem: Problem, within: Limits) -> Setting:
         Two or three arms of coils and capacitors.
     problem : Problem
         Loads, frequencies and quality of parts.
-    within : Limits
+    within : ArmLimits
         Limits of the arms.
 
     Returns
@@ -200,29 +202,29 @@ def best_setting(network: Network, problem: Problem, within: Limits) -> Setting:
     sizes, two equations); the best size of an arm with the others given is a root of a quadratic.
     """
     shape, spread = problem.shape, flat(problem)
-    within = Limits(
+    within = ArmLimits(
         low=tuple(np.broadcast_to(end, shape).ravel() for end in within.low),
         high=tuple(np.broadcast_to(end, shape).ravel() for end in within.high),
     )
-    box = box_of(network, spread, within)
-    sizes, cost = least_sizes(box)
+    span = span_of(network, spread, within)
+    sizes, cost = least_sizes(span)
     matched = np.isfinite(cost)
     n = len(matched)
     short, needed, limit = np.full(n, -1), np.full(n, np.nan), np.full(n, np.nan)
     if not np.all(matched):
         some, some_within = _part(spread, within, ~matched)
-        left = box_of(network, some, some_within)
+        left = span_of(network, some, some_within)
         sizes[:, ~matched] = _nearest(left)[0]
         short[~matched], needed[~matched], limit[~matched] = _shortage(
             left, np.stack(some_within.low), np.stack(some_within.high)
         )
-    values = clipped(values_of(box.links, sizes), within)
+    values = clipped(values_of(span.links, sizes), within)
     z = input_impedance(ladder_of(network, values, spread), spread.load)
     return Setting(
         values=values.reshape(-1, *shape),
         matched=matched.reshape(shape)[()],
         swr=swr(z, spread.wanted).reshape(shape)[()],
-        loss_db=decibels(efficiency(box.links, sizes)).reshape(shape)[()],
+        loss_db=decibels(efficiency(span.links, sizes)).reshape(shape)[()],
         short_arm=short.reshape(shape)[()],
         needed=needed.reshape(shape)[()],
         limit=limit.reshape(shape)[()],
@@ -230,7 +232,7 @@ def best_setting(network: Network, problem: Problem, within: Limits) -> Setting:
 
 
 def snap(
-    network: Network, problem: Problem, within: Limits, steps: Sequence[ArrayLike | None]
+    network: Network, problem: Problem, within: ArmLimits, steps: Sequence[ArrayLike | None]
 ) -> tuple[FloatArray, FloatArray]:
     """Return the best setting for one load with arms that come in steps, and the SWR it leaves.
 
@@ -243,7 +245,7 @@ def snap(
         Two or three arms of coils and capacitors.
     problem : Problem
         One load.
-    within : Limits
+    within : ArmLimits
         Limits of the arms that can be set freely; not used for the others.
     steps : sequence of arrays or None
         By arm from the source to the load: the values there are, above 0, or None for any within the limits.
@@ -281,18 +283,18 @@ def snap(
     low, high = list(within.low), list(within.high)
     for row, i in zip(grid, stepped, strict=True):
         low[i] = high[i] = row
-    box = Limits(low=tuple(low), high=tuple(high))
+    held = ArmLimits(low=tuple(low), high=tuple(high))
     free = len(steps) - len(stepped)
     if free >= 2:
-        found = best_setting(network, many, box)
+        found = best_setting(network, many, held)
         values, ratio, loss = found.values, found.swr, found.loss_db
     else:
-        inside = box_of(network, many, box)
+        inside = span_of(network, many, held)
         sizes = list(inside.low)
         if free:
             arm = len(steps) - 1 - next(i for i in range(len(steps)) if i not in stepped)
             sizes[arm] = _best_of_arm(inside, sizes, arm)[0]
-        values = clipped(values_of(inside.links, np.stack(sizes)), box)
+        values = clipped(values_of(inside.links, np.stack(sizes)), held)
         ratio = swr(input_impedance(ladder_of(network, values, many), many.load), many.wanted)
         loss = decibels(efficiency(inside.links, np.stack(sizes)))
     matched = ratio <= swr_of_reflection(MATCHED)

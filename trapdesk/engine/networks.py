@@ -11,7 +11,7 @@ from .arms import ROUNDING, Arm, Chain, Kind, Problem, chain, pinned, sizes_to_v
 from .ladder import Ladder, Part, Place, input_impedance
 from .limits import positive
 from .reflection import swr
-from .roots import bracketed, newton
+from .roots import newton
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
@@ -320,56 +320,6 @@ def ladder_of(network: Network, values: ArrayLike, problem: Problem) -> Ladder:
                     z = z * np.tanh(turn)
         parts.append(Part(place=arm.place, impedance=z, turn=turn))
     return Ladder(parts=tuple(parts))
-
-
-def width(
-    swr_at: Callable[[FloatArray], ArrayLike],
-    frequency: float,
-    limit: float = 2.0,
-    span: float = 3.3,
-    steps: int = 600,
-) -> tuple[float, float]:
-    """Return the frequencies below and above between which the SWR stays under a limit.
-
-    Parameters
-    ----------
-    swr_at : callable
-        Takes frequencies (n,) and returns the SWR at each, settings left alone. [Hz] to [-]
-    frequency : float
-        Where to begin. [Hz], > 0
-    limit : float
-        SWR not to be exceeded. [-], > 1
-    span : float
-        How far to look either way, as a factor. [-], > 1
-    steps : int
-        Steps either way; an excess narrower than a step may be passed over. [-], >= 1
-
-    Returns
-    -------
-    tuple of two floats
-        Lower and upper edge, NaN where there is none within the span or the limit is exceeded already. [Hz]
-
-    Raises
-    ------
-    ValueError
-        If limit or span is not above 1.
-
-    Source
-    ------
-    Definition: the nearest crossing of the limit on a grid even in log f, closed in on.
-    """
-    positive(frequency=frequency, **{"limit - 1": limit - 1.0, "span - 1": span - 1.0})
-    edges = []
-    for way in (-1.0, 1.0):
-        along = frequency * span ** (way * np.linspace(0.0, 1.0, steps + 1))
-        over = np.asarray(swr_at(along), dtype=float) > limit
-        first = int(np.argmax(over))
-        if not np.any(over) or first == 0:
-            edges.append(np.nan)
-            continue
-        ends = along[first - 1 : first], along[first : first + 1]
-        edges.append(float(bracketed(lambda f: np.asarray(swr_at(f)) - limit, *ends).root[0]))
-    return edges[0], edges[1]
 
 
 def touchiness(network: Network, values: ArrayLike, problem: Problem) -> FloatArray:

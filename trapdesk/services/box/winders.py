@@ -40,7 +40,7 @@ NEARLY = 1.02
 CABLE_LEAST = 0.75
 """What the exact cost of a cable trap may be of the coarse one, so that none is passed over."""
 
-Limits = tuple[float, float]
+Farads = tuple[float, float]
 """Least and most capacitance of a trap. [F]"""
 Arrays = dict[str, np.ndarray]
 
@@ -128,7 +128,7 @@ def windings(former: Former, wire: Wire, wanted: float) -> Wound | None:
 
 
 def solenoid_offers(
-    box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Limits
+    box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Farads
 ) -> Iterator[Offer]:
     """Yield the best traps of one former and one wire."""
     former, wire = box.formers[pair[1]], box.wires[pair[2]]
@@ -183,7 +183,7 @@ def solenoid_offers(
     yield from picked(pair, some.take(np.flatnonzero(good)), surface, of, which.size)
 
 
-def _fits(former: Former, wire: Wire, of: Arrays, limits: Limits, nearly: float = 1.0) -> np.ndarray:
+def _fits(former: Former, wire: Wire, of: Arrays, limits: Farads, nearly: float = 1.0) -> np.ndarray:
     """Return which windings a former and a wire are enough for, twice, and which are in range; or nearly."""
     length = of["length"] / nearly
     fits = (length <= former.length - 2 * END_ROOM) & (of["wire_length"] * TRAPS <= nearly * wire.length)
@@ -192,7 +192,7 @@ def _fits(former: Former, wire: Wire, of: Arrays, limits: Limits, nearly: float 
 
 
 def toroid_offers(
-    box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Limits
+    box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Farads
 ) -> Iterator[Offer]:
     """Yield the best traps of one core and one wire: whole turns, capacitors near what they ask for."""
     core, wire = box.cores[pair[1]], box.wires[pair[2]]
@@ -227,7 +227,7 @@ def toroid_offers(
 
 
 def cable_offers(
-    box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Limits
+    box: Box, pair: tuple[str, int, int], joined: Combos, wanted: float, surface: Surface, limits: Farads
 ) -> Iterator[Offer]:
     """Yield traps of one cable wound close on one former, both ways of taking its terminals."""
     former, cable = box.formers[pair[1]], box.cables[pair[2]]
@@ -277,7 +277,7 @@ def cable_offers(
         )  # fmt: skip
 
 
-Maker = Callable[[Box, tuple[str, int, int], Combos, float, Surface, Limits], Iterator[Offer]]
+Maker = Callable[[Box, tuple[str, int, int], Combos, float, Surface, Farads], Iterator[Offer]]
 MAKERS: dict[str, Maker] = {
     "solenoid": solenoid_offers,
     "stub": solenoid_offers,

@@ -9,11 +9,11 @@ import numpy as np
 
 from ...design.station import TUNER_NETWORKS, Tuner, TunerCapacitor, TunerCoil
 from ...engine.arms import Kind, Problem
-from ...engine.boxes import Limits
 from ...engine.ladder import Carried, carried
 from ...engine.nearest import best_setting, snap
 from ...engine.networks import NETWORKS, Network, ladder_of, touchiness
 from ...engine.reflection import swr
+from ...engine.spans import ArmLimits
 
 MOST_COMBINATIONS = 4096
 """Combinations of steps that are tried; with more, only steps near the best setting without steps are."""
@@ -111,10 +111,10 @@ def parts_of(tuner: Tuner, network: Network) -> tuple[TunerCoil | TunerCapacitor
     return tuple(chosen)
 
 
-def limits_of(tuner: Tuner, network: Network) -> Limits:
+def limits_of(tuner: Tuner, network: Network) -> ArmLimits:
     """Return the limits of a network's arms."""
     found = parts_of(tuner, network)
-    return Limits(low=tuple(_low(p) for p in found), high=tuple(_high(p) for p in found))
+    return ArmLimits(low=tuple(_low(p) for p in found), high=tuple(_high(p) for p in found))
 
 
 def _low(part: TunerCoil | TunerCapacitor) -> float:

@@ -1,4 +1,4 @@
-"""Limits of real parts: the box of settings, in the immittances of the closed-form matches."""
+"""Limits of real parts: the span of settings, in the immittances of the closed-form matches."""
 
 from dataclasses import dataclass
 
@@ -16,7 +16,7 @@ FAR = 1e4
 
 
 @dataclass(frozen=True, kw_only=True)
-class Limits:
+class ArmLimits:
     """Least and greatest value of each arm, from the source to the load.
 
     Parameters
@@ -37,7 +37,7 @@ class Limits:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Box:
+class Span:
     """A flat problem with its limits; arms counted from the load.
 
     Parameters
@@ -51,25 +51,6 @@ class Box:
     links: Chain
     low: FloatArray
     high: FloatArray
-
-
-def limits(network: Network, coil: tuple[float, float], capacitor: tuple[float, float]) -> Limits:
-    """Return the same limits for every coil and for every capacitor of a network.
-
-    Parameters
-    ----------
-    network : Network
-        A network of coils and capacitors.
-    coil, capacitor : tuple of two floats
-        Least and greatest value. [H], [F], least >= 0
-
-    Returns
-    -------
-    Limits
-        By arm.
-    """
-    pairs = [coil if arm.kind is Kind.COIL else capacitor for arm in network.arms]
-    return Limits(low=tuple(pair[0] for pair in pairs), high=tuple(pair[1] for pair in pairs))
 
 
 def flat(problem: Problem) -> Problem:
@@ -89,8 +70,8 @@ def flat(problem: Problem) -> Problem:
     return Problem(**{name: np.broadcast_to(getattr(problem, name), problem.shape).ravel() for name in names})
 
 
-def box_of(network: Network, problem: Problem, within: Limits) -> Box:
-    """Return the box of settings of a network.
+def span_of(network: Network, problem: Problem, within: ArmLimits) -> Span:
+    """Return the span of settings of a network.
 
     Parameters
     ----------
@@ -98,12 +79,12 @@ def box_of(network: Network, problem: Problem, within: Limits) -> Box:
         Two or three arms of coils and capacitors.
     problem : Problem
         What is to be matched.
-    within : Limits
+    within : ArmLimits
         Limits of the arms.
 
     Returns
     -------
-    Box
+    Span
         The same in sizes.
 
     Raises
@@ -123,7 +104,7 @@ def box_of(network: Network, problem: Problem, within: Limits) -> Box:
             for end in (within.low, within.high)
         ]
         low[i], high[i] = np.minimum(*ends), np.maximum(*ends)
-    return Box(links=links, low=low, high=high)
+    return Span(links=links, low=low, high=high)
 
 
 def values_of(links: Chain, sizes: FloatArray) -> FloatArray:
@@ -146,14 +127,14 @@ def values_of(links: Chain, sizes: FloatArray) -> FloatArray:
         return np.stack([sizes_to_values(links, i, sizes[i]) for i in reversed(range(count))])
 
 
-def clipped(values: FloatArray, within: Limits) -> FloatArray:
+def clipped(values: FloatArray, within: ArmLimits) -> FloatArray:
     """Return values that a search left within the limits to rounding, wholly within them.
 
     Parameters
     ----------
     values : float array
         (arms, ...), counted from the source. [H], [F]
-    within : Limits
+    within : ArmLimits
         Limits of the arms.
 
     Returns
@@ -237,12 +218,12 @@ def scales(links: Chain) -> FloatArray:
     return np.stack([scale if i % 2 == 0 else 1.0 / scale for i in range(count)])
 
 
-def search_range(box: Box, arm: int) -> tuple[FloatArray, FloatArray]:
+def search_range(span: Span, arm: int) -> tuple[FloatArray, FloatArray]:
     """Return the logarithms of the sizes of an arm between which to search.
 
     Parameters
     ----------
-    box : Box
+    span : Span
         The settings there are.
     arm : int
         Which arm, counted from the load. [-]
@@ -252,9 +233,9 @@ def search_range(box: Box, arm: int) -> tuple[FloatArray, FloatArray]:
     tuple of two float arrays
         (n,), the limits, or `FAR` from the impedances at hand. Logarithm of [ohm], [S]
     """
-    scale = scales(box.links)[arm]
-    low = np.minimum(np.maximum(box.low[arm], scale / FAR), box.high[arm])
-    high = np.maximum(np.minimum(box.high[arm], scale * FAR), low)
+    scale = scales(span.links)[arm]
+    low = np.minimum(np.maximum(span.low[arm], scale / FAR), span.high[arm])
+    high = np.maximum(np.minimum(span.high[arm], scale * FAR), low)
     with np.errstate(divide="ignore"):
         return np.log(low), np.log(high)
 
@@ -280,12 +261,12 @@ def curve(links: Chain, arm: int, size: FloatArray) -> FloatArray:
     return np.moveaxis(pinned(links, arm, size), 1, 0).reshape(3, -1, size.shape[-1])
 
 
-def at_limits(box: Box) -> FloatArray:
+def at_limits(span: Span) -> FloatArray:
     """Return the matches with one of three arms at a limit; of two arms every match.
 
     Parameters
     ----------
-    box : Box
+    span : Span
         The settings there are.
 
     Returns
@@ -293,10 +274,10 @@ def at_limits(box: Box) -> FloatArray:
     float array
         (arms, points, n), of either sign, NaN without a match. [ohm] in series, [S] in shunt
     """
-    links = box.links
+    links = span.links
     if len(links.arms) == 2:
         return np.moveaxis(two_arms(links, 0, links.start, links.goal), 1, 0)
-    ends = np.stack([box.low, box.high], axis=1)
+    ends = np.stack([span.low, span.high], axis=1)
     return np.concatenate([curve(links, i, ends[i]) for i in range(3)], axis=1)
 
 
