@@ -12,7 +12,7 @@ from tests.cases import published, reference
 from trapdesk.engine import cable_types, cables
 from trapdesk.engine.cable_list import CABLES
 from trapdesk.engine.cables import DECIBELS, Line
-from trapdesk.engine.reflection import dip_among_three
+from trapdesk.engine.reflection import dip_among_three, dip_of_squares, squared_reflection
 
 fixed = settings(derandomize=True, deadline=None, database=None, max_examples=60)
 
@@ -464,3 +464,18 @@ def test_dip_among_three_is_that_of_a_finer_look():
     assert found == pytest.approx(best, abs=20.0)
     assert found == pytest.approx([dip_among_three(*row) for row in zip(f, ratio(f), strict=True)], rel=0)
     assert dip_among_three(f[0], [2.0, 2.0, 2.0]) == f[0, 1]
+
+
+def test_dip_of_squares_is_the_vertex():
+    # Any parabola 0.1 + c (f - f0)^2 is met exactly by points of any spacing, inside them or outside.
+    f = np.array([7.0, 7.03, 7.1])
+    for vertex in (7.01, 7.06, 7.12, 6.95):
+        at, least = dip_of_squares(tuple(f), tuple(0.1 + 3.0 * (f - vertex) ** 2), beyond=1.0)
+        assert (at, least) == pytest.approx((vertex, 0.1), rel=1e-9)
+        held = dip_of_squares(tuple(f), tuple(0.1 + 3.0 * (f - vertex) ** 2))
+        inside = np.clip(vertex, 7.0, 7.1)
+        assert held == pytest.approx((inside, 0.1 + 3.0 * (inside - vertex) ** 2), rel=1e-9)
+    # What bends down or not at all is least at an end.
+    assert dip_of_squares(tuple(f), (0.3, 0.4, 0.2))[0] == 7.1
+    assert dip_of_squares(tuple(f), (0.2, 0.4, 0.3))[0] == 7.0
+    assert squared_reflection([1.0, 3.0]) == pytest.approx([0.0, 0.25], rel=1e-15)

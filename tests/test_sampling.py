@@ -6,7 +6,14 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy import stats
 
-from trapdesk.engine.sampling import normal_probability, normal_quantile, quantiles, uniform
+from trapdesk.engine.sampling import (
+    chance_above,
+    normal_probability,
+    normal_quantile,
+    quantiles,
+    squares_at,
+    uniform,
+)
 
 
 def test_raw_bits_are_those_of_the_published_generator():
@@ -88,3 +95,24 @@ def test_quantiles_are_those_of_another_implementation(count):
 def test_quantiles_of_nothing_are_refused(values, chances):
     with pytest.raises(ValueError, match="values|chances"):
         quantiles(values, chances)
+
+
+@pytest.mark.parametrize("count", [1, 2, 3, 5, 10, 100])
+def test_sums_of_squares_are_nearly_those_of_scipy(count):
+    # What the cube root leaves: 3 % of one square at 3.09 sigma, by the exact quantiles.
+    exact = stats.chi2.isf(stats.norm.sf(3.09), count)
+    assert exact < squares_at(count, 3.09) < 1.031 * exact
+    chances = np.array([0.5, 0.3, 0.1, 0.05, 0.01])
+    found = chance_above(stats.chi2.isf(chances, count), count)
+    assert found == pytest.approx(chances, rel=0.06)
+    back = squares_at(count, [0.0, 1.0, 2.5])
+    assert chance_above(back, count) == pytest.approx(stats.norm.sf([0.0, 1.0, 2.5]), rel=1e-9)
+
+
+def test_sums_of_squares_refuse():
+    with pytest.raises(ValueError, match="count must be"):
+        squares_at(0, 3.0)
+    with pytest.raises(ValueError, match="square must be"):
+        chance_above(-1.0, 3)
+    with pytest.raises(ValueError, match="count must be"):
+        chance_above(1.0, np.nan)

@@ -16,35 +16,6 @@ def _wanted(wanted: ArrayLike, name: str) -> ComplexArray:
     return z
 
 
-def reflection(impedance: ArrayLike, reference: ArrayLike = 50.0) -> FloatArray:
-    """Return the magnitude of the reflection of an impedance against the wanted one.
-
-    Parameters
-    ----------
-    impedance : complex or array
-        What the source sees. [ohm]
-    reference : complex or array
-        What it should see. [ohm], real part > 0
-
-    Returns
-    -------
-    float array
-        |Z - Z_w| / |Z + Z_w*|: zero where the wanted impedance is met, its square the share of the available
-        power that is refused. [-]
-
-    Raises
-    ------
-    ValueError
-        If the reference is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    Definition.
-    """
-    z, z_w = np.asarray(impedance, dtype=complex), _wanted(reference, "reference")
-    return (np.abs(z - z_w) / np.abs(z + z_w.conj()))[()]
-
-
 def swr(impedance: ArrayLike, reference: ArrayLike = 50.0) -> FloatArray:
     """Return the standing wave ratio of impedances against the wanted one; infinite without resistance.
 
@@ -67,7 +38,7 @@ def swr(impedance: ArrayLike, reference: ArrayLike = 50.0) -> FloatArray:
 
     Source
     ------
-    Derived here: (1 + r) / (1 - r) of `reflection`, its denominator free of cancellation by
+    Derived here: (1 + r) / (1 - r) of r = |Z - Z_w| / |Z + Z_w*|, its denominator free of cancellation by
     |Z + Z_w*|^2 - |Z - Z_w|^2 = 4 Re Z_w Re Z.
     """
     z, z_w = np.asarray(impedance, dtype=complex), _wanted(reference, "reference")
@@ -103,13 +74,69 @@ def swr_of_reflection(magnitude: ArrayLike) -> FloatArray:
         return ((1.0 + r) / (1.0 - r))[()]
 
 
+def squared_reflection(ratio: ArrayLike) -> FloatArray:
+    """Return the square of the reflection that belongs to a standing wave ratio: the share of power refused.
+
+    Parameters
+    ----------
+    ratio : float or array
+        Standing wave ratio. [-], >= 1, not checked
+
+    Returns
+    -------
+    float array
+        Square of the magnitude of the reflection coefficient, 0 to 1. [-]
+
+    Source
+    ------
+    Definition.
+    """
+    s = np.asarray(ratio, dtype=float)
+    return (((s - 1.0) / (s + 1.0)) ** 2)[()]
+
+
+def dip_of_squares(
+    frequency: tuple[ArrayLike, ...], square: tuple[ArrayLike, ...], beyond: float = 0.0
+) -> tuple[FloatArray, FloatArray]:
+    """Return where the parabola through three squared reflections is least, and how much it is there.
+
+    Parameters
+    ----------
+    frequency : tuple of three floats or arrays
+        Rising frequencies. [Hz]
+    square : tuple of three floats or arrays
+        Squared reflection at each. [-]
+    beyond : float
+        How far outside the three the dip may lie, as a share of the distance of the outer two. [-], >= 0
+
+    Returns
+    -------
+    tuple of two float arrays
+        Frequency of the dip, where nothing bends up the best of the ends, and the parabola there. [Hz]; [-]
+
+    Source
+    ------
+    Derived here: the parabola by divided differences. The square of the reflection is smooth where the
+    standing wave ratio has a corner.
+    """
+    (f0, f1, f2), (g0, g1, g2) = frequency, square
+    down, up = (g1 - g0) / (f1 - f0), (g2 - g1) / (f2 - f1)
+    bend = (up - down) / (f2 - f0)
+    bent = bend > 0.0
+    middle = 0.5 * (f0 + f1) - down / (2.0 * np.where(bent, bend, 1.0))
+    reach = beyond * (f2 - f0)
+    ends = np.where(g0 < g2, f0, np.where(g2 < g0, f2, f1))
+    dip = np.where(bent, np.clip(middle, f0 - reach, f2 + reach), ends)
+    return dip[()], (g0 + down * (dip - f0) + bend * (dip - f0) * (dip - f1))[()]
+
+
 def dip_among_three(frequency: ArrayLike, ratio: ArrayLike) -> FloatArray:
     """Return where the standing wave ratio is least, from three frequencies the middle one of which is best.
 
     Parameters
     ----------
     frequency : array (..., 3)
-        Frequencies, evenly spaced. [Hz]
+        Rising frequencies. [Hz]
     ratio : array (..., 3)
         Standing wave ratio at each. [-], >= 1
 
@@ -120,13 +147,9 @@ def dip_among_three(frequency: ArrayLike, ratio: ArrayLike) -> FloatArray:
 
     Source
     ------
-    Derived here: the vertex of the parabola of the reflection squared, which is smooth where the ratio has a
-    corner.
+    Derived here: see `dip_of_squares`.
     """
-    f, s = np.asarray(frequency, dtype=float), np.asarray(ratio, dtype=float)
-    square = ((s - 1.0) / (s + 1.0)) ** 2
-    before, middle, after = square[..., 0], square[..., 1], square[..., 2]
-    bend = before - 2.0 * middle + after
-    up = bend > 0.0
-    shift = np.where(up, 0.5 * (before - after) / np.where(up, bend, 1.0), 0.0)
-    return (f[..., 1] + np.clip(shift, -1.0, 1.0) * (f[..., 1] - f[..., 0]))[()]
+    f, square = np.asarray(frequency, dtype=float), squared_reflection(ratio)
+    return dip_of_squares(
+        (f[..., 0], f[..., 1], f[..., 2]), (square[..., 0], square[..., 1], square[..., 2])
+    )[0]

@@ -10,6 +10,8 @@ import math
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from .limits import at_least, positive
+
 FloatArray = NDArray[np.float64]
 
 # Coefficients of PPND16, from memory; the tests hold the function against another implementation.
@@ -218,6 +220,68 @@ def normal_probability(value: ArrayLike) -> FloatArray:
     for column in _TABLE[0][-2::-1]:
         found = found * away + column[at]
     return found[()]
+
+
+def squares_at(count: ArrayLike, sigma: ArrayLike) -> FloatArray:
+    """Return the sum of squares of standard normal numbers that is as far up as a number of sigmas is.
+
+    Parameters
+    ----------
+    count : int or array
+        How many squares, or degrees of freedom. [-], > 0
+    sigma : float or array
+        How many sigmas. [-], above -2
+
+    Returns
+    -------
+    float array
+        The sum, 3 % high of one square at 3 sigma, less of more. [-]
+
+    Raises
+    ------
+    ValueError
+        If the count is not above 0.
+
+    Source
+    ------
+    wilson-hilferty-1931: the cube root of such a sum is nearly normal.
+    """
+    positive(count=count)
+    count = np.asarray(count, float)
+    spread = 2.0 / (9.0 * count)
+    return (count * (1.0 - spread + np.asarray(sigma, float) * np.sqrt(spread)) ** 3)[()]
+
+
+def chance_above(square: ArrayLike, count: ArrayLike) -> FloatArray:
+    """Return the chance that a sum of so many squares of standard normal numbers is larger.
+
+    Parameters
+    ----------
+    square : float or array
+        The sum. [-], >= 0
+    count : int or array
+        How many squares, or degrees of freedom. [-], > 0
+
+    Returns
+    -------
+    float array
+        Chance, 6 % of itself off at the most where it is between 1 % and a half. [-]
+
+    Raises
+    ------
+    ValueError
+        If a value is outside the limits above; NaN counts as outside.
+
+    Source
+    ------
+    wilson-hilferty-1931: see `squares_at`, solved for the sigmas.
+    """
+    at_least(0.0, square=square)
+    positive(count=count)
+    count = np.asarray(count, float)
+    spread = 2.0 / (9.0 * count)
+    x = (np.cbrt(np.asarray(square, float) / count) - (1.0 - spread)) / np.sqrt(spread)
+    return (normal_probability(-x))[()]
 
 
 def quantiles(values: ArrayLike, chances: ArrayLike) -> FloatArray:

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 from ...design.reading_kinds import Reading
 from ...engine.fits import Fitted
 from ...engine.measured import Estimate
+from ...engine.sampling import squares_at
 from ...errors import TrapdeskError
 
 
@@ -101,11 +101,5 @@ class PartsFound:
 
 
 def unlikely(freedom: int) -> float:
-    """Return the sum of squares that chance passes once in a thousand times.
-
-    Source
-    ------
-    Derived here by the cube root's nearness to a normal distribution, 3.09 sigma; within 2 % of tables.
-    """
-    spread = 2.0 / (9.0 * freedom)
-    return freedom * (1.0 - spread + 3.09 * math.sqrt(spread)) ** 3
+    """Return the sum of squares that chance passes once in a thousand times."""
+    return float(squares_at(freedom, 3.09))

@@ -13,13 +13,14 @@ from ...design.doubts import Meaning
 from ...design.fields import SOLVE
 from ...design.parts import GivenCapacitor
 from ...design.rules import check, trap_unknowns
+from ...engine.reflection import squared_reflection
 from ...errors import NoAnswer
 from ..antenna.figures import Figures
 from ..antenna.solve import solve
 from ..antenna.trap_findings import TRAP_VOLTAGE_MARGIN
 from ..trap.built import build
 from .beliefs import Belief
-from .ensemble import Ensemble, reflection_of
+from .ensemble import Ensemble
 from .stages import run_stage
 from .tolerance import BLOCK, SEED, Yield, allowances, stage_yield
 from .traps import AS_CUT, STAGES, Stage
@@ -168,7 +169,7 @@ class _Search:
         self.figures, self.stage, self.seed = figures, stage, seed
         self.ensemble = Ensemble(figures)
         self.draws = self.ensemble.draws(seed, 0, SEARCH_TRIALS)
-        self.limit = reflection_of(figures.design.station.swr_limit)
+        self.limit = float(squared_reflection(figures.design.station.swr_limit))
         design, trap = figures.design, self.ensemble.trap
         # No gain in SWR is worth a capacitor that breaks: volts may rise to a margin below its rating.
         rating = getattr(design.antenna.trap.capacitor, "voltage", None) if trap is not None else None

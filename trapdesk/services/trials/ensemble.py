@@ -12,6 +12,7 @@ import numpy as np
 from ...design.design import Design
 from ...engine.ports import chebyshev_nodes, polynomial_weights, terminate
 from ...engine.quotients import terminate_fractions
+from ...engine.reflection import dip_of_squares
 from ..antenna.figures import Figures
 from ..antenna.response import MARGIN
 from ..feed.path import Path, path_of
@@ -56,11 +57,6 @@ def swr_of(reflection: np.ndarray) -> np.ndarray:
     """Return the standing wave ratio of squared reflections."""
     size = np.sqrt(reflection)
     return (1 + size) / np.maximum(1 - size, 1e-9)
-
-
-def reflection_of(swr: float) -> float:
-    """Return the squared reflection of a standing wave ratio."""
-    return ((swr - 1) / (swr + 1)) ** 2
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -417,12 +413,8 @@ def _dips(frequency: np.ndarray, reflection: np.ndarray) -> tuple[np.ndarray, np
     """Return where each column of squared reflections is least, and how much, by a parabola."""
     trial = np.arange(reflection.shape[1])
     at = np.clip(np.argmin(reflection, axis=0), 1, frequency.size - 2)
-    f0, f1, f2 = (frequency[at + k] for k in (-1, 0, 1))
-    g0, g1, g2 = (reflection[at + k, trial] for k in (-1, 0, 1))
-    down, up = (g1 - g0) / (f1 - f0), (g2 - g1) / (f2 - f1)
-    bend = (up - down) / (f2 - f0)
-    bent = bend > 0
-    middle = (f0 + f1) / 2 - down / (2 * np.where(bent, bend, 1.0))
-    dip = np.where(bent, np.clip(middle, f0, f2), np.where(g0 < g2, f0, f2))
-    least = g0 + down * (dip - f0) + bend * (dip - f0) * (dip - f1)
+    three = (-1, 0, 1)
+    dip, least = dip_of_squares(
+        tuple(frequency[at + k] for k in three), tuple(reflection[at + k, trial] for k in three)
+    )
     return dip, np.maximum(least, 0.0)

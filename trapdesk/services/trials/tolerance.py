@@ -9,12 +9,13 @@ from dataclasses import dataclass
 import numpy as np
 
 from ...design.design import Design
+from ...engine.reflection import squared_reflection
 from ...engine.sampling import quantiles
 from ..antenna.figures import Figures
 from ..antenna.solve import solve
 from .beliefs import Belief
 from .causes import CauseShares, Regression, corners, one_at_a_time, trap_first_order
-from .ensemble import Ensemble, Outcome, reflection_of, swr_of
+from .ensemble import Ensemble, Outcome, swr_of
 from .stages import run_stage
 from .traps import AIMED, AS_CUT, STAGES, Stage
 
@@ -274,7 +275,7 @@ class _Gathered:
     def __init__(self, ensemble: Ensemble, kept: int) -> None:
         self.ensemble, self.kept = ensemble, kept
         roles, count = ensemble.roles, len(STAGES)
-        self.limit = reflection_of(ensemble.design.station.swr_limit)
+        self.limit = float(squared_reflection(ensemble.design.station.swr_limit))
         self.passed = np.zeros((count, len(roles) + 1), int)
         self.unreached = np.zeros(count, int)
         self.values = np.empty((count, len(roles), len(RESULTS), kept))
@@ -448,7 +449,7 @@ def stage_yield(ensemble: Ensemble, stage: Stage, trials: int, seed: int) -> Yie
         change = pilot_change(ensemble, ensemble.draws(seed, 0, pilot), pilot)
         allowed = allowances(ensemble, change, ensemble.design.doubts.risk)
         most = {name: allowance.length for name, allowance in allowed.items()}
-    limit = reflection_of(ensemble.design.station.swr_limit)
+    limit = float(squared_reflection(ensemble.design.station.swr_limit))
     passed = 0
     for begin in range(0, trials, BLOCK):
         end = min(begin + BLOCK, trials)
