@@ -371,11 +371,6 @@ def test_published_largest_loss(case):
     assert 0.5 * case["expect"] < loss_at(line, case["given"]["frequency"]) < case["expect"]
 
 
-@pytest.mark.parametrize("case", published("blake-chapter-14"))
-def test_published_section(case):
-    assert cable_types.coaxial_impedance(**case["given"]) == pytest.approx(case["expect"], abs=case["within"])
-
-
 def test_capacitance_by_hand():
     # 1 / (velocity factor, speed of light, impedance), worked out apart: 101.080, 67.387, 95.990, 81.357 pF/m
     for z0, factor, expect in (
@@ -387,17 +382,26 @@ def test_capacitance_by_hand():
         assert Line(z0=z0, velocity_factor=factor).capacitance == pytest.approx(1e-12 * expect, abs=1e-15)
 
 
-def test_sections():
-    # two wires far apart: 276 log10(2 s / d), the textbook's form; close together less
-    assert cable_types.parallel_impedance(0.1, 1e-3) == pytest.approx(276 * np.log10(200), rel=2e-3)
-    assert cable_types.parallel_impedance(0.1, 1e-3, 4.0) == pytest.approx(138 * np.log10(200), rel=2e-3)
-    assert cable_types.parallel_impedance(2e-3, 1.9e-3) < 60
-    # Independent reference computation, to an ohm: RG-213's strands taken as solid 46 to 47, effective 49.
-    inner, outer = CABLES["RG-213/U"].inner, CABLES["RG-213/U"].dielectric
-    permittivity = 1 / CABLES["RG-213/U"].velocity_factor ** 2
-    assert cable_types.coaxial_impedance(inner, outer, permittivity) == pytest.approx(46.5, abs=0.5)
-    effective = cable_types.STRAND_FACTOR * inner
-    assert cable_types.coaxial_impedance(effective, outer, permittivity) == pytest.approx(49, abs=0.5)
+def test_listed_sections_make_the_listed_impedance():
+    # Field of a line charge between cylinders: 60 ohm/sqrt(eps_r) ln(D/d), which makes the examples of
+    # blake-chapter-14 in print; a conductor of strands acts like a solid one of 0.94 of the circle around it.
+    def coaxial(inner, outer, permittivity):
+        return 376.730 / (2 * np.pi) / np.sqrt(permittivity) * np.log(outer / inner)
+
+    for case in published("blake-chapter-14"):
+        example = case.values[0]
+        assert coaxial(**example["given"]) == pytest.approx(example["expect"], abs=example["within"])
+    looked_at = 0
+    for cable in CABLES.values():
+        if cable.inner is not None and cable.dielectric is not None:
+            low, high = (
+                coaxial(share * cable.inner, cable.dielectric, cable.velocity_factor**-2)
+                for share in (1.0, 0.94)
+            )
+            # Sold as 50 +- 2 ohm (common practice, no source), by sizes listed to a few hundredths: 5 % in all.
+            assert 0.95 * low < cable.z0 < 1.05 * high, cable.name
+            looked_at += 1
+    assert looked_at > 3
 
 
 @pytest.mark.parametrize("name", CABLES)
@@ -439,9 +443,6 @@ GAMMA, Z = cables.propagation(RG58, 7.1e6)
         (lambda: cables.line_figures(GAMMA, Z, 1.0, 50.0, 50.0, -1.0), "power"),
         (lambda: cables.swr(-5.0, 50.0), "impedance"),
         (lambda: cables.swr(50.0, 0.0), "reference"),
-        (lambda: cable_types.coaxial_impedance(2e-3, 1e-3, 2.3), "outer"),
-        (lambda: cable_types.coaxial_impedance(1e-3, 2e-3, 0.5), "permittivity"),
-        (lambda: cable_types.parallel_impedance(1e-3, 2e-3), "spacing"),
     ],
 )
 def test_refuses(call, name):

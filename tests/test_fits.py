@@ -15,31 +15,11 @@ from trapdesk.engine.fits import Sweep, fit_direct, fit_loop, fit_through, loop_
 from trapdesk.engine.measured import (
     half_power_centre,
     half_power_q,
-    two_resonances,
     unloaded_q,
     voltage_ratio_q,
 )
 from trapdesk.engine.resonator import impedance
 from trapdesk.engine.tank import solve_tank
-
-
-@pytest.mark.parametrize("case", reference("readings", "read-2f"))
-def test_two_resonances(case):
-    i, e, within = case["inputs"], case["expected"], case["tolerance"]
-    found = two_resonances(
-        i["f_alone_hz"], i["f_with_added_hz"], i["c_added_f"],
-        i["sigma_f_alone_hz"], i["sigma_f_with_hz"], i["sigma_c_added_f"],
-    )  # fmt: skip
-    for name, value in (
-        ("c_f", found.capacitance),
-        ("l_h", found.inductance),
-        ("sigma_c_f", found.sigma_capacitance),
-        ("sigma_l_h", found.sigma_inductance),
-    ):
-        assert value == pytest.approx(e[name], rel=within[name]["rel"])
-    # The Monte Carlo of the reference, 4e5 draws: its own scatter is about 0.1 %.
-    assert found.sigma_capacitance == pytest.approx(e["mc_sigma_c_f"], rel=5e-3)
-    assert found.sigma_inductance == pytest.approx(e["mc_sigma_l_h"], rel=5e-3)
 
 
 @pytest.mark.parametrize("case", reference("readings", "read-3db"))
@@ -97,9 +77,6 @@ def test_voltage_ratio_sigma_is_its_derivative(q, f0, ratio, part):
 @pytest.mark.parametrize(
     ("function", "arguments", "name"),
     [
-        (two_resonances, (7e6, 7e6, 1e-11), "frequency_with"),
-        (two_resonances, (7e6, 6e6, math.nan), "added"),
-        (two_resonances, (7e6, 6e6, 1e-11, -1.0), "sigma_alone"),
         (half_power_q, (7e6, 7.1e6, 7.2e6), "resonance"),
         (half_power_q, (7e6, -7e6, 7.2e6), "low"),
         (voltage_ratio_q, (7e6, 7e6, 0.5), "frequency"),

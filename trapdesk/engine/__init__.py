@@ -19,7 +19,7 @@ The files, each one subject:
 ``toroids``           coils on ring cores: inductance, wire, what fits, flux
 ``coil_formulas``     published formulas for the solenoid: cross-checks of `coils`
 ``cables``            lines, coaxial or parallel: loss, transformation, what stands on them
-``cable_types``       lines from the listed values of a cable or from its section
+``cable_types``       lines from the listed values of a cable
 ``cable_trap``        the trap wound of coaxial cable, as a circuit
 ``cable_winding``     the same as a winding: inductance, resistance, turns for a resonance
 ``capacitors``        loss by Q or dielectric, open stubs, what voltage a capacitor stands

@@ -1,17 +1,14 @@
-"""What the listed losses of a cable, or its section, say about it as a line."""
+"""What the listed losses of a cable say about it as a line."""
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from .cable_list import Cable
 from .cables import Line
-from .constants import ETA0
-from .limits import at_least, positive
+from .limits import positive
 
 FloatArray = NDArray[np.float64]
 
-STRAND_FACTOR = 0.94
-"""Solid conductor that acts like 7 or 19 strands, over the circle around them. Common practice, no source."""
 FIT_LIMIT = 0.1
 """Listed losses that miss the fitted curve by more than this do not belong to one cable. [1]"""
 LOSS_DOUBT = 0.25
@@ -102,71 +99,3 @@ def loss_constants(frequency: ArrayLike, loss: ArrayLike) -> tuple[float, float]
             f"limit {100.0 * FIT_LIMIT:.0f} %"
         )
     return float(best[0] / np.sqrt(scale)), float(best[1] / scale)
-
-
-def coaxial_impedance(inner: ArrayLike, outer: ArrayLike, permittivity: ArrayLike) -> FloatArray:
-    """Return the characteristic impedance of a coaxial line from its section.
-
-    Parameters
-    ----------
-    inner : float or array
-        Diameter of the inner conductor; of strands, `STRAND_FACTOR` times the circle around them. [m], > 0
-    outer : float or array
-        Diameter inside the shield. [m], > inner
-    permittivity : float or array
-        Relative permittivity of what is between. [-], >= 1
-
-    Returns
-    -------
-    float array
-        Characteristic impedance. [ohm]
-
-    Raises
-    ------
-    ValueError
-        If any value is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    Derived here: field of a line charge between cylinders, eta0 / (2 pi sqrt(eps_r)) ln(D / d).
-    """
-    positive(inner=inner, outer=outer)
-    at_least(1.0, permittivity=permittivity)
-    ratio = np.asarray(outer, float) / np.asarray(inner, float)
-    if np.any(ratio <= 1.0):
-        raise ValueError("outer must be more than inner")
-    return ETA0 / (2.0 * np.pi * np.sqrt(np.asarray(permittivity, float))) * np.log(ratio)
-
-
-def parallel_impedance(spacing: ArrayLike, diameter: ArrayLike, permittivity: ArrayLike = 1.0) -> FloatArray:
-    """Return the characteristic impedance of two parallel round wires.
-
-    Parameters
-    ----------
-    spacing : float or array
-        Distance of the wires, centre to centre. [m], > diameter
-    diameter : float or array
-        Diameter of each wire. [m], > 0
-    permittivity : float or array
-        Relative permittivity all around, an average where it is not the same everywhere. [-], >= 1
-
-    Returns
-    -------
-    float array
-        Characteristic impedance. [ohm]
-
-    Raises
-    ------
-    ValueError
-        If any value is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    Derived here: two cylinders as equipotentials of two line charges, eta0 / (pi sqrt(eps_r)) arcosh(s / d).
-    """
-    positive(spacing=spacing, diameter=diameter)
-    at_least(1.0, permittivity=permittivity)
-    ratio = np.asarray(spacing, float) / np.asarray(diameter, float)
-    if np.any(ratio <= 1.0):
-        raise ValueError("spacing must be more than diameter")
-    return ETA0 / (np.pi * np.sqrt(np.asarray(permittivity, float))) * np.arccosh(ratio)

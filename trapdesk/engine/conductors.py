@@ -5,40 +5,9 @@ from numpy.typing import ArrayLike, NDArray
 
 from .constants import EPS0, MU0
 from .limits import at_least, positive
-from .metals import Material
 from .special import round_wire_ratio
 
 FloatArray = NDArray[np.float64]
-
-
-def resistivity_at(material: Material, temperature: ArrayLike) -> FloatArray:
-    """Return the resistivity of a metal at a temperature.
-
-    Parameters
-    ----------
-    material : Material
-        The metal.
-    temperature : float or array
-        Temperature. [C], above -60 and below 250
-
-    Returns
-    -------
-    float or array
-        Resistivity. [ohm m]
-
-    Raises
-    ------
-    ValueError
-        If the temperature is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    nbs-handbook-100: linear from 20 C.
-    """
-    temperature = np.asarray(temperature, dtype=float)
-    if temperature.size and not (temperature.min() > -60.0 and temperature.max() < 250.0):
-        raise ValueError("temperature must be above -60 and below 250")
-    return material.resistivity * (1.0 + material.temperature_coefficient * (temperature - 20.0))
 
 
 def skin_depth(frequency: ArrayLike, resistivity: ArrayLike) -> FloatArray:

@@ -9,74 +9,11 @@ from .limits import at_least, positive
 
 
 @dataclass(frozen=True, kw_only=True)
-class Pair:
-    """Capacitance [F] and inductance [H] from two resonances, with one standard deviation of each."""
-
-    capacitance: float
-    inductance: float
-    sigma_capacitance: float
-    sigma_inductance: float
-
-
-@dataclass(frozen=True, kw_only=True)
 class Estimate:
     """A number and its standard deviation."""
 
     value: float
     sigma: float
-
-
-def two_resonances(
-    frequency_alone: float,
-    frequency_with: float,
-    added: float,
-    sigma_alone: float = 0.0,
-    sigma_with: float = 0.0,
-    sigma_added: float = 0.0,
-) -> Pair:
-    """Return capacitance and inductance from the resonance with and without a known capacitor across.
-
-    Parameters
-    ----------
-    frequency_alone, frequency_with : float
-        Resonance without and with it. [Hz], the second lower
-    added : float
-        The capacitor. [F], > 0
-    sigma_alone, sigma_with : float
-        Standard deviation of the frequencies. [Hz], >= 0
-    sigma_added : float
-        Standard deviation of the capacitor. [F], >= 0
-
-    Returns
-    -------
-    Pair
-        The capacitance includes what the coil itself has. [F], [H]
-
-    Raises
-    ------
-    ValueError
-        If a value is outside its limits; NaN counts as outside.
-
-    Source
-    ------
-    Derived here: L = 1/((2 pi f1)^2 C) = 1/((2 pi f2)^2 (C + Ca)), and the derivatives of its logarithms.
-    """
-    positive(frequency_alone=frequency_alone, frequency_with=frequency_with, added=added)
-    at_least(0.0, sigma_alone=sigma_alone, sigma_with=sigma_with, sigma_added=sigma_added)
-    if not frequency_with < frequency_alone:
-        raise ValueError("frequency_with must be below frequency_alone")
-    first, second = frequency_alone**2, frequency_with**2
-    gap = (frequency_alone - frequency_with) * (frequency_alone + frequency_with)
-    capacitance = added * second / gap
-    inductance = 1.0 / ((2.0 * math.pi) ** 2 * first * capacitance)
-    alone, other = sigma_alone / frequency_alone, sigma_with / frequency_with
-    known = sigma_added / added
-    return Pair(
-        capacitance=capacitance,
-        inductance=inductance,
-        sigma_capacitance=capacitance * math.hypot(known, 2 * first / gap * alone, 2 * first / gap * other),
-        sigma_inductance=inductance * math.hypot(known, 2 * second / gap * alone, 2 * first / gap * other),
-    )
 
 
 def half_power_q(resonance: float, low: float, high: float, sigma: float = 0.0) -> Estimate:
