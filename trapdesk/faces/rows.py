@@ -50,6 +50,7 @@ _FINDING_ROWS = {
     "aim_missed": "resonance",
     "no_resonance": "resonance",
     "site_doubt": "dip",
+    "parts_doubt": "dip",
     "ground_share": "ground_share",
     "line_voltage": "feed.line_voltage",
     "line_current": "feed.line_current",

@@ -155,6 +155,11 @@ SAYINGS: dict[str, Saying] = {
         bare="{where}: site and parts may move the dip by {value}",
         helps="leave the wires long, measure, then cut",
     ),
+    "parts_doubt": Saying(
+        says="{where}: traps as made may move the dip by {value}, more than the {limit} there is to spare",
+        bare="{where}: traps as made may move the dip by {value}",
+        helps="bring both traps to their frequency first, leave the wires long, measure, then cut",
+    ),
     "ground_share": Saying(
         says="{where}: the ground takes about {value} of the power, more than {limit}",
         bare="{where}: the ground takes about {value} of the power",
@@ -244,7 +249,7 @@ SAYINGS: dict[str, Saying] = {
     ),
 }
 
-_SYMPTOMS = ("swr_wanted", "no_width", "wanted_wide", "site_doubt")
+_SYMPTOMS = ("swr_wanted", "no_width", "wanted_wide", "site_doubt", "parts_doubt")
 _CAUSES = ("no_resonance", "aim_missed")
 
 REASONS = {

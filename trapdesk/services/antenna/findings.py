@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 
 from ...engine.soils import GroundKind
@@ -19,7 +20,7 @@ GROUND_SHARE = 0.5
 """Share of the power the ground takes from which on it is worth a remark; an estimate, no source."""
 AIM_MISSED = (0.1, 0.5)
 """How far resonance may lie from the aim, in parts of the usable width, before it is worth a remark."""
-FIRST, LAST = ("end_low",), ("site_doubt",)
+FIRST, LAST = ("end_low",), ("site_doubt", "parts_doubt")
 """Within a level: what can hurt somebody leads; what holds for nearly every unmeasured antenna comes last."""
 
 
@@ -69,7 +70,7 @@ def _bands(figures: Figures) -> Iterator[Finding]:
             )
         elif 2 * band.frequency_doubt > band.width:
             yield Finding(
-                code="site_doubt",
+                code="parts_doubt" if _by_parts(figures, band) else "site_doubt",
                 level=Level.WATCH,
                 where=where,
                 value=band.frequency_doubt,
@@ -84,6 +85,14 @@ def _bands(figures: Figures) -> Iterator[Finding]:
                 value=band.shares.ground,
                 limit=GROUND_SHARE,
             )
+
+
+def _by_parts(figures: Figures, band: BandFigures) -> bool:
+    """Whether most of the doubt of a dip is that of the traps as made, which the bench can take away."""
+    trap, moved = figures.trap, band.effects and band.effects.trap
+    if trap is None or not moved:
+        return False
+    return abs(moved) * trap.resonance_doubt / trap.resonance > band.frequency_doubt / math.sqrt(2)
 
 
 def _aim(band: BandFigures, where: str) -> Iterator[Finding]:

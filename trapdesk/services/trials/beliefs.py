@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 
 from ...design.design import Design, Shape
-from ...design.doubts import SIGMAS, Meaning, farthest
+from ...design.doubts import SIGMAS, Doubts, Meaning, farthest
 from ...design.measured_part import Measured
 from ...design.parts import GivenCoil, Solenoid
 from ...engine.ground import Ground
@@ -213,12 +213,18 @@ def _as_built(
         size = WOUND if isinstance(coil, Solenoid) else max(trap.doubt, WOUND)
     yield "coil", about("coil", size, doubts.alike if isinstance(coil, GivenCoil) else 1.0)
     if trap.wound is not None:
-        yield "turns", Belief(size=doubts.turns, **pair)
+        # Cable is cut to any length; wire ends where a lead can leave.
+        if trap.cable is None:
+            yield "turns", Belief(size=doubts.turns, **pair)
         if isinstance(coil, Solenoid):
             yield "pitch", about("pitch", doubts.pitch)
             yield "former", about("former", doubts.former)
         if trap.own_capacitance:
             yield "self_capacitance", about("self_capacitance", doubts.self_capacitance)
+    if trap.cable is not None and doubts.capacitor is None:
+        # The doubt of a cable's turns is that of the whole trap: there is no other capacitor.
+        yield from _q(doubts, trap, about)
+        return
     printed = None
     if doubts.capacitor is None and trap.capacitor is not None:
         printed = tolerance_of(trap.capacitor, trap.resonance)
@@ -227,6 +233,10 @@ def _as_built(
     else:
         size = printed[0] if printed else UNSAID_TOLERANCE if doubts.capacitor is None else doubts.capacitor
         yield "capacitor", about("capacitor", size)
+    yield from _q(doubts, trap, about)
+
+
+def _q(doubts: Doubts, trap: BuiltTrap, about: Callable[..., Belief]) -> Iterator[tuple[str, Belief]]:
     reached = max(abs(factor - 1) for factor in trap.q_factors) or Q
     yield "q", about("q", min(reached, 0.9) if doubts.q is None else doubts.q)
 

@@ -9,7 +9,6 @@ from dataclasses import dataclass
 import numpy as np
 
 from ...design.doubts import SIGMAS
-from ...design.parts import CableCoil
 from ..trap.measured_trap import holds_resonance
 from .beliefs import CAUSES, Belief, Draws
 from .ensemble import Ensemble
@@ -132,12 +131,11 @@ def trap_first_order(ensemble: Ensemble) -> float | None:
         return None
     trap = ensemble.of_traps.trap
     by_turns, by_pitch, by_diameter = ensemble.of_traps.exponents
-    of_cable = float(isinstance(ensemble.of_traps.part.coil, CableCoil))
     own = trap.own_capacitance / trap.capacitance
     low, _, high = trap.self_capacitance
     rates = {
         "coil": 1.0,
-        "turns": (by_turns + of_cable) / trap.wound.turns if trap.wound is not None else 0.0,
+        "turns": by_turns / trap.wound.turns if trap.wound is not None else 0.0,
         "pitch": by_pitch,
         "former": by_diameter,
         "capacitor": 1 - own,

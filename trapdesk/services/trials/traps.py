@@ -10,7 +10,7 @@ from functools import cached_property
 import numpy as np
 
 from ...design.design import Design
-from ...design.parts import CableCoil, Toroid
+from ...design.parts import Toroid
 from ...engine import resonator
 from ...engine.coil_formulas import sheet_inductance
 from ...engine.quotients import resonator_fraction
@@ -117,14 +117,14 @@ class TrialTraps:
         turns = trap.wound.turns if trap.wound is not None else 1.0
         by_turns, by_pitch, by_diameter = self.exponents
         inductance = np.ones((2, count)) * (1 + of("coil"))
-        longer = np.log1p(of("turns") / turns)
-        log = by_turns * longer + by_pitch * np.log1p(of("pitch")) + by_diameter * np.log1p(of("former"))
+        log = (
+            by_turns * np.log1p(of("turns") / turns)
+            + by_pitch * np.log1p(of("pitch"))
+            + by_diameter * np.log1p(of("former"))
+        )
         inductance = inductance * np.exp(log)
         own = trap.own_capacitance
         capacitance = trap.fitted * (1 + of("capacitor")) + np.zeros((2, count))
-        if isinstance(part.coil, CableCoil):
-            # More turns of cable are more capacitance as well.
-            capacitance = capacitance * np.exp(longer)
         if own:
             low, middle, high = trap.self_capacitance
             x = np.asarray(of("self_capacitance"))
