@@ -120,7 +120,7 @@ class Solenoid:
     insulation: float = quantity(
         "length",
         "insulation",
-        "Thickness of enamel or sleeve on the coil's wire: how near turns wound close come to each other.",
+        "Thickness of enamel or sleeve on the coil's wire: it lies on the former and between close turns.",
         default=5e-5,
         low=0.0,
         high=0.01,
@@ -309,4 +309,7 @@ class Toroid:
     )
 
 
+PlainCoil = GivenCoil | Solenoid | Toroid
+"""A coil that needs a capacitor beside it."""
+AnyCoil = PlainCoil | CableCoil
 COILS: dict[str, type] = {c.kind: c for c in (GivenCoil, Solenoid, CableCoil, Toroid)}
