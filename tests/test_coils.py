@@ -1,5 +1,7 @@
 """The solenoid against an independent reference, published tables and other methods."""
 
+from dataclasses import replace
+
 import mpmath
 import numpy as np
 import pytest
@@ -7,9 +9,12 @@ import scipy.special
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy.constants import mu_0
+from scipy.optimize import brentq
 
+from tests import coil_checks
 from tests.cases import published, reference
 from trapdesk.design.coil_kinds import Solenoid
+from trapdesk.design.fields import SOLVE
 from trapdesk.engine import coil_formulas, coils, metals, rings
 from trapdesk.services.trap.coils import build_coil
 
@@ -103,12 +108,12 @@ def test_reference_self_capacitance(case):
 def test_reference_turns(case):
     given, expected, within = case["inputs"], case["expected"], case["tolerance"]
     shape, wanted = shape_of(given), given["l_target_h"]
-    turns = coils.solenoid_turns(wanted, *shape)
+    turns = brentq(lambda n: coils.winding(*shape, n).inductance - wanted, 1.0, 60.0, xtol=1e-9)
     assert turns == pytest.approx(expected["turns_skin_limit"], abs=within["turns_skin_limit"]["abs"])
     rosa = coil_formulas.rosa_inductance(*shape, expected["turns_rosa"] + np.array([-1, 1]) * 0.002)
     assert rosa[0] < wanted < rosa[1]
     wheeler = expected["turns_wheeler"]
-    got = coil_formulas.wheeler_inductance(shape[0], wheeler * shape[1], wheeler)
+    got = coil_checks.wheeler_inductance(shape[0], wheeler * shape[1], wheeler)
     assert got == pytest.approx(wanted, rel=1e-9)
 
 
@@ -128,7 +133,8 @@ TABLES = ("grover-1946", "nagaoka-1909", "medhurst-1947", "antentop-009")
 
 @pytest.mark.parametrize("case", published(*TABLES))
 def test_published_formulas(case):
-    got = getattr(coil_formulas, case["formula"])(**case["given"])
+    where = coil_checks if hasattr(coil_checks, case["formula"]) else coil_formulas
+    got = getattr(where, case["formula"])(**case["given"])
     assert got == pytest.approx(case["expect"], abs=case["within"])
 
 
@@ -154,19 +160,19 @@ def test_mutual_correction_against_mpmath():
 
 
 def test_wheeler_within_its_stated_range_and_error():
-    low = coil_formulas.WHEELER_RANGE["length_over_radius"][0]
+    low = coil_checks.WHEELER_RANGE["length_over_radius"][0]
     length = 0.5 * np.logspace(np.log10(low), 2, 200)
-    wheeler = coil_formulas.wheeler_inductance(1.0, length, 10)
+    wheeler = coil_checks.wheeler_inductance(1.0, length, 10)
     sheet = coil_formulas.sheet_inductance(1.0, length, 10)
-    np.testing.assert_allclose(wheeler, sheet, rtol=coil_formulas.WHEELER_ERROR)
-    outside = coil_formulas.wheeler_inductance(1.0, 0.25 * low / 2, 10)
+    np.testing.assert_allclose(wheeler, sheet, rtol=coil_checks.WHEELER_ERROR)
+    outside = coil_checks.wheeler_inductance(1.0, 0.25 * low / 2, 10)
     assert outside / coil_formulas.sheet_inductance(1.0, 0.25 * low / 2, 10) - 1 < -0.1
 
 
 def test_lundin_agrees_with_the_sheet_within_its_error():
     x = np.logspace(-3, 3, 2001)
     exact = coil_formulas.sheet_factor(x, 1.0)
-    np.testing.assert_allclose(coil_formulas.lundin_factor(x, 1.0), exact, rtol=coil_formulas.LUNDIN_ERROR)
+    np.testing.assert_allclose(coil_checks.lundin_factor(x, 1.0), exact, rtol=coil_checks.LUNDIN_ERROR)
 
 
 def test_two_distant_rings_by_maxwells_formula():
@@ -232,10 +238,11 @@ def test_formulas_agree_within_their_stated_errors(shape):
     # Crowding moves the current inwards, no further than the inner edge of the wire; inductance goes with
     # the diameter's square at most.
     assert 1.0 < uniform / inductance < (diameter / (diameter - wire)) ** 2
-    # Rosa's sum is the ring sum with tapes for rings: the two differ by what tapes of that width do.
-    assert coil_formulas.rosa_inductance(*shape) == pytest.approx(uniform, rel=0.015)
-    low, high = coil_formulas.MEDHURST_ERROR
-    medhurst = coil_formulas.medhurst_proximity(turns * pitch / diameter, wire / pitch)
+    # Rosa's distances are those of straight wires side by side: curvature is left out, which is of the order
+    # of the square of spacing over diameter and makes the mutual inductances high.
+    assert 0.0 < coil_formulas.rosa_inductance(*shape) / uniform - 1.0 < 0.2 * (pitch / diameter) ** 2
+    low, high = coil_checks.MEDHURST_ERROR
+    medhurst = coil_checks.medhurst_proximity(turns * pitch / diameter, wire / pitch)
     assert 1 + low < medhurst / proximity < 1 + high
 
 
@@ -251,9 +258,11 @@ def test_inductance_scales_with_size(shape, scale):
 @fixed
 @given(WIDE, st.floats(2.0, 24.0))
 def test_turns_and_back(shape, turns):
-    copper = 7.1e6, COPPER.resistivity
-    coil = coils.solenoid(copper[0], *shape[:3], turns, copper[1])
-    assert coils.solenoid_turns(float(coil.inductance), *shape[:3], *copper) == pytest.approx(turns, abs=1e-6)
+    diameter, pitch, wire, _ = shape
+    made = Solenoid(former=diameter - wire, wire=wire, pitch=pitch, turns=turns)
+    inductance = float(build_coil(made, None, None, 7.1e6).series(np.float64(7.1e6))[0])
+    solved = build_coil(replace(made, turns=SOLVE), 7.1e6, lambda own: inductance, 7.1e6)
+    assert solved.wound.turns == pytest.approx(turns, abs=1e-6)
 
 
 def test_broken_turns_join_the_whole_ones():
@@ -271,13 +280,13 @@ def test_coil_array_equals_scalar_one_by_one():
     coil = coils.coil_at(wound, frequency, rho)
     for row in range(2):
         for column in range(3):
-            one = coils.solenoid(frequency[column], 0.05, 2e-3, 1e-3, 12, rho[row, 0])
+            one = coils.coil_at(wound, frequency[column], rho[row, 0])
             for name in ("frequency", "inductance", "resistance", "q"):
                 assert getattr(one, name) == pytest.approx(getattr(coil, name)[row, column], rel=1e-12)
 
 
 def test_perfect_coil_has_no_loss():
-    coil = coils.solenoid(7e6, 0.05, 2e-3, 1e-3, 12, 0.0)
+    coil = coils.coil_at(coils.winding(0.05, 2e-3, 1e-3, 12), 7e6, 0.0)
     assert coil.resistance == 0 and coil.q == np.inf
     assert coil.inductance == rings.solenoid_rings(0.05, 2e-3, 1e-3, 12)[0]
 
@@ -315,22 +324,12 @@ def test_winding_refuses(solve, change):
     ("call", "name"),
     [
         (lambda: rings.solenoid_rings(0.05, 2e-3, 1e-3, 10, nodes=7), "nodes"),
-        (lambda: coils.solenoid_turns(0.0, 0.05, 2e-3, 1e-3), "inductance"),
-        (lambda: coils.solenoid_turns(1e-9, 0.05, 2e-3, 1e-3), "inductance"),
-        (lambda: coils.solenoid_turns(1.0, 0.05, 2e-3, 1e-3), "inductance"),
-        (lambda: coils.solenoid_turns(1e-6, 0.05, 2e-3, 3e-3), "pitch"),
-        (lambda: coils.solenoid_turns(1e-6, 0.05, 2e-3, 1e-3, frequency=0.0), "frequency"),
-        (lambda: coils.solenoid_turns(1e-6, 0.05, 2e-3, 1e-3, resistivity=-1.0), "resistivity"),
         (lambda: coils.self_capacitance_range(0.05, 0.0), "length"),
         (lambda: coils.wire_length(0.05, -1.0, 10), "pitch"),
         (lambda: coil_formulas.sheet_factor(np.nan, 1.0), "diameter"),
-        (lambda: coil_formulas.lundin_factor(1.0, -1.0), "length"),
         (lambda: coil_formulas.sheet_inductance(1.0, 1.0, 0.0), "turns"),
-        (lambda: coil_formulas.wheeler_inductance(1.0, 0.0, 1.0), "length"),
         (lambda: coil_formulas.rosa_self_correction(0.0, 1.0), "pitch"),
         (lambda: coil_formulas.rosa_mutual_correction(0.5), "turns"),
-        (lambda: coil_formulas.medhurst_proximity(-1.0, 0.5), "length_over_diameter"),
-        (lambda: coil_formulas.medhurst_proximity(1.0, 0.05), "wire_over_pitch"),
     ],
 )
 def test_refuses(call, name):

@@ -17,7 +17,7 @@ The files, each one subject:
 ``rings``             the ring solution under it: coaxial rings with the current crowded as it is
 ``coil_table``        a quick solenoid for a search, fitted to the rings
 ``toroids``           coils on ring cores: inductance, wire, what fits, flux
-``coil_formulas``     published formulas for the solenoid: cross-checks of `coils`
+``coil_formulas``     published formulas for the solenoid: a start for `coils`
 ``cables``            lines, coaxial or parallel: loss, transformation, what stands on them
 ``cable_types``       lines from the listed values of a cable
 ``cable_trap``        the trap wound of coaxial cable, as a circuit

@@ -1,4 +1,4 @@
-"""Published single-layer coil formulas: cross-checks of, and starting values for, the rings in `coils`.
+"""Published single-layer coil formulas: what the rings of `coils` are started from and interpolated by.
 
 They take the current at the wire's centre or spread over a sheet; at high frequency it crowds to the inside
 of the winding, so that they read 1 to 12 % high for close windings.
@@ -13,41 +13,7 @@ from .special import elliptic_complement
 
 FloatArray = NDArray[np.float64]
 
-INCH = 0.0254
-
-WHEELER_RANGE = {"length_over_radius": (0.8, np.inf)}
-"""Wheeler's limit; within it the formula is good to `WHEELER_ERROR`, at a quarter of it only to 11 %."""
-WHEELER_ERROR = 0.01
-LUNDIN_ERROR = 3e-6
-MEDHURST_ERROR = (-0.10, 0.55)
-"""Error of Medhurst's proximity table against the rings, 3 to 25 turns, pitch from 1.5 wire diameters on.
-
-Closer turns are worse: the table was made for so many turns that their number does not matter.
-"""
-MEDHURST_RANGE = {"radius_over_skin_depth": (2.5, np.inf), "turns": (30.0, np.inf)}
-"""Where the table is meant to hold: thin skin, and many turns."""
 CAPACITANCE_RANGE = {"length_over_diameter": (0.1, 50.0)}
-
-WIRE_OVER_PITCH = np.array([1.0, 0.9, 0.8, 0.7, 0.6, 0.5, 0.4, 0.3, 0.2, 0.1])
-LENGTH_OVER_DIAMETER = np.array([0.0, 0.2, 0.4, 0.6, 0.8, 1.0, 2.0, 4.0, 6.0, 8.0, 10.0, np.inf])
-# medhurst-1947, table of phi; where copies differ the value that is smooth down the column is taken:
-# (0, 0.4) 1.26 not 1.20, (10, 0.7) 2.37 not 2.27, (inf, 0.8) 2.815 not 2.81, (inf, 0.3) 1.395 not 1.40.
-MEDHURST_PROXIMITY = np.array(
-    [
-        [5.31, 3.73, 2.74, 2.12, 1.74, 1.44, 1.26, 1.16, 1.07, 1.02],
-        [5.45, 3.84, 2.83, 2.20, 1.77, 1.48, 1.29, 1.19, 1.08, 1.02],
-        [5.65, 3.99, 2.97, 2.28, 1.83, 1.54, 1.33, 1.21, 1.08, 1.03],
-        [5.80, 4.11, 3.10, 2.38, 1.89, 1.60, 1.38, 1.22, 1.10, 1.03],
-        [5.80, 4.17, 3.20, 2.44, 1.92, 1.64, 1.42, 1.23, 1.10, 1.03],
-        [5.55, 4.10, 3.17, 2.47, 1.94, 1.67, 1.45, 1.24, 1.10, 1.03],
-        [4.10, 3.36, 2.74, 2.32, 1.98, 1.74, 1.50, 1.28, 1.13, 1.04],
-        [3.54, 3.05, 2.60, 2.27, 2.01, 1.78, 1.54, 1.32, 1.15, 1.04],
-        [3.31, 2.92, 2.60, 2.29, 2.03, 1.80, 1.56, 1.34, 1.16, 1.04],
-        [3.20, 2.90, 2.62, 2.34, 2.08, 1.81, 1.57, 1.34, 1.165, 1.04],
-        [3.23, 2.93, 2.65, 2.37, 2.10, 1.83, 1.58, 1.35, 1.17, 1.04],
-        [3.41, 3.11, 2.815, 2.51, 2.22, 1.93, 1.65, 1.395, 1.19, 1.05],
-    ]
-)
 
 # medhurst-1947: capacitance over diameter, one end of the coil earthed. [pF/cm]
 _H_AT = (50, 40, 30, 25, 20, 15, 10, 9, 8, 7, 6, 5, 4.5, 4, 3.5, 3, 2.5, 2, 1.5, 1, 0.9, 0.8, 0.7, 0.6)
@@ -88,41 +54,6 @@ def sheet_factor(diameter: ArrayLike, length: ArrayLike) -> FloatArray:
     m, complement = x2 / (1.0 + x2), 1.0 / (1.0 + x2)
     k, e = elliptic_complement(complement)
     return 4.0 / (3.0 * np.pi * np.sqrt(complement)) * (complement / m * (k - e) + e - np.sqrt(m))
-
-
-def lundin_factor(diameter: ArrayLike, length: ArrayLike) -> FloatArray:
-    """Return Nagaoka's factor by Lundin's rational fit, good to 3 parts in a million.
-
-    Parameters
-    ----------
-    diameter : float or array
-        Diameter of the sheet. [m], > 0
-    length : float or array
-        Length of the sheet. [m], > 0
-
-    Returns
-    -------
-    float array
-        Factor between 0 and 1. [-]
-
-    Raises
-    ------
-    ValueError
-        If any value is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    lundin-1985.
-    """
-    positive(diameter=diameter, length=length)
-    x = np.asarray(diameter, float) / np.asarray(length, float)
-    long = x <= 1.0
-    y = np.where(long, x, 1.0 / x)
-    y2 = y * y
-    f1 = (1.0 + 0.383901 * y2 + 0.017108 * y2**2) / (1.0 + 0.258952 * y2)
-    f2 = 0.093842 * y2 + 0.002029 * y2**2 - 0.000801 * y2**3
-    short_factor = 2.0 * y / np.pi * ((np.log(4.0 / y) - 0.5) * f1 + f2)
-    return np.where(long, f1 - 4.0 * y / (3.0 * np.pi), short_factor)
 
 
 def sheet_inductance(diameter: ArrayLike, length: ArrayLike, turns: ArrayLike) -> FloatArray:
@@ -268,81 +199,6 @@ def rosa_inductance(
     n, radius = np.asarray(turns, float), 0.5 * np.asarray(diameter, float)
     sheet = sheet_inductance(diameter, n * np.asarray(pitch, float), n)
     return sheet - MU0 * radius * n * correction
-
-
-def wheeler_inductance(diameter: ArrayLike, length: ArrayLike, turns: ArrayLike) -> FloatArray:
-    """Return the inductance of a single-layer coil by Wheeler's formula of 1928; see `WHEELER_RANGE`.
-
-    Parameters
-    ----------
-    diameter : float or array
-        Diameter of a turn. [m], > 0
-    length : float or array
-        Length of the winding. [m], > 0
-    turns : float or array
-        Number of turns. [-], > 0
-
-    Returns
-    -------
-    float array
-        Inductance. [H]
-
-    Raises
-    ------
-    ValueError
-        If any value is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    wheeler-1928.
-    """
-    positive(diameter=diameter, length=length, turns=turns)
-    radius = 0.5 * np.asarray(diameter, float) / INCH  # inches
-    b = np.asarray(length, float) / INCH  # inches
-    return 1e-6 * (radius * np.asarray(turns, float)) ** 2 / (9.0 * radius + 10.0 * b)
-
-
-def medhurst_proximity(length_over_diameter: ArrayLike, wire_over_pitch: ArrayLike) -> FloatArray:
-    """Return the proximity factor of Medhurst's table: to compare with, not to design by (`MEDHURST_ERROR`).
-
-    Parameters
-    ----------
-    length_over_diameter : float or array
-        Winding length over diameter. [-], >= 0
-    wire_over_pitch : float or array
-        Wire diameter over pitch. [-], 0.1 to 1
-
-    Returns
-    -------
-    float array
-        Loss over that of the same wire stretched out. [-]
-
-    Raises
-    ------
-    ValueError
-        If any value is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    medhurst-1947, table of phi, linear between its entries.
-    """
-    at_least(0.0, length_over_diameter=length_over_diameter)
-    ratio, fill = np.broadcast_arrays(
-        np.asarray(length_over_diameter, float), np.asarray(wire_over_pitch, float)
-    )
-    if fill.size and not (fill.min() >= 0.1 and fill.max() <= 1.0):
-        raise ValueError("wire_over_pitch must be between 0.1 and 1")
-    # r / (1 + r) brings the table's last row, an infinitely long coil, to 1.
-    rows = np.append(LENGTH_OVER_DIAMETER[:-1] / (1.0 + LENGTH_OVER_DIAMETER[:-1]), 1.0)
-    place = ratio / (1.0 + ratio)
-    row = np.clip(np.searchsorted(rows, place, side="right") - 1, 0, rows.size - 2)
-    down = (place - rows[row]) / (rows[row + 1] - rows[row])
-    column = np.clip(np.searchsorted(-WIRE_OVER_PITCH, -fill, side="right") - 1, 0, WIRE_OVER_PITCH.size - 2)
-    along = (WIRE_OVER_PITCH[column] - fill) / (WIRE_OVER_PITCH[column] - WIRE_OVER_PITCH[column + 1])
-    phi = MEDHURST_PROXIMITY
-    upper = phi[row, column] + along * (phi[row, column + 1] - phi[row, column])
-    lower = phi[row + 1, column] + along * (phi[row + 1, column + 1] - phi[row + 1, column])
-    return upper + down * (lower - upper)
 
 
 def medhurst_capacitance(diameter: ArrayLike, length: ArrayLike) -> FloatArray:

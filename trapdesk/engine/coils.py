@@ -5,12 +5,11 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from .coil_formulas import medhurst_capacitance, rosa_inductance
-from .coil_limits import MOST_TURNS
+from .coil_formulas import medhurst_capacitance
 from .coil_table import in_range, quick_coil
 from .conductors import internal_impedance
 from .limits import at_least, positive
-from .rings import check_shape, solenoid_rings
+from .rings import solenoid_rings
 
 FloatArray = NDArray[np.float64]
 
@@ -26,7 +25,6 @@ BUILT_Q = (0.5, 0.75, 1.0)
 """Q of a built coil over that of smooth copper: low, typical, high. Common practice, no source."""
 CAPACITANCE_DOUBT = 2.0
 """Factor by which a self-capacitance may be off either way."""
-SECANT_STEPS = 12
 EXPONENT_NODES = 64
 
 
@@ -164,122 +162,6 @@ def coil_at(wound: Winding, frequency: ArrayLike, resistivity: ArrayLike) -> Coi
     q = np.full(inside.shape, np.inf)
     np.divide(reactance, inside.real, out=q, where=inside.real > 0.0)
     return Coil(frequency=w / (2.0 * np.pi), inductance=reactance / w, resistance=inside.real, q=q)
-
-
-def solenoid(
-    frequency: ArrayLike,
-    diameter: float,
-    pitch: float,
-    wire_diameter: float,
-    turns: float,
-    resistivity: ArrayLike,
-) -> Coil:
-    """Return inductance, resistance and Q of a single-layer solenoid over frequency.
-
-    Parameters
-    ----------
-    frequency : float or array
-        Frequency. [Hz], > 0
-    diameter : float
-        Diameter of a turn, centre to centre of the wire. [m], > wire_diameter
-    pitch : float
-        Distance from turn to turn. [m], > wire_diameter
-    wire_diameter : float
-        Diameter of the bare wire. [m], > 0
-    turns : float
-        Number of turns. [-], 1 to `MOST_TURNS`
-    resistivity : float or array
-        Resistivity of the wire. [ohm m], >= 0
-
-    Returns
-    -------
-    Coil
-        Its arrays have the shape of frequency and resistivity broadcast.
-
-    Raises
-    ------
-    ValueError
-        If any value is outside the limits above; NaN counts as outside.
-
-    Source
-    ------
-    Derived here, see `winding` and `coil_at`.
-    """
-    return coil_at(winding(diameter, pitch, wire_diameter, turns), frequency, resistivity)
-
-
-def solenoid_turns(
-    inductance: float,
-    diameter: float,
-    pitch: float,
-    wire_diameter: float,
-    frequency: float = 1e7,
-    resistivity: float = 0.0,
-) -> float:
-    """Return the turns, whole or not, that give an inductance at fixed pitch.
-
-    Without resistivity the wanted inductance is that with all current on the surface, at any frequency.
-
-    Parameters
-    ----------
-    inductance : float
-        Wanted inductance. [H], > 0
-    diameter : float
-        Diameter of a turn, centre to centre of the wire. [m], > wire_diameter
-    pitch : float
-        Distance from turn to turn. [m], > wire_diameter
-    wire_diameter : float
-        Diameter of the bare wire. [m], > 0
-    frequency : float
-        Frequency at which the inductance is wanted. [Hz], > 0
-    resistivity : float
-        Resistivity of the wire. [ohm m], >= 0
-
-    Returns
-    -------
-    float
-        Number of turns. [-]
-
-    Raises
-    ------
-    ValueError
-        If any value is outside the limits above, NaN counts as outside; if one turn is too much or
-        `MOST_TURNS` are too few.
-
-    Source
-    ------
-    Derived here: the interpolation of `winding`, solved for the turns.
-    """
-    positive(inductance=inductance, frequency=frequency)
-    at_least(0.0, resistivity=resistivity)
-    check_shape(diameter, pitch, wire_diameter)
-
-    def log_at(turns: float) -> float:
-        wound = winding(diameter, pitch, wire_diameter, turns)
-        return float(np.log(coil_at(wound, frequency, resistivity).inductance))
-
-    wanted = float(np.log(inductance))
-    guess = np.arange(1.0, MOST_TURNS + 1.0)
-    below = int(np.searchsorted(rosa_inductance(diameter, pitch, wire_diameter, guess), inductance))
-    below = min(max(below, 1), MOST_TURNS - 1)
-    while below > 1 and log_at(below) > wanted:
-        below -= 1
-    while below < MOST_TURNS - 1 and log_at(below + 1) < wanted:
-        below += 1
-    if log_at(below) > wanted:
-        raise ValueError(f"inductance must be at least that of one turn, {np.exp(log_at(1)):.3g} H")
-    if log_at(below + 1) < wanted:
-        most = np.exp(log_at(MOST_TURNS))
-        raise ValueError(f"inductance must be at most that of {MOST_TURNS} turns, {most:.3g} H")
-    # Secant steps in the logarithm of the turns, over which the logarithm of inductance is nearly straight.
-    old, new = float(np.log(below)), float(np.log(below + 1.0))
-    miss_old, miss_new = log_at(below) - wanted, log_at(below + 1) - wanted
-    for _ in range(SECANT_STEPS):
-        if miss_new == miss_old or abs(new - old) < 1e-12:
-            break
-        old, new, miss_old = new, new - miss_new * (new - old) / (miss_new - miss_old), miss_new
-        miss_new = log_at(float(np.exp(new))) - wanted
-    return float(np.exp(new))
 
 
 def wire_length(diameter: ArrayLike, pitch: ArrayLike, turns: ArrayLike) -> FloatArray:
