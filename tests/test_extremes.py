@@ -13,6 +13,7 @@ from trapdesk.faces import cli, feed_json, feed_out
 from trapdesk.faces.layout import WIDTH, fitted
 from trapdesk.faces.rows import rows
 from trapdesk.faces.shown import about, known, percents
+from trapdesk.services.antenna.feed_point import way_of
 from trapdesk.services.antenna.solve import solve
 from trapdesk.store import store
 
@@ -102,7 +103,7 @@ def test_figures_and_the_way_down_tell_the_same_shares(capsys):
     figures = solve(design)
     found = {row.key: row.value for row in rows(figures)}
     for role, band in figures.bands.items():
-        watts = [float(text) for text in feed_out.printed(feed_out.steps_of(figures, band))[:4]]
+        watts = [float(text) for text in feed_out.printed(way_of(figures, band))[:4]]
         names = ("sky", "ground", "wire", "trap")
         told = [float(re.search(r"\d+", found[f"bands.{role}.{name}_share"])[0]) for name in names]
         assert watts == told and sum(told) == 100

@@ -76,7 +76,7 @@ def test_recut_wires_are_those_of_the_solved_design():
         again, there = ways(TABLE, role)[Way.RECUT], ways(fresh, role)[Way.AS_IS]
         assert again.radiated == pytest.approx(there.radiated, rel=1e-6)
         assert again.worst_swr == pytest.approx(there.worst_swr, rel=1e-6)
-    assert fresh.no_recut == "already cut for the aims" and Way.RECUT not in ways(fresh, "upper")
+    assert fresh.no_recut == "already_cut_for_the_aims" and Way.RECUT not in ways(fresh, "upper")
 
 
 def test_the_cheapest_improvement():

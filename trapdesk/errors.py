@@ -115,7 +115,7 @@ class Fault:
     where : str
         Dotted key of the value, such as "antenna.lengths.inner"; empty when the caller knows it better.
     code : str
-        Kind of fault, a key of `WORDS` or a few words joined by underscores.
+        Kind of fault: a key of `WORDS`, or what is wrong in a few words, as it is to be read.
     value : str
         What was given, as it was given.
     limit : str

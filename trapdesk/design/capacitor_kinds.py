@@ -193,6 +193,7 @@ class ParallelCapacitors:
     members: tuple[Any, ...] = parts("members", "The capacitors, side by side.", kinds=CAPACITORS)
 
 
+AnyCapacitor = GivenCapacitor | SingleCapacitor | StubCapacitor | SeriesCapacitors | ParallelCapacitors
 CAPACITORS |= {
     c.kind: c for c in (GivenCapacitor, SingleCapacitor, StubCapacitor, SeriesCapacitors, ParallelCapacitors)
 }

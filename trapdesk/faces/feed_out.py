@@ -6,15 +6,13 @@ import math
 from collections.abc import Iterable, Iterator
 from dataclasses import replace
 
-import numpy as np
-
 from ..design.design import MODES
 from ..errors import visible
-from ..services.antenna.feed_point import FeedPoint
+from ..services.antenna.feed_point import way_of
 from ..services.antenna.figures import BandFigures, Figures
 from ..services.compare.reach import ReachMap, TunerAnswer
 from ..services.compare.worth import Way, WayFigures, Worth
-from ..services.feed.path import Path, WayStep, way_down
+from ..services.feed.path import WayStep
 from ..services.feed.tuner import TunerSetting
 from ..units.unit_names import UNITS, Dimension
 from .feed_rows import element_name, element_value, line_name, loss_text, setting_text
@@ -73,22 +71,10 @@ def printed(steps: Iterable[WayStep]) -> list[str]:
     return texts
 
 
-def steps_of(figures: Figures, band: BandFigures) -> tuple[WayStep, ...]:
-    """Return the way down of a band, also where nothing lies between wire and transmitter."""
-    if band.feed is not None:
-        return band.feed.steps
-    path, frequency = Path(figures.design.station), np.array([band.aim])
-    feed = FeedPoint(figures).impedance(band.role, frequency)
-    shares = {"sky": band.shares.sky, "ground": band.shares.ground, "wire": band.shares.wire}
-    if figures.trap is not None:
-        shares["traps"] = band.shares.trap
-    return way_down(path, path.passage(frequency, feed), 0, complex(feed[0]), shares)
-
-
 def way_lines(figures: Figures, band: BandFigures) -> Iterator[str]:
     """Yield the way down of a band at its aim."""
     station = figures.design.station
-    steps = steps_of(figures, band)
+    steps = way_of(figures, band)
     yield f"{visible(band.name, 12)} at {megahertz(band.aim)}, from the wire down to the transmitter"
     unit = watt_unit(steps)
     yield f"  {'watts' if unit == 'W' else unit:>7}  {'':<36}{'Z':<22}SWR"
@@ -122,7 +108,7 @@ def table_lines(figures: Figures, table: Worth) -> Iterator[str]:
             if not way.matched:
                 yield f"  {'':<9}out of reach of the tuner in part of what is wanted"
         if table.no_recut:
-            yield f"  {'':<7}{Way.RECUT:<25}{table.no_recut}"
+            yield f"  {'':<7}{Way.RECUT:<25}{table.no_recut.replace('_', ' ')}"
     yield from folded(
         "  ",
         "radiated: mean by weight; SWR at the transmitter, what it then gives and what gets hottest, on"

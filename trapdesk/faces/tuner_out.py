@@ -7,6 +7,7 @@ from dataclasses import replace
 from ..design.design import Design
 from ..design.station import OWN, FeedLine
 from ..errors import BadInput, Fault
+from ..services.antenna.feed_point import way_of
 from ..services.antenna.solve import solve
 from ..services.compare.reach import reach_map, reading, tuner_answer
 from ..services.compare.worth import worth
@@ -35,7 +36,7 @@ def text(file: str, load: str | None, line: str | None, length: str | None, *, a
         document = {"format": json_out.FORMAT, "kind": "tuner"}
         document |= feed_json.tuner(figures, answers, maps, table)
         for role, band in figures.bands.items():
-            document["bands"][role]["way_down"] = feed_json.steps(feed_out.steps_of(figures, band))
+            document["bands"][role]["way_down"] = feed_json.steps(way_of(figures, band))
             if role in readings:
                 document["bands"][role]["load"] = feed_json.setting(readings[role], design.station.power)
         return json_out.text(document)

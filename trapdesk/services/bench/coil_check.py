@@ -4,12 +4,11 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass, replace
-from typing import Any
 
 import numpy as np
 
 from ...design.capacitor_kinds import GivenCapacitor
-from ...design.coil_kinds import CableCoil
+from ...design.coil_kinds import AnyCoil, CableCoil
 from ...design.fields import SOLVE
 from ...design.parts import Trap
 from ..antenna.figures import Adjustment, CoilFigures
@@ -26,7 +25,7 @@ class CoilAnswer:
     trap of cable that between its terminals.
     """
 
-    part: Any
+    part: AnyCoil
     frequency: float
     inductance: float
     inductance_doubt: float
@@ -42,7 +41,7 @@ class CoilAnswer:
 
 
 def check_coil(
-    coil: Any, frequency: float, inductance: float | None = None, capacitance: float | None = None
+    coil: AnyCoil, frequency: float, inductance: float | None = None, capacitance: float | None = None
 ) -> CoilAnswer:
     """Return a coil at a frequency, its turns solved for an inductance or for resonance with a capacitance.
 

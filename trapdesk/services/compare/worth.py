@@ -61,7 +61,7 @@ class Worth:
 
     `advice` is the way to take, AS_IS when none is worth it; `gain` what it adds to the watts radiated on the
     band that gains most, relative, `gaining` that band. `typical_transmitter` says that the transmitter's own
-    table is not given and a typical one was taken; `no_recut` why there is no way with re-cut wires.
+    table is not given and a typical one was taken; `no_recut` is the code of why no wires are re-cut.
     """
 
     bands: dict[str, tuple[WayFigures, ...]]
@@ -117,7 +117,7 @@ def _recut(figures: Figures) -> tuple[Figures | None, str]:
     if lengths.end is not None and design.bands.upper is None:
         keys = ["end"]
     if all(getattr(lengths, key) is SOLVE for key in keys):
-        return None, "already cut for the aims"
+        return None, "already_cut_for_the_aims"
     plain = replace(
         design, station=replace(design.station, line=None, tuner=None, choke=None, transmitter=None)
     )
@@ -126,7 +126,7 @@ def _recut(figures: Figures) -> tuple[Figures | None, str]:
     try:
         return solve(plain), ""
     except NoAnswer as error:
-        return None, error.code.replace("_", " ")
+        return None, error.code
 
 
 def _points(design: Design, role: str) -> tuple[np.ndarray, np.ndarray]:

@@ -10,12 +10,14 @@ from typing import Any
 import numpy as np
 
 from ...design.capacitor_kinds import (
+    AnyCapacitor,
     GivenCapacitor,
     ParallelCapacitors,
     SeriesCapacitors,
     SingleCapacitor,
     StubCapacitor,
 )
+from ...design.coil_kinds import CableCoil
 from ...design.fields import SOLVE
 from ...design.parts import solvable
 from ...engine import capacitors as engine
@@ -100,13 +102,13 @@ def capacitance_of(impedance: Any, frequency: Any) -> Any:
     return -1 / (2 * np.pi * frequency * np.imag(impedance))
 
 
-def is_open(part: Any) -> bool:
+def is_open(part: AnyCapacitor) -> bool:
     """Return whether something in a capacitor is to be solved."""
     return any(value is SOLVE for _, value in solvable(part, ""))
 
 
 def build_capacitor(
-    part: Any, key: str = WHERE, frequency: float | None = None, reactance: float | None = None
+    part: AnyCapacitor, key: str = WHERE, frequency: float | None = None, reactance: float | None = None
 ) -> BuiltCapacitor:
     """Return a capacitor put together; what is solved in it makes up the reactance [ohm] at a frequency."""
     return BUILDERS[type(part)](part, key, frequency, reactance)
@@ -162,7 +164,7 @@ def _single(
     )
 
 
-def line_of(part: Any) -> Line:
+def line_of(part: StubCapacitor | CableCoil) -> Line:
     """Return the line of a cable kind, its listed numbers replaced by those given."""
     listed = CABLES[part.cable]
     line = cable_line(listed)
@@ -177,7 +179,7 @@ def line_of(part: Any) -> Line:
     )
 
 
-def cable_rating(part: Any) -> float | None:
+def cable_rating(part: StubCapacitor | CableCoil) -> float | None:
     """Return the peak voltage a cable stands: given, or that to work by of its specification."""
     working = CABLES[part.cable].working_voltage
     return part.voltage or (None if working is None else math.sqrt(2) * working)

@@ -9,7 +9,7 @@ from typing import Any
 
 import numpy as np
 
-from ...design.coil_kinds import GivenCoil, Solenoid, Toroid
+from ...design.coil_kinds import GivenCoil, PlainCoil, Solenoid, Toroid
 from ...design.fields import SOLVE
 from ...design.former_kinds import FORMER_MATERIALS
 from ...engine.cable_winding import straight_inductance
@@ -88,7 +88,7 @@ Needed = Callable[[float], float]
 """From what a coil adds of its own capacitance [F] to the inductance it must have [H]."""
 
 
-def build_coil(coil: Any, frequency: float | None, needed: Needed | None, q_at: float) -> BuiltCoil:
+def build_coil(coil: PlainCoil, frequency: float | None, needed: Needed | None, q_at: float) -> BuiltCoil:
     """Return a coil put together.
 
     Solved turns bring it to the inductance it needs at a frequency; `q_at` is where a stated Q holds.
