@@ -1,4 +1,4 @@
-"""The trap wound of coaxial cable, as a circuit: impedance, resonance, Q from the line equations.
+"""The trap wound of coaxial cable, as a circuit: impedance and resonance from the line equations.
 
 A cable is wound as a coil, and its inner conductor at one end joined to its shield at the other. Outside,
 the shield is a coil; inside, the cable is a line open at its far end, and that line is the capacitor.
@@ -10,18 +10,13 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from .cable_list import Terminals
-from .cables import DECIBELS, Line, propagation
+from .cables import Line, propagation
 from .limits import at_least, positive
 
 FloatArray = NDArray[np.float64]
 ComplexArray = NDArray[np.complex128]
 
 BISECTIONS = 60
-SEARCHES = 8
-LEAST_Q, LARGEST_Q = 2.0, 1e6
-"""Between which the width to look in is taken. [1]"""
-SETTLED = 1e-6
-"""How closely the peak must be met, of the width, and the half-power points, of their level. [1]"""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -55,40 +50,6 @@ class CableTrap:
     def capacitance(self) -> FloatArray:
         """Capacitance of the cable itself; it acts on the series terminals as a quarter of it. [F]."""
         return self.line.capacitance * np.asarray(self.length, float)
-
-
-@dataclass(frozen=True, kw_only=True)
-class CableTrapFigures:
-    """What a cable trap does around its resonance, arrays of the broadcast shape.
-
-    Parameters
-    ----------
-    resonance : float array
-        Resonance without loss. [Hz]
-    electrical_length : float array
-        Of the cable at that resonance. [rad]
-    peak_frequency : float array
-        Where the impedance is largest; NaN where no peak was found. [Hz]
-    peak_impedance : float array
-        How large it is there; NaN likewise. [ohm]
-    q : float array
-        Peak frequency over the width at half power; NaN where no half-power points were found. [-]
-    loss_resistance : float array
-        Series resistance that would lose as much in the shield's coil as all conductors do. [ohm]
-    q_estimate : float array
-        Q from that resistance and the dielectric, good to a tenth. [-]
-    low_inductance : float array
-        Inductance at the terminals far below resonance. [H]
-    """
-
-    resonance: FloatArray
-    electrical_length: FloatArray
-    peak_frequency: FloatArray
-    peak_impedance: FloatArray
-    q: FloatArray
-    loss_resistance: FloatArray
-    q_estimate: FloatArray
-    low_inductance: FloatArray
 
 
 def _check(trap: CableTrap) -> None:
@@ -235,89 +196,3 @@ def cable_trap_resonance(trap: CableTrap) -> FloatArray:
         )
         low, high = np.where(over, low, theta), np.where(over, theta, high)
     return (0.5 * (low + high) * per_radian / (2.0 * np.pi))[()]
-
-
-def cable_trap_figures(trap: CableTrap) -> CableTrapFigures:
-    """Return resonance, peak and Q of a cable trap.
-
-    Parameters
-    ----------
-    trap : CableTrap
-        The trap, its resistance that at resonance.
-
-    Returns
-    -------
-    CableTrapFigures
-        Its arrays have the broadcast shape.
-
-    Raises
-    ------
-    ValueError
-        If any value is outside its limits; NaN counts as outside.
-
-    Source
-    ------
-    Derived here: peak and half-power points of the impedance itself; the estimate lets the current in the
-    line fall evenly to nothing, hence a third of its resistance.
-    """
-    resonance = cable_trap_resonance(trap)
-    w = 2.0 * np.pi * resonance
-    length = np.asarray(trap.length, float)
-    theta = w * length / trap.line.velocity
-    in_skin = np.asarray(trap.line.skin_loss, float) * np.sqrt(resonance) / DECIBELS
-    in_dielectric = np.asarray(trap.line.dielectric_loss, float) * resonance / DECIBELS
-    loss = np.asarray(trap.resistance, float) + 2.0 * in_skin * np.asarray(trap.line.z0, float) * length / 3.0
-    # G' / (w C') = 2 alpha_d v / w
-    loss_tangent = 2.0 * in_dielectric * trap.line.velocity / w
-    with np.errstate(divide="ignore"):
-        estimate = 1.0 / (loss / (w * np.asarray(trap.inductance, float)) + loss_tangent)
-    # Without loss the peak is a pole: its infinite height is meant, not a slip.
-    with np.errstate(divide="ignore", invalid="ignore"):
-        peak, largest, q = _peak(trap, resonance, estimate)
-    low = np.asarray(trap.inductance, float)
-    if trap.terminals is Terminals.SERIES:
-        low = 4.0 * low + trap.line.inductance * length
-    return CableTrapFigures(
-        resonance=resonance,
-        electrical_length=theta,
-        peak_frequency=peak,
-        peak_impedance=largest,
-        q=q,
-        loss_resistance=loss,
-        q_estimate=estimate,
-        low_inductance=low,
-    )
-
-
-def _peak(
-    trap: CableTrap, resonance: FloatArray, estimate: FloatArray
-) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Return where the impedance is largest, how large, and Q from the half-power points."""
-
-    def weakness(frequency: FloatArray) -> FloatArray:
-        return np.abs(cable_trap_impedance(frequency, trap)) ** -2.0
-
-    # 1 / |Z|^2 is all but a parabola there: the peak is its vertex, the half-power points where it doubles.
-    lossless = np.isinf(estimate)
-    width = resonance / np.clip(estimate, LEAST_Q, LARGEST_Q)
-    peak = resonance
-    for step in (0.1, 0.01, 0.01, 0.01):
-        h = step * width
-        left, here, right = weakness(peak - h), weakness(peak), weakness(peak + h)
-        shift = -0.5 * h * (right - left) / (right - 2.0 * here + left)
-        peak = np.clip(peak + shift, 0.5 * resonance, 1.5 * resonance)
-    found = np.abs(shift) < SETTLED * width
-    least = weakness(peak)
-    half = []
-    for side in (-1.0, 1.0):
-        at = peak + 0.5 * side * width
-        for _ in range(SEARCHES):
-            h = 1e-3 * width
-            slope = (weakness(at + h) - weakness(at - h)) / (2.0 * h)
-            at = at - np.where(lossless, 0.0, (weakness(at) - 2.0 * least) / slope)
-            at = np.clip(at, 0.1 * resonance, 2.0 * resonance)
-        missed = np.abs(weakness(at) / (2.0 * least) - 1.0) > SETTLED
-        half.append(np.where(missed, np.nan, at))
-    peak = np.where(lossless, resonance, np.where(found, peak, np.nan))
-    largest = np.where(lossless, np.inf, np.where(found, 1.0 / np.sqrt(least), np.nan))
-    return peak[()], largest[()], np.where(lossless, np.inf, peak / (half[1] - half[0]))[()]
