@@ -43,6 +43,38 @@ def test_published_tables():
     assert prints.read_tolerance("Z", 1e-9) == (0.2, 0.8)
 
 
+@pytest.mark.parametrize("case", PUBLISHED["value"], ids=lambda case: case["print"])
+def test_published_values_are_written_so(case):
+    size, share = case["capacitance"], case["tolerance"]
+    assert prints.write_code(size) + prints.write_tolerance((share, share), size) == case["print"]
+
+
+def test_published_tables_are_written_so():
+    # What is written is read by the published table here, not by the reader: some meanings have two codes.
+    for first, second, third in product(*(PUBLISHED[t] for t in ("figure", "multiplier", "allowed"))):
+        drift = PUBLISHED["figure"][first] * PUBLISHED["multiplier"][second] * 1e-6
+        code = prints.write_characteristic(drift, PUBLISHED["allowed"][third] * 1e-6)
+        meant = PUBLISHED["figure"][code[0]] * PUBLISHED["multiplier"][code[1]] * 1e-6
+        assert meant == pytest.approx(drift, abs=1e-15)
+        assert code[2] == third
+    for letter, share in PUBLISHED["percent"].items():
+        assert prints.write_tolerance((share / 100, share / 100), 47e-12) == letter
+    for letter, size in PUBLISHED["picofarads"].items():
+        assert prints.write_tolerance((size / 5, size / 5), 5e-12) == letter
+    for value in PUBLISHED["e24"]:
+        assert prints.preferred(value * 1e-12) == pytest.approx(value * 1e-12)
+        assert prints.preferred(1.02 * value * 1e-9) == pytest.approx(value * 1e-9)
+    # IEC 60062's own examples, from memory.
+    for size, letters in (
+        (0.33e-12, "p33"),
+        (3.32e-12, "3p32"),
+        (10e-12, "10p"),
+        (150e-9, "150n"),
+        (4.7e-9, "4n7"),
+    ):
+        assert prints.write_letters(size) == letters
+
+
 def test_trade_names_mean_their_codes():
     for name, code in PUBLISHED["trade"].items():
         drift, doubt = prints.read_characteristic(code)

@@ -2,6 +2,10 @@
 
 The three-sign codes, the trade names and the letters B to K, M and Z were read in copies of the tables; the
 other letters and the two letters of IEC 60384 are from memory. Preferred values stand in the design.
+
+Source
+------
+capacitor-codes, for what was read; the rest from memory.
 """
 
 from __future__ import annotations

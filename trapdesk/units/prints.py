@@ -3,6 +3,10 @@
 Values and tolerance letters after IEC 60062, preferred values after IEC 60063, temperature characteristics
 of class 1 ceramics by their three-sign codes, their trade names and the two letters of IEC 60384; see
 `print_tables` and the preferred values for what of it was read and what is from memory.
+
+Source
+------
+capacitor-codes: copies of the tables; the standards themselves were not seen.
 """
 
 from __future__ import annotations
