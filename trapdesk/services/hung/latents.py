@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping
 
 import numpy as np
@@ -69,8 +68,7 @@ class Latents:
             own = z[:, self.columns[column]]
             mixed = own[:, 0]
             if belief.pair:
-                common, each = own[:, :1], own[:, 1:]
-                mixed = math.sqrt(belief.alike) * common + math.sqrt(1 - belief.alike) * each
+                mixed = belief.mixed(own[:, :1], own[:, 1:])
             middle = sum(belief.ends) / 2
             found[name] = middle + self.spread * (belief.shaped(mixed, None) - middle)
         return found

@@ -97,6 +97,10 @@ class Belief:
         """Whether values near the middle are the more likely."""
         return not self.between and self.meaning in SIGMAS
 
+    def mixed(self, common: np.ndarray, own: np.ndarray) -> np.ndarray:
+        """Return standard normal numbers of a pair from what both have in common and what each has."""
+        return math.sqrt(self.alike) * common + math.sqrt(1 - self.alike) * own
+
     def shaped(self, sigmas: np.ndarray | None, chances: np.ndarray | None) -> np.ndarray:
         """Return values from standard normal numbers, or from chances where all values are alike."""
         if self.is_normal:
@@ -257,7 +261,7 @@ def draw(varying: Mapping[str, Belief], seed: int, begin: int, count: int) -> di
             at += 1
             continue
         common, own = sigmas[at], sigmas[at + 1 : at + 3]
-        mixed = math.sqrt(belief.alike) * common + math.sqrt(1 - belief.alike) * own
+        mixed = belief.mixed(common, own)
         found[name] = belief.shaped(mixed, None).T
         at += 3
     return found
