@@ -53,7 +53,7 @@ async def test_is_laid_out_at_every_size(size):
 async def test_too_small_a_screen_says_so_in_one_line(size):
     async with opened(size) as (desk, _):
         lines = screen(desk)
-        assert lines[0].startswith(f"{size[0]}x{size[1]} is too small"[: max(0, size[0] - 1)])
+        assert lines[0].startswith(f"the desk needs 40x12, not {size[0]}x{size[1]}"[: max(0, size[0] - 1)])
         assert not any(lines[1:])
 
 

@@ -51,7 +51,7 @@ async def test_the_whole_job_from_an_empty_design_by_keyboard_alone(tmp_path, mo
         await person.keys_of("enter")
         assert session.design.antenna.trap.coil.kind == "solenoid"
         await person.keys_of("Y")
-        assert "of 100 antennas" in text(desk)
+        assert "how many of 100" in text(desk)
         await person.keys_of("slash", " line", "enter", "enter", "slash", " line len", "enter", " 20m")
         await person.keys_of("enter")
         await person.keys_of("slash", " tuner", "enter", "enter", "slash", " power", "enter", " 50W", "enter")

@@ -27,7 +27,7 @@ from trapdesk.faces import tolerance_out
 from trapdesk.faces.desk import form
 from trapdesk.faces.desk.arrange import LETTERS, VIEWS, arrangement, names
 from trapdesk.faces.desk.aside import Job
-from trapdesk.faces.desk.lines import width_of
+from trapdesk.faces.desk.lines import padded, width_of
 from trapdesk.faces.desk.optional import PARTS
 from trapdesk.faces.desk.panes.jobs import FOR_YIELD, RUMMAGE, TOLERANCE
 from trapdesk.faces.desk.panes.texts import text_lines
@@ -184,7 +184,7 @@ async def test_at_120_columns_the_yield_stands_beside_plot_and_findings():
     async with opened((120, 40)) as (desk, pilot):
         await worked_out(desk, pilot)
         whole = text(desk)
-        for word in ("[Site]", "answer", "findings", "[SWR]", "yield", "of 100 antennas", "brought to aim"):
+        for word in ("[Site]", "answer", "findings", "[SWR]", "yield", "how many of 100", "brought to aim"):
             assert word in whole
 
 
@@ -414,5 +414,10 @@ def test_a_text_is_folded_anew_where_there_is_no_room_for_it():
     assert text_lines([" 1  " + "coil " * 12], 40)[0][0][0].startswith(" 1  coil coil")
     narrow = [line[0][0] for line in text_lines(texts, 40)]
     assert " ".join(" ".join(narrow[:-2]).split()) == f"{texts[0]} {texts[1]}"
-    assert narrow[-1] == "  left         middle                  ~"[:40]
-    assert [line[0][0] for line in text_lines(texts, 40, 40)][-1].strip().endswith("right")
+    assert narrow[-1] == "  left  middle  right"
+    assert text_lines(texts, 16)[-1][0][0] == "  left  middle ~"
+    assert text_lines(texts, 16, 10)[-1][0][0] == "ddle  right"
+    drawing = "  0 |" + " " * 50 + "x"
+    assert text_lines([drawing], 40)[0][0][0] == padded(drawing, 40).rstrip()
+    run_on = ["CARD: a name" + " " * 50 + "not measured, all", "Marks: inner 5 m"]
+    assert text_lines(run_on, 40)[-1][0][0] == "Marks: inner 5 m"

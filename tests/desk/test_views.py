@@ -110,7 +110,7 @@ async def test_zoom_plots_one_band_and_then_both_again():
 @pytest.mark.parametrize("size", [(80, 24), (120, 40), (40, 12)])
 async def test_r_and_x_at_the_feed_point_are_plotted(size):
     async with opened(size, look=BRAILLE) as (desk, pilot):
-        await show(desk, pilot, "z at feed")
+        await show(desk, pilot, "Z at feed")
         await pressed(desk, pilot, "z")
         band = desk.session.figures.bands["upper"]
         if size != (40, 12):
@@ -212,3 +212,13 @@ async def test_finds_a_row_by_typing():
         assert "no row has 'parsnips' in its name" in text(desk)
         assert first == "title"
         assert desk.session.design.antenna.trap.coil.turns is SOLVE
+
+
+async def test_a_note_goes_with_the_view_it_was_told_in_but_not_what_went_wrong():
+    async with opened() as (desk, pilot):
+        desk.say("nothing was written")
+        await pressed(desk, pilot, "v")
+        assert "nothing was written" not in text(desk)
+        desk.say("the disk is full", refused=True)
+        await pressed(desk, pilot, "v")
+        assert "the disk is full" in text(desk)

@@ -217,7 +217,7 @@ class Desk(App[None]):
         small = next(iter(found), None) or Lines(id="small")
         if not small.is_attached:
             self.mount(small)
-        text = f"{width}x{height} is too small: the desk needs {LEAST_WIDTH}x{LEAST_HEIGHT}"
+        text = f"the desk needs {LEAST_WIDTH}x{LEAST_HEIGHT}, not {width}x{height}"
         small.show([[(padded(text, width), "text")]])
 
     def on_lines_resized(self) -> None:

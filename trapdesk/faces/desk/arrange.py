@@ -65,7 +65,7 @@ VIEWS = (
         about="SWR over both bands",
     ),
     View(
-        name="z at feed",
+        name="Z at feed",
         lines=_curves("feed_lines"),
         letter="Z",
         plot=True,

@@ -10,7 +10,7 @@ from textual.events import Key
 
 from .arrange import ANSWER, CHANCES, FINDINGS, HELP, INPUTS, LETTERS, Arrangement, arrangement, names
 from .aside import Job
-from .filing import Asker
+from .filing import FIRST_RUN, Asker
 from .lines import Line
 from .panes.drawers import DrawersPane
 from .panes.frame import Foot
@@ -208,6 +208,10 @@ class Middle(Container):
     def _go(self, view: View) -> None:
         if not self.shown.broad:
             self._before = self.shown
+        foot = self.screen.query_one(Foot)
+        # What went wrong stays until something else is said; the rest belonged to what was in sight.
+        if not foot.refused and foot.note != FIRST_RUN:
+            foot.say("")
         self.shown, self._hold = view, view.broad
 
     def _leave(self) -> None:

@@ -45,7 +45,7 @@ def chances_lines(sight: Sight) -> list[Line]:
     if found is None:
         return waiting_lines(sight.session, TOLERANCE, sight.width)
     width = sight.width
-    text = f"of 100 antennas, how many keep SWR {found.design.station.swr_limit:.3g}"
+    text = f"how many of 100 keep SWR {found.design.station.swr_limit:.3g}"
     lines: list[Line] = [[(piece, "head")] for piece in wrapped(text, width)[:1]]
     for name, stage in out.told_stages(found):
         chance = out.chance(stage.within)
@@ -57,7 +57,9 @@ def chances_lines(sight: Sight) -> list[Line]:
             continue
         figures = large(out.percent(stage.within.share).removesuffix(" %"))
         for row, told in zip(figures, (out.STAGES[name], chance, bands), strict=True):
-            lines.append([(f"{row:<{_COLUMN}}", "found"), (padded(told, width - _COLUMN).rstrip(), "text")])
+            lines.append(
+                [(f"{row:>{_COLUMN - 1}} ", "found"), (padded(told, width - _COLUMN).rstrip(), "text")]
+            )
     lines.append([(padded(out.trials_line(found), width).rstrip(), "quiet")])
     if width - _STRIP_ROOM >= _LEAST_STRIP:
         for role, band in next(iter(found.stages.values())).bands.items():
@@ -76,7 +78,7 @@ def chances_line(session: Session, width: int) -> str:
         return f"yield: {session.aside.refusal(TOLERANCE.name) or 'being worked out'}"
     shares = {name: out.percent(stage.within.share) for name, stage in out.told_stages(found)}
     if width < _NARROW:
-        return "yield: " + ", ".join(
+        return "yield " + ", ".join(
             f"{out.STAGES[name].split()[-1]} {share.removesuffix(' %')}" for name, share in shares.items()
         )
     return "yield: " + ", ".join(f"{out.STAGES[name]} {share}" for name, share in shares.items())

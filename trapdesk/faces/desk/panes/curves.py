@@ -188,7 +188,6 @@ def _trap_panels(figures: Figures, ghost: Figures | None) -> list[Panel]:
     bands = [(visible(b.name, 12), b) for _, b in figures.design.bands.items()]
     marks = tuple(band.target / 1e6 for _, band in bands)
     x_range = (float(mega[0]), float(mega[-1]))
-    resonance = shown.known(trap.resonance, trap.resonance_doubt, "frequency", "MHz")
     dynamic = shown.about(trap.dynamic_resistance, "resistance")
     aims = ", ".join(f"{name} {_phase_at(trap.curve, band.target):+.0f} deg" for name, band in bands)
     kept = ghost.trap if ghost is not None else None
@@ -204,7 +203,7 @@ def _trap_panels(figures: Figures, ghost: Figures | None) -> list[Panel]:
     return [
         Panel(
             heading="trap |Z| ohm",
-            readout=f"{dynamic} at {resonance.number} {resonance.unit}",
+            readout=f"{dynamic} at {shown.megahertz(trap.resonance)}",
             x=mega,
             y=level,
             x_range=x_range,

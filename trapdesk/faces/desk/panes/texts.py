@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Iterator, Sequence
+from itertools import groupby
 
 from ....errors import visible
 from ...layout import WIDTH
@@ -21,7 +22,7 @@ _WIDE = 12
 def text_lines(texts: Sequence[str], width: int, left: int = 0) -> list[Line]:
     """Return plain lines as lines of a pane, in so many columns; tables start at the column `left`."""
     lines: list[Line] = []
-    shown = ((t, _is_table(t)) for t in texts) if width >= WIDTH else _paragraphs(texts)
+    shown = ((t, _is_table(t)) for t in texts) if width >= WIDTH else _closer(_paragraphs(texts), width)
     for paragraph, table in shown:
         head = not paragraph.startswith(" ") and (not lines or not any(text for text, _ in lines[-1]))
         style = "head" if head else "text"
@@ -51,6 +52,28 @@ def _paragraphs(texts: Sequence[str]) -> Iterator[tuple[str, bool]]:
         yield " ".join(pieces), _is_table(pieces[0])
 
 
+def _closer(paragraphs: Iterator[tuple[str, bool]], width: int) -> Iterator[tuple[str, bool]]:
+    """Yield tables that are too broad with their columns moved together; drawings stay as they are."""
+    for table, group in groupby(paragraphs, key=lambda pair: pair[1]):
+        texts = [text for text, _ in group]
+        broad = table and max(map(len, texts)) > width and not any("|" in text for text in texts)
+        yield from ((text, table) for text in (_together(texts) if broad else texts))
+
+
+def _together(texts: Sequence[str]) -> list[str]:
+    """Return lines without those blanks between their columns that all of them have, but for two."""
+    most = max(map(len, texts))
+    padded_texts = [text.ljust(most) for text in texts]
+    begin = min(len(text) - len(text.lstrip()) for text in texts)
+    blank = [all(text[place] == " " for text in padded_texts) for place in range(most)]
+    kept = [
+        place
+        for place in range(most)
+        if place < begin + 2 or not (blank[place] and blank[place - 1] and blank[place - 2])
+    ]
+    return ["".join(text[place] for place in kept).rstrip() for text in padded_texts]
+
+
 def _is_table(text: str) -> bool:
     gaps = _GAP.findall(text)
     return len(gaps) > 1 or "|" in text or any(len(gap) >= _WIDE for gap in gaps)
@@ -62,7 +85,8 @@ def _goes_on(first: str, last: str, text: str) -> bool:
     if not words or not last.strip() or _is_table(first) or _GAP.search(text):
         return False
     indent, before = (len(line) - len(line.lstrip()) for line in (text, first))
-    return indent >= before and len(last) + 1 + len(words[0]) > WIDTH
+    hangs = indent > before if _GAP.search(first) else indent >= before
+    return hangs and len(last) + 1 + len(words[0]) > WIDTH
 
 
 def waiting_lines(session: Session, job: Job, width: int) -> list[Line]:

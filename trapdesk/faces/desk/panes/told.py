@@ -39,12 +39,18 @@ def choices_told(session: Session) -> list[str]:
 def down_told(session: Session) -> list[str]:
     """Return whether a tuner is worth it, the way down, settings and reach: everything of the verb tuner."""
     from ... import feed_out
-    from ...layout import summary_lines
+    from ...layout import folded
+    from ...rows import summary
 
     fed, figures = session.aside.found(TUNER.name), session.figures
     if fed is None or figures is None or set(fed.maps) != set(figures.bands):
         return []
-    head = [line for line in summary_lines(figures) if line.startswith(("site", "radio"))]
+    head = [
+        line
+        for row in summary(figures)
+        if row.label in ("site", "radio")
+        for line in folded(f"{row.label:<7}", row.value)
+    ]
     return [*head, "", *feed_out.document_lines(figures, fed.answers, fed.maps, fed.table)]
 
 
