@@ -192,13 +192,14 @@ def _history(readings):
 
 @pytest.mark.parametrize("name", PLACES)
 def test_stated_intervals_hold_the_truth(name):
-    number = ALL if LONG else 8
+    # Twice two hundred: of 200 alone a share of 0.90 strays by 0.02, and there are 42 of them.
+    number = 2 * ALL if LONG else 8
     ensemble = ensemble_of(name)
     for read in ("dips", "meter"):
         shares = honest(ensemble, number, 5, read)
         if LONG:
             print(f"\n90 % intervals, {name}, {number} antennas, {read}: {shares}")
-        # 84 to 95 % of 200; of the few in a short run all quantities together, within three sampling errors.
+        # 84 to 95 % of each; of the few in a short run all quantities together, within three sampling errors.
         if LONG:
             assert all(0.84 <= share <= 0.95 for share in shares.values()), shares
         assert 0.75 <= np.mean(list(shares.values())) <= 1.0
