@@ -14,6 +14,7 @@ from ...design.rules import check
 from ...errors import BadInput, Fault
 from ...store import store
 from ...store.store import Document
+from ...units.prints import preferred
 from .config import Config
 
 MEGA = 1e6
@@ -33,7 +34,6 @@ decide."""
 
 REACTANCE = 250.0
 """Reactance of the capacitor a new trap begins with. Common practice, no source. [ohm]"""
-_E12 = (1.0, 1.2, 1.5, 1.8, 2.2, 2.7, 3.3, 3.9, 4.7, 5.6, 6.8, 8.2, 10.0)
 _BANDS = re.compile(r"\s*(\d+)\s*m?(?:\s*[ ,/+-]\s*(\d+)\s*m?)?\s*", re.IGNORECASE)
 USUAL_REGION = 1
 
@@ -75,9 +75,7 @@ def _band(name: str, region: int) -> Band:
 def _trap(upper: Band) -> Trap:
     """Return a trap at the lower edge of a band, its capacitor a value that is easy to find."""
     farads = 1.0 / (math.tau * upper.low * REACTANCE)
-    decade = 10.0 ** math.floor(math.log10(farads))
-    size = min(_E12, key=lambda step: abs(math.log(step * decade / farads))) * decade
-    capacitor = GivenCapacitor(capacitance=float(f"{size:.3g}"))
+    capacitor = GivenCapacitor(capacitance=preferred(farads, "E12"))
     return replace(Trap(), resonance=upper.low, capacitor=capacitor)
 
 

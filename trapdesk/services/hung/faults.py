@@ -20,7 +20,7 @@ from ...engine.fits import Sweep
 from ...engine.ground import C0
 from ...engine.mesh import Side, plan_side
 from ...engine.ports import Ports, chebyshev_nodes, polynomial_weights
-from ...engine.sampling import normal_probability
+from ...engine.sampling import chance_above, normal_probability
 from ...engine.soils import GroundKind
 from ...engine.wire import BentWire, Wire, plan, solve_ports, solve_whole
 from ..antenna.response import MARGIN, WIDE
@@ -400,7 +400,7 @@ def diagnose(
     z, _, off = peak_of(whole, np.zeros((1, whole.size)))
     miss = float(z @ z + off @ off)
     # What misses by so little leaves no room for anything that fits so much better.
-    if miss < 2 * math.log(NAMED) - 1 or _chance_above(miss, count) > WELL:
+    if miss < 2 * math.log(NAMED) - 1 or chance_above(miss, count) > WELL:
         return Diagnosis(named=(), looked_at=(), healthy_misfit=0.0, misfits=False)
     basis = bench.basis(latents)
     sound, healthy_misfit = evidence(forward(basis=basis))
@@ -427,7 +427,7 @@ def diagnose(
         named=named,
         looked_at=tuple(found),
         healthy_misfit=healthy_misfit,
-        misfits=_chance_above(least, count) < UNLIKELY,
+        misfits=chance_above(least, count) < UNLIKELY,
     )
 
 
@@ -440,13 +440,3 @@ def of_other_band(design: Design, reading: Reading) -> str | None:
     near = min(bands, key=lambda role: abs(math.log(bands[role].target / frequency)))
     close = abs(math.log(bands[near].target / frequency)) < CLOSE
     return near if near != reading.subject and close else None
-
-
-def _chance_above(square: float, count: int) -> float:
-    """Return the chance that a sum of so many squares of standard normal numbers is larger.
-
-    Wilson and Hilferty's cube root (from memory), good to a few per cent of it where that matters here.
-    """
-    spread = 2 / (9 * count)
-    x = ((square / count) ** (1 / 3) - (1 - spread)) / math.sqrt(spread)
-    return float(1 - normal_probability(min(x, 8.0)))

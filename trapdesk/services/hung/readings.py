@@ -14,6 +14,7 @@ from ...design.reading_kinds import Interval, Reading
 from ...engine.cables import propagation, transform
 from ...engine.fits import Sweep
 from ...engine.ports import terminate_entries
+from ...engine.reflection import dip_of_squares
 from ...engine.sampling import normal_probability
 from ..trials.ensemble import Ensemble
 from ..trials.nearby import Nearby, Table
@@ -391,13 +392,8 @@ def dips(frequency: np.ndarray, reflection: np.ndarray) -> np.ndarray:
     at = np.clip(np.argmin(reflection, axis=1), 1, frequency.size - 2)
     f0, f1, f2 = (frequency[at + k] for k in (-1, 0, 1))
     g0, g1, g2 = (reflection[trial, at + k] for k in (-1, 0, 1))
-    down, up = (g1 - g0) / (f1 - f0), (g2 - g1) / (f2 - f1)
-    bend = (up - down) / (f2 - f0)
-    bent = bend > 0
-    middle = (f0 + f1) / 2 - down / (2 * np.where(bent, bend, 1.0))
     # Beyond its three points the parabola still tells which way the dip lies.
-    reach = f2 - f0
-    return np.where(bent, np.clip(middle, f0 - reach, f2 + reach), np.where(g0 < g2, f0, f2))
+    return dip_of_squares((f0, f1, f2), (g0, g1, g2), beyond=1.0)[0]
 
 
 _TABLES: WeakKeyDictionary[Nearby, dict] = WeakKeyDictionary()

@@ -17,7 +17,7 @@ import numpy as np
 from ...engine.fits import Sweep
 from ...engine.sampling import normal_quantile, uniform
 from ..trials.ensemble import Ensemble
-from ..trials.traps import STAGES, Stage
+from ..trials.traps import TUNED, Stage
 from .latents import LINE, Latents
 from .readings import Altered, Forward, Hoist
 
@@ -73,7 +73,7 @@ class Posterior:
 
 def stage_of(tuned: bool) -> Stage:
     """Return the stage the traps are at when it hangs."""
-    return STAGES[1] if tuned else BUILT
+    return TUNED if tuned else BUILT
 
 
 def latents_of(ensemble: Ensemble, moves: int, tunings: int, spread: float = 1.0) -> Latents:
