@@ -191,7 +191,7 @@ def _site(figures: Figures) -> Iterator[Row]:
     )  # fmt: skip
     yield _input(figures, "station.power")
     mode = MODES[design.station.mode]
-    yield _input(figures, "station.mode", value=f"{100 * mode.mean:.0f} %", unit="mean while sending")
+    yield _input(figures, "station.mode", value=f"{100 * mode.mean:.0f} %", unit="on average while sending")
     yield _input(figures, "station.reference")
     yield _input(figures, "station.swr_limit", value="", unit="")
 
