@@ -31,6 +31,8 @@ WIDER = 1.25
 """How much wider than computed trials are drawn along what was read. [1]"""
 OWN_STEPS = 2
 """Kalman steps of each trial's own: after one alone, weights hang on the few trials it served well. [1]"""
+ASTRAY, STRAYS = 4.0, 6
+"""How much wider one in so many trials is drawn. [1]"""
 LEAST = 0.06
 """Share of the trials drawn that must survive for them not to be drawn once more. [1]"""
 FEWEST = 60
@@ -240,13 +242,22 @@ def _around(
         there = (middle * sizes**2 - off @ slope) * narrow
         z = z + (there - middle) @ along
         middle = there
-    scale = np.minimum(wider * np.sqrt(narrow), 1.0)
-    inside = inside * scale
+    # Some are drawn much wider: a trial whose own steps led astray would else outweigh all the others.
+    scale, far = (np.minimum(times * np.sqrt(narrow), 1.0) for times in (wider, ASTRAY))
+    strays = np.arange(count) % STRAYS == 0
+    inside = inside * np.where(strays[:, None], far, scale)
     z = z + inside @ along
     _, chance = near.residuals(z)
     away = middle + inside
-    drawn = -0.5 * ((inside / scale) ** 2).sum(axis=1) - np.log(scale).sum()
+    drawn = np.logaddexp(
+        _drawn(inside, scale) + math.log(1 - 1 / STRAYS), _drawn(inside, far) - math.log(STRAYS)
+    )
     return z, chance - 0.5 * (away**2).sum(axis=1) - drawn
+
+
+def _drawn(inside: np.ndarray, scale: np.ndarray) -> np.ndarray:
+    """Return the log of how likely it was to draw these numbers from normal ones of such a scale."""
+    return -0.5 * ((inside / scale) ** 2).sum(axis=1) - np.log(scale).sum()
 
 
 def at_new_site(
