@@ -360,7 +360,7 @@ def test_touchstone_of_a_band_that_is_none(call, tmp_path):
 
 def test_every_refusal_has_its_words():
     source = "".join(
-        p.read_text("utf-8") for p in Path(readings_out.__file__).parents[1].glob("services/part_*.py")
+        p.read_text("utf-8") for p in Path(readings_out.__file__).parents[1].glob("services/*/part_*.py")
     )
     codes = set()
     for line in source.split("ReadingRefused(")[1:]:

@@ -208,19 +208,21 @@ def typed_text(desk) -> str:
 
 
 def test_echo_while_the_ensemble_runs(desk):
-    count, rounds, idle, running = 25, 4, [], []
+    count, rounds, idle, running = 10, 8, [], []
     for _ in range(rounds):
         idle += echoes(desk, count)
         desk.type("\x1b")
         desk.until("nothing was written")
         desk.type("R")  # the reasons for the yield take the whole ensemble
         desk.read(0.05)
-        running += echoes(desk, count)
-        assert busy(desk), "the ensemble ended before the last key"
+        taken = echoes(desk, count)
+        # A fast machine may be done with the ensemble before the last key: such a round says nothing.
+        running += taken if busy(desk) else []
         desk.type("\x1b")
         desk.until("nothing was written")
         desk.type("A\x1b[H\x1b[B\x1b[B+")  # another design, for another ensemble
         rest(desk, SETTLED)
+    assert len(running) >= len(idle) / 2, "the ensemble ended before the last key"
     late = [statistics.quantiles(taken, n=20)[-1] for taken in (running, idle)]
     record("desk: 95 % of echoes while 10,000 trials run, against idle", late[0] / late[1], limit=3.0)
 
