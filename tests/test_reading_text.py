@@ -47,6 +47,7 @@ def one(text):
         ("lower.dip=3.612MHz", 3.612e6, {"subject": "lower"}),
         ("upper.swr@7.05MHz=1.8", Interval(low=1.8, high=1.8), {"frequency": 7.05e6}),
         ("upper.swr@7.05MHz=1.8:1", Interval(low=1.8, high=1.8), {}),
+        ("upper.swr@7.05MHz=1:1.8", Interval(low=1.8, high=1.8), {}),
         ("upper.swr@7.19MHz=2..3", Interval(low=2.0, high=3.0), {}),
         (
             "upper.swr@7,19MHz=1.5 .. 2,5,doubt=10%",

@@ -256,6 +256,7 @@ DEG = np.degrees(np.angle(S))
         table("Hz,S11(DB),S11(DEG)".replace("S11(DEG)", "S11 phase (deg)"), (F, 20 * np.log10(abs(S)), DEG)),
         table("freq,return loss (dB),phase", (F, -20 * np.log10(abs(S)), DEG)),
         table("freq,S11 mag,S11 angle (deg)", (F, abs(S), DEG)),
+        table("freq,s11_magnitude,s11_phase (deg)", (F, abs(S), DEG)),
         "! saved\n# by\n" + table("f_hz,r,x", (F, Z.real, Z.imag)).replace("\n", "\r\n"),
         "\ufeff" + table("f_hz,r,x", (F, Z.real, Z.imag)),
     ],

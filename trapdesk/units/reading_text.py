@@ -229,7 +229,7 @@ def _value(where: str, kind: Kind, text: str) -> float | complex | Interval | st
 
 def _swr(where: str, kind: Kind, text: str) -> Interval:
     """Return what a meter told: one number, from..to, or from.. for off the scale."""
-    text = text.removesuffix(":1").strip()
+    text = text.strip().removesuffix(":1").removeprefix("1:").strip()
     match = _NUMBER_PAIR.fullmatch(text)
     parts = (match["low"].strip(), match["high"].strip()) if match else (text, text)
     pair = [
