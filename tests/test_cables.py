@@ -398,7 +398,7 @@ def test_listed_sections_make_the_listed_impedance():
                 coaxial(share * cable.inner, cable.dielectric, cable.velocity_factor**-2)
                 for share in (1.0, 0.94)
             )
-            # Sold as 50 +- 2 ohm (common practice, no source), by sizes listed to a few hundredths: 5 % in all.
+            # Sold as 50 +- 2 ohm (common practice, no source), sizes listed to a few hundredths: 5 % in all.
             assert 0.95 * low < cable.z0 < 1.05 * high, cable.name
             looked_at += 1
     assert looked_at > 3
