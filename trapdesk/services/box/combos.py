@@ -62,24 +62,28 @@ class Combos:
 
 
 NO_COMBOS = Combos(
-    way=np.zeros(0, int),
-    members=np.zeros((0, 3), int),
+    way=np.zeros(0, np.int8),
+    members=np.zeros((0, 3), np.int16),
     capacitance=np.zeros(0),
     loss=np.zeros(0),
     tolerance=np.zeros(0),
     voltage=np.zeros(0),
     rated=np.zeros(0, bool),
-    spare=np.zeros(0, int),
-    stub=np.zeros(0, int),
+    spare=np.zeros(0, np.int32),
+    stub=np.zeros(0, np.int8),
     stub_length=np.zeros(0),
 )
 
 
 def together(several: Sequence[Combos]) -> Combos:
     """Return all of several lots, by rising capacitance."""
-    lots = [vars(lot) for lot in (NO_COMBOS, *several)]
-    every = Combos(**{name: np.concatenate([lot[name] for lot in lots]) for name in lots[0]})
+    every = _in_one(several)
     return every.take(np.argsort(every.capacitance, kind="stable"))
+
+
+def _in_one(several: Sequence[Combos]) -> Combos:
+    lots = [vars(lot) for lot in (NO_COMBOS, *several)]
+    return Combos(**{name: np.concatenate([lot[name] for lot in lots]) for name in lots[0]})
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -119,35 +123,39 @@ class _Part:
 def combos(kinds: Sequence[Capacitor], low: float, high: float, most: int = 3) -> Combos:
     """Return every combination of up to three pieces from `low` to `high` farads that can be had twice."""
     held = np.array([int(k.count) for k in kinds])
-    usable = np.flatnonzero(held >= TRAPS)
-    way, members, parts = [], [], []
+    known = np.array([k.voltage is not None for k in kinds])
+    usable = np.flatnonzero(held >= TRAPS).astype(np.int16)
+    lots = []
     for joined_as, which, part in _joined(kinds, usable, most) if usable.size else ():
         inside = np.flatnonzero((part.c >= low) & (part.c <= high))
-        way.append(np.full(inside.size, joined_as))
-        members.append(which[inside])
-        parts.append(part.take(inside))
-    if not way:
-        return NO_COMBOS
-    of, index = np.concatenate(members), np.concatenate(way)
-    a, b, c = of.T
-    # Of a kind that is there twice or thrice so many more are wanted; a place that is empty wants nothing.
-    times = 1 + np.stack([(a == b) * 1 + (a == c), (b == a) * 1 + (b == c), (c == a) * 1 + (c == b)], axis=1)
-    left = np.where(of >= 0, held[of] - TRAPS * times, np.iinfo(int).max)
-    left = np.minimum(np.minimum(left[:, 0], left[:, 1]), left[:, 2])
-    known = np.array([k.voltage is not None for k in kinds])
-    rated = (known[of] | (of < 0)).T
-    return Combos(
-        way=index,
-        members=of,
-        capacitance=np.concatenate([p.c for p in parts]),
-        loss=np.concatenate([p.loss for p in parts]),
-        tolerance=np.concatenate([p.tolerance for p in parts]),
-        voltage=np.concatenate([p.voltage for p in parts]),
-        rated=rated[0] & rated[1] & rated[2],
-        spare=left,
-        stub=np.full(index.size, -1),
-        stub_length=np.zeros(index.size),
-    ).take(np.flatnonzero(left >= 0))
+        spare = _left_over(which[inside], held)
+        kept = inside[spare >= 0]
+        of, made = which[kept], part.take(kept)
+        lots.append(
+            Combos(
+                way=np.full(kept.size, joined_as, np.int8),
+                members=of,
+                capacitance=made.c,
+                loss=made.loss,
+                tolerance=made.tolerance,
+                voltage=made.voltage,
+                rated=(known[of] | (of < 0)).all(axis=1),
+                spare=spare[spare >= 0],
+                stub=np.full(kept.size, -1, np.int8),
+                stub_length=np.zeros(kept.size),
+            )
+        )
+    return _in_one(lots)
+
+
+def _left_over(members: np.ndarray, held: np.ndarray) -> np.ndarray:
+    """Return how many are left of the kind that runs shortest once both traps have theirs, (n,)."""
+    left = np.full(len(members), np.iinfo(np.int32).max, np.int32)
+    for own in members.T:
+        # Of a kind that is there twice or thrice so many more are wanted; an empty place wants nothing.
+        wanted = TRAPS * sum((own == other).astype(np.int32) for other in members.T)
+        left = np.minimum(left, np.where(own >= 0, held[own] - wanted, left))
+    return left
 
 
 def stubs(cables: Sequence[Cable], frequency: float, low: float, high: float) -> Combos:
@@ -165,15 +173,15 @@ def stubs(cables: Sequence[Cable], frequency: float, low: float, high: float) ->
         rating = cable_rating(part)
         none = np.zeros(count)
         some = Combos(
-            way=np.zeros(count, int),
-            members=np.full((count, 3), -1),
+            way=np.zeros(count, np.int8),
+            members=np.full((count, 3), -1, np.int16),
             capacitance=wanted,
             loss=z.real / -z.imag,
             tolerance=none + STUB_DOUBT,
             voltage=(math.inf if rating is None else rating) / stub_end_voltage(frequency, line, length),
             rated=np.full(count, rating is not None),
-            spare=np.full(count, FREE),
-            stub=np.full(count, place),
+            spare=np.full(count, FREE, np.int32),
+            stub=np.full(count, place, np.int8),
             stub_length=length,
         )
         found.append(some.take(np.flatnonzero(TRAPS * length <= cable.length)))
