@@ -39,7 +39,7 @@ def test_reference_ratings(case):
 def test_allowed_voltage_keeps_every_limit_and_reaches_one(f, c, current, power, tangent):
     got = capacitors.rating(f, c, 2e3, current, power, tangent)
     # powers from the complex current through the series circuit itself
-    z = capacitors.series_resistance(f, c, 1 / tangent) - 1j / (2 * np.pi * f * c)
+    z = (tangent - 1j) / (2 * np.pi * f * c)
     i = got.allowed / abs(z)
     used = {
         Limit.VOLTAGE: got.allowed * np.sqrt(2) / 2e3,
@@ -65,7 +65,7 @@ def test_lossless_and_unlimited():
     np.testing.assert_array_equal(got.limited_by, ["voltage", "voltage"])
     np.testing.assert_array_equal(got.heat_limit, [np.inf, np.inf])
     np.testing.assert_array_equal(got.voltage_to_heat, [np.inf, np.inf])
-    assert capacitors.series_resistance(7e6, 47e-12, np.inf) == 0
+    assert capacitors.lossy_impedance(7e6, 47e-12, 0.0).real == 0
 
 
 def test_array_equals_scalar_one_by_one():
@@ -76,14 +76,14 @@ def test_array_equals_scalar_one_by_one():
             one = capacitors.rating(frequency, **PART, loss_tangent=t)
             assert one.allowed == got.allowed[row, column]
             assert one.limited_by == got.limited_by[row, column]
-    r = capacitors.series_resistance(f, 47e-12, np.array([[500.0], [2000.0]]))
-    assert r.shape == (2, 3)
-    assert r[1, 2] == capacitors.series_resistance(28e6, 47e-12, 2000.0)
+    z = capacitors.lossy_impedance(f, 47e-12, np.array([[2e-3], [5e-4]]))
+    assert z.shape == (2, 3)
+    assert z[1, 2] == capacitors.lossy_impedance(28e6, 47e-12, 5e-4)
 
 
-def test_series_resistance_by_hand():
-    # 1 / (2 pi 10 MHz 100 pF) = 159.155 ohm, over a Q of 1000
-    assert capacitors.series_resistance(10e6, 100e-12, 1000.0) == pytest.approx(0.159155, rel=1e-5)
+def test_lossy_impedance_by_hand():
+    # 1 / (2 pi 10 MHz 100 pF) = 159.155 ohm, a thousandth of it lost
+    assert capacitors.lossy_impedance(10e6, 100e-12, 1e-3) == pytest.approx(0.159155 - 159.155j, rel=1e-5)
 
 
 @pytest.mark.parametrize(
@@ -103,8 +103,8 @@ def test_rating_refuses(change, name):
 
 
 @pytest.mark.parametrize(
-    "bad", [(0.0, 1e-12, 1.0), (1e6, np.nan, 1.0), (1e6, 1e-12, 0.0), (1e6, 1e-12, np.nan)]
+    "bad", [(0.0, 1e-12, 1e-3), (1e6, np.nan, 1e-3), (1e6, 1e-12, -1e-3), (1e6, 1e-12, np.nan)]
 )
-def test_series_resistance_refuses(bad):
+def test_lossy_impedance_refuses(bad):
     with pytest.raises(ValueError, match="must be"):
-        capacitors.series_resistance(*bad)
+        capacitors.lossy_impedance(*bad)

@@ -88,6 +88,10 @@ def test_what_was_really_moved(call, design):
     code, _, _ = call("next", str(design), "--moved", "inner=-4cm", "--moved", "end=1cm")
     step = store.find(str(design)).design.history.steps[-1]
     assert (code, step.inner, step.end) == (0, pytest.approx(-0.04), pytest.approx(0.01))
+    before = design.read_bytes()
+    code, _, err = call("next", str(design), "--moved", "inner=-4cm", "--moved", "inner=-6cm")
+    assert code == 2 and "given twice" in err
+    assert design.read_bytes() == before
 
 
 def test_a_broken_antenna_gets_no_move(call, design):

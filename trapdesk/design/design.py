@@ -457,3 +457,22 @@ def with_value(part: Any, key: str, value: Any) -> Any:
         place = int(name) - 1
         return (*part[:place], new, *part[place + 1 :])
     return replace(part, **{name: new})
+
+
+def at_new_site(design: Design, site: Site, inner: float, end: float | None) -> Design:
+    """Return the design as the same antenna at another site, its wires as cut [m].
+
+    What was read and done so far goes with the site it leaves.
+    """
+    history = design.history or History()
+    stay = Stay(title=design.title, site=design.site, steps=history.steps)
+    # To a tenth of a millimetre: finer than any wire is cut.
+    lengths = replace(
+        design.antenna.lengths, inner=round(inner, 4), end=None if end is None else round(end, 4)
+    )
+    return replace(
+        design,
+        site=site,
+        antenna=replace(design.antenna, lengths=lengths),
+        history=replace(history, stays=(*history.stays, stay), steps=()),
+    )

@@ -55,8 +55,10 @@ class Rating:
     voltage_to_heat: FloatArray
 
 
-def series_resistance(frequency: ArrayLike, capacitance: ArrayLike, q: ArrayLike) -> FloatArray:
-    """Return the series resistance of a capacitor of given Q: the constant loss tangent of a dielectric.
+def lossy_impedance(
+    frequency: ArrayLike, capacitance: ArrayLike, loss_tangent: ArrayLike
+) -> NDArray[np.complex128]:
+    """Return the impedance of a capacitor whose dielectric has a constant loss tangent.
 
     Parameters
     ----------
@@ -64,13 +66,13 @@ def series_resistance(frequency: ArrayLike, capacitance: ArrayLike, q: ArrayLike
         Frequency. [Hz], > 0
     capacitance : float or array
         Capacitance. [F], > 0
-    q : float or array
-        Reactance over series resistance; infinite for a lossless capacitor. [-], > 0
+    loss_tangent : float or array
+        Series resistance over reactance, 1/Q. [-], >= 0
 
     Returns
     -------
-    float array
-        Resistance, of the broadcast shape. [ohm]
+    complex array
+        Impedance, of the broadcast shape. [ohm]
 
     Raises
     ------
@@ -79,13 +81,12 @@ def series_resistance(frequency: ArrayLike, capacitance: ArrayLike, q: ArrayLike
 
     Source
     ------
-    Definition of Q.
+    Definition of the loss tangent.
     """
     positive(frequency=frequency, capacitance=capacitance)
-    q = np.asarray(q, float)
-    if not np.all(q > 0.0):
-        raise ValueError("q must be above 0")
-    return 1.0 / (2.0 * np.pi * np.asarray(frequency, float) * np.asarray(capacitance, float) * q)
+    at_least(0.0, loss_tangent=loss_tangent)
+    reactance = 1.0 / (2.0 * np.pi * np.asarray(frequency, float) * np.asarray(capacitance, float))
+    return reactance * (np.asarray(loss_tangent, float) - 1j)
 
 
 def rating(

@@ -67,11 +67,6 @@ LEARNED: dict[str, str] = {
     "line_loss": "line, more loss",
     "line_z0": "line, impedance",
 }
-BELONGS: dict[str, str] = {
-    "antenna": "stays with the antenna",
-    "site": "this site only",
-    "line": "the line",
-}
 AT_THE_HALYARD = (
     "Before anyone goes to the halyard: lock the transmitter out, and look up for power lines.",
     "Traps and wire ends burn whoever touches them while transmitting, however harmless they look.",

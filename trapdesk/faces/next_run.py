@@ -5,7 +5,7 @@ from __future__ import annotations
 import argparse
 from dataclasses import replace
 
-from ..design.design import Design, Site, Stay
+from ..design.design import Design, Site, at_new_site
 from ..design.history import History
 from ..design.reading_kinds import PARTS, Reading
 from ..errors import BadInput, Fault, FileFault, NoAnswer, visible
@@ -101,15 +101,10 @@ def with_step(design: Design, texts: list[str], found: service.NextMove, at: Sit
         help = "mend or read again first; readings of something broken are not kept"
         raise NoAnswer("no_move_to_keep", "history", {}, help)
     said = " ".join("".join(text.split()) for text in texts)
+    if at is not None and at != design.site:
+        design = at_new_site(design, at, found.figures.wire.inner, found.figures.wire.end)
     history = design.history or History()
     step = service.step_after(said, found.advice)
-    if at is not None and at != design.site:
-        stays = (*history.stays, Stay(title=design.title, site=design.site, steps=history.steps))
-        history = replace(history, stays=stays, steps=())
-        wire = found.figures.wire
-        end = None if wire.end is None else round(wire.end, 4)
-        lengths = replace(design.antenna.lengths, inner=round(wire.inner, 4), end=end)
-        design = replace(design, site=at, antenna=replace(design.antenna, lengths=lengths))
     return replace(design, history=replace(history, steps=(*history.steps, step)))
 
 
@@ -134,7 +129,7 @@ def with_moves(design: Design, texts: list[str]) -> Design:
     history = design.history
     if history is None or not history.steps:
         raise BadInput(Fault("--moved", "no move was kept yet", help="keep readings first, with --keep"))
-    last = history.steps[-1]
+    last, said = history.steps[-1], set()
     for text in texts:
         wire, _, value = text.partition("=")
         if wire not in ("inner", "end") or not value:
@@ -142,5 +137,8 @@ def with_moves(design: Design, texts: list[str]) -> Design:
         length = units.read(value, units.Dimension.LENGTH, "--moved")
         if abs(length) > 20:
             raise BadInput(Fault("--moved", "too_large", text, "20 m"))
+        if wire in said:
+            raise BadInput(Fault("--moved", "given twice", text, help="each wire once, by its whole move"))
+        said.add(wire)
         last = replace(last, **{wire: length})
     return replace(design, history=replace(history, steps=(*history.steps[:-1], last)))

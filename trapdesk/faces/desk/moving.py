@@ -2,10 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from ...design.design import Design, Stay
+from ...design.design import Design, at_new_site
 from ...errors import BadInput, Fault
 
 if TYPE_CHECKING:
@@ -24,14 +23,4 @@ def moved(before: Design, changed: Design, figures: Figures | None) -> Design:
     """
     if figures is None or figures.design != before:
         raise BadInput(Fault("", "its_wires_are_not_known_yet", help="wait for the figures, then try again"))
-    history = before.history
-    assert history is not None
-    stay = Stay(title=before.title, site=before.site, steps=history.steps)
-    lengths, wires = changed.antenna.lengths, figures.lengths
-    end = None if wires.end is None else round(wires.end, 4)
-    lengths = replace(lengths, inner=round(wires.inner, 4), end=end)
-    return replace(
-        changed,
-        antenna=replace(changed.antenna, lengths=lengths),
-        history=replace(history, stays=(*history.stays, stay), steps=()),
-    )
+    return at_new_site(before, changed.site, figures.lengths.inner, figures.lengths.end)

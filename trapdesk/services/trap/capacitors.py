@@ -132,7 +132,7 @@ def _given(
 
 
 def _lossy(capacitance: float, loss_tangent: float) -> Callable[[Any], Any]:
-    return lambda frequency: (loss_tangent - 1j) / (2 * np.pi * frequency * capacitance)
+    return lambda frequency: engine.lossy_impedance(frequency, capacitance, loss_tangent)
 
 
 def _single(

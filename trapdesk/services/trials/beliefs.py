@@ -33,7 +33,6 @@ NAMED_SOIL = (2.0, 1.25)
 """Factors by which conductivity and permittivity of a named soil may be off. [1], an estimate, no source"""
 STREAMS = 8
 """Streams of random numbers that each quantity has to itself."""
-NORMAL = Meaning.THREE_SIGMA
 
 CAUSES: dict[str, tuple[str, ...]] = {
     "capacitor": ("capacitor",),

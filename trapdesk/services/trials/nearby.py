@@ -31,7 +31,6 @@ ODD_STEP = 0.02
 """How far the sides are put apart to see what that does. [m]"""
 LOWEST = 0.3
 """Height of the wire's ends below which no solve is put. [m]"""
-ENTRIES = 6
 
 Place = tuple[tuple[str, float], ...]
 """Where a solve is put: variables away from nothing, in steps."""
