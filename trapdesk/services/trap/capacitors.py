@@ -132,7 +132,9 @@ def _given(
 
 
 def _lossy(capacitance: float, loss_tangent: float) -> Callable[[Any], Any]:
-    return lambda frequency: engine.lossy_impedance(frequency, capacitance, loss_tangent)
+    # With a constant loss tangent all of it goes with 1/f.
+    at_one_hertz = engine.lossy_impedance(1.0, capacitance, loss_tangent)
+    return lambda frequency: at_one_hertz / frequency
 
 
 def _single(
